@@ -1,0 +1,208 @@
+"""Stages in a row become one linear model with an output after every stage."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+from functools import cached_property
+from typing import TYPE_CHECKING
+
+import numpy as np
+
+from frontend_sim.analog.block import Block, Complex, Real
+from frontend_sim.errors import ModelError
+
+if TYPE_CHECKING:
+    import control
+
+    from frontend_sim.analog.stages.base import Stage
+
+
+@dataclass(frozen=True, eq=False)
+class Section:
+    """What one stage brings into the chain: its name, its blocks in order, its pure delay [s]."""
+
+    name: str
+    blocks: tuple[Block, ...]
+    delay: float
+
+
+@dataclass(frozen=True, eq=False)
+class Chain:
+    """The composed continuous model of a chain of n states and p points.
+
+        dx/dt = a x + b u(t),    y_i(t) = c_i x(t - D_i) + d_i u(t - D_i)
+
+    Point 0 is the stimulus itself, point i the output of stage i, the last one the converter's
+    pin. Pure delays of linear stages commute with everything else, so each point carries the sum
+    of the delays before it and the model itself stays rational.
+
+    Parameters
+    ----------
+    a : shape (n, n) [1/s]
+    b : shape (n,) [1/s]
+    c : shape (p, n) [1]
+    d : shape (p,) [1]
+    delay : shape (p,) [s]
+    points : names of the p points
+    """
+
+    sections: tuple[Section, ...]
+    a: Real
+    b: Real
+    c: Real
+    d: Real
+    delay: Real
+    points: tuple[str, ...]
+
+    @property
+    def order(self) -> int:
+        """Number of states."""
+        return len(self.b)
+
+    @cached_property
+    def poles(self) -> Complex:
+        """Poles of all blocks [rad/s], in the order of the chain."""
+        found = [block.poles for section in self.sections for block in section.blocks]
+        return np.concatenate(found) if found else np.empty(0, dtype=np.complex128)
+
+    def response(self, frequency: Real) -> Complex:
+        """Return the transfer function from stimulus to pin at frequencies [Hz], delay included."""
+        s = 2j * np.pi * np.asarray(frequency, dtype=np.float64)
+        total = np.exp(-s * self.delay[-1])
+        for section in self.sections:
+            for block in section.blocks:
+                total = total * block.response(s)
+        return np.asarray(total, dtype=np.complex128)
+
+    def settled(self, value: float) -> Real:
+        """Return the states, shape (n,), after the stimulus has rested at a value for ever.
+
+        Raises
+        ------
+        ModelError
+            If a pole at the origin sees a value other than zero: it would have drifted away.
+        """
+        states = []
+        level = value
+        for section in self.sections:
+            for block in section.blocks:
+                x = _rest_of(block, level, section.name)
+                level = float(block.c @ x + block.d * level)
+                states.append(x)
+        return np.concatenate(states) if states else np.empty(0)
+
+    def state_space(self) -> control.StateSpace:
+        """Return the chain as a ``control.StateSpace``, from the stimulus to the pin.
+
+        Raises
+        ------
+        ModelError
+            If the chain holds a transport delay, which has no finite state space. Take
+            ``without_delay()`` first, or approximate the delay with ``control.pade``.
+        """
+        import control
+
+        self._refuse_delay()
+        return control.StateSpace(self.a, self.b[:, None], self.c[-1:], [[self.d[-1]]])
+
+    def transfer_function(self) -> control.TransferFunction:
+        """Return the chain as a ``control.TransferFunction``, from the stimulus to the pin.
+
+        The polynomials are expanded, which loses accuracy for high orders and rates far apart;
+        the simulator itself never uses them. Raises ModelError as ``state_space`` does.
+        """
+        import control
+
+        self._refuse_delay()
+        numerator, denominator = np.ones(1), np.ones(1)
+        for section in self.sections:
+            for block in section.blocks:
+                top, bottom = block.polynomials()
+                numerator, denominator = np.convolve(numerator, top), np.convolve(denominator, bottom)
+        return control.TransferFunction(np.trim_zeros(numerator, "f"), denominator)
+
+    def without_delay(self) -> Chain:
+        """Return the same chain with every transport delay taken out."""
+        return compose([Section(part.name, part.blocks, 0.0) for part in self.sections])
+
+    def _refuse_delay(self) -> None:
+        if self.delay[-1] > 0.0:
+            raise ModelError(
+                f"the chain holds a transport delay of {self.delay[-1]:g} s, which has no finite "
+                "state space; take without_delay() first, or approximate it with control.pade"
+            )
+
+
+def _rest_of(block: Block, level: float, name: str) -> Real:
+    if block.order == 0:
+        return np.empty(0)
+    if not np.any(block.poles == 0.0):
+        return np.asarray(np.linalg.solve(block.a, -block.b * level))
+    if level == 0.0:
+        return np.zeros(block.order)
+    raise ModelError(
+        f"stage {name!r} has a pole at the origin and would have drifted away on the settled "
+        f"value {level:g} before the run; start the stimulus at zero or set "
+        'simulation.initial = "rest"'
+    )
+
+
+def section(stage: Stage, name: str) -> Section:
+    """Return the section of one stage.
+
+    Raises
+    ------
+    ModelError
+        If a pole lies in the right half plane: the stage has no bounded response.
+    """
+    blocks = stage.blocks()
+    for block in blocks:
+        for pole in block.poles:
+            if pole.real > 0.0:
+                raise ModelError(
+                    f"stage {name!r} is unstable: it has a pole at {_text_of(pole)} rad/s; every "
+                    "pole needs a negative real part"
+                )
+    return Section(name, blocks, stage.transport_delay())
+
+
+def _text_of(pole: complex) -> str:
+    return f"{pole.real:g}" if pole.imag == 0.0 else f"{pole.real:g} ± j{abs(pole.imag):g}"
+
+
+def chain_of(stages: Sequence[Stage]) -> Chain:
+    """Compose stages, named by their ``name`` or by kind and position. Raises ModelError."""
+    return compose(
+        [section(stage, stage.label(position)) for position, stage in enumerate(stages, start=1)]
+    )
+
+
+def compose(sections: Sequence[Section]) -> Chain:
+    """Put sections in a row, in block lower triangular form, by
+
+        a = [[a1, 0], [b2 c1, a2]],  b = [b1, b2 d1],  c = [d2 c1, c2],  d = d2 d1.
+    """
+    blocks = [block for part in sections for block in part.blocks]
+    n = sum(block.order for block in blocks)
+    a, b = np.zeros((n, n)), np.zeros(n)
+    c_rows, d_rows, delays, names = [np.zeros(n)], [1.0], [0.0], ["stimulus"]
+    c, d, at, delay = np.zeros(n), 1.0, 0, 0.0
+    for part in sections:
+        for block in part.blocks:
+            here = slice(at, at + block.order)
+            a[here, :] = np.outer(block.b, c)
+            a[here, here] = block.a
+            b[here] = block.b * d
+            c = block.d * c
+            c[here] = block.c
+            d = block.d * d
+            at += block.order
+        delay += part.delay
+        c_rows.append(c.copy())
+        d_rows.append(d)
+        delays.append(delay)
+        names.append(part.name)
+    return Chain(
+        tuple(sections), a, b, np.array(c_rows), np.array(d_rows), np.array(delays), tuple(names)
+    )

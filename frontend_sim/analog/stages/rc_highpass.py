@@ -1,0 +1,29 @@
+"""First-order RC high pass, buffered."""
+
+from __future__ import annotations
+
+from typing import Literal
+
+from pydantic import Field
+
+from frontend_sim.analog.block import Block, first_order
+from frontend_sim.analog.stages.base import Stage
+from frontend_sim.quantities import Capacitance, Resistance
+
+
+class RcHighpass(Stage):
+    """First-order RC high pass
+
+        H(s) = s R C / (1 + s R C).
+
+    Source: impedance divider 1/(s C) against R; common practice.
+    """
+
+    kind: Literal["rc-highpass"] = "rc-highpass"
+    resistance: Resistance = Field(description="resistance R to ground")
+    capacitance: Capacitance = Field(description="series capacitance C")
+
+    def blocks(self) -> tuple[Block, ...]:
+        """Return one block with the pole -1/(R C) and a zero at the origin."""
+        rate = 1.0 / (self.resistance * self.capacitance)
+        return (first_order(-rate, (1.0, 0.0)),)

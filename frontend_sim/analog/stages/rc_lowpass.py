@@ -1,0 +1,29 @@
+"""First-order RC low pass, buffered."""
+
+from __future__ import annotations
+
+from typing import Literal
+
+from pydantic import Field
+
+from frontend_sim.analog.block import Block, first_order
+from frontend_sim.analog.stages.base import Stage
+from frontend_sim.quantities import Capacitance, Resistance
+
+
+class RcLowpass(Stage):
+    """First-order RC low pass
+
+        H(s) = 1 / (1 + s R C).
+
+    Source: impedance divider R against 1/(s C); common practice.
+    """
+
+    kind: Literal["rc-lowpass"] = "rc-lowpass"
+    resistance: Resistance = Field(description="series resistance R")
+    capacitance: Capacitance = Field(description="capacitance C to ground")
+
+    def blocks(self) -> tuple[Block, ...]:
+        """Return one block with the pole -1/(R C)."""
+        rate = 1.0 / (self.resistance * self.capacitance)
+        return (first_order(-rate, (0.0, rate)),)

@@ -1,0 +1,1 @@
+"""When and how the ADC looks: clock, range, quantizer."""

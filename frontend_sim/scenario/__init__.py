@@ -1,0 +1,1 @@
+"""What the user writes: a TOML file becomes frozen, validated values."""

@@ -1,0 +1,82 @@
+"""What a run gives: blocks of conversions and waveform while it goes on, the whole at its end."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, field
+
+import numpy as np
+from numpy.typing import NDArray
+
+from frontend_sim.scenario.model import Scenario
+
+Real = NDArray[np.float64]
+Codes = NDArray[np.int64]
+
+
+@dataclass(frozen=True, eq=False)
+class GridReport:
+    """How far a discrete model of the chain lies from the exact answer.
+
+    Parameters
+    ----------
+    method : zoh, foh or bilinear
+    grid_rate : points per second [Hz]
+    estimate : error estimated before the run [LSB], None where the grid was given
+    largest_error, rms_error : distance from the exact mode over all conversions [LSB]
+    corner, warped_corner : -3 dB corner of the chain, and where the discrete model has it [Hz];
+        None where the chain has none or the model does not warp
+    """
+
+    method: str
+    grid_rate: float
+    estimate: float | None
+    largest_error: float
+    rms_error: float
+    corner: float | None
+    warped_corner: float | None
+
+
+@dataclass(frozen=True, eq=False)
+class RunBlock:
+    """Some conversions in a row, and the waveform over the same stretch of time.
+
+    Parameters
+    ----------
+    start : number of the first conversion of the block
+    time : sampling instants, shape (K,) [s]
+    pin : exact analog value at these instants, before noise and rounding, shape (K,) [V]
+    codes : shape (K,) [counts]
+    voltage : the codes read back, shape (K,) [V]
+    overrange : where the code was clipped, shape (K,)
+    waveform_time : shape (W,) [s], empty where no waveform is kept
+    waveform : name of the point of the chain -> shape (W,) [V]
+    """
+
+    start: int
+    time: Real
+    pin: Real
+    codes: Codes
+    voltage: Real
+    overrange: NDArray[np.bool_]
+    waveform_time: Real
+    waveform: dict[str, Real]
+
+
+@dataclass(frozen=True, eq=False)
+class Run:
+    """A finished run: the arrays of all its blocks, joined.
+
+    ``notes`` tells what was decided on the way (how gaps of a recording were filled, a grid that
+    is too coarse); the remaining names are those of ``RunBlock``.
+    """
+
+    scenario: Scenario
+    time: Real
+    pin: Real
+    codes: Codes
+    voltage: Real
+    overrange: NDArray[np.bool_]
+    waveform_time: Real
+    waveform: dict[str, Real]
+    grid: GridReport | None = None
+    notes: tuple[str, ...] = field(default=())

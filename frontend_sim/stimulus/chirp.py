@@ -1,0 +1,155 @@
+"""A sine whose frequency sweeps."""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass
+from typing import Literal
+
+import numpy as np
+from pydantic import Field
+
+from frontend_sim.quantities import Angle, Frequency, PositiveTime, Time, Voltage
+from frontend_sim.stimulus.base import Key, Stimulus
+from frontend_sim.stimulus.drive import Drive, PiecewiseDrive, Real
+
+DEGREE = 12
+STRIDE = 0.5
+"""Pieces of at most this phase [rad]: what the polynomial leaves out is below
+STRIDE^13 / 13! = 2e-14 of the amplitude."""
+
+
+@dataclass(frozen=True, eq=False)
+class Sweep(PiecewiseDrive):
+    """A sweep as pieces of its own Taylor polynomial.
+
+    A polynomial is the output of a chain of integrators, so it is a linear generator too. The
+    state i is the i-th derivative over w^i, with w the highest angular frequency of the sweep.
+    """
+
+    amplitude: float
+    start: float
+    stop: float
+    at: float
+    length: float
+    phase: float
+    offset: float
+    logarithmic: bool
+
+    @property
+    def _fastest(self) -> float:
+        return 2.0 * np.pi * max(self.start, self.stop)
+
+    @property
+    def generator(self) -> Real:  # type: ignore[override]  # derived here, stored elsewhere
+        """A chain of integrators, and a held offset."""
+        g = np.zeros((DEGREE + 2, DEGREE + 2))
+        np.fill_diagonal(g[:DEGREE, 1 : DEGREE + 1], self._fastest)
+        return g
+
+    @property
+    def readout(self) -> Real:  # type: ignore[override]  # derived here, stored elsewhere
+        """The value of the polynomial, and the offset."""
+        r = np.zeros(DEGREE + 2)
+        r[0] = r[-1] = 1.0
+        return r
+
+    @property
+    def initial(self) -> float:  # type: ignore[override]  # derived here, stored elsewhere
+        """Return the offset."""
+        return self.offset
+
+    def _growth(self) -> float:
+        return math.log(self.stop / self.start) / self.length
+
+    def _turns(self, since: Real) -> Real:
+        """Return the cycles made since the start of the sweep."""
+        if self.logarithmic and self.start != self.stop:
+            growth = self._growth()
+            return np.asarray(self.start * np.expm1(growth * since) / growth)
+        return since * (self.start + 0.5 * (self.stop - self.start) / self.length * since)
+
+    def events(self, start: float, stop: float) -> Real:
+        """Return both ends of the sweep and the joints of the pieces in (start, stop]."""
+        total = float(self._turns(np.array([self.length]))[0])
+        pieces = max(int(math.ceil(total * 2.0 * np.pi / STRIDE)), 1)
+        first, last = (
+            float(self._turns(np.clip(np.array([t - self.at]), 0.0, self.length))[0]) / total
+            for t in (start, stop)
+        )
+        index = np.arange(max(int(first * pieces) - 2, 0), min(int(last * pieces) + 3, pieces + 1))
+        times = self.at + self._time_of(index * (total / pieces))
+        times = np.append(times[index < pieces], self.at + self.length)
+        return times[(times > start) & (times <= stop)]
+
+    def _time_of(self, turns: Real) -> Real:
+        """Invert ``_turns``."""
+        if self.logarithmic and self.start != self.stop:
+            growth = self._growth()
+            return np.asarray(np.log1p(turns * growth / self.start) / growth)
+        slope = (self.stop - self.start) / self.length
+        root = np.sqrt(np.maximum(self.start**2 + 2.0 * slope * turns, 0.0))
+        return np.asarray(2.0 * turns / (self.start + root))
+
+    def states(self, times: Real) -> Real:
+        """Return the scaled derivatives of the sweep.
+
+        With f = exp(j p), f' = j p' f and by Leibniz' rule
+        f^(k+1) = j sum_i C(k, i) p^(i+1) f^(k-i).
+        """
+        since = np.clip(times - self.at, 0.0, self.length)
+        turns = self._turns(since)
+        f = [np.exp(1j * (2.0 * np.pi * (turns - np.floor(turns)) + self.phase))]
+        rates = self._phase_derivatives(since)
+        for k in range(DEGREE):
+            terms = [math.comb(k, i) * rates[i] * f[k - i] for i in range(min(k + 1, len(rates)))]
+            f.append(1j * np.sum(terms, axis=0))
+        inside = (times >= self.at) & (times < self.at + self.length)
+        columns = [np.where(inside, self.amplitude * value.imag, 0.0) for value in f]
+        return np.column_stack([*columns, np.full(len(times), self.offset)])
+
+    def _phase_derivatives(self, since: Real) -> list[Real]:
+        """Return p', p'', ... over the powers of the fastest angular frequency."""
+        w = self._fastest
+        if self.logarithmic and self.start != self.stop:
+            growth = self._growth()
+            first = 2.0 * np.pi * self.start * np.exp(growth * since) / w
+            return [first * (growth / w) ** i for i in range(DEGREE)]
+        slope = (self.stop - self.start) / self.length
+        first = 2.0 * np.pi * (self.start + slope * since) / w
+        return [first, np.full(len(since), 2.0 * np.pi * slope / w**2)]
+
+
+class Chirp(Stimulus):
+    """A sine that sweeps from one frequency to another; outside the sweep the value is the offset.
+
+    linear: f(t) = start + (stop - start) t / length;
+    logarithmic: f(t) = start · (stop / start)^(t / length).
+    """
+
+    kind: Literal["chirp"] = "chirp"
+    amplitude: Voltage = Field(description="peak value of the sine")
+    start_frequency: Frequency = Field(description="frequency at the beginning of the sweep")
+    stop_frequency: Frequency = Field(description="frequency at the end of the sweep")
+    length: PositiveTime = Field(description="length of the sweep")
+    at: Time = Field(default=0.0, description="instant at which the sweep begins")
+    phase: Angle = Field(default=0.0, description="phase at the beginning of the sweep")
+    offset: Voltage = Field(default=0.0, description="value that the sine swings around")
+    sweep: Literal["linear", "logarithmic"] = Field(
+        default="linear", description="how the frequency grows with time"
+    )
+
+    def drives(self, key: Key) -> tuple[Drive, ...]:
+        """Return one sweep."""
+        return (
+            Sweep(
+                self.amplitude,
+                self.start_frequency,
+                self.stop_frequency,
+                self.at,
+                self.length,
+                self.phase,
+                self.offset,
+                self.sweep == "logarithmic",
+            ),
+        )

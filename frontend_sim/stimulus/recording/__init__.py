@@ -1,0 +1,1 @@
+"""A recorded signal; one reader for each file format."""

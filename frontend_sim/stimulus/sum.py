@@ -1,0 +1,42 @@
+"""Several stimuli at once."""
+
+from __future__ import annotations
+
+from pathlib import Path
+from typing import TYPE_CHECKING, Literal
+
+from pydantic import Field
+
+from frontend_sim.stimulus.base import Key, Stimulus
+from frontend_sim.stimulus.drive import Drive
+
+if TYPE_CHECKING:
+    from frontend_sim.stimulus import AnyStimulus
+
+
+class Sum(Stimulus):
+    """u = sum of the terms. Terms may be of any kind, sums too."""
+
+    kind: Literal["sum"] = "sum"
+    term: tuple[AnyStimulus, ...] = Field(min_length=1, description="the stimuli that are added")
+
+    def drives(self, key: Key) -> tuple[Drive, ...]:
+        """Return the drives of all terms; each term has a random stream of its own."""
+        return tuple(
+            drive
+            for position, term in enumerate(self.term)
+            for drive in term.drives((*key, position))
+        )
+
+    def known_length(self) -> float | None:
+        """Return the length of the shortest term that ends."""
+        known = [length for term in self.term if (length := term.known_length()) is not None]
+        return min(known) if known else None
+
+    def files(self) -> tuple[Path, ...]:
+        """Return the files of all terms."""
+        return tuple(file for term in self.term for file in term.files())
+
+    def notes(self) -> tuple[str, ...]:
+        """Return the notes of all terms."""
+        return tuple(note for term in self.term for note in term.notes())
