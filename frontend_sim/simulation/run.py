@@ -23,8 +23,8 @@ class GridReport:
     grid_rate : points per second [Hz]
     estimate : error estimated before the run [LSB], None where the grid was given
     largest_error, rms_error : distance from the exact mode over all conversions [LSB]
-    corner, warped_corner : -3 dB corner of the chain, and where the discrete model has it [Hz];
-        None where the chain has none or the model does not warp
+    warping : shift of frequency at half the conversion rate, as a share of it; 0 where the method
+        does not warp
     """
 
     method: str
@@ -32,8 +32,7 @@ class GridReport:
     estimate: float | None
     largest_error: float
     rms_error: float
-    corner: float | None
-    warped_corner: float | None
+    warping: float
 
 
 @dataclass(frozen=True, eq=False)

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass
 from typing import Literal
 
@@ -12,6 +13,9 @@ from frontend_sim.quantities import Angle, Frequency, Voltage
 from frontend_sim.stimulus.base import Key, Stimulus
 from frontend_sim.stimulus.drive import Drive, PiecewiseDrive, Real
 from frontend_sim.stimulus.phase import cycles
+
+FRESH = 1000.0
+"""Cycles after which a rotating state has lost at most 1e-12 of its phase and is set anew."""
 
 
 @dataclass(frozen=True, eq=False)
@@ -40,8 +44,10 @@ class Tone(PiecewiseDrive):
         return self.offset + self.amplitude * float(np.sin(self.phase))
 
     def events(self, start: float, stop: float) -> Real:
-        """Return no event: the sine goes on for ever."""
-        return np.empty(0)
+        """Return a time every ``FRESH`` cycles: there the states are set anew, with no jump."""
+        step = FRESH / self.frequency
+        times = np.arange(math.floor(start / step), math.ceil(stop / step) + 1.0) * step
+        return times[(times > start) & (times <= stop)]
 
     def states(self, times: Real) -> Real:
         """Return sine, cosine and offset."""

@@ -1,0 +1,258 @@
+"""The only loop over time: pushes blocks of instants through chain and converter."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Callable, Iterator
+from dataclasses import dataclass
+
+import numpy as np
+
+from frontend_sim.analog.chain import Chain, chain_of
+from frontend_sim.analog.discretize import warped_frequency
+from frontend_sim.converter import clock, quantizer
+from frontend_sim.errors import ScenarioError
+from frontend_sim.randomness import stream
+from frontend_sim.scenario.model import Scenario
+from frontend_sim.simulation.accuracy import Distance, pick_grid
+from frontend_sim.simulation.kernels import Real
+from frontend_sim.simulation.linear import Axis, GridMethod, Linear, States
+from frontend_sim.simulation.run import GridReport, Run, RunBlock
+from frontend_sim.simulation.uniform import WAVEFORM_TILE
+from frontend_sim.stimulus.drive import Drive
+
+BLOCK = 8 * WAVEFORM_TILE
+"""Instants in one block, a multiple of every tile, so that blocks never show in a result."""
+
+COARSE = 0.5
+"""A discrete model further than this from the exact answer is told in the notes [LSB]."""
+
+Progress = Callable[[float], None]
+
+
+@dataclass(frozen=True, eq=False)
+class _Axis:
+    """A uniform row of instants and the points of the chain that are read there."""
+
+    model: Linear
+    count: int
+
+
+class Simulation:
+    """A scenario made ready to run.
+
+    Parameters
+    ----------
+    scenario : what to simulate
+    block : instants computed at once; any multiple of ``WAVEFORM_TILE`` gives the same result
+
+    Attributes
+    ----------
+    chain : the composed continuous model
+    count : number of conversions
+    duration : [s]
+    notes : what was decided on the way; complete after the last block
+    grid : distance of a discrete model from the exact answer, after the last block; else None
+
+    Raises
+    ------
+    InputError
+        If the circuit is unusable, the stimulus cannot be read, or the run would be empty.
+    """
+
+    def __init__(self, scenario: Scenario, block: int = BLOCK) -> None:
+        """Compose the chain, open the stimulus, count the conversions, pick the grid."""
+        if block <= 0 or block % WAVEFORM_TILE:
+            raise ScenarioError(f"block must be a multiple of {WAVEFORM_TILE}, given {block}")
+        self.scenario = scenario
+        self.chain: Chain = chain_of(scenario.chain)
+        self.drives: tuple[Drive, ...] = scenario.stimulus.drives(stream(scenario.seed, "stimulus"))
+        self.duration = _duration(scenario)
+        self.count = clock.conversion_count(scenario.adc, self.duration)
+        if self.count == 0:
+            raise ScenarioError(
+                f"no conversion falls into the run: the first one is at {scenario.adc.first:g} s, "
+                f"the run lasts {self.duration:g} s; lengthen simulation.duration"
+            )
+        self.notes: tuple[str, ...] = scenario.stimulus.notes()
+        self.grid: GridReport | None = None
+        self._block = block
+        self._pin = [len(self.chain.points) - 1]
+        self._method, self._estimate = self._pick_method()
+
+    def blocks(self, progress: Progress | None = None) -> Iterator[RunBlock]:
+        """Run, and return conversions and waveform block by block, in order of time.
+
+        ``progress`` is called with the share that is done, from 0 to 1.
+        """
+        adc, seed = self.scenario.adc, self.scenario.seed
+        model = self._linear(self._pin, self._conversion_axis(), self._method)
+        states = model.start()
+        exact = self._linear(self._pin, self._conversion_axis(), None) if self._method else None
+        exact_states: States = exact.start() if exact else ()
+        distance = Distance()
+        waveform = self._waveform_axis()
+        waveform_states: States = waveform.model.start() if waveform else ()
+        waveform_done = 0
+        for start in range(0, self.count, self._block):
+            stop = min(start + self._block, self.count)
+            instants = clock.sampling_instants(adc, start, stop, seed)
+            states, (pin,) = model.advance(states, start, instants)
+            if exact is not None:
+                exact_states, (true,) = exact.advance(exact_states, start, instants)
+                distance.add((pin - true) / adc.lsb)
+            yield self._converted(start, instants, pin)
+            if waveform is not None:
+                until = self._waveform_until(waveform.count, stop)
+                while waveform_done < until:
+                    upto = min(waveform_done + self._block, until)
+                    times = np.arange(waveform_done, upto) / self._waveform_rate
+                    waveform_states, values = waveform.model.advance(
+                        waveform_states, waveform_done, times
+                    )
+                    yield self._kept(stop, times, values)
+                    waveform_done = upto
+            if progress is not None:
+                progress(stop / self.count)
+        self._conclude(distance)
+
+    def _linear(self, points: list[int], axis: Axis, method: GridMethod | None) -> Linear:
+        initial = self.scenario.simulation.initial
+        return Linear.of(self.chain, self.drives, points, initial, axis, method)
+
+    def _conversion_axis(self) -> Axis:
+        adc = self.scenario.adc
+        interval = 1.0 / adc.rate
+        return Axis(interval, max(adc.first + adc.aperture_delay, interval) + interval)
+
+    def _pick_method(self) -> tuple[GridMethod | None, float | None]:
+        settings = self.scenario.simulation
+        if settings.discretization == "exact":
+            return None, None
+        if settings.grid_rate is not None:
+            method = GridMethod(settings.discretization, settings.grid_rate, settings.prewarp)
+            _refuse_prewarp_beyond(method)
+            return method, None
+        adc = self.scenario.adc
+
+        def model(method: GridMethod | None) -> Linear:
+            return self._linear(self._pin, self._conversion_axis(), method)
+
+        def instants(start: int, stop: int) -> Real:
+            return clock.sampling_instants(adc, start, stop, self.scenario.seed)
+
+        return pick_grid(settings, adc, self.count, self.duration, model, instants)
+
+    @property
+    def _waveform_rate(self) -> float:
+        return self.scenario.simulation.waveform_rate or 0.0
+
+    @property
+    def _waveform_points(self) -> list[int]:
+        wanted = self.scenario.simulation.waveform_points
+        names = self.chain.points
+        return list(range(len(names))) if wanted is None else [names.index(name) for name in wanted]
+
+    def _waveform_axis(self) -> _Axis | None:
+        if self._waveform_rate == 0.0:
+            return None
+        interval = 1.0 / self._waveform_rate
+        model = self._linear(self._waveform_points, Axis(interval, 2.0 * interval), self._method)
+        return _Axis(model, max(math.ceil(self.duration * self._waveform_rate - 1e-9), 1))
+
+    def _waveform_until(self, count: int, conversions: int) -> int:
+        """Return how far the waveform goes after some conversions, at a multiple of tiles."""
+        if conversions == self.count:
+            return count
+        adc = self.scenario.adc
+        position = (adc.first + conversions / adc.rate) * self._waveform_rate
+        return min(int(position) // WAVEFORM_TILE * WAVEFORM_TILE, count)
+
+    def _converted(self, start: int, instants: Real, pin: Real) -> RunBlock:
+        adc = self.scenario.adc
+        voltage = quantizer.converted_voltage(adc, pin, start, self.scenario.seed)
+        codes, overrange = quantizer.quantize(adc, voltage)
+        read = quantizer.read_back(adc, codes)
+        return RunBlock(start, instants, pin, codes, read, overrange, np.empty(0), self._named())
+
+    def _kept(self, start: int, times: Real, values: Real) -> RunBlock:
+        none, codes = np.empty(0), np.empty(0, np.int64)
+        flags = np.empty(0, np.bool_)
+        return RunBlock(start, none, none, codes, none, flags, times, self._named(values))
+
+    def _named(self, values: Real | None = None) -> dict[str, Real]:
+        if self._waveform_rate == 0.0:
+            return {}
+        names = [self.chain.points[point] for point in self._waveform_points]
+        rows = values if values is not None else [np.empty(0)] * len(names)
+        return dict(zip(names, rows, strict=True))
+
+    def _conclude(self, distance: Distance) -> None:
+        method = self._method
+        if method is None:
+            return
+        warping = 0.0
+        if method.method == "bilinear":
+            half = 0.5 * self.scenario.adc.rate
+            warping = warped_frequency(half, 1.0 / method.rate, method.prewarp) / half - 1.0
+        self.grid = GridReport(
+            method.method, method.rate, self._estimate, distance.largest, distance.rms, warping
+        )
+        limit = self.scenario.simulation.accuracy if self._estimate is not None else COARSE
+        if distance.largest > limit:
+            self.notes += (
+                f"the {method.method} model at {method.rate:g} points per second lies up to "
+                f"{distance.largest:.3g} LSB from the exact answer; raise simulation.grid_rate or "
+                'set simulation.discretization = "exact"',
+            )
+
+
+def _duration(scenario: Scenario) -> float:
+    if scenario.simulation.duration is not None:
+        return scenario.simulation.duration
+    known = scenario.stimulus.known_length()
+    if known is None:
+        raise ScenarioError("simulation.duration is missing: this stimulus never ends by itself")
+    return known
+
+
+def _refuse_prewarp_beyond(method: GridMethod) -> None:
+    if method.prewarp is not None and method.prewarp >= 0.5 * method.rate:
+        raise ScenarioError(
+            f"simulation.prewarp {method.prewarp:g} Hz must lie below half the grid rate, "
+            f"{0.5 * method.rate:g} Hz"
+        )
+
+
+def simulate(scenario: Scenario, progress: Progress | None = None, block: int = BLOCK) -> Run:
+    """Run a scenario and return its arrays.
+
+    Parameters
+    ----------
+    scenario : what to simulate
+    progress : called with the share that is done, from 0 to 1
+    block : instants computed at once; it bounds memory and never changes a result
+
+    Raises
+    ------
+    InputError
+        If the scenario cannot be run, see ``Simulation``.
+    """
+    simulation = Simulation(scenario, block)
+    blocks = list(simulation.blocks(progress))
+    waveform = {
+        name: np.concatenate([block.waveform[name] for block in blocks])
+        for name in blocks[0].waveform
+    }
+    return Run(
+        scenario,
+        np.concatenate([block.time for block in blocks]),
+        np.concatenate([block.pin for block in blocks]),
+        np.concatenate([block.codes for block in blocks]),
+        np.concatenate([block.voltage for block in blocks]),
+        np.concatenate([block.overrange for block in blocks]),
+        np.concatenate([block.waveform_time for block in blocks]),
+        waveform,
+        simulation.grid,
+        simulation.notes,
+    )

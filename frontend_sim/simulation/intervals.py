@@ -1,0 +1,52 @@
+"""Steps of any length by one table: the digits of the interval pick the exponentials."""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass
+from typing import Self
+
+import numpy as np
+
+from frontend_sim.analog.exponential import expm1, joined
+from frontend_sim.simulation.kernels import BASE, BITS, Real
+
+FINEST = 2.0**-17
+"""Norm of the system times the unit of time: what the second-order Taylor polynomial leaves out
+is below FINEST^3 / 6 = 8e-17."""
+
+
+@dataclass(frozen=True, eq=False)
+class IntervalTable:
+    """exp(M t) - I for any t from 0 to ``longest``, to rounding.
+
+    A power of two is taken as the unit of time, t is written in digits of base 64 of that unit,
+    and each digit of each level has its matrix in the table. One interval costs one
+    matrix-vector product for each digit and two for the rest.
+
+    Parameters
+    ----------
+    system : M, shape (N, N) [1/s]
+    unit : a power of two [s]
+    table : shape (levels, 64, N, N)
+    """
+
+    system: Real
+    unit: float
+    table: Real
+
+    @classmethod
+    def of(cls, system: Real, longest: float) -> Self:
+        """Tabulate a system for intervals up to ``longest`` [s]."""
+        norm = float(np.max(np.sum(np.abs(system), axis=1), initial=0.0))
+        unit = 2.0 ** math.floor(math.log2(FINEST / norm)) if norm > 0.0 else 1.0
+        # Below a rounding of the longest interval no finer unit is ever needed.
+        unit = max(unit, 2.0 ** math.floor(math.log2(max(longest, 1e-300)) - 60))
+        levels = max(math.ceil(math.log2(max(longest / unit, 1.0) * 2.0) / BITS), 1)
+        table = np.zeros((levels, BASE, *system.shape))
+        for level in range(levels):
+            table[level, 1] = expm1(system * (unit * float(BASE) ** level))
+            for digit in range(2, BASE):
+                half = digit // 2
+                table[level, digit] = joined(table[level, half], table[level, digit - half])
+        return cls(np.ascontiguousarray(system), unit, table)

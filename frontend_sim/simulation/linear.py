@@ -1,0 +1,156 @@
+"""A whole linear chain with all its drives: superposition of paths, one for each drive."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+from typing import Literal, Self
+
+import numpy as np
+
+from frontend_sim.analog.chain import Chain
+from frontend_sim.analog.discretize import METHODS, Method
+from frontend_sim.simulation.grid import GridDrive
+from frontend_sim.simulation.kernels import Real
+from frontend_sim.simulation.path import Outputs, Path, State
+from frontend_sim.simulation.piecewise import PiecewisePath
+from frontend_sim.simulation.since import Exponential, SincePoint, Trapezoid
+from frontend_sim.simulation.uniform import UniformPath
+from frontend_sim.stimulus.drive import Drive, PiecewiseDrive, UniformDrive
+
+Initial = Literal["settled", "rest"]
+States = tuple[tuple[State, ...], ...]
+
+
+@dataclass(frozen=True)
+class GridMethod:
+    """A discrete model: its name, its rate [Hz], its pre-warp frequency [Hz] if any."""
+
+    method: Method
+    rate: float
+    prewarp: float | None = None
+
+
+@dataclass(frozen=True)
+class Axis:
+    """Where a linear model is asked: the usual interval between instants and the longest [s]."""
+
+    interval: float
+    longest: float
+
+
+@dataclass(frozen=True, eq=False)
+class Group:
+    """Points of the chain that share one delay, and one path for each drive."""
+
+    rows: tuple[int, ...]
+    delay: float
+    before: Real
+    paths: tuple[Path, ...]
+
+
+@dataclass(frozen=True, eq=False)
+class Linear:
+    """Some points of a linear chain as functions of time.
+
+    Since the chain is linear, each drive advances states of its own in the way that is exact and
+    fast for it, and the outputs add up. A point behind a transport delay is asked that much
+    earlier; before t = 0 there is the settled value, or nothing where the chain was at rest.
+    """
+
+    groups: tuple[Group, ...]
+    count: int
+
+    @classmethod
+    def of(
+        cls,
+        chain: Chain,
+        drives: Sequence[Drive],
+        points: Sequence[int],
+        initial: Initial,
+        axis: Axis,
+        grid: GridMethod | None = None,
+    ) -> Self:
+        """Prepare the points of a chain, exact or, with a grid, as a discrete model gives them.
+
+        Raises
+        ------
+        ModelError
+            If no settled state exists, see ``Chain.settled``.
+        """
+        if grid is not None:
+            between: Literal["hold", "line"] = "hold" if grid.method == "zoh" else "line"
+            drives = [GridDrive(tuple(drives), grid.rate, between)]
+        level = sum(drive.initial for drive in drives)
+        x = chain.settled(level) if initial == "settled" else np.zeros(chain.order)
+        groups = []
+        for delay in np.unique(chain.delay[list(points)]):
+            rows = tuple(row for row, point in enumerate(points) if chain.delay[point] == delay)
+            outputs = Outputs.of(chain, [points[row] for row in rows])
+            before = outputs.c @ x + outputs.d * (level if initial == "settled" else 0.0)
+            paths = tuple(_path(chain, drive, outputs, initial, axis, grid) for drive in drives)
+            groups.append(Group(rows, float(delay), before, paths))
+        return cls(tuple(groups), len(points))
+
+    def start(self) -> States:
+        """Return the states at t = 0."""
+        return tuple(tuple(path.start() for path in group.paths) for group in self.groups)
+
+    def advance(self, states: States, number: int, instants: Real) -> tuple[States, Real]:
+        """Return the states at the last instant and the points' values, shape (points, K).
+
+        Parameters
+        ----------
+        number : number of the first instant since the start of the run
+        instants : increasing, shape (K,) [s]
+        """
+        y = np.zeros((self.count, len(instants)))
+        after = []
+        for group, held in zip(self.groups, states, strict=True):
+            earlier = instants - group.delay
+            begun = int(np.searchsorted(earlier, 0.0))
+            rows = list(group.rows)
+            y[rows, :begun] = group.before[:, None]
+            if begun < len(earlier):
+                moved = []
+                for path, state in zip(group.paths, held, strict=True):
+                    state, part = path.advance(state, number + begun, earlier[begun:])
+                    y[rows, begun:] += part
+                    moved.append(state)
+                held = tuple(moved)
+            after.append(held)
+        return tuple(after), y
+
+
+def _path(
+    chain: Chain,
+    drive: Drive,
+    outputs: Outputs,
+    initial: Initial,
+    axis: Axis,
+    grid: GridMethod | None,
+) -> Path:
+    if isinstance(drive, PiecewiseDrive):
+        return PiecewisePath.of(chain, drive, outputs, initial, axis.longest)
+    return _uniform(chain, drive, outputs, initial, axis, grid)
+
+
+def _uniform(
+    chain: Chain,
+    drive: UniformDrive,
+    outputs: Outputs,
+    initial: Initial,
+    axis: Axis,
+    grid: GridMethod | None,
+) -> Path:
+    step = 1.0 / drive.rate
+    method: Method = grid.method if grid else ("zoh" if drive.between == "hold" else "foh")
+    prewarp = grid.prewarp if grid else None
+    model = METHODS[method](chain, step, prewarp)
+    since: SincePoint
+    if method == "bilinear":
+        since = Trapezoid(chain, step, prewarp)
+    else:
+        since = Exponential.of(chain, drive.between, step)
+    stride = round(axis.interval * drive.rate)
+    return UniformPath.of(chain, drive, outputs, model, since, initial, stride)

@@ -1,0 +1,68 @@
+"""Between two points of a grid: where the states are at an instant off the grid."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import Protocol
+
+import numpy as np
+
+from frontend_sim.analog.block import Real
+from frontend_sim.analog.chain import Chain
+from frontend_sim.analog.discretize import half_step
+from frontend_sim.analog.exponential import augmented
+from frontend_sim.simulation import kernels
+from frontend_sim.simulation.intervals import IntervalTable
+from frontend_sim.stimulus.drive import Between
+
+
+class SincePoint(Protocol):
+    """Advances states in place from points of a grid to instants after them."""
+
+    def advance(self, states: Real, value: Real, rise: Real, since: Real) -> None:
+        """Advance states (K, n) by since (K,) [s]; value (K,) at the point, rise (K,) per step."""
+
+
+@dataclass(frozen=True, eq=False)
+class Exponential:
+    """The exact way, for an input that is held or goes in a line."""
+
+    table: IntervalTable
+
+    @classmethod
+    def of(cls, chain: Chain, between: Between, step: float) -> Exponential:
+        """Prepare for a grid of a step [s]."""
+        if between == "hold":
+            generator, readout = np.zeros((1, 1)), np.ones(1)
+        else:
+            generator, readout = np.array([[0.0, 1.0 / step], [0.0, 0.0]]), np.array([1.0, 0.0])
+        system = augmented(chain.a, chain.b, generator, readout)
+        return cls(IntervalTable.of(system, step))
+
+    def advance(self, states: Real, value: Real, rise: Real, since: Real) -> None:
+        """Advance by the tabulated exponential, see ``SincePoint``."""
+        if states.shape[1] and np.any(since):
+            table = self.table
+            kernels.since_point(
+                states, value, rise, since, table.unit, table.system, table.table
+            )
+
+
+@dataclass(frozen=True, eq=False)
+class Trapezoid:
+    """One trapezoidal step of the part of the interval, as the bilinear model would make it."""
+
+    chain: Chain
+    step: float
+    prewarp: float | None
+
+    def advance(self, states: Real, value: Real, rise: Real, since: Real) -> None:
+        """Advance by x += (I - k a)^-1 (2 k a x + k b (u0 + u1)), see ``SincePoint``."""
+        off = np.flatnonzero(since)
+        if len(off) == 0 or states.shape[1] == 0:
+            return
+        k = np.array([half_step(float(part), self.prewarp) for part in since[off]])
+        system = np.eye(self.chain.order) - k[:, None, None] * self.chain.a
+        u = 2.0 * value[off] + rise[off] * (since[off] / self.step)
+        right = 2.0 * k[:, None] * (states[off] @ self.chain.a.T) + (k * u)[:, None] * self.chain.b
+        states[off] += np.linalg.solve(system, right[:, :, None])[:, :, 0]

@@ -1,0 +1,237 @@
+"""From conversion to conversion over a uniform grid of points: the lifted recursion."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from functools import cached_property
+from typing import Literal, Self
+
+import numpy as np
+from numpy.typing import NDArray
+
+from frontend_sim.analog.block import Real
+from frontend_sim.analog.chain import Chain
+from frontend_sim.analog.discretize import DiscreteModel
+from frontend_sim.analog.exponential import power
+from frontend_sim.simulation import kernels
+from frontend_sim.simulation.path import Outputs, State
+from frontend_sim.simulation.since import SincePoint
+from frontend_sim.stimulus.drive import UniformDrive
+
+Index = NDArray[np.int64]
+
+LONGEST_SUM = 4096
+"""Most points in one weighted sum; longer stretches are cut after the conversion before them."""
+MOST_POINTS = 1 << 22
+"""Most points held in memory at once."""
+PRODUCT = 1 << 19
+"""Most multiplications in one matrix product: small enough that a BLAS library never splits it
+over threads, so the number of threads never shows in the result."""
+ROW = 32
+"""Outputs in one row of the waveform's matrix product."""
+WAVEFORM_TILE = 256 * ROW
+"""Instants in one product where every point is an output. All tiles are powers of two up to this
+one, so blocks that start at its multiples never cut a tile."""
+
+
+@dataclass(frozen=True, eq=False)
+class UniformPath:
+    """The chain steps over the points of a uniform drive, many at once.
+
+    With x~ = x - stop·u, a step of any discrete model is x~[j+1] = Phi x~[j] + gamma u[j], with
+    gamma = start + Phi stop, and over the d points between two conversions
+
+        x~[j+d] = Phi^d x~[j] + sum_i Phi^(d-1-i) gamma u[j+i],
+
+    one pass over the stimulus whatever the order of the chain. Source: Chen and Francis 1995,
+    *Optimal Sampled-Data Control Systems*, chapter 8 (lifting); from memory.
+    """
+
+    drive: UniformDrive
+    outputs: Outputs
+    model: DiscreteModel
+    gamma: Real
+    weights: Real
+    since: SincePoint
+    initial: Real
+    stride: int
+
+    @classmethod
+    def of(
+        cls,
+        chain: Chain,
+        drive: UniformDrive,
+        outputs: Outputs,
+        model: DiscreteModel,
+        since: SincePoint,
+        initial: Literal["settled", "rest"],
+        stride: int,
+    ) -> Self:
+        """Prepare the path for a discrete model of the chain with the drive's step.
+
+        ``stride`` is the usual number of points between two instants; it sets the size of the
+        matrix products alone.
+        """
+        x = chain.settled(drive.initial) if initial == "settled" else np.zeros(chain.order)
+        gamma = model.start + model.stop + model.e @ model.stop
+        return cls(drive, outputs, model, gamma, _weights(model.e, gamma), since, x, stride)
+
+    def start(self) -> State:
+        """Return the state at the last point at or before t = 0."""
+        node = int(self.drive.locate(np.zeros(1))[0][0])
+        u = self.drive.points(node, node + 1)[0]
+        return State(self.initial - self.model.stop * u, node)
+
+    def advance(self, state: State, number: int, instants: Real) -> tuple[State, Real]:
+        """Advance through instants, see ``Path``."""
+        index, since = self.drive.locate(instants)
+        y = np.empty((len(self.outputs.d), len(instants)))
+        done = 0
+        while done < len(instants):
+            stop = self._piece(index, int(state.node), number, done)
+            x, part = self._piece_of(state, number + done, index[done:stop], since[done:stop])
+            y[:, done:stop] = part
+            state = State(x, float(index[stop - 1]))
+            done = stop
+        return state, y
+
+    def _piece(self, index: Index, node: int, number: int, done: int) -> int:
+        """Return where the next piece ends: few enough points, and at a multiple of tiles."""
+        last = (int(index[done - 1]) if done else node) + MOST_POINTS
+        stop = max(int(np.searchsorted(index, last, "right")), done + 1)
+        if stop >= len(index):
+            return len(index)
+        aligned = (number + stop) // self._tile * self._tile - number
+        return aligned if aligned > done else stop
+
+    @cached_property
+    def _tile(self) -> int:
+        """Number of instants in one matrix product, a power of two."""
+        if self.stride == 1:
+            return WAVEFORM_TILE
+        most = PRODUCT // (max(self.stride, 1) * max(len(self.gamma), 8))
+        return 1 << min(max(most, 1).bit_length() - 1, 10)
+
+    @cached_property
+    def _rows(self) -> _EveryPoint:
+        return _EveryPoint.of(self.model.e, self.gamma, self.outputs)
+
+    @cached_property
+    def _powers(self) -> dict[int, Real]:
+        """Powers of the step that were needed so far."""
+        return {}
+
+    def _power(self, count: int) -> Real:
+        if count not in self._powers:
+            self._powers[count] = power(self.model.e, count)
+        return self._powers[count]
+
+    def _piece_of(
+        self, state: State, number: int, index: Index, since: Real
+    ) -> tuple[Real, Real]:
+        node = int(state.node)
+        points = self.drive.points(node, int(index[-1]) + 2)
+        here = index - node
+        count = np.diff(here, prepend=0)
+        x = state.x.copy()
+        y = np.empty((len(self.outputs.d), len(index)))
+        tile = self._tile
+        at = 0
+        while at < len(index):
+            stop = min((number + at) // tile * tile + tile - number, len(index))
+            part = slice(at, stop)
+            whole = stop - at == tile and np.all(count[part] == self.stride)
+            if whole and self.stride == 1 and not np.any(since[part]):
+                y[:, part] = self._every_point(x, points[here[at] - 1 : here[stop - 1] + 1])
+            else:
+                first = here[part] - count[part]
+                states = self._states(x, points, first, count[part], bool(whole))
+                y[:, part] = self._read(states, points, here[part], since[part])
+            at = stop
+        return x, y
+
+    def _states(
+        self, x: Real, points: Real, first: Index, count: Index, whole: bool
+    ) -> Real:
+        """Return x~ at the last of ``count`` points after each ``first``, shape (K, n)."""
+        steps = np.maximum(-(-count // LONGEST_SUM), 1)
+        owner = np.repeat(np.arange(len(count)), steps)
+        turn = np.arange(len(owner)) - np.repeat(np.cumsum(steps) - steps, steps)
+        parts = np.minimum(count[owner] - turn * LONGEST_SUM, LONGEST_SUM)
+        lengths, which = np.unique(parts, return_inverse=True)
+        powers = np.array([self._power(int(length)) for length in lengths])
+        sums = np.empty((len(owner), len(x)))
+        if whole and len(lengths) == 1 and lengths[0] > 1 and len(x):
+            d = int(lengths[0])
+            rows = points[first[0] : first[0] + len(owner) * d].reshape(-1, d)
+            np.matmul(rows, self.weights[:, -d:].T, out=sums)
+        else:
+            kernels.weigh(points, first[owner] + turn * LONGEST_SUM, parts, self.weights, sums)
+        states = np.empty_like(sums)
+        kernels.recur(x, powers, which, sums, states)
+        return states[np.cumsum(steps) - 1]
+
+    def _read(self, states: Real, points: Real, here: Index, since: Real) -> Real:
+        """Return the outputs at the instants, which lie ``since`` after their points."""
+        u, following = points[here], points[here + 1]
+        states = states + u[:, None] * self.model.stop
+        rise = following - u
+        self.since.advance(states, u, rise, since)
+        if self.drive.between == "line":
+            u = u + rise * (since * self.drive.rate)
+        y = np.empty((len(self.outputs.d), len(here)))
+        kernels.readout(states, u, self.outputs.c, self.outputs.d, y)
+        return y
+
+    def _every_point(self, x: Real, points: Real) -> Real:
+        """Return the outputs at every point: one product with the impulse response for each row.
+
+        ``points`` holds one point more than there are outputs, the one that x~ belongs to.
+        """
+        waveform = self._rows
+        feed = self.outputs.d + self.outputs.c @ self.model.stop
+        rows = points[:-1].reshape(-1, ROW)
+        sums = rows @ waveform.weights
+        states = np.empty((len(rows) + 1, len(x)))
+        states[0] = x
+        kernels.recur(x, waveform.step[None], np.zeros(len(rows), np.int64), sums, states[1:])
+        y = np.empty((len(feed), len(points) - 1))
+        for i in range(len(feed)):
+            part = rows @ waveform.impulse[i]
+            part += states[:-1] @ waveform.decay[i]
+            y[i] = part.ravel()
+            y[i] += feed[i] * points[1:]
+        return y
+
+
+@dataclass(frozen=True, eq=False)
+class _EveryPoint:
+    """Matrices of one row of ROW outputs: from the row's points, and from x~ at its start."""
+
+    impulse: Real
+    decay: Real
+    weights: Real
+    step: Real
+
+    @classmethod
+    def of(cls, e: Real, gamma: Real, outputs: Outputs) -> _EveryPoint:
+        n, p = len(gamma), len(outputs.d)
+        powers = [power(e, i) for i in range(ROW + 1)]
+        impulse, decay = np.zeros((p, ROW, ROW)), np.empty((p, n, ROW))
+        for i in range(1, ROW + 1):
+            decay[:, :, i - 1] = outputs.c + outputs.c @ powers[i]
+            for j in range(i):
+                response = gamma + powers[i - 1 - j] @ gamma
+                impulse[:, j, i - 1] = outputs.c @ response
+        weights = np.array([gamma + powers[ROW - 1 - j] @ gamma for j in range(ROW)])
+        return cls(impulse, decay, weights.reshape(ROW, n), powers[ROW])
+
+
+def _weights(e: Real, gamma: Real) -> Real:
+    """Return Phi^age gamma for ages LONGEST_SUM - 1 down to 0, shape (n, LONGEST_SUM)."""
+    columns = gamma[:, None]
+    square = e
+    while columns.shape[1] < LONGEST_SUM:
+        columns = np.concatenate([columns, columns + square @ columns], axis=1)
+        square = 2.0 * square + square @ square
+    return np.ascontiguousarray(columns[:, ::-1])
