@@ -9,7 +9,7 @@ from typing import Self
 import numpy as np
 
 from frontend_sim.analog.exponential import expm1, joined
-from frontend_sim.simulation.kernels import BASE, BITS, Real
+from frontend_sim.simulation.kernels import BASE, BITS, Index, Real, reach
 
 FINEST = 2.0**-17
 """Norm of the system times the unit of time: what the second-order Taylor polynomial leaves out
@@ -29,15 +29,17 @@ class IntervalTable:
     system : M, shape (N, N) [1/s]
     unit : a power of two [s]
     table : shape (levels, 64, N, N)
+    stop : columns of the chain's states that each of their rows needs, shape (n,)
     """
 
     system: Real
     unit: float
     table: Real
+    stop: Index
 
     @classmethod
-    def of(cls, system: Real, longest: float) -> Self:
-        """Tabulate a system for intervals up to ``longest`` [s]."""
+    def of(cls, system: Real, states: int, longest: float) -> Self:
+        """Tabulate a system, the first ``states`` of it the chain's, for intervals up to longest [s]."""
         norm = float(np.max(np.sum(np.abs(system), axis=1), initial=0.0))
         unit = 2.0 ** math.floor(math.log2(FINEST / norm)) if norm > 0.0 else 1.0
         # Below a rounding of the longest interval no finer unit is ever needed.
@@ -49,4 +51,4 @@ class IntervalTable:
             for digit in range(2, BASE):
                 half = digit // 2
                 table[level, digit] = joined(table[level, half], table[level, digit - half])
-        return cls(np.ascontiguousarray(system), unit, table)
+        return cls(np.ascontiguousarray(system), unit, table, reach(table[:, :, :states, :states]))

@@ -15,13 +15,37 @@ BITS = 6
 BASE = 1 << BITS
 
 
+def reach(matrix: Real) -> Index:
+    """Return for each row of (..., n, n) matrices how many columns it needs, shape (n,).
+
+    A chain is block lower triangular, so the loops below leave about half of the products out.
+    """
+    used = np.any(matrix != 0.0, axis=tuple(range(matrix.ndim - 2)))
+    n = used.shape[1]
+    return np.where(used.any(axis=1), n - np.argmax(used[:, ::-1], axis=1), 0).astype(np.int64)
+
+
+@njit(cache=True, inline="always")
+def row_times(matrix: Any, z: Any, r: int, n: int, stop: Any) -> float:
+    """Return row r of a matrix times z = [x; g], over the columns that the row needs."""
+    total = 0.0
+    if r < n:
+        for c in range(stop[r]):
+            total += matrix[r, c] * z[c]
+    for c in range(n, len(z)):
+        total += matrix[r, c] * z[c]
+    return total
+
+
 @njit(cache=True)
-def advance(z: Any, work: Any, n: int, dt: float, unit: float, system: Any, table: Any) -> None:
+def advance(
+    z: Any, work: Any, n: int, dt: float, unit: float, system: Any, table: Any, stop: Any
+) -> None:
     """Advance z = [x; g] by dt: the digits of dt/unit through the table, the rest by Taylor.
 
     table[level, digit] = exp(system · digit · BASE^level · unit) - I; unit is a power of two, so
     digits and rest are exact. The order of the Taylor polynomial is two, enough for a rest below
-    2^-17 over the norm of the system.
+    2^-17 over the norm of the system. stop (n,) are the columns of x that each row needs.
     """
     size = len(z)
     count = np.int64(dt / unit)
@@ -32,29 +56,22 @@ def advance(z: Any, work: Any, n: int, dt: float, unit: float, system: Any, tabl
         if digit:
             e = table[level, digit]
             for r in range(size):
-                total = 0.0
-                for c in range(0 if r < n else n, size):
-                    total += e[r, c] * z[c]
-                work[r] = total
+                work[r] = row_times(e, z, r, n, stop)
             for r in range(size):
                 z[r] += work[r]
         count >>= BITS
         level += 1
     if rest > 0.0:
         for r in range(size):
-            total = 0.0
-            for c in range(0 if r < n else n, size):
-                total += system[r, c] * z[c]
-            work[r] = total
+            work[r] = row_times(system, z, r, n, stop)
         for r in range(size):
-            total = 0.0
-            for c in range(0 if r < n else n, size):
-                total += system[r, c] * work[c]
-            z[r] += rest * (work[r] + 0.5 * rest * total)
+            z[r] += rest * (work[r] + 0.5 * rest * row_times(system, work, r, n, stop))
 
 
 @njit(cache=True)
-def march(x: Any, start: Any, dt: Any, unit: float, system: Any, table: Any, states: Any) -> None:
+def march(
+    x: Any, start: Any, dt: Any, unit: float, system: Any, table: Any, stop: Any, states: Any
+) -> None:
     """Go from node to node: states[k] after dt[k] from start[k], the generator's state there.
 
     x (n,) is advanced in place; start (K, m); states (K, n).
@@ -64,7 +81,7 @@ def march(x: Any, start: Any, dt: Any, unit: float, system: Any, table: Any, sta
     for k in range(len(dt)):
         z[:n] = x
         z[n:] = start[k]
-        advance(z, work, n, dt[k], unit, system, table)
+        advance(z, work, n, dt[k], unit, system, table, stop)
         x[:] = z[:n]
         states[k] = x
 
@@ -82,7 +99,7 @@ def readout(states: Any, u: Any, c: Any, d: Any, outputs: Any) -> None:
 
 @njit(cache=True)
 def since_point(
-    states: Any, value: Any, rise: Any, since: Any, unit: float, system: Any, table: Any
+    states: Any, value: Any, rise: Any, since: Any, unit: float, system: Any, table: Any, stop: Any
 ) -> None:
     """Advance states[k] in place by since[k] from a point of a uniform drive.
 
@@ -97,7 +114,7 @@ def since_point(
             z[n] = value[k]
             if size > n + 1:
                 z[n + 1] = rise[k]
-            advance(z, work, n, since[k], unit, system, table)
+            advance(z, work, n, since[k], unit, system, table, stop)
             states[k] = z[:n]
 
 
@@ -120,7 +137,7 @@ def weigh(points: Any, first: Any, count: Any, weights: Any, sums: Any) -> None:
 
 
 @njit(cache=True)
-def recur(x: Any, powers: Any, which: Any, sums: Any, states: Any) -> None:
+def recur(x: Any, powers: Any, stop: Any, which: Any, sums: Any, states: Any) -> None:
     """x += powers[which[k]] x + sums[k], kept in states[k]; powers are less the identity."""
     n = len(x)
     work = np.empty(n)
@@ -128,9 +145,41 @@ def recur(x: Any, powers: Any, which: Any, sums: Any, states: Any) -> None:
         e = powers[which[k]]
         for r in range(n):
             total = sums[k, r]
-            for c in range(n):
+            for c in range(stop[r]):
                 total += e[r, c] * x[c]
             work[r] = total
         for r in range(n):
             x[r] += work[r]
         states[k] = x
+
+
+@njit(cache=True)
+def recur_and_read(
+    x: Any, power: Any, stop: Any, sums: Any, u: Any, c: Any, feed: Any, y: Any
+) -> None:
+    """x += power x + sums[k]; y[i, k] = c[i] · x + feed[i] u[k]."""
+    n = len(x)
+    work = np.empty(n)
+    for k in range(len(u)):
+        for r in range(n):
+            total = sums[k, r]
+            for s in range(stop[r]):
+                total += power[r, s] * x[s]
+            work[r] = total
+        for r in range(n):
+            x[r] += work[r]
+        for i in range(len(feed)):
+            total = feed[i] * u[k]
+            for r in range(n):
+                total += c[i, r] * x[r]
+            y[i, k] = total
+
+
+@njit(cache=True)
+def steady(index: Any, since: Any, before: int, stride: int) -> tuple[bool, bool]:
+    """Tell whether every index is ``stride`` after the one before, and every instant on a point."""
+    uneven, off = False, False
+    for k in range(len(index)):
+        uneven |= index[k] != before + (k + 1) * stride
+        off |= since[k] != 0.0
+    return not uneven, not (uneven or off)

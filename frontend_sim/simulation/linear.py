@@ -104,22 +104,35 @@ class Linear:
         number : number of the first instant since the start of the run
         instants : increasing, shape (K,) [s]
         """
-        y = np.zeros((self.count, len(instants)))
-        after = []
-        for group, held in zip(self.groups, states, strict=True):
-            earlier = instants - group.delay
-            begun = int(np.searchsorted(earlier, 0.0))
-            rows = list(group.rows)
-            y[rows, :begun] = group.before[:, None]
-            if begun < len(earlier):
-                moved = []
-                for path, state in zip(group.paths, held, strict=True):
-                    state, part = path.advance(state, number + begun, earlier[begun:])
-                    y[rows, begun:] += part
-                    moved.append(state)
-                held = tuple(moved)
-            after.append(held)
-        return tuple(after), y
+        parts = [
+            _advanced(group, held, number, instants)
+            for group, held in zip(self.groups, states, strict=True)
+        ]
+        after = tuple(held for held, _ in parts)
+        if len(parts) == 1:
+            return after, parts[0][1]
+        y = np.empty((self.count, len(instants)))
+        for group, (_, values) in zip(self.groups, parts, strict=True):
+            y[list(group.rows)] = values
+        return after, y
+
+
+def _advanced(
+    group: Group, states: tuple[State, ...], number: int, instants: Real
+) -> tuple[tuple[State, ...], Real]:
+    """Advance the paths of one group, and add their outputs up."""
+    earlier = instants - group.delay if group.delay else instants
+    begun = int(np.searchsorted(earlier, 0.0))
+    before = np.repeat(group.before[:, None], begun, axis=1)
+    if begun == len(earlier):
+        return states, before
+    moved, total = [], None
+    for path, state in zip(group.paths, states, strict=True):
+        state, values = path.advance(state, number + begun, earlier[begun:])
+        moved.append(state)
+        total = values if total is None else total + values
+    assert total is not None
+    return tuple(moved), np.concatenate([before, total], axis=1) if begun else total
 
 
 def _path(
@@ -151,6 +164,6 @@ def _uniform(
     if method == "bilinear":
         since = Trapezoid(chain, step, prewarp)
     else:
-        since = Exponential.of(chain, drive.between, step)
+        since = Exponential(chain, drive.between, step)
     stride = round(axis.interval * drive.rate)
     return UniformPath.of(chain, drive, outputs, model, since, initial, stride)

@@ -44,7 +44,7 @@ class PiecewisePath:
         """Prepare the path; ``longest`` is the longest interval between instants [s]."""
         system = augmented(chain.a, chain.b, drive.generator, drive.readout)
         x = chain.settled(drive.initial) if initial == "settled" else np.zeros(chain.order)
-        return cls(drive, outputs, IntervalTable.of(system, longest), x)
+        return cls(drive, outputs, IntervalTable.of(system, chain.order, longest), x)
 
     def start(self) -> State:
         """Return the state at t = 0."""
@@ -71,7 +71,9 @@ class PiecewisePath:
     def _march(self, x: Real, g: Real, steps: Real, states: Real) -> None:
         if len(x) and len(steps):
             table = self.table
-            kernels.march(x, g, steps, table.unit, table.system, table.table, states)
+            kernels.march(
+                x, g, steps, table.unit, table.system, table.table, table.stop, states
+            )
 
 
 def _snapped(instants: Real, events: Real) -> Real:

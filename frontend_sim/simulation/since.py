@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
+from functools import cached_property
 from typing import Protocol
 
 import numpy as np
@@ -25,26 +26,29 @@ class SincePoint(Protocol):
 
 @dataclass(frozen=True, eq=False)
 class Exponential:
-    """The exact way, for an input that is held or goes in a line."""
+    """The exact way, for an input that is held or goes in a line over steps [s] of a grid."""
 
-    table: IntervalTable
+    chain: Chain
+    between: Between
+    step: float
 
-    @classmethod
-    def of(cls, chain: Chain, between: Between, step: float) -> Exponential:
-        """Prepare for a grid of a step [s]."""
-        if between == "hold":
+    @cached_property
+    def _table(self) -> IntervalTable:
+        """Tabulated at the first instant off the grid; many runs have none."""
+        if self.between == "hold":
             generator, readout = np.zeros((1, 1)), np.ones(1)
         else:
-            generator, readout = np.array([[0.0, 1.0 / step], [0.0, 0.0]]), np.array([1.0, 0.0])
-        system = augmented(chain.a, chain.b, generator, readout)
-        return cls(IntervalTable.of(system, step))
+            generator = np.array([[0.0, 1.0 / self.step], [0.0, 0.0]])
+            readout = np.array([1.0, 0.0])
+        system = augmented(self.chain.a, self.chain.b, generator, readout)
+        return IntervalTable.of(system, self.chain.order, self.step)
 
     def advance(self, states: Real, value: Real, rise: Real, since: Real) -> None:
         """Advance by the tabulated exponential, see ``SincePoint``."""
         if states.shape[1] and np.any(since):
-            table = self.table
+            table = self._table
             kernels.since_point(
-                states, value, rise, since, table.unit, table.system, table.table
+                states, value, rise, since, table.unit, table.system, table.table, table.stop
             )
 
 

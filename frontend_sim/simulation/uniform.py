@@ -27,9 +27,9 @@ MOST_POINTS = 1 << 22
 PRODUCT = 1 << 19
 """Most multiplications in one matrix product: small enough that a BLAS library never splits it
 over threads, so the number of threads never shows in the result."""
-ROW = 32
+ROW = 64
 """Outputs in one row of the waveform's matrix product."""
-WAVEFORM_TILE = 256 * ROW
+WAVEFORM_TILE = 128 * ROW
 """Instants in one product where every point is an output. All tiles are powers of two up to this
 one, so blocks that start at its multiples never cut a tile."""
 
@@ -86,14 +86,12 @@ class UniformPath:
         """Advance through instants, see ``Path``."""
         index, since = self.drive.locate(instants)
         y = np.empty((len(self.outputs.d), len(instants)))
-        done = 0
+        x, node, done = state.x.copy(), int(state.node), 0
         while done < len(instants):
-            stop = self._piece(index, int(state.node), number, done)
-            x, part = self._piece_of(state, number + done, index[done:stop], since[done:stop])
-            y[:, done:stop] = part
-            state = State(x, float(index[stop - 1]))
-            done = stop
-        return state, y
+            part = slice(done, self._piece(index, node, number, done))
+            self._fill(x, node, number + done, index[part], since[part], y[:, part])
+            node, done = int(index[part.stop - 1]), part.stop
+        return State(x, node), y
 
     def _piece(self, index: Index, node: int, number: int, done: int) -> int:
         """Return where the next piece ends: few enough points, and at a multiple of tiles."""
@@ -114,7 +112,7 @@ class UniformPath:
 
     @cached_property
     def _rows(self) -> _EveryPoint:
-        return _EveryPoint.of(self.model.e, self.gamma, self.outputs)
+        return _EveryPoint.of(self.model.e, self.gamma, self.outputs, self._feed)
 
     @cached_property
     def _powers(self) -> dict[int, Real]:
@@ -126,50 +124,63 @@ class UniformPath:
             self._powers[count] = power(self.model.e, count)
         return self._powers[count]
 
-    def _piece_of(
-        self, state: State, number: int, index: Index, since: Real
-    ) -> tuple[Real, Real]:
-        node = int(state.node)
+    def _fill(
+        self, x: Real, node: int, number: int, index: Index, since: Real, y: Real
+    ) -> None:
+        """Advance x~ in place from a point to the last of ``index``, and fill in the outputs."""
         points = self.drive.points(node, int(index[-1]) + 2)
-        here = index - node
-        count = np.diff(here, prepend=0)
-        x = state.x.copy()
-        y = np.empty((len(self.outputs.d), len(index)))
-        tile = self._tile
-        at = 0
+        at, before = 0, node
         while at < len(index):
-            stop = min((number + at) // tile * tile + tile - number, len(index))
+            stop = min((number + at) // self._tile * self._tile + self._tile - number, len(index))
             part = slice(at, stop)
-            whole = stop - at == tile and np.all(count[part] == self.stride)
-            if whole and self.stride == 1 and not np.any(since[part]):
-                y[:, part] = self._every_point(x, points[here[at] - 1 : here[stop - 1] + 1])
+            steady, on_points = False, False
+            if stop - at == self._tile and self.stride <= LONGEST_SUM:
+                steady, on_points = kernels.steady(index[part], since[part], before, self.stride)
+            first = before - node
+            if steady and on_points and self.stride == 1:
+                self._every_point(x, points[first : first + self._tile + 1], y[:, part])
+            elif steady and on_points:
+                self._every_stride(x, points[first : index[stop - 1] - node + 1], y[:, part])
             else:
-                first = here[part] - count[part]
-                states = self._states(x, points, first, count[part], bool(whole))
-                y[:, part] = self._read(states, points, here[part], since[part])
-            at = stop
-        return x, y
+                count = np.diff(index[part], prepend=before)
+                states = self._states(x, points, first, count, steady)
+                y[:, part] = self._read(states, points, index[part] - node, since[part])
+            at, before = stop, int(index[stop - 1])
 
-    def _states(
-        self, x: Real, points: Real, first: Index, count: Index, whole: bool
-    ) -> Real:
-        """Return x~ at the last of ``count`` points after each ``first``, shape (K, n)."""
+    def _states(self, x: Real, points: Real, first: int, count: Index, steady: bool) -> Real:
+        """Return x~ after each of ``count`` points in a row from point ``first``, shape (K, n)."""
+        if steady and self.stride > 1:
+            rows = points[first : first + len(count) * self.stride].reshape(-1, self.stride)
+            which = np.zeros(len(count), np.int64)
+            return self._recur(x, np.array([self._power(self.stride)]), which, self._sums(rows))
         steps = np.maximum(-(-count // LONGEST_SUM), 1)
         owner = np.repeat(np.arange(len(count)), steps)
         turn = np.arange(len(owner)) - np.repeat(np.cumsum(steps) - steps, steps)
         parts = np.minimum(count[owner] - turn * LONGEST_SUM, LONGEST_SUM)
+        starts = first + np.cumsum(parts) - parts
         lengths, which = np.unique(parts, return_inverse=True)
         powers = np.array([self._power(int(length)) for length in lengths])
         sums = np.empty((len(owner), len(x)))
-        if whole and len(lengths) == 1 and lengths[0] > 1 and len(x):
-            d = int(lengths[0])
-            rows = points[first[0] : first[0] + len(owner) * d].reshape(-1, d)
-            np.matmul(rows, self.weights[:, -d:].T, out=sums)
-        else:
-            kernels.weigh(points, first[owner] + turn * LONGEST_SUM, parts, self.weights, sums)
+        kernels.weigh(points, starts, parts, self.weights, sums)
+        return self._recur(x, powers, which, sums)[np.cumsum(steps) - 1]
+
+    def _sums(self, rows: Real) -> Real:
+        """Return the weighted sums over rows of points, shape (K, n): one product."""
+        return rows @ self._stride_weights
+
+    @cached_property
+    def _stride_weights(self) -> Real:
+        """The weights of one stride, contiguous for the matrix product, shape (stride, n)."""
+        return np.ascontiguousarray(self.weights[:, -self.stride :].T)
+
+    @cached_property
+    def _reach(self) -> Index:
+        return kernels.reach(self.model.e)
+
+    def _recur(self, x: Real, powers: Real, which: Index, sums: Real) -> Real:
         states = np.empty_like(sums)
-        kernels.recur(x, powers, which, sums, states)
-        return states[np.cumsum(steps) - 1]
+        kernels.recur(x, powers, self._reach, which, sums, states)
+        return states
 
     def _read(self, states: Real, points: Real, here: Index, since: Real) -> Real:
         """Return the outputs at the instants, which lie ``since`` after their points."""
@@ -183,25 +194,37 @@ class UniformPath:
         kernels.readout(states, u, self.outputs.c, self.outputs.d, y)
         return y
 
-    def _every_point(self, x: Real, points: Real) -> Real:
-        """Return the outputs at every point: one product with the impulse response for each row.
+    @cached_property
+    def _feed(self) -> Real:
+        """What the outputs see of u itself when they are written in x~, shape (p,)."""
+        return np.asarray(self.outputs.d + self.outputs.c @ self.model.stop)
 
-        ``points`` holds one point more than there are outputs, the one that x~ belongs to.
+    def _every_stride(self, x: Real, points: Real, y: Real) -> None:
+        """Fill in the outputs at every stride-th point, the first one stride after points[0]."""
+        sums = self._sums(points[:-1].reshape(-1, self.stride))
+        u = points[self.stride :: self.stride]
+        kernels.recur_and_read(
+            x, self._power(self.stride), self._reach, sums, u, self.outputs.c, self._feed, y
+        )
+
+    def _every_point(self, x: Real, points: Real, y: Real) -> None:
+        """Fill in the outputs at every point after points[0], in rows of ROW.
+
+        One product with the impulse response for each row; the newest point of a row is the first
+        of the next and is added apart.
         """
-        waveform = self._rows
-        feed = self.outputs.d + self.outputs.c @ self.model.stop
+        matrices = self._rows
         rows = points[:-1].reshape(-1, ROW)
-        sums = rows @ waveform.weights
         states = np.empty((len(rows) + 1, len(x)))
         states[0] = x
-        kernels.recur(x, waveform.step[None], np.zeros(len(rows), np.int64), sums, states[1:])
-        y = np.empty((len(feed), len(points) - 1))
-        for i in range(len(feed)):
-            part = rows @ waveform.impulse[i]
-            part += states[:-1] @ waveform.decay[i]
-            y[i] = part.ravel()
-            y[i] += feed[i] * points[1:]
-        return y
+        which = np.zeros(len(rows), np.int64)
+        sums = rows @ matrices.weights
+        kernels.recur(x, matrices.step[None], self._reach, which, sums, states[1:])
+        for i, feed in enumerate(self._feed):
+            part = y[i].reshape(-1, ROW)
+            np.matmul(rows, matrices.impulse[i], out=part)
+            part += states[:-1] @ matrices.decay[i]
+            part[:, -1] += feed * points[ROW::ROW]
 
 
 @dataclass(frozen=True, eq=False)
@@ -214,7 +237,7 @@ class _EveryPoint:
     step: Real
 
     @classmethod
-    def of(cls, e: Real, gamma: Real, outputs: Outputs) -> _EveryPoint:
+    def of(cls, e: Real, gamma: Real, outputs: Outputs, feed: Real) -> _EveryPoint:
         n, p = len(gamma), len(outputs.d)
         powers = [power(e, i) for i in range(ROW + 1)]
         impulse, decay = np.zeros((p, ROW, ROW)), np.empty((p, n, ROW))
@@ -223,6 +246,8 @@ class _EveryPoint:
             for j in range(i):
                 response = gamma + powers[i - 1 - j] @ gamma
                 impulse[:, j, i - 1] = outputs.c @ response
+            if i < ROW:
+                impulse[:, i, i - 1] += feed
         weights = np.array([gamma + powers[ROW - 1 - j] @ gamma for j in range(ROW)])
         return cls(impulse, decay, weights.reshape(ROW, n), powers[ROW])
 

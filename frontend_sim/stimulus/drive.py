@@ -79,13 +79,11 @@ class UniformDrive(ABC):
         A time within four units in the last place of a point is that point: conversions at k/rate
         then meet the points of a record of the same rate whatever the rounding of both.
         """
-        position = (times - self.origin) * self.rate
-        nearest = np.rint(position)
-        slack = 4.0 * np.finfo(np.float64).eps * np.maximum(np.abs(times) * self.rate, 1.0)
-        at_point = np.abs(position - nearest) <= slack
-        index = np.where(at_point, nearest, np.floor(position))
-        since = np.maximum(times - (self.origin + index / self.rate), 0.0)
-        return index.astype(np.int64), np.where(at_point, 0.0, since)
+        from frontend_sim.stimulus.locate import locate
+
+        index, since = np.empty(len(times), np.int64), np.empty(len(times))
+        locate(times, self.origin, self.rate, 4.0 * np.finfo(np.float64).eps, index, since)
+        return index, since
 
     def values(self, times: Real) -> Real:
         """Return u at times [s], shape (K,)."""
