@@ -1,1 +1,138 @@
-"""."""
+"""Simulate sampled sensor front ends: what arrives, the analog chain, the ADC, the codes.
+
+    import frontend_sim as fe
+    scenario = fe.load_scenario("scenarios/well_pump_valve_slam.toml")
+    run = fe.simulate(scenario)
+    run.codes, run.time, run.pin             # NumPy arrays
+    fe.save_record(run, "valve_slam.h5")
+
+The names below are the public interface. They load on first use, so that importing the package
+costs next to nothing.
+"""
+
+from __future__ import annotations
+
+from importlib import import_module, metadata
+from typing import TYPE_CHECKING
+
+if TYPE_CHECKING:
+    from frontend_sim.analog.chain import Chain, chain_of
+    from frontend_sim.archive import (
+        Record,
+        open_record,
+        record_run,
+        rerun,
+        rerun_scenario,
+        save_record,
+    )
+    from frontend_sim.converter.adc import Adc
+    from frontend_sim.errors import (
+        FrontendSimError,
+        InputError,
+        ModelError,
+        OutputError,
+        QuantityError,
+        RecordError,
+        RecordingError,
+        ScenarioError,
+    )
+    from frontend_sim.measure.response import Inspection, inspect_scenario
+    from frontend_sim.present import plot_inspection, plot_run
+    from frontend_sim.scenario import (
+        Scenario,
+        SimulationSettings,
+        check_scenario,
+        json_schema,
+        load_scenario,
+        parse_scenario,
+        scenario_text,
+    )
+    from frontend_sim.simulation import GridReport, Run, RunBlock, Simulation, simulate
+
+_HOME = {
+    "Adc": "converter.adc",
+    "Chain": "analog.chain",
+    "FrontendSimError": "errors",
+    "GridReport": "simulation",
+    "InputError": "errors",
+    "Inspection": "measure.response",
+    "ModelError": "errors",
+    "OutputError": "errors",
+    "QuantityError": "errors",
+    "Record": "archive",
+    "RecordError": "errors",
+    "RecordingError": "errors",
+    "Run": "simulation",
+    "RunBlock": "simulation",
+    "Scenario": "scenario",
+    "ScenarioError": "errors",
+    "Simulation": "simulation",
+    "SimulationSettings": "scenario",
+    "chain_of": "analog.chain",
+    "check_scenario": "scenario",
+    "inspect_scenario": "measure.response",
+    "json_schema": "scenario",
+    "load_scenario": "scenario",
+    "open_record": "archive",
+    "parse_scenario": "scenario",
+    "plot_inspection": "present",
+    "plot_run": "present",
+    "record_run": "archive",
+    "rerun": "archive",
+    "rerun_scenario": "archive",
+    "save_record": "archive",
+    "scenario_text": "scenario",
+    "simulate": "simulation",
+}
+
+__all__ = [
+    "Adc",
+    "Chain",
+    "FrontendSimError",
+    "GridReport",
+    "InputError",
+    "Inspection",
+    "ModelError",
+    "OutputError",
+    "QuantityError",
+    "Record",
+    "RecordError",
+    "RecordingError",
+    "Run",
+    "RunBlock",
+    "Scenario",
+    "ScenarioError",
+    "Simulation",
+    "SimulationSettings",
+    "chain_of",
+    "check_scenario",
+    "inspect_scenario",
+    "json_schema",
+    "load_scenario",
+    "open_record",
+    "parse_scenario",
+    "plot_inspection",
+    "plot_run",
+    "record_run",
+    "rerun",
+    "rerun_scenario",
+    "save_record",
+    "scenario_text",
+    "simulate",
+]
+
+
+def __getattr__(name: str) -> object:
+    """Load a public name where it lives, at its first use."""
+    if name == "__version__":
+        return metadata.version("frontend-sim")
+    if name not in _HOME:
+        raise AttributeError(f"module 'frontend_sim' has no attribute {name!r}")
+    value = getattr(import_module(f"frontend_sim.{_HOME[name]}"), name)
+    globals()[name] = value
+    return value
+
+
+def __dir__() -> list[str]:
+    """List the public names."""
+    return [*__all__, "__version__"]

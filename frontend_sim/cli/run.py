@@ -1,0 +1,76 @@
+"""``frontend-sim run``: simulate one scenario and store it."""
+
+from __future__ import annotations
+
+from pathlib import Path
+from typing import TYPE_CHECKING
+
+import click
+
+from frontend_sim.cli.console import print_json, print_notes, print_tables, progress_bar
+
+if TYPE_CHECKING:
+    from frontend_sim.archive import Record
+
+
+@click.command("run")
+@click.argument("scenario", type=click.Path(path_type=Path))
+@click.option(
+    "-o",
+    "--output",
+    type=click.Path(path_type=Path),
+    metavar="RECORD.h5",
+    help="Where the record goes; by default the scenario's name with .h5, in this folder.",
+)
+@click.option(
+    "--plot",
+    type=click.Path(path_type=Path),
+    metavar="FILE",
+    help="Also draw the run into FILE, .png or .svg.",
+)
+@click.option("--overwrite", is_flag=True, help="Replace the record and the plot if they exist.")
+@click.option("--json", "as_json", is_flag=True, help="Print results as JSON.")
+def command(
+    scenario: Path, output: Path | None, plot: Path | None, overwrite: bool, as_json: bool
+) -> int:
+    """Simulate SCENARIO and store the run as an HDF5 record.
+
+    Exit status: 0 all checks hold, 1 a check fails, 2 the input is wrong.
+    """
+    from frontend_sim.archive import open_record, record_run
+    from frontend_sim.present import check_plot_target
+    from frontend_sim.scenario import load_scenario
+    from frontend_sim.simulation import Simulation
+
+    values = load_scenario(scenario)
+    target = output or Path(f"{scenario.stem}.h5")
+    if plot is not None:
+        check_plot_target(plot, overwrite)
+    with progress_bar(scenario.name) as advance:
+        path = record_run(
+            Simulation(values),
+            target,
+            overwrite=overwrite,
+            progress=advance,
+            inputs=[scenario],
+        )
+    with open_record(path) as record:
+        _tell(record, target, plot, overwrite, as_json)
+        return 1 if record.verdict == "fails" else 0
+
+
+def _tell(
+    record: Record, target: Path, plot: Path | None, overwrite: bool, as_json: bool
+) -> None:
+    from frontend_sim.present import plot_run, run_summary, run_tables
+
+    print_notes(record.notes)
+    if as_json:
+        print_json({"record": str(target), **run_summary(record)})
+    else:
+        print_tables(run_tables(record))
+        click.echo(f"record: {target}")
+    if plot is not None:
+        plot_run(record, plot, overwrite=overwrite)
+        if not as_json:
+            click.echo(f"plot: {plot}")
