@@ -3,13 +3,14 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from functools import cached_property
 from typing import TYPE_CHECKING
 
 import numpy as np
 
 from frontend_sim.analog.block import Block, Complex, Real
+from frontend_sim.analog.noise import NoiseInput, NoiseModel, model_of
 from frontend_sim.errors import ModelError
 
 if TYPE_CHECKING:
@@ -17,14 +18,18 @@ if TYPE_CHECKING:
 
     from frontend_sim.analog.stages.base import Stage
 
+ROOM_TEMPERATURE = 298.15
+"""25 degrees Celsius, where a scenario says nothing else [K]."""
+
 
 @dataclass(frozen=True, eq=False)
 class Section:
-    """What one stage brings into the chain: its name, its blocks in order, its pure delay [s]."""
+    """What one stage brings into the chain: name, blocks in order, pure delay [s], noise sources."""
 
     name: str
     blocks: tuple[Block, ...]
     delay: float
+    noise: tuple[NoiseInput, ...] = ()
 
 
 @dataclass(frozen=True, eq=False)
@@ -45,6 +50,8 @@ class Chain:
     d : shape (p,) [1]
     delay : shape (p,) [s]
     points : names of the p points
+    noise_b : columns of the q noise sources, shape (n, q) [1/s]
+    noise_d : their direct way to each point, shape (p, q) [1]
     """
 
     sections: tuple[Section, ...]
@@ -54,6 +61,8 @@ class Chain:
     d: Real
     delay: Real
     points: tuple[str, ...]
+    noise_b: Real
+    noise_d: Real
 
     @property
     def order(self) -> int:
@@ -92,6 +101,29 @@ class Chain:
                 states.append(x)
         return np.concatenate(states) if states else np.empty(0)
 
+    def noise_model(self, lowest: float) -> NoiseModel:
+        """Return what the noise sources of all stages do at the pin.
+
+        Parameters
+        ----------
+        lowest : frequency down to which 1/f noise is made [Hz]
+
+        Raises
+        ------
+        ModelError
+            If a white source reaches the pin unfiltered.
+        """
+        sources = [
+            replace(source, name=f"{part.name}: {source.name}")
+            for part in self.sections
+            for source in part.noise
+        ]
+        inputs = [
+            (source, self.noise_b[:, j], float(self.noise_d[-1, j]))
+            for j, source in enumerate(sources)
+        ]
+        return model_of(self.a, self.c[-1], inputs, lowest)
+
     def state_space(self) -> control.StateSpace:
         """Return the chain as a ``control.StateSpace``, from the stimulus to the pin.
 
@@ -124,7 +156,7 @@ class Chain:
 
     def without_delay(self) -> Chain:
         """Return the same chain with every transport delay taken out."""
-        return compose([Section(part.name, part.blocks, 0.0) for part in self.sections])
+        return compose([replace(part, delay=0.0) for part in self.sections])
 
     def _refuse_delay(self) -> None:
         if self.delay[-1] > 0.0:
@@ -148,8 +180,8 @@ def _rest_of(block: Block, level: float, name: str) -> Real:
     )
 
 
-def section(stage: Stage, name: str) -> Section:
-    """Return the section of one stage.
+def section(stage: Stage, name: str, temperature: float = ROOM_TEMPERATURE) -> Section:
+    """Return the section of one stage at a temperature [K].
 
     Raises
     ------
@@ -164,17 +196,30 @@ def section(stage: Stage, name: str) -> Section:
                     f"stage {name!r} is unstable: it has a pole at {_text_of(pole)} rad/s; every "
                     "pole needs a negative real part"
                 )
-    return Section(name, blocks, stage.transport_delay())
+    return Section(name, blocks, stage.transport_delay(), stage.noise(temperature))
 
 
 def _text_of(pole: complex) -> str:
     return f"{pole.real:g}" if pole.imag == 0.0 else f"{pole.real:g} ± j{abs(pole.imag):g}"
 
 
-def chain_of(stages: Sequence[Stage]) -> Chain:
-    """Compose stages, named by their ``name`` or by kind and position. Raises ModelError."""
+def chain_of(stages: Sequence[Stage], temperature: float = ROOM_TEMPERATURE) -> Chain:
+    """Compose stages, named by their ``name`` or by kind and position.
+
+    Parameters
+    ----------
+    temperature : of the circuit, for its thermal noise [K]
+
+    Raises
+    ------
+    ModelError
+        If a stage is unstable.
+    """
     return compose(
-        [section(stage, stage.label(position)) for position, stage in enumerate(stages, start=1)]
+        [
+            section(stage, stage.label(position), temperature)
+            for position, stage in enumerate(stages, start=1)
+        ]
     )
 
 
@@ -182,27 +227,41 @@ def compose(sections: Sequence[Section]) -> Chain:
     """Put sections in a row, in block lower triangular form, by
 
         a = [[a1, 0], [b2 c1, a2]],  b = [b1, b2 d1],  c = [d2 c1, c2],  d = d2 d1.
+
+    A noise source is one more input, which enters at its own block.
     """
-    blocks = [block for part in sections for block in part.blocks]
-    n = sum(block.order for block in blocks)
-    a, b = np.zeros((n, n)), np.zeros(n)
-    c_rows, d_rows, delays, names = [np.zeros(n)], [1.0], [0.0], ["stimulus"]
-    c, d, at, delay = np.zeros(n), 1.0, 0, 0.0
+    n = sum(block.order for part in sections for block in part.blocks)
+    q = sum(len(part.noise) for part in sections)
+    a, b, noise_b = np.zeros((n, n)), np.zeros(n), np.zeros((n, q))
+    c, d, noise_d, delay = np.zeros(n), 1.0, np.zeros(q), 0.0
+    rows = [(c.copy(), d, noise_d.copy(), delay, "stimulus")]
+    at, source = 0, 0
     for part in sections:
-        for block in part.blocks:
+        for number, block in enumerate(part.blocks):
             here = slice(at, at + block.order)
             a[here, :] = np.outer(block.b, c)
             a[here, here] = block.a
             b[here] = block.b * d
-            c = block.d * c
+            noise_b[here] = np.outer(block.b, noise_d)
+            c, d, noise_d = block.d * c, block.d * d, block.d * noise_d
             c[here] = block.c
-            d = block.d * d
+            for j, entering in enumerate(part.noise, start=source):
+                if entering.block == number:
+                    noise_b[here, j] += entering.b
+                    noise_d[j] += entering.d
             at += block.order
+        source += len(part.noise)
         delay += part.delay
-        c_rows.append(c.copy())
-        d_rows.append(d)
-        delays.append(delay)
-        names.append(part.name)
+        rows.append((c.copy(), d, noise_d.copy(), delay, part.name))
+    c_rows, d_rows, noise_rows, delays, names = zip(*rows, strict=True)
     return Chain(
-        tuple(sections), a, b, np.array(c_rows), np.array(d_rows), np.array(delays), tuple(names)
+        tuple(sections),
+        a,
+        b,
+        np.array(c_rows),
+        np.array(d_rows),
+        np.array(delays),
+        tuple(names),
+        noise_b,
+        np.array(noise_rows),
     )

@@ -183,3 +183,14 @@ def steady(index: Any, since: Any, before: int, stride: int) -> tuple[bool, bool
         uneven |= index[k] != before + (k + 1) * stride
         off |= since[k] != 0.0
     return not uneven, not (uneven or off)
+
+
+@njit(cache=True)
+def mix(matrix: Any, white: Any, sums: Any) -> None:
+    """sums[k] = matrix · white[k]."""
+    for k in range(len(white)):
+        for r in range(matrix.shape[0]):
+            total = 0.0
+            for c in range(matrix.shape[1]):
+                total += matrix[r, c] * white[k, c]
+            sums[k, r] = total

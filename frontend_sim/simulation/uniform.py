@@ -27,9 +27,9 @@ MOST_POINTS = 1 << 22
 PRODUCT = 1 << 19
 """Most multiplications in one matrix product: small enough that a BLAS library never splits it
 over threads, so the number of threads never shows in the result."""
-ROW = 64
+ROW = 32
 """Outputs in one row of the waveform's matrix product."""
-WAVEFORM_TILE = 128 * ROW
+WAVEFORM_TILE = 256 * ROW
 """Instants in one product where every point is an output. All tiles are powers of two up to this
 one, so blocks that start at its multiples never cut a tile."""
 

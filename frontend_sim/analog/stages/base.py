@@ -7,6 +7,7 @@ from abc import abstractmethod
 from pydantic import Field
 
 from frontend_sim.analog.block import Block
+from frontend_sim.analog.noise import NoiseInput
 from frontend_sim.values import Value
 
 
@@ -28,6 +29,10 @@ class Stage(Value):
     @abstractmethod
     def blocks(self) -> tuple[Block, ...]:
         """Return the linear blocks of the stage, in the order of the signal."""
+
+    def noise(self, temperature: float) -> tuple[NoiseInput, ...]:
+        """Return the stage's own noise sources at a temperature [K]; an ideal stage has none."""
+        return ()
 
     def transport_delay(self) -> float:
         """Return the pure delay of the stage [s]."""

@@ -7,6 +7,7 @@ from typing import Literal
 from pydantic import Field
 
 from frontend_sim.analog.block import Block, first_order
+from frontend_sim.analog.noise import NoiseInput, thermal_density
 from frontend_sim.analog.stages.base import Stage
 from frontend_sim.quantities import Capacitance, Resistance
 
@@ -27,3 +28,9 @@ class RcLowpass(Stage):
         """Return one block with the pole -1/(R C)."""
         rate = 1.0 / (self.resistance * self.capacitance)
         return (first_order(-rate, (0.0, rate)),)
+
+    def noise(self, temperature: float) -> tuple[NoiseInput, ...]:
+        """Return the thermal noise of the resistor, which the pole filters."""
+        (block,) = self.blocks()
+        density = thermal_density(self.resistance, temperature)
+        return (NoiseInput("thermal noise of R", density, 0.0, 0, block.b, 0.0),)

@@ -1,0 +1,195 @@
+"""How fast the engine is, as ratios against peers measured in the same run.
+
+    python tests/benchmarks/engine.py [--quick]
+
+Each pair is timed in turn, several times; the smallest ratio of a pair that ran back to back is as
+much noise as the largest, so the median is told. Exit status 1 if a target of the project is missed.
+"""
+
+from __future__ import annotations
+
+import argparse
+import resource
+import subprocess
+import sys
+import tempfile
+import time
+from collections.abc import Callable
+from dataclasses import dataclass
+from pathlib import Path
+from statistics import median
+
+import numpy as np
+
+sys.path.insert(0, str(Path(__file__).resolve().parents[1]))
+
+POINT_RATE, CONVERSION_RATE, CORNER = 1e6, 20e3, 8e3
+
+
+@dataclass
+class Row:
+    """One line of the result: what was compared, the ratio, the target it has to meet."""
+
+    name: str
+    ratio: float
+    target: float
+    at_least: bool
+
+    @property
+    def met(self) -> bool:
+        """Whether the target is met."""
+        return self.ratio >= self.target if self.at_least else self.ratio <= self.target
+
+
+def seconds(work: Callable[[], object]) -> float:
+    """Time one call."""
+    start = time.perf_counter()
+    work()
+    return time.perf_counter() - start
+
+
+def paired(ours: Callable[[], object], theirs: Callable[[], object], runs: int) -> float:
+    """Return the median of theirs/ours, measured back to back after one warm-up of each."""
+    ours()
+    theirs()
+    return median(seconds(theirs) / seconds(ours) for _ in range(runs))
+
+
+def chain_rows(points: int, runs: int) -> list[Row]:
+    """Recorded points through an eighth-order chain, against libraries that step every point."""
+    import control
+    from drives import InMemory
+    from scipy import signal
+
+    from frontend_sim.analog.chain import chain_of
+    from frontend_sim.analog.stages import Butterworth
+    from frontend_sim.simulation.engine import BLOCK
+    from frontend_sim.simulation.linear import Axis, Linear
+
+    u = np.random.default_rng(0).standard_normal(points)
+    chain = chain_of([Butterworth(order=8, corner=CORNER)])
+    drive = InMemory(u, POINT_RATE)
+    sections = signal.butter(8, CORNER, fs=POINT_RATE, output="sos")
+
+    def through(rate: float) -> Callable[[], None]:
+        def work() -> None:
+            model = Linear.of(chain, [drive], [1], "settled", Axis(1.0 / rate, 2.0 / rate))
+            states = model.start()
+            count = int(points / POINT_RATE * rate)
+            for start in range(0, count, BLOCK):
+                instants = np.arange(start, min(start + BLOCK, count)) / rate
+                states, _ = model.advance(states, start, instants)
+
+        return work
+
+    def filtered() -> object:
+        return signal.sosfilt(sections, u)
+
+    few = 20_000
+    system = chain.state_space()
+    lti = (system.A, system.B, system.C, system.D)
+    times = np.arange(few) / POINT_RATE
+
+    def by_scipy() -> object:
+        return signal.lsim(lti, u[:few], times)
+
+    def by_control() -> object:
+        return control.forced_response(system, times, u[:few])
+
+    conversions = through(CONVERSION_RATE)
+    per_point = points / few
+    return [
+        Row("conversions only, times as fast as sosfilt", paired(conversions, filtered, runs), 4.0, True),
+        Row("full waveform, times as fast as sosfilt", paired(through(POINT_RATE), filtered, runs), 1.0, True),
+        Row("conversions only, per point, against scipy.signal.lsim",
+            per_point * paired(conversions, by_scipy, max(runs // 2, 1)), 1000.0, True),
+        Row("conversions only, per point, against control.forced_response",
+            per_point * paired(conversions, by_control, max(runs // 2, 1)), 1000.0, True),
+    ]  # fmt: skip
+
+
+def analytic_rows(runs: int) -> list[Row]:
+    """A sine costs per conversion: a grid rate that is not used changes nothing."""
+    from frontend_sim.scenario.model import Scenario
+    from frontend_sim.simulation import simulate
+
+    def run(grid_rate: float) -> Callable[[], object]:
+        scenario = Scenario.model_validate(
+            {
+                "stimulus": {"kind": "sine", "amplitude": 1.0, "frequency": 997.0},
+                "chain": [{"kind": "butterworth", "order": 8, "corner": CORNER}],
+                "adc": {"rate": CONVERSION_RATE, "bits": 16, "low": -2.0, "high": 2.0},
+                "simulation": {"duration": 10.0, "grid_rate": grid_rate},
+            }
+        )
+        return lambda: simulate(scenario)
+
+    ratio = paired(run(1e6), run(2e6), runs)
+    return [Row("analytic stimulus, time at twice the grid rate", ratio, 1.15, False)]
+
+
+def start_row(runs: int) -> Row:
+    """Help costs at most three times an import of numpy."""
+
+    def help_page() -> object:
+        command = [sys.executable, "-m", "frontend_sim", "--help"]
+        return subprocess.run(command, check=True, capture_output=True)
+
+    def numpy() -> object:
+        return subprocess.run([sys.executable, "-c", "import numpy"], check=True)
+
+    ratio = paired(numpy, help_page, runs)
+    return Row("frontend-sim --help, times python -c 'import numpy'", ratio, 3.0, False)
+
+
+MEMORY = """
+import resource, sys
+from frontend_sim.scenario.model import Scenario
+from frontend_sim.simulation import Simulation
+scenario = Scenario.model_validate({
+    "stimulus": {"kind": "recording", "file": sys.argv[1], "rate": 1e6},
+    "chain": [{"kind": "butterworth", "order": 8, "corner": 8e3}],
+    "adc": {"rate": 20e3, "bits": 16, "low": -8.0, "high": 8.0},
+})
+count = sum(len(block.codes) for block in Simulation(scenario).blocks())
+print(count, resource.getrusage(resource.RUSAGE_SELF).ru_maxrss)
+"""
+
+
+def memory_row(points: int) -> Row:
+    """Points from a file, in a process of its own: the largest resident size [GiB]."""
+    with tempfile.TemporaryDirectory() as folder:
+        file = Path(folder) / "points.npy"
+        data = np.lib.format.open_memmap(file, mode="w+", dtype=np.float32, shape=(points,))
+        rng = np.random.default_rng(0)
+        for start in range(0, points, 1 << 22):
+            part = data[start : start + (1 << 22)]
+            part[:] = rng.standard_normal(len(part), dtype=np.float32)
+        del data
+        command = [sys.executable, "-c", MEMORY, str(file)]
+        done = subprocess.run(command, check=True, capture_output=True, text=True)
+    gibibytes = int(done.stdout.split()[1]) / 2**20
+    return Row(f"{points:g} points from a file, resident memory in GiB", gibibytes, 1.0, False)
+
+
+def main() -> int:
+    """Measure everything and print a table."""
+    parser = argparse.ArgumentParser(description=__doc__)
+    parser.add_argument("--quick", action="store_true", help="a tenth of the points, fewer runs")
+    quick = parser.parse_args().quick
+    points, runs = (1_000_000, 3) if quick else (10_000_000, 9)
+    rows = [
+        *chain_rows(points, runs),
+        *analytic_rows(runs),
+        start_row(runs),
+        memory_row(10 * points),
+    ]
+    for row in rows:
+        sign = ">=" if row.at_least else "<="
+        print(f"{row.ratio:10.3g}  {sign} {row.target:<6g} {'met   ' if row.met else 'MISSED'}  {row.name}")
+    print(f"(this process: {resource.getrusage(resource.RUSAGE_SELF).ru_maxrss / 2**20:.2f} GiB)")
+    return 0 if all(row.met for row in rows) else 1
+
+
+if __name__ == "__main__":
+    sys.exit(main())
