@@ -7,11 +7,29 @@ from collections.abc import Iterable, Sequence
 
 import numpy as np
 
-from frontend_sim.analog.block import Block, first_order, gain_block, second_order, two_real_poles
+from frontend_sim.analog.block import (
+    Block,
+    Complex,
+    Real,
+    first_order,
+    gain_block,
+    second_order,
+    two_real_poles,
+)
 from frontend_sim.errors import ModelError
 
 CONJUGATE_TOLERANCE = 1e-9
 """Two complex roots count as conjugates if they agree to this share of their magnitude."""
+
+SLOWEST, FASTEST = 1e-18, 1e21
+"""Magnitudes between which every root other than zero must lie [rad/s]; products of a few of them
+then stay within the range of a float."""
+
+MOST_INFIDELITY = 1e-9
+"""Largest error of a factored polynomial's values, as a share of them."""
+
+NEAREST = 1e-3
+"""How near to a root its polynomial's values are asked for, as a share of the root's magnitude."""
 
 Root = complex
 
@@ -31,9 +49,12 @@ def cascade(zeros: Iterable[Root], poles: Iterable[Root], gain: float) -> tuple[
     Raises
     ------
     ModelError
-        If there are more zeros than poles (the response would grow without bound), or a complex
-        root stands without its conjugate.
+        If there are more zeros than poles (the response would grow without bound), a complex root
+        stands without its conjugate, or roots or gain leave the range of a float.
     """
+    poles, zeros = list(poles), list(zeros)
+    _refuse_extremes(poles, "pole")
+    _refuse_extremes(zeros, "zero")
     pole_pairs, real_poles = _split(poles, "pole")
     zero_pairs, real_zeros = _split(zeros, "zero")
     n_zeros = 2 * len(zero_pairs) + len(real_zeros)
@@ -62,10 +83,23 @@ def cascade(zeros: Iterable[Root], poles: Iterable[Root], gain: float) -> tuple[
         factors.append((roots, top, scale))
     if not factors:
         return (gain_block(gain),)
-    blocks = []
-    for index, (roots, top, scale) in enumerate(factors):
-        blocks.append(_block(roots, top, scale * left if index == 0 else scale))
+    with np.errstate(over="ignore", invalid="ignore"):
+        blocks = [
+            _block(roots, top, scale * left if index == 0 else scale)
+            for index, (roots, top, scale) in enumerate(factors)
+        ]
+    if not all(np.all(np.isfinite([*block.c, block.d])) for block in blocks):
+        raise ModelError(f"the gain {gain:g} with these roots leaves the range of numbers")
     return tuple(blocks)
+
+
+def _refuse_extremes(roots: Iterable[Root], noun: str) -> None:
+    for root in roots:
+        if root != 0.0 and not SLOWEST <= abs(root) <= FASTEST:
+            raise ModelError(
+                f"the {noun} of magnitude {abs(root):g} rad/s is out of reach; it must be zero, or lie "
+                f"between {SLOWEST:g} and {FASTEST:g} rad/s"
+            )
 
 
 def _split(roots: Iterable[Root], noun: str) -> tuple[list[complex], list[float]]:
@@ -91,9 +125,7 @@ def _split(roots: Iterable[Root], noun: str) -> tuple[list[complex], list[float]
     return upper, real
 
 
-def _take_zeros(
-    poles: Sequence[Root], pairs: list[complex], real: list[float]
-) -> tuple[Root, ...]:
+def _take_zeros(poles: Sequence[Root], pairs: list[complex], real: list[float]) -> tuple[Root, ...]:
     """Take the zeros that suit a denominator best out of those left."""
     if len(poles) == 1:
         return (_nearest(real, abs(poles[0])),) if real else ()
@@ -136,8 +168,8 @@ def roots_of(coefficients: Sequence[float]) -> list[complex]:
     Raises
     ------
     ModelError
-        If the roots do not reproduce the coefficients to 1e-9: the polynomial is too
-        ill-conditioned to be given by its coefficients.
+        If the roots do not reproduce the polynomial's values to 1e-9 where a response is most
+        sensitive: it is too ill-conditioned to be given by its coefficients.
     """
     values = np.trim_zeros(np.array(coefficients, dtype=np.float64), "f")
     if len(values) == 0:
@@ -148,21 +180,43 @@ def roots_of(coefficients: Sequence[float]) -> list[complex]:
     degree = len(values) - 1
     if degree == 0:
         return found
-    scale = float(abs(values[-1] / values[0]) ** (1.0 / degree))
-    monic = values / values[0] / scale ** np.arange(degree + 1)
+    with np.errstate(all="ignore"):
+        scale = float(abs(values[-1] / values[0]) ** (1.0 / degree))
+        monic = values / values[0] / scale ** np.arange(degree + 1)
+    if not np.all(np.isfinite(monic)):
+        raise ModelError(
+            f"the coefficients of the polynomial of order {degree} lie too far apart for its roots "
+            "to be found; give it as poles-zeros instead"
+        )
     if degree == 1:
         return [*found, complex(-scale * monic[1])]
     if degree == 2:
         return [*found, *_quadratic(float(monic[1]), float(monic[2]), scale)]
-    roots = np.roots(monic)
-    rebuilt = np.real(np.poly(roots))
-    error = float(np.max(np.abs(rebuilt - monic)) / np.max(np.abs(monic)))
-    if error > 1e-9:
+    roots = np.asarray(np.roots(monic), dtype=np.complex128)
+    error = _infidelity(monic, roots)
+    if not error <= MOST_INFIDELITY:
         raise ModelError(
             f"the polynomial of order {degree} is too ill-conditioned to be factored (its roots "
-            f"reproduce the coefficients to {error:.1g} only); give it as poles-zeros instead"
+            f"reproduce its values to {error:.1g} only); give it as poles-zeros instead"
         )
     return [*found, *(complex(scale * root) for root in roots)]
+
+
+def _infidelity(monic: Real, roots: Complex) -> float:
+    """Return how far the roots are from giving the polynomial's values, as a share of them.
+
+    Asked on the imaginary axis at the magnitude of every root, and beside every root on its right
+    (for one on the axis itself, a thousandth of its magnitude away): where a frequency response is
+    most sensitive. Roots that are wrong but give the right values, as equal ones do, do no harm.
+    """
+    size = np.abs(roots)
+    away = np.maximum(NEAREST * size - np.abs(roots.real), 0.0)
+    s = np.concatenate([1j * size, away + 1j * roots.imag])
+    distances = s[:, None] - roots
+    beside = np.min(np.abs(distances), axis=1) >= 0.5 * NEAREST * np.abs(s)
+    with np.errstate(all="ignore"):
+        difference = np.polyval(np.real(np.poly(roots)) - monic, s[beside])
+        return float(np.max(np.abs(difference / np.prod(distances[beside], axis=1)), initial=0.0))
 
 
 def _quadratic(b: float, c: float, scale: float) -> list[complex]:

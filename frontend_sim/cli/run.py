@@ -59,9 +59,7 @@ def command(
         return 1 if record.verdict == "fails" else 0
 
 
-def _tell(
-    record: Record, target: Path, plot: Path | None, overwrite: bool, as_json: bool
-) -> None:
+def _tell(record: Record, target: Path, plot: Path | None, overwrite: bool, as_json: bool) -> None:
     from frontend_sim.present import plot_run, run_summary, run_tables
 
     print_notes(record.notes)

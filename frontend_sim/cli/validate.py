@@ -18,20 +18,23 @@ def command(files: tuple[Path, ...], as_json: bool) -> int:
 
     Exit status: 0 all files are right, 2 one of them is wrong.
     """
-    from frontend_sim.scenario import load_scenario
-
-    faults: dict[str, str | None] = {}
-    for file in files:
-        try:
-            load_scenario(file)
-            faults[str(file)] = None
-        except InputError as error:
-            faults[str(file)] = str(error)
+    faults = [_fault_of(file) for file in files]
     if as_json:
-        print_json([{"file": name, "error": fault} for name, fault in faults.items()])
-    for name, fault in faults.items():
+        rows = zip(files, faults, strict=True)
+        print_json([{"file": str(file), "error": fault} for file, fault in rows])
+    for file, fault in zip(files, faults, strict=True):
         if fault is not None:
             click.echo(f"error: {fault}", err=True)
         elif not as_json:
-            click.echo(f"{name}: right")
-    return 2 if any(faults.values()) else 0
+            click.echo(f"{file}: right")
+    return 2 if any(faults) else 0
+
+
+def _fault_of(file: Path) -> str | None:
+    from frontend_sim.scenario import load_scenario
+
+    try:
+        load_scenario(file)
+    except InputError as error:
+        return str(error)
+    return None

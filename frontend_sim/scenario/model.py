@@ -4,16 +4,25 @@ from __future__ import annotations
 
 import hashlib
 import json
+from collections.abc import Mapping
 from pathlib import Path
-from typing import Annotated, Any, Literal
+from typing import Annotated, Any, Literal, Self
 
-from pydantic import BeforeValidator, Field
+from pydantic import BeforeValidator, Field, model_validator
 
 from frontend_sim.analog.stages import AnyStage
 from frontend_sim.converter.adc import Adc
-from frontend_sim.quantities import Frequency, PositiveTime
+from frontend_sim.errors import nearest
+from frontend_sim.quantities import FREQUENCY, Frequency, PositiveLsb, PositiveTime, as_text
+from frontend_sim.scenario.rules import conversions_fault, fault, newer_format
 from frontend_sim.stimulus import AnyStimulus
 from frontend_sim.values import Value
+
+FORMAT = 1
+"""Version of the scenario format that this program reads."""
+
+STIMULUS = "stimulus"
+"""Name of the first point of the chain, before any stage."""
 
 Discretization = Literal["exact", "zoh", "foh", "bilinear"]
 
@@ -22,62 +31,98 @@ def _auto_or(value: object) -> object:
     return None if value == "auto" else value
 
 
-def _without_lsb(value: object) -> object:
-    if isinstance(value, str) and value.strip().endswith("LSB"):
-        return value.strip()[:-3].strip()
-    return value
-
-
-Lsb = Annotated[
-    float,
-    BeforeValidator(_without_lsb, json_schema_input_type=float | str),
-    Field(gt=0.0, json_schema_extra={"unit": "LSB", "examples": ["0.05 LSB"]}),
-]
-
-
 class SimulationSettings(Value):
     """How the run is computed and what is kept of it."""
 
     duration: PositiveTime | None = Field(
         default=None,
-        description="conversions are taken for t in [0, duration); left out, the length of the recording",
+        description="conversions are taken for t in [0, duration); left out, the length of the "
+        "recording",
     )
     discretization: Discretization = Field(
         default="exact",
         description="exact, or a discrete model of the chain at grid_rate: zoh (step-invariant), "
         "foh (ramp-invariant), bilinear (trapezoidal)",
     )
-    grid_rate: Annotated[
-        Frequency | None, BeforeValidator(_auto_or, json_schema_input_type=str | float)
-    ] = Field(
+    grid_rate: Annotated[Frequency | None, BeforeValidator(_auto_or)] = Field(
         default=None,
-        description='points per second of a discrete model; "auto" (the default) picks the '
-        "coarsest multiple of the conversion rate whose estimated error stays below accuracy",
+        description='points per second of a discrete model; "auto", or left out, picks the '
+        "coarsest multiple of the conversion rate whose estimated error stays below accuracy. With "
+        "discretization exact it changes nothing in a run; inspect then shows how far discrete "
+        "models at this rate are from exact",
+        json_schema_extra={"examples": ["auto", "1 MHz"]},
     )
-    accuracy: Lsb = Field(
-        default=0.05, description='largest error of a grid picked by "auto", in LSB'
+    accuracy: PositiveLsb = Field(
+        default=0.05, description='largest error of a grid picked by "auto"'
     )
     prewarp: Frequency | None = Field(
         default=None, description="frequency that the bilinear model keeps exactly"
     )
     initial: Literal["settled", "rest"] = Field(
         default="settled",
-        description="before t = 0 the chain has settled on the stimulus's first value, or is at rest",
+        description="before t = 0 the chain has settled on the stimulus's first value, or is at "
+        "rest",
     )
     waveform_rate: Frequency | None = Field(
         default=None, description="points per second of the kept waveforms; left out, none is kept"
     )
     waveform_points: tuple[str, ...] | None = Field(
         default=None,
-        description='points of the chain whose waveform is kept: "stimulus" or names of stages; '
-        "left out, all of them",
+        description='points of the chain whose waveform is kept: "stimulus" or names of stages (a '
+        'stage without a name is called by its place and kind, "2 gain"); left out, all of them',
+        json_schema_extra={"examples": [["stimulus", "input filter"]]},
     )
+
+    @model_validator(mode="after")
+    def _prewarp_suits_the_model(self) -> Self:
+        if self.prewarp is None:
+            return self
+        if self.discretization != "bilinear":
+            raise fault(
+                ["prewarp"],
+                f'prewarp has a meaning for discretization = "bilinear" only, not for '
+                f'"{self.discretization}"; take prewarp out, or choose "bilinear"',
+            )
+        if self.grid_rate is not None and not self.prewarp < 0.5 * self.grid_rate:
+            raise fault(
+                ["prewarp"],
+                f"prewarp {as_text(self.prewarp, FREQUENCY, 6)} must lie below half the grid_rate, "
+                f"{as_text(0.5 * self.grid_rate, FREQUENCY, 6)}",
+            )
+        return self
+
+    @model_validator(mode="after")
+    def _points_need_a_rate(self) -> Self:
+        points = self.waveform_points
+        if points is None:
+            return self
+        if self.waveform_rate is None:
+            raise fault(
+                ["waveform_points"],
+                "waveform_points needs waveform_rate, the points per second that are kept; add "
+                'for instance waveform_rate = "100 kHz", or take waveform_points out',
+            )
+        if not points:
+            raise fault(
+                ["waveform_points"],
+                "waveform_points names no point; name one, or leave waveform_points out for all of "
+                "them, or leave waveform_rate out for none",
+            )
+        for position, point in enumerate(points):
+            if point in points[:position]:
+                raise fault(["waveform_points", position], f"{point!r} is listed twice")
+        return self
 
 
 class Scenario(Value):
-    """What arrives, what the circuit does to it, how the converter looks, and how it is computed."""
+    """What arrives, what the circuit does to it, how the converter looks, and how it is computed.
 
-    format: Literal[1] = Field(default=1, description="version of the scenario format")
+    ``source`` holds the file as it was written, and is empty for a scenario made in Python.
+    """
+
+    format: Annotated[Literal[1], BeforeValidator(newer_format(FORMAT))] = Field(
+        default=1, description="version of the scenario format"
+    )
     title: str = Field(default="", max_length=200, description="what the scenario shows")
     seed: int = Field(
         default=0, ge=0, lt=2**63, strict=True, description="seed of everything random in the run"
@@ -91,6 +136,51 @@ class Scenario(Value):
         default=SimulationSettings(), description="how the run is computed"
     )
     source: str = Field(default="", exclude=True, repr=False, description="the file as written")
+
+    @model_validator(mode="after")
+    def _stages_have_names_of_their_own(self) -> Self:
+        taken = {STIMULUS: "the name of the chain's first point, before any stage"}
+        for position, name in enumerate(self.points()[1:], start=1):
+            if not name.isprintable():
+                raise fault(["chain", position - 1, "name"], "the name must be one line of text")
+            if name in taken:
+                raise fault(
+                    ["chain", position - 1, "name"],
+                    f"the name {name!r} is taken: it is {taken[name]}; give every stage a name of "
+                    "its own, or none",
+                )
+            taken[name] = f"the name of stage {position}"
+        return self
+
+    @model_validator(mode="after")
+    def _waveform_points_exist(self) -> Self:
+        points = self.points()
+        for position, name in enumerate(self.simulation.waveform_points or ()):
+            if name not in points:
+                raise fault(
+                    ["simulation", "waveform_points", position],
+                    f"the chain has no point {name!r}{nearest(name, points)}",
+                )
+        return self
+
+    @model_validator(mode="after")
+    def _some_conversion_falls_into_the_run(self) -> Self:
+        duration = self.simulation.duration
+        if duration is not None:
+            text = conversions_fault(self.adc, duration)
+            if text is not None:
+                raise fault(["simulation", "duration"], text)
+        return self
+
+    def points(self) -> tuple[str, ...]:
+        """Return the names of the chain's points: the stimulus, then the output of each stage."""
+        labels = [stage.label(position) for position, stage in enumerate(self.chain, start=1)]
+        return (STIMULUS, *labels)
+
+    def model_copy(self, *, update: Mapping[str, Any] | None = None, deep: bool = False) -> Self:
+        """Return a copy; one with other values has no ``source``, which would tell the old ones."""
+        changed = {"source": "", **update} if update else None
+        return super().model_copy(update=changed, deep=deep)
 
     def resolved(self) -> dict[str, Any]:
         """Return every value in SI units, defaults filled in, as plain data for JSON."""
@@ -115,7 +205,7 @@ def sha256_of(file: Path) -> str:
         return hashlib.file_digest(stream, "sha256").hexdigest()
 
 
-def _renamed(value: Any, names: dict[str, str]) -> Any:  # noqa: ANN401 - JSON has no tighter type
+def _renamed(value: Any, names: dict[str, str]) -> Any:
     if isinstance(value, dict):
         return {key: _renamed(item, names) for key, item in value.items()}
     if isinstance(value, list):

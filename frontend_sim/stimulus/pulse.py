@@ -55,7 +55,8 @@ class Train(PiecewiseDrive):
     def events(self, start: float, stop: float) -> Real:
         """Return the breaks in (start, stop]."""
         last = int(min(self._cycle(stop) + 2, self.count))
-        times = self._breaks(max(self._cycle(start) - 1, 0), last).ravel()
+        # A cycle that ends where the next begins may do so one rounding later.
+        times = np.unique(self._breaks(max(self._cycle(start) - 1, 0), last))
         return times[(times > start) & (times <= stop)]
 
     def states(self, times: Real) -> Real:
@@ -93,7 +94,10 @@ class Pulse(Stimulus):
         default=None, description="period of a train; left out, there is one pulse"
     )
     count: int | None = Field(
-        default=None, ge=1, description="number of pulses in a train; left out, it never ends"
+        default=None,
+        ge=1,
+        strict=True,
+        description="number of pulses in a train; left out, it never ends",
     )
 
     @model_validator(mode="after")
@@ -117,7 +121,8 @@ class Pulse(Stimulus):
 
     def drives(self, key: Key) -> tuple[Drive, ...]:
         """Return up to four pieces for each pulse."""
-        fall_starts = 0.5 * self.rise + self.width - 0.5 * self.fall
+        # Rounding must not let a pulse without a top fall before it has risen.
+        fall_starts = max(0.5 * self.rise + self.width - 0.5 * self.fall, self.rise)
         swing = self.high - self.low
         pieces = []
         if self.rise > 0.0:

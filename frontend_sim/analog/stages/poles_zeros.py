@@ -10,20 +10,22 @@ from frontend_sim.analog.block import Block
 from frontend_sim.analog.factors import cascade
 from frontend_sim.analog.stages.base import Stage
 from frontend_sim.errors import ModelError
-from frontend_sim.quantities import Ratio
+from frontend_sim.quantities import Factor
 
 
 def _pair(value: object) -> object:
     """Accept a bare number for a real root."""
     if isinstance(value, (int, float)) and not isinstance(value, bool):
-        return (float(value), 0.0)
+        return (value, 0.0)
     if isinstance(value, complex):
         return (value.real, value.imag)
     return value
 
 
+Part = Annotated[float, Field(strict=True)]
+
 Root = Annotated[
-    tuple[float, float],
+    tuple[Part, Part],
     BeforeValidator(_pair, json_schema_input_type=float | tuple[float, float]),
 ]
 
@@ -37,12 +39,18 @@ class PolesZeros(Stage):
 
     kind: Literal["poles-zeros"] = "poles-zeros"
     poles: tuple[Root, ...] = Field(
-        default=(), max_length=40, description="poles in rad/s: a number, or [real, imaginary]"
+        default=(),
+        max_length=40,
+        description="poles: a number, or [real, imaginary]",
+        json_schema_extra={"unit": "rad/s"},
     )
     zeros: tuple[Root, ...] = Field(
-        default=(), max_length=40, description="zeros in rad/s: a number, or [real, imaginary]"
+        default=(),
+        max_length=40,
+        description="zeros: a number, or [real, imaginary]",
+        json_schema_extra={"unit": "rad/s"},
     )
-    gain: Ratio = Field(default=1.0, description="multiplies the products of the differences")
+    gain: Factor = Field(default=1.0, description="multiplies the products of the differences")
 
     @model_validator(mode="after")
     def _realizable(self) -> Self:

@@ -11,7 +11,8 @@ from frontend_sim.analog.factors import cascade, roots_of
 from frontend_sim.analog.stages.base import Stage
 from frontend_sim.errors import ModelError
 
-Coefficients = Annotated[tuple[float, ...], Field(min_length=1, max_length=21)]
+Coefficient = Annotated[float, Field(strict=True)]
+Coefficients = Annotated[tuple[Coefficient, ...], Field(min_length=1, max_length=21)]
 
 
 class Polynomial(Stage):
@@ -22,7 +23,9 @@ class Polynomial(Stage):
     """
 
     kind: Literal["polynomial"] = "polynomial"
-    numerator: Coefficients = Field(description="coefficients of s, highest power first, s in rad/s")
+    numerator: Coefficients = Field(
+        description="coefficients of s, highest power first, s in rad/s"
+    )
     denominator: Coefficients = Field(
         description="coefficients of s, highest power first, s in rad/s"
     )

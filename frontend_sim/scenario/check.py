@@ -1,0 +1,103 @@
+"""What can only be checked once the stimulus is opened and the circuit composed."""
+
+from __future__ import annotations
+
+import tomllib
+from typing import Any
+
+from frontend_sim.analog.chain import section
+from frontend_sim.converter.adc import Adc
+from frontend_sim.converter.clock import conversion_count
+from frontend_sim.errors import ModelError, Problem, RecordingError, ScenarioError
+from frontend_sim.quantities import TIME, as_text
+from frontend_sim.scenario.fault import problem
+from frontend_sim.scenario.locate import lines_of
+from frontend_sim.scenario.model import Scenario
+from frontend_sim.scenario.rules import conversions_fault
+from frontend_sim.scenario.tables import Path
+
+ROUNDING = 1e-9
+"""Share by which a duration may exceed a recording, as rounding of either makes it."""
+
+
+def check_scenario(scenario: Scenario, name: str = "") -> None:
+    """Check that a scenario can be run: its stimulus is there and long enough, its stages stable.
+
+    Parameters
+    ----------
+    name : what the scenario is called in messages
+
+    Raises
+    ------
+    RecordingError
+        If a recorded stimulus cannot be read.
+    ScenarioError
+        If the run has no duration, or one beyond the end of what is known of the stimulus, or no
+        conversion falls into it.
+    ModelError
+        If a stage is unstable.
+    """
+    try:
+        known = scenario.stimulus.known_length()
+    except RecordingError as error:
+        raise RecordingError(_located(scenario, name, ("stimulus",), str(error))) from error
+    text = _duration_fault(scenario, known)
+    if text is not None:
+        raise ScenarioError([_problem(scenario, ("simulation", "duration"), text)], name)
+    for position, stage in enumerate(scenario.chain):
+        try:
+            section(stage, stage.label(position + 1))
+        except ModelError as error:
+            raise ModelError(_located(scenario, name, ("chain", position), str(error))) from error
+
+
+def scenario_notes(scenario: Scenario) -> tuple[str, ...]:
+    """Return what is allowed in a scenario but has no effect, for the log of a run."""
+    settings = scenario.simulation
+    notes = []
+    if settings.discretization == "exact" and settings.grid_rate is not None:
+        notes.append(
+            'simulation.grid_rate has no effect on a run with discretization = "exact"; inspect '
+            "shows how far discrete models at this rate are from exact"
+        )
+    if settings.grid_rate is not None and "accuracy" in settings.model_fields_set:
+        notes.append('simulation.accuracy has no effect unless grid_rate = "auto"')
+    return tuple(notes)
+
+
+def _duration_fault(scenario: Scenario, known: float | None) -> str | None:
+    duration = scenario.simulation.duration
+    if duration is None and known is None:
+        return (
+            f"missing; a {getattr(scenario.stimulus, 'kind', 'stimulus')} never ends by itself, so "
+            'say how long to run, for instance duration = "10 ms"'
+        )
+    if duration is None or known is None:
+        return conversions_fault(scenario.adc, known) if known is not None else None
+    end = known * (1.0 + ROUNDING)
+    if duration <= end or _all_conversions_before(end, duration, scenario.adc):
+        return None
+    hold = ', or set stimulus.beyond = "hold"' if hasattr(scenario.stimulus, "beyond") else ""
+    return (
+        f"given {as_text(duration, TIME, 9)}, but the stimulus is known for "
+        f"{as_text(known, TIME, 9)} only; shorten duration, or leave it out to run to the end of "
+        f"the stimulus{hold}"
+    )
+
+
+def _all_conversions_before(end: float, duration: float, adc: Adc) -> bool:
+    """Return whether a duration ends less than a conversion's interval late, and none is lost.
+
+    N points at a rate may be said to last N or N - 1 intervals; both are let pass.
+    """
+    last = adc.first + (conversion_count(adc, duration) - 1) / adc.rate + adc.aperture_delay
+    return last <= end and duration <= end + 1.0 / adc.rate
+
+
+def _problem(scenario: Scenario, path: Path, text: str) -> Problem:
+    data: dict[str, Any] = tomllib.loads(scenario.source) if scenario.source else {}
+    return problem(path, text, data, lines_of(scenario.source, data))
+
+
+def _located(scenario: Scenario, name: str, path: Path, text: str) -> str:
+    return str(ScenarioError([_problem(scenario, path, text)], name))

@@ -1,0 +1,64 @@
+"""Rules that several values of a scenario must keep together, and how a broken one is told."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Sequence
+
+from pydantic_core import PydanticCustomError
+
+from frontend_sim.converter.adc import Adc
+from frontend_sim.converter.clock import conversion_count
+from frontend_sim.quantities import FREQUENCY, TIME, as_text, shown
+
+MOST_CONVERSIONS = 10**12
+"""More conversions than this are a slip of the pen; an array of their codes takes 8 TB."""
+
+
+def fault(path: Sequence[str | int], text: str) -> PydanticCustomError:
+    """Return the error of a rule between keys, for a validator to raise.
+
+    Parameters
+    ----------
+    path : of the key at fault, seen from the value whose validator raises
+    text : the whole message
+    """
+    return PydanticCustomError("rule", "{reason}", {"reason": text, "path": list(path)})
+
+
+def newer_format(known: int) -> Callable[[object], object]:
+    """Return a validator that tells a file of a newer format apart from a wrong number."""
+
+    def check(value: object) -> object:
+        if isinstance(value, bool) or not isinstance(value, int) or value < 1:
+            raise fault([], f"given {shown(value)}; expected the number {known}")
+        if value > known:
+            raise fault(
+                [],
+                f"the file is written for a newer version: its format is {value}, and this "
+                f"frontend-sim reads format {known}; install a newer frontend-sim",
+            )
+        return value
+
+    return check
+
+
+def conversions_fault(adc: Adc, duration: float) -> str | None:
+    """Return what is wrong with the number of conversions in [0, duration), or None.
+
+    Parameters
+    ----------
+    duration [s]
+    """
+    if duration * adc.rate > MOST_CONVERSIONS:
+        return (
+            f"{as_text(duration, TIME, 6)} at {as_text(adc.rate, FREQUENCY, 6)} are "
+            f"{duration * adc.rate:.3g} conversions, more than {MOST_CONVERSIONS:.0e}; shorten "
+            "simulation.duration, or lower adc.rate"
+        )
+    if conversion_count(adc, duration) < 1:
+        return (
+            f"no conversion falls into the run: the first is at {as_text(adc.first, TIME, 6)} "
+            f"(adc.first), and the run ends at {as_text(duration, TIME, 6)}; lengthen "
+            "simulation.duration, or lower adc.first"
+        )
+    return None

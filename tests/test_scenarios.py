@@ -1,0 +1,112 @@
+"""Every example scenario runs, gives its pinned codes, and agrees with its closed form if it has one."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from pathlib import Path
+
+import numpy as np
+import pytest
+from numpy.typing import NDArray
+
+from frontend_sim.scenario import load_scenario
+from frontend_sim.simulation import simulate
+
+ROOT = Path(__file__).resolve().parents[1] / "scenarios"
+Real = NDArray[np.float64]
+
+# Number of codes, the code in the middle, the last code, the sum of all codes.
+PINNED: dict[str, tuple[int, int, int, int]] = {
+    "critically_damped_pair": (100, 3474, 3475, 311035),
+    "ecg_through_anti_alias": (75000, 16, -54, 9057),
+    "first_order_high_pass": (120, 2131, 2052, 273669),
+    "first_order_low_pass": (16, 3722, 3724, 53688),
+    "high_pass_gain_two": (120, 2164, 2054, 284836),
+    "stages/bessel": (200, 2867, 2867, 551103),
+    "stages/butterworth": (200, 2361, 2120, 407042),
+    "stages/chebyshev": (200, 2027, 1789, 407169),
+    "stages/gain": (200, 2048, 1543, 409600),
+    "stages/inverting-amplifier": (200, 2097, 2601, 409551),
+    "stages/noninverting-amplifier": (200, 2015, 1511, 409633),
+    "stages/poles-zeros": (200, 2458, 2458, 488986),
+    "stages/polynomial": (200, 2867, 2867, 554322),
+    "stages/rc-highpass": (200, 2063, 2048, 426390),
+    "stages/rc-lowpass": (200, 2867, 2867, 548923),
+    "stages/second-order": (200, 2867, 2867, 552888),
+    "stages/transport-delay": (200, 2867, 2867, 536545),
+    "stimuli/chirp": (1200, 5728, 8192, 10017021),
+    "stimuli/double-exponential": (40, 8193, 8192, 337191),
+    "stimuli/half-sine": (600, 10122, 8192, 5833068),
+    "stimuli/noise-burst": (1000, 9118, 8192, 8116757),
+    "stimuli/pulse": (400, 8192, 8192, 3931475),
+    "stimuli/ramp": (400, 10127, 11469, 3660602),
+    "stimuli/recording": (2000, 8190, 6752, 15885253),
+    "stimuli/sine": (400, 5936, 7887, 3564871),
+    "stimuli/step": (100, 14090, 14090, 1341017),
+    "stimuli/sum": (800, 11426, 11431, 7857886),
+    "stimuli/tones": (1000, 6065, 6648, 8606678),
+    "underdamped_section": (200, 2049, 2048, 384831),
+    "well_pump_valve_slam": (2500, 1174, 979, 2912010),
+}
+
+
+def _low_pass(t: Real) -> Real:
+    return -3.0 * np.expm1(-t / 1e-3)
+
+
+def _decay(height: float) -> Callable[[Real], Real]:
+    return lambda t: np.where(t >= 2e-3, height * np.exp(-(t - 2e-3) / 10e-3), 0.0)
+
+
+def _critically_damped(t: Real) -> Real:
+    # g (1 - exp(-t/T) (1 + t/T)), any control textbook, e.g. Ogata, from memory.
+    return 4.0 * 0.7 * (1.0 - np.exp(-t / 1e-4) * (1.0 + t / 1e-4))
+
+
+def _underdamped(t: Real) -> Real:
+    # Damping ratio 1/(2 Q) = 0.25; Ogata, from memory.
+    w, z = 2.0 * np.pi * 500.0, 0.25
+    s = np.maximum(t - 1e-3, 0.0)
+    root = np.sqrt(1.0 - z * z)
+    return 1.0 - np.exp(-z * w * s) * (np.cos(w * root * s) + z / root * np.sin(w * root * s))
+
+
+CLOSED_FORMS: dict[str, Callable[[Real], Real]] = {
+    "first_order_low_pass": _low_pass,
+    "first_order_high_pass": _decay(1.0),
+    "high_pass_gain_two": _decay(1.4),
+    "critically_damped_pair": _critically_damped,
+    "underdamped_section": _underdamped,
+}
+
+
+@pytest.mark.parametrize("name", PINNED)
+def test_example_gives_its_pinned_codes(name: str) -> None:
+    """The codes of an example change only when somebody means them to."""
+    run = simulate(load_scenario(ROOT / f"{name}.toml"))
+    count, middle, last, total = PINNED[name]
+    assert len(run.codes) == count
+    assert run.codes[count // 2] == middle
+    assert run.codes[-1] == last
+    # A voltage on the very edge of a code may fall to either side on another processor.
+    assert abs(int(run.codes.sum()) - total) <= 3
+
+
+@pytest.mark.parametrize("name", CLOSED_FORMS)
+def test_example_agrees_with_its_closed_form(name: str) -> None:
+    """At every conversion within 1e-9 of the full scale of the response."""
+    run = simulate(load_scenario(ROOT / f"{name}.toml"))
+    np.testing.assert_allclose(run.pin, CLOSED_FORMS[name](run.time), rtol=0, atol=1e-9)
+
+
+def test_every_example_is_pinned() -> None:
+    """No scenario stands in the folder without a number here."""
+    files = {str(file.relative_to(ROOT))[:-5] for file in ROOT.rglob("*.toml")}
+    assert files == set(PINNED)
+
+
+def test_every_example_says_that_it_is_invented() -> None:
+    """Settings are invented and the files say so."""
+    for file in ROOT.rglob("*.toml"):
+        head = file.read_text().split("format", 1)[0]
+        assert "nvented" in head, file

@@ -1,0 +1,84 @@
+"""The base of all values: frozen, closed, comparable; and the tables of kinds."""
+
+from __future__ import annotations
+
+from typing import Annotated, Literal
+
+import pytest
+from pydantic import Field, ValidationError
+
+from frontend_sim.analog.stages import STAGES, AnyStage
+from frontend_sim.quantities import Voltage
+from frontend_sim.stimulus import STIMULI, AnyStimulus
+from frontend_sim.values import Value, table
+
+
+class Point(Value):
+    """A value for these tests."""
+
+    kind: Literal["point"] = "point"
+    level: Voltage = 0.0
+    path: tuple[float, ...] = ()
+
+
+class Other(Value):
+    """Another kind for these tests."""
+
+    kind: Literal["other"] = "other"
+
+
+def test_values_are_frozen() -> None:
+    """A value cannot be changed after it was made."""
+    point = Point(level=1.0)
+    with pytest.raises(ValidationError, match="frozen"):
+        Point.__setattr__(point, "level", 2.0)
+
+
+def test_unknown_keys_are_refused() -> None:
+    """A key that no field knows is an error, not ignored."""
+    with pytest.raises(ValidationError, match="extra_forbidden"):
+        Point.model_validate({"lvl": 1.0})
+
+
+@pytest.mark.parametrize("number", [float("nan"), float("inf"), -float("inf")])
+def test_numbers_are_finite(number: float) -> None:
+    """Neither infinity nor NaN gets into a value."""
+    with pytest.raises(ValidationError):
+        Point(path=(number,))
+
+
+def test_lists_become_tuples_so_that_values_can_be_hashed_and_compared() -> None:
+    """Equal parameters make equal values with equal hashes."""
+    one, other = Point.model_validate({"path": [1, 2]}), Point(path=(1.0, 2.0))
+    assert one == other
+    assert hash(one) == hash(other)
+    assert one != Point(path=(2.0, 1.0))
+
+
+def test_defaults_are_validated() -> None:
+    """A default outside of its bounds is found when the value is made."""
+
+    class Wrong(Value):
+        """A value with a wrong default."""
+
+        level: Annotated[float, Field(gt=0.0)] = -1.0
+
+    with pytest.raises(ValidationError):
+        Wrong()
+
+
+def test_kind_table_has_the_kinds_in_the_order_of_the_union() -> None:
+    """A union with or without its discriminator becomes kind -> class."""
+    expected = {"point": Point, "other": Other}
+    assert table(Point | Other, Value) == expected
+    assert table(Annotated[Point | Other, Field(discriminator="kind")], Value) == expected
+    assert list(table(Other | Point, Value)) == ["other", "point"]
+
+
+def test_kind_tables_are_whole() -> None:
+    """Every kind stands in its table once, under its own name."""
+    for kinds, union in ((STAGES, AnyStage), (STIMULI, AnyStimulus)):
+        assert kinds == table(union, Value)
+        for kind, model in kinds.items():
+            assert model.model_fields["kind"].default == kind
+        assert len(set(kinds.values())) == len(kinds)
