@@ -2,13 +2,10 @@
 
 from __future__ import annotations
 
-from typing import Any, ClassVar, TypeVar, get_args
+from typing import Any, ClassVar, get_args
 
 from pydantic import BaseModel, ConfigDict
 from pydantic.fields import FieldInfo
-
-
-T = TypeVar("T")
 
 
 class Value(BaseModel):
@@ -27,7 +24,7 @@ class Value(BaseModel):
     )
 
 
-def table(union: Any, base: type[T]) -> dict[str, type[T]]:  # noqa: ANN401 - a union has no type of its own
+def table(union: Any) -> dict[str, Any]:
     """Return the kind table of a union of values: kind -> class, in the union's order."""
     members = get_args(union)
     if members and isinstance(members[-1], FieldInfo):

@@ -1,4 +1,4 @@
-"""Every example scenario runs, gives its pinned codes, and agrees with its closed form if it has one."""
+"""Every example scenario runs, gives its pinned codes, and agrees with a closed form."""
 
 from __future__ import annotations
 

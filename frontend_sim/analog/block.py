@@ -59,49 +59,47 @@ class Block:
         if self.order == 0:
             return np.empty(0, dtype=np.complex128)
         if self.order == 1:
-            return self.a[0].astype(np.complex128)
+            return np.array([self.a[0, 0]], dtype=np.complex128)
         if self.order == 2:
             return _eigenvalues_of_two(self.a)
         return np.asarray(np.linalg.eigvals(self.a), dtype=np.complex128)
 
     def response(self, s: Complex) -> Complex:
-        """Return the transfer function c (s - a)^-1 b + d at complex frequencies s [rad/s]."""
+        """Return the transfer function c (s - a)^-1 b + d at complex frequencies s [rad/s].
+
+        Up to the second order as a quotient of polynomials: far below its corner a high pass is
+        then small to full relative accuracy, where c (s - a)^-1 b and d would cancel.
+        """
         s = np.asarray(s, dtype=np.complex128)
-        if self.order == 0:
-            return np.full(s.shape, self.d, dtype=np.complex128)
-        if self.order == 1:
-            return self.d + self.c[0] * self.b[0] / (s - self.a[0, 0])
-        if self.order == 2:
-            (a11, a12), (a21, a22) = self.a
-            b1, b2 = self.b
-            determinant = (s - a11) * (s - a22) - a12 * a21
-            x1 = ((s - a22) * b1 + a12 * b2) / determinant
-            x2 = ((s - a11) * b2 + a21 * b1) / determinant
-            return self.d + self.c[0] * x1 + self.c[1] * x2
+        if self.order <= 2:
+            numerator, denominator = self.polynomials()
+            return np.asarray(np.polyval(numerator, s) / np.polyval(denominator, s))
         system = s[..., None, None] * np.eye(self.order) - self.a
-        states = np.linalg.solve(system, np.broadcast_to(self.b[:, None], (*s.shape, self.order, 1)))
+        states = np.linalg.solve(
+            system, np.broadcast_to(self.b[:, None], (*s.shape, self.order, 1))
+        )
         return np.asarray(self.d + states[..., 0] @ self.c, dtype=np.complex128)
 
     def polynomials(self) -> tuple[Real, Real]:
         """Return numerator and denominator, highest power first, the denominator monic."""
-        denominator = np.real(np.poly(self.poles)) if self.order else np.ones(1)
         if self.order == 0:
-            return np.array([self.d]), denominator
+            return np.array([self.d]), np.ones(1)
         if self.order == 1:
-            numerator = self.d * denominator
-            numerator[1] += self.c[0] * self.b[0]
-            return numerator, denominator
+            denominator = np.array([1.0, -self.a[0, 0]])
+            return self.d * denominator + [0.0, self.c[0] * self.b[0]], denominator
         if self.order == 2:
             (a11, a12), (a21, a22) = self.a
             b1, b2 = self.b
             c1, c2 = self.c
+            # From the entries, not from the poles: a zero at the origin stays exactly there.
+            denominator = np.array([1.0, -(a11 + a22), a11 * a22 - a12 * a21])
             numerator = self.d * denominator
             numerator[1] += c1 * b1 + c2 * b2
             numerator[2] += c1 * (a12 * b2 - a22 * b1) + c2 * (a21 * b1 - a11 * b2)
             return numerator, denominator
+        denominator = np.real(np.poly(self.poles))
         closed = self.a - np.outer(self.b, self.c)
-        numerator = np.real(np.poly(closed)) + (self.d - 1.0) * denominator
-        return numerator, denominator
+        return np.real(np.poly(closed)) + (self.d - 1.0) * denominator, denominator
 
 
 def _eigenvalues_of_two(a: Real) -> Complex:
@@ -136,7 +134,8 @@ def first_order(pole: float, numerator: tuple[float, float]) -> Block:
     """
     n1, n0 = numerator
     rate = abs(pole) if pole != 0.0 else 1.0
-    return Block.of([[pole]], [rate], [(n0 + n1 * pole) / rate], n1)
+    # pole / rate is exactly -1: without n0 the gain at zero frequency is then exactly zero.
+    return Block.of([[pole]], [rate], [n0 / rate + n1 * (pole / rate)], n1)
 
 
 def second_order(
@@ -155,9 +154,7 @@ def second_order(
     n2, n1, n0 = numerator
     c1 = n0 / natural**2 - n2
     c2 = (n1 - n2 * damping_rate) / natural
-    return Block.of(
-        [[0.0, natural], [-natural, -damping_rate]], [0.0, natural], [c1, c2], n2
-    )
+    return Block.of([[0.0, natural], [-natural, -damping_rate]], [0.0, natural], [c1, c2], n2)
 
 
 def two_real_poles(p1: float, p2: float, numerator: tuple[float, float, float]) -> Block:
@@ -167,12 +164,13 @@ def two_real_poles(p1: float, p2: float, numerator: tuple[float, float, float]) 
     complex zeros and cannot be split over two blocks of first order.
     """
     n2, n1, n0 = numerator
+    # The faster pole first: both states then reach the output with weights of the signal's size.
+    p1, p2 = (p1, p2) if abs(p1) >= abs(p2) else (p2, p1)
     rate1 = abs(p1) if p1 != 0.0 else 1.0
     rate2 = abs(p2) if p2 != 0.0 else 1.0
     # Numerator = n2 (s-p1)(s-p2) + k1 (s-p2) + k0, and k1 (s-p2) + k0 is carried by the states
     # rate1/(s-p1) and rate1 rate2/((s-p1)(s-p2)).
     k1 = n1 + n2 * (p1 + p2)
-    k0 = n0 - n2 * p1 * p2 + k1 * p2
-    return Block.of(
-        [[p1, 0.0], [rate2, p2]], [rate1, 0.0], [k1 / rate1, k0 / (rate1 * rate2)], n2
-    )
+    # k0 is the numerator at p2, written without the large terms that would cancel.
+    k0 = n0 + p2 * (n1 + n2 * p2)
+    return Block.of([[p1, 0.0], [rate2, p2]], [rate1, 0.0], [k1 / rate1, k0 / (rate1 * rate2)], n2)

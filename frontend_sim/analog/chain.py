@@ -24,7 +24,7 @@ ROOM_TEMPERATURE = 298.15
 
 @dataclass(frozen=True, eq=False)
 class Section:
-    """What one stage brings into the chain: name, blocks in order, pure delay [s], noise sources."""
+    """What one stage brings into the chain: name, blocks, pure delay [s], noise sources."""
 
     name: str
     blocks: tuple[Block, ...]
@@ -77,7 +77,7 @@ class Chain:
 
     def response(self, frequency: Real) -> Complex:
         """Return the transfer function from stimulus to pin at frequencies [Hz], delay included."""
-        s = 2j * np.pi * np.asarray(frequency, dtype=np.float64)
+        s = np.asarray(2j * np.pi * np.asarray(frequency), dtype=np.complex128)
         total = np.exp(-s * self.delay[-1])
         for section in self.sections:
             for block in section.blocks:
@@ -151,7 +151,8 @@ class Chain:
         for section in self.sections:
             for block in section.blocks:
                 top, bottom = block.polynomials()
-                numerator, denominator = np.convolve(numerator, top), np.convolve(denominator, bottom)
+                numerator = np.convolve(numerator, top)
+                denominator = np.convolve(denominator, bottom)
         return control.TransferFunction(np.trim_zeros(numerator, "f"), denominator)
 
     def without_delay(self) -> Chain:
@@ -170,7 +171,8 @@ def _rest_of(block: Block, level: float, name: str) -> Real:
     if block.order == 0:
         return np.empty(0)
     if not np.any(block.poles == 0.0):
-        return np.asarray(np.linalg.solve(block.a, -block.b * level))
+        # Solved for a level of one, so that a high pass passes on exactly nothing of any level.
+        return np.asarray(level * np.linalg.solve(block.a, -block.b))
     if level == 0.0:
         return np.zeros(block.order)
     raise ModelError(

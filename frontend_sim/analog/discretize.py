@@ -70,7 +70,8 @@ def bilinear(chain: Chain, step: float, prewarp: float | None = None) -> Discret
     """
     k = half_step(step, prewarp)
     system = np.eye(chain.order) - k * chain.a
-    columns = np.linalg.solve(system, np.column_stack([2.0 * k * chain.a, k * chain.b]))
+    right = np.column_stack([2.0 * k * chain.a, k * chain.b])
+    columns = np.asarray(np.linalg.solve(system, right), dtype=np.float64)
     n = chain.order
     return DiscreteModel(columns[:, :n], columns[:, n], columns[:, n])
 
@@ -85,7 +86,7 @@ def half_step(step: float, prewarp: float | None) -> float:
 def warped_frequency(frequency: float, step: float, prewarp: float | None) -> float:
     """Return where a bilinear model shows what the chain does at a frequency [Hz],
 
-        f_d = atan(2 pi f k) / (pi h).
+    f_d = atan(2 pi f k) / (pi h).
     """
     return math.atan(2.0 * math.pi * frequency * half_step(step, prewarp)) / (math.pi * step)
 

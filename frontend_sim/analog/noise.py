@@ -23,7 +23,9 @@ POLES_PER_DECADE = 2
 class NoiseInput:
     """A noise source of one stage, and where it enters the stage's blocks.
 
-    With w the source, block number ``block`` becomes dx/dt = a x + b_u u + b w, y = c x + d_u u + d w.
+    With w the source, block number ``block`` becomes
+
+        dx/dt = a x + b_u u + b w,    y = c x + d_u u + d w.
 
     Parameters
     ----------
@@ -105,7 +107,9 @@ def model_of(
     whole, row = np.zeros((size, size)), np.zeros(size)
     whole[:n, :n], row[:n] = a, c
     columns, owner, at = [], [], n
-    for number, ((source, column, direct), (_, rates)) in enumerate(zip(inputs, banks, strict=True)):
+    for number, ((source, column, direct), (_, rates)) in enumerate(
+        zip(inputs, banks, strict=True)
+    ):
         if source.density > 0.0 and direct != 0.0:
             raise ModelError(
                 f"the white noise of {source.name!r} reaches the converter unfiltered, so its "

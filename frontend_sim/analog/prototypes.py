@@ -65,7 +65,9 @@ def bessel(order: int) -> Prototype:
     return [complex(pole.real, 0.0 if abs(pole.imag) < 1e-12 else pole.imag) for pole in poles], 1.0
 
 
-def filter_blocks(prototype: Prototype, response: Response, lower: float, upper: float) -> tuple[Block, ...]:
+def filter_blocks(
+    prototype: Prototype, response: Response, lower: float, upper: float
+) -> tuple[Block, ...]:
     """Move a low-pass prototype to its place and return the cascade of blocks.
 
         low-pass   s -> s / w0                 high-pass  s -> w0 / s

@@ -21,8 +21,9 @@ def reach(matrix: Real) -> Index:
     A chain is block lower triangular, so the loops below leave about half of the products out.
     """
     used = np.any(matrix != 0.0, axis=tuple(range(matrix.ndim - 2)))
-    n = used.shape[1]
-    return np.where(used.any(axis=1), n - np.argmax(used[:, ::-1], axis=1), 0).astype(np.int64)
+    columns = np.arange(1, used.shape[1] + 1)
+    reached: Index = np.max(np.where(used, columns, 0), axis=1, initial=0)
+    return reached
 
 
 @njit(cache=True, inline="always")
@@ -194,3 +195,18 @@ def mix(matrix: Any, white: Any, sums: Any) -> None:
             for c in range(matrix.shape[1]):
                 total += matrix[r, c] * white[k, c]
             sums[k, r] = total
+
+
+@njit(cache=True)
+def spread(z: Any, matrix: Any, y: Any) -> None:
+    """y[i, r ROW + k] = sum over s of matrix[i, s, k] · z[r, s]: rows of outputs from states."""
+    p, size, row = matrix.shape
+    for i in range(p):
+        for r in range(len(z)):
+            start = r * row
+            for k in range(row):
+                y[i, start + k] = 0.0
+            for s in range(size):
+                weight = z[r, s]
+                for k in range(row):
+                    y[i, start + k] += matrix[i, s, k] * weight

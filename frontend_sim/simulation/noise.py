@@ -32,7 +32,7 @@ class NoisePath:
 
     @classmethod
     def of(cls, model: NoiseModel, interval: float, seed: int) -> Self:
-        """Prepare for conversions ``interval`` apart [s]. Raises ModelError, see the covariances."""
+        """Prepare for conversions ``interval`` apart [s]; ModelError as the covariances say."""
         e, q = step_covariance(model.a, model.b, interval)
         first = factor(stationary_covariance(model.a, model.b))
         key = stream(seed, "noise of the chain")

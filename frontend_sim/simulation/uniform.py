@@ -82,16 +82,24 @@ class UniformPath:
         u = self.drive.points(node, node + 1)[0]
         return State(self.initial - self.model.stop * u, node)
 
-    def advance(self, state: State, number: int, instants: Real) -> tuple[State, Real]:
+    def advance(
+        self, state: State, number: int, instants: Real, drive: UniformDrive | None = None
+    ) -> tuple[State, Real]:
         """Advance through instants, see ``Path``."""
+        source = drive or self.drive
         index, since = self.drive.locate(instants)
         y = np.empty((len(self.outputs.d), len(instants)))
         x, node, done = state.x.copy(), int(state.node), 0
         while done < len(instants):
             part = slice(done, self._piece(index, node, number, done))
-            self._fill(x, node, number + done, index[part], since[part], y[:, part])
+            points = source.points(node, int(index[part][-1]) + 2)
+            self._fill(x, points, node, number + done, index[part], since[part], y[:, part])
             node, done = int(index[part.stop - 1]), part.stop
         return State(x, node), y
+
+    def rested(self, state: State, number: int, instants: Real) -> State:
+        """Return the state after instants at which all was zero, see ``Path``."""
+        return State(state.x, int(self.drive.locate(instants[-1:])[0][0]))
 
     def _piece(self, index: Index, node: int, number: int, done: int) -> int:
         """Return where the next piece ends: few enough points, and at a multiple of tiles."""
@@ -125,10 +133,12 @@ class UniformPath:
         return self._powers[count]
 
     def _fill(
-        self, x: Real, node: int, number: int, index: Index, since: Real, y: Real
+        self, x: Real, points: Real, node: int, number: int, index: Index, since: Real, y: Real
     ) -> None:
-        """Advance x~ in place from a point to the last of ``index``, and fill in the outputs."""
-        points = self.drive.points(node, int(index[-1]) + 2)
+        """Advance x~ in place from a point to the last of ``index``, and fill in the outputs.
+
+        points : from number ``node`` to one behind the last of ``index``
+        """
         at, before = 0, node
         while at < len(index):
             stop = min((number + at) // self._tile * self._tile + self._tile - number, len(index))
@@ -166,7 +176,8 @@ class UniformPath:
 
     def _sums(self, rows: Real) -> Real:
         """Return the weighted sums over rows of points, shape (K, n): one product."""
-        return rows @ self._stride_weights
+        sums: Real = rows @ self._stride_weights
+        return sums
 
     @cached_property
     def _stride_weights(self) -> Real:

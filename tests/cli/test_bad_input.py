@@ -1,4 +1,4 @@
-"""Wrong input through the command: exit status 2, one message, no traceback, no file left behind."""
+"""Wrong input through the command: status 2, one message, no traceback, no file left behind."""
 
 from __future__ import annotations
 
@@ -85,7 +85,10 @@ SCENARIOS: dict[str, tuple[str, str]] = {
         _text(chain='kind = "poles-zeros"\npoles = [-1.0]\nzeros = [-1.0, -2.0]'),
         "poles",
     ),
-    "half a complex pair": (_text(chain='kind = "poles-zeros"\npoles = [[-1.0, 2.0]]'), "conjugate"),
+    "half a complex pair": (
+        _text(chain='kind = "poles-zeros"\npoles = [[-1.0, 2.0]]'),
+        "conjugate",
+    ),
     "denominator of zero": (
         _text(chain='kind = "polynomial"\nnumerator = [1.0]\ndenominator = [0.0]'),
         "zero",
@@ -94,7 +97,10 @@ SCENARIOS: dict[str, tuple[str, str]] = {
         _text(chain='kind = "polynomial"\nnumerator = [1.0, 0.0]\ndenominator = [1.0]'),
         "poles",
     ),
-    "order of a filter": (_text(chain='kind = "butterworth"\norder = 0\ncorner = "1 kHz"'), "order"),
+    "order of a filter": (
+        _text(chain='kind = "butterworth"\norder = 0\ncorner = "1 kHz"'),
+        "order",
+    ),
     "band without corners": (
         _text(chain='kind = "bessel"\norder = 2\nresponse = "band-pass"\ncorner = "1 kHz"'),
         "lower_corner",

@@ -140,9 +140,7 @@ def test_the_estimate_of_auto_is_an_upper_bound(method: str, stimulus: dict[str,
     accuracy = 0.5 if method == "zoh" else 0.05
     exact = simulate(_scenario(stimulus))
     try:
-        scenario = _scenario(
-            stimulus, discretization=method, grid_rate="auto", accuracy=accuracy
-        )
+        scenario = _scenario(stimulus, discretization=method, grid_rate="auto", accuracy=accuracy)
         run = simulate(scenario)
     except ScenarioError as error:
         assert stimulus["kind"] == "step", error  # noqa: PT017 - the refusal is checked below

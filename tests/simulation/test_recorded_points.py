@@ -111,7 +111,7 @@ def test_waveform_agrees_with_lsim_and_forced_response() -> None:
 
 
 def test_held_points_agree_with_sosfilt() -> None:
-    """The step-invariant model of one pole, run by scipy.signal.sosfilt as a difference equation."""
+    """The step-invariant model of one pole, run by scipy.signal.sosfilt step by step."""
     tau, rate = 47e-6, 2e5
     pole = np.exp(-1.0 / (tau * rate))
     data = _noise(20000)

@@ -1,0 +1,159 @@
+"""All that can be said of a scenario before any run."""
+
+from __future__ import annotations
+
+import dataclasses
+import math
+from dataclasses import dataclass, field
+from itertools import pairwise
+from typing import Any
+
+import numpy as np
+
+from frontend_sim.analog.chain import chain_of
+from frontend_sim.analog.discretize import METHODS
+from frontend_sim.converter.adc import Adc
+from frontend_sim.measure.response.frequency_domain import FrequencyDomain
+from frontend_sim.measure.response.grid_model import GridModel
+from frontend_sim.measure.response.model_distance import Exact, ModelDistance, model_distance
+from frontend_sim.measure.response.pole import Pole, poles_of
+from frontend_sim.measure.response.step_response import StepResponse
+from frontend_sim.measure.response.time_domain import TimeDomain
+from frontend_sim.scenario.model import Scenario
+
+PASSIVE = ("rc-lowpass", "rc-highpass")
+"""Kinds of stage that would load one another in a real circuit."""
+
+
+@dataclass(frozen=True, eq=False)
+class Inspection:
+    """What the transfer function from the stimulus to the converter's pin tells.
+
+    Parameters
+    ----------
+    title : of the scenario
+    adc : converter for whose rate and LSB the numbers are
+    order : number of states of the chain
+    time : step response: start, end, shape, settling
+    frequency : gain, corners, group delay, attenuation, noise bandwidth
+    poles : stage by stage
+    models : how far zoh, foh and bilinear lie from exact, at the grid rate
+    notes : what the reader should know beside the numbers
+    response : the step response, for plots
+    grid_models : the discrete models, for plots
+    """
+
+    title: str
+    adc: Adc
+    order: int
+    time: TimeDomain
+    frequency: FrequencyDomain
+    poles: tuple[Pole, ...]
+    models: tuple[ModelDistance, ...]
+    notes: tuple[str, ...]
+    response: StepResponse = field(repr=False)
+    grid_models: tuple[GridModel, ...] = field(repr=False)
+
+    def as_dict(self) -> dict[str, Any]:
+        """Return plain data for JSON: SI units, None for what is not there.
+
+        JSON knows no infinity, so it becomes the text "inf" or "-inf".
+        """
+        converter = {
+            name: getattr(self.adc, name) for name in ("rate", "bits", "low", "high", "lsb")
+        }
+        left_out = {"response", "grid_models", "adc"}
+        kept = [each.name for each in dataclasses.fields(self) if each.name not in left_out]
+        return {"adc": converter, **{name: _plain(getattr(self, name)) for name in kept}}
+
+
+def inspect_scenario(scenario: Scenario) -> Inspection:
+    """Measure the response of a scenario's chain, from its transfer function alone.
+
+    Raises
+    ------
+    ModelError
+        If the chain is unstable, or rings too long to be searched.
+    """
+    chain, adc = chain_of(scenario.chain), scenario.adc
+    response = StepResponse.of(chain)
+    frequency = FrequencyDomain.of(response, adc.rate)
+    time = TimeDomain.of(response, frequency.largest.value, adc)
+    grid_models, models = _models(scenario, response, time, frequency)
+    return Inspection(
+        scenario.title,
+        adc,
+        chain.order,
+        time,
+        frequency,
+        poles_of(chain),
+        models,
+        _notes(scenario, time, frequency),
+        response,
+        grid_models,
+    )
+
+
+def grid_rate_of(scenario: Scenario) -> float:
+    """Return the grid rate, which is the conversion rate where it is left to the tool [Hz]."""
+    rate = scenario.simulation.grid_rate
+    return scenario.adc.rate if rate is None else rate
+
+
+def _models(
+    scenario: Scenario, response: StepResponse, time: TimeDomain, frequency: FrequencyDomain
+) -> tuple[tuple[GridModel, ...], tuple[ModelDistance, ...]]:
+    """Return discrete models and their distances; there is none for a chain without states."""
+    if response.chain.order == 0:
+        return (), ()
+    rate, prewarp = grid_rate_of(scenario), scenario.simulation.prewarp
+    if prewarp is not None and prewarp >= 0.5 * rate:
+        prewarp = None
+    models = tuple(GridModel.of(response.chain, method, rate, prewarp) for method in METHODS)
+    exact = Exact.of(
+        response,
+        frequency.corners,
+        frequency.largest.value,
+        rate,
+        0.5 * scenario.adc.rate,
+        time.full_scale_step / scenario.adc.lsb,
+    )
+    return models, tuple(model_distance(exact, model, prewarp) for model in models)
+
+
+def _notes(scenario: Scenario, time: TimeDomain, frequency: FrequencyDomain) -> tuple[str, ...]:
+    notes = [*_loading(scenario)]
+    if time.end is None:
+        notes.append("a pair of poles without damping: a step rings for ever and never settles")
+    elif math.isinf(time.end):
+        notes.append("a pole at the origin: a step drifts away without bound and never settles")
+    if math.isinf(frequency.largest.value):
+        notes.append("the gain has no largest value, so there is no -3 dB corner")
+    rate, prewarp = grid_rate_of(scenario), scenario.simulation.prewarp
+    if prewarp is not None and prewarp >= 0.5 * rate:
+        notes.append(
+            f"prewarp {prewarp:g} Hz is not below half the grid rate, {0.5 * rate:g} Hz; the "
+            "bilinear model is shown without it"
+        )
+    return tuple(notes)
+
+
+def _loading(scenario: Scenario) -> list[str]:
+    """Tell of passive sections in a row, which load each other where no buffer stands between."""
+    return [
+        f"{before.label(place)!r} and {after.label(place + 1)!r} are passive sections in a row and "
+        "taken as buffered; without a buffer between them they load each other in a real circuit"
+        for place, (before, after) in enumerate(pairwise(scenario.chain), start=1)
+        if before.kind in PASSIVE and after.kind in PASSIVE
+    ]
+
+
+def _plain(value: Any) -> Any:
+    """Turn dataclasses, tuples and numbers into what the json module writes."""
+    if dataclasses.is_dataclass(value) and not isinstance(value, type):
+        return {each.name: _plain(getattr(value, each.name)) for each in dataclasses.fields(value)}
+    if isinstance(value, tuple):
+        return [_plain(item) for item in value]
+    if isinstance(value, (float, np.floating)):
+        return float(value) if math.isfinite(value) else str(float(value))
+    return value

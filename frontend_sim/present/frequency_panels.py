@@ -1,0 +1,159 @@
+"""The frequency panels of an inspection."""
+
+from __future__ import annotations
+
+import math
+from typing import TYPE_CHECKING
+
+import numpy as np
+from numpy.typing import NDArray
+
+from frontend_sim.measure.response.gain import Corner
+from frontend_sim.present.colours import BLACK, EXACT, GREEN, LIMIT, MARK, ORANGE, PURPLE
+from frontend_sim.present.frequency_view import FrequencyView
+from frontend_sim.present.numbers import engineering, prefix_of
+
+if TYPE_CHECKING:
+    from matplotlib.axes import Axes
+
+MODEL_STYLE = {"zoh": (ORANGE, "--"), "foh": (GREEN, "-."), "bilinear": (PURPLE, ":")}
+"""Colour and line of each discrete model."""
+
+LEAST_SHOWN, MOST_SHOWN = 40.0, 240.0
+"""The magnitude is shown at least and at most so far below its highest point [dB]."""
+
+
+def draw_magnitude(axes: Axes, view: FrequencyView) -> None:
+    """Draw the magnitude, the level of the corners, the corners, half the rate and the rate."""
+    axes.semilogx(
+        view.frequency, view.magnitude, color=EXACT, linewidth=1.8, label="exact", zorder=3
+    )
+    for curve in view.models:
+        colour, line = MODEL_STYLE[curve.method]
+        rate = engineering(view.inspection.models[0].grid_rate, "Hz")
+        axes.plot(
+            curve.frequency, curve.magnitude, color=colour, linestyle=line, linewidth=1.5,
+            label=f"{curve.method} at {rate}", zorder=4,
+        )  # fmt: skip
+    low, high = _limits(view)
+    axes.set_ylim(low, high)
+    axes.set_ylabel("magnitude [dB]")
+    _draw_rates(axes, view, labels=True)
+    _draw_corners(axes, view)
+    axes.legend(loc="lower left", fontsize="small", framealpha=0.9)
+
+
+def draw_phase(axes: Axes, view: FrequencyView) -> None:
+    """Draw the phase, and with it what a pure delay adds, as far as that stays in view."""
+    from matplotlib.ticker import MultipleLocator
+
+    axes.semilogx(view.frequency, view.phase, color=EXACT, linewidth=1.8, zorder=3)
+    shown = [view.phase]
+    for curve in view.models:
+        colour, line = MODEL_STYLE[curve.method]
+        axes.plot(
+            curve.frequency, curve.phase, color=colour, linestyle=line, linewidth=1.5, zorder=4
+        )
+        shown.append(curve.phase)
+    finite = np.concatenate(shown)
+    finite = finite[np.isfinite(finite)]
+    lowest, highest = float(np.min(finite)), float(np.max(finite))
+    delay = view.inspection.time.delay
+    if delay > 0.0:
+        turned = view.phase - 360.0 * delay * view.frequency
+        axes.plot(view.frequency, turned, color=BLACK, linestyle="--", linewidth=1.0,
+                  label=f"with the delay of {engineering(delay, 's')}")  # fmt: skip
+        axes.plot([], [], color=EXACT, linewidth=1.8, label="without the delay")
+        axes.legend(loc="lower left", fontsize="small", framealpha=0.9)
+        lowest = max(float(np.min(turned)), lowest - 360.0)
+    step = _degree_step(highest - lowest)
+    axes.set_ylim(step * math.floor(lowest / step - 0.2), step * math.ceil(highest / step + 0.2))
+    axes.yaxis.set_major_locator(MultipleLocator(step))
+    axes.set_ylabel("phase [deg]")
+    _draw_rates(axes, view, labels=False)
+    _draw_corners(axes, view, labels=False)
+
+
+def draw_delay(axes: Axes, view: FrequencyView) -> None:
+    """Draw the group delay, pure delay included."""
+    factor, letter = prefix_of(float(np.max(np.abs(view.delay), initial=0.0)))
+    axes.semilogx(view.frequency, factor * view.delay, color=EXACT, linewidth=1.8, zorder=3)
+    axes.set_ylabel(f"group delay [{letter}s]")
+    axes.set_xlabel("frequency [Hz]")
+    axes.set_xlim(view.frequency[0], view.frequency[-1])
+    _show_flat(axes, factor * view.delay)
+    _draw_rates(axes, view, labels=False)
+    _draw_corners(axes, view, labels=False)
+
+
+def _limits(view: FrequencyView) -> tuple[float, float]:
+    """Return the range of the magnitude: all of it, or down to where the rate is well in view."""
+    finite = view.magnitude[np.isfinite(view.magnitude)]
+    if len(finite) == 0:
+        return -20.0, 20.0
+    highest, lowest = float(np.max(finite)), float(np.min(finite))
+    rate = view.inspection.adc.rate
+    marked = np.interp([0.5 * rate, rate], view.frequency, view.magnitude)
+    if math.isinf(view.inspection.frequency.largest.value):
+        # Nothing is to be seen in how near a point of the grid lies to a pole on the axis.
+        highest = min(highest, max(float(view.magnitude[0]), float(np.max(marked))) + 60.0)
+    bottom = max(lowest, min(highest - LEAST_SHOWN, float(np.min(marked))) - 20.0)
+    bottom = max(bottom, highest - MOST_SHOWN)
+    room = max(0.08 * (highest - bottom), 3.0)
+    return bottom - room, highest + 1.8 * room
+
+
+def _draw_rates(axes: Axes, view: FrequencyView, labels: bool) -> None:
+    rate = view.inspection.adc.rate
+    axes.axvspan(0.5 * rate, view.frequency[-1], color="0.93", zorder=0)
+    for frequency in (0.5 * rate, rate):
+        axes.axvline(frequency, color=LIMIT, linestyle="--", linewidth=1.0, zorder=2)
+    if labels:
+        for frequency, side, label in (
+            (0.5 * rate, "right", "half the rate"),
+            (rate, "left", "rate"),
+        ):
+            axes.annotate(
+                f"{label} {engineering(frequency, 'Hz')}", (frequency, 1.0),
+                xycoords=("data", "axes fraction"), xytext=(0, 2), textcoords="offset points",
+                ha=side, va="bottom", fontsize="small", color=LIMIT,
+            )  # fmt: skip
+
+
+def _draw_corners(axes: Axes, view: FrequencyView, labels: bool = True) -> None:
+    measured = view.inspection.frequency
+    for corner in measured.corners:
+        axes.axvline(corner.frequency, color=MARK, linestyle=":", linewidth=1.2, zorder=2)
+    if not labels or not measured.corners:
+        return
+    level = 20.0 * math.log10(measured.largest.value) - 10.0 * math.log10(2.0)
+    axes.axhline(level, color=MARK, linestyle=":", linewidth=0.8, zorder=2)
+    for corner in _labelled(view):
+        left = corner.side == "lower"
+        axes.annotate(
+            f"−3 dB {engineering(corner.frequency, 'Hz', 4)}", (corner.frequency, level),
+            xytext=(-4 if left else 4, 3), textcoords="offset points",
+            ha="right" if left else "left", va="bottom", fontsize="small", color=BLACK, zorder=5,
+            bbox={"facecolor": "white", "edgecolor": "none", "alpha": 0.75, "pad": 0.8},
+        )  # fmt: skip
+
+
+def _labelled(view: FrequencyView) -> tuple[Corner, ...]:
+    """Return the outermost corners: those between would only cover each other."""
+    corners = view.inspection.frequency.corners
+    return corners if len(corners) <= 2 else (corners[0], corners[-1])
+
+
+def _degree_step(span: float) -> float:
+    steps = (5.0, 15.0, 45.0, 90.0, 180.0, 360.0)
+    return next((step for step in steps if span / step <= 7.0), 720.0)
+
+
+def _show_flat(axes: Axes, values: NDArray[np.float64]) -> None:
+    """Give a constant curve an axis of its own size instead of the range of its rounding."""
+    lowest, highest = float(np.min(values)), float(np.max(values))
+    size = max(abs(lowest), abs(highest))
+    if size == 0.0:
+        axes.set_ylim(-1.0, 1.0)
+    elif highest - lowest <= 1e-9 * size:
+        axes.set_ylim(min(0.0, 1.5 * lowest), max(0.0, 1.5 * highest))

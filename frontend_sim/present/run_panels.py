@@ -1,0 +1,154 @@
+"""The panels of the plot of a run."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass
+from typing import TYPE_CHECKING, Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+from frontend_sim.converter.adc import Adc
+from frontend_sim.present.colours import BLUE, LIMIT, MARK, ORANGE, SERIES
+from frontend_sim.present.decimation import shown_flags, shown_points
+from frontend_sim.present.numbers import engineering, prefix_of
+
+if TYPE_CHECKING:
+    from matplotlib.axes import Axes
+
+Real = NDArray[np.float64]
+
+FEW = 120
+"""Up to so many conversions are drawn as dots of their own."""
+
+NARROW = 0.05
+"""The limits of the range are in view unless the signal spans less than this share of it."""
+
+
+@dataclass(frozen=True, eq=False)
+class Conversions:
+    """What the converter saw and gave.
+
+    Parameters
+    ----------
+    adc : the converter
+    time : in the unit of the axis, shape (K,)
+    pin, voltage : shape (K,) [V]
+    overrange : shape (K,)
+    """
+
+    adc: Adc
+    time: Real
+    pin: Real
+    voltage: Real
+    overrange: NDArray[np.bool_]
+
+    @property
+    def few(self) -> bool:
+        """Whether each conversion can be seen for itself."""
+        return len(self.time) <= FEW
+
+
+def draw_codes(axes: Axes, conversions: Conversions) -> None:
+    """Draw the pin, the codes read back, the limits of the range and what is beyond them."""
+    adc, time = conversions.adc, conversions.time
+    factor, letter = prefix_of(max(abs(adc.low), abs(adc.high)))
+    dots: dict[str, Any] = {"marker": "o", "markersize": 5.0, "linestyle": "none"}
+    _line(
+        axes, time, factor * conversions.voltage, color=ORANGE, label="codes read back",
+        **(dots if conversions.few else {"linewidth": 2.6}),
+    )  # fmt: skip
+    _line(
+        axes, time, factor * conversions.pin, color=BLUE, linewidth=1.0, label="pin, exact",
+        marker="." if conversions.few else None, markersize=4.0,
+    )  # fmt: skip
+    _draw_limits(axes, conversions, factor)
+    marked = shown_flags(conversions.overrange)
+    if len(marked):
+        axes.plot(
+            time[marked], factor * conversions.voltage[marked], "x", color=LIMIT, markersize=6.0,
+            label="beyond the range", zorder=4,
+        )  # fmt: skip
+    axes.set_ylabel(f"voltage [{letter}V]")
+    _add_code_axis(axes, adc, factor)
+    _add_legend(axes)
+
+
+def _draw_limits(axes: Axes, conversions: Conversions, factor: float) -> None:
+    """Draw the limits of the range; where the signal is small beside it, tell of them instead."""
+    adc, both = conversions.adc, (conversions.pin, conversions.voltage)
+    lowest = min(float(np.min(values, initial=np.inf)) for values in both)
+    highest = max(float(np.max(values, initial=-np.inf)) for values in both)
+    style: dict[str, Any] = {"color": LIMIT, "linestyle": "--", "linewidth": 1.0}
+    text = f"ADC range {engineering(adc.low, 'V')} to {engineering(adc.high, 'V')}"
+    small = 0.0 < highest - lowest < NARROW * (adc.high - adc.low)
+    if small and not np.any(conversions.overrange):
+        axes.plot([], [], label=f"{text}, out of view", **style)
+        return
+    axes.axhline(factor * adc.low, label=text, **style)
+    axes.axhline(factor * adc.high, **style)
+
+
+def _add_code_axis(axes: Axes, adc: Adc, factor: float) -> None:
+    """Count codes on the right: code = (voltage - low) / LSB + lowest code."""
+
+    def to_code(voltage: Any) -> Any:
+        return (np.asarray(voltage) / factor - adc.low) / adc.lsb + adc.lowest_code
+
+    def to_voltage(code: Any) -> Any:
+        return factor * (adc.low + (np.asarray(code) - adc.lowest_code) * adc.lsb)
+
+    right = axes.secondary_yaxis("right", functions=(to_code, to_voltage))
+    right.set_ylabel("code [counts]")
+
+
+def draw_difference(axes: Axes, conversions: Conversions) -> None:
+    """Draw what the codes read back lie above the pin; clipped conversions are left out."""
+    inside = ~conversions.overrange
+    difference = (conversions.voltage[inside] - conversions.pin[inside]) / conversions.adc.lsb
+    dots: dict[str, Any] = {"marker": "o", "markersize": 3.0, "linestyle": "none"}
+    style = dots if conversions.few else {"linewidth": 0.7}
+    _line(axes, conversions.time[inside], difference, color=MARK, **style)
+    axes.axhline(0.0, color="black", linewidth=0.6)
+    axes.set_ylabel("codes − pin\n[LSB]")
+    if not np.all(inside):
+        axes.set_title(
+            "without conversions beyond the range", loc="right", fontsize="small", color=LIMIT
+        )
+
+
+def draw_waveforms(axes: Axes, time: Real, waveform: Mapping[str, Real]) -> None:
+    """Draw the waveforms of all points that are kept."""
+    shown, largest = {}, 0.0
+    for name in waveform:
+        values = waveform[name]
+        kept = shown_points(values)
+        shown[name] = time[kept], values[kept]
+        largest = max(largest, float(np.max(np.abs(values))))
+    factor, letter = prefix_of(largest)
+    for index, (name, (at, values)) in enumerate(shown.items()):
+        axes.plot(
+            at, factor * values, color=SERIES[index % len(SERIES)],
+            # Curves that lie on one another show as bands.
+            linewidth=min(1.0 + 0.8 * (len(shown) - 1 - index), 3.4),
+            linestyle="-" if index < len(SERIES) else "--",
+            # A dollar sign would begin a formula, and a name in front of "_" is not shown.
+            label=name.replace("$", r"\$").lstrip("_") or "point",
+        )  # fmt: skip
+    axes.set_ylabel(f"waveforms [{letter}V]")
+    _add_legend(axes)
+
+
+def _line(axes: Axes, time: Real, values: Real, **style: Any) -> None:
+    """Draw a series with no more points than columns of pixels can show."""
+    kept = shown_points(values)
+    axes.plot(time[kept], values[kept], **style)
+
+
+def _add_legend(axes: Axes) -> None:
+    """Put the legend above the panel, where it covers nothing."""
+    axes.legend(
+        loc="lower left", bbox_to_anchor=(0.0, 1.0), ncols=4, fontsize="small", frameon=False,
+        borderaxespad=0.2,
+    )  # fmt: skip

@@ -1,0 +1,79 @@
+"""The plot of a run: what the pin did, what the codes say of it, what arrived."""
+
+from __future__ import annotations
+
+import os
+from pathlib import Path
+from textwrap import fill
+from typing import TYPE_CHECKING
+
+import numpy as np
+
+from frontend_sim.converter.adc import Adc
+from frontend_sim.present.figure_file import check_plot_target, new_figure, save_figure
+from frontend_sim.present.numbers import engineering, prefix_of
+from frontend_sim.present.run_like import RunLike
+from frontend_sim.present.run_panels import Conversions, draw_codes, draw_difference, draw_waveforms
+
+if TYPE_CHECKING:
+    from matplotlib.axes import Axes
+    from matplotlib.figure import Figure
+
+
+def plot_run(run: RunLike, path: str | os.PathLike[str], overwrite: bool = False) -> Path:
+    """Draw a run, or a record, into a PNG or SVG file.
+
+    Pin voltage and the codes read back, with the limits of the ADC's range and marks where it was
+    exceeded; the difference of the two in LSB; and the waveforms, where some are kept. A long run
+    is reduced to the lowest and the highest value of each column of pixels, so no peak is lost.
+
+    Parameters
+    ----------
+    run : a ``Run`` or an open ``Record``
+    path : ends in .png or .svg
+    overwrite : whether a file that is there may be replaced
+
+    Returns
+    -------
+    The file that was written, links followed.
+
+    Raises
+    ------
+    OutputError
+        If the path cannot be written as asked for.
+    """
+    check_plot_target(path, overwrite)
+    return save_figure(run_figure(run), path, overwrite)
+
+
+def run_figure(run: RunLike) -> Figure:
+    """Return the figure of a run, to draw on or to show elsewhere."""
+    adc, time = run.scenario.adc, run.time
+    waveform_time = run.waveform_time if len(run.waveform) else np.empty(0)
+    heights = [3.0, 1.2, 2.2] if len(waveform_time) else [3.0, 1.2]
+    figure = new_figure(10.0, 1.9 + 1.1 * sum(heights))
+    axes: list[Axes] = list(figure.subplots(len(heights), 1, sharex=True, height_ratios=heights))
+    last = max((float(times[-1]) for times in (time, waveform_time) if len(times)), default=0.0)
+    factor, letter = prefix_of(last)
+    conversions = Conversions(adc, factor * time, run.pin, run.voltage, run.overrange)
+    draw_codes(axes[0], conversions)
+    draw_difference(axes[1], conversions)
+    if len(waveform_time):
+        draw_waveforms(axes[2], factor * waveform_time, run.waveform)
+    axes[-1].set_xlabel(f"time [{letter}s]")
+    beyond = int(np.count_nonzero(conversions.overrange))
+    figure.suptitle(_title(run.scenario.title, adc, len(time), beyond))
+    for each in axes:
+        each.grid(True, color="0.9", linewidth=0.6)
+        each.set_axisbelow(True)
+    return figure
+
+
+def _title(title: str, adc: Adc, count: int, beyond: int) -> str:
+    low, high = engineering(adc.low, "V"), engineering(adc.high, "V")
+    facts = (
+        f"{count} conversions at {engineering(adc.rate, 'Hz')}, {adc.bits} bits, {low} to {high}"
+    )
+    facts += f", {beyond} beyond the range" if beyond else ", none beyond the range"
+    # A dollar sign would begin a formula.
+    return fill(title or "Run without a title", 90).replace("$", r"\$") + "\n" + facts
