@@ -9,7 +9,7 @@ from itertools import pairwise
 
 import numpy as np
 
-from frontend_sim.analog.block import Complex, Real
+from frontend_sim.analog.block import Real
 from frontend_sim.analog.chain import Chain
 from frontend_sim.analog.noise import NoiseModel, stationary_covariance
 from frontend_sim.converter.adc import Adc
@@ -115,7 +115,7 @@ def noise_density(model: NoiseModel, b: Real, frequency: Real) -> Real:
     n = len(model.a)
     s = 2j * np.pi * frequency[:, None, None] * np.eye(n)
     right = np.broadcast_to(b, (len(frequency), *b.shape))
-    states: Complex = np.linalg.solve(s - model.a, right.astype(np.complex128))
+    states = np.linalg.solve(s - model.a, right.astype(np.complex128))
     through = np.einsum("n,knq->kq", model.c, states)
     return np.asarray(2.0 * np.sum(np.abs(through) ** 2, axis=1))
 
@@ -138,7 +138,7 @@ def _panels(model: NoiseModel, limit: float) -> Iterator[tuple[float, float]]:
     poles = np.linalg.eigvals(model.a)
     magnitude = np.abs(poles[poles != 0.0]) / (2.0 * np.pi)
     lowest = min(float(np.min(magnitude, initial=limit)), limit) * 1e-3
-    count = max(int(math.ceil(math.log2(limit / lowest) * PANELS_PER_OCTAVE)), 1)
+    count = max(math.ceil(math.log2(limit / lowest) * PANELS_PER_OCTAVE), 1)
     edges = [0.0, *np.geomspace(lowest, limit, count + 1)]
     for pole in poles[poles.imag > 0.0]:
         centre, width = pole.imag / (2.0 * np.pi), abs(pole.real) / (2.0 * np.pi)
