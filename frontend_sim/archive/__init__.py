@@ -1,1 +1,18 @@
-"""."""
+"""HDF5 out and in: what a run gave, kept whole, and run again from itself."""
+
+from frontend_sim.archive.opening import open_record
+from frontend_sim.archive.record import Record
+from frontend_sim.archive.repeat import rerun, rerun_scenario
+from frontend_sim.archive.result import Result, Verdict
+from frontend_sim.archive.save import record_run, save_record
+
+__all__ = [
+    "Record",
+    "Result",
+    "Verdict",
+    "open_record",
+    "record_run",
+    "rerun",
+    "rerun_scenario",
+    "save_record",
+]

@@ -13,6 +13,7 @@ from frontend_sim.stimulus.half_sine import HalfSine
 from frontend_sim.stimulus.noise_burst import NoiseBurst
 from frontend_sim.stimulus.pulse import Pulse
 from frontend_sim.stimulus.ramp import Ramp
+from frontend_sim.stimulus.recording import Recording
 from frontend_sim.stimulus.sine import Sine
 from frontend_sim.stimulus.step import Step
 from frontend_sim.stimulus.sum import Sum
@@ -29,10 +30,11 @@ AnyStimulus = Annotated[
     | HalfSine
     | DoubleExponential
     | NoiseBurst
-    | Sum,
+    | Sum
+    | Recording,
     Field(discriminator="kind"),
 ]
 
 Sum.model_rebuild(_types_namespace={"AnyStimulus": AnyStimulus})
 
-STIMULI: dict[str, type[Stimulus]] = table(AnyStimulus, Stimulus)
+STIMULI: dict[str, type[Stimulus]] = table(AnyStimulus)

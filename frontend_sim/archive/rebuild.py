@@ -1,0 +1,73 @@
+"""The scenario of a record, built again from its resolved values."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from pathlib import Path
+from typing import Any
+
+from pydantic import ValidationError
+
+from frontend_sim.errors import RecordError
+from frontend_sim.scenario.model import Scenario
+
+
+def places(entry: Mapping[str, Any], record: Path) -> tuple[Path, ...]:
+    """Return where a file of the stimulus may be, the likeliest first, each place once.
+
+    That is the path it had, beside the record, and where it was as seen from the record.
+
+    Parameters
+    ----------
+    entry : of ``files`` in ``/resolved``
+    record : path of the record
+    """
+    stored, directory = Path(entry["path"]), record.absolute().parent
+    found = (stored, directory / stored.name, (directory / entry["from_record"]).resolve())
+    return tuple(dict.fromkeys(found))
+
+
+def first_there(entry: Mapping[str, Any], record: Path) -> Path:
+    """Return the first of the places where a file is, or the path it had."""
+    return next((place for place in places(entry, record) if place.is_file()), Path(entry["path"]))
+
+
+def rebuild(
+    values: dict[str, Any], files: Mapping[str, Path], source: str, record: Path
+) -> Scenario:
+    """Build a scenario from its resolved values.
+
+    Parameters
+    ----------
+    values : as ``Scenario.resolved`` returned them
+    files : name of a file in these values -> where it is now
+    source : the scenario as written, "" where a program made it
+    record : named in messages
+
+    Raises
+    ------
+    RecordError
+        If the values are no scenario for this version of the program.
+    InputError
+        If a file of the stimulus cannot be read.
+    """
+    names = {name: str(path) for name, path in files.items()}
+    moved = {**values, "stimulus": _renamed(values["stimulus"], names)}
+    try:
+        scenario = Scenario.model_validate(moved)
+    except ValidationError as error:
+        first = error.errors()[0]
+        key = ".".join(map(str, first["loc"]))
+        raise RecordError(
+            f"{record}: its scenario cannot be built again, {key}: {first['msg']}; it comes from "
+            "another version of frontend-sim, or was changed"
+        ) from error
+    return scenario.model_copy(update={"source": source})
+
+
+def _renamed(value: Any, names: Mapping[str, str]) -> Any:
+    if isinstance(value, dict):
+        return {key: _renamed(item, names) for key, item in value.items()}
+    if isinstance(value, list):
+        return [_renamed(item, names) for item in value]
+    return names.get(value, value) if isinstance(value, str) else value

@@ -1,0 +1,136 @@
+"""A run, while it goes on or when it is finished, becomes a record."""
+
+from __future__ import annotations
+
+import os
+from collections.abc import Callable, Iterable
+from dataclasses import dataclass, fields
+from pathlib import Path
+from typing import Protocol
+
+from frontend_sim.archive.grid import grid_results
+from frontend_sim.archive.opening import open_record
+from frontend_sim.archive.provenance import document, refuse_changed, source_files
+from frontend_sim.archive.result import Result
+from frontend_sim.archive.target import new_file, usable_target
+from frontend_sim.archive.writer import Writer
+from frontend_sim.errors import OutputError, RecordError
+from frontend_sim.scenario.model import Scenario
+from frontend_sim.simulation.run import GridReport, Run, RunBlock
+
+Progress = Callable[[float], None]
+
+
+class Source(Protocol):
+    """What a record is made from; ``frontend_sim.simulation.Simulation`` is one."""
+
+    @property
+    def scenario(self) -> Scenario:
+        """What is simulated."""
+
+    @property
+    def notes(self) -> tuple[str, ...]:
+        """What was decided on the way, whole after the last block."""
+
+    @property
+    def grid(self) -> GridReport | None:
+        """How good a discrete model was, known after the last block."""
+
+    def blocks(self, progress: Progress | None = None) -> Iterable[RunBlock]:
+        """Run, and return the results block by block."""
+
+
+def record_run(
+    simulation: Source,
+    path: str | os.PathLike[str],
+    *,
+    overwrite: bool = False,
+    progress: Progress | None = None,
+    results: Iterable[Result] = (),
+    inputs: Iterable[Path] = (),
+) -> Path:
+    """Run a simulation and store it as it goes on; memory is bounded by its block.
+
+    The record is written to a temporary name in the same directory, read back whole, and renamed:
+    it exists complete or not at all.
+
+    Parameters
+    ----------
+    simulation : what to run
+    path : where the record goes
+    overwrite : replace a record that is there; anything else is never replaced
+    progress : called with the share that is done, from 0 to 1
+    results : rows of ``/measure`` and ``/check``, read after the last block, so that a generator
+        can compute them from it
+    inputs : further files that must not be replaced, for instance the scenario's; the files of
+        the stimulus are known
+
+    Returns
+    -------
+    The path of the record, links followed.
+
+    Raises
+    ------
+    OutputError
+        If the record cannot be written there.
+    InputError
+        If the scenario cannot be run, or a file of the stimulus changes meanwhile.
+    """
+    scenario = simulation.scenario
+    target = usable_target(path, overwrite, [*scenario.stimulus.files(), *inputs])
+    files = source_files(scenario)
+    resolved = document(scenario, files, target.parent)
+    with new_file(target, path, overwrite) as temporary:
+        with Writer(temporary, path, scenario, resolved) as writer:
+            for block in simulation.blocks(progress):
+                writer.append(block)
+            refuse_changed(files)
+            writer.finish(simulation.notes, [*grid_results(simulation.grid), *results])
+        _read_back(temporary, path)
+    return target
+
+
+def save_record(
+    run: Run,
+    path: str | os.PathLike[str],
+    *,
+    overwrite: bool = False,
+    results: Iterable[Result] = (),
+    inputs: Iterable[Path] = (),
+) -> Path:
+    """Store a finished run; parameters, result and errors are those of ``record_run``."""
+    return record_run(_Finished(run), path, overwrite=overwrite, results=results, inputs=inputs)
+
+
+@dataclass(frozen=True)
+class _Finished:
+    """A finished run as the source of one block."""
+
+    run: Run
+
+    @property
+    def scenario(self) -> Scenario:
+        return self.run.scenario
+
+    @property
+    def notes(self) -> tuple[str, ...]:
+        return self.run.notes
+
+    @property
+    def grid(self) -> GridReport | None:
+        return self.run.grid
+
+    def blocks(self, progress: Progress | None = None) -> Iterable[RunBlock]:
+        names = (field.name for field in fields(RunBlock) if field.name != "start")
+        yield RunBlock(0, **{name: getattr(self.run, name) for name in names})
+        if progress is not None:
+            progress(1.0)
+
+
+def _read_back(temporary: Path, path: object) -> None:
+    """Read everything once, before anything is renamed."""
+    try:
+        with open_record(temporary) as record:
+            record.verify()
+    except RecordError as error:
+        raise OutputError(f"{path} was written but does not read back: {error}") from error
