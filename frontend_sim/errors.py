@@ -6,7 +6,8 @@
     │   ├── ScenarioError     a key, a table or a combination of keys of a scenario
     │   ├── ModelError        parts that give no usable circuit (unstable, improper, ...)
     │   ├── RecordingError    a recorded signal that cannot be read as asked
-    │   └── RecordError       an HDF5 record that cannot be read or is not one
+    │   ├── RecordError       an HDF5 record that cannot be read or is not one
+    │   └── MeasureError      a question that the samples at hand cannot answer
     ├── OutputError           a result cannot be written where it was asked for: exit status 2
     └── Interrupted           the user stopped the run: exit status 130
 
@@ -77,6 +78,10 @@ class RecordingError(InputError):
 
 class RecordError(InputError):
     """An HDF5 record cannot be read, or is not one."""
+
+
+class MeasureError(InputError):
+    """The samples at hand cannot answer what was asked of them; the message says what could."""
 
 
 class OutputError(FrontendSimError, OSError):

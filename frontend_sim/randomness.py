@@ -32,11 +32,12 @@ def normal(key: tuple[int, ...], start: int, stop: int) -> NDArray[np.float64]:
     if stop <= start:
         return np.empty(0)
     first, last = start // TILE, (stop - 1) // TILE
-    tiles = [
-        np.random.Generator(
-            np.random.Philox(np.random.SeedSequence(key, spawn_key=(tile % 2**32, tile // 2**32)))
-        ).standard_normal(TILE)
-        for tile in range(first, last + 1)
-    ]
+    tiles = [_tile(key, tile) for tile in range(first, last + 1)]
     drawn = tiles[0] if len(tiles) == 1 else np.concatenate(tiles)
     return drawn[start - first * TILE : stop - first * TILE]
+
+
+def _tile(key: tuple[int, ...], tile: int) -> NDArray[np.float64]:
+    # A seed sequence fills short keys up with zeros; the length tells (1, 2) from (1, 2, 0).
+    seeds = np.random.SeedSequence((*key, len(key)), spawn_key=(tile % 2**32, tile // 2**32))
+    return np.random.Generator(np.random.Philox(seeds)).standard_normal(TILE)

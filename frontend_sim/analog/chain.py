@@ -24,12 +24,19 @@ ROOM_TEMPERATURE = 298.15
 
 @dataclass(frozen=True, eq=False)
 class Section:
-    """What one stage brings into the chain: name, blocks, pure delay [s], noise sources."""
+    """What one stage brings into the chain.
+
+    Parameters
+    ----------
+    delay : pure delay [s]
+    offset : constant that the stage adds to its output
+    """
 
     name: str
     blocks: tuple[Block, ...]
     delay: float
     noise: tuple[NoiseInput, ...] = ()
+    offset: float = 0.0
 
 
 @dataclass(frozen=True, eq=False)
@@ -52,6 +59,10 @@ class Chain:
     points : names of the p points
     noise_b : columns of the q noise sources, shape (n, q) [1/s]
     noise_d : their direct way to each point, shape (p, q) [1]
+    offset : what the constant sources of the stages (offset voltages, bias currents, references)
+        add to each point, shape (p,). They have been on for ever, so each adds its settled value
+        and no transient, whether the chain starts settled on the stimulus or at rest. It is not in
+        c x + d u: the signal of point i is y_i + offset_i.
     """
 
     sections: tuple[Section, ...]
@@ -63,6 +74,7 @@ class Chain:
     points: tuple[str, ...]
     noise_b: Real
     noise_d: Real
+    offset: Real
 
     @property
     def order(self) -> int:
@@ -198,7 +210,13 @@ def section(stage: Stage, name: str, temperature: float = ROOM_TEMPERATURE) -> S
                     f"stage {name!r} is unstable: it has a pole at {_text_of(pole)} rad/s; every "
                     "pole needs a negative real part"
                 )
-    return Section(name, blocks, stage.transport_delay(), stage.noise(temperature))
+    return Section(
+        name,
+        blocks,
+        stage.transport_delay(),
+        stage.noise(temperature),
+        stage.offset(temperature),
+    )
 
 
 def _text_of(pole: complex) -> str:
@@ -230,7 +248,13 @@ def compose(sections: Sequence[Section]) -> Chain:
 
         a = [[a1, 0], [b2 c1, a2]],  b = [b1, b2 d1],  c = [d2 c1, c2],  d = d2 d1.
 
-    A noise source is one more input, which enters at its own block.
+    A noise source is one more input, which enters at its own block. A constant source is one that
+    has been on for ever: what it adds to each point is its settled value.
+
+    Raises
+    ------
+    ModelError
+        If a pole at the origin would drift away on a constant source before it.
     """
     n = sum(block.order for part in sections for block in part.blocks)
     q = sum(len(part.noise) for part in sections)
@@ -266,4 +290,24 @@ def compose(sections: Sequence[Section]) -> Chain:
         tuple(names),
         noise_b,
         np.array(noise_rows),
+        _offsets(sections),
     )
+
+
+def _offsets(sections: Sequence[Section]) -> Real:
+    """Return what the constant sources of all stages add to each point, shape (p,)."""
+    level, levels = 0.0, [0.0]
+    for part in sections:
+        for block in part.blocks:
+            if level == 0.0:
+                break
+            if np.any(block.poles == 0.0):
+                raise ModelError(
+                    f"stage {part.name!r} has a pole at the origin and would drift away on the "
+                    f"offset of {level:g} that the stages before it add; give the integrator a "
+                    "large but finite time constant, or put a high pass before it"
+                )
+            level *= float(block.response(np.zeros(1, dtype=np.complex128))[0].real)
+        level += part.offset
+        levels.append(level)
+    return np.array(levels)

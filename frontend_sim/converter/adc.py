@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from typing import Annotated, Literal, Self
 
 from pydantic import Field, model_validator
@@ -21,12 +22,15 @@ Rounding = Literal["nearest", "down"]
 MOST_JITTER = 0.05
 """Largest rms jitter as a share of the conversion period; instants then stay in order."""
 
+FEWEST_ROUNDINGS = 16.0
+"""Least width of a code in units of the last place of the range's ends."""
+
 
 class Adc(Value):
     """When the converter looks, and how it rounds what it sees.
 
-        t[k] = first + k / rate + aperture_delay + aperture_jitter · normal[k]
-        LSB = (high - low) / 2^bits
+    t[k] = first + k / rate + aperture_delay + aperture_jitter · normal[k]
+    LSB = (high - low) / 2^bits
     """
 
     rate: Frequency = Field(description="conversions per second")
@@ -49,7 +53,8 @@ class Adc(Value):
     aperture_jitter: Time = Field(default=0.0, description="rms jitter of that moment")
     offset: Voltage = Field(default=0.0, description="offset error, added to the input")
     gain_error: Fraction = Field(
-        default=0.0, description="gain error: the input counts 1 + gain_error times, from zero volts"
+        default=0.0,
+        description="gain error: the input counts 1 + gain_error times, from zero volts",
     )
     input_noise: NotNegativeVoltage = Field(
         default=0.0, description="rms noise of a conversion, referred to the input"
@@ -61,6 +66,12 @@ class Adc(Value):
             raise ValueError(
                 f"the range is reversed or empty: low {self.low:g} V must lie below high "
                 f"{self.high:g} V"
+            )
+        furthest = max(abs(self.low), abs(self.high))
+        if self.lsb < FEWEST_ROUNDINGS * math.ulp(furthest):
+            raise ValueError(
+                f"a code of {self.lsb:g} V is lost in the rounding of {furthest:g} V; take fewer "
+                "bits, or put the range nearer to zero"
             )
         if self.code == "offset-binary" and not self.low < 0.0 < self.high:
             raise ValueError(
@@ -91,9 +102,9 @@ class Adc(Value):
     @property
     def lowest_code(self) -> int:
         """Code at the lower end of the range."""
-        return -(2 ** (self.bits - 1)) if self.code_format == "twos-complement" else 0
+        return -(1 << (self.bits - 1)) if self.code_format == "twos-complement" else 0
 
     @property
     def highest_code(self) -> int:
         """Code at the upper end of the range."""
-        return self.lowest_code + 2**self.bits - 1
+        return self.lowest_code + (1 << self.bits) - 1

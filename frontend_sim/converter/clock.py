@@ -20,7 +20,7 @@ def conversion_count(adc: Adc, duration: float) -> int:
     """Return the number of conversions with first + k/rate in [0, duration)."""
     position = (duration - adc.first) * adc.rate
     slack = 4.0 * np.finfo(np.float64).eps * max(abs(position), duration * adc.rate, 1.0)
-    return max(int(math.ceil(position - slack)), 0)
+    return max(math.ceil(position - slack), 0)
 
 
 def nominal_instants(adc: Adc, start: int, stop: int) -> Real:

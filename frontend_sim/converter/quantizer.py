@@ -31,17 +31,20 @@ def quantize(adc: Adc, voltage: Real) -> tuple[Codes, NDArray[np.bool_]]:
     """Return codes and overrange flags, each of shape (K,).
 
         position = (voltage - low) / LSB
-        nearest: floor(position + 1/2)      down: floor(position)
+        nearest: floor(position + 1/2), a tie upwards      down: floor(position)
 
     clipped to the range; the flag tells where the clipping changed the code. Source: the ideal
     transfer function of IEEE 1241, from memory, the standard was not at hand.
     """
     position = (voltage - adc.low) / adc.lsb
-    steps = np.floor(position + 0.5) if adc.rounding == "nearest" else np.floor(position)
+    steps = np.floor(position)
+    if adc.rounding == "nearest":
+        # The sum position + 1/2 would round a position just below a half to the next code.
+        steps += position - steps >= 0.5
     clipped = np.clip(steps, 0.0, 2.0**adc.bits - 1.0)
     return clipped.astype(np.int64) + adc.lowest_code, clipped != steps
 
 
 def read_back(adc: Adc, codes: Codes) -> Real:
     """Return the voltage that firmware reads from codes: low + (code - lowest) · LSB [V]."""
-    return adc.low + (codes - adc.lowest_code) * adc.lsb
+    return np.asarray(adc.low + (codes - adc.lowest_code) * adc.lsb)

@@ -4,16 +4,26 @@ from __future__ import annotations
 
 import math
 import re
-from collections.abc import Iterable
+from collections.abc import Iterable, Mapping
 from dataclasses import dataclass
 from typing import TYPE_CHECKING, Annotated, Any, get_args
 
-from pydantic import BeforeValidator, GetJsonSchemaHandler
+from pydantic import (
+    GetJsonSchemaHandler,
+    PlainSerializer,
+    ValidatorFunctionWrapHandler,
+    WrapValidator,
+)
 from pydantic_core import CoreSchema, PydanticCustomError
 
 from frontend_sim.errors import QuantityError
-from frontend_sim.quantities.dimension import Bounds, Dimension
+from frontend_sim.quantities.dimension import DRIFT, FRACTION, Bounds, Dimension
+from frontend_sim.quantities.level import Level, Sense, parse_level, signal_dimension
+from frontend_sim.quantities.part import Part
+from frontend_sim.quantities.preferred import SERIES
 from frontend_sim.quantities.reading import parse, shown
+from frontend_sim.quantities.spread import SpreadError, parse_part
+from frontend_sim.quantities.writing import as_text
 
 if TYPE_CHECKING:
     from pydantic.json_schema import JsonSchemaValue
@@ -24,26 +34,54 @@ class Reads:
     """Pydantic marker: read the quantity, check its bounds, and describe it in the JSON Schema.
 
     None never reaches the marker where a field is optional; where it is not, None is refused.
+
+    Parameters
+    ----------
+    dimension, bounds : what is expected, and in which interval
+    spread : True for the value of a part, which may be a table with tolerance and drift and is
+        then kept as a ``Part``
     """
 
     dimension: Dimension
     bounds: Bounds
+    spread: bool = False
 
     def read(self, value: object) -> float:
         """Return the value in SI; raises pydantic's own kind of error, with our message."""
         try:
-            number = parse(value, self.dimension)
+            number = self._parsed(value)
+        except SpreadError as error:
+            raise _fault(str(error), error.key) from None
         except QuantityError as error:
-            raise PydanticCustomError("quantity", "{reason}", {"reason": str(error)}) from None
-        complaint = self.bounds.complaint(number, self.dimension.unit)
+            raise _fault(str(error)) from None
+        complaint = self.bounds.complaint(float(number), self.dimension.unit)
         if complaint is not None:
-            reason = f"given {shown(value)}; {self.dimension.noun} here {complaint}"
-            raise PydanticCustomError("quantity", "{reason}", {"reason": reason})
+            given, key = (value["value"], "value") if isinstance(value, Mapping) else (value, "")
+            raise _fault(f"given {shown(given)}; {self.dimension.noun} here {complaint}", key)
         return number
+
+    def _parsed(self, value: object) -> float:
+        if self.spread:
+            return parse_part(value, self.dimension)
+        number = parse(value, self.dimension)
+        if isinstance(value, Part) or isinstance(number, Part):
+            raise QuantityError(f"given {shown(value)}; a spread has no meaning here")
+        return number
+
+    def _read_and_keep(self, value: object, handler: ValidatorFunctionWrapHandler) -> float:
+        """Let the plain number be checked, and keep what was read with it."""
+        kept = self.read(value)
+        number: float = handler(float(kept))
+        return kept if isinstance(kept, (Part, Level)) else number
+
+    def plain(self, value: float) -> float | str | dict[str, float | str]:
+        """Return a value as data for JSON."""
+        return value.plain() if isinstance(value, Part) else float(value)
 
     def __get_pydantic_core_schema__(self, source: Any, handler: Any) -> CoreSchema:
         """Put the reading in front of the field's own check."""
-        inner: CoreSchema = handler(Annotated[source, BeforeValidator(self.read)])
+        marks = (WrapValidator(self._read_and_keep), PlainSerializer(self.plain))
+        inner: CoreSchema = handler(Annotated[source, *marks])
         return inner
 
     def __get_pydantic_json_schema__(
@@ -63,14 +101,83 @@ class Reads:
             key: float(next((inner[k] for k in (key, name) if k in inner), limit))
             for key, (name, limit) in bounds.items()
         }
-        result: JsonSchemaValue = {
-            "type": ["string", "number"],
-            "unit": self.dimension.unit or "1",
-            "quantity": self.dimension.name,
-            "examples": re.findall(r'"([^"]+)"', self.dimension.example),
-            **{key: limit for key, limit in limits.items() if math.isfinite(limit)},
-        }
+        finite = {key: limit for key, limit in limits.items() if math.isfinite(limit)}
+        result = _quantity_schema(self.dimension, finite)
+        if self.spread:
+            result["type"].append("object")
+            result.update(_table_schema(result))
         return result
+
+
+@dataclass(frozen=True)
+class ReadsLevel(Reads):
+    """Pydantic marker for a value of the signal, whose unit the scenario checks later.
+
+    Parameters
+    ----------
+    sense : whether it is a value, a difference or a slope
+    with_unit : True where the value itself tells the unit of the signal; it is then stored with it
+    """
+
+    sense: Sense = "value"
+    with_unit: bool = False
+
+    def _parsed(self, value: object) -> float:
+        return parse_level(value, self.sense)
+
+    def plain(self, value: float) -> float | str | dict[str, float | str]:
+        """Return a value as data for JSON: in SI, with its unit where it is needed."""
+        if self.with_unit and isinstance(value, Level) and value.unit:
+            return as_text(value, signal_dimension(value.unit, self.sense))
+        return float(value)
+
+
+def _fault(reason: str, key: str = "") -> PydanticCustomError:
+    return PydanticCustomError(
+        "quantity", "{reason}", {"reason": reason, "path": [key] if key else []}
+    )
+
+
+def _quantity_schema(dimension: Dimension, limits: Mapping[str, float]) -> JsonSchemaValue:
+    return {
+        "type": ["string", "number"],
+        "unit": dimension.unit or "1",
+        "quantity": dimension.name,
+        "examples": re.findall(r'"([^"]+)"', dimension.example),
+        **limits,
+    }
+
+
+def _table_schema(value: JsonSchemaValue) -> JsonSchemaValue:
+    """Return what a part's table adds to the schema of its value."""
+    limits = {"minimum": 0.0, "exclusiveMaximum": 1.0}
+    inner = {key: item for key, item in value.items() if key not in ("default", "description")}
+    properties = {
+        "value": {**inner, "type": ["string", "number"], "description": "nominal value"},
+        "tolerance": {
+            **_quantity_schema(FRACTION, limits),
+            "description": "largest deviation from the nominal value, to either side, as a share",
+        },
+        "drift": {
+            **_quantity_schema(DRIFT, {}),
+            "description": "relative change with temperature, from 25 degC on",
+        },
+        "series": {
+            "enum": list(SERIES),
+            "description": "series of preferred numbers (IEC 60063) that the value must be from",
+        },
+    }
+    return {"properties": properties, "required": ["value"], "additionalProperties": False}
+
+
+def level_mark(metadata: Iterable[Any]) -> ReadsLevel | None:
+    """Return the marker of a field that holds a value of the signal, else None.
+
+    Parameters
+    ----------
+    metadata : ``FieldInfo.metadata``
+    """
+    return next((mark for mark in metadata if isinstance(mark, ReadsLevel)), None)
 
 
 def dimension_of(annotation: Any, metadata: Iterable[Any] = ()) -> Dimension | None:

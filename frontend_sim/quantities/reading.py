@@ -15,7 +15,8 @@ from numbers import Real
 from frontend_sim.errors import QuantityError
 from frontend_sim.quantities import rkm
 from frontend_sim.quantities.dimension import RATIO, Dimension
-from frontend_sim.quantities.units import factor
+from frontend_sim.quantities.part import Part
+from frontend_sim.quantities.units import factor, zero_of
 
 _DIGITS = r"[0-9]+(?:_[0-9]+)*"
 _NUMBER = re.compile(
@@ -61,7 +62,7 @@ def parse(value: object, dimension: Dimension) -> float:
 
     Returns
     -------
-    The value in ``dimension.unit``.
+    The value in ``dimension.unit``; a ``Part`` where an RKM code tells a tolerance.
 
     Raises
     ------
@@ -104,9 +105,10 @@ def _of_text(text: str, dimension: Dimension) -> float:
     if len(text) > _LONGEST:
         raise QuantityError("too long for a number with a unit")
     text = text.replace("\u2212", "-")  # the sign for minus
-    part = rkm.read(text, dimension.unit)
-    if part is not None:
-        return float(part)
+    code = rkm.read(text, dimension.unit)
+    if code is not None:
+        value = float(code.value)
+        return Part(value, float(code.tolerance)) if code.tolerance else value
     match = _NUMBER.fullmatch(text)
     if match is None:
         raise QuantityError(_why_no_number(text))
@@ -124,6 +126,11 @@ def _of_text(text: str, dimension: Dimension) -> float:
             f'the unit is missing; write "{text} {dimension.unit}", or the bare number without '
             f"quotes for {dimension.unit}"
         )
+    zero = zero_of(unit) if dimension.absolute else None
+    if zero is not None:
+        above, numerator, denominator = zero
+        kelvin = _EXACT.multiply(_EXACT.add(number, above), numerator)
+        return float(_EXACT.divide(kelvin, denominator))
     return float(_EXACT.multiply(number, factor(unit, dimension.unit)))
 
 

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import re
 from decimal import Decimal
+from typing import NamedTuple
 
 from frontend_sim.errors import QuantityError
 
@@ -18,8 +19,28 @@ _LETTERS: dict[str, dict[str, str]] = {
 }
 
 
-def read(text: str, unit: str) -> Decimal | None:
-    """Return the value of an RKM code (``4k7``, ``R47``, ``100n``), or None if it is none.
+TOLERANCES = {
+    "E": "0.00005", "L": "0.0001", "P": "0.0002", "W": "0.0005", "B": "0.001", "C": "0.0025",
+    "D": "0.005", "F": "0.01", "G": "0.02", "H": "0.03", "J": "0.05", "K": "0.1", "M": "0.2",
+    "N": "0.3",
+}  # fmt: skip
+"""Letters for symmetric tolerances in IEC 60062, as shares; from memory."""
+
+SMALL = Decimal("1e-11")
+"""Below this capacitance the letters mean picofarads [F]."""
+
+_IN_PICOFARADS = {"B": "0.1e-12", "C": "0.25e-12", "D": "0.5e-12", "F": "1e-12", "G": "2e-12"}
+
+
+class Code(NamedTuple):
+    """What a code says: a value, and a tolerance as a share, 0 where it has none."""
+
+    value: Decimal
+    tolerance: Decimal
+
+
+def read(text: str, unit: str) -> Code | None:
+    """Return what an RKM code says (``4k7``, ``R47``, ``100n``, ``4k7J``), or None if it is none.
 
     Parameters
     ----------
@@ -28,23 +49,42 @@ def read(text: str, unit: str) -> Decimal | None:
     Raises
     ------
     QuantityError
-        If the code carries a letter for the tolerance, or the letter is written in the wrong case.
+        If the letter is written in the wrong case, the tolerance is unknown or not symmetric, or
+        its letter could as well be the unit.
     """
     match = _CODE.fullmatch(text)
     letters = _LETTERS.get(unit)
     if match is None or letters is None:
         return None
     whole, letter, fraction, tolerance = match.groups()
-    if not (whole or fraction) or letter + tolerance == letter + unit:
+    if not (whole or fraction) or (tolerance == unit and not fraction):  # "100nF" has a unit
         return None
     if letter not in letters:
         other = letter.swapcase()
         if other in letters and fraction:
             raise QuantityError(f'the letter is {other!r} here: "{whole}{other}{fraction}"')
         return None
-    if tolerance:
+    if tolerance == unit:
         raise QuantityError(
-            f"it carries the tolerance letter {tolerance!r} of IEC 60062, which is not read here; "
-            f'write "{text[:-1]}"'
+            f"the {unit} at its end may be the unit or the letter for a tolerance; write "
+            f'"{text[:-1]}" or {{ value = "{text[:-1]}", tolerance = "{_percent(unit)}" }}'
         )
-    return Decimal(f"{whole or '0'}.{fraction or '0'}") * Decimal(letters[letter])
+    value = Decimal(f"{whole or '0'}.{fraction or '0'}") * Decimal(letters[letter])
+    return Code(value, _tolerance(tolerance, value, unit))
+
+
+def _tolerance(letter: str, value: Decimal, unit: str) -> Decimal:
+    if not letter:
+        return Decimal(0)
+    if unit == "F" and 0 < value < SMALL and letter in _IN_PICOFARADS:
+        return Decimal(_IN_PICOFARADS[letter]) / value
+    if letter in TOLERANCES:
+        return Decimal(TOLERANCES[letter])
+    raise QuantityError(
+        f"{letter!r} is no letter for a tolerance that is read here; known are "
+        f"{', '.join(sorted(TOLERANCES))}"
+    )
+
+
+def _percent(letter: str) -> str:
+    return f"{Decimal(TOLERANCES[letter]) * 100:f} %".replace(".00 ", " ")

@@ -51,11 +51,23 @@ UNITS = (
     Unit("degree", "angle", f"{_DEGREE} * radian", ("deg", "°"), prefixed=False),
     Unit("turn", "angle", f"{_TWO_PI} * radian", (), prefixed=False),
     Unit("kelvin", "temperature", "[temperature]", ("K",)),
+    Unit("celsius", "temperature", "kelvin", ("degC", "°C"), prefixed=False),
+    Unit("fahrenheit", "temperature", "5 / 9 * kelvin", ("degF", "°F"), prefixed=False),
     Unit("metre", "length", "[length]", ("m",)),
     Unit("newton", "force", "[force]", ("N",)),
     Unit("pascal", "pressure", "[pressure]", ("Pa",)),
     Unit("bar", "pressure", "100000 * pascal", ()),
+    # Standard gravity; its kilo would be read as a mass.
+    Unit("gravity", "acceleration", "9.80665 * metre / second ** 2", ("g", "g_n"), prefixed=False),
+    Unit("milligravity", "acceleration", "gravity / 1000", ("mg",), prefixed=False),
+    Unit("microgravity", "acceleration", "gravity / 1000000", ("ug",), prefixed=False),
 )
+
+ZEROS = {
+    "celsius": (Decimal("273.15"), Decimal(1), Decimal(1)),
+    "fahrenheit": (Decimal("459.67"), Decimal(5), Decimal(9)),
+}
+"""Units that count temperatures from a zero of their own: (t + zero) · n / d is in kelvin."""
 
 PREFIXES = {
     "f": ("femto", Decimal("1e-15")),
@@ -114,7 +126,7 @@ def _registry() -> UnitRegistry[Decimal]:
     return registry
 
 
-_NAME = r"[A-Za-zΩ°]+"
+_NAME = r"[A-Za-zΩ°]+(?:_n)?"
 _POWER = r"\s*\*\*\s*(?:0\.5|-?[0-9]{1,2})(?![0-9.])"
 _SUPERSCRIPTS = str.maketrans("⁻⁰¹²³⁴", "-01234")
 
@@ -141,6 +153,18 @@ def _in_full(spelled: str) -> str | None:
     return re.sub(_NAME, lambda match: known[match.group()].long, spelled)
 
 
+def noun_of(unit: str) -> str:
+    """Return what a unit measures, ``pressure``; empty for a product of units or an unknown one."""
+    symbol = symbols().get(spell(unit))
+    return "" if symbol is None else symbol.unit.noun
+
+
+def zero_of(unit: str) -> tuple[Decimal, Decimal, Decimal] | None:
+    """Return how a temperature in this unit becomes one in kelvin, see ``ZEROS``; else None."""
+    symbol = symbols().get(spell(unit))
+    return None if symbol is None else ZEROS.get(symbol.unit.name)
+
+
 @lru_cache(maxsize=1024)
 def factor(unit: str, target: str) -> Decimal:
     """Return how many ``target`` units one ``unit`` is.
@@ -151,8 +175,11 @@ def factor(unit: str, target: str) -> Decimal:
         If the unit is unknown, ambiguous or of another dimension; the message names the nearest.
     """
     spelled = spell(unit)
-    if target == "" and spelled in SHARES:
-        return Decimal(SHARES[spelled])
+    if unit == target or (target == "" and spelled in SHARES):
+        return Decimal(SHARES.get(spelled, 1))
+    share = re.fullmatch(r"(\D+?)\s*/\s*(.+)", spelled) if target.startswith("1/") else None
+    if share is not None and share[1] in SHARES:  # ppm/K
+        return Decimal(SHARES[share[1]]) * factor(f"1/{share[2]}", target)
     known = symbols()
     if spelled in known and target in known and known[spelled].unit is known[target].unit:
         return known[spelled].power / known[target].power
@@ -198,6 +225,8 @@ def suggestion(spelled: str, target: str) -> str:
     if re.fullmatch(r"[kKMG]?(?:SPS|[Ss]ps|Sa?/s|samples?/s(?:ec)?)", spelled) and target == "Hz":
         return "; write samples per second in Hz"
     known = symbols()
+    if target == "K" and spelled in ("C", "c", "F", "f", "°"):
+        return f"; did you mean {'degF' if spelled in 'Ff' else 'degC'!r}?"
     if target not in known:
         return f"; the unit here is {target}, with SI prefixes" if target else ""
     noun = known[target].unit.noun

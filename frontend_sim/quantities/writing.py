@@ -9,6 +9,20 @@ from frontend_sim.quantities.units import PREFIXES, symbols
 
 _LETTERS = {power.adjusted(): letter for letter, (_, power) in PREFIXES.items()} | {0: ""}
 
+_ZERO_CELSIUS = Decimal("273.15")
+_ORDINARY = Decimal("1e-3")
+"""Temperatures nearer to absolute zero are written in kelvin [K]."""
+
+
+def as_share(value: float) -> str:
+    """Return a share in percent, ``"1 %"``, which reads back as the same float."""
+    return f"{_plain(Decimal(repr(float(value))).scaleb(2))} %"
+
+
+def as_drift(value: float) -> str:
+    """Return a relative change with temperature [1/K] as ``"50 ppm/K"``; it reads back the same."""
+    return f"{_plain(Decimal(repr(float(value))).scaleb(6))} ppm/K"
+
 
 def as_text(value: float, dimension: Dimension, digits: int | None = None) -> str:
     """Return a value with its unit, ``"4.7 nF"``, the exponent a multiple of three.
@@ -18,12 +32,20 @@ def as_text(value: float, dimension: Dimension, digits: int | None = None) -> st
     value : in ``dimension.unit``
     digits : significant digits; left out, as many as give back the very same float
     """
-    number = Decimal(repr(float(value)) if digits is None else f"{float(value):.{digits}g}")
-    unit = dimension.unit
+    unit, number = dimension.unit, Decimal(repr(float(value)))
+    if dimension.absolute and _ORDINARY <= number < 1 / _ORDINARY:
+        unit, number = "degC", number - _ZERO_CELSIUS
+    if digits is not None:
+        number = Decimal(f"{number:.{digits}g}")
     exponent = 0
     if unit in symbols() and symbols()[unit].unit.prefixed and number != 0:
-        exponent = min(max(number.adjusted() // 3 * 3, min(_LETTERS)), max(_LETTERS))
+        largest = max(_LETTERS) if unit != "K" else 0  # nobody writes kilokelvin
+        exponent = min(max(number.adjusted() // 3 * 3, min(_LETTERS)), largest)
         unit = _LETTERS[exponent] + unit
-    shifted = number.scaleb(-exponent).normalize()
-    plain = -6 <= shifted.adjusted() < 15
-    return f"{shifted:f} {unit}".rstrip() if plain else f"{shifted} {unit}".rstrip()
+    return f"{_plain(number.scaleb(-exponent))} {unit}".rstrip()
+
+
+def _plain(number: Decimal) -> str:
+    """Return a number without trailing zeros, and without an exponent where it is short."""
+    number = number.normalize()
+    return f"{number:f}" if -6 <= number.adjusted() < 15 else f"{number}"

@@ -14,6 +14,7 @@ from frontend_sim.scenario.fault import problem
 from frontend_sim.scenario.locate import lines_of
 from frontend_sim.scenario.model import Scenario
 from frontend_sim.scenario.rules import conversions_fault
+from frontend_sim.scenario.spread import moved
 from frontend_sim.scenario.tables import Path
 
 ROUNDING = 1e-9
@@ -35,7 +36,7 @@ def check_scenario(scenario: Scenario, name: str = "") -> None:
         If the run has no duration, or one beyond the end of what is known of the stimulus, or no
         conversion falls into it.
     ModelError
-        If a stage is unstable.
+        If a stage is unstable, or a drift takes a part to a value that it cannot have.
     """
     try:
         known = scenario.stimulus.known_length()
@@ -44,9 +45,11 @@ def check_scenario(scenario: Scenario, name: str = "") -> None:
     text = _duration_fault(scenario, known)
     if text is not None:
         raise ScenarioError([_problem(scenario, ("simulation", "duration"), text)], name)
+    temperature = scenario.environment.temperature
     for position, stage in enumerate(scenario.chain):
+        label = stage.label(position + 1)
         try:
-            section(stage, stage.label(position + 1))
+            section(moved(stage, temperature, label), label, temperature)
         except ModelError as error:
             raise ModelError(_located(scenario, name, ("chain", position), str(error))) from error
 

@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import re
 from collections.abc import Iterable
 from pathlib import Path
 from types import NoneType, UnionType
@@ -83,8 +82,7 @@ def example(name: str, field: FieldInfo) -> str:
         return ""
     dimension = dimension_of(field.annotation, field.metadata)
     if dimension is not None:
-        quoted = re.match(r'"[^"]*"|[^,]*', dimension.example)
-        return f"{name} = {quoted.group() if quoted else dimension.example}"
+        return f"{name} = {dimension.first_example}"
     if get_origin(field.annotation) is Literal:
         return f"{name} = {shown(get_args(field.annotation)[0])}"
     return f'{name} = "..."' if field.annotation in (str, Path) else ""

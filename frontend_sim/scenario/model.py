@@ -14,7 +14,9 @@ from frontend_sim.analog.stages import AnyStage
 from frontend_sim.converter.adc import Adc
 from frontend_sim.errors import nearest
 from frontend_sim.quantities import FREQUENCY, Frequency, PositiveLsb, PositiveTime, as_text
-from frontend_sim.scenario.rules import conversions_fault, fault, newer_format
+from frontend_sim.scenario.environment import Environment
+from frontend_sim.scenario.rules import conversions_fault, fault, faults, newer_format
+from frontend_sim.scenario.signal import PIN, UnitError, named, signal_units
 from frontend_sim.stimulus import AnyStimulus
 from frontend_sim.values import Value
 
@@ -131,6 +133,7 @@ class Scenario(Value):
     chain: tuple[AnyStage, ...] = Field(
         default=(), description="the stages, in order from the sensor to the converter's pin"
     )
+    environment: Environment = Field(default=Environment(), description="where the circuit stands")
     adc: Adc = Field(description="the converter")
     simulation: SimulationSettings = Field(
         default=SimulationSettings(), description="how the run is computed"
@@ -151,6 +154,29 @@ class Scenario(Value):
                 )
             taken[name] = f"the name of stage {position}"
         return self
+
+    @model_validator(mode="after")
+    def _units_fit(self) -> Self:
+        try:
+            unit = signal_units(self.chain)[0]
+        except UnitError as error:
+            raise fault(["chain", error.position], str(error)) from None
+        wrong = self.stimulus.unit_faults(unit)
+        if wrong:
+            takes = "" if unit == PIN else f"; {self._taker()} takes a {named(unit)}"
+            told = [(("stimulus", *path), f"{text}{takes}") for path, text in wrong]
+            raise faults(type(self).__name__, told)
+        self._measure(unit)
+        return self
+
+    def _taker(self) -> str:
+        """Return what decides on the unit of the stimulus: a stage, or the converter."""
+        labels = zip(self.chain, self.points()[1:], strict=True)
+        return next((repr(label) for stage, label in labels if stage.units()), "the converter")
+
+    def _measure(self, unit: str) -> None:
+        """Let the stimulus know its unit; a scenario is frozen only once it is made."""
+        self.__dict__["stimulus"] = self.stimulus.measured_in(unit)
 
     @model_validator(mode="after")
     def _waveform_points_exist(self) -> Self:
@@ -177,10 +203,22 @@ class Scenario(Value):
         labels = [stage.label(position) for position, stage in enumerate(self.chain, start=1)]
         return (STIMULUS, *labels)
 
+    def units(self) -> tuple[str, ...]:
+        """Return the SI units at the chain's points, in the order of ``points``."""
+        return signal_units(self.chain)
+
+    @property
+    def stimulus_unit(self) -> str:
+        """SI unit of the stimulus: V, or what the first sensor of the chain takes."""
+        return self.units()[0]
+
     def model_copy(self, *, update: Mapping[str, Any] | None = None, deep: bool = False) -> Self:
         """Return a copy; one with other values has no ``source``, which would tell the old ones."""
         changed = {"source": "", **update} if update else None
-        return super().model_copy(update=changed, deep=deep)
+        copy = super().model_copy(update=changed, deep=deep)
+        if update and not {"chain", "stimulus"}.isdisjoint(update):
+            copy._measure(copy.stimulus_unit)
+        return copy
 
     def resolved(self) -> dict[str, Any]:
         """Return every value in SI units, defaults filled in, as plain data for JSON."""

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable, Sequence
 
-from pydantic_core import PydanticCustomError
+from pydantic_core import InitErrorDetails, PydanticCustomError, ValidationError
 
 from frontend_sim.converter.adc import Adc
 from frontend_sim.converter.clock import conversion_count
@@ -23,6 +23,20 @@ def fault(path: Sequence[str | int], text: str) -> PydanticCustomError:
     text : the whole message
     """
     return PydanticCustomError("rule", "{reason}", {"reason": text, "path": list(path)})
+
+
+def faults(title: str, told: Sequence[tuple[Sequence[str | int], str]]) -> ValidationError:
+    """Return the error of several rules at once, for a validator to raise.
+
+    Parameters
+    ----------
+    title : name of the value whose validator raises
+    told : path and whole message of each, as for ``fault``
+    """
+    return ValidationError.from_exception_data(
+        title,
+        [InitErrorDetails(type=fault(path, text), loc=(), input=None) for path, text in told],
+    )
 
 
 def newer_format(known: int) -> Callable[[object], object]:

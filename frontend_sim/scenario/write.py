@@ -4,12 +4,23 @@ from __future__ import annotations
 
 import os
 from collections.abc import Iterator
+from dataclasses import dataclass
 from pathlib import Path
 from typing import Any
 
 import tomli_w
+from pydantic.fields import FieldInfo
 
-from frontend_sim.quantities import as_text, dimension_of
+from frontend_sim.quantities import (
+    Dimension,
+    Level,
+    Part,
+    as_text,
+    dimension_of,
+    level_mark,
+    part_table,
+    signal_dimension,
+)
 from frontend_sim.scenario.model import Scenario
 from frontend_sim.scenario.tables import is_array, keys
 from frontend_sim.values import Value
@@ -30,10 +41,22 @@ def scenario_text(scenario: Scenario, directory: str | os.PathLike[str] | None =
     directory : where the file will stand; paths of files below it are written relative to it
     """
     base = None if directory is None else Path(directory).resolve()
-    return "\n".join(_lines(_table(scenario, base), ()))
+    return "\n".join(_lines(_table(scenario, _Writing(base, scenario.stimulus_unit)), ()))
 
 
-def _table(value: Value, base: Path | None) -> dict[str, Any]:
+@dataclass(frozen=True)
+class _Writing:
+    """What all tables of a file have in common: the folder it is for, the unit of its stimulus."""
+
+    base: Path | None
+    signal: str
+
+
+class _Inline(dict[str, Any]):
+    """A table that is written on one line, as the value of a key."""
+
+
+def _table(value: Value, writing: _Writing) -> dict[str, Any]:
     """Return a value as a table: its kind first, then what differs from the default."""
     written: dict[str, Any] = {}
     fields = keys(type(value))
@@ -41,19 +64,31 @@ def _table(value: Value, base: Path | None) -> dict[str, Any]:
         field, item = fields[name], getattr(value, name)
         if item is None or (name not in _ALWAYS and item == field.get_default()):
             continue
-        dimension = dimension_of(field.annotation, field.metadata)
-        if dimension is not None and dimension.unit and not is_array(field.annotation):
+        dimension = _dimension(field, item, writing)
+        if dimension is not None and isinstance(item, Part):
+            written[name] = _Inline(part_table(item, dimension))
+        elif dimension is not None and dimension.unit and not is_array(field.annotation):
             written[name] = as_text(item, dimension)
         else:
-            written[name] = _plain(item, base)
+            written[name] = _plain(item, writing)
     return written
 
 
-def _plain(item: Any, base: Path | None) -> Any:
+def _dimension(field: FieldInfo, item: Any, writing: _Writing) -> Dimension | None:
+    """Return the dimension of a key; that of a signal is the stimulus's, or the value's own."""
+    mark = level_mark(field.metadata)
+    if mark is None:
+        return dimension_of(field.annotation, field.metadata)
+    own = item.unit if mark.with_unit and isinstance(item, Level) else None
+    return signal_dimension(writing.signal if own is None else own, mark.sense)
+
+
+def _plain(item: Any, writing: _Writing) -> Any:
+    base = writing.base
     if isinstance(item, Value):
-        return _table(item, base)
+        return _table(item, writing)
     if isinstance(item, tuple):
-        return [_plain(part, base) for part in item]
+        return [_plain(part, writing) for part in item]
     if isinstance(item, Path):
         inside = base is not None and item.resolve().is_relative_to(base)
         return (item.resolve().relative_to(base) if base and inside else item).as_posix()
@@ -64,7 +99,7 @@ def _lines(table: dict[str, Any], path: tuple[str, ...]) -> Iterator[str]:
     """Return the lines of a table: its own keys, then the tables in it, each under its header."""
     own = {key: value for key, value in table.items() if not _is_table(value)}
     if own:
-        yield tomli_w.dumps(own)
+        yield "".join(_pair(key, value) for key, value in own.items())
     for key, value in table.items():
         if not _is_table(value):
             continue
@@ -74,7 +109,16 @@ def _lines(table: dict[str, Any], path: tuple[str, ...]) -> Iterator[str]:
             yield from _lines(inner, (*path, key))
 
 
+def _pair(key: str, value: Any) -> str:
+    if not isinstance(value, _Inline):
+        return tomli_w.dumps({key: value})
+    pairs = ", ".join(tomli_w.dumps({name: item}).strip() for name, item in value.items())
+    return f"{key} = {{ {pairs} }}\n"
+
+
 def _is_table(value: Any) -> bool:
+    if isinstance(value, _Inline):
+        return False
     return isinstance(value, dict) or (
         isinstance(value, list) and value != [] and all(isinstance(item, dict) for item in value)
     )

@@ -1,4 +1,4 @@
-"""How far a discrete model lies from the exact answer, and the grid that comes close enough."""
+"""How far a grid lies from the exact answer, and the grid that comes close enough."""
 
 from __future__ import annotations
 
@@ -12,7 +12,9 @@ from frontend_sim.converter.adc import Adc
 from frontend_sim.errors import ScenarioError
 from frontend_sim.scenario.model import SimulationSettings
 from frontend_sim.simulation.kernels import Real
-from frontend_sim.simulation.linear import GridMethod, Linear
+from frontend_sim.simulation.linear import Axis, GridMethod
+from frontend_sim.simulation.models import Model, Models, Stepping
+from frontend_sim.simulation.resolution import first_multiple
 from frontend_sim.simulation.uniform import WAVEFORM_TILE
 
 MARGIN = 1.25
@@ -43,15 +45,45 @@ class Distance:
         return math.sqrt(self._squares / self._count) if self._count else 0.0
 
 
+@dataclass(frozen=True, eq=False)
+class Trials:
+    """What the trials of a run are made of.
+
+    Parameters
+    ----------
+    accuracy : error that a picked grid must stay below [LSB]
+    count : conversions of the run
+    points : the converter's pin, as points of the chain
+    axis : of the conversions
+    instants : the instants of conversions start to stop - 1
+    """
+
+    adc: Adc
+    accuracy: float
+    count: int
+    points: list[int]
+    axis: Axis
+    instants: Callable[[int, int], Real]
+
+    def pin(self, models: Models, stepping: Stepping, count: int) -> Real:
+        """Return the pin at the first ``count`` conversions, shape (count,) [LSB]."""
+        model: Model = models.model(self.points, self.axis, stepping)
+        states, values = model.start(), []
+        for start in range(0, count, WAVEFORM_TILE):
+            stop = min(start + WAVEFORM_TILE, count)
+            states, (pin,) = model.advance(states, start, self.instants(start, stop))
+            values.append(pin)
+        return np.concatenate(values) / self.adc.lsb
+
+    def fitting(self, rate: float) -> int:
+        """Return how many conversions MOST_TRIAL points of a grid reach to."""
+        return max(min(self.count, int(MOST_TRIAL * self.adc.rate / rate)), 1)
+
+
 def pick_grid(
-    settings: SimulationSettings,
-    adc: Adc,
-    count: int,
-    duration: float,
-    model: Callable[[GridMethod | None], Linear],
-    instants: Callable[[int, int], Real],
+    settings: SimulationSettings, models: Models, trials: Trials, reference: Stepping
 ) -> tuple[GridMethod, float]:
-    """Return the coarsest grid that is accurate enough, and its estimated error [LSB].
+    """Return the coarsest grid of a discrete model that is accurate enough, and its error [LSB].
 
     Grids of 1, 2, 4, ... points per conversion are tried against the exact mode over as many
     conversions as MOST_TRIAL points allow; the estimate is MARGIN times the largest error seen.
@@ -64,31 +96,75 @@ def pick_grid(
     assert settings.discretization != "exact"
     exact: dict[int, Real] = {}
     estimate, multiple = math.inf, 1
-    while duration * adc.rate * multiple <= MOST_GRID:
-        rate = adc.rate * multiple
+    while models.duration * trials.adc.rate * multiple <= MOST_GRID:
+        rate = trials.adc.rate * multiple
         if settings.prewarp is None or settings.prewarp < 0.5 * rate:
             method = GridMethod(settings.discretization, rate, settings.prewarp)
-            trial = max(min(count, MOST_TRIAL // multiple), 1)
-            if trial not in exact:
-                exact[trial] = _values(model(None), instants, trial)
-            error = _values(model(method), instants, trial) - exact[trial]
-            estimate = MARGIN * float(np.max(np.abs(error))) / adc.lsb
-            if estimate <= settings.accuracy:
+            count = max(min(trials.count, MOST_TRIAL // multiple), 1)
+            if count not in exact:
+                exact[count] = trials.pin(models, reference, count)
+            stepping = Stepping(method, None if models.cut is None else rate)
+            error = trials.pin(models, stepping, count) - exact[count]
+            estimate = MARGIN * float(np.max(np.abs(error)))
+            if estimate <= trials.accuracy:
                 return method, estimate
         multiple *= 2
     raise ScenarioError(
-        f'simulation.grid_rate = "auto" cannot reach {settings.accuracy:g} LSB with {MOST_GRID:g} '
+        f'simulation.grid_rate = "auto" cannot reach {trials.accuracy:g} LSB with {MOST_GRID:g} '
         f"grid points: the estimate is still {estimate:.3g} LSB; the stimulus probably jumps "
         'between grid points, so set simulation.discretization = "exact", give a grid_rate that '
         "meets the jumps, or raise simulation.accuracy"
     )
 
 
-def _values(model: Linear, instants: Callable[[int, int], Real], count: int) -> Real:
-    """Return the pin at the first ``count`` conversions, shape (count,) [V]."""
-    states, values = model.start(), []
-    for start in range(0, count, WAVEFORM_TILE):
-        stop = min(start + WAVEFORM_TILE, count)
-        states, (pin,) = model.advance(states, start, instants(start, stop))
-        values.append(pin)
-    return np.concatenate(values)
+@dataclass(frozen=True, eq=False)
+class LimiterGrid:
+    """A grid that was picked for limiters.
+
+    Parameters
+    ----------
+    rate : [Hz];  estimate : upper bound of its error [LSB]
+    measured : distance from the grid of half the rate, if the trial covered the whole run
+    """
+
+    rate: float
+    estimate: float
+    measured: Distance | None
+    notes: tuple[str, ...]
+
+
+def pick_limiter_grid(models: Models, trials: Trials) -> LimiterGrid:
+    """Return the coarsest grid for the limiters that is accurate enough.
+
+    The rate is doubled until the estimate stays below the accuracy. The error of a limiter falls
+    at least by half with half the step, so the change from one grid to the next bounds the error
+    of the finer one. Two changes in a row are asked, the older as if it had fallen by four, so that
+    two grids which agree by chance deceive nobody: the estimate is
+
+        MARGIN · max(change, last change / 4).
+
+    Raises
+    ------
+    ScenarioError
+        If the accuracy is not reached with MOST_GRID points; the message tells how near it came.
+    """
+    start = first_multiple(models, trials.adc.rate, MOST_TRIAL)
+    rate, estimate, last = start.rate, math.inf, math.inf
+    before: Real | None = None
+    while models.duration * rate <= MOST_GRID:
+        count = trials.fitting(rate)
+        pin = trials.pin(models, Stepping(rate=rate), count)
+        if before is not None:
+            distance = Distance()
+            distance.add(pin - before[: len(pin)])
+            estimate = MARGIN * max(distance.largest, 0.25 * last)
+            if estimate <= trials.accuracy:
+                whole = distance if count == trials.count else None
+                return LimiterGrid(rate, estimate, whole, start.notes)
+            last = distance.largest
+        before, rate = pin, 2.0 * rate
+    raise ScenarioError(
+        f"the limiters' grid cannot reach {trials.accuracy:g} LSB with {MOST_GRID:g} points: the "
+        f"estimate is still {estimate:.3g} LSB; shorten simulation.duration, raise "
+        "simulation.accuracy, or give simulation.grid_rate"
+    )

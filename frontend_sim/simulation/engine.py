@@ -8,24 +8,25 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from frontend_sim.analog.chain import Chain, chain_of
-from frontend_sim.analog.discretize import warped_frequency
+from frontend_sim.analog.chain import Chain
+from frontend_sim.analog.cut import CutChain
 from frontend_sim.converter import clock, quantizer
 from frontend_sim.errors import ScenarioError
 from frontend_sim.randomness import stream
+from frontend_sim.scenario.circuit import circuit_of, stages_of
 from frontend_sim.scenario.model import Scenario
-from frontend_sim.simulation.accuracy import Distance, pick_grid
+from frontend_sim.simulation.accuracy import Distance, Trials
 from frontend_sim.simulation.kernels import Real
-from frontend_sim.simulation.linear import Axis, GridMethod, Linear, States
+from frontend_sim.simulation.limited import Limited
+from frontend_sim.simulation.linear import Axis
+from frontend_sim.simulation.models import Model, Models
+from frontend_sim.simulation.plan import Plan
 from frontend_sim.simulation.run import GridReport, Run, RunBlock
 from frontend_sim.simulation.uniform import WAVEFORM_TILE
 from frontend_sim.stimulus.drive import Drive
 
 BLOCK = 8 * WAVEFORM_TILE
 """Instants in one block, a multiple of every tile, so that blocks never show in a result."""
-
-COARSE = 0.5
-"""A discrete model further than this from the exact answer is told in the notes [LSB]."""
 
 Progress = Callable[[float], None]
 
@@ -34,7 +35,7 @@ Progress = Callable[[float], None]
 class _Axis:
     """A uniform row of instants and the points of the chain that are read there."""
 
-    model: Linear
+    model: Model
     count: int
 
 
@@ -52,7 +53,8 @@ class Simulation:
     count : number of conversions
     duration : [s]
     notes : what was decided on the way; complete after the last block
-    grid : distance of a discrete model from the exact answer, after the last block; else None
+    grid : distance of a discrete model, or of a grid for limiters, from the exact answer, after
+        the last block; else None
 
     Raises
     ------
@@ -65,7 +67,7 @@ class Simulation:
         if block <= 0 or block % WAVEFORM_TILE:
             raise ScenarioError(f"block must be a multiple of {WAVEFORM_TILE}, given {block}")
         self.scenario = scenario
-        self.chain: Chain = chain_of(scenario.chain)
+        self.chain: Chain = circuit_of(scenario)
         self.drives: tuple[Drive, ...] = scenario.stimulus.drives(stream(scenario.seed, "stimulus"))
         self.duration = _duration(scenario)
         self.count = clock.conversion_count(scenario.adc, self.duration)
@@ -78,7 +80,10 @@ class Simulation:
         self.grid: GridReport | None = None
         self._block = block
         self._pin = [len(self.chain.points) - 1]
-        self._method, self._estimate = self._pick_method()
+        cut, initial = CutChain.of(stages_of(scenario)), scenario.simulation.initial
+        self._models = Models.of(self.chain, cut, self.drives, initial, self.duration)
+        self._plan = Plan.of(scenario, self._models, self._trials())
+        self.notes += self._plan.notes
 
     def blocks(self, progress: Progress | None = None) -> Iterator[RunBlock]:
         """Run, and return conversions and waveform block by block, in order of time.
@@ -86,20 +91,23 @@ class Simulation:
         ``progress`` is called with the share that is done, from 0 to 1.
         """
         adc, seed = self.scenario.adc, self.scenario.seed
-        model = self._linear(self._pin, self._conversion_axis(), self._method)
+        axis, plan = self._conversion_axis(), self._plan
+        model = self._models.model(self._pin, axis, plan.stepping)
         states = model.start()
-        exact = self._linear(self._pin, self._conversion_axis(), None) if self._method else None
-        exact_states: States = exact.start() if exact else ()
+        reference = None
+        if plan.reference is not None:
+            reference = self._models.model(self._pin, axis, plan.reference)
+        reference_states = reference.start() if reference else None
         distance = Distance()
         waveform = self._waveform_axis()
-        waveform_states: States = waveform.model.start() if waveform else ()
+        waveform_states = waveform.model.start() if waveform else None
         waveform_done = 0
         for start in range(0, self.count, self._block):
             stop = min(start + self._block, self.count)
             instants = clock.sampling_instants(adc, start, stop, seed)
             states, (pin,) = model.advance(states, start, instants)
-            if exact is not None:
-                exact_states, (true,) = exact.advance(exact_states, start, instants)
+            if reference is not None:
+                reference_states, (true,) = reference.advance(reference_states, start, instants)
                 distance.add((pin - true) / adc.lsb)
             yield self._converted(start, instants, pin)
             if waveform is not None:
@@ -114,34 +122,23 @@ class Simulation:
                     waveform_done = upto
             if progress is not None:
                 progress(stop / self.count)
-        self._conclude(distance)
-
-    def _linear(self, points: list[int], axis: Axis, method: GridMethod | None) -> Linear:
-        initial = self.scenario.simulation.initial
-        return Linear.of(self.chain, self.drives, points, initial, axis, method)
+        if isinstance(model, Limited):
+            self.notes += model.notes(states)
+        self.grid, note = plan.report(self.scenario, distance)
+        self.notes += (note,) if note else ()
 
     def _conversion_axis(self) -> Axis:
         adc = self.scenario.adc
         interval = 1.0 / adc.rate
         return Axis(interval, max(adc.first + adc.aperture_delay, interval) + interval)
 
-    def _pick_method(self) -> tuple[GridMethod | None, float | None]:
-        settings = self.scenario.simulation
-        if settings.discretization == "exact":
-            return None, None
-        if settings.grid_rate is not None:
-            method = GridMethod(settings.discretization, settings.grid_rate, settings.prewarp)
-            _refuse_prewarp_beyond(method)
-            return method, None
-        adc = self.scenario.adc
-
-        def model(method: GridMethod | None) -> Linear:
-            return self._linear(self._pin, self._conversion_axis(), method)
+    def _trials(self) -> Trials:
+        adc, accuracy = self.scenario.adc, self.scenario.simulation.accuracy
 
         def instants(start: int, stop: int) -> Real:
             return clock.sampling_instants(adc, start, stop, self.scenario.seed)
 
-        return pick_grid(settings, adc, self.count, self.duration, model, instants)
+        return Trials(adc, accuracy, self.count, self._pin, self._conversion_axis(), instants)
 
     @property
     def _waveform_rate(self) -> float:
@@ -157,7 +154,8 @@ class Simulation:
         if self._waveform_rate == 0.0:
             return None
         interval = 1.0 / self._waveform_rate
-        model = self._linear(self._waveform_points, Axis(interval, 2.0 * interval), self._method)
+        axis = Axis(interval, 2.0 * interval, uniform=True)
+        model = self._models.model(self._waveform_points, axis, self._plan.stepping)
         return _Axis(model, max(math.ceil(self.duration * self._waveform_rate - 1e-9), 1))
 
     def _waveform_until(self, count: int, conversions: int) -> int:
@@ -187,25 +185,6 @@ class Simulation:
         rows = values if values is not None else [np.empty(0)] * len(names)
         return dict(zip(names, rows, strict=True))
 
-    def _conclude(self, distance: Distance) -> None:
-        method = self._method
-        if method is None:
-            return
-        warping = 0.0
-        if method.method == "bilinear":
-            half = 0.5 * self.scenario.adc.rate
-            warping = warped_frequency(half, 1.0 / method.rate, method.prewarp) / half - 1.0
-        self.grid = GridReport(
-            method.method, method.rate, self._estimate, distance.largest, distance.rms, warping
-        )
-        limit = self.scenario.simulation.accuracy if self._estimate is not None else COARSE
-        if distance.largest > limit:
-            self.notes += (
-                f"the {method.method} model at {method.rate:g} points per second lies up to "
-                f"{distance.largest:.3g} LSB from the exact answer; raise simulation.grid_rate or "
-                'set simulation.discretization = "exact"',
-            )
-
 
 def _duration(scenario: Scenario) -> float:
     if scenario.simulation.duration is not None:
@@ -214,14 +193,6 @@ def _duration(scenario: Scenario) -> float:
     if known is None:
         raise ScenarioError("simulation.duration is missing: this stimulus never ends by itself")
     return known
-
-
-def _refuse_prewarp_beyond(method: GridMethod) -> None:
-    if method.prewarp is not None and method.prewarp >= 0.5 * method.rate:
-        raise ScenarioError(
-            f"simulation.prewarp {method.prewarp:g} Hz must lie below half the grid rate, "
-            f"{0.5 * method.rate:g} Hz"
-        )
 
 
 def simulate(scenario: Scenario, progress: Progress | None = None, block: int = BLOCK) -> Run:

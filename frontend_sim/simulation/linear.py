@@ -14,9 +14,14 @@ from frontend_sim.simulation.grid import GridDrive
 from frontend_sim.simulation.kernels import Real
 from frontend_sim.simulation.path import Outputs, Path, State
 from frontend_sim.simulation.piecewise import PiecewisePath
+from frontend_sim.simulation.resampled import Resampled
+from frontend_sim.simulation.rows import ROW, RowPath
 from frontend_sim.simulation.since import Exponential, SincePoint, Trapezoid
 from frontend_sim.simulation.uniform import UniformPath
 from frontend_sim.stimulus.drive import Drive, PiecewiseDrive, UniformDrive
+
+MOST_TURNS = 1000.0
+"""Most radians that a generator goes without being set anew on a uniform row of instants."""
 
 Initial = Literal["settled", "rest"]
 States = tuple[tuple[State, ...], ...]
@@ -33,10 +38,14 @@ class GridMethod:
 
 @dataclass(frozen=True)
 class Axis:
-    """Where a linear model is asked: the usual interval between instants and the longest [s]."""
+    """Where a linear model is asked: the usual interval between instants and the longest [s].
+
+    ``uniform`` promises instants number · interval, for number = 0, 1, 2, ... and no others.
+    """
 
     interval: float
     longest: float
+    uniform: bool = False
 
 
 @dataclass(frozen=True, eq=False)
@@ -96,16 +105,24 @@ class Linear:
         """Return the states at t = 0."""
         return tuple(tuple(path.start() for path in group.paths) for group in self.groups)
 
-    def advance(self, states: States, number: int, instants: Real) -> tuple[States, Real]:
+    def advance(
+        self,
+        states: States,
+        number: int,
+        instants: Real,
+        drives: Sequence[Drive | None] | None = None,
+    ) -> tuple[States, Real]:
         """Return the states at the last instant and the points' values, shape (points, K).
 
         Parameters
         ----------
         number : number of the first instant since the start of the run
         instants : increasing, shape (K,) [s]
+        drives : stand in for those that the model was made with, see ``Path``; None has been zero
+            all the time
         """
         parts = [
-            _advanced(group, held, number, instants)
+            _advanced(group, held, number, instants, drives)
             for group, held in zip(self.groups, states, strict=True)
         ]
         after = tuple(held for held, _ in parts)
@@ -118,7 +135,11 @@ class Linear:
 
 
 def _advanced(
-    group: Group, states: tuple[State, ...], number: int, instants: Real
+    group: Group,
+    states: tuple[State, ...],
+    number: int,
+    instants: Real,
+    drives: Sequence[Drive | None] | None,
 ) -> tuple[tuple[State, ...], Real]:
     """Advance the paths of one group, and add their outputs up."""
     earlier = instants - group.delay if group.delay else instants
@@ -127,11 +148,17 @@ def _advanced(
     if begun == len(earlier):
         return states, before
     moved, total = [], None
-    for path, state in zip(group.paths, states, strict=True):
-        state, values = path.advance(state, number + begun, earlier[begun:])
+    at, asked = number + begun, earlier[begun:]
+    for i, (path, state) in enumerate(zip(group.paths, states, strict=True)):
+        drive = drives[i] if drives is not None else None
+        if drives is not None and drive is None:
+            moved.append(path.rested(state, at, asked))
+            continue
+        state, values = path.advance(state, at, asked, drive)
         moved.append(state)
         total = values if total is None else total + values
-    assert total is not None
+    if total is None:
+        total = np.zeros((len(group.rows), len(asked)))
     return tuple(moved), np.concatenate([before, total], axis=1) if begun else total
 
 
@@ -143,8 +170,16 @@ def _path(
     axis: Axis,
     grid: GridMethod | None,
 ) -> Path:
+    uniform = axis.uniform and outputs.delay == 0.0
     if isinstance(drive, PiecewiseDrive):
-        return PiecewisePath.of(chain, drive, outputs, initial, axis.longest)
+        path = PiecewisePath.of(chain, drive, outputs, initial, axis.longest)
+        # Over a row the generator runs by itself; many turns of it would add up their rounding.
+        turns = float(np.max(np.abs(drive.generator), initial=0.0)) * axis.interval * ROW
+        return RowPath.of(path, axis.interval) if uniform and turns < MOST_TURNS else path
+    if uniform and grid is None:
+        times = 1.0 / (axis.interval * drive.rate)
+        if round(times) > 1 and abs(times / round(times) - 1.0) < 1e-14:
+            drive = Resampled(drive, round(times))
     return _uniform(chain, drive, outputs, initial, axis, grid)
 
 

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
-from typing import Protocol
+from typing import Any, Protocol
 
 import numpy as np
 
@@ -54,11 +54,22 @@ class Path(Protocol):
     def start(self) -> State:
         """Return the state at t = 0."""
 
-    def advance(self, state: State, number: int, instants: Real) -> tuple[State, Real]:
+    def advance(
+        self,
+        state: State,
+        number: int,
+        instants: Real,
+        drive: Any = None,
+    ) -> tuple[State, Real]:
         """Return the state at the last instant, and the outputs, shape (p, K).
 
         Parameters
         ----------
         number : number of the first of these instants since t = 0
         instants : in order, not before the state's own time, at least 0, shape (K,) [s]
+        drive : stands in for the drive that the path was made with, as far as the signal is known
+            from the state's own time on; it has the same generator, or the same rate
         """
+
+    def rested(self, state: State, number: int, instants: Real) -> State:
+        """Return the state at the last instant, where state and drive were zero all the time."""

@@ -50,13 +50,16 @@ class PiecewisePath:
         """Return the state at t = 0."""
         return State(self.initial, 0.0)
 
-    def advance(self, state: State, number: int, instants: Real) -> tuple[State, Real]:
+    def advance(
+        self, state: State, number: int, instants: Real, drive: PiecewiseDrive | None = None
+    ) -> tuple[State, Real]:
         """Advance through instants, see ``Path``."""
-        events = self.drive.events(state.node, float(instants[-1]) * (1.0 + 1e-15))
+        drive = drive or self.drive
+        events = drive.events(state.node, float(instants[-1]) * (1.0 + 1e-15))
         instants = _snapped(instants, events)
         nodes = np.union1d(instants, events)
         nodes = nodes[nodes > state.node]
-        g = self.drive.states(np.concatenate([[state.node], nodes]))
+        g = drive.states(np.concatenate([[state.node], nodes]))
         steps = np.diff(nodes, prepend=state.node)
         x = state.x.copy()
         states = np.empty((len(nodes) + 1, len(x)))
@@ -68,12 +71,14 @@ class PiecewisePath:
         kernels.readout(states[at], u, self.outputs.c, self.outputs.d, y)
         return State(x, float(nodes[-1]) if len(nodes) else state.node), y
 
+    def rested(self, state: State, number: int, instants: Real) -> State:
+        """Return the state after instants at which all was zero, see ``Path``."""
+        return State(state.x, max(state.node, float(instants[-1])))
+
     def _march(self, x: Real, g: Real, steps: Real, states: Real) -> None:
         if len(x) and len(steps):
             table = self.table
-            kernels.march(
-                x, g, steps, table.unit, table.system, table.table, table.stop, states
-            )
+            kernels.march(x, g, steps, table.unit, table.system, table.table, table.stop, states)
 
 
 def _snapped(instants: Real, events: Real) -> Real:

@@ -9,14 +9,25 @@ from typing import Literal
 import numpy as np
 from pydantic import Field
 
-from frontend_sim.quantities import Angle, Frequency, PositiveTime, Time, Voltage
+from frontend_sim.quantities import (
+    Angle,
+    Frequency,
+    PositiveTime,
+    SignalDifference,
+    SignalLevel,
+    Time,
+)
 from frontend_sim.stimulus.base import Key, Stimulus
 from frontend_sim.stimulus.drive import Drive, PiecewiseDrive, Real
 
 DEGREE = 12
 STRIDE = 0.5
-"""Pieces of at most this phase [rad]: what the polynomial leaves out is below
+"""Pieces of at most this phase [rad]: at a steady frequency the polynomial leaves out less than
 STRIDE^13 / 13! = 2e-14 of the amplitude."""
+BEND = 0.01
+"""Pieces whose phase departs from a straight line by at most this [rad]. Where the frequency
+changes much within half a radian, as at the slow end of a wide sweep, the powers of the bend count
+too: below 1e-12 of the amplitude."""
 
 
 @dataclass(frozen=True, eq=False)
@@ -67,20 +78,45 @@ class Sweep(PiecewiseDrive):
         if self.logarithmic and self.start != self.stop:
             growth = self._growth()
             return np.asarray(self.start * np.expm1(growth * since) / growth)
-        return since * (self.start + 0.5 * (self.stop - self.start) / self.length * since)
+        slope = (self.stop - self.start) / self.length
+        return np.asarray(since * (self.start + 0.5 * slope * since))
 
     def events(self, start: float, stop: float) -> Real:
-        """Return both ends of the sweep and the joints of the pieces in (start, stop]."""
-        total = float(self._turns(np.array([self.length]))[0])
-        pieces = max(int(math.ceil(total * 2.0 * np.pi / STRIDE)), 1)
-        first, last = (
-            float(self._turns(np.clip(np.array([t - self.at]), 0.0, self.length))[0]) / total
-            for t in (start, stop)
-        )
-        index = np.arange(max(int(first * pieces) - 2, 0), min(int(last * pieces) + 3, pieces + 1))
-        times = self.at + self._time_of(index * (total / pieces))
-        times = np.append(times[index < pieces], self.at + self.length)
-        return times[(times > start) & (times <= stop)]
+        """Return both ends of the sweep and the joints of the pieces in (start, stop].
+
+        The joints are those of equal phase and those of equal time, each piece being short enough
+        in both.
+        """
+        first, last = (min(max(t - self.at, 0.0), self.length) for t in (start, stop))
+        joints = [self._of_equal_phase(first, last), self._of_equal_time(first, last)]
+        ends = [self.at, self.at + self.length]
+        times = np.unique(np.concatenate([ends, *(self.at + since for since in joints)]))
+        return times[(times > start) & (times <= stop) & (times <= ends[1])]
+
+    def _of_equal_phase(self, first: float, last: float) -> Real:
+        """Return the joints after equal parts of all turns, from about first to last [s]."""
+        total, before, after = self._turns(np.array([self.length, first, last]))
+        pieces = max(math.ceil(total * 2.0 * math.pi / STRIDE), 1)
+        lowest = max(int(before / total * pieces) - 2, 0)
+        highest = min(int(after / total * pieces) + 3, pieces)
+        return self._time_of(np.arange(lowest, highest) * (total / pieces))
+
+    def _of_equal_time(self, first: float, last: float) -> Real:
+        """Return the joints after equal times, from about first to last [s].
+
+        Over a piece t the phase bends by pi |slope| t² in a linear sweep; in a logarithmic one of
+        growth g by g t / 2 of the phase of the piece.
+        """
+        if self.logarithmic and self.start != self.stop:
+            longest = 2.0 * BEND / STRIDE / abs(self._growth())
+        elif self.start != self.stop:
+            longest = math.sqrt(BEND * self.length / (math.pi * abs(self.stop - self.start)))
+        else:
+            return np.empty(0)
+        pieces = max(math.ceil(self.length / longest), 1)
+        lowest = max(int(first / self.length * pieces) - 1, 0)
+        highest = min(int(last / self.length * pieces) + 2, pieces)
+        return np.arange(lowest, highest, dtype=np.float64) * (self.length / pieces)
 
     def _time_of(self, turns: Real) -> Real:
         """Invert ``_turns``."""
@@ -128,13 +164,13 @@ class Chirp(Stimulus):
     """
 
     kind: Literal["chirp"] = "chirp"
-    amplitude: Voltage = Field(description="peak value of the sine")
+    amplitude: SignalDifference = Field(description="peak value of the sine")
     start_frequency: Frequency = Field(description="frequency at the beginning of the sweep")
     stop_frequency: Frequency = Field(description="frequency at the end of the sweep")
     length: PositiveTime = Field(description="length of the sweep")
     at: Time = Field(default=0.0, description="instant at which the sweep begins")
     phase: Angle = Field(default=0.0, description="phase at the beginning of the sweep")
-    offset: Voltage = Field(default=0.0, description="value that the sine swings around")
+    offset: SignalLevel = Field(default=0.0, description="value that the sine swings around")
     sweep: Literal["linear", "logarithmic"] = Field(
         default="linear", description="how the frequency grows with time"
     )

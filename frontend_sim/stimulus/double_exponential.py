@@ -10,9 +10,13 @@ from typing import Literal, Self
 import numpy as np
 from pydantic import Field, model_validator
 
-from frontend_sim.quantities import PositiveTime, Time, Voltage
+from frontend_sim.quantities import PositiveTime, SignalDifference, SignalLevel, Time
 from frontend_sim.stimulus.base import Key, Stimulus
 from frontend_sim.stimulus.drive import Drive, PiecewiseDrive, Real
+
+LEAST_APART = 1e-3
+"""Least difference of the two time constants, as a share of the shorter one: nearer together the
+difference of the decays would lose its digits."""
 
 
 @dataclass(frozen=True, eq=False)
@@ -139,9 +143,9 @@ class DoubleExponential(Stimulus):
     """
 
     kind: Literal["double-exponential"] = "double-exponential"
-    peak: Voltage = Field(description="largest value above the baseline")
+    peak: SignalDifference = Field(description="largest value above the baseline")
     at: Time = Field(default=0.0, description="instant at which the surge begins")
-    baseline: Voltage = Field(default=0.0, description="value before the surge")
+    baseline: SignalLevel = Field(default=0.0, description="value before the surge")
     front_time: PositiveTime | None = Field(default=None, description="front time T1")
     half_time: PositiveTime | None = Field(default=None, description="time to half value T2")
     rise_constant: PositiveTime | None = Field(
@@ -160,8 +164,11 @@ class DoubleExponential(Stimulus):
                 "give either front_time and half_time, or rise_constant and decay_constant"
             )
         if self.rise_constant is not None and self.decay_constant is not None:
-            if not self.rise_constant < self.decay_constant:
-                raise ValueError("rise_constant must be shorter than decay_constant")
+            if not self.rise_constant * (1.0 + LEAST_APART) <= self.decay_constant:
+                raise ValueError(
+                    f"rise_constant {self.rise_constant:g} s must be shorter than decay_constant "
+                    f"{self.decay_constant:g} s, by {LEAST_APART:.1%} of it at least"
+                )
         else:
             self.shape  # noqa: B018 - raises for times that no double exponential has
         return self
@@ -178,6 +185,4 @@ class DoubleExponential(Stimulus):
     def drives(self, key: Key) -> tuple[Drive, ...]:
         """Return one surge."""
         shape = self.shape
-        return (
-            Surge(self.baseline, self.peak / shape.height, self.at, shape.decay, shape.rise),
-        )
+        return (Surge(self.baseline, self.peak / shape.height, self.at, shape.decay, shape.rise),)

@@ -8,7 +8,7 @@ from typing import Literal
 import numpy as np
 from pydantic import Field
 
-from frontend_sim.quantities import PositiveTime, Time, Voltage
+from frontend_sim.quantities import PositiveTime, SignalDifference, SignalLevel, Time
 from frontend_sim.stimulus.base import Key, Stimulus
 from frontend_sim.stimulus.drive import Drive, PiecewiseDrive, Real
 
@@ -63,10 +63,10 @@ class HalfSine(Stimulus):
     """
 
     kind: Literal["half-sine"] = "half-sine"
-    peak: Voltage = Field(description="height of the shock above the baseline")
+    peak: SignalDifference = Field(description="height of the shock above the baseline")
     length: PositiveTime = Field(description="length of the shock")
     at: Time = Field(default=0.0, description="instant at which the shock begins")
-    baseline: Voltage = Field(default=0.0, description="value before and after the shock")
+    baseline: SignalLevel = Field(default=0.0, description="value before and after the shock")
 
     def drives(self, key: Key) -> tuple[Drive, ...]:
         """Return one half wave."""

@@ -8,7 +8,7 @@ from typing import Literal, Self
 import numpy as np
 from pydantic import Field, model_validator
 
-from frontend_sim.quantities import PositiveTime, Time, Voltage
+from frontend_sim.quantities import PositiveTime, SignalLevel, Time
 from frontend_sim.stimulus.base import Key, Stimulus
 from frontend_sim.stimulus.drive import LINE, Drive, Lines, PiecewiseDrive, Real
 
@@ -84,8 +84,8 @@ class Pulse(Stimulus):
     """
 
     kind: Literal["pulse"] = "pulse"
-    low: Voltage = Field(default=0.0, description="value outside the pulse")
-    high: Voltage = Field(description="value of the pulse")
+    low: SignalLevel = Field(default=0.0, description="value outside the pulse")
+    high: SignalLevel = Field(description="value of the pulse")
     at: Time = Field(default=0.0, description="instant at which the first rising edge begins")
     width: PositiveTime = Field(description="width at half height")
     rise: Time = Field(default=0.0, description="length of the rising edge, from 0 to 100 %")
@@ -121,13 +121,14 @@ class Pulse(Stimulus):
 
     def drives(self, key: Key) -> tuple[Drive, ...]:
         """Return up to four pieces for each pulse."""
-        # Rounding must not let a pulse without a top fall before it has risen.
-        fall_starts = max(0.5 * self.rise + self.width - 0.5 * self.fall, self.rise)
+        fall_starts = 0.5 * self.rise + self.width - 0.5 * self.fall
         swing = self.high - self.low
         pieces = []
         if self.rise > 0.0:
             pieces.append((0.0, self.low, swing / self.rise))
-        pieces.append((self.rise, self.high, 0.0))
+        # A pulse without a top has none, whatever rounding makes of the sum of its edges.
+        if fall_starts > self.rise:
+            pieces.append((self.rise, self.high, 0.0))
         if self.fall > 0.0:
             pieces.append((fall_starts, self.high, -swing / self.fall))
         pieces.append((self._end(), self.low, 0.0))

@@ -6,7 +6,7 @@ from typing import Literal
 
 from pydantic import Field
 
-from frontend_sim.quantities import PositiveTime, Slope, Time, Voltage
+from frontend_sim.quantities import PositiveTime, SignalLevel, SignalSlope, Time
 from frontend_sim.stimulus.base import Key, Stimulus
 from frontend_sim.stimulus.drive import Drive, Lines
 
@@ -15,8 +15,8 @@ class Ramp(Stimulus):
     """u = before until t = at, then before + slope (t - at), held again after ``length``."""
 
     kind: Literal["ramp"] = "ramp"
-    before: Voltage = Field(default=0.0, description="value before the ramp")
-    slope: Slope = Field(description="slope of the ramp")
+    before: SignalLevel = Field(default=0.0, description="value before the ramp")
+    slope: SignalSlope = Field(description="slope of the ramp")
     at: Time = Field(default=0.0, description="instant at which the ramp starts")
     length: PositiveTime | None = Field(
         default=None, description="how long it ramps; left out, it never ends"

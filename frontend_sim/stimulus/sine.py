@@ -9,7 +9,7 @@ from typing import Literal
 import numpy as np
 from pydantic import Field
 
-from frontend_sim.quantities import Angle, Frequency, Voltage
+from frontend_sim.quantities import Angle, Frequency, SignalDifference, SignalLevel
 from frontend_sim.stimulus.base import Key, Stimulus
 from frontend_sim.stimulus.drive import Drive, PiecewiseDrive, Real
 from frontend_sim.stimulus.phase import cycles
@@ -65,10 +65,10 @@ class Sine(Stimulus):
     """u = offset + amplitude · sin(2 pi frequency t + phase)."""
 
     kind: Literal["sine"] = "sine"
-    amplitude: Voltage = Field(description="peak value of the sine")
+    amplitude: SignalDifference = Field(description="peak value of the sine")
     frequency: Frequency = Field(description="frequency of the sine")
     phase: Angle = Field(default=0.0, description="phase at t = 0")
-    offset: Voltage = Field(default=0.0, description="value that the sine swings around")
+    offset: SignalLevel = Field(default=0.0, description="value that the sine swings around")
 
     def drives(self, key: Key) -> tuple[Drive, ...]:
         """Return one tone."""

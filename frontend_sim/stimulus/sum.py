@@ -2,13 +2,15 @@
 
 from __future__ import annotations
 
+from collections.abc import Iterator
 from pathlib import Path
-from typing import TYPE_CHECKING, Literal
+from typing import TYPE_CHECKING, Literal, Self
 
 from pydantic import Field
 
 from frontend_sim.stimulus.base import Key, Stimulus
 from frontend_sim.stimulus.drive import Drive
+from frontend_sim.stimulus.levels import LevelFault
 
 if TYPE_CHECKING:
     from frontend_sim.stimulus import AnyStimulus
@@ -27,6 +29,26 @@ class Sum(Stimulus):
             for position, term in enumerate(self.term)
             for drive in term.drives((*key, position))
         )
+
+    def measured_in(self, signal: str) -> Self:
+        """Return the sum of all terms, each measured in an SI unit."""
+        terms = tuple(term.measured_in(signal) for term in self.term)
+        same = all(one is other for one, other in zip(terms, self.term, strict=True))
+        return self if same else self.model_copy(update={"term": terms})
+
+    def terms(self) -> Iterator[tuple[tuple[str | int, ...], Stimulus]]:
+        """Return all terms, those of sums in it too."""
+        for position, term in enumerate(self.term):
+            for path, inner in term.terms():
+                yield ("term", position, *path), inner
+
+    def foreign_levels(self, signal: str) -> list[LevelFault]:
+        """Return which values of which terms are in units of something else."""
+        return [
+            LevelFault(("term", position, *path), text)
+            for position, term in enumerate(self.term)
+            for path, text in term.foreign_levels(signal)
+        ]
 
     def known_length(self) -> float | None:
         """Return the length of the shortest term that ends."""

@@ -6,7 +6,7 @@ from typing import Literal
 
 from pydantic import Field
 
-from frontend_sim.quantities import Angle, Frequency, Voltage
+from frontend_sim.quantities import Angle, Frequency, SignalDifference, SignalLevel
 from frontend_sim.stimulus.base import Key, Stimulus
 from frontend_sim.stimulus.drive import Drive
 from frontend_sim.stimulus.sine import Tone
@@ -16,7 +16,7 @@ from frontend_sim.values import Value
 class ToneValue(Value):
     """One of several sines."""
 
-    amplitude: Voltage = Field(description="peak value of this tone")
+    amplitude: SignalDifference = Field(description="peak value of this tone")
     frequency: Frequency = Field(description="frequency of this tone")
     phase: Angle = Field(default=0.0, description="phase of this tone at t = 0")
 
@@ -26,7 +26,7 @@ class Tones(Stimulus):
 
     kind: Literal["tones"] = "tones"
     tone: tuple[ToneValue, ...] = Field(min_length=1, max_length=1000, description="the tones")
-    offset: Voltage = Field(default=0.0, description="value that the tones swing around")
+    offset: SignalLevel = Field(default=0.0, description="value that the tones swing around")
 
     def drives(self, key: Key) -> tuple[Drive, ...]:
         """Return one drive for each tone; the first carries the offset."""

@@ -1,4 +1,4 @@
-"""What the two basic amplifier circuits have in common: the pole of the closed loop."""
+"""The closed loop around an amplifier of one pole."""
 
 from __future__ import annotations
 

@@ -3,10 +3,12 @@
 from __future__ import annotations
 
 from abc import abstractmethod
+from typing import ClassVar
 
 from pydantic import Field
 
 from frontend_sim.analog.block import Block
+from frontend_sim.analog.limits import AmplifierLimits, Limiter
 from frontend_sim.analog.noise import NoiseInput
 from frontend_sim.values import Value
 
@@ -17,6 +19,9 @@ class Stage(Value):
     A stage is buffered: it neither loads what stands before it nor is loaded by what follows.
     """
 
+    passive: ClassVar[bool] = False
+    """Whether the real circuit is one without an amplifier, which loads what stands before it."""
+
     name: str = Field(
         default="", max_length=60, description="name of the stage in tables, plots and records"
     )
@@ -26,6 +31,13 @@ class Stage(Value):
         kind = str(getattr(self, "kind", "stage"))
         return self.name or f"{position} {kind}"
 
+    def units(self) -> tuple[str, str] | None:
+        """Return the SI units of input and output; None for a stage that keeps any unit.
+
+        The units are keys of ``frontend_sim.quantities.SIGNALS``.
+        """
+        return ("V", "V")
+
     @abstractmethod
     def blocks(self) -> tuple[Block, ...]:
         """Return the linear blocks of the stage, in the order of the signal."""
@@ -34,6 +46,40 @@ class Stage(Value):
         """Return the stage's own noise sources at a temperature [K]; an ideal stage has none."""
         return ()
 
+    def offset(self, temperature: float) -> float:
+        """Return the constant that the stage adds to its own output at a temperature [K].
+
+        It is what is left of offset voltages, bias currents and references long after they were
+        switched on, in the unit of the output.
+        """
+        return 0.0
+
+    def limits(self) -> AmplifierLimits | None:
+        """Return the limits of the amplifier in the stage; None if it has none."""
+        return None
+
+    def limiter(self) -> Limiter | None:
+        """Return what is not linear in the stage; None if all of it is.
+
+        The limiter stands for the blocks that it names in ``replaced``: those before them stand
+        before it, those after them behind it. ``blocks()`` is the model of small signals.
+
+        Raises
+        ------
+        ModelError
+            If the limits cannot be put on these blocks, see ``AmplifierLimits.around``.
+        """
+        limits = self.limits()
+        return None if limits is None else limits.around(self.blocks())
+
     def transport_delay(self) -> float:
         """Return the pure delay of the stage [s]."""
         return 0.0
+
+
+class AnyUnitStage(Stage):
+    """A stage that is given by its response alone, whatever quantity passes through it."""
+
+    def units(self) -> None:
+        """Return that the output has the unit of the input."""
+        return

@@ -9,17 +9,18 @@ from pydantic import Field, model_validator
 
 from frontend_sim.analog.block import Block
 from frontend_sim.analog.prototypes import Prototype, Response, filter_blocks
-from frontend_sim.analog.stages.base import Stage
+from frontend_sim.analog.stages.base import AnyUnitStage
 from frontend_sim.quantities import Frequency
 
 Order = Annotated[int, Field(ge=1, le=12, strict=True)]
 
 
-class Filter(Stage):
+class Filter(AnyUnitStage):
     """A filter of a named family, given by its low-pass prototype."""
 
     order: Order = Field(
-        description="order of the low-pass prototype, 1 to 12; a band response has twice as many poles"
+        description="order of the low-pass prototype, 1 to 12; a band response has twice as many "
+        "poles"
     )
     response: Response = Field(default="low-pass", description="what the filter passes")
     corner: Frequency | None = Field(
@@ -43,9 +44,7 @@ class Filter(Stage):
             raise ValueError(f"a {self.response} response needs corner alone")
         lower, upper = self._corners()
         if band and not lower < upper:
-            raise ValueError(
-                f"lower_corner {lower:g} Hz must lie below upper_corner {upper:g} Hz"
-            )
+            raise ValueError(f"lower_corner {lower:g} Hz must lie below upper_corner {upper:g} Hz")
         return self
 
     def _corners(self) -> tuple[float, float]:

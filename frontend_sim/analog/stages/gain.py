@@ -7,11 +7,11 @@ from typing import Literal
 from pydantic import Field
 
 from frontend_sim.analog.block import Block, gain_block
-from frontend_sim.analog.stages.base import Stage
+from frontend_sim.analog.stages.base import AnyUnitStage
 from frontend_sim.quantities import Ratio
 
 
-class Gain(Stage):
+class Gain(AnyUnitStage):
     """An ideal gain, H(s) = gain, of either sign."""
 
     kind: Literal["gain"] = "gain"

@@ -8,7 +8,7 @@ from pydantic import BeforeValidator, Field, model_validator
 
 from frontend_sim.analog.block import Block
 from frontend_sim.analog.factors import cascade
-from frontend_sim.analog.stages.base import Stage
+from frontend_sim.analog.stages.base import AnyUnitStage
 from frontend_sim.errors import ModelError
 from frontend_sim.quantities import Factor
 
@@ -30,7 +30,7 @@ Root = Annotated[
 ]
 
 
-class PolesZeros(Stage):
+class PolesZeros(AnyUnitStage):
     """H(s) = gain · prod(s - zero) / prod(s - pole).
 
     A root is a number, or ``[real, imaginary]`` with its conjugate listed too, in rad/s. Equal

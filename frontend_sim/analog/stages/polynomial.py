@@ -8,14 +8,14 @@ from pydantic import Field, model_validator
 
 from frontend_sim.analog.block import Block
 from frontend_sim.analog.factors import cascade, roots_of
-from frontend_sim.analog.stages.base import Stage
+from frontend_sim.analog.stages.base import AnyUnitStage
 from frontend_sim.errors import ModelError
 
 Coefficient = Annotated[float, Field(strict=True)]
 Coefficients = Annotated[tuple[Coefficient, ...], Field(min_length=1, max_length=21)]
 
 
-class Polynomial(Stage):
+class Polynomial(AnyUnitStage):
     """H(s) = numerator(s) / denominator(s), coefficients of s, the highest power first.
 
     Polynomials above the second order are factored before use, since a long polynomial loses its

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from typing import Literal
+from typing import ClassVar, Literal
 
 from pydantic import Field
 
@@ -20,6 +20,7 @@ class RcHighpass(Stage):
     Source: impedance divider 1/(s C) against R; common practice.
     """
 
+    passive: ClassVar[bool] = True
     kind: Literal["rc-highpass"] = "rc-highpass"
     resistance: Resistance = Field(description="resistance R to ground")
     capacitance: Capacitance = Field(description="series capacitance C")

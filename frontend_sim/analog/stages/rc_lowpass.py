@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from typing import Literal
+from typing import ClassVar, Literal
 
 from pydantic import Field
 
@@ -20,6 +20,7 @@ class RcLowpass(Stage):
     Source: impedance divider R against 1/(s C); common practice.
     """
 
+    passive: ClassVar[bool] = True
     kind: Literal["rc-lowpass"] = "rc-lowpass"
     resistance: Resistance = Field(description="series resistance R")
     capacitance: Capacitance = Field(description="capacitance C to ground")

@@ -9,13 +9,13 @@ from pydantic import Field
 
 from frontend_sim.analog.block import Block, second_order
 from frontend_sim.analog.factors import cascade
-from frontend_sim.analog.stages.base import Stage
+from frontend_sim.analog.stages.base import AnyUnitStage
 from frontend_sim.quantities import Frequency, PositiveRatio, Ratio
 
 SectionResponse = Literal["low-pass", "high-pass", "band-pass", "notch"]
 
 
-class SecondOrder(Stage):
+class SecondOrder(AnyUnitStage):
     """Second-order section with w0 = 2 pi corner and quality factor Q
 
         low-pass   g w0² / (s² + s w0/Q + w0²)      high-pass  g s² / (...)

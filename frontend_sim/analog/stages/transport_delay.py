@@ -7,11 +7,11 @@ from typing import Literal
 from pydantic import Field
 
 from frontend_sim.analog.block import Block
-from frontend_sim.analog.stages.base import Stage
+from frontend_sim.analog.stages.base import AnyUnitStage
 from frontend_sim.quantities import Time
 
 
-class TransportDelay(Stage):
+class TransportDelay(AnyUnitStage):
     """A pure delay, H(s) = exp(-s T): a cable, a column of fluid, an isolator.
 
     In the exact mode the delay is exact, not an approximation by poles and zeros.

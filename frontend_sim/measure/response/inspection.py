@@ -10,7 +10,6 @@ from typing import Any
 
 import numpy as np
 
-from frontend_sim.analog.chain import chain_of
 from frontend_sim.analog.discretize import METHODS
 from frontend_sim.converter.adc import Adc
 from frontend_sim.measure.response.frequency_domain import FrequencyDomain
@@ -19,6 +18,7 @@ from frontend_sim.measure.response.model_distance import Exact, ModelDistance, m
 from frontend_sim.measure.response.pole import Pole, poles_of
 from frontend_sim.measure.response.step_response import StepResponse
 from frontend_sim.measure.response.time_domain import TimeDomain
+from frontend_sim.scenario.circuit import circuit_of
 from frontend_sim.scenario.model import Scenario
 
 PASSIVE = ("rc-lowpass", "rc-highpass")
@@ -75,7 +75,7 @@ def inspect_scenario(scenario: Scenario) -> Inspection:
     ModelError
         If the chain is unstable, or rings too long to be searched.
     """
-    chain, adc = chain_of(scenario.chain), scenario.adc
+    chain, adc = circuit_of(scenario), scenario.adc
     response = StepResponse.of(chain)
     frequency = FrequencyDomain.of(response, adc.rate)
     time = TimeDomain.of(response, frequency.largest.value, adc)

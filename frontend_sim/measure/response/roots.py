@@ -8,6 +8,7 @@ import numpy as np
 
 from frontend_sim.analog.block import Block, Complex, Real
 from frontend_sim.analog.chain import Chain, Section, compose
+from frontend_sim.analog.factored_block import FactoredBlock
 from frontend_sim.analog.factors import cascade
 
 ROUNDING = 8.0 * float(np.finfo(np.float64).eps)
@@ -98,6 +99,8 @@ def _less_origin(roots: Complex, count: int) -> Complex:
 
 def _zeros_of(block: Block) -> tuple[Complex, float]:
     """Return the zeros of a block [rad/s] and the leading coefficient of its numerator."""
+    if isinstance(block, FactoredBlock):
+        return block.zeros, block.leading
     numerator, _ = block.polynomials()
     moving = np.abs(block.poles[block.poles != 0.0])
     rate = float(np.exp(np.mean(np.log(moving)))) if len(moving) else 1.0

@@ -1,0 +1,117 @@
+"""Potentiometer as a sensor of position."""
+
+from __future__ import annotations
+
+import math
+from typing import Literal
+
+import numpy as np
+from pydantic import Field
+
+from frontend_sim.analog.block import Block, Real, first_order
+from frontend_sim.analog.limits import Limiter, VariablePole
+from frontend_sim.analog.noise import NoiseInput, thermal_density
+from frontend_sim.analog.stages.curved_sensor import CurvedSensor
+from frontend_sim.quantities import (
+    Capacitance,
+    NotNegativeResistance,
+    PartVoltage,
+    Position,
+    Resistance,
+)
+
+
+class Potentiometer(CurvedSensor):
+    """Potentiometer at a position p from 0 to 1, with wiper resistance R_w, load R_l and C
+
+        R_s(p) = R p (1 - p) + R_w,    v = E p R_l / (R_l + R_s)              at rest,
+        C dv/dt = (E p - v) / R_s - v / R_l                                   with a capacitance.
+
+    Load and capacitance see a source whose resistance depends on the position: the load bends the
+    characteristic, and the capacitance settles slowest in the middle. Source: Thevenin's
+    equivalent of the divider; common practice.
+    """
+
+    kind: Literal["potentiometer"] = "potentiometer"
+    resistance: Resistance = Field(description="resistance R from end to end")
+    excitation_voltage: PartVoltage = Field(description="voltage E from end to end")
+    wiper_resistance: NotNegativeResistance = Field(
+        default=0.0, description="resistance R_w of the wiper's contact"
+    )
+    load_resistance: Resistance | None = Field(
+        default=None, description="load R_l from the wiper to ground; left out, there is none"
+    )
+    load_capacitance: Capacitance | None = Field(
+        default=None,
+        description="capacitance C from the wiper to ground; it needs wiper_resistance",
+    )
+    operating_position: Position = Field(
+        default=0.5, description="position at which inspect and noise take the tangent"
+    )
+
+    def units(self) -> tuple[str, str]:
+        """Return position in, volts out."""
+        return ("", "V")
+
+    def check(self) -> None:
+        """Refuse a capacitor on a source without resistance."""
+        if self.load_capacitance is not None and self.wiper_resistance == 0.0:
+            raise ValueError(
+                "load_capacitance needs wiper_resistance: at both ends the capacitor would stand "
+                "on a source without resistance"
+            )
+
+    def source_resistance(self, position: Real) -> Real:
+        """Return R_s [ohm] at positions, NaN beyond 0 to 1."""
+        p = np.asarray(position, dtype=np.float64)
+        inside = (p >= 0.0) & (p <= 1.0)
+        return np.where(inside, self.resistance * p * (1.0 - p) + self.wiper_resistance, np.nan)
+
+    def curve(self, signal: Real) -> Real:
+        """Return the voltage at rest at positions."""
+        loaded = 1.0 + self.source_resistance(signal) * self._load()
+        return self.excitation_voltage * np.asarray(signal) / loaded
+
+    def rate(self, signal: Real) -> Real:
+        """Return the inverse time constant with the capacitance at positions [1/s]."""
+        assert self.load_capacitance is not None
+        return (1.0 / self.source_resistance(signal) + self._load()) / self.load_capacitance
+
+    def slope(self) -> float:
+        """Return dv/dp at rest, at the operating position [V]."""
+        p = self.operating_position
+        loaded = 1.0 + float(self.source_resistance(np.array(p))) * self._load()
+        bend = p * self.resistance * (1.0 - 2.0 * p) * self._load() / loaded
+        return self.excitation_voltage / loaded * (1.0 - bend)
+
+    def span(self) -> str:
+        """Return the range of the wiper."""
+        return "the wiper's range, 0 to 1"
+
+    def blocks(self) -> tuple[Block, ...]:
+        """Return the tangent, with the pole of the capacitance at the operating position."""
+        if self.load_capacitance is None:
+            return super().blocks()
+        rate = float(self.rate(np.array(self.operating_position)))
+        return (first_order(-rate, (0.0, self.slope() * rate)),)
+
+    def limiter(self) -> Limiter:  # type: ignore[override]  # a curve with memory, or without
+        """Return the curve, and the pole that moves with the position."""
+        if self.load_capacitance is None:
+            return super().limiter()
+        return VariablePole(range(1), self.rate, self.output)
+
+    def noise(self, temperature: float) -> tuple[NoiseInput, ...]:
+        """Return the thermal noise of track, wiper and load at the operating position."""
+        source = float(self.source_resistance(np.array(self.operating_position)))
+        together = 1.0 / (1.0 / source + self._load()) if source > 0.0 else 0.0
+        density = thermal_density(together, temperature)
+        (block,) = self.blocks()
+        name = "thermal noise of the potentiometer and its load"
+        if block.order == 0:
+            return (NoiseInput(name, density, 0.0, 0, np.empty(0), 1.0),)
+        column = np.array([-block.a[0, 0] / block.c[0]])
+        return (NoiseInput(name, density, 0.0, 0, column, 0.0),)
+
+    def _load(self) -> float:
+        return 0.0 if self.load_resistance is None else 1.0 / self.load_resistance

@@ -1,0 +1,61 @@
+"""Where a stimulus jumps."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+
+import numpy as np
+
+from frontend_sim.simulation.kernels import Real
+from frontend_sim.stimulus.drive import Drive, UniformDrive
+
+ROUNDING = 64.0 * float(np.finfo(np.float64).eps)
+"""Instants this share of their time apart are one instant, whatever was rounded on the way."""
+
+NO_JUMP = 1e-12
+"""A change by less than this share of the value is the rounding of a smooth signal."""
+
+
+def slack(times: Real, interval: float) -> Real:
+    """Return how far instants at ``times`` lie from what is surely before and behind them [s].
+
+    ``interval`` is the longest one between points of a recording; near t = 0 rounding is relative
+    to it.
+    """
+    return ROUNDING * np.maximum(np.abs(times), interval)
+
+
+def jump_times(drives: Sequence[Drive], start: float, stop: float, interval: float) -> Real:
+    """Return the times in (start, stop] at which a drive jumps, sorted and each once [s].
+
+    t = 0 counts, since the signal before it is another; times nearer than rounding are one.
+    """
+    found = [_jumps(drive, start, stop, interval) for drive in drives]
+    if start < 0.0 <= stop:
+        found.append(np.zeros(1))
+    times = np.sort(np.concatenate(found)) if found else np.empty(0)
+    if len(times) < 2:
+        return times
+    apart = np.diff(times, prepend=-np.inf) > 4.0 * slack(times, interval)
+    return times[apart]
+
+
+def _jumps(drive: Drive, start: float, stop: float, interval: float) -> Real:
+    if isinstance(drive, UniformDrive):
+        return _changes(drive, start, stop) if drive.between == "hold" else np.empty(0)
+    times = drive.events(max(start, 0.0), stop) if stop > 0.0 else np.empty(0)
+    if len(times) == 0:
+        return times
+    before, after = drive.values(times - slack(times, interval)), drive.values(times)
+    return times[np.abs(after - before) > NO_JUMP * np.maximum(np.abs(after), np.abs(before))]
+
+
+def _changes(drive: UniformDrive, start: float, stop: float) -> Real:
+    first = max(int(np.floor((start - drive.origin) * drive.rate)), 1)
+    last = int(np.ceil((stop - drive.origin) * drive.rate)) + 1
+    if last <= first:
+        return np.empty(0)
+    points = drive.points(first - 1, last)
+    changed = first + np.flatnonzero(np.diff(points))
+    times = drive.origin + changed / drive.rate
+    return times[(times > start) & (times <= stop)]

@@ -1,0 +1,239 @@
+"""A chain with limiters and all its drives: the linear answer, and what the limiters add to it."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Sequence
+from dataclasses import dataclass
+from typing import Self
+
+import numpy as np
+
+from frontend_sim.analog.cut import CutChain, Place
+from frontend_sim.analog.limits import Segments
+from frontend_sim.errors import ScenarioError
+from frontend_sim.quantities import TIME, as_text
+from frontend_sim.simulation.deviation import Deviation, DeviationState
+from frontend_sim.simulation.kernels import Real
+from frontend_sim.simulation.linear import Axis, GridMethod, Initial, Linear, States
+from frontend_sim.simulation.polygon import Polygon
+from frontend_sim.simulation.probe import Answer, Probe
+from frontend_sim.simulation.rows import ROW
+from frontend_sim.simulation.uniform import WAVEFORM_TILE
+from frontend_sim.stimulus.drive import Drive, Lines, UniformDrive
+
+GRID_BLOCK = 16 * WAVEFORM_TILE
+"""Most points of the grid in one step of the limiters."""
+MOST_AT_ONCE = 1 << 18
+"""Points of the grid for the instants that are asked at once."""
+MOST_BETWEEN = 1 << 24
+"""Most points of the grid between two instants, all of which are held in memory."""
+
+
+@dataclass(frozen=True, eq=False)
+class LimitedState:
+    """Where a chain with limiters stands.
+
+    Parameters
+    ----------
+    known : points of the grid so far;  asked : the last instant [s]
+    """
+
+    known: int
+    asked: float
+    deviations: tuple[DeviationState, ...]
+    probe: tuple[States, ...]
+
+
+@dataclass(frozen=True, eq=False)
+class Limited:
+    """Some points of a chain with limiters as functions of time; the face is that of ``Linear``.
+
+    With v the linear answer at a limiter and y its true output, the rest of the chain answers to
+    v and to the deviation d = y - v apart. The answer to v is that of the linear chain, exact and
+    without a grid. The deviation is known at the points of a grid and joined by lines, and steps
+    exactly where it jumps; the answer to that is exact again.
+
+    Parameters
+    ----------
+    rate : of the grid [Hz]
+    end : points of the grid in the whole run
+    piece : instants that are asked at once, a power of two
+    lag : how far behind an instant the deviations are still needed [s]
+    """
+
+    deviations: tuple[Deviation, ...]
+    probe: Probe
+    rate: float
+    end: int
+    piece: int
+    lag: float
+
+    @classmethod
+    def of(
+        cls,
+        cut: CutChain,
+        drives: Sequence[Drive],
+        points: Sequence[int],
+        initial: Initial,
+        axis: Axis,
+        rate: float,
+        duration: float,
+        grid: GridMethod | None = None,
+    ) -> Self:
+        """Prepare points of a chain, numbered as in the chain that is not cut.
+
+        Parameters
+        ----------
+        rate : of the limiters' grid [Hz]
+        duration : of the run [s]
+        grid : a discrete model at the same rate, in place of the exact steps
+
+        Raises
+        ------
+        ModelError
+            If no settled state exists, see ``Chain.settled``.
+        ScenarioError
+            If more points of the grid lie between two instants than memory is meant for.
+        """
+        between = rate * axis.interval
+        if between > MOST_BETWEEN:
+            raise ScenarioError(
+                f"{between:.3g} points of the limiters' grid lie between two instants, more than "
+                f"{MOST_BETWEEN}; lower simulation.grid_rate, {rate:g} Hz"
+            )
+        make = _Maker(cut, tuple(drives), initial, rate, duration, grid)
+        for place in cut.places:
+            make.add(place)
+        probe = make.probe([cut.points[point] for point in points], axis)
+        most = min(int(MOST_AT_ONCE / max(between, 1.0)), WAVEFORM_TILE)
+        piece = 1 << max(most.bit_length() - 1, 0)
+        delay = float(cut.chain.delay[-1])
+        lag = delay + (ROW + 2) * max(axis.interval, 1.0 / rate)
+        return cls(tuple(make.deviations), probe, rate, math.ceil(duration * rate) + 2, piece, lag)
+
+    def start(self) -> LimitedState:
+        """Return the states at t = 0."""
+        deviations = tuple(deviation.start() for deviation in self.deviations)
+        return LimitedState(0, 0.0, deviations, self.probe.start())
+
+    def advance(
+        self, states: LimitedState, number: int, instants: Real
+    ) -> tuple[LimitedState, Real]:
+        """Return the states at the last instant and the points' values, shape (points, K).
+
+        Parameters
+        ----------
+        number : number of the first instant since the start of the run
+        instants : increasing, shape (K,) [s]
+        """
+        parts, at = [], 0
+        while at < len(instants):
+            end = ((number + at) // self.piece + 1) * self.piece
+            stop = min(end - number, len(instants))
+            part = instants[at:stop]
+            known, deviations = self._known(states, float(part[-1]))
+            signals = [deviation.signal for deviation in deviations]
+            probe, values = self.probe.advance(states.probe, number + at, part, signals)
+            states = LimitedState(known, float(part[-1]), deviations, probe)
+            parts.append(values)
+            at = stop
+        return states, parts[0] if len(parts) == 1 else np.concatenate(parts, axis=1)
+
+    def _known(
+        self, states: LimitedState, instant: float
+    ) -> tuple[int, tuple[DeviationState, ...]]:
+        """Advance the deviations to the point behind an instant."""
+        needed = math.floor(instant * self.rate) + 3
+        until = -(-needed // WAVEFORM_TILE) * WAVEFORM_TILE
+        until = max(min(until, self.end), needed)
+        keep = math.floor((states.asked - self.lag) * self.rate) - 1
+        known, deviations = states.known, states.deviations
+        while known < until:
+            upto = min(known + GRID_BLOCK, until)
+            after: list[DeviationState] = []
+            for deviation, state in zip(self.deviations, deviations, strict=True):
+                before = [earlier.signal for earlier in after]
+                after.append(deviation.advance(state, known, upto, keep, before))
+            known, deviations = upto, tuple(after)
+        return known, deviations
+
+    def notes(self, states: LimitedState) -> tuple[str, ...]:
+        """Return which limits were touched, for how long, and when first."""
+        return tuple(
+            f"the output of {deviation.place.name!r} was at {limit} for {as_text(time, TIME, 3)} "
+            f"(first at t = {as_text(first, TIME, 6)})"
+            for deviation, state in zip(self.deviations, states.deviations, strict=True)
+            for limit, time, first in zip(
+                deviation.place.limiter.limits, state.time, state.first, strict=True
+            )
+            if time > 0.0
+        )
+
+
+class _Maker:
+    """Puts the parts together, limiter by limiter along the chain."""
+
+    def __init__(
+        self,
+        cut: CutChain,
+        drives: tuple[Drive, ...],
+        initial: Initial,
+        rate: float,
+        duration: float,
+        grid: GridMethod | None,
+    ) -> None:
+        self.cut, self.drives, self.initial = cut, drives, initial
+        self.rate, self.duration, self.grid = rate, duration, grid
+        self.deviations: list[Deviation] = []
+
+    def probe(self, points: Sequence[int], axis: Axis) -> Probe:
+        """Return a probe for some points of the cut chain, behind the limiters so far."""
+        linear = Linear.of(self.cut.chain, self.drives, points, self.initial, axis, self.grid)
+        return Probe(linear, tuple(self._answer(one, points, axis) for one in self.deviations))
+
+    def add(self, place: Place) -> None:
+        """Put the next limiter in."""
+        points = place.probed()
+        delay = float(self.cut.chain.delay[place.entry])
+        grid = self.probe(points, Axis(1.0 / self.rate, 2.0 / self.rate, uniform=True))
+        events = None
+        if place.jumps and self.grid is None:
+            longest = self.duration + delay
+            events = self.probe(points, Axis(longest, longest))
+        interval = max(
+            (1.0 / drive.rate for drive in self.drives if isinstance(drive, UniformDrive)),
+            default=0.0,
+        )
+        at_once = None if self.grid is None else self._at_once(place, grid)
+        self.deviations.append(
+            Deviation(place, self.rate, grid, events, self.drives, delay, interval, at_once)
+        )
+
+    def _answer(self, deviation: Deviation, points: Sequence[int], axis: Axis) -> Answer | None:
+        exit_ = deviation.place.exit
+        rows = tuple(row for row, point in enumerate(points) if point >= exit_)
+        if not rows:
+            return None
+        start = deviation.start()
+        d = float(start.limiter[0])
+        polygon = start.signal[0] or Polygon(self.rate, d, 0, np.zeros(1))
+        drives: list[Drive] = [polygon]
+        if self.grid is None:
+            drives.append(Lines.of(0.0, [0.0], [0.0]))
+        behind = [points[row] - exit_ for row in rows]
+        chain = self.cut.behind(deviation.place)
+        return Answer(Linear.of(chain, drives, behind, self.initial, axis, self.grid), rows)
+
+    def _at_once(self, place: Place, grid: Probe) -> float:
+        """Return the deviation at t = 0, after a jump there."""
+        u0, v0 = place.both(grid.before()[:, None])
+        signals = [(deviation.start().signal[0], None) for deviation in self.deviations]
+        _, values = grid.advance(grid.start(), 0, np.zeros(1), signals)
+        u, v = place.both(values)
+        state = place.limiter.start(float(u0[0]), float(v0[0]))
+        at = np.zeros(1, np.int64)
+        _, _, begun, _ = place.limiter.advance(
+            state, Segments(np.zeros(1), u, u, v, float(v0[0]), at)
+        )
+        return float(begun[0])

@@ -1,0 +1,116 @@
+"""A stretch of grid and the jumps in it become pieces, each with a line as input."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from frontend_sim.analog.limits import Segments
+from frontend_sim.simulation.kernels import Real
+
+
+@dataclass(frozen=True, eq=False)
+class Stretch:
+    """The input u of a limiter, and the linear answer v to it, at some points of a grid in a row.
+
+    Parameters
+    ----------
+    rate : of the grid [Hz];  first : number of the first point
+    u, v : shape (K,), at least two points; at a jump the new value
+    fresh : whether the first point itself is a jump
+    """
+
+    rate: float
+    first: int
+    u: Real
+    v: Real
+    fresh: bool
+
+
+@dataclass(frozen=True, eq=False)
+class Jumps:
+    """Jumps of a limiter's input: the times [s], and u and v just before and just after.
+
+    Parameters
+    ----------
+    times : shape (J,);  before, after : rows u and v, shape (2, J)
+    """
+
+    times: Real
+    before: Real
+    after: Real
+
+
+@dataclass(frozen=True, eq=False)
+class Pieces:
+    """What a limiter advances over, and how its pieces meet grid and jumps.
+
+    Parameters
+    ----------
+    begins : when each piece begins, shape (S,) [s]
+    ends_on_grid : which pieces end at a point of the grid, shape (S,)
+    last : u and v at the last point, after its jump if it has one
+    fresh : whether the last point is a jump
+    """
+
+    segments: Segments
+    begins: Real
+    ends_on_grid: NDArray[np.bool_]
+    last: tuple[float, float]
+    fresh: bool
+
+
+def pieces_of(stretch: Stretch, jumps: Jumps | None) -> Pieces:
+    """Cut a stretch at the points of its grid and at jumps.
+
+    A jump within rounding of a point is at the point. The jumps lie behind the first point of the
+    stretch, and not behind its last one.
+    """
+    count = len(stretch.u)
+    begins = np.arange(stretch.first, stretch.first + count - 1) / stretch.rate
+    if jumps is None or len(jumps.times) == 0:
+        at = np.zeros(1 if stretch.fresh else 0, np.int64)
+        length = np.full(count - 1, 1.0 / stretch.rate)
+        u, v = stretch.u, stretch.v
+        segments = Segments(length, u[:-1], u[1:], v[1:], float(v[0]), at)
+        every = np.ones(count - 1, np.bool_)
+        return Pieces(segments, begins, every, (float(u[-1]), float(v[-1])), False)
+    return _cut(stretch, jumps, begins)
+
+
+def _cut(stretch: Stretch, jumps: Jumps, begins: Real) -> Pieces:
+    count = len(stretch.u)
+    position = jumps.times * stretch.rate - stretch.first
+    # Relative to the time itself: the position in this stretch has lost digits.
+    near = 1e-9 + 1e-13 * jumps.times * stretch.rate
+    nearest = np.clip(np.rint(position).astype(np.int64), 1, count - 1)
+    on = np.abs(position - nearest) <= near
+    inside = ~on
+    cell = np.clip(np.floor(position[inside]).astype(np.int64) + 1, 1, count - 1)
+    edges = np.insert(np.arange(count, dtype=np.float64), cell, position[inside])
+    # Number of each point and of each jump among the edges.
+    point = np.arange(count) + np.searchsorted(cell, np.arange(count), side="right")
+    edge = np.empty(len(position), np.int64)
+    edge[inside] = cell + np.arange(len(cell))
+    edge[on] = point[nearest[on]]
+    before = [np.insert(row, cell, 0.0) for row in (stretch.u, stretch.v)]
+    after = [row.copy() for row in before]
+    for row in range(2):
+        # Of two jumps at one point the first tells what was before, the last what comes after.
+        before[row][edge[::-1]], after[row][edge] = jumps.before[row][::-1], jumps.after[row]
+    starts = np.union1d(edge[edge < len(edges) - 1], [0] if stretch.fresh else [])
+    ends_on_grid = np.zeros(len(edges), np.bool_)
+    ends_on_grid[point] = True
+    segments = Segments(
+        np.diff(edges) / stretch.rate,
+        after[0][:-1],
+        before[0][1:],
+        before[1][1:],
+        float(after[1][0]),
+        starts.astype(np.int64),
+    )
+    times = np.insert(begins, cell, jumps.times[inside])
+    last = (float(after[0][-1]), float(after[1][-1]))
+    return Pieces(segments, times, ends_on_grid[1:], last, bool(edge[-1] == len(edges) - 1))

@@ -1,0 +1,129 @@
+"""Along a uniform row of instants: the exact way for generators, many instants at once."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import Self
+
+import numpy as np
+
+from frontend_sim.analog.exponential import expm1, power
+from frontend_sim.simulation import kernels
+from frontend_sim.simulation.kernels import Real
+from frontend_sim.simulation.path import State
+from frontend_sim.simulation.piecewise import PiecewisePath
+from frontend_sim.stimulus.drive import PiecewiseDrive
+
+ROW = 32
+"""Instants between two at which the generator's state is set anew."""
+
+
+@dataclass(frozen=True, eq=False)
+class RowPath:
+    """The chain and a generator over the instants k / rate, for k = 0, 1, 2, ...
+
+    Within a row without events the outputs are fixed combinations of the states at its begin,
+
+        y[k] = [c, d r] exp(M k h) [x; g],
+
+    and the step from row to row is one more matrix. A row with an event goes from node to node.
+
+    Parameters
+    ----------
+    exact : the same, for any instants
+    rate : [Hz]
+    spread : shape (p, n + m, ROW)
+    step, feed : from x and from g at the begin of a row to x at the begin of the next, less the
+        identity, shapes (n, n) and (n, m)
+    """
+
+    exact: PiecewisePath
+    rate: float
+    spread: Real
+    step: Real
+    feed: Real
+
+    @classmethod
+    def of(cls, exact: PiecewisePath, interval: float) -> Self:
+        """Prepare the path for instants ``interval`` apart [s]."""
+        system, outputs, drive = exact.table.system, exact.outputs, exact.drive
+        n, m = len(exact.initial), len(drive.readout)
+        one = expm1(system * interval)
+        spread = np.empty((len(outputs.d), n + m, ROW))
+        direct = np.outer(outputs.d, drive.readout)
+        rows = np.concatenate([outputs.c, direct], axis=1)
+        for k in range(ROW):
+            spread[:, :, k] = rows + rows @ power(one, k)
+        e = power(one, ROW)
+        step, feed = np.ascontiguousarray(e[:n, :n]), np.ascontiguousarray(e[:n, n:])
+        return cls(exact, 1.0 / interval, spread, step, feed)
+
+    def start(self) -> State:
+        """Return the state at the first instant of row 0."""
+        return State(self.exact.initial, 0.0)
+
+    def advance(
+        self, state: State, number: int, instants: Real, drive: PiecewiseDrive | None = None
+    ) -> tuple[State, Real]:
+        """Advance through instants ``number`` / rate and on, see ``Path``.
+
+        The state is that at the first instant of the row that the next instant belongs to, so a
+        row that is cut is computed again from its begin.
+        """
+        drive = drive or self.exact.drive
+        stop = number + len(instants)
+        first, last = number // ROW, -(-stop // ROW)
+        begins = np.arange(first, last + 1) * ROW / self.rate
+        g = drive.states(begins[:-1])
+        y = np.empty((len(self.spread), (last - first) * ROW))
+        x, kept = state.x.copy(), state.x
+        whole = stop // ROW - first
+        eventful = _rows_with(drive.events(float(begins[0]), float(begins[-1])), begins)
+        at = 0
+        while at < last - first:
+            until = int(eventful[0]) if len(eventful) else last - first
+            # The row of the next instant is where the state stays.
+            until = min(until, whole) if at < whole else until
+            if until > at:
+                self._clean(x, g[at:until], y[:, at * ROW : until * ROW])
+            else:
+                self._eventful(x, first + at, y[:, at * ROW : (at + 1) * ROW], drive)
+                until, eventful = at + 1, eventful[1:]
+            at = until
+            if at == whole:
+                kept = x.copy()
+        offset = number - first * ROW
+        return State(kept, float(whole + first)), y[:, offset : offset + len(instants)]
+
+    def rested(self, state: State, number: int, instants: Real) -> State:
+        """Return the state after instants at which all was zero, see ``Path``."""
+        return State(state.x, float((number + len(instants)) // ROW))
+
+    def _clean(self, x: Real, g: Real, y: Real) -> None:
+        """Fill in the outputs of rows without events, and advance x to the begin of the next."""
+        n = len(x)
+        z = np.empty((len(g) + 1, n + g.shape[1]))
+        states, sums = np.empty((len(g), n)), np.empty((len(g), n))
+        z[:-1, n:] = g
+        z[0, :n] = x
+        kernels.mix(self.feed, g, sums)
+        which = np.zeros(len(g), np.int64)
+        kernels.recur(x, self.step[None], self.exact.table.stop, which, sums, states)
+        z[1:, :n] = states
+        kernels.spread(z[:-1], self.spread, y)
+
+    def _eventful(self, x: Real, row: int, y: Real, drive: PiecewiseDrive) -> None:
+        """Go through one row from node to node."""
+        instants = np.arange(row * ROW, (row + 1) * ROW + 1) / self.rate
+        state = State(x, float(instants[0]))
+        state, values = self.exact.advance(state, 0, instants, drive)
+        y[:] = values[:, :-1]
+        x[:] = state.x
+
+
+def _rows_with(events: Real, begins: Real) -> Real:
+    """Return which rows hold an event between their first instant and that of the next row."""
+    inside = events[(events > begins[0]) & (events < begins[-1])]
+    row = np.searchsorted(begins, inside, side="left") - 1
+    # An event at the very begin of a row changes nothing before it.
+    return np.unique(row[inside < begins[row + 1]])
