@@ -32,7 +32,7 @@ STAGES: list[Stage] = [
     RcHighpass(resistance=1e5, capacitance=1e-6),
     InvertingAmplifier(gain=-2.0, gain_bandwidth=1e6),
     Butterworth(order=3, corner=4e3),
-    PolesZeros(poles=(-900.0, -900.0), zeros=(-50.0,), gain=900.0),  # type: ignore[arg-type]  # read as roots
+    PolesZeros(poles=(-900.0, -900.0), zeros=(-50.0,), gain=900.0),
 ]
 
 
@@ -127,7 +127,7 @@ def test_settled_states_stay(level: float) -> None:
     assert pin == pytest.approx(true, rel=1e-12, abs=1e-14 * abs(level))
 
 
-INTEGRATOR = PolesZeros(poles=(0.0,), gain=50.0)  # type: ignore[arg-type]  # read as a root
+INTEGRATOR = PolesZeros(poles=(0.0,), gain=50.0)
 
 
 def test_an_integrator_that_would_have_drifted_is_refused() -> None:

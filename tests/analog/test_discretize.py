@@ -104,7 +104,7 @@ def test_a_vanishing_prewarp_is_none() -> None:
 @pytest.mark.parametrize("method", METHODS)
 def test_an_integrator_sums(method: str) -> None:
     """A pole at the origin: rectangles for a held input, trapezoids for the others; exact."""
-    chain = chain_of([PolesZeros(poles=(0.0,), gain=50.0)])  # type: ignore[arg-type]  # read as a root
+    chain = chain_of([PolesZeros(poles=(0.0,), gain=50.0)])
     model = METHODS[method](chain, 0.01, None)  # type: ignore[index]  # a name out of the table
     gains = chain.c[-1, 0] * np.array([model.e[0, 0], model.start[0], model.stop[0]])
     expected = [0.0, 0.5, 0.0] if method == "zoh" else [0.0, 0.25, 0.25]

@@ -34,7 +34,7 @@ def test_the_velocity_change_is_two_over_pi() -> None:
     100 units over 11 ms give a change of 0.70028 unit seconds; computed from the closed form.
     """
     (drive,) = HalfSine(peak=100.0, length=11e-3, at=1e-3).drives((1,))
-    integrator = PolesZeros(poles=(0.0,))  # type: ignore[arg-type]  # read as a root
+    integrator = PolesZeros(poles=(0.0,))
     found = outputs(chain_of([integrator]), [drive], np.array([1e-3, 6.5e-3, 12e-3, 50e-3]))
     change = 2.0 / np.pi * 100.0 * 11e-3
     assert change == pytest.approx(0.70028, abs=5e-6)

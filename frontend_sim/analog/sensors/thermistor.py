@@ -2,8 +2,6 @@
 
 from __future__ import annotations
 
-import math
-
 import numpy as np
 
 from frontend_sim.analog.block import Real
@@ -44,14 +42,12 @@ def by_steinhart_hart(a: float, b: float, c: float, temperature: Real) -> Real:
     )
 
 
-def beta_slope(beta: float, temperature: float) -> float:
-    """Return d(ln R)/dT = -B / T² [1/K]; NaN at absolute zero."""
-    return -beta / temperature**2 if temperature > 0.0 else math.nan
+def beta_slope(beta: float, temperature: Real) -> Real:
+    """Return d(ln R)/dT = -B / T² [1/K]."""
+    return -beta / np.asarray(temperature) ** 2
 
 
-def steinhart_hart_slope(a: float, b: float, c: float, temperature: float) -> float:
-    """Return d(ln R)/dT = -1 / (T² (b + 3 c (ln R)²)) [1/K]; NaN at absolute zero."""
-    if not temperature > 0.0:
-        return math.nan
-    logarithm = math.log(float(by_steinhart_hart(a, b, c, np.array(temperature))))
-    return -1.0 / (temperature**2 * (b + 3.0 * c * logarithm**2))
+def steinhart_hart_slope(a: float, b: float, c: float, temperature: Real) -> Real:
+    """Return d(ln R)/dT = -1 / (T² (b + 3 c (ln R)²)) [1/K]."""
+    logarithm = np.log(by_steinhart_hart(a, b, c, temperature))
+    return -1.0 / (np.asarray(temperature) ** 2 * (b + 3.0 * c * logarithm**2))

@@ -72,7 +72,12 @@ class CurrentShunt(Stage):
         sources = {"resistance": self.resistance, "filter_resistance": self.filter_resistance}
         return tuple(
             NoiseInput(
-                f"thermal noise of {key}", thermal_density(value, temperature), 0.0, 0, column, direct
+                f"thermal noise of {key}",
+                thermal_density(value, temperature),
+                0.0,
+                0,
+                column,
+                direct,
             )
             for key, value in sources.items()
             if value is not None

@@ -2,14 +2,14 @@
 
 from __future__ import annotations
 
-import math
 from typing import Literal
 
 import numpy as np
 from pydantic import Field
 
 from frontend_sim.analog.block import Block, Real, first_order
-from frontend_sim.analog.limits import Limiter, VariablePole
+from frontend_sim.analog.limits import Limiter
+from frontend_sim.analog.limits.variable_pole import VariablePole
 from frontend_sim.analog.noise import NoiseInput, thermal_density
 from frontend_sim.analog.stages.curved_sensor import CurvedSensor
 from frontend_sim.quantities import (
@@ -31,6 +31,8 @@ class Potentiometer(CurvedSensor):
     characteristic, and the capacitance settles slowest in the middle. Source: Thevenin's
     equivalent of the divider; common practice.
     """
+
+    stops = True
 
     kind: Literal["potentiometer"] = "potentiometer"
     resistance: Resistance = Field(description="resistance R from end to end")
@@ -62,31 +64,41 @@ class Potentiometer(CurvedSensor):
             )
 
     def source_resistance(self, position: Real) -> Real:
-        """Return R_s [ohm] at positions, NaN beyond 0 to 1."""
-        p = np.asarray(position, dtype=np.float64)
-        inside = (p >= 0.0) & (p <= 1.0)
-        return np.where(inside, self.resistance * p * (1.0 - p) + self.wiper_resistance, np.nan)
+        """Return R_s at positions [ohm]."""
+        return self.resistance * position * (1.0 - position) + self.wiper_resistance
 
     def curve(self, signal: Real) -> Real:
-        """Return the voltage at rest at positions."""
+        """Return the voltage at rest at positions [V]."""
         loaded = 1.0 + self.source_resistance(signal) * self._load()
-        return self.excitation_voltage * np.asarray(signal) / loaded
+        return self.excitation_voltage * signal / loaded
+
+    def derivative(self, signal: Real) -> Real:
+        """Return dv/dp at rest at positions [V]."""
+        loaded = 1.0 + self.source_resistance(signal) * self._load()
+        bend = signal * self.resistance * (1.0 - 2.0 * signal) * self._load() / loaded
+        return self.excitation_voltage / loaded * (1.0 - bend)
 
     def rate(self, signal: Real) -> Real:
         """Return the inverse time constant with the capacitance at positions [1/s]."""
         assert self.load_capacitance is not None
-        return (1.0 / self.source_resistance(signal) + self._load()) / self.load_capacitance
+        conductance = 1.0 / self.source_resistance(self.inside(signal)) + self._load()
+        return conductance / self.load_capacitance
 
-    def slope(self) -> float:
-        """Return dv/dp at rest, at the operating position [V]."""
-        p = self.operating_position
-        loaded = 1.0 + float(self.source_resistance(np.array(p))) * self._load()
-        bend = p * self.resistance * (1.0 - 2.0 * p) * self._load() / loaded
-        return self.excitation_voltage / loaded * (1.0 - bend)
+    def ends(self) -> tuple[float, float]:
+        """Return the stops of the wiper."""
+        return 0.0, 1.0
+
+    def operating_point(self) -> float:
+        """Return the operating position."""
+        return self.operating_position
+
+    def shown(self, signal: float) -> str:
+        """Return a position."""
+        return f"a position of {signal:g}"
 
     def span(self) -> str:
         """Return the range of the wiper."""
-        return "the wiper's range, 0 to 1"
+        return "its stops at 0 and 1"
 
     def blocks(self) -> tuple[Block, ...]:
         """Return the tangent, with the pole of the capacitance at the operating position."""
@@ -95,11 +107,11 @@ class Potentiometer(CurvedSensor):
         rate = float(self.rate(np.array(self.operating_position)))
         return (first_order(-rate, (0.0, self.slope() * rate)),)
 
-    def limiter(self) -> Limiter:  # type: ignore[override]  # a curve with memory, or without
+    def limiter(self) -> Limiter:
         """Return the curve, and the pole that moves with the position."""
         if self.load_capacitance is None:
             return super().limiter()
-        return VariablePole(range(1), self.rate, self.output)
+        return VariablePole(range(1), self.rate, self.output, *self.ends())
 
     def noise(self, temperature: float) -> tuple[NoiseInput, ...]:
         """Return the thermal noise of track, wiper and load at the operating position."""

@@ -9,7 +9,7 @@ from pydantic import Field
 
 from frontend_sim.analog.block import Real
 from frontend_sim.analog.noise import NoiseInput, thermal_density
-from frontend_sim.analog.sensors.platinum import ratio_slope, resistance_ratio
+from frontend_sim.analog.sensors.platinum import HIGHEST, LOWEST, ratio_slope, resistance_ratio
 from frontend_sim.analog.stages.curved_sensor import CurvedSensor
 from frontend_sim.quantities import (
     REFERENCE_TEMPERATURE,
@@ -91,19 +91,22 @@ class Rtd(CurvedSensor):
         voltage, series = self._divider()
         return voltage * seen / (seen + series)
 
-    def slope(self) -> float:
-        """Return dv/dT at the operating temperature [V/K]."""
-        at = np.array(self.operating_temperature)
-        by_kelvin = self.nominal_resistance * float(ratio_slope(at))
+    def derivative(self, signal: Real) -> Real:
+        """Return dv/dT at temperatures [K]."""
+        by_kelvin = self.nominal_resistance * ratio_slope(signal)
         if self.excitation_current is not None:
             return self.excitation_current * by_kelvin
         voltage, series = self._divider()
-        seen = float(self.resistance(at)) + self._error()
+        seen = self.resistance(signal) + self._error()
         return voltage * series / (seen + series) ** 2 * by_kelvin
 
-    def span(self) -> str:
-        """Return the range of the standard."""
-        return "the range of IEC 60751, -200 degC to 850 degC"
+    def ends(self) -> tuple[float, float]:
+        """Return the range of the standard [K]."""
+        return LOWEST, HIGHEST
+
+    def operating_point(self) -> float:
+        """Return the operating temperature [K]."""
+        return self.operating_temperature
 
     def shown(self, signal: float) -> str:
         """Return a temperature in degrees."""

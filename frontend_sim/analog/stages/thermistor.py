@@ -26,6 +26,9 @@ from frontend_sim.quantities import (
     as_text,
 )
 
+LOWEST, HIGHEST = 50.0, 1000.0
+"""Range of the models, wider than that of any part [K]."""
+
 Coefficient = Annotated[float, Field(strict=True)]
 
 
@@ -70,9 +73,7 @@ class Thermistor(CurvedSensor):
         """Refuse keys that give no curve, or two, or one that does not fall."""
         by_two = (self.nominal_resistance is not None, self.beta is not None)
         if (self.steinhart_hart is not None) == any(by_two) or any(by_two) != all(by_two):
-            raise ValueError(
-                "give either nominal_resistance and beta together, or steinhart_hart"
-            )
+            raise ValueError("give either nominal_resistance and beta together, or steinhart_hart")
         if self.nominal_temperature == 0.0:
             raise ValueError("nominal_temperature must be above 0 K, absolute zero")
         if self.steinhart_hart is not None:
@@ -84,53 +85,54 @@ class Thermistor(CurvedSensor):
                 )
 
     def resistance(self, temperature: Real) -> Real:
-        """Return the resistance of the thermistor [ohm] at temperatures above 0 [K], else NaN."""
-        kelvin = np.where(np.asarray(temperature) > 0.0, temperature, np.nan)
+        """Return the resistance of the thermistor [ohm] at temperatures above 0 [K]."""
         with np.errstate(over="ignore"):  # an infinite resistance at the cold end is right
             if self.steinhart_hart is not None:
-                return by_steinhart_hart(*self.steinhart_hart, kelvin)
+                return by_steinhart_hart(*self.steinhart_hart, temperature)
             assert self.nominal_resistance is not None
             assert self.beta is not None
-            return by_beta(self.nominal_resistance, self.beta, self.nominal_temperature, kelvin)
+            nominal, beta = self.nominal_resistance, self.beta
+            return by_beta(nominal, beta, self.nominal_temperature, temperature)
+
+    def _share(self, temperature: Real) -> Real:
+        """Return the thermistor's share of the divider, R / (R + R_s)."""
+        return 1.0 / (1.0 + self.series_resistance / self.resistance(temperature))
 
     def curve(self, signal: Real) -> Real:
         """Return the voltage at temperatures [K]."""
-        resistance = self.resistance(signal)
-        if self.place == "to-ground":
-            with np.errstate(divide="ignore"):
-                return self.excitation_voltage / (1.0 + self.series_resistance / resistance)
-        return self.excitation_voltage / (1.0 + resistance / self.series_resistance)
+        share = self._share(signal)
+        return self.excitation_voltage * (share if self.place == "to-ground" else 1.0 - share)
 
-    def slope(self) -> float:
-        """Return dv/dT at the operating temperature [V/K]."""
-        resistance, share = self._operating_point()
+    def derivative(self, signal: Real) -> Real:
+        """Return dv/dT at temperatures [K]."""
         if self.steinhart_hart is not None:
-            relative = steinhart_hart_slope(*self.steinhart_hart, self.operating_temperature)
+            relative = steinhart_hart_slope(*self.steinhart_hart, signal)
         else:
             assert self.beta is not None
-            relative = beta_slope(self.beta, self.operating_temperature)
+            relative = beta_slope(self.beta, signal)
+        share = self._share(signal)
         sign = 1.0 if self.place == "to-ground" else -1.0
         return sign * self.excitation_voltage * share * (1.0 - share) * relative
 
-    def span(self) -> str:
-        """Return the range of the model."""
-        return "absolute zero"
+    def ends(self) -> tuple[float, float]:
+        """Return the range in which the models mean anything [K]."""
+        return LOWEST, HIGHEST
+
+    def operating_point(self) -> float:
+        """Return the operating temperature [K]."""
+        return self.operating_temperature
 
     def shown(self, signal: float) -> str:
-        """Return a temperature in kelvin: what is wrong with it is its zero."""
-        return f"{signal:g} K"
+        """Return a temperature in degrees."""
+        return as_text(signal, TEMPERATURE, 6)
 
     def noise(self, temperature: float) -> tuple[NoiseInput, ...]:
         """Return the thermal noise of both resistors, which divide each other's."""
-        resistance, share = self._operating_point()
-        own = thermal_density(resistance, self.operating_temperature)
+        at = np.array(self.operating_temperature)
+        share = float(self._share(at))
+        own = thermal_density(float(self.resistance(at)), self.operating_temperature)
         other = thermal_density(self.series_resistance, temperature)
         return (
             NoiseInput("thermal noise of the thermistor", own, 0.0, 0, np.empty(0), 1.0 - share),
             NoiseInput("thermal noise of series_resistance", other, 0.0, 0, np.empty(0), share),
         )
-
-    def _operating_point(self) -> tuple[float, float]:
-        """Return the thermistor's resistance and its share of the divider."""
-        resistance = float(self.resistance(np.array(self.operating_temperature)))
-        return resistance, resistance / (resistance + self.series_resistance)

@@ -59,14 +59,17 @@ class Thermocouple(CurvedSensor):
         """Return the voltage at temperatures [K]."""
         return thermovoltage(self.type, signal) - self._cold()
 
-    def slope(self) -> float:
-        """Return the Seebeck coefficient at the operating temperature [V/K]."""
-        return float(seebeck(self.type, np.array(self.operating_temperature)))
+    def derivative(self, signal: Real) -> Real:
+        """Return the Seebeck coefficient at temperatures [K], in V/K."""
+        return seebeck(self.type, signal)
 
-    def span(self) -> str:
-        """Return the range of the type."""
-        low, high = (self.shown(end) for end in limits(self.type))
-        return f"the range of type {self.type}, {low} to {high}"
+    def ends(self) -> tuple[float, float]:
+        """Return the range of the type [K]."""
+        return limits(self.type)
+
+    def operating_point(self) -> float:
+        """Return the operating temperature [K]."""
+        return self.operating_temperature
 
     def shown(self, signal: float) -> str:
         """Return a temperature in degrees."""

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import math
+
 import numpy as np
 from numpy.typing import ArrayLike
 
@@ -10,14 +12,14 @@ from frontend_sim.measure.arrays import Real, positive, samples
 from frontend_sim.measure.instants import Instants
 from frontend_sim.measure.level import decibel
 from frontend_sim.measure.sine_fit.free_frequency import LEAST_POINTS, gauss_newton
-from frontend_sim.measure.spectrum.coherence import coherence_of
+from frontend_sim.measure.spectrum.coherence import Coherence, coherence_of
 from frontend_sim.measure.spectrum.spectrum import amplitude_spectrum
 from frontend_sim.measure.spectrum.window import window_named
 from frontend_sim.measure.tone_quality.lines import Mask, lines_of
 from frontend_sim.measure.tone_quality.quality import ToneQuality, quality_of
 
 MOST_LEAKAGE = 0.02
-"""Largest share of noise and distortion that may be leakage of the tone, 0.09 dB."""
+"""Largest share of the power of noise and distortion that may be leakage of the tone, 0.09 dB."""
 
 ROUNDING = 1e-13
 """Leakage below this share of the tone's amplitude is rounding."""
@@ -73,32 +75,37 @@ def tone_quality(
         try:
             spectrum = amplitude_spectrum(row, rate, window_named(name))
             lines = lines_of(spectrum, fit.frequency, harmonics)
-            found = quality_of(spectrum, lines, coherence, fit.offset, whole)
-            leak = _leakage(model, rate, name, lines.kept_out)
         except MeasureError as error:
             if window is not None or name == TRIED[0]:
                 raise
             reasons.append(f"{name}: {error}")
             continue
-        if leak <= max(MOST_LEAKAGE * found.error_rms**2, (ROUNDING * fit.amplitude) ** 2):
+        found = quality_of(spectrum, lines, coherence, fit.offset, whole)
+        leak = _leakage(model, rate, name, lines.kept_out)
+        if leak <= max(MOST_LEAKAGE**0.5 * found.error_rms, ROUNDING * fit.amplitude):
             return found
+        rms = fit.amplitude / math.sqrt(2.0)
         reasons.append(
-            f"{name}: the tone leaks {decibel(leak**0.5 / found.rms):.1f} dB, noise and distortion "
-            f"show {-found.sinad:.1f} dB"
+            f"{name}: the tone leaks {decibel(leak / rms):.1f} dB, noise and distortion "
+            f"show {decibel(found.error_rms / rms):.1f} dB"
         )
+    raise _no_window(coherence, reasons)
+
+
+def _no_window(coherence: Coherence, reasons: list[str]) -> MeasureError:
     listed = "\n".join(f"  {reason}" for reason in reasons)
-    raise MeasureError(
-        f"no window tells the tone, {fit.frequency:.9g} Hz or {coherence.cycles} cycles "
+    return MeasureError(
+        f"no window tells the tone, {coherence.frequency:.9g} Hz or {coherence.cycles} cycles "
         f"{coherence.deviation:+.3g} in the record, from its own leakage\n{listed}\nmake the "
         "record coherent (a whole number of cycles, see coherent_tone), longer, or use fit_sine"
     )
 
 
 def _leakage(tone: Real, rate: float, window: str, kept_out: Mask) -> float:
-    """Return the mean square that a tone alone shows outside its own bins [V²]."""
+    """Return the rms value that a tone alone shows outside its own bins [V]."""
     spectrum = amplitude_spectrum(tone, rate, window)
     outside = float(np.sum(spectrum.mean_square[~kept_out]))
-    return outside / spectrum.window.noise_bandwidth
+    return math.sqrt(outside / spectrum.window.noise_bandwidth)
 
 
 def _refuse_repeats(values: Real, phases: int) -> None:
