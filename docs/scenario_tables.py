@@ -11,7 +11,7 @@ from typing import Any
 
 from pydantic.fields import FieldInfo
 
-from frontend_sim.quantities import as_text, dimension_of, shown
+from frontend_sim.quantities import ReadsLevel, as_text, mark_of, shown
 from frontend_sim.scenario.expectation import expected
 from frontend_sim.scenario.tables import Table, is_array, keys, members, tables
 from frontend_sim.values import Value
@@ -74,10 +74,10 @@ def _row(name: str, field: FieldInfo) -> str:
 
 
 def _unit(field: FieldInfo) -> str:
-    dimension = dimension_of(field.annotation, field.metadata)
+    mark = mark_of(field.annotation, field.metadata)
     extra = field.json_schema_extra
-    if dimension is not None:
-        return dimension.unit or "1"
+    if mark is not None:
+        return f"{mark.dimension.unit or '1'}{' ±' if mark.spread else ''}"
     return str(extra.get("unit", "")) if isinstance(extra, dict) else ""
 
 
@@ -87,9 +87,11 @@ def _default(name: str, field: FieldInfo) -> str:
     value: Any = field.get_default()
     if value is None or isinstance(value, Value) or value in ((), ""):
         return "left out"
-    dimension = dimension_of(field.annotation, field.metadata)
-    if dimension is not None:
-        return as_text(value, dimension)
+    mark = mark_of(field.annotation, field.metadata)
+    if isinstance(mark, ReadsLevel):
+        return "0" if value == 0.0 else str(value)
+    if mark is not None:
+        return as_text(value, mark.dimension)
     return f"`{shown(value)}`"
 
 
@@ -99,7 +101,7 @@ def _meaning(name: str, field: FieldInfo) -> str:
     text = field.description or ""
     if members(field.annotation):
         return f"{text}; {'tables' if is_array(field.annotation) else 'a table'}, see below"
-    if dimension_of(field.annotation, field.metadata) is None:
+    if mark_of(field.annotation, field.metadata) is None:
         text += f" ({expected(field.annotation, field.metadata)})"
     return text
 

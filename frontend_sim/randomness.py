@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import hashlib
+from collections.abc import Callable
 
 import numpy as np
 from numpy.typing import NDArray
@@ -29,15 +30,34 @@ def normal(key: tuple[int, ...], start: int, stop: int) -> NDArray[np.float64]:
 
     Returns an array of shape (stop - start,) [1].
     """
+    return _row(key, start, stop, lambda generator: generator.standard_normal(TILE))
+
+
+def uniform(key: tuple[int, ...], start: int, stop: int) -> NDArray[np.float64]:
+    """Return numbers spread evenly over [0, 1) at positions ``start`` to ``stop`` of a stream.
+
+    They are drawn as ``normal`` draws its own; give a stream a name for one of the two only.
+
+    Returns an array of shape (stop - start,) [1].
+    """
+    return _row(key, start, stop, lambda generator: generator.random(TILE))
+
+
+def _row(
+    key: tuple[int, ...],
+    start: int,
+    stop: int,
+    draw: Callable[[np.random.Generator], NDArray[np.float64]],
+) -> NDArray[np.float64]:
     if stop <= start:
         return np.empty(0)
     first, last = start // TILE, (stop - 1) // TILE
-    tiles = [_tile(key, tile) for tile in range(first, last + 1)]
+    tiles = [draw(_generator(key, tile)) for tile in range(first, last + 1)]
     drawn = tiles[0] if len(tiles) == 1 else np.concatenate(tiles)
     return drawn[start - first * TILE : stop - first * TILE]
 
 
-def _tile(key: tuple[int, ...], tile: int) -> NDArray[np.float64]:
+def _generator(key: tuple[int, ...], tile: int) -> np.random.Generator:
     # A seed sequence fills short keys up with zeros; the length tells (1, 2) from (1, 2, 0).
     seeds = np.random.SeedSequence((*key, len(key)), spawn_key=(tile % 2**32, tile // 2**32))
-    return np.random.Generator(np.random.Philox(seeds)).standard_normal(TILE)
+    return np.random.Generator(np.random.Philox(seeds))

@@ -4,8 +4,12 @@ from __future__ import annotations
 
 from typing import Any, ClassVar, get_args
 
-from pydantic import BaseModel, ConfigDict
+from pydantic import BaseModel, ConfigDict, JsonValue
 from pydantic.fields import FieldInfo
+
+OPTIONAL_KIND: dict[str, JsonValue] = {"optional": True}
+"""``json_schema_extra`` of the kind that a table without one has; there is at most one in a union.
+"""
 
 
 class Value(BaseModel):
@@ -30,3 +34,8 @@ def table(union: Any) -> dict[str, Any]:
     if members and isinstance(members[-1], FieldInfo):
         members = get_args(members[0])
     return {member.model_fields["kind"].default: member for member in members}
+
+
+def may_be_left_out(field: FieldInfo) -> bool:
+    """Return whether a field is the kind of a table that need not tell it."""
+    return field.json_schema_extra == OPTIONAL_KIND

@@ -276,7 +276,7 @@ WRONG = [
     ("5 1/s", FREQUENCY, ["ambiguous", "rad/s"]),
     ("100 kSPS", FREQUENCY, ["samples per second in Hz"]),
     ("100 kS/s", FREQUENCY, ["samples per second in Hz"]),
-    ("4k7J", RESISTANCE, ["tolerance letter 'J'", '"4k7"']),
+    ("4k7V", RESISTANCE, ["'V' is no letter for a tolerance", "J, K"]),
     ("4r7", RESISTANCE, ['"4R7"']),
     ("4P7", CAPACITANCE, ['"4p7"']),
     ("5 mV", LSB, ["'mV' is not LSB"]),

@@ -183,8 +183,10 @@ def _rest_of(block: Block, level: float, name: str) -> Real:
     if block.order == 0:
         return np.empty(0)
     if not np.any(block.poles == 0.0):
-        # Solved for a level of one, so that a high pass passes on exactly nothing of any level.
-        return np.asarray(level * np.linalg.solve(block.a, -block.b))
+        # Solved for a level of one, so that a high pass passes on exactly nothing of any level; each
+        # row less the size of its own rate, so that no pivot mixes a slow row into a fast one.
+        size = np.max(np.abs(block.a), axis=1)
+        return np.asarray(level * np.linalg.solve(block.a / size[:, None], -block.b / size))
     if level == 0.0:
         return np.zeros(block.order)
     raise ModelError(

@@ -1,110 +1,136 @@
-"""The analog-to-digital converter as the scenario describes it."""
+"""The sampling converter: it looks at an instant, and rounds what it sees."""
 
 from __future__ import annotations
 
-import math
-from typing import Annotated, Literal, Self
+from typing import TYPE_CHECKING, Literal, Self
 
 from pydantic import Field, model_validator
 
-from frontend_sim.quantities import (
-    Fraction,
-    Frequency,
-    NotNegativeVoltage,
-    Time,
-    Voltage,
-)
-from frontend_sim.values import Value
+from frontend_sim.converter.averaging import Averaging
+from frontend_sim.converter.base import MOST_JITTER, CodeFormat, Converter, Rounding
+from frontend_sim.converter.dither import Dither
+from frontend_sim.converter.pattern import LookPattern
+from frontend_sim.quantities import REFERENCE_TEMPERATURE, Frequency
+from frontend_sim.values import OPTIONAL_KIND, Value
 
-CodeFormat = Literal["straight-binary", "offset-binary", "twos-complement"]
-Rounding = Literal["nearest", "down"]
+if TYPE_CHECKING:
+    from frontend_sim.converter.digitizer import Digitizer
 
-MOST_JITTER = 0.05
-"""Largest rms jitter as a share of the conversion period; instants then stay in order."""
+__all__ = ["MOST_JITTER", "Adc", "CodeFormat", "Rounding"]
 
-FEWEST_ROUNDINGS = 16.0
-"""Least width of a code in units of the last place of the range's ends."""
+MOST_RESULT_BITS = 32
+"""Bits of the widest averaged result."""
 
 
-class Adc(Value):
+class _Rate(Value):
+    """The key that stands before all those that other converters have too."""
+
+    rate: Frequency = Field(description="results per second")
+
+
+class Adc(Converter, _Rate):
     """When the converter looks, and how it rounds what it sees.
 
-    t[k] = first + k / rate + aperture_delay + aperture_jitter · normal[k]
-    LSB = (high - low) / 2^bits
+    t[k] = first + k / (rate (1 + rate_error)) + aperture_delay + aperture_jitter · normal[k]
+    + wander(t); LSB = (high - low) / 2^bits
     """
 
-    rate: Frequency = Field(description="conversions per second")
-    bits: Annotated[int, Field(ge=4, le=32, strict=True)] = Field(description="number of bits")
-    low: Voltage = Field(default=0.0, description="voltage at the lower end of the range")
-    high: Voltage = Field(description="voltage at the upper end of the range")
-    code: CodeFormat | None = Field(
-        default=None,
-        description="how codes are counted; left out, straight-binary for a range from zero up "
-        "and offset-binary for one that reaches below zero",
+    kind: Literal["sampling"] = Field(default="sampling", json_schema_extra=OPTIONAL_KIND)
+    averaging: Averaging | None = Field(
+        default=None, description="several conversions for each result; left out, one"
     )
-    rounding: Rounding = Field(
-        default="nearest",
-        description="nearest: code edges half an LSB beside the code's voltage; down: at it",
-    )
-    first: Time = Field(default=0.0, description="instant of the first conversion")
-    aperture_delay: Time = Field(
-        default=0.0, description="from the nominal instant to the moment of sampling"
-    )
-    aperture_jitter: Time = Field(default=0.0, description="rms jitter of that moment")
-    offset: Voltage = Field(default=0.0, description="offset error, added to the input")
-    gain_error: Fraction = Field(
-        default=0.0,
-        description="gain error: the input counts 1 + gain_error times, from zero volts",
-    )
-    input_noise: NotNegativeVoltage = Field(
-        default=0.0, description="rms noise of a conversion, referred to the input"
+    dither: Dither | None = Field(
+        default=None, description="noise added before the quantizer; left out, none"
     )
 
     @model_validator(mode="after")
-    def _possible(self) -> Self:
-        if not self.low < self.high:
+    def _averaging_fits(self) -> Self:
+        averaging = self.averaging
+        if averaging is not None and averaging.interval is not None:
+            longest = 1.0 / (self.rate * averaging.count)
+            if averaging.interval > longest * (1.0 + 1e-9):
+                raise ValueError(
+                    f"averaging.interval {averaging.interval:g} s is too long: {averaging.count} "
+                    f"conversions fit into one period of the rate at intervals of up to "
+                    f"{longest:g} s; lower rate or averaging.count"
+                )
+        width = self.highest_code - self.lowest_code
+        if width >= 1 << MOST_RESULT_BITS:
             raise ValueError(
-                f"the range is reversed or empty: low {self.low:g} V must lie below high "
-                f"{self.high:g} V"
+                f"a sum of {averaging.count if averaging else 1} codes of {self.bits} bits needs "
+                f"{width.bit_length()} bits; shift it so far to the right that at most "
+                f"{MOST_RESULT_BITS} are left"
             )
-        furthest = max(abs(self.low), abs(self.high))
-        if self.lsb < FEWEST_ROUNDINGS * math.ulp(furthest):
+        if averaging is not None and width < 1:
+            raise ValueError(f"averaging.shift of {averaging.shift} leaves no bit of a result")
+        return self
+
+    @model_validator(mode="after")
+    def _dither_fits(self) -> Self:
+        if self.dither is not None and self.dither.width > 2.0 ** (self.bits - 1):
             raise ValueError(
-                f"a code of {self.lsb:g} V is lost in the rounding of {furthest:g} V; take fewer "
-                "bits, or put the range nearer to zero"
+                f"dither.width of {self.dither.width:g} LSB is more than half of the range, "
+                f"{2.0 ** (self.bits - 1):g} LSB"
             )
-        if self.code == "offset-binary" and not self.low < 0.0 < self.high:
-            raise ValueError(
-                "offset-binary codes need a range with zero inside; take straight-binary, or a "
-                "low below 0 V"
-            )
-        if self.aperture_jitter > MOST_JITTER / self.rate:
-            raise ValueError(
-                f"aperture_jitter {self.aperture_jitter:g} s must be at most {MOST_JITTER:.0%} of "
-                f"the conversion period, {MOST_JITTER / self.rate:g} s"
-            )
-        if self.gain_error <= -1.0:
-            raise ValueError("gain_error must be above -100 %")
+        return self
+
+    @model_validator(mode="after")
+    def _instants_keep_their_order(self) -> Self:
+        averaging = self.averaging
+        self._refuse_disorder("the conversion period" if averaging is None else "the interval")
         return self
 
     @property
-    def lsb(self) -> float:
-        """Width of one code [V]."""
-        return (self.high - self.low) / 2.0**self.bits
+    def looks(self) -> int:
+        """Conversions for each result."""
+        return 1 if self.averaging is None else self.averaging.count
 
     @property
-    def code_format(self) -> CodeFormat:
-        """How codes are counted, the default filled in."""
-        if self.code is not None:
-            return self.code
-        return "offset-binary" if self.low < 0.0 < self.high else "straight-binary"
+    def pattern(self) -> LookPattern:
+        """When the converter looks at its pin: evenly, or in a burst for each result."""
+        interval = self.averaging.interval if self.averaging is not None else None
+        if interval is None:
+            return LookPattern(self.first, self.true_rate * self.looks)
+        return LookPattern(self.first, self.true_rate, self.looks, interval / self.tempo)
+
+    @property
+    def true_rate(self) -> float:
+        """Results per second, by a right clock [Hz]."""
+        return self.rate * self.tempo
+
+    def last_look(self, code: int) -> int:
+        """Return the number of the conversion that completes a result."""
+        return (code + 1) * self.looks - 1
+
+    def digitizer(self, seed: int, temperature: float = REFERENCE_TEMPERATURE) -> Digitizer:
+        """Return the converter ready to run, see ``Converter.digitizer``."""
+        from frontend_sim.converter.sampling_digitizer import SamplingDigitizer
+
+        return SamplingDigitizer.of(self, seed, temperature)
+
+    @property
+    def lsb(self) -> float:
+        """Width of one code of the result [V]."""
+        return self.core_lsb if self.averaging is None else self.core_lsb / self.averaging.scale
 
     @property
     def lowest_code(self) -> int:
-        """Code at the lower end of the range."""
-        return -(1 << (self.bits - 1)) if self.code_format == "twos-complement" else 0
+        """Lowest code of a result."""
+        return self._result_of(self.core_lowest_code)
 
     @property
     def highest_code(self) -> int:
-        """Code at the upper end of the range."""
-        return self.lowest_code + (1 << self.bits) - 1
+        """Highest code of a result."""
+        return self._result_of(self.core_highest_code)
+
+    @property
+    def code_at_low(self) -> float:
+        """Code, also between whole numbers, that stands for ``low``."""
+        lowest = self.core_lowest_code
+        return lowest if self.averaging is None else lowest * self.averaging.scale
+
+    def _result_of(self, code: int) -> int:
+        """Return the result of conversions that all give one code."""
+        if self.averaging is None:
+            return code
+        return int(self.averaging.of_sum(code * self.averaging.count))

@@ -14,6 +14,7 @@ from frontend_sim.quantities.dimension import (
     ACCELERATION_SENSITIVITY,
     ANGLE,
     BETA,
+    BITS,
     CAPACITANCE,
     CURRENT,
     CURRENT_NOISE_DENSITY,
@@ -48,7 +49,8 @@ from frontend_sim.quantities.level import (
     parse_level,
     signal_dimension,
 )
-from frontend_sim.quantities.marker import Reads, ReadsLevel, dimension_of, level_mark
+from frontend_sim.quantities.limit import LIMIT, Limit, ReadsLimit
+from frontend_sim.quantities.marker import Reads, ReadsLevel, dimension_of, mark_of
 from frontend_sim.quantities.part import REFERENCE_TEMPERATURE, Part
 from frontend_sim.quantities.preferred import SERIES, Preferred, preferred
 from frontend_sim.quantities.reading import parse, shown
@@ -108,12 +110,18 @@ NotNegativeFraction = Annotated[float, Reads(FRACTION, _NOT_NEGATIVE)]
 Decibel = Annotated[float, Reads(DECIBEL, Bounds())]
 PositiveDecibel = Annotated[float, Reads(DECIBEL, _POSITIVE)]
 PositiveLsb = Annotated[float, Reads(LSB, _POSITIVE)]
+Bits = Annotated[float, Reads(BITS, _POSITIVE)]
+PositiveLimit = Annotated[float, ReadsLimit(LIMIT, _POSITIVE)]
+NotNegativeLimit = Annotated[float, ReadsLimit(LIMIT, _NOT_NEGATIVE)]
+Share = Annotated[float, Reads(FRACTION, Bounds(least=0.0, most=1.0))]
+PositiveShare = Annotated[float, Reads(FRACTION, Bounds(above=0.0, below=1.0))]
 
 __all__ = [
     "ACCELERATION_NOISE",
     "ACCELERATION_SENSITIVITY",
     "ANGLE",
     "BETA",
+    "BITS",
     "CAPACITANCE",
     "CURRENT",
     "CURRENT_NOISE_DENSITY",
@@ -122,6 +130,7 @@ __all__ = [
     "FRACTION",
     "FREQUENCY",
     "INDUCTANCE",
+    "LIMIT",
     "LSB",
     "NOISE_DENSITY",
     "POSITION",
@@ -144,6 +153,7 @@ __all__ = [
     "AccelerationSensitivity",
     "Angle",
     "Beta",
+    "Bits",
     "Bounds",
     "Capacitance",
     "Current",
@@ -157,11 +167,13 @@ __all__ = [
     "Inductance",
     "Instant",
     "Level",
+    "Limit",
     "NoiseDensity",
     "NotNegativeCapacitance",
     "NotNegativeCurrent",
     "NotNegativeFraction",
     "NotNegativeInductance",
+    "NotNegativeLimit",
     "NotNegativePower",
     "NotNegativeResistance",
     "NotNegativeSignalDifference",
@@ -174,9 +186,11 @@ __all__ = [
     "PartVoltage",
     "Position",
     "PositiveDecibel",
+    "PositiveLimit",
     "PositiveLsb",
     "PositivePartRatio",
     "PositiveRatio",
+    "PositiveShare",
     "PositiveSlope",
     "PositiveTime",
     "PositiveVoltage",
@@ -187,6 +201,7 @@ __all__ = [
     "Resistance",
     "Responsivity",
     "Sense",
+    "Share",
     "SignalDifference",
     "SignalLevel",
     "SignalSlope",
@@ -199,7 +214,7 @@ __all__ = [
     "as_text",
     "dimension_of",
     "level_in",
-    "level_mark",
+    "mark_of",
     "parse",
     "parse_level",
     "part_table",

@@ -72,7 +72,7 @@ class Reads:
         """Let the plain number be checked, and keep what was read with it."""
         kept = self.read(value)
         number: float = handler(float(kept))
-        return kept if isinstance(kept, (Part, Level)) else number
+        return number if type(kept) is float else kept
 
     def plain(self, value: float) -> float | str | dict[str, float | str]:
         """Return a value as data for JSON."""
@@ -170,14 +170,17 @@ def _table_schema(value: JsonSchemaValue) -> JsonSchemaValue:
     return {"properties": properties, "required": ["value"], "additionalProperties": False}
 
 
-def level_mark(metadata: Iterable[Any]) -> ReadsLevel | None:
-    """Return the marker of a field that holds a value of the signal, else None.
+def mark_of(annotation: Any, metadata: Iterable[Any] = ()) -> Reads | None:
+    """Return the marker that reads a field, or None if none does.
 
     Parameters
     ----------
-    metadata : ``FieldInfo.metadata``
+    annotation, metadata : ``FieldInfo.annotation`` and ``FieldInfo.metadata``
     """
-    return next((mark for mark in metadata if isinstance(mark, ReadsLevel)), None)
+    inside = (mark_of(inner) for inner in get_args(annotation) if not isinstance(inner, Reads))
+    marks = [*metadata, *get_args(annotation)]
+    own = (mark for mark in marks if isinstance(mark, Reads))
+    return next(own, None) or next((mark for mark in inside if mark is not None), None)
 
 
 def dimension_of(annotation: Any, metadata: Iterable[Any] = ()) -> Dimension | None:
@@ -187,12 +190,5 @@ def dimension_of(annotation: Any, metadata: Iterable[Any] = ()) -> Dimension | N
     ----------
     annotation, metadata : ``FieldInfo.annotation`` and ``FieldInfo.metadata``
     """
-    for mark in metadata:
-        if isinstance(mark, Reads):
-            return mark.dimension
-    for inner in get_args(annotation):
-        if isinstance(inner, Reads):
-            return inner.dimension
-        if (found := dimension_of(inner)) is not None:
-            return found
-    return None
+    mark = mark_of(annotation, metadata)
+    return None if mark is None else mark.dimension

@@ -10,8 +10,8 @@ from frontend_sim.quantities.units import PREFIXES, symbols
 _LETTERS = {power.adjusted(): letter for letter, (_, power) in PREFIXES.items()} | {0: ""}
 
 _ZERO_CELSIUS = Decimal("273.15")
-_ORDINARY = Decimal("1e-3")
-"""Temperatures nearer to absolute zero are written in kelvin [K]."""
+_COLD, _HOT = Decimal("1e-3"), Decimal("1e6")
+"""Temperatures between these are written in degrees [K]."""
 
 
 def as_share(value: float) -> str:
@@ -33,7 +33,7 @@ def as_text(value: float, dimension: Dimension, digits: int | None = None) -> st
     digits : significant digits; left out, as many as give back the very same float
     """
     unit, number = dimension.unit, Decimal(repr(float(value)))
-    if dimension.absolute and _ORDINARY <= number < 1 / _ORDINARY:
+    if dimension.absolute and _COLD <= number <= _HOT:
         unit, number = "degC", number - _ZERO_CELSIUS
     if digits is not None:
         number = Decimal(f"{number:.{digits}g}")

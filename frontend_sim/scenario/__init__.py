@@ -1,18 +1,26 @@
 """What the user writes: a TOML file becomes frozen, validated values."""
 
 from frontend_sim.scenario.check import check_scenario, scenario_notes
+from frontend_sim.scenario.circuit import circuit_of, stages_of
+from frontend_sim.scenario.environment import Environment
 from frontend_sim.scenario.load import load_scenario, parse_scenario
 from frontend_sim.scenario.model import Scenario, SimulationSettings
 from frontend_sim.scenario.schema import json_schema
+from frontend_sim.scenario.spread import SpreadPart, spread_parts
 from frontend_sim.scenario.write import scenario_text
 
 __all__ = [
+    "Environment",
     "Scenario",
     "SimulationSettings",
+    "SpreadPart",
     "check_scenario",
+    "circuit_of",
     "json_schema",
     "load_scenario",
     "parse_scenario",
     "scenario_notes",
     "scenario_text",
+    "spread_parts",
+    "stages_of",
 ]

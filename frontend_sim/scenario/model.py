@@ -166,6 +166,12 @@ class Scenario(Value):
             takes = "" if unit == PIN else f"; {self._taker()} takes a {named(unit)}"
             told = [(("stimulus", *path), f"{text}{takes}") for path, text in wrong]
             raise faults(type(self).__name__, told)
+        if unit == "K" and self.simulation.initial == "rest":
+            raise fault(
+                ["simulation", "initial"],
+                'initial = "rest" has no meaning for a temperature: before the run it would be '
+                '0 K, absolute zero; take "settled"',
+            )
         self._measure(unit)
         return self
 

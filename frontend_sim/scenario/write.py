@@ -15,9 +15,9 @@ from frontend_sim.quantities import (
     Dimension,
     Level,
     Part,
+    ReadsLevel,
     as_text,
-    dimension_of,
-    level_mark,
+    mark_of,
     part_table,
     signal_dimension,
 )
@@ -76,9 +76,9 @@ def _table(value: Value, writing: _Writing) -> dict[str, Any]:
 
 def _dimension(field: FieldInfo, item: Any, writing: _Writing) -> Dimension | None:
     """Return the dimension of a key; that of a signal is the stimulus's, or the value's own."""
-    mark = level_mark(field.metadata)
-    if mark is None:
-        return dimension_of(field.annotation, field.metadata)
+    mark = mark_of(field.annotation, field.metadata)
+    if not isinstance(mark, ReadsLevel):
+        return None if mark is None else mark.dimension
     own = item.unit if mark.with_unit and isinstance(item, Level) else None
     return signal_dimension(writing.signal if own is None else own, mark.sense)
 

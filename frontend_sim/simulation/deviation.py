@@ -14,7 +14,8 @@ from frontend_sim.simulation.kernels import Real
 from frontend_sim.simulation.linear import States
 from frontend_sim.simulation.pieces import Jumps, Pieces, Stretch, pieces_of
 from frontend_sim.simulation.polygon import Polygon
-from frontend_sim.simulation.probe import Probe, Signal
+from frontend_sim.simulation.probe import Probe
+from frontend_sim.simulation.signal import NO_PAST, Past, Signal
 from frontend_sim.stimulus.drive import Drive, Lines
 
 
@@ -53,10 +54,11 @@ class Deviation:
     ----------
     rate : of the grid [Hz]
     grid : gives u, and v where the limiter stands for states
-    events : the same at jumps; None where no jump of the stimulus reaches the limiter
+    events : the same at jumps of the stimulus; None for a discrete model, which knows none
     drives : the stimulus, asked for its jumps
     delay : from the stimulus to the limiter [s]
     interval : longest interval between the points of a recording [s]
+    remembers : whether the deviation is asked between the points of the grid
     at_once : the deviation at t = 0, where a discrete model cannot know of a jump; else None [V]
     """
 
@@ -68,6 +70,7 @@ class Deviation:
     delay: float
     interval: float
     at_once: float | None = None
+    remembers: bool = False
 
     def start(self) -> DeviationState:
         """Return the state at t = 0, before what happens there."""
@@ -82,7 +85,7 @@ class Deviation:
         events = self.events.start() if self.events is not None else ()
         return DeviationState(
             self.grid.start(), events, 0, limiter, float(u[0]), float(v[0]),
-            True, 0.0, (polygon, None), np.zeros(size), never,
+            True, 0.0, Signal(polygon, None, NO_PAST), np.zeros(size), never,
         )  # fmt: skip
 
     def advance(
@@ -115,6 +118,8 @@ class Deviation:
         pieces = pieces_of(Stretch(self.rate, first, u, v, fresh), jumps)
         limiter, d, begun, touched = self.place.limiter.advance(state.limiter, pieces.segments)
         level, signal = self._signal(state, first, keep, pieces, d, begun)
+        if self.remembers:
+            signal = replace(signal, past=_past(state, pieces, d, begun, keep / self.rate))
         time, when = _counted(state, touched, pieces.begins)
         count = state.count + (len(jumps.times) if jumps is not None else 0)
         return DeviationState(
@@ -131,6 +136,10 @@ class Deviation:
         near = slack(ends, self.interval)
         start, stop = ends + near - self.delay
         times = jump_times(self.drives, float(start), float(stop), self.interval) + self.delay
+        if not self.place.jumps:
+            # The input only bends there, which a piece may do at its ends.
+            position = times * self.rate
+            times = times[np.abs(position - np.rint(position)) > 1e-9 + 1e-13 * position]
         if len(times) == 0:
             return state.events, None
         near = slack(times, self.interval)
@@ -149,12 +158,11 @@ class Deviation:
         begun: Real,
     ) -> tuple[float, Signal]:
         """Split the deviation into held jumps and a part that lines join; add it to the signal."""
-        polygon, lines = state.signal
+        polygon, lines = state.signal.polygon, state.signal.lines
         starts = pieces.segments.jumps
         left = np.append(state.limiter[:1], d)[starts]
-        heights = np.where(
-            np.abs(begun - left) > NO_JUMP * (np.abs(begun) + np.abs(left)), begun - left, 0.0
-        )
+        size = np.abs(begun) + np.abs(left) + np.abs(pieces.segments.begin[starts])
+        heights = np.where(np.abs(begun - left) > NO_JUMP * size, begun - left, 0.0)
         if self.events is None or not np.any(heights):
             level = state.level
             joined = d[pieces.ends_on_grid] - level
@@ -165,10 +173,20 @@ class Deviation:
             joined, level = (d - held)[pieces.ends_on_grid], float(levels[-1])
             lines = _grown(lines, pieces.begins[starts[at]], levels)
         if polygon is None and not np.any(joined):
-            return level, (None, _trimmed(lines, keep / self.rate))
+            return level, Signal(None, _trimmed(lines, keep / self.rate), NO_PAST)
         if polygon is None:
             polygon = Polygon(self.rate, 0.0, first, np.zeros(1))
-        return level, (polygon.grown(joined, keep), _trimmed(lines, keep / self.rate))
+        lines = _trimmed(lines, keep / self.rate)
+        return level, Signal(polygon.grown(joined, keep), lines, NO_PAST)
+
+
+def _past(state: DeviationState, pieces: Pieces, d: Real, begun: Real, keep: float) -> Past:
+    """Return the past of a state with more pieces."""
+    segments = pieces.segments
+    left = np.append(state.limiter[:1], d[:-1])
+    left[segments.jumps] = begun
+    v = np.append(segments.linear_begin, segments.linear[:-1])
+    return state.signal.past.grown(Past(pieces.begins, segments.begin, v, left), keep)
 
 
 def _grown(lines: Lines | None, breaks: Real, levels: Real) -> Lines:

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Self
 
 import numpy as np
@@ -105,7 +105,7 @@ class Limited:
         make = _Maker(cut, tuple(drives), initial, rate, duration, grid)
         for place in cut.places:
             make.add(place)
-        probe = make.probe([cut.points[point] for point in points], axis)
+        probe = make.probe([cut.points[point] for point in points], axis, True)
         most = min(int(MOST_AT_ONCE / max(between, 1.0)), WAVEFORM_TILE)
         piece = 1 << max(most.bit_length() - 1, 0)
         delay = float(cut.chain.delay[-1])
@@ -187,20 +187,35 @@ class _Maker:
         self.rate, self.duration, self.grid = rate, duration, grid
         self.deviations: list[Deviation] = []
 
-    def probe(self, points: Sequence[int], axis: Axis) -> Probe:
-        """Return a probe for some points of the cut chain, behind the limiters so far."""
-        linear = Linear.of(self.cut.chain, self.drives, points, self.initial, axis, self.grid)
-        return Probe(linear, tuple(self._answer(one, points, axis) for one in self.deviations))
+    def probe(self, points: Sequence[int], axis: Axis, between: bool) -> Probe:
+        """Return a probe for some points of the cut chain, behind the limiters so far.
+
+        ``between`` asks for instants between the points of the grid: where a point sees a limiter
+        at once, lines would then be seen in place of the limiter's own output.
+        """
+        rows, asked = list(points), {}
+        for number, one in enumerate(self.deviations):
+            if between and self.grid is None and np.any(self._direct(one.place, points)):
+                probed = one.place.probed()
+                asked[number] = tuple(range(len(rows), len(rows) + len(probed)))
+                rows += probed
+                self.deviations[number] = replace(one, remembers=True)
+        linear = Linear.of(self.cut.chain, self.drives, rows, self.initial, axis, self.grid)
+        answers = (
+            self._answer(one, rows, axis, asked.get(number, ()))
+            for number, one in enumerate(self.deviations)
+        )
+        return Probe(linear, tuple(answers), len(points))
 
     def add(self, place: Place) -> None:
         """Put the next limiter in."""
         points = place.probed()
         delay = float(self.cut.chain.delay[place.entry])
-        grid = self.probe(points, Axis(1.0 / self.rate, 2.0 / self.rate, uniform=True))
+        grid = self.probe(points, Axis(1.0 / self.rate, 2.0 / self.rate, uniform=True), False)
         events = None
-        if place.jumps and self.grid is None:
+        if self.grid is None:
             longest = self.duration + delay
-            events = self.probe(points, Axis(longest, longest))
+            events = self.probe(points, Axis(longest, longest), True)
         interval = max(
             (1.0 / drive.rate for drive in self.drives if isinstance(drive, UniformDrive)),
             default=0.0,
@@ -210,25 +225,46 @@ class _Maker:
             Deviation(place, self.rate, grid, events, self.drives, delay, interval, at_once)
         )
 
-    def _answer(self, deviation: Deviation, points: Sequence[int], axis: Axis) -> Answer | None:
-        exit_ = deviation.place.exit
-        rows = tuple(row for row, point in enumerate(points) if point >= exit_)
+    def _direct(self, place: Place, points: Sequence[int]) -> Real:
+        """Return how much of a limiter's output each point sees at once."""
+        chain = self.cut.behind(place)
+        return np.array(
+            [
+                chain.d[point - place.exit]
+                if point >= place.exit and chain.delay[point - place.exit] == 0.0
+                else 0.0
+                for point in points
+            ]
+        )
+
+    def _answer(
+        self, deviation: Deviation, points: Sequence[int], axis: Axis, asked: tuple[int, ...]
+    ) -> Answer | None:
+        place = deviation.place
+        rows = tuple(row for row, point in enumerate(points) if point >= place.exit)
         if not rows:
             return None
         start = deviation.start()
         d = float(start.limiter[0])
-        polygon = start.signal[0] or Polygon(self.rate, d, 0, np.zeros(1))
+        polygon = start.signal.polygon or Polygon(self.rate, d, 0, np.zeros(1))
         drives: list[Drive] = [polygon]
         if self.grid is None:
             drives.append(Lines.of(0.0, [0.0], [0.0]))
-        behind = [points[row] - exit_ for row in rows]
-        chain = self.cut.behind(deviation.place)
-        return Answer(Linear.of(chain, drives, behind, self.initial, axis, self.grid), rows)
+        behind = [points[row] for row in rows]
+        model = Linear.of(
+            self.cut.behind(place),
+            drives,
+            [point - place.exit for point in behind],
+            self.initial,
+            axis,
+            self.grid,
+        )
+        return Answer(model, rows, self._direct(place, behind), place, asked)
 
     def _at_once(self, place: Place, grid: Probe) -> float:
         """Return the deviation at t = 0, after a jump there."""
         u0, v0 = place.both(grid.before()[:, None])
-        signals = [(deviation.start().signal[0], None) for deviation in self.deviations]
+        signals = [deviation.start().signal for deviation in self.deviations]
         _, values = grid.advance(grid.start(), 0, np.zeros(1), signals)
         u, v = place.both(values)
         state = place.limiter.start(float(u0[0]), float(v0[0]))

@@ -17,6 +17,10 @@ from frontend_sim.stimulus.drive import PiecewiseDrive
 
 ULPS = 4.0
 """An event within this many units in the last place of an instant belongs to the instant."""
+FEW = 64
+"""Instants that are taken at first, until it is known how many events lie between them."""
+MOST_NODES = 1 << 17
+"""Nodes in hand at once, about; more instants are taken at a time while there are fewer."""
 
 
 @dataclass(frozen=True, eq=False)
@@ -53,23 +57,39 @@ class PiecewisePath:
     def advance(
         self, state: State, number: int, instants: Real, drive: PiecewiseDrive | None = None
     ) -> tuple[State, Real]:
-        """Advance through instants, see ``Path``."""
+        """Advance through instants, see ``Path``.
+
+        They are taken a few at a time where there are many events between them, so that memory is
+        bounded by the nodes in hand.
+        """
         drive = drive or self.drive
+        y = np.empty((len(self.outputs.d), len(instants)))
+        done, few = 0, FEW
+        while done < len(instants):
+            part = slice(done, done + few)
+            state, nodes = self._piece(state, drive, instants[part], y[:, part])
+            few = min(2 * few, len(instants)) if nodes < MOST_NODES else max(few // 2, 1)
+            done = part.stop
+        return state, y
+
+    def _piece(
+        self, state: State, drive: PiecewiseDrive, instants: Real, y: Real
+    ) -> tuple[State, int]:
+        """Advance through instants, fill in their outputs, and return the number of nodes."""
         events = drive.events(state.node, float(instants[-1]) * (1.0 + 1e-15))
         instants = _snapped(instants, events)
         nodes = np.union1d(instants, events)
         nodes = nodes[nodes > state.node]
         g = drive.states(np.concatenate([[state.node], nodes]))
-        steps = np.diff(nodes, prepend=state.node)
         x = state.x.copy()
         states = np.empty((len(nodes) + 1, len(x)))
         states[0] = x
-        self._march(x, g, steps, states[1:])
+        self._march(x, g, np.diff(nodes, prepend=state.node), states[1:])
         at = np.searchsorted(nodes, instants, side="right")
-        y = np.empty((len(self.outputs.d), len(instants)))
-        u = g[at] @ self.drive.readout
-        kernels.readout(states[at], u, self.outputs.c, self.outputs.d, y)
-        return State(x, float(nodes[-1]) if len(nodes) else state.node), y
+        values = np.empty_like(y)
+        kernels.readout(states[at], g[at] @ drive.readout, self.outputs.c, self.outputs.d, values)
+        y[:] = values
+        return State(x, float(nodes[-1]) if len(nodes) else state.node), len(nodes)
 
     def rested(self, state: State, number: int, instants: Real) -> State:
         """Return the state after instants at which all was zero, see ``Path``."""

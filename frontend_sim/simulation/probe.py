@@ -7,13 +7,11 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from frontend_sim.analog.cut import Place
 from frontend_sim.simulation.kernels import Real
 from frontend_sim.simulation.linear import Linear, States
-from frontend_sim.simulation.polygon import Polygon
-from frontend_sim.stimulus.drive import Lines
-
-Signal = tuple[Polygon | None, Lines | None]
-"""A deviation: a part joined by lines, and a part that is held and jumps; None is zero so far."""
+from frontend_sim.simulation.signal import Signal
+from frontend_sim.stimulus.drive import Drive
 
 
 @dataclass(frozen=True, eq=False)
@@ -22,11 +20,34 @@ class Answer:
 
     Parameters
     ----------
-    rows : which of the probe's points these are
+    model : of the chain behind the limiter
+    rows : which of the probe's points the model's are
+    direct : how much of the deviation each of them sees at once, shape (rows,)
+    place : the limiter
+    asked : rows of the probe that hold the limiter's input and linear answer, to go on from a point
+        of the grid to an instant; empty where that is not done
     """
 
     model: Linear
     rows: tuple[int, ...]
+    direct: Real
+    place: Place
+    asked: tuple[int, ...]
+
+    def advance(
+        self, states: States, number: int, instants: Real, signal: Signal, values: Real
+    ) -> States:
+        """Add the answer to the probe's values in place; return the states at the last instant."""
+        drives: list[Drive | None] = [signal.polygon, signal.lines]
+        drives = drives[: len(self.model.groups[0].paths)]
+        states, added = self.model.advance(states, number, instants, drives)
+        if self.asked and len(signal.past.begins):
+            # Before the answer is added: the linear answer at the limiter is one of these points.
+            u, v = self.place.both(values[list(self.asked)])
+            added += self.direct[:, None] * signal.missed(self.place, instants, u, v)
+        if np.any(added):
+            values[list(self.rows)] += added
+        return states
 
 
 @dataclass(frozen=True, eq=False)
@@ -35,12 +56,14 @@ class Probe:
 
     Parameters
     ----------
-    linear : the points, as if nothing limited
+    linear : the points, as if nothing limited, and behind them those that the answers ask for
     answers : one for each limiter of the chain so far; None where no point lies behind it
+    count : number of points that are returned
     """
 
     linear: Linear
     answers: tuple[Answer | None, ...]
+    count: int
 
     def before(self) -> Real:
         """Return the points' values before t = 0, shape (points,)."""
@@ -48,7 +71,7 @@ class Probe:
         for answer in self.answers:
             if answer is not None:
                 values[list(answer.rows)] += _before(answer.model)
-        return values
+        return values[: self.count]
 
     def start(self) -> tuple[States, ...]:
         """Return the states at t = 0."""
@@ -72,14 +95,12 @@ class Probe:
         """
         held, values = self.linear.advance(states[0], number, instants)
         after = [held]
-        for answer, held, signal in zip(self.answers, states[1:], deviations, strict=True):
-            if answer is not None:
-                drives = signal[: len(answer.model.groups[0].paths)]
-                held, added = answer.model.advance(held, number, instants, drives)
-                if any(drive is not None for drive in drives):
-                    values[list(answer.rows)] += added
-            after.append(held)
-        return tuple(after), values
+        for answer, state, signal in zip(self.answers, states[1:], deviations, strict=True):
+            if answer is None:
+                after.append(state)
+            else:
+                after.append(answer.advance(state, number, instants, signal, values))
+        return tuple(after), values[: self.count]
 
 
 def _before(model: Linear) -> Real:

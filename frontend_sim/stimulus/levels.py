@@ -6,7 +6,7 @@ from collections.abc import Iterator
 from typing import NamedTuple
 
 from frontend_sim.errors import QuantityError
-from frontend_sim.quantities import level_in, level_mark
+from frontend_sim.quantities import ReadsLevel, level_in, mark_of
 from frontend_sim.values import Value
 
 
@@ -26,8 +26,8 @@ def level_faults(value: Value, signal: str) -> Iterator[LevelFault]:
     """
     for name, field in type(value).model_fields.items():
         item = getattr(value, name)
-        mark = level_mark(field.metadata)
-        if mark is not None and item is not None:
+        mark = mark_of(field.annotation, field.metadata)
+        if isinstance(mark, ReadsLevel) and item is not None:
             try:
                 level_in(item, signal, mark.sense)
             except QuantityError as error:
@@ -40,10 +40,14 @@ def level_faults(value: Value, signal: str) -> Iterator[LevelFault]:
 
 def absolute_keys(value: Value) -> tuple[list[str], list[str]]:
     """Return the keys of values of the signal, not of differences: those given, and the rest."""
+    marks = {
+        name: mark_of(field.annotation, field.metadata)
+        for name, field in type(value).model_fields.items()
+    }
     keys = [
         name
-        for name, field in type(value).model_fields.items()
-        if (mark := level_mark(field.metadata)) is not None and mark.sense == "value"
+        for name, mark in marks.items()
+        if isinstance(mark, ReadsLevel) and mark.sense == "value"
     ]
     given = [key for key in keys if key in value.model_fields_set]
     return given, [key for key in keys if key not in given]

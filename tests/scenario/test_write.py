@@ -53,11 +53,12 @@ def test_the_text_is_what_an_engineer_would_write() -> None:
 @pytest.mark.parametrize("sample", [*STIMULUS_SAMPLES, *STAGE_SAMPLES], ids=lambda s: s["kind"])
 def test_every_kind_comes_back(sample: dict[str, object]) -> None:
     """A written scenario of any kind reads as the same values."""
-    stimulus = sample if sample in STIMULUS_SAMPLES else {"kind": "step", "after": 1.0}
+    stimulus = sample if sample in STIMULUS_SAMPLES else {"kind": "step", "before": 300, "after": 1}
+    probe = [{"kind": "rtd", "excitation_current": 1e-3}] if sample["kind"] == "thermal-lag" else []
     scenario = Scenario.model_validate(
         {
             "stimulus": stimulus,
-            "chain": [sample] if sample in STAGE_SAMPLES else [],
+            "chain": [sample, *probe] if sample in STAGE_SAMPLES else [],
             "adc": {"rate": 1e3, "bits": 8, "high": 1.0},
             "simulation": {"duration": 1.0},
         }

@@ -145,5 +145,5 @@ class ClosedLoop(Limiter):
         limits = (self.rate, self.gain, self.up, self.down, self.low, self.high)
         told = (touched.time, touched.piece, touched.since)
         at = float(state[0]), float(state[1]), span.linear_begin
-        ends = closed_loop(*at, *parts, *limits, deviation, *told)
+        ends = closed_loop(*at, *parts, span.apart, *limits, deviation, *told)
         return np.array(ends), deviation, continuous(state, deviation, span.jumps), touched

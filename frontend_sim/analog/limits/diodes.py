@@ -46,7 +46,7 @@ class DiodeClamp(Limiter):
 
         touched, deviation = Touched.none(4), np.empty(len(span.length))
         at = (float(state[0]), float(state[1]), span.linear_begin)
-        parts = (*at, span.length, span.begin, span.end, span.linear)
+        parts = (*at, span.length, span.begin, span.end, span.linear, span.apart)
         told = (deviation, touched.time, touched.piece, touched.since)
         if math.isinf(self.ratio):
             limits = (self.rate, 1.0, math.inf, math.inf, self.low, self.high)

@@ -46,7 +46,7 @@ class SlewFollower(Limiter):
         y[0] = state[1]
         limits = (self.gain, self.up, self.down, self.low, self.high)
         told = (touched.time, touched.piece, touched.since)
-        follow(span.length, span.begin, span.end, *limits, y, *told)
+        follow(span.length, span.begin, span.end, span.apart, *limits, y, *told)
         deviation = y[1:] - self.gain * span.end
         before = y[span.jumps] - self.gain * span.begin[span.jumps]
         return np.array([deviation[-1], y[-1]]), deviation, before, touched

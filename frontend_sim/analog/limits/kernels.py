@@ -72,7 +72,7 @@ def steepening(z: float, slope: float, rate: float, up: float, down: float) -> f
 
 @njit(cache=True)
 def closed_loop(
-    d: float, y: float, v: float, length: Any, begin: Any, end: Any, linear: Any,
+    d: float, y: float, v: float, length: Any, begin: Any, end: Any, linear: Any, apart: Any,
     rate: float, gain: float, up: float, down: float, low: float, high: float,
     deviation: Any, time: Any, piece: Any, since: Any,
 ) -> tuple[float, float]:  # fmt: skip
@@ -91,6 +91,9 @@ def closed_loop(
             known, decay = dt, math.exp(-rate * dt)
             share = 1.0 / dt if dt > 0.0 else 0.0
         target, last = gain * begin[s], gain * end[s]
+        if apart.shape[1]:
+            d, v = apart[0, s], apart[1, s]
+            y = min(max(v + d, low), high)
         z, slope = rate * (target - y), (last - target) * share
         least, most = (target, last) if target < last else (last, target)
         if z > up or z < -down or slope > up or slope < -down:
@@ -203,7 +206,7 @@ def limited_piece(
 
 @njit(cache=True)
 def clamp(
-    d: float, y: float, v: float, length: Any, begin: Any, end: Any, linear: Any,
+    d: float, y: float, v: float, length: Any, begin: Any, end: Any, linear: Any, apart: Any,
     rate: float, ratio: float, low: float, high: float,
     deviation: Any, time: Any, piece: Any, since: Any,
 ) -> tuple[float, float]:  # fmt: skip
@@ -220,6 +223,9 @@ def clamp(
             known, decay = dt, math.exp(-rate * dt)
             gone = -math.expm1(-faster * dt) / faster
             share = 1.0 / dt if dt > 0.0 else 0.0
+        if apart.shape[1]:
+            d, v = apart[0, s], apart[1, s]
+            y = v + d
         least, most = (first, last) if first < last else (last, first)
         # y moves towards the line, and never across a level that the line stays beyond.
         if y <= high and most <= high and y >= low and least >= low:
@@ -331,7 +337,7 @@ def beyond(first: float, last: float, level: float) -> tuple[float, float]:
 
 @njit(cache=True)
 def follow(
-    length: Any, begin: Any, end: Any,
+    length: Any, begin: Any, end: Any, apart: Any,
     gain: float, up: float, down: float, low: float, high: float,
     y: Any, time: Any, piece: Any, since: Any,
 ) -> None:  # fmt: skip
@@ -340,6 +346,8 @@ def follow(
         dt, first, last = length[s], gain * begin[s], gain * end[s]
         slope = (last - first) / dt if dt > 0.0 else 0.0
         here, t = y[s], 0.0
+        if apart.shape[1]:
+            here = min(max(apart[1, s] + apart[0, s], low), high)
         for _ in range(MOST_EVENTS):
             q = first + slope * t
             # The clipped line bends where it meets a rail; until then its slope is one number.

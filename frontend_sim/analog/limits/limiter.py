@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from abc import ABC, abstractmethod
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 
 import numpy as np
 from numpy.typing import NDArray
@@ -11,6 +11,9 @@ from numpy.typing import NDArray
 from frontend_sim.analog.block import Real
 
 Index = NDArray[np.int64]
+
+ALONG = np.empty((2, 0))
+"""Pieces that follow one another."""
 
 
 @dataclass(frozen=True, eq=False)
@@ -25,6 +28,8 @@ class Segments:
     linear_begin : the same at the begin of the first piece
     jumps : numbers of the pieces that begin with another input than the one before ended with,
         shape (J,)
+    apart : where each piece stands on its own, d and v at its begin, shape (2, S); then nothing
+        is carried from piece to piece
     """
 
     length: Real
@@ -33,6 +38,7 @@ class Segments:
     linear: Real
     linear_begin: float
     jumps: Index
+    apart: Real = field(default_factory=lambda: ALONG)
 
 
 @dataclass(frozen=True, eq=False)

@@ -2,48 +2,34 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
 from dataclasses import dataclass
 
 import numpy as np
 
 from frontend_sim.analog.block import Real
-from frontend_sim.analog.limits.limiter import Limiter, Segments, Touched
+from frontend_sim.analog.limits.limiter import Segments, Touched
+from frontend_sim.analog.limits.static_map import StaticMap
 
 ENDS = ("the upper end of its range", "the lower end of its range")
 
 
 @dataclass(frozen=True, eq=False)
-class SensorCurve(Limiter):
-    """A curve y = f(u) in place of a gain G, its slope at the operating point.
+class SensorCurve(StaticMap):
+    """A curve that holds over a range of its input; how long the range was left is told.
 
     Parameters
     ----------
-    replaced : the one block without states that is the gain
-    gain : G; any value is right in a run
-    function : f, for arrays of inputs; it must not depend on anything but its argument
-    low, high : range of the sensor; how long it was left is told
+    low, high : ends of the range
     """
 
-    replaced: range
-    gain: float
-    function: Callable[[Real], Real]
     low: float
     high: float
     limits = ENDS
 
-    def start(self, u: float, v: float) -> Real:
-        """Return the deviation at rest."""
-        return self._deviation(np.array([u]))
-
     def advance(self, state: Real, span: Segments) -> tuple[Real, Real, Real, Touched]:
         """Take the curve at every end, see ``Limiter``."""
-        deviation = self._deviation(span.end)
-        before = self._deviation(span.begin[span.jumps])
-        return deviation[-1:], deviation, before, left(span, self.low, self.high)
-
-    def _deviation(self, u: Real) -> Real:
-        return self.function(u) - self.gain * u
+        state, deviation, before, _ = super().advance(state, span)
+        return state, deviation, before, left(span, self.low, self.high)
 
 
 def left(span: Segments, low: float, high: float) -> Touched:
@@ -55,7 +41,7 @@ def left(span: Segments, low: float, high: float) -> Touched:
 
 
 def _over(length: Real, begin: Real, end: Real) -> tuple[float, int, float]:
-    """Return how long lines from ``begin`` to ``end`` are above zero; the first piece, and since."""
+    """Return how long lines are above zero, which piece is first, and how far into it."""
     over = np.flatnonzero((begin > 0.0) | (end > 0.0))
     if len(over) == 0:
         return 0.0, -1, 0.0

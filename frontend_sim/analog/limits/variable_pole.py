@@ -44,7 +44,7 @@ class VariablePole(Limiter):
         return np.array([y - v, y])
 
     def advance(self, state: Real, span: Segments) -> tuple[Real, Real, Real, Touched]:
-        """Advance piece by piece, see ``Limiter``. The deviation never jumps: y and v are states."""
+        """Advance piece by piece, see ``Limiter``. The deviation never jumps, as y and v do not."""
         from frontend_sim.analog.limits.scan import follow_line
 
         ends = self.rate(span.begin) + self.rate(span.end)

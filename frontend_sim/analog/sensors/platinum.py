@@ -7,13 +7,11 @@ import numpy as np
 from frontend_sim.analog.block import Real
 
 A, B, C = 3.9083e-3, -5.775e-7, -4.183e-12
-"""Coefficients of IEC 60751 [degC^-1, degC^-2, degC^-4]; from memory, the standard was not at hand."""
+"""Coefficients of IEC 60751 [degC^-1, degC^-2, degC^-4]; from memory, it was not at hand."""
 
 ZERO_CELSIUS = 273.15
 LOWEST, HIGHEST = 73.15, 1123.15
 """Range of the standard, -200 degC to 850 degC [K]."""
-SLACK = 1e-9
-"""By this much a temperature may lie beyond the ends of the range, from rounding [K]."""
 
 
 def resistance_ratio(temperature: Real) -> Real:
@@ -24,23 +22,17 @@ def resistance_ratio(temperature: Real) -> Real:
 
     Parameters
     ----------
-    temperature : [K]; NaN comes out for one beyond the range of the standard
+    temperature : from ``LOWEST`` to ``HIGHEST`` [K]
 
     Source: IEC 60751.
     """
-    t, inside = _celsius(temperature)
-    ratio = 1.0 + t * (A + B * t) + np.where(t < 0.0, C * (t - 100.0) * t**3, 0.0)
-    return np.where(inside, ratio, np.nan)
+    t = np.asarray(temperature, dtype=np.float64) - ZERO_CELSIUS
+    cold = np.minimum(t, 0.0)
+    return np.asarray(1.0 + t * (A + B * t) + C * (cold - 100.0) * cold**3)
 
 
 def ratio_slope(temperature: Real) -> Real:
     """Return the derivative of ``resistance_ratio`` [1/K] at a temperature [K]."""
-    t, inside = _celsius(temperature)
-    slope = A + 2.0 * B * t + np.where(t < 0.0, C * (4.0 * t - 300.0) * t**2, 0.0)
-    return np.where(inside, slope, np.nan)
-
-
-def _celsius(temperature: Real) -> tuple[Real, Real]:
-    kelvin = np.asarray(temperature, dtype=np.float64)
-    inside = (kelvin >= LOWEST - SLACK) & (kelvin <= HIGHEST + SLACK)
-    return kelvin - ZERO_CELSIUS, inside
+    t = np.asarray(temperature, dtype=np.float64) - ZERO_CELSIUS
+    cold = np.minimum(t, 0.0)
+    return np.asarray(A + 2.0 * B * t + C * (4.0 * cold - 300.0) * cold**2)

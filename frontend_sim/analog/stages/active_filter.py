@@ -5,6 +5,7 @@ from __future__ import annotations
 import math
 from abc import abstractmethod
 from itertools import combinations
+from typing import ClassVar
 
 from frontend_sim.analog.stages.amplifier_stage import AmplifierStage
 
@@ -20,6 +21,11 @@ class ActiveFilter(AmplifierStage):
     resistance shift them and bring further poles; the shifted pair is the one whose corner lies
     nearest to the nominal one.
     """
+
+    cure: ClassVar[str] = (
+        "an amplifier with a faster second_pole and a larger gain_bandwidth, a smaller load, or a "
+        "lower quality factor gives some"
+    )
 
     def check(self) -> None:
         """Raise ValueError if the amplifier cannot make the filter, see ``NetworkStage``."""

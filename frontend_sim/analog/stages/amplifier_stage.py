@@ -5,6 +5,7 @@ from __future__ import annotations
 from abc import abstractmethod
 from collections.abc import Iterator, Sequence
 from fractions import Fraction
+from typing import ClassVar
 
 from pydantic import Field
 
@@ -66,6 +67,11 @@ class AmplifierStage(NetworkStage):
     the noninverting input; into each input flows the bias current, and its noise. Left-out values
     are ideal: no pole, infinite gain, zero resistance, no error.
     """
+
+    cure: ClassVar[str] = (
+        "more gain, a faster second_pole, a smaller output_resistance or load_capacitance, or a "
+        "small capacitance across the feedback resistor gives some"
+    )
 
     gain_bandwidth: GainBandwidth | None = Field(
         default=None, description="gain-bandwidth product f_u; left out, the gain has no pole there"
@@ -156,9 +162,7 @@ class AmplifierStage(NetworkStage):
             if "unstable" not in str(error):
                 raise
             raise ModelError(
-                f"the closed loop has no phase margin left: {error}. More gain, a faster "
-                "second_pole, a smaller output_resistance or load_capacitance, or a small "
-                "capacitance across the feedback resistor gives some"
+                f"the closed loop has no phase margin left: {error}; {self.cure}"
             ) from error
 
     def noise(self, temperature: float) -> tuple[NoiseInput, ...]:

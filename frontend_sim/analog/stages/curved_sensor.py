@@ -14,9 +14,6 @@ from frontend_sim.analog.limits.sensor_curve import SensorCurve
 from frontend_sim.analog.stages.base import Stage
 from frontend_sim.errors import ModelError
 
-MARGIN = 0.05
-"""Share of the range by which the input may leave it; further out is an error."""
-
 
 class CurvedSensor(Stage):
     """A sensor without memory, y = f(u) for u in a range.
@@ -27,6 +24,8 @@ class CurvedSensor(Stage):
     """
 
     stops: ClassVar[bool] = False
+    margin: ClassVar[float] = 0.02
+    """Share of the range by which the input may leave it; further out is an error."""
 
     @abstractmethod
     def curve(self, signal: Real) -> Real:
@@ -57,7 +56,8 @@ class CurvedSensor(Stage):
         low, high = self.ends()
         if not low <= self.operating_point() <= high:
             raise ValueError(
-                f"the operating point, {self.shown(self.operating_point())}, is beyond {self.span()}"
+                f"the operating point, {self.shown(self.operating_point())}, is beyond "
+                f"{self.span()}"
             )
         return self
 
@@ -88,7 +88,7 @@ class CurvedSensor(Stage):
         """
         low, high = self.ends()
         signal = np.asarray(signal, dtype=np.float64)
-        margin = MARGIN * (high - low) if np.isfinite(high - low) else 0.0
+        margin = self.margin * (high - low)
         beyond = ~((signal >= low - margin) & (signal <= high + margin))
         if np.any(beyond):
             name = self.name or str(getattr(self, "kind", "sensor"))

@@ -33,6 +33,7 @@ class Potentiometer(CurvedSensor):
     """
 
     stops = True
+    margin = 0.25
 
     kind: Literal["potentiometer"] = "potentiometer"
     resistance: Resistance = Field(description="resistance R from end to end")

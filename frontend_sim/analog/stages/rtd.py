@@ -76,7 +76,8 @@ class Rtd(CurvedSensor):
             )
         if self.lead_mismatch > 0.0 and self.wiring != "three-wire":
             raise ValueError(
-                f'lead_mismatch has a meaning for wiring = "three-wire" only, not for "{self.wiring}"'
+                'lead_mismatch has a meaning for wiring = "three-wire" only, not for '
+                f'"{self.wiring}"'
             )
 
     def resistance(self, temperature: Real) -> Real:

@@ -18,8 +18,12 @@ class Factor:
     notes: tuple[str, ...] = ()
 
 
-def factor_of(unit: str, dimension: Dimension) -> float:
+def factor_of(unit: str, dimension: Dimension, name: str = "") -> float:
     """Return how many SI units one ``unit`` is.
+
+    Parameters
+    ----------
+    name : of what has the dimension, for the message; left out, that of the dimension
 
     Raises QuantityError if it is no unit of the dimension.
     """
@@ -30,8 +34,8 @@ def factor_of(unit: str, dimension: Dimension) -> float:
     except QuantityError:
         likely = {"V": "mV", "s": "ms", "K": "degC"}.get(dimension.unit, dimension.unit)
         raise QuantityError(
-            f"given {unit!r}, which is not a unit of {dimension.name}; expected for instance "
-            f"{likely or '%'}"
+            f"given {unit!r}, which is not a unit of {name or dimension.name}; expected for "
+            f"instance {likely or '%'}"
         ) from None
 
 
@@ -45,8 +49,8 @@ def signal_factor_of(unit: str, signal: str) -> tuple[float, float]:
 
     Raises QuantityError if it is no unit of the signal.
     """
-    size = factor_of(unit, signal_dimension(signal, "difference"))
     dimension = SIGNALS[signal]
+    size = factor_of(unit, signal_dimension(signal, "difference"), dimension.name)
     return size, parse(f"0 {unit}", dimension) if dimension.absolute else 0.0
 
 

@@ -1,0 +1,77 @@
+"""A converter ready to run: what the engine asks of it, whatever its kind."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import Any, Protocol
+
+import numpy as np
+from numpy.typing import NDArray
+
+Real = NDArray[np.float64]
+Codes = NDArray[np.int64]
+
+
+@dataclass(frozen=True, eq=False)
+class Converted:
+    """Some codes in a row.
+
+    Parameters
+    ----------
+    start : number of the first of them
+    time : true instant of the last look at the pin that is in each code, shape (K,) [s]
+    pin : exact voltage at the pin at that instant, shape (K,) [V]
+    codes : shape (K,) [counts]
+    voltage : what firmware reads from them, shape (K,) [V]
+    overrange : where a look or the code was beyond the range, shape (K,)
+    """
+
+    start: int
+    time: Real
+    pin: Real
+    codes: Codes
+    voltage: Real
+    overrange: NDArray[np.bool_]
+
+
+class Digitizer(Protocol):
+    """A converter with its tables read, its seed and its temperature.
+
+    The engine asks when the pin is looked at, finds the pin's voltage there, and hands it over in
+    order of time; any cut of the looks gives the same codes, bit by bit.
+    """
+
+    @property
+    def interval(self) -> float:
+        """Usual interval between looks [s]."""
+
+    @property
+    def longest(self) -> float:
+        """Longest interval between looks, or from t = 0 to the first of them [s]."""
+
+    def instants(self, start: int, stop: int) -> Real:
+        """Return the true instants of looks start to stop - 1, increasing [s]."""
+
+    def start(self) -> Any:
+        """Return the state before the first look."""
+
+    def convert(self, state: Any, start: int, instants: Real, pin: Real) -> tuple[Any, Converted]:
+        """Return the state after some looks, and the codes that they complete.
+
+        Parameters
+        ----------
+        start : number of the first look, the one after the last of the call before
+        instants : of the looks, as ``instants`` gives them, shape (K,) [s]
+        pin : voltage at the pin there, shape (K,) [V]
+        """
+
+
+def longest_interval(first: float, widest: float, closest: float) -> float:
+    """Return how long a run can be without a look, jitter and wander in it [s].
+
+    Parameters
+    ----------
+    first : nominal instant of the first look, with its delay [s]
+    widest, closest : nominal intervals between looks [s]
+    """
+    return max(first, widest) + closest

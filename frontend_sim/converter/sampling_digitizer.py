@@ -1,0 +1,120 @@
+"""Looks become codes, each rounded by itself; several may then be made one."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import Self
+
+import numpy as np
+from numpy.typing import NDArray
+
+from frontend_sim.converter.adc import Adc
+from frontend_sim.converter.clock import sampling_instants
+from frontend_sim.converter.digitizer import Converted, longest_interval
+from frontend_sim.converter.quantizer import Quantizer, converted_voltage, read_back
+from frontend_sim.quantities import REFERENCE_TEMPERATURE
+
+Real = NDArray[np.float64]
+Codes = NDArray[np.int64]
+
+
+@dataclass(frozen=True, eq=False)
+class Rest:
+    """Conversions whose result is not complete: codes, dither [LSB] and flags, shape (K,) each."""
+
+    codes: Codes
+    dither: Real
+    overrange: NDArray[np.bool_]
+
+
+@dataclass(frozen=True, eq=False)
+class SamplingDigitizer:
+    """A sampling converter ready to run, see ``Digitizer``.
+
+    Parameters
+    ----------
+    adc, seed, temperature : as ``Converter.digitizer`` takes them
+    quantizer : with its levels worked out
+    """
+
+    adc: Adc
+    seed: int
+    temperature: float
+    quantizer: Quantizer
+
+    @classmethod
+    def of(cls, adc: Adc, seed: int, temperature: float = REFERENCE_TEMPERATURE) -> Self:
+        """Work out the levels, and see that the reference is one. Raises InputError if not."""
+        if adc.reference is not None:
+            adc.reference.level(temperature)
+        return cls(adc, seed, temperature, Quantizer.of(adc, seed))
+
+    @property
+    def interval(self) -> float:
+        """Usual interval between looks [s]."""
+        return self.adc.pattern.closest
+
+    @property
+    def longest(self) -> float:
+        """Longest interval between looks, or from t = 0 to the first of them [s]."""
+        pattern = self.adc.pattern
+        first = self.adc.first + self.adc.aperture_delay
+        return longest_interval(first, pattern.widest, pattern.closest)
+
+    def instants(self, start: int, stop: int) -> Real:
+        """Return the true instants of looks start to stop - 1 [s]."""
+        return sampling_instants(self.adc, start, stop, self.seed)
+
+    def start(self) -> Rest:
+        """Return the state before the first look: nothing is left over."""
+        return Rest(np.empty(0, np.int64), np.empty(0), np.empty(0, np.bool_))
+
+    def convert(
+        self, state: Rest, start: int, instants: Real, pin: Real
+    ) -> tuple[Rest, Converted]:
+        """Return what is left over after some looks, and the codes that they complete."""
+        adc, stop = self.adc, start + len(pin)
+        seen = converted_voltage(adc, pin, start, self.seed, self.temperature)
+        dither = np.zeros(0)
+        if adc.dither is not None:
+            dither = adc.dither.values(start, stop, self.seed)
+            seen = seen + adc.core_lsb * dither
+        codes, overrange = self.quantizer.codes(seen)
+        if adc.averaging is None:
+            voltage = self._voltage(codes, dither)
+            return state, Converted(start, instants, pin, codes, voltage, overrange)
+        whole = Rest(
+            np.concatenate([state.codes, codes]),
+            np.concatenate([state.dither, dither]),
+            np.concatenate([state.overrange, overrange]),
+        )
+        return self._averaged(whole, start - len(state.codes), len(state.codes), instants, pin)
+
+    def _averaged(
+        self, whole: Rest, start: int, before: int, instants: Real, pin: Real
+    ) -> tuple[Rest, Converted]:
+        """Make results of looks ``start`` on; the first ``before`` of them are from an earlier call.
+
+        Parameters
+        ----------
+        instants, pin : of the looks that are new
+        """
+        adc, looks = self.adc, self.adc.looks
+        assert adc.averaging is not None
+        count = len(whole.codes) // looks
+        used = count * looks
+        codes = adc.averaging.of_sum(whole.codes[:used].reshape(count, looks).sum(axis=1))
+        dither = whole.dither[:used].reshape(-1, looks)
+        voltage = self._voltage(np.asarray(codes), np.sum(dither, axis=1) / looks)
+        flags = whole.overrange[:used].reshape(count, looks).any(axis=1)
+        last = np.arange(1, count + 1) * looks - 1 - before
+        rest = Rest(whole.codes[used:], whole.dither[used:], whole.overrange[used:])
+        made = Converted(start // looks, instants[last], pin[last], codes, voltage, flags)
+        return rest, made
+
+    def _voltage(self, codes: Codes, dither: Real) -> Real:
+        """Return what firmware reads: codes, less the dither where it is taken off again."""
+        voltage = read_back(self.adc, codes)
+        if self.adc.dither is None or not self.adc.dither.subtractive:
+            return voltage
+        return np.asarray(voltage - self.adc.core_lsb * dither)

@@ -1,0 +1,35 @@
+"""The signal at an instant."""
+
+from __future__ import annotations
+
+from typing import Literal, Self
+
+from pydantic import Field, model_validator
+
+from frontend_sim.quantities import Time, Voltage
+from frontend_sim.scenario.checks.base import PointCheck
+from frontend_sim.scenario.rules import fault
+
+
+class LevelCheck(PointCheck):
+    """At an instant the signal lies between two limits, or on the right side of one."""
+
+    instants = ("at",)
+
+    kind: Literal["level"] = "level"
+    at: Time = Field(description="instant at which the signal is looked at")
+    at_least: Voltage | None = Field(default=None, description="lowest value allowed")
+    at_most: Voltage | None = Field(default=None, description="highest value allowed")
+
+    @model_validator(mode="after")
+    def _some_limit(self) -> Self:
+        if self.at_least is None and self.at_most is None:
+            raise fault([], "no limit; give at_least, at_most or both")
+        both = self.at_least is not None and self.at_most is not None
+        if both and self.at_least > self.at_most:  # type: ignore[operator]  # neither is None
+            raise fault(
+                ["at_least"],
+                f"at_least {self.at_least:g} V lies above at_most {self.at_most:g} V; exchange "
+                "them, or correct one",
+            )
+        return self

@@ -1,0 +1,19 @@
+"""Bits that noise keeps still."""
+
+from __future__ import annotations
+
+from typing import Literal
+
+from pydantic import Field
+
+from frontend_sim.quantities import Bits
+from frontend_sim.scenario.checks.base import CodeCheck
+from frontend_sim.scenario.checks.noise import SOURCE, NoiseSource
+
+
+class NoiseFreeBitsCheck(CodeCheck):
+    """Enough bits of the code stand still: log2( range / (6.6 rms noise) )."""
+
+    kind: Literal["noise-free-bits"] = "noise-free-bits"
+    at_least: Bits = Field(description="fewest noise-free bits")
+    source: NoiseSource = Field(default="budget", description=SOURCE)
