@@ -14,7 +14,7 @@ from pydantic.fields import FieldInfo
 from frontend_sim.quantities import ReadsLevel, as_text, mark_of, shown
 from frontend_sim.scenario.expectation import expected
 from frontend_sim.scenario.tables import Table, is_array, keys, members, tables
-from frontend_sim.values import Value
+from frontend_sim.values import Value, may_be_left_out
 
 PAGE = Path(__file__).with_name("scenario.md")
 BEGIN = "<!-- keys: written by scenario_tables.py, do not edit -->"
@@ -82,7 +82,7 @@ def _unit(field: FieldInfo) -> str:
 
 
 def _default(name: str, field: FieldInfo) -> str:
-    if name == "kind" or field.is_required():
+    if (name == "kind" and not may_be_left_out(field)) or field.is_required():
         return "required"
     value: Any = field.get_default()
     if value is None or isinstance(value, Value) or value in ((), ""):

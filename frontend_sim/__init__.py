@@ -38,26 +38,34 @@ if TYPE_CHECKING:
     )
     from frontend_sim.measure.response import Inspection, inspect_scenario
     from frontend_sim.present import plot_inspection, plot_run
+    from frontend_sim.quantities import Part, Preferred, preferred
     from frontend_sim.scenario import (
+        Environment,
         Scenario,
         SimulationSettings,
+        SpreadPart,
         check_scenario,
+        circuit_of,
         json_schema,
         load_scenario,
         parse_scenario,
         scenario_text,
+        spread_parts,
     )
     from frontend_sim.simulation import GridReport, Run, RunBlock, Simulation, simulate
 
 _HOME = {
     "Adc": "converter.adc",
     "Chain": "analog.chain",
+    "Environment": "scenario",
     "FrontendSimError": "errors",
     "GridReport": "simulation",
     "InputError": "errors",
     "Inspection": "measure.response",
     "ModelError": "errors",
     "OutputError": "errors",
+    "Part": "quantities",
+    "Preferred": "quantities",
     "QuantityError": "errors",
     "Record": "archive",
     "RecordError": "errors",
@@ -68,8 +76,10 @@ _HOME = {
     "ScenarioError": "errors",
     "Simulation": "simulation",
     "SimulationSettings": "scenario",
+    "SpreadPart": "scenario",
     "chain_of": "analog.chain",
     "check_scenario": "scenario",
+    "circuit_of": "scenario",
     "inspect_scenario": "measure.response",
     "json_schema": "scenario",
     "load_scenario": "scenario",
@@ -77,23 +87,28 @@ _HOME = {
     "parse_scenario": "scenario",
     "plot_inspection": "present",
     "plot_run": "present",
+    "preferred": "quantities",
     "record_run": "archive",
     "rerun": "archive",
     "rerun_scenario": "archive",
     "save_record": "archive",
     "scenario_text": "scenario",
     "simulate": "simulation",
+    "spread_parts": "scenario",
 }
 
 __all__ = [
     "Adc",
     "Chain",
+    "Environment",
     "FrontendSimError",
     "GridReport",
     "InputError",
     "Inspection",
     "ModelError",
     "OutputError",
+    "Part",
+    "Preferred",
     "QuantityError",
     "Record",
     "RecordError",
@@ -104,8 +119,10 @@ __all__ = [
     "ScenarioError",
     "Simulation",
     "SimulationSettings",
+    "SpreadPart",
     "chain_of",
     "check_scenario",
+    "circuit_of",
     "inspect_scenario",
     "json_schema",
     "load_scenario",
@@ -113,12 +130,14 @@ __all__ = [
     "parse_scenario",
     "plot_inspection",
     "plot_run",
+    "preferred",
     "record_run",
     "rerun",
     "rerun_scenario",
     "save_record",
     "scenario_text",
     "simulate",
+    "spread_parts",
 ]
 
 

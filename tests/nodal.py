@@ -159,7 +159,9 @@ def open_loop(net: Net, values: dict[str, Any]) -> Any:
     unity, gain = values.get("gain_bandwidth"), values.get("open_loop_gain")
     if unity is None and gain is None:
         return None
-    second = 1 + net.s / (2 * mp.pi * mp.mpf(values["second_pole"])) if "second_pole" in values else 1
+    second = (
+        1 + net.s / (2 * mp.pi * mp.mpf(values["second_pole"])) if "second_pole" in values else 1
+    )
     if unity is None:
         return mp.mpf(gain) / second
     w = 2 * mp.pi * mp.mpf(unity)

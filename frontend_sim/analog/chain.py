@@ -119,11 +119,6 @@ class Chain:
         Parameters
         ----------
         lowest : frequency down to which 1/f noise is made [Hz]
-
-        Raises
-        ------
-        ModelError
-            If a white source reaches the pin unfiltered.
         """
         sources = [
             replace(source, name=f"{part.name}: {source.name}")
@@ -183,8 +178,8 @@ def _rest_of(block: Block, level: float, name: str) -> Real:
     if block.order == 0:
         return np.empty(0)
     if not np.any(block.poles == 0.0):
-        # Solved for a level of one, so that a high pass passes on exactly nothing of any level; each
-        # row less the size of its own rate, so that no pivot mixes a slow row into a fast one.
+        # Solved for a level of one, so that a high pass passes on exactly nothing of any level;
+        # each row less the size of its own rate, so that no pivot mixes slow and fast ones.
         size = np.max(np.abs(block.a), axis=1)
         return np.asarray(level * np.linalg.solve(block.a / size[:, None], -block.b / size))
     if level == 0.0:

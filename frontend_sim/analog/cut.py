@@ -4,12 +4,14 @@ from __future__ import annotations
 
 import math
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from itertools import pairwise
 from typing import Self
 
+import numpy as np
+
 from frontend_sim.analog.block import Real
-from frontend_sim.analog.chain import Chain, Section, compose, section
+from frontend_sim.analog.chain import ROOM_TEMPERATURE, Chain, Section, compose, section
 from frontend_sim.analog.limits import Limiter
 from frontend_sim.analog.stages.base import Stage
 from frontend_sim.errors import ModelError
@@ -25,6 +27,7 @@ class Place:
     entry : number of the point that is the limiter's input
     exit : number of the point where its deviation is added, which is the linear model's output
     gain : from entry to exit, where no state lies between them; else None
+    shift : what the limiter's input has to be raised by to count the offset of its own stage in
     jumps : whether a jump of the stimulus is a jump at the entry
     """
 
@@ -33,6 +36,7 @@ class Place:
     entry: int
     exit: int
     gain: float | None
+    shift: float
     jumps: bool
 
     def probed(self) -> tuple[int, ...]:
@@ -41,7 +45,8 @@ class Place:
 
     def both(self, values: Real) -> tuple[Real, Real]:
         """Return its input u and the linear answer v from the probed points' values."""
-        return values[0], values[1] if self.gain is None else self.gain * values[0]
+        u = values[0] + self.shift if self.shift else values[0]
+        return u, values[1] if self.gain is None else self.gain * u
 
 
 @dataclass(frozen=True, eq=False)
@@ -60,8 +65,8 @@ class CutChain:
     points: tuple[int, ...]
 
     @classmethod
-    def of(cls, stages: Sequence[Stage]) -> Self:
-        """Cut a chain of stages.
+    def of(cls, stages: Sequence[Stage], temperature: float = ROOM_TEMPERATURE) -> Self:
+        """Cut a chain of stages at a temperature [K].
 
         Raises
         ------
@@ -72,29 +77,27 @@ class CutChain:
         places: list[Place] = []
         points, passes = [0], True
         for position, stage in enumerate(stages, start=1):
-            whole = section(stage, stage.label(position))
+            whole = section(stage, stage.label(position), temperature)
             limiter = _limiter(stage, whole.name)
-            parts = [_part(whole, 0, len(whole.blocks))]
-            if limiter is not None:
-                at = limiter.replaced
-                bounds = (0, at.start, at.stop, len(whole.blocks))
-                parts = [_part(whole, *ends) for ends in pairwise(bounds)]
-                entry = len(sections) + 1
-                passes = passes and _feeds(parts[0])
-                gain = _gain(parts[1])
-                places.append(Place(limiter, whole.name, entry, entry + 1, gain, passes))
-                # A gain passes jumps on, one of zero too: the limiter may make its own of them.
-                passes = passes and gain is not None and _feeds(parts[2])
+            if limiter is None:
+                sections.append(replace(whole, noise=()))
+                passes = passes and _feeds(whole)
             else:
-                passes = passes and _feeds(parts[0])
-            parts[-1] = Section(whole.name, parts[-1].blocks, whole.delay)
-            sections += parts
+                before, replaced, after = _parts(whole, limiter)
+                sections += [before, replaced, after]
+                entry = len(sections) - 2
+                passes = passes and _feeds(before)
+                gain, shift = _gain(replaced), _shift(replaced)
+                place = Place(limiter, whole.name, entry, entry + 1, gain, shift, passes)
+                places.append(place)
+                # A gain passes jumps on, one of zero too: the limiter may make its own of them.
+                passes = passes and gain is not None and _feeds(after)
             points.append(len(sections))
         return cls(compose(sections), tuple(places), tuple(points))
 
     def behind(self, place: Place) -> Chain:
         """Return the chain behind a limiter; its point 0 is the limiter's output."""
-        return compose(self.chain.sections[place.exit :])
+        return compose([replace(part, offset=0.0) for part in self.chain.sections[place.exit :]])
 
 
 def _limiter(stage: Stage, name: str) -> Limiter | None:
@@ -104,8 +107,17 @@ def _limiter(stage: Stage, name: str) -> Limiter | None:
         raise ModelError(f"stage {name!r}: {error}") from error
 
 
-def _part(whole: Section, start: int, stop: int) -> Section:
-    return Section(whole.name, whole.blocks[start:stop], 0.0)
+def _parts(whole: Section, limiter: Limiter) -> tuple[Section, Section, Section]:
+    """Return the section's blocks before, in place of and behind a limiter.
+
+    The offset of a stage is one of its amplifier's, so the limiter has it, if the stage ends there.
+    """
+    at = limiter.replaced
+    ends = pairwise((0, at.start, at.stop, len(whole.blocks)))
+    before, replaced, after = (Section(whole.name, whole.blocks[a:b], 0.0) for a, b in ends)
+    if after.blocks:
+        return before, replaced, replace(after, delay=whole.delay, offset=whole.offset)
+    return before, replace(replaced, offset=whole.offset), replace(after, delay=whole.delay)
 
 
 def _feeds(part: Section) -> bool:
@@ -116,3 +128,17 @@ def _gain(part: Section) -> float | None:
     if any(block.order for block in part.blocks):
         return None
     return math.prod(block.d for block in part.blocks)
+
+
+def _shift(part: Section) -> float:
+    """Return what the offset of a section is at its input, through its gain at rest."""
+    if part.offset == 0.0:
+        return 0.0
+    zero = np.zeros(1, dtype=np.complex128)
+    gain = math.prod(float(block.response(zero)[0].real) for block in part.blocks)
+    if gain == 0.0:
+        raise ModelError(
+            f"stage {part.name!r} has an offset and limits, but no gain at rest; its offset cannot "
+            "be told at its input"
+        )
+    return part.offset / gain

@@ -75,6 +75,8 @@ class NoiseModel:
     ----------
     a : shape (n, n) [1/s];  b : shape (n, q) [V/sqrt(s)];  c : shape (n,) [1]
     owner : for each of the q processes, the number of the source in ``names``
+    unbounded : sources that are left out, since their white noise reaches the point with nothing
+        that limits its bandwidth, so that its power is infinite
     """
 
     a: Real
@@ -82,6 +84,7 @@ class NoiseModel:
     c: Real
     owner: tuple[int, ...]
     names: tuple[str, ...]
+    unbounded: tuple[str, ...] = ()
 
 
 def model_of(
@@ -95,26 +98,18 @@ def model_of(
     inputs : each source with its column in the whole chain, shape (n,), and its direct way to the
         point
     lowest : frequency down to which 1/f noise is made [Hz]
-
-    Raises
-    ------
-    ModelError
-        If a white source reaches the point unfiltered: its power would be infinite.
     """
+    unbounded = tuple(s.name for s, _, direct in inputs if s.density > 0.0 and direct != 0.0)
+    inputs = [row for row in inputs if row[0].name not in unbounded]
     n = len(a)
     banks = [(source, _bank(source, lowest)) for source, _, _ in inputs]
     size = n + sum(len(rates) for _, rates in banks)
     whole, row = np.zeros((size, size)), np.zeros(size)
     whole[:n, :n], row[:n] = a, c
     columns, owner, at = [], [], n
-    for number, ((source, column, direct), (_, rates)) in enumerate(
+    for number, ((source, column, _), (_, rates)) in enumerate(
         zip(inputs, banks, strict=True)
     ):
-        if source.density > 0.0 and direct != 0.0:
-            raise ModelError(
-                f"the white noise of {source.name!r} reaches the converter unfiltered, so its "
-                "power is infinite; give an amplifier a gain_bandwidth, or put a filter behind it"
-            )
         white = np.zeros(size)
         white[:n] = column * (source.density / math.sqrt(2.0))
         columns.append(white)
@@ -125,14 +120,14 @@ def model_of(
             variance = source.density**2 * source.corner * math.log(10.0) / POLES_PER_DECADE
             whole[at, at] = -rate
             whole[:n, at] = column
-            row[at] = direct
             driven = np.zeros(size)
             driven[at] = math.sqrt(2.0 * variance * rate)
             columns.append(driven)
             owner.append(number)
             at += 1
     b = np.column_stack(columns) if columns else np.zeros((size, 0))
-    return NoiseModel(whole, b, row, tuple(owner), tuple(source.name for source, _, _ in inputs))
+    names = tuple(source.name for source, _, _ in inputs)
+    return NoiseModel(whole, b, row, tuple(owner), names, unbounded)
 
 
 def _bank(source: NoiseInput, lowest: float) -> Real:

@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Iterable
 from math import nan
 
-from frontend_sim.archive.result import Result
+from frontend_sim.measure.result import Result
 from frontend_sim.simulation.run import GridReport
 
 _ROWS = (

@@ -6,7 +6,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from frontend_sim.converter.adc import Adc
+from frontend_sim.converter import AnyAdc
 
 FORMAT = "frontend_sim record"
 FORMAT_VERSION = 1
@@ -69,7 +69,7 @@ WAVEFORM_TIME = Column(
 INTEGERS = ("<u1", "<i1", "<u2", "<i2", "<u4", "<i4", "<i8")
 
 
-def code_type(adc: Adc) -> str:
+def code_type(adc: AnyAdc) -> str:
     """Return the smallest integer type that holds every code of a converter, as NumPy names it."""
 
     def holds(name: str) -> bool:

@@ -11,7 +11,7 @@ from typing import Protocol
 from frontend_sim.archive.grid import grid_results
 from frontend_sim.archive.opening import open_record
 from frontend_sim.archive.provenance import document, refuse_changed, source_files
-from frontend_sim.archive.result import Result
+from frontend_sim.measure.result import Result
 from frontend_sim.archive.target import new_file, usable_target
 from frontend_sim.archive.writer import Writer
 from frontend_sim.errors import OutputError, RecordError

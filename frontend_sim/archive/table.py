@@ -9,7 +9,7 @@ from typing import TYPE_CHECKING, Any, Literal, get_args
 
 import numpy as np
 
-from frontend_sim.archive.result import Result, Verdict
+from frontend_sim.measure.result import Result, Verdict
 from frontend_sim.archive.text import clean, describe
 
 if TYPE_CHECKING:
@@ -17,6 +17,9 @@ if TYPE_CHECKING:
 
 _NUMBERS = ("value", "limit", "margin")
 _COLUMNS = tuple(field.name for field in fields(Result))
+_ADDED = ("bound", "advice")
+"""Columns that the first records do not have."""
+
 _UNITS: Literal["per row"] = "per row"
 
 
@@ -47,9 +50,10 @@ def put_table(group: h5py.Group, name: str, results: Sequence[Result], descripti
 
 
 def get_table(dataset: h5py.Dataset) -> tuple[Result, ...]:
-    """Read results back; NaN becomes None."""
+    """Read results back; NaN becomes None. A record from before a column was added lacks it."""
     rows = dataset[...]
-    return tuple(Result(**{column: _cell(row, column) for column in _COLUMNS}) for row in rows)
+    there = [column for column in _COLUMNS if column not in _ADDED or column in rows.dtype.names]
+    return tuple(Result(**{column: _cell(row, column) for column in there}) for row in rows)
 
 
 def _cell(row: Any, column: str) -> Any:

@@ -16,12 +16,14 @@ from frontend_sim.archive.interrupts import uninterrupted
 from frontend_sim.archive.inventory import inventory
 from frontend_sim.archive.names import dataset_name
 from frontend_sim.archive.provenance import PROGRAM
-from frontend_sim.archive.result import Result, verdict_of
+from frontend_sim.measure.result import Result, verdict_of
 from frontend_sim.archive.sink import Sink
 from frontend_sim.archive.table import put_table
 from frontend_sim.archive.target import writing
 from frontend_sim.archive.text import clean, put_text
+from frontend_sim.quantities import SIGNALS
 from frontend_sim.scenario.model import Scenario
+from frontend_sim.scenario.signal import PIN
 from frontend_sim.scenario.write import scenario_text
 from frontend_sim.simulation.run import RunBlock
 
@@ -126,8 +128,11 @@ class Writer:
         group = self._file.create_group(layout.WAVEFORM, track_order=True)
         group.attrs["description"] = "points of the chain, from the stimulus to the pin"
         open_column(group, layout.WAVEFORM_TIME, "<f8", expected)
+        units = dict(zip(self._scenario.points(), self._scenario.units(), strict=True))
         for point in self._points or ():
-            column = layout.Column(dataset_name(point), "", "V", "voltage at this point")
+            unit = units.get(point, PIN)
+            noun = SIGNALS[unit].name
+            column = layout.Column(dataset_name(point), "", unit or "1", f"{noun} at this point")
             open_column(group, column, "<f8", expected).attrs["point"] = clean(point)
         attach_axis(group)
 

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING, Literal, Self
 
+import numpy as np
 from pydantic import Field, model_validator
 
 from frontend_sim.converter.averaging import Averaging
@@ -25,7 +26,7 @@ MOST_RESULT_BITS = 32
 class _Rate(Value):
     """The key that stands before all those that other converters have too."""
 
-    rate: Frequency = Field(description="results per second")
+    rate: Frequency = Field(description="codes per second: conversions, or averages of several")
 
 
 class Adc(Converter, _Rate):
@@ -133,4 +134,4 @@ class Adc(Converter, _Rate):
         """Return the result of conversions that all give one code."""
         if self.averaging is None:
             return code
-        return int(self.averaging.of_sum(code * self.averaging.count))
+        return int(self.averaging.of_sums(np.array(code * self.averaging.count)))

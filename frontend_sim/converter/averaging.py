@@ -41,7 +41,7 @@ class Averaging(Value):
         """Codes of a result for one code of a conversion, count / 2^shift."""
         return self.count / 2.0**self.shift
 
-    def of_sum(self, total: Codes | int) -> Codes | int:
-        """Return the result of a sum of ``count`` codes."""
+    def of_sums(self, totals: Codes) -> Codes:
+        """Return the results of sums of ``count`` codes each, of their shape."""
         half = (1 << self.shift) >> 1 if self.rounding == "nearest" else 0
-        return (total + half) >> self.shift
+        return np.asarray((totals + half) >> self.shift)

@@ -97,13 +97,13 @@ class DecimatingDigitizer:
         return Window(np.empty(0), none, np.empty((0, self.adc.order)), none)
 
     def convert(
-        self, state: Window, start: int, instants: Real, pin: Real
+        self, state: Window, start: int, instants: Real, pin: Real, noise: Real | None = None
     ) -> tuple[Window, Converted]:
         """Return what is held after some samples, and the codes that they complete."""
         adc, order = self.adc, self.adc.order
         held, hop = len(state.sums), 1 if adc.continuous else order
         begun = len(state.samples)
-        after = self._weighed(state, start, pin)
+        after = self._weighed(state, start, pin if noise is None else pin + noise)
         count = max((len(after.sums) - order) // hop + 1, 0)
         blocks = np.arange(count)[:, None] * hop + np.arange(order)
         total = np.zeros(count)
@@ -122,10 +122,10 @@ class DecimatingDigitizer:
         used = count * hop
         return Window(after.samples, after.beyond, after.sums[used:], after.spoilt[used:]), made
 
-    def _weighed(self, state: Window, start: int, pin: Real) -> Window:
+    def _weighed(self, state: Window, start: int, voltage: Real) -> Window:
         """Return what is held with some samples more, before any code is made of it."""
         adc = self.adc
-        seen = converted_voltage(adc, pin, start, self.seed, self.temperature)
+        seen = converted_voltage(adc, voltage, start, self.seed, self.temperature)
         beyond = (seen < adc.low) | (seen > adc.high)
         # No stream of a modulator's bits can stand for more than its range.
         samples = np.concatenate([state.samples, np.clip(seen, adc.low, adc.high)])

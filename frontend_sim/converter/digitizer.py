@@ -55,14 +55,17 @@ class Digitizer(Protocol):
     def start(self) -> Any:
         """Return the state before the first look."""
 
-    def convert(self, state: Any, start: int, instants: Real, pin: Real) -> tuple[Any, Converted]:
+    def convert(
+        self, state: Any, start: int, instants: Real, pin: Real, noise: Real | None = None
+    ) -> tuple[Any, Converted]:
         """Return the state after some looks, and the codes that they complete.
 
         Parameters
         ----------
         start : number of the first look, the one after the last of the call before
         instants : of the looks, as ``instants`` gives them, shape (K,) [s]
-        pin : voltage at the pin there, shape (K,) [V]
+        pin : exact voltage at the pin there, shape (K,) [V]
+        noise : what the circuit adds to it, shape (K,) or (1,) [V]
         """
 
 

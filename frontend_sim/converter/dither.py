@@ -30,7 +30,7 @@ class Dither(Value):
         description="from the lowest to the highest value; 1 LSB uniform or 2 LSB triangular are "
         "usual"
     )
-    subtractive: bool = Field(
+    subtractive: Annotated[bool, Field(strict=True)] = Field(
         default=False,
         description="true: the voltage read back has the dither taken off again, as firmware does "
         "that knows it; codes keep it",

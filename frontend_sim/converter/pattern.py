@@ -43,6 +43,11 @@ class LookPattern:
         return self.at(np.arange(start, stop, dtype=np.int64))
 
     @property
+    def look_rate(self) -> float:
+        """Looks per second within a burst, or in a uniform row [Hz]."""
+        return self.rate if self.looks == 1 else 1.0 / self.interval
+
+    @property
     def closest(self) -> float:
         """Shortest interval between two looks [s]."""
         return 1.0 / self.rate if self.looks == 1 else self.interval

@@ -70,49 +70,52 @@ class SamplingDigitizer:
         return Rest(np.empty(0, np.int64), np.empty(0), np.empty(0, np.bool_))
 
     def convert(
-        self, state: Rest, start: int, instants: Real, pin: Real
+        self, state: Rest, start: int, instants: Real, pin: Real, noise: Real | None = None
     ) -> tuple[Rest, Converted]:
         """Return what is left over after some looks, and the codes that they complete."""
         adc, stop = self.adc, start + len(pin)
-        seen = converted_voltage(adc, pin, start, self.seed, self.temperature)
+        voltage = pin if noise is None else pin + noise
+        seen = converted_voltage(adc, voltage, start, self.seed, self.temperature)
         dither = np.zeros(0)
         if adc.dither is not None:
             dither = adc.dither.values(start, stop, self.seed)
             seen = seen + adc.core_lsb * dither
         codes, overrange = self.quantizer.codes(seen)
         if adc.averaging is None:
-            voltage = self._voltage(codes, dither)
-            return state, Converted(start, instants, pin, codes, voltage, overrange)
+            read = self._read(codes, dither)
+            return state, Converted(start, instants, pin, codes, read, overrange)
         whole = Rest(
             np.concatenate([state.codes, codes]),
             np.concatenate([state.dither, dither]),
             np.concatenate([state.overrange, overrange]),
         )
-        return self._averaged(whole, start - len(state.codes), len(state.codes), instants, pin)
+        return self._averaged(whole, start, instants, pin)
 
     def _averaged(
-        self, whole: Rest, start: int, before: int, instants: Real, pin: Real
+        self, whole: Rest, start: int, instants: Real, pin: Real
     ) -> tuple[Rest, Converted]:
-        """Make results of looks ``start`` on; the first ``before`` of them are from an earlier call.
+        """Return what is left over, and the results of what is complete.
 
         Parameters
         ----------
-        instants, pin : of the looks that are new
+        whole : conversions not yet used, those of earlier calls first
+        start, instants, pin : of the looks that are new
         """
         adc, looks = self.adc, self.adc.looks
         assert adc.averaging is not None
+        earlier = len(whole.codes) - len(pin)
         count = len(whole.codes) // looks
         used = count * looks
-        codes = adc.averaging.of_sum(whole.codes[:used].reshape(count, looks).sum(axis=1))
-        dither = whole.dither[:used].reshape(-1, looks)
-        voltage = self._voltage(np.asarray(codes), np.sum(dither, axis=1) / looks)
-        flags = whole.overrange[:used].reshape(count, looks).any(axis=1)
-        last = np.arange(1, count + 1) * looks - 1 - before
-        rest = Rest(whole.codes[used:], whole.dither[used:], whole.overrange[used:])
-        made = Converted(start // looks, instants[last], pin[last], codes, voltage, flags)
-        return rest, made
+        codes = adc.averaging.of_sums(np.sum(whole.codes[:used].reshape(count, looks), axis=1))
+        taken = used if adc.dither is not None else 0
+        dither = np.sum(whole.dither[:taken].reshape(-1, looks), axis=1) / looks
+        flags = np.logical_or.reduce(whole.overrange[:used].reshape(count, looks), axis=1)
+        newest = np.arange(1, count + 1) * looks - 1 - earlier
+        rest = Rest(whole.codes[used:], whole.dither[taken:], whole.overrange[used:])
+        read, first = self._read(codes, dither), (start - earlier) // looks
+        return rest, Converted(first, instants[newest], pin[newest], codes, read, flags)
 
-    def _voltage(self, codes: Codes, dither: Real) -> Real:
+    def _read(self, codes: Codes, dither: Real) -> Real:
         """Return what firmware reads: codes, less the dither where it is taken off again."""
         voltage = read_back(self.adc, codes)
         if self.adc.dither is None or not self.adc.dither.subtractive:

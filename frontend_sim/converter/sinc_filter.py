@@ -182,7 +182,8 @@ class SincFilter:
     @property
     def register_growth(self) -> int:
         """Bits by which the registers of the running sums outgrow the input, ceil(K log2 R)."""
-        return (self.ratio**self.order - 1).bit_length()
+        growth: int = self.ratio**self.order - 1
+        return growth.bit_length()
 
     @property
     def noise_gain(self) -> float:

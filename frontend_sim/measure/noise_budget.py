@@ -12,7 +12,7 @@ import numpy as np
 from frontend_sim.analog.block import Real
 from frontend_sim.analog.chain import Chain
 from frontend_sim.analog.noise import NoiseModel, stationary_covariance
-from frontend_sim.converter.adc import Adc
+from frontend_sim.converter import AnyAdc
 
 NODES = 12
 """Gauss-Legendre points in each panel of the integral over frequency."""
@@ -49,6 +49,7 @@ class NoiseBudget:
     rms : of everything together, at the pin [V];  lsb : the same [LSB]
     folded : of the part above half the conversion rate [V]
     lowest : frequency down to which 1/f noise counts [Hz]
+    unbounded : sources that are left out: nothing limits their bandwidth before the pin
     """
 
     rows: tuple[NoiseRow, ...]
@@ -56,9 +57,10 @@ class NoiseBudget:
     lsb: float
     folded: float
     lowest: float
+    unbounded: tuple[str, ...] = ()
 
 
-def noise_budget(chain: Chain, adc: Adc, lowest: float) -> NoiseBudget:
+def noise_budget(chain: Chain, adc: AnyAdc, lowest: float) -> NoiseBudget:
     """Return the budget of a chain in front of a converter.
 
     The variance of a source at the pin is c P c' with a P + P a' + b b' = 0, its density at a
@@ -74,7 +76,7 @@ def noise_budget(chain: Chain, adc: Adc, lowest: float) -> NoiseBudget:
     Raises
     ------
     ModelError
-        If white noise reaches the pin unfiltered, or a pole at the origin gathers it.
+        If a pole at the origin gathers noise without bound.
     """
     model = chain.noise_model(lowest)
     half = 0.5 * adc.rate
@@ -101,7 +103,7 @@ def noise_budget(chain: Chain, adc: Adc, lowest: float) -> NoiseBudget:
     ]
     rows.sort(key=lambda row: -row.rms)
     rms = math.sqrt(total)
-    return NoiseBudget(tuple(rows), rms, rms / adc.lsb, math.sqrt(folded), lowest)
+    return NoiseBudget(tuple(rows), rms, rms / adc.lsb, math.sqrt(folded), lowest, model.unbounded)
 
 
 def noise_density(model: NoiseModel, b: Real, frequency: Real) -> Real:

@@ -11,7 +11,7 @@ from numpy.typing import NDArray
 from frontend_sim.measure.response.gain import Corner
 from frontend_sim.present.colours import BLACK, EXACT, GREEN, LIMIT, MARK, ORANGE, PURPLE
 from frontend_sim.present.frequency_view import FrequencyView
-from frontend_sim.present.numbers import engineering, prefix_of
+from frontend_sim.present.numbers import engineering, per_unit, prefix_of
 
 if TYPE_CHECKING:
     from matplotlib.axes import Axes
@@ -37,7 +37,8 @@ def draw_magnitude(axes: Axes, view: FrequencyView) -> None:
         )  # fmt: skip
     low, high = _limits(view)
     axes.set_ylim(low, high)
-    axes.set_ylabel("magnitude [dB]")
+    one = view.inspection.unit
+    axes.set_ylabel("magnitude [dB]" if one == "V" else f"magnitude [dB re 1 {per_unit(one)}]")
     _draw_rates(axes, view, labels=True)
     _draw_corners(axes, view)
     axes.legend(loc="lower left", fontsize="small", framealpha=0.9)

@@ -9,7 +9,7 @@ from frontend_sim.measure.response.attenuation import Attenuation
 from frontend_sim.measure.response.gain import decibel
 from frontend_sim.measure.response.inspection import Inspection
 from frontend_sim.measure.response.model_distance import ModelDistance, ResponseError
-from frontend_sim.present.numbers import engineering, fixed, plain
+from frontend_sim.present.numbers import engineering, fixed, per_unit, plain, quantity
 
 if TYPE_CHECKING:
     from rich.table import Table
@@ -44,7 +44,8 @@ def _step_rows(inspection: Inspection) -> list[tuple[str, str]]:
     rows = []
     if time.delay > 0.0:
         rows.append(("pure delay, counted in the times below", engineering(time.delay, "s", 4)))
-    rows.append(("at the start, for a step of 1 V", engineering(time.start, "V", 4)))
+    one = f"1 {inspection.unit}".rstrip()
+    rows.append((f"at the start, for a step of {one}", engineering(time.start, "V", 4)))
     rows.append(("in the end", _end_text(time.end)))
     if shape.peak is not None and shape.peak_time is not None:
         when = shape.peak_time
@@ -63,7 +64,7 @@ def _step_rows(inspection: Inspection) -> list[tuple[str, str]]:
             name += f" of the {shape.reference}"
         else:
             name += f" of {inspection.adc.bits} bits, step of "
-            name += engineering(time.full_scale_step, "V", 4)
+            name += quantity(time.full_scale_step, inspection.unit, 4)
         if settling.time is not None:
             rows.append((name, f"after {engineering(settling.time, 's', 4)}"))
     return rows
@@ -80,7 +81,7 @@ def _frequency_rows(inspection: Inspection) -> list[tuple[str, str]]:
     where = {0.0: "at zero frequency", math.inf: "at high frequencies"}.get(
         largest.frequency, f"at {engineering(largest.frequency, 'Hz', 4)}"
     )
-    rows = [("largest gain", f"{_gain(largest.value)} {where}")]
+    rows = [("largest gain", f"{_gain(largest.value, inspection.unit)} {where}")]
     rows += [
         (f"-3 dB corner, {corner.side}", engineering(corner.frequency, "Hz", 4))
         for corner in frequency.corners
@@ -110,7 +111,9 @@ def _attenuation_row(attenuation: Attenuation) -> tuple[str, str]:
     return name, ", ".join(parts) or f"gain {plain(attenuation.gain)}"
 
 
-def _gain(value: float) -> str:
+def _gain(value: float, unit: str) -> str:
+    if unit != "V":
+        return engineering(value, per_unit(unit), 4)
     return f"{plain(value)} ({_db(decibel(value))})" if 0.0 < value < math.inf else plain(value)
 
 

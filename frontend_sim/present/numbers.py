@@ -7,6 +7,9 @@ from decimal import ROUND_HALF_EVEN, Context, Decimal
 
 from frontend_sim.quantities.units import PREFIXES
 
+ZERO_CELSIUS = 273.15
+"""0 degC [K]."""
+
 _LETTERS = {0: ""} | {power.adjusted(): letter for letter, (_, power) in PREFIXES.items()}
 
 
@@ -35,6 +38,31 @@ def engineering(value: float, unit: str, digits: int = 3) -> str:
     number = rounded(value, digits)
     exponent = min(max(number.adjusted() // 3 * 3, min(_LETTERS)), max(_LETTERS))
     return f"{_digits(number.scaleb(-exponent), digits)} {_LETTERS[exponent]}{unit}"
+
+
+def quantity(value: float, unit: str, digits: int = 3) -> str:
+    """Return a value of a signal, with a prefix where its unit takes one.
+
+    Parameters
+    ----------
+    value : in ``unit``; a temperature is a difference
+    unit : SI unit of a signal, empty for a share
+    """
+    if unit in ("", "K", "m/s^2"):
+        return f"{plain(value, digits)} {unit}".rstrip()
+    return engineering(value, unit, digits)
+
+
+def level(value: float, unit: str, digits: int = 3) -> str:
+    """Return a value of a signal as ``quantity`` does, a temperature in degrees."""
+    if unit == "K":
+        return f"{plain(value - ZERO_CELSIUS, digits)} degC"
+    return quantity(value, unit, digits)
+
+
+def per_unit(unit: str) -> str:
+    """Return the unit of volts for one of an SI unit: ``V/V``, ``V/(m/s^2)``."""
+    return f"V/({unit})" if "/" in unit else f"V/{unit}" if unit else "V"
 
 
 def plain(value: float, digits: int = 4) -> str:

@@ -9,10 +9,11 @@ from typing import TYPE_CHECKING, Any
 import numpy as np
 from numpy.typing import NDArray
 
-from frontend_sim.converter.adc import Adc
+from frontend_sim.converter import AnyAdc
 from frontend_sim.present.colours import BLUE, LIMIT, MARK, ORANGE, SERIES
 from frontend_sim.present.decimation import shown_flags, shown_points
-from frontend_sim.present.numbers import engineering, prefix_of
+from frontend_sim.present.numbers import ZERO_CELSIUS, engineering, prefix_of
+from frontend_sim.quantities import SIGNALS
 
 if TYPE_CHECKING:
     from matplotlib.axes import Axes
@@ -38,7 +39,7 @@ class Conversions:
     overrange : shape (K,)
     """
 
-    adc: Adc
+    adc: AnyAdc
     time: Real
     pin: Real
     voltage: Real
@@ -90,7 +91,7 @@ def _draw_limits(axes: Axes, conversions: Conversions, factor: float) -> None:
     axes.axhline(factor * adc.high, **style)
 
 
-def _add_code_axis(axes: Axes, adc: Adc, factor: float) -> None:
+def _add_code_axis(axes: Axes, adc: AnyAdc, factor: float) -> None:
     """Count codes on the right: code = (voltage - low) / LSB + lowest code."""
 
     def to_code(voltage: Any) -> Any:
@@ -118,15 +119,20 @@ def draw_difference(axes: Axes, conversions: Conversions) -> None:
         )
 
 
-def draw_waveforms(axes: Axes, time: Real, waveform: Mapping[str, Real]) -> None:
-    """Draw the waveforms of all points that are kept."""
+def draw_waveforms(axes: Axes, time: Real, waveform: Mapping[str, Real], unit: str = "V") -> None:
+    """Draw the waveforms of points that are kept and have the same unit.
+
+    Parameters
+    ----------
+    waveform : name of the point -> values, in the SI unit ``unit``
+    """
     shown, largest = {}, 0.0
     for name in waveform:
-        values = waveform[name]
+        values = waveform[name] - (ZERO_CELSIUS if unit == "K" else 0.0)
         kept = shown_points(values)
         shown[name] = time[kept], values[kept]
         largest = max(largest, float(np.max(np.abs(values))))
-    factor, letter = prefix_of(largest)
+    factor, letter = (1.0, "") if unit in ("", "K", "m/s^2") else prefix_of(largest)
     for index, (name, (at, values)) in enumerate(shown.items()):
         axes.plot(
             at, factor * values, color=SERIES[index % len(SERIES)],
@@ -136,7 +142,8 @@ def draw_waveforms(axes: Axes, time: Real, waveform: Mapping[str, Real]) -> None
             # A dollar sign would begin a formula, and a name in front of "_" is not shown.
             label=name.replace("$", r"\$").lstrip("_") or "point",
         )  # fmt: skip
-    axes.set_ylabel(f"waveforms [{letter}V]")
+    noun = "waveforms" if unit == "V" else SIGNALS[unit].name
+    axes.set_ylabel(f"{noun} [{letter}{'degC' if unit == 'K' else unit or '1'}]")
     _add_legend(axes)
 
 

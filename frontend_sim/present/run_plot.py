@@ -8,16 +8,20 @@ from textwrap import fill
 from typing import TYPE_CHECKING
 
 import numpy as np
+from numpy.typing import NDArray
 
-from frontend_sim.converter.adc import Adc
+from frontend_sim.converter import AnyAdc
 from frontend_sim.present.figure_file import check_plot_target, new_figure, save_figure
 from frontend_sim.present.numbers import engineering, prefix_of
 from frontend_sim.present.run_like import RunLike
 from frontend_sim.present.run_panels import Conversions, draw_codes, draw_difference, draw_waveforms
+from frontend_sim.scenario.signal import PIN
 
 if TYPE_CHECKING:
     from matplotlib.axes import Axes
     from matplotlib.figure import Figure
+
+Real = NDArray[np.float64]
 
 
 def plot_run(run: RunLike, path: str | os.PathLike[str], overwrite: bool = False) -> Path:
@@ -50,7 +54,8 @@ def run_figure(run: RunLike) -> Figure:
     """Return the figure of a run, to draw on or to show elsewhere."""
     adc, time = run.scenario.adc, run.time
     waveform_time = run.waveform_time if len(run.waveform) else np.empty(0)
-    heights = [3.0, 1.2, 2.2] if len(waveform_time) else [3.0, 1.2]
+    by_unit = _by_unit(run) if len(waveform_time) else {}
+    heights = [3.0, 1.2, *(2.2 for _ in by_unit)]
     figure = new_figure(10.0, 1.9 + 1.1 * sum(heights))
     axes: list[Axes] = list(figure.subplots(len(heights), 1, sharex=True, height_ratios=heights))
     last = max((float(times[-1]) for times in (time, waveform_time) if len(times)), default=0.0)
@@ -58,8 +63,8 @@ def run_figure(run: RunLike) -> Figure:
     conversions = Conversions(adc, factor * time, run.pin, run.voltage, run.overrange)
     draw_codes(axes[0], conversions)
     draw_difference(axes[1], conversions)
-    if len(waveform_time):
-        draw_waveforms(axes[2], factor * waveform_time, run.waveform)
+    for panel, (unit, waveform) in zip(axes[2:], by_unit.items(), strict=True):
+        draw_waveforms(panel, factor * waveform_time, waveform, unit)
     axes[-1].set_xlabel(f"time [{letter}s]")
     beyond = int(np.count_nonzero(conversions.overrange))
     figure.suptitle(_title(run.scenario.title, adc, len(time), beyond))
@@ -69,7 +74,16 @@ def run_figure(run: RunLike) -> Figure:
     return figure
 
 
-def _title(title: str, adc: Adc, count: int, beyond: int) -> str:
+def _by_unit(run: RunLike) -> dict[str, dict[str, Real]]:
+    """Return the waveforms by the SI unit of their points, in the order of the chain."""
+    units = dict(zip(run.scenario.points(), run.scenario.units(), strict=True))
+    found: dict[str, dict[str, Real]] = {}
+    for name in run.waveform:
+        found.setdefault(units.get(name, PIN), {})[name] = run.waveform[name]
+    return found
+
+
+def _title(title: str, adc: AnyAdc, count: int, beyond: int) -> str:
     low, high = engineering(adc.low, "V"), engineering(adc.high, "V")
     facts = (
         f"{count} conversions at {engineering(adc.rate, 'Hz')}, {adc.bits} bits, {low} to {high}"

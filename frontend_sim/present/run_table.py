@@ -7,7 +7,7 @@ from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
-from frontend_sim.present.numbers import engineering, fixed, plain
+from frontend_sim.present.numbers import engineering, fixed, level, plain
 from frontend_sim.present.run_like import RunLike
 
 if TYPE_CHECKING:
@@ -34,6 +34,7 @@ def run_summary(run: RunLike) -> dict[str, Any]:
         "low": adc.low,
         "high": adc.high,
         "lsb": adc.lsb,
+        "stimulus": _stimulus(run),
         "pin": _extent(pin),
         "codes": _extent(codes),
         "overrange": int(np.count_nonzero(overrange)),
@@ -58,6 +59,13 @@ def _extent(values: Any) -> dict[str, Any] | None:
         return None
     extent = {"lowest": values.min(), "highest": values.max()}
     return {name: value.item() for name, value in extent.items()} | {"mean": float(values.mean())}
+
+
+def _stimulus(run: RunLike) -> dict[str, Any] | None:
+    """Return what arrived, where its waveform is kept, in its SI unit."""
+    values = run.waveform.get("stimulus", ())
+    extent = _extent(values)
+    return None if extent is None else {**extent, "unit": run.scenario.stimulus_unit or "1"}
 
 
 def _grid(run: RunLike) -> dict[str, Any] | None:
@@ -110,6 +118,7 @@ def _rows(summary: dict[str, Any]) -> list[tuple[str, str]]:
     rows += [
         ("from, to", f"{first}, {last}"),
         ("converter", f"{summary['bits']} bits, {low} to {high}, LSB {engineering(lsb, 'V', 4)}"),
+        *_stimulus_rows(summary["stimulus"]),
         ("pin: lowest", engineering(pin["lowest"], "V", 5)),
         ("pin: mean", engineering(pin["mean"], "V", 5)),
         ("pin: highest", engineering(pin["highest"], "V", 5)),
@@ -123,6 +132,16 @@ def _rows(summary: dict[str, Any]) -> list[tuple[str, str]]:
         rows.append(("discrete model", f"{grid['method']} at {rate}"))
         rows.append(("model less exact, largest", f"{plain(grid['largest_error'], 3)} LSB"))
     return rows
+
+
+def _stimulus_rows(stimulus: dict[str, Any] | None) -> list[tuple[str, str]]:
+    if stimulus is None:
+        return []
+    unit = stimulus["unit"].removeprefix("1")
+    return [
+        (f"stimulus: {name}", level(stimulus[name], unit, 5))
+        for name in ("lowest", "mean", "highest")
+    ]
 
 
 def _result_table(results: list[dict[str, Any]]) -> Table:

@@ -9,7 +9,7 @@ import numpy as np
 
 from frontend_sim.present.colours import BLACK, EXACT, LIMIT, MARK
 from frontend_sim.present.frequency_panels import MODEL_STYLE
-from frontend_sim.present.numbers import engineering, fixed, plain, prefix_of
+from frontend_sim.present.numbers import engineering, fixed, per_unit, plain, prefix_of, quantity
 from frontend_sim.present.step_view import StepView
 
 if TYPE_CHECKING:
@@ -36,7 +36,7 @@ def draw_step(axes: Axes, view: StepView) -> None:
         axes.axhspan(low, high, color=LIMIT, alpha=0.12, zorder=1, label=f"end ± {settling.label}")
     axes.set_xlim(factor * view.time[0], factor * view.settled)
     axes.set_xlabel(f"time after the step [{letter}s]")
-    axes.set_ylabel("response to a unit step [V/V]")
+    axes.set_ylabel(f"response to a unit step [{per_unit(view.inspection.unit)}]")
     axes.set_title(_shape_text(view), fontsize="medium")
     axes.legend(loc="best", fontsize="small", framealpha=0.9)
 
@@ -72,8 +72,8 @@ def draw_distance(axes: Axes, view: StepView) -> None:
             axes.plot([factor * settling.time], [settling.band], "o", color=LIMIT, markersize=5,
                       zorder=4)  # fmt: skip
     axes.set_xlabel(f"time after the step [{letter}s]")
-    axes.set_ylabel("distance from the end [V/V]")
-    step = engineering(measured.full_scale_step, "V")
+    axes.set_ylabel(f"distance from the end [{per_unit(view.inspection.unit)}]")
+    step = quantity(measured.full_scale_step, view.inspection.unit)
     axes.set_title(f"Settling; LSB counted for a step of {step}", fontsize="medium")
 
 

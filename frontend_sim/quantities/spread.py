@@ -10,7 +10,7 @@ from frontend_sim.quantities.dimension import DRIFT, FRACTION, Dimension
 from frontend_sim.quantities.part import TOLERANCE, Part
 from frontend_sim.quantities.preferred import SERIES, preferred
 from frontend_sim.quantities.reading import parse, shown
-from frontend_sim.quantities.writing import as_drift, as_share, as_text
+from frontend_sim.quantities.writing import as_share, as_text
 
 KEYS = ("value", "tolerance", "drift", "series")
 
@@ -123,7 +123,7 @@ def part_table(part: Part, dimension: Dimension) -> dict[str, str | float]:
     if part.tolerance:
         table["tolerance"] = as_share(part.tolerance)
     if part.drift:
-        table["drift"] = as_drift(part.drift)
+        table["drift"] = as_text(part.drift, DRIFT)
     if part.series:
         table["series"] = part.series
     return table

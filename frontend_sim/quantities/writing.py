@@ -19,11 +19,6 @@ def as_share(value: float) -> str:
     return f"{_plain(Decimal(repr(float(value))).scaleb(2))} %"
 
 
-def as_drift(value: float) -> str:
-    """Return a relative change with temperature [1/K] as ``"50 ppm/K"``; it reads back the same."""
-    return f"{_plain(Decimal(repr(float(value))).scaleb(6))} ppm/K"
-
-
 def as_text(value: float, dimension: Dimension, digits: int | None = None) -> str:
     """Return a value with its unit, ``"4.7 nF"``, the exponent a multiple of three.
 
@@ -35,6 +30,8 @@ def as_text(value: float, dimension: Dimension, digits: int | None = None) -> st
     unit, number = dimension.unit, Decimal(repr(float(value)))
     if dimension.absolute and _COLD <= number <= _HOT:
         unit, number = "degC", number - _ZERO_CELSIUS
+    if unit == "1/K":
+        unit, number = "ppm/K", number.scaleb(6)
     if digits is not None:
         number = Decimal(f"{number:.{digits}g}")
     exponent = 0

@@ -6,10 +6,11 @@ import tomllib
 from typing import Any
 
 from frontend_sim.analog.chain import section
-from frontend_sim.converter.adc import Adc
-from frontend_sim.converter.clock import conversion_count
+from frontend_sim.converter import AnyAdc
+from frontend_sim.converter.clock import conversion_count, first_code_instant
 from frontend_sim.errors import ModelError, Problem, RecordingError, ScenarioError
 from frontend_sim.quantities import TIME, as_text
+from frontend_sim.scenario.checks.rules import instant_faults
 from frontend_sim.scenario.fault import problem
 from frontend_sim.scenario.locate import lines_of
 from frontend_sim.scenario.model import Scenario
@@ -44,7 +45,11 @@ def check_scenario(scenario: Scenario, name: str = "") -> None:
         raise RecordingError(_located(scenario, name, ("stimulus",), str(error))) from error
     text = _duration_fault(scenario, known)
     if text is not None:
-        raise ScenarioError([_problem(scenario, ("simulation", "duration"), text)], name)
+        raise ScenarioError([problem_of(scenario, ("simulation", "duration"), text)], name)
+    if scenario.simulation.duration is None and known is not None:
+        late = [problem_of(scenario, *fault) for fault in instant_faults(scenario.check, known)]
+        if late:
+            raise ScenarioError(late, name)
     temperature = scenario.environment.temperature
     for position, stage in enumerate(scenario.chain):
         label = stage.label(position + 1)
@@ -88,19 +93,27 @@ def _duration_fault(scenario: Scenario, known: float | None) -> str | None:
     )
 
 
-def _all_conversions_before(end: float, duration: float, adc: Adc) -> bool:
+def _all_conversions_before(end: float, duration: float, adc: AnyAdc) -> bool:
     """Return whether a duration ends less than a conversion's interval late, and none is lost.
 
     N points at a rate may be said to last N or N - 1 intervals; both are let pass.
     """
-    last = adc.first + (conversion_count(adc, duration) - 1) / adc.rate + adc.aperture_delay
-    return last <= end and duration <= end + 1.0 / adc.rate
+    since = (conversion_count(adc, duration) - 1) / adc.true_rate
+    last = first_code_instant(adc) + since + adc.aperture_delay
+    return last <= end and duration <= end + 1.0 / adc.true_rate
 
 
-def _problem(scenario: Scenario, path: Path, text: str) -> Problem:
+def problem_of(scenario: Scenario, path: Path, text: str) -> Problem:
+    """Return what is wrong at a path of a scenario, with its key and line.
+
+    Parameters
+    ----------
+    path : keys and positions from the top of the scenario, ``("check", 0, "before")``
+    text : the whole message
+    """
     data: dict[str, Any] = tomllib.loads(scenario.source) if scenario.source else {}
     return problem(path, text, data, lines_of(scenario.source, data))
 
 
 def _located(scenario: Scenario, name: str, path: Path, text: str) -> str:
-    return str(ScenarioError([_problem(scenario, path, text)], name))
+    return str(ScenarioError([problem_of(scenario, path, text)], name))

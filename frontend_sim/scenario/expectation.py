@@ -12,7 +12,7 @@ from pydantic.fields import FieldInfo
 from pydantic_core import PydanticUndefined
 
 from frontend_sim.quantities import dimension_of, shown
-from frontend_sim.scenario.tables import is_array, keys, kinds, members
+from frontend_sim.scenario.tables import is_array, keys, kind_in, kinds, members
 
 _PLAIN = {
     bool: "true or false",
@@ -89,14 +89,18 @@ def example(name: str, field: FieldInfo) -> str:
 
 
 def outline(annotation: Any) -> str:
-    """Return what a missing table needs: its kind, or its required keys with examples."""
+    """Return what a missing table needs: its kind, or its required keys with examples.
+
+    Where a table may leave its kind out, these are the keys of the kind that it then has.
+    """
     models = members(annotation)
-    by_kind = kinds(models)
-    if len(by_kind) > 1:
+    by_kind, usual = kinds(models), kind_in(models, None)
+    if len(by_kind) > 1 and usual is None:
         return f"a kind, one of {', '.join(map(shown, by_kind))}, and the keys of that kind"
+    model = models[0] if usual is None else by_kind[usual]
     needed = [
         example(name, field) or f"{name} ({expected(field.annotation, field.metadata)})"
-        for name, field in keys(models[0]).items()
+        for name, field in keys(model).items()
         if field.is_required()
     ]
     return ", ".join(needed) if needed else "no key of its own"

@@ -11,7 +11,16 @@ from frontend_sim.errors import Problem
 from frontend_sim.quantities import shown
 from frontend_sim.scenario.locate import line_of
 from frontend_sim.scenario.model import Scenario
-from frontend_sim.scenario.tables import Path, Spot, is_array, kinds, members, model_at, spot
+from frontend_sim.scenario.tables import (
+    Path,
+    Spot,
+    is_array,
+    kind_in,
+    kinds,
+    members,
+    model_at,
+    spot,
+)
 
 MISSING = object()
 """What is given where nothing stands."""
@@ -63,7 +72,7 @@ def _path_in_file(location: Sequence[str | int], data: Any) -> tuple[Path, bool]
     annotation: Any = Scenario
     branch, here = False, data
     for step in location:
-        if _has_kinds(annotation) and isinstance(here, dict) and step == here.get("kind"):
+        if _has_kinds(annotation) and step == kind_in(members(annotation), here):
             annotation = model_at(annotation, here)
             continue
         known = spot((*path, step), data)

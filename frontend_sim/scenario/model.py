@@ -8,12 +8,14 @@ from collections.abc import Mapping
 from pathlib import Path
 from typing import Annotated, Any, Literal, Self
 
-from pydantic import BeforeValidator, Field, model_validator
+from pydantic import BeforeValidator, Field, StrictBool, model_validator
 
 from frontend_sim.analog.stages import AnyStage
-from frontend_sim.converter.adc import Adc
+from frontend_sim.converter import AnyAdc
 from frontend_sim.errors import nearest
 from frontend_sim.quantities import FREQUENCY, Frequency, PositiveLsb, PositiveTime, as_text
+from frontend_sim.scenario.checks import AnyCheck
+from frontend_sim.scenario.checks.rules import check_faults, instant_faults
 from frontend_sim.scenario.environment import Environment
 from frontend_sim.scenario.rules import conversions_fault, fault, faults, newer_format
 from frontend_sim.scenario.signal import PIN, UnitError, named, signal_units
@@ -64,6 +66,11 @@ class SimulationSettings(Value):
         default="settled",
         description="before t = 0 the chain has settled on the stimulus's first value, or is at "
         "rest",
+    )
+    noise: StrictBool = Field(
+        default=True,
+        description="whether codes carry the noise of the circuit: thermal noise of resistors, "
+        "voltage and current noise of amplifiers; pin and waveform stay free of it",
     )
     waveform_rate: Frequency | None = Field(
         default=None, description="points per second of the kept waveforms; left out, none is kept"
@@ -134,9 +141,12 @@ class Scenario(Value):
         default=(), description="the stages, in order from the sensor to the converter's pin"
     )
     environment: Environment = Field(default=Environment(), description="where the circuit stands")
-    adc: Adc = Field(description="the converter")
+    adc: AnyAdc = Field(description="the converter")
     simulation: SimulationSettings = Field(
         default=SimulationSettings(), description="how the run is computed"
+    )
+    check: tuple[AnyCheck, ...] = Field(
+        default=(), description="what must hold, each check with its limit"
     )
     source: str = Field(default="", exclude=True, repr=False, description="the file as written")
 
@@ -202,6 +212,15 @@ class Scenario(Value):
             text = conversions_fault(self.adc, duration)
             if text is not None:
                 raise fault(["simulation", "duration"], text)
+        return self
+
+    @model_validator(mode="after")
+    def _checks_fit(self) -> Self:
+        found = list(check_faults(self.check, self.points(), self.units(), self.adc.rate))
+        if self.simulation.duration is not None:
+            found += instant_faults(self.check, self.simulation.duration)
+        if found:
+            raise faults(type(self).__name__, found)
         return self
 
     def points(self) -> tuple[str, ...]:

@@ -6,8 +6,8 @@ from collections.abc import Callable, Sequence
 
 from pydantic_core import InitErrorDetails, PydanticCustomError, ValidationError
 
-from frontend_sim.converter.adc import Adc
-from frontend_sim.converter.clock import conversion_count
+from frontend_sim.converter import AnyAdc
+from frontend_sim.converter.clock import conversion_count, first_code_instant
 from frontend_sim.quantities import FREQUENCY, TIME, as_text, shown
 
 MOST_CONVERSIONS = 10**12
@@ -56,23 +56,25 @@ def newer_format(known: int) -> Callable[[object], object]:
     return check
 
 
-def conversions_fault(adc: Adc, duration: float) -> str | None:
+def conversions_fault(adc: AnyAdc, duration: float) -> str | None:
     """Return what is wrong with the number of conversions in [0, duration), or None.
 
     Parameters
     ----------
     duration [s]
     """
-    if duration * adc.rate > MOST_CONVERSIONS:
+    rate, key = adc.pattern.look_rate, "rate" if adc.kind == "sampling" else "modulator_rate"
+    if duration * rate > MOST_CONVERSIONS:
         return (
-            f"{as_text(duration, TIME, 6)} at {as_text(adc.rate, FREQUENCY, 6)} are "
-            f"{duration * adc.rate:.3g} conversions, more than {MOST_CONVERSIONS:.0e}; shorten "
-            "simulation.duration, or lower adc.rate"
+            f"{as_text(duration, TIME, 6)} at {as_text(rate, FREQUENCY, 6)} are "
+            f"{duration * rate:.3g} conversions, more than {MOST_CONVERSIONS:.0e}; shorten "
+            f"simulation.duration, or lower adc.{key}"
         )
     if conversion_count(adc, duration) < 1:
         return (
-            f"no conversion falls into the run: the first is at {as_text(adc.first, TIME, 6)} "
-            f"(adc.first), and the run ends at {as_text(duration, TIME, 6)}; lengthen "
-            "simulation.duration, or lower adc.first"
+            "no conversion falls into the run: the first is done at "
+            f"{as_text(first_code_instant(adc), TIME, 6)} (adc.first, and what it takes from there "
+            f"on), and the run ends at {as_text(duration, TIME, 6)}; lengthen simulation.duration, "
+            "or lower adc.first"
         )
     return None

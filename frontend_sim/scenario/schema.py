@@ -66,12 +66,13 @@ def _drop_null(part: Schema) -> None:
 
 
 def _complete(name: str, value: Schema, table: Schema) -> None:
-    """Give a key what pydantic leaves out: the kind as a required constant, a unit."""
+    """Give a key what pydantic leaves out: the kind as a constant, required as a rule, a unit."""
     value.pop("title", None)
     if name == "kind":
-        value.pop("default", None)
         value["description"] = str(table.get("description", "")).split("\n")[0]
-        table["required"] = ["kind", *table.get("required", [])]
+        if not value.pop("optional", False):
+            value.pop("default", None)
+            table["required"] = ["kind", *table.get("required", [])]
     if isinstance(value.get("default"), dict):
         del value["default"]
     numbers = [part for part in _parts(value) if part.get("type") in ("integer", "number")]

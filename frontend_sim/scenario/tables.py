@@ -10,7 +10,7 @@ from typing import Annotated, Any, get_args, get_origin
 from pydantic.fields import FieldInfo
 
 from frontend_sim.scenario.model import Scenario
-from frontend_sim.values import Value
+from frontend_sim.values import Value, may_be_left_out
 
 Path = tuple[str | int, ...]
 """Keys and positions (from 0) on the way from the top of a file to a value."""
@@ -71,6 +71,14 @@ def kinds(models: tuple[type[Value], ...]) -> dict[str, type[Value]]:
     if not all("kind" in model.model_fields for model in models):
         return {}
     return {str(model.model_fields["kind"].default): model for model in models}
+
+
+def kind_in(models: tuple[type[Value], ...], table: Any) -> str | None:
+    """Return the kind that a table tells, or the one that a table without any has, else None."""
+    if isinstance(table, dict) and "kind" in table:
+        return table["kind"] if isinstance(table["kind"], str) else None
+    known = kinds(models).items()
+    return next((kind for kind, model in known if may_be_left_out(keys(model)["kind"])), None)
 
 
 def is_array(annotation: Any) -> bool:
@@ -139,8 +147,8 @@ def model_at(annotation: Any, data: Any) -> type[Value] | None:
     models = members(annotation)
     if len(models) == 1:
         return models[0]
-    kind = data.get("kind") if isinstance(data, dict) else None
-    return kinds(models).get(kind) if isinstance(kind, str) and models else None
+    kind = kind_in(models, data) if models else None
+    return None if kind is None else kinds(models).get(kind)
 
 
 def _element(annotation: Any) -> Any:

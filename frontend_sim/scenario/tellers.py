@@ -31,7 +31,7 @@ def meant(fault: Fault) -> str | None:
 def _unknown_key(fault: Fault) -> str:
     key = str(fault.path[-1])
     likely = meant(fault)
-    places = [table.place for table in homes(key)]
+    places = list(dict.fromkeys(table.place for table in homes(key)))
     text = "unknown table" if _is_table(fault.given) else "unknown key"
     if places:
         more = f" and {len(places) - 3} more" if len(places) > 3 else ""

@@ -14,6 +14,7 @@ from pydantic.fields import FieldInfo
 from frontend_sim.quantities import (
     Dimension,
     Level,
+    Limit,
     Part,
     ReadsLevel,
     as_text,
@@ -23,7 +24,7 @@ from frontend_sim.quantities import (
 )
 from frontend_sim.scenario.model import Scenario
 from frontend_sim.scenario.tables import is_array, keys
-from frontend_sim.values import Value
+from frontend_sim.values import Value, may_be_left_out
 
 _ALWAYS = ("format", "kind")
 """Keys that are written though they have their default."""
@@ -62,11 +63,14 @@ def _table(value: Value, writing: _Writing) -> dict[str, Any]:
     fields = keys(type(value))
     for name in sorted(fields, key=lambda key: key not in _ALWAYS):
         field, item = fields[name], getattr(value, name)
-        if item is None or (name not in _ALWAYS and item == field.get_default()):
+        always = name in _ALWAYS and not may_be_left_out(field)
+        if item is None or (not always and item == field.get_default()):
             continue
         dimension = _dimension(field, item, writing)
         if dimension is not None and isinstance(item, Part):
             written[name] = _Inline(part_table(item, dimension))
+        elif isinstance(item, Limit):
+            written[name] = item.text()
         elif dimension is not None and dimension.unit and not is_array(field.annotation):
             written[name] = as_text(item, dimension)
         else:

@@ -8,7 +8,6 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from frontend_sim.converter.adc import Adc
 from frontend_sim.errors import ScenarioError
 from frontend_sim.scenario.model import SimulationSettings
 from frontend_sim.simulation.kernels import Real
@@ -23,6 +22,10 @@ MOST_TRIAL = 20_000_000
 """Grid points in one trial; a longer run is tried over its first part."""
 MOST_GRID = 1_000_000_000
 """Grid points in a whole run that "auto" may ask for."""
+
+
+ROUNDING = 1e-12
+"""Rounding that no two grids need to show, as a share of the converter's range."""
 
 
 @dataclass
@@ -51,6 +54,7 @@ class Trials:
 
     Parameters
     ----------
+    rate : conversions per second [Hz];  lsb, span : width of a code and of the whole range [V]
     accuracy : error that a picked grid must stay below [LSB]
     count : conversions of the run
     points : the converter's pin, as points of the chain
@@ -58,7 +62,9 @@ class Trials:
     instants : the instants of conversions start to stop - 1
     """
 
-    adc: Adc
+    rate: float
+    lsb: float
+    span: float
     accuracy: float
     count: int
     points: list[int]
@@ -73,11 +79,11 @@ class Trials:
             stop = min(start + WAVEFORM_TILE, count)
             states, (pin,) = model.advance(states, start, self.instants(start, stop))
             values.append(pin)
-        return np.concatenate(values) / self.adc.lsb
+        return np.concatenate(values) / self.lsb
 
     def fitting(self, rate: float) -> int:
         """Return how many conversions MOST_TRIAL points of a grid reach to."""
-        return max(min(self.count, int(MOST_TRIAL * self.adc.rate / rate)), 1)
+        return max(min(self.count, int(MOST_TRIAL * self.rate / rate)), 1)
 
 
 def pick_grid(
@@ -96,8 +102,8 @@ def pick_grid(
     assert settings.discretization != "exact"
     exact: dict[int, Real] = {}
     estimate, multiple = math.inf, 1
-    while models.duration * trials.adc.rate * multiple <= MOST_GRID:
-        rate = trials.adc.rate * multiple
+    while models.duration * trials.rate * multiple <= MOST_GRID:
+        rate = trials.rate * multiple
         if settings.prewarp is None or settings.prewarp < 0.5 * rate:
             method = GridMethod(settings.discretization, rate, settings.prewarp)
             count = max(min(trials.count, MOST_TRIAL // multiple), 1)
@@ -141,15 +147,16 @@ def pick_limiter_grid(models: Models, trials: Trials) -> LimiterGrid:
     of the finer one. Two changes in a row are asked, the older as if it had fallen by four, so that
     two grids which agree by chance deceive nobody: the estimate is
 
-        MARGIN · max(change, last change / 4).
+        MARGIN · max(change, last change / 4) + rounding.
 
     Raises
     ------
     ScenarioError
         If the accuracy is not reached with MOST_GRID points; the message tells how near it came.
     """
-    start = first_multiple(models, trials.adc.rate, MOST_TRIAL)
+    start = first_multiple(models, trials.rate, MOST_TRIAL)
     rate, estimate, last = start.rate, math.inf, math.inf
+    rounding = ROUNDING * trials.span / trials.lsb
     before: Real | None = None
     while models.duration * rate <= MOST_GRID:
         count = trials.fitting(rate)
@@ -157,7 +164,7 @@ def pick_limiter_grid(models: Models, trials: Trials) -> LimiterGrid:
         if before is not None:
             distance = Distance()
             distance.add(pin - before[: len(pin)])
-            estimate = MARGIN * max(distance.largest, 0.25 * last)
+            estimate = MARGIN * max(distance.largest, 0.25 * last) + rounding
             if estimate <= trials.accuracy:
                 whole = distance if count == trials.count else None
                 return LimiterGrid(rate, estimate, whole, start.notes)

@@ -15,7 +15,7 @@ from frontend_sim.simulation.linear import States
 from frontend_sim.simulation.pieces import Jumps, Pieces, Stretch, pieces_of
 from frontend_sim.simulation.polygon import Polygon
 from frontend_sim.simulation.probe import Probe
-from frontend_sim.simulation.signal import NO_PAST, Past, Signal
+from frontend_sim.simulation.signal import NEAR, Past, Signal
 from frontend_sim.stimulus.drive import Drive, Lines
 
 
@@ -85,7 +85,7 @@ class Deviation:
         events = self.events.start() if self.events is not None else ()
         return DeviationState(
             self.grid.start(), events, 0, limiter, float(u[0]), float(v[0]),
-            True, 0.0, Signal(polygon, None, NO_PAST), np.zeros(size), never,
+            True, 0.0, Signal(polygon, None), np.zeros(size), never,
         )  # fmt: skip
 
     def advance(
@@ -119,7 +119,8 @@ class Deviation:
         limiter, d, begun, touched = self.place.limiter.advance(state.limiter, pieces.segments)
         level, signal = self._signal(state, first, keep, pieces, d, begun)
         if self.remembers:
-            signal = replace(signal, past=_past(state, pieces, d, begun, keep / self.rate))
+            past = Past(pieces.begins, pieces.segments, float(state.limiter[0]), d, begun)
+            signal = replace(signal, past=state.signal.past).remembered(past, keep / self.rate)
         time, when = _counted(state, touched, pieces.begins)
         count = state.count + (len(jumps.times) if jumps is not None else 0)
         return DeviationState(
@@ -139,7 +140,7 @@ class Deviation:
         if not self.place.jumps:
             # The input only bends there, which a piece may do at its ends.
             position = times * self.rate
-            times = times[np.abs(position - np.rint(position)) > 1e-9 + 1e-13 * position]
+            times = times[np.abs(position - np.rint(position)) > NEAR + 1e-13 * position]
         if len(times) == 0:
             return state.events, None
         near = slack(times, self.interval)
@@ -160,12 +161,13 @@ class Deviation:
         """Split the deviation into held jumps and a part that lines join; add it to the signal."""
         polygon, lines = state.signal.polygon, state.signal.lines
         starts = pieces.segments.jumps
-        left = np.append(state.limiter[:1], d)[starts]
+        left = np.where(starts > 0, d[starts - 1], state.limiter[0])
         size = np.abs(begun) + np.abs(left) + np.abs(pieces.segments.begin[starts])
         heights = np.where(np.abs(begun - left) > NO_JUMP * size, begun - left, 0.0)
         if self.events is None or not np.any(heights):
             level = state.level
-            joined = d[pieces.ends_on_grid] - level
+            joined = d if pieces.uncut else d[pieces.ends_on_grid]
+            joined = joined - level if level else joined
         else:
             at, level = np.flatnonzero(heights), state.level
             levels = level + np.cumsum(heights[at])
@@ -173,20 +175,11 @@ class Deviation:
             joined, level = (d - held)[pieces.ends_on_grid], float(levels[-1])
             lines = _grown(lines, pieces.begins[starts[at]], levels)
         if polygon is None and not np.any(joined):
-            return level, Signal(None, _trimmed(lines, keep / self.rate), NO_PAST)
+            return level, Signal(None, _trimmed(lines, keep / self.rate))
         if polygon is None:
             polygon = Polygon(self.rate, 0.0, first, np.zeros(1))
         lines = _trimmed(lines, keep / self.rate)
-        return level, Signal(polygon.grown(joined, keep), lines, NO_PAST)
-
-
-def _past(state: DeviationState, pieces: Pieces, d: Real, begun: Real, keep: float) -> Past:
-    """Return the past of a state with more pieces."""
-    segments = pieces.segments
-    left = np.append(state.limiter[:1], d[:-1])
-    left[segments.jumps] = begun
-    v = np.append(segments.linear_begin, segments.linear[:-1])
-    return state.signal.past.grown(Past(pieces.begins, segments.begin, v, left), keep)
+        return level, Signal(polygon.grown(joined, keep), lines)
 
 
 def _grown(lines: Lines | None, breaks: Real, levels: Real) -> Lines:

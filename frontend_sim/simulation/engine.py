@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Callable, Iterator
+from collections.abc import Callable, Iterator, Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -20,6 +20,7 @@ from frontend_sim.simulation.kernels import Real
 from frontend_sim.simulation.limited import Limited
 from frontend_sim.simulation.linear import Axis
 from frontend_sim.simulation.models import Model, Models
+from frontend_sim.simulation.noise import NoisePath
 from frontend_sim.simulation.plan import Plan
 from frontend_sim.simulation.run import GridReport, Run, RunBlock
 from frontend_sim.simulation.uniform import WAVEFORM_TILE
@@ -80,10 +81,12 @@ class Simulation:
         self.grid: GridReport | None = None
         self._block = block
         self._pin = [len(self.chain.points) - 1]
-        cut, initial = CutChain.of(stages_of(scenario)), scenario.simulation.initial
+        cut = CutChain.of(stages_of(scenario), scenario.environment.temperature)
+        initial = scenario.simulation.initial
         self._models = Models.of(self.chain, cut, self.drives, initial, self.duration)
         self._plan = Plan.of(scenario, self._models, self._trials())
         self.notes += self._plan.notes
+        self._noise = self._noise_path()
 
     def blocks(self, progress: Progress | None = None) -> Iterator[RunBlock]:
         """Run, and return conversions and waveform block by block, in order of time.
@@ -102,6 +105,8 @@ class Simulation:
         waveform = self._waveform_axis()
         waveform_states = waveform.model.start() if waveform else None
         waveform_done = 0
+        noise = self._noise
+        noise_state = noise.start() if noise else np.empty(0)
         for start in range(0, self.count, self._block):
             stop = min(start + self._block, self.count)
             instants = clock.sampling_instants(adc, start, stop, seed)
@@ -109,7 +114,10 @@ class Simulation:
             if reference is not None:
                 reference_states, (true,) = reference.advance(reference_states, start, instants)
                 distance.add((pin - true) / adc.lsb)
-            yield self._converted(start, instants, pin)
+            added = np.zeros(1)
+            if noise is not None:
+                noise_state, added = noise.advance(noise_state, start, stop)
+            yield self._converted(start, instants, pin, added)
             if waveform is not None:
                 until = self._waveform_until(waveform.count, stop)
                 while waveform_done < until:
@@ -127,6 +135,24 @@ class Simulation:
         self.grid, note = plan.report(self.scenario, distance)
         self.notes += (note,) if note else ()
 
+    def values(self, points: Sequence[str], instants: Real) -> Real:
+        """Return points of the chain at instants of any choice, by the steps of the run itself.
+
+        Parameters
+        ----------
+        points : names, see ``Scenario.points``
+        instants : increasing, from 0 to the end of the run, shape (K,) [s]
+
+        Returns
+        -------
+        Shape (points, K).
+        """
+        longest = max(float(instants[-1]), 1.0 / self.scenario.adc.rate) if len(instants) else 1.0
+        numbers = [self.chain.points.index(point) for point in points]
+        model = self._models.model(numbers, Axis(longest, longest), self._plan.stepping)
+        _, found = model.advance(model.start(), 0, instants)
+        return found
+
     def _conversion_axis(self) -> Axis:
         adc = self.scenario.adc
         interval = 1.0 / adc.rate
@@ -138,7 +164,8 @@ class Simulation:
         def instants(start: int, stop: int) -> Real:
             return clock.sampling_instants(adc, start, stop, self.scenario.seed)
 
-        return Trials(adc, accuracy, self.count, self._pin, self._conversion_axis(), instants)
+        scale = (adc.rate, adc.lsb, adc.high - adc.low, accuracy)
+        return Trials(*scale, self.count, self._pin, self._conversion_axis(), instants)
 
     @property
     def _waveform_rate(self) -> float:
@@ -166,9 +193,24 @@ class Simulation:
         position = (adc.first + conversions / adc.rate) * self._waveform_rate
         return min(int(position) // WAVEFORM_TILE * WAVEFORM_TILE, count)
 
-    def _converted(self, start: int, instants: Real, pin: Real) -> RunBlock:
+    def _noise_path(self) -> NoisePath | None:
+        """Return the noise of the circuit at the conversions, if it has any and it is wanted."""
+        if not self.scenario.simulation.noise:
+            return None
+        model = self.chain.noise_model(0.1 / self.duration)
+        if model.unbounded:
+            self.notes += (
+                "nothing limits the bandwidth of these noise sources before the converter, so they "
+                f"are left out: {', '.join(model.unbounded)}; put a filter behind them, or give "
+                "the amplifier a gain_bandwidth",
+            )
+        if not model.names:
+            return None
+        return NoisePath.of(model, 1.0 / self.scenario.adc.rate, self.scenario.seed)
+
+    def _converted(self, start: int, instants: Real, pin: Real, noise: Real) -> RunBlock:
         adc = self.scenario.adc
-        voltage = quantizer.converted_voltage(adc, pin, start, self.scenario.seed)
+        voltage = quantizer.converted_voltage(adc, pin + noise, start, self.scenario.seed)
         codes, overrange = quantizer.quantize(adc, voltage)
         read = quantizer.read_back(adc, codes)
         return RunBlock(start, instants, pin, codes, read, overrange, np.empty(0), self._named())

@@ -11,7 +11,6 @@ import numpy as np
 
 from frontend_sim.analog.cut import CutChain, Place
 from frontend_sim.analog.limits import Segments
-from frontend_sim.errors import ScenarioError
 from frontend_sim.quantities import TIME, as_text
 from frontend_sim.simulation.deviation import Deviation, DeviationState
 from frontend_sim.simulation.kernels import Real
@@ -24,10 +23,8 @@ from frontend_sim.stimulus.drive import Drive, Lines, UniformDrive
 
 GRID_BLOCK = 16 * WAVEFORM_TILE
 """Most points of the grid in one step of the limiters."""
-MOST_AT_ONCE = 1 << 18
+SLOT = 1 << 18
 """Points of the grid for the instants that are asked at once."""
-MOST_BETWEEN = 1 << 24
-"""Most points of the grid between two instants, all of which are held in memory."""
 
 
 @dataclass(frozen=True, eq=False)
@@ -58,7 +55,8 @@ class Limited:
     ----------
     rate : of the grid [Hz]
     end : points of the grid in the whole run
-    piece : instants that are asked at once, a power of two
+    piece : instants that are asked at once, a power of two; 0 if more than a SLOT of the grid lies
+        between them, as a rule
     lag : how far behind an instant the deviations are still needed [s]
     """
 
@@ -93,23 +91,18 @@ class Limited:
         ------
         ModelError
             If no settled state exists, see ``Chain.settled``.
-        ScenarioError
-            If more points of the grid lie between two instants than memory is meant for.
         """
-        between = rate * axis.interval
-        if between > MOST_BETWEEN:
-            raise ScenarioError(
-                f"{between:.3g} points of the limiters' grid lie between two instants, more than "
-                f"{MOST_BETWEEN}; lower simulation.grid_rate, {rate:g} Hz"
-            )
+        between = max(rate * axis.interval, 1.0)
+        piece = 0
+        if between <= SLOT:
+            piece = 1 << min(int(SLOT / between), WAVEFORM_TILE).bit_length() - 1
+        else:
+            axis = replace(axis, uniform=False)
         make = _Maker(cut, tuple(drives), initial, rate, duration, grid)
         for place in cut.places:
             make.add(place)
         probe = make.probe([cut.points[point] for point in points], axis, True)
-        most = min(int(MOST_AT_ONCE / max(between, 1.0)), WAVEFORM_TILE)
-        piece = 1 << max(most.bit_length() - 1, 0)
-        delay = float(cut.chain.delay[-1])
-        lag = delay + (ROW + 2) * max(axis.interval, 1.0 / rate)
+        lag = float(cut.chain.delay[-1]) + (ROW + 2) * (axis.interval if axis.uniform else 0.0)
         return cls(tuple(make.deviations), probe, rate, math.ceil(duration * rate) + 2, piece, lag)
 
     def start(self) -> LimitedState:
@@ -129,16 +122,39 @@ class Limited:
         """
         parts, at = [], 0
         while at < len(instants):
-            end = ((number + at) // self.piece + 1) * self.piece
-            stop = min(end - number, len(instants))
-            part = instants[at:stop]
-            known, deviations = self._known(states, float(part[-1]))
-            signals = [deviation.signal for deviation in deviations]
-            probe, values = self.probe.advance(states.probe, number + at, part, signals)
-            states = LimitedState(known, float(part[-1]), deviations, probe)
+            if self.piece:
+                end = ((number + at) // self.piece + 1) * self.piece
+                stop = min(end - number, len(instants))
+            else:
+                states, stop = self._to_slot(states, number + at, instants, at)
+            states, values = self._asked(states, number + at, instants[at:stop])
             parts.append(values)
             at = stop
         return states, parts[0] if len(parts) == 1 else np.concatenate(parts, axis=1)
+
+    def _asked(
+        self, states: LimitedState, number: int, instants: Real
+    ) -> tuple[LimitedState, Real]:
+        """Advance through instants at once."""
+        known, deviations = self._known(states, float(instants[-1]))
+        signals = [deviation.signal for deviation in deviations]
+        probe, values = self.probe.advance(states.probe, number, instants, signals)
+        return LimitedState(known, float(instants[-1]), deviations, probe), values
+
+    def _to_slot(
+        self, states: LimitedState, number: int, instants: Real, at: int
+    ) -> tuple[LimitedState, int]:
+        """Advance to the slot of instant ``at``, and return the end of the instants in it too.
+
+        The ends of the slots between are asked and not told, so that no more than a slot of the
+        grid is ever held.
+        """
+        length = SLOT / self.rate
+        first, slot = (math.floor(t / length) for t in (states.asked, float(instants[at])))
+        for passed in range(first + 1, slot + 1):
+            states, _ = self._asked(states, number, np.array([passed * length]))
+        stop = int(np.searchsorted(instants, (slot + 1) * length))
+        return states, max(stop, at + 1)
 
     def _known(
         self, states: LimitedState, instant: float
@@ -167,7 +183,7 @@ class Limited:
             for limit, time, first in zip(
                 deviation.place.limiter.limits, state.time, state.first, strict=True
             )
-            if time > 0.0
+            if time > 0.0 and first < (self.end - 2) / self.rate  # the grid goes beyond the run
         )
 
 
@@ -259,7 +275,7 @@ class _Maker:
             axis,
             self.grid,
         )
-        return Answer(model, rows, self._direct(place, behind), place, asked)
+        return Answer(model, rows, self._direct(place, behind), place, asked, self.rate)
 
     def _at_once(self, place: Place, grid: Probe) -> float:
         """Return the deviation at t = 0, after a jump there."""

@@ -60,7 +60,7 @@ class Group:
 
 @dataclass(frozen=True, eq=False)
 class Linear:
-    """Some points of a linear chain as functions of time.
+    """Some points of a linear chain as functions of time, the offsets of its stages included.
 
     Since the chain is linear, each drive advances states of its own in the way that is exact and
     fast for it, and the outputs add up. A point behind a transport delay is asked that much
@@ -69,6 +69,7 @@ class Linear:
 
     groups: tuple[Group, ...]
     count: int
+    offset: Real
 
     @classmethod
     def of(
@@ -99,7 +100,14 @@ class Linear:
             before = outputs.c @ x + outputs.d * (level if initial == "settled" else 0.0)
             paths = tuple(_path(chain, drive, outputs, initial, axis, grid) for drive in drives)
             groups.append(Group(rows, float(delay), before, paths))
-        return cls(tuple(groups), len(points))
+        return cls(tuple(groups), len(points), chain.offset[list(points)])
+
+    def before(self) -> Real:
+        """Return the points' values before t = 0, shape (points,)."""
+        values = self.offset.copy()
+        for group in self.groups:
+            values[list(group.rows)] += group.before
+        return values
 
     def start(self) -> States:
         """Return the states at t = 0."""
@@ -126,12 +134,12 @@ class Linear:
             for group, held in zip(self.groups, states, strict=True)
         ]
         after = tuple(held for held, _ in parts)
-        if len(parts) == 1:
-            return after, parts[0][1]
-        y = np.empty((self.count, len(instants)))
-        for group, (_, values) in zip(self.groups, parts, strict=True):
-            y[list(group.rows)] = values
-        return after, y
+        y = parts[0][1]
+        if len(parts) > 1:
+            y = np.empty((self.count, len(instants)))
+            for group, (_, values) in zip(self.groups, parts, strict=True):
+                y[list(group.rows)] = values
+        return after, y + self.offset[:, None] if np.any(self.offset) else y
 
 
 def _advanced(

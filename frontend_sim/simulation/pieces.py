@@ -61,6 +61,11 @@ class Pieces:
     last: tuple[float, float]
     fresh: bool
 
+    @property
+    def uncut(self) -> bool:
+        """Whether every piece ends at a point of the grid."""
+        return bool(np.all(self.ends_on_grid))
+
 
 def pieces_of(stretch: Stretch, jumps: Jumps | None) -> Pieces:
     """Cut a stretch at the points of its grid and at jumps.

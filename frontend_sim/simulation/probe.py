@@ -26,6 +26,7 @@ class Answer:
     place : the limiter
     asked : rows of the probe that hold the limiter's input and linear answer, to go on from a point
         of the grid to an instant; empty where that is not done
+    rate : of the grid [Hz]
     """
 
     model: Linear
@@ -33,6 +34,7 @@ class Answer:
     direct: Real
     place: Place
     asked: tuple[int, ...]
+    rate: float
 
     def advance(
         self, states: States, number: int, instants: Real, signal: Signal, values: Real
@@ -41,10 +43,10 @@ class Answer:
         drives: list[Drive | None] = [signal.polygon, signal.lines]
         drives = drives[: len(self.model.groups[0].paths)]
         states, added = self.model.advance(states, number, instants, drives)
-        if self.asked and len(signal.past.begins):
+        if self.asked and signal.past:
             # Before the answer is added: the linear answer at the limiter is one of these points.
             u, v = self.place.both(values[list(self.asked)])
-            added += self.direct[:, None] * signal.missed(self.place, instants, u, v)
+            added += self.direct[:, None] * signal.missed(self.place, self.rate, instants, u, v)
         if np.any(added):
             values[list(self.rows)] += added
         return states
@@ -67,10 +69,10 @@ class Probe:
 
     def before(self) -> Real:
         """Return the points' values before t = 0, shape (points,)."""
-        values = _before(self.linear)
+        values = self.linear.before()
         for answer in self.answers:
             if answer is not None:
-                values[list(answer.rows)] += _before(answer.model)
+                values[list(answer.rows)] += answer.model.before()
         return values[: self.count]
 
     def start(self) -> tuple[States, ...]:
@@ -102,9 +104,3 @@ class Probe:
                 after.append(answer.advance(state, number, instants, signal, values))
         return tuple(after), values[: self.count]
 
-
-def _before(model: Linear) -> Real:
-    values = np.empty(model.count)
-    for group in model.groups:
-        values[list(group.rows)] = group.before
-    return values

@@ -2,7 +2,8 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
+from itertools import pairwise
 
 import numpy as np
 
@@ -12,33 +13,33 @@ from frontend_sim.simulation.kernels import Real
 from frontend_sim.simulation.polygon import Polygon
 from frontend_sim.stimulus.drive import Lines
 
+NEAR = 1e-9
+"""An instant within this share of a step from a point of the grid is at the point."""
 
 @dataclass(frozen=True, eq=False)
 class Past:
-    """Where the limiter stood at the begin of each of its pieces, after a jump if there was one.
+    """What a limiter went over, from which it can go on to any instant of it.
 
     Parameters
     ----------
-    begins : shape (S,) [s];  u : input;  v : linear answer;  d : deviation
+    begins : when each piece begins, shape (S,) [s]
+    before : deviation before the first piece
+    d : deviation at the end of each piece, shape (S,)
+    begun : deviation at the begin of the pieces that start with a jump, shape (J,)
     """
 
     begins: Real
-    u: Real
-    v: Real
+    segments: Segments
+    before: float
     d: Real
+    begun: Real
 
-    def grown(self, more: Past, keep: float) -> Past:
-        """Return the past with more pieces, and without those that end before a time [s]."""
-        drop = max(int(np.searchsorted(self.begins, keep, side="right")) - 1, 0)
-        return Past(
-            np.append(self.begins[drop:], more.begins),
-            np.append(self.u[drop:], more.u),
-            np.append(self.v[drop:], more.v),
-            np.append(self.d[drop:], more.d),
-        )
-
-
-NO_PAST = Past(np.empty(0), np.empty(0), np.empty(0), np.empty(0))
+    def starts(self) -> Real:
+        """Return when each piece begins, and u, v and d there after a jump, shape (4, S)."""
+        d = np.append(self.before, self.d[:-1])
+        d[self.segments.jumps] = self.begun
+        v = np.append(self.segments.linear_begin, self.segments.linear[:-1])
+        return np.stack([self.begins, self.segments.begin, v, d])
 
 
 @dataclass(frozen=True, eq=False)
@@ -48,12 +49,12 @@ class Signal:
     Parameters
     ----------
     polygon, lines : the two parts; None has been zero all the time
-    past : kept where the deviation is asked between the points of the grid
+    past : in parts, kept where the deviation is asked between the points of the grid
     """
 
     polygon: Polygon | None
     lines: Lines | None
-    past: Past
+    past: tuple[Past, ...] = ()
 
     def values(self, times: Real) -> Real:
         """Return both parts together at times, shape (K,)."""
@@ -63,17 +64,30 @@ class Signal:
                 total += part.values(times)
         return total
 
-    def missed(self, place: Place, instants: Real, u: Real, v: Real) -> Real:
-        """Return what lines between the points of the grid miss at instants, shape (K,).
+    def remembered(self, part: Past, keep: float) -> Signal:
+        """Return the signal with one more part of the past, without parts before a time [s]."""
+        parts = (*self.past, part)
+        old = [past for past, later in pairwise(parts) if later.begins[0] > keep]
+        return replace(self, past=(*old, part))
+
+    def missed(self, place: Place, rate: float, instants: Real, u: Real, v: Real) -> Real:
+        """Return what lines between the points of a grid miss at instants, shape (K,).
 
         The limiter goes on from the begin of the piece that an instant lies in, with its true input
-        and linear answer there, u and v.
+        and linear answer at the instant, u and v.
         """
-        past = self.past
-        at = np.maximum(np.searchsorted(past.begins, instants, side="right") - 1, 0)
-        length = np.maximum(instants - past.begins[at], 0.0)
-        apart = np.stack([past.d[at], past.v[at]])
+        missed = np.zeros(len(instants))
+        position = instants * rate
+        off = np.flatnonzero(np.abs(position - np.rint(position)) > NEAR + 1e-13 * position)
+        if len(off) == 0 or not self.past:
+            return missed
+        instants, u, v = instants[off], u[off], v[off]
+        begins, *starts = np.concatenate([past.starts() for past in self.past], axis=1)
+        at = np.maximum(np.searchsorted(begins, instants, side="right") - 1, 0)
+        length = np.maximum(instants - begins[at], 0.0)
+        first, linear, begun = (row[at] for row in starts)
         none = np.empty(0, np.int64)
-        span = Segments(length, past.u[at], u, v, float(v[0]), none, apart)
+        span = Segments(length, first, u, v, float(v[0]), none, np.stack([begun, linear]))
         _, d, _, _ = place.limiter.advance(place.limiter.start(float(u[0]), float(v[0])), span)
-        return d - self.values(instants)
+        missed[off] = d - self.values(instants)
+        return missed

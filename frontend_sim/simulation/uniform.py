@@ -232,6 +232,9 @@ class UniformPath:
         sums = rows @ matrices.weights
         kernels.recur(x, matrices.step[None], self._reach, which, sums, states[1:])
         for i, feed in enumerate(self._feed):
+            if not np.any(self.outputs.c[i]):
+                np.multiply(points[1:], feed, out=y[i])
+                continue
             part = y[i].reshape(-1, ROW)
             np.matmul(rows, matrices.impulse[i], out=part)
             part += states[:-1] @ matrices.decay[i]

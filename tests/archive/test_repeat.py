@@ -186,7 +186,7 @@ def test_values_of_another_program(project: Path) -> None:
     with h5py.File(path, "r+") as file:
         text = file["resolved"].asstr()[()]
         file["resolved"][()] = text.replace('"bits": 14', '"bits": 14, "color": "red"')
-    message = r"cannot be built again, adc\.color"
+    message = r"cannot be built again, adc\.sampling\.color"
     with open_record(path) as record, pytest.raises(RecordError, match=message):
         rerun_scenario(record)
 

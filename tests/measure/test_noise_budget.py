@@ -133,12 +133,14 @@ def test_stationary_covariance_solves_its_equation() -> None:
     np.testing.assert_allclose(left, -model.b @ model.b.T, atol=1e-12 * np.max(np.abs(model.a @ p)))
 
 
-def test_unfiltered_white_noise_is_refused() -> None:
-    """A white source with a direct way to the pin has infinite power."""
+def test_unfiltered_white_noise_is_told_apart() -> None:
+    """A white source with a direct way to the pin has infinite power: it is named, not counted."""
     block = first_order(-1e3, (1.0, 0.0))
     source = NoiseInput("input", 1e-8, 0.0, 0, block.b, block.d)
-    with pytest.raises(ModelError, match="unfiltered"):
-        noise_budget(compose([Section("high pass", (block,), 0.0, (source,))]), ADC, 1.0)
+    chain = compose([_rc(1e3, 1e-9), Section("high pass", (block,), 0.0, (source,))])
+    budget = noise_budget(chain, ADC, 1.0)
+    assert budget.unbounded == ("high pass: input",)
+    assert [row.source for row in budget.rows] == ["rc: thermal noise of R"]
 
 
 def test_an_integrator_gathers_noise_without_bound() -> None:

@@ -176,6 +176,50 @@ ADC = [
     case(edited(("bits = 12", f"bits = 12\nbits = 12 {MARK}")), "bits is given twice"),
 ]
 
+PARTS = [
+    case(edited(('"10 kohm"', f'{{ value = "10 kohm", tolerance = "-1 %" }} {MARK}')),
+         'chain[1].resistance.tolerance (rc-lowpass "input filter")', 'given "-1 %"', "at least 0"),
+    case(edited(('"10 kohm"', f'{{ value = "10 kohm", tolerance = "100 %" }} {MARK}')),
+         "chain[1].resistance.tolerance", 'given "100 %"', "below 100 %"),
+    case(edited(('"10 kohm"', f'{{ value = "10 kohm", tolerance = "1 ohm" }} {MARK}')),
+         "chain[1].resistance.tolerance", "unit of resistance", '"0.1 %"'),
+    case(edited(('"10 kohm"', f'{{ value = "10 kohm", drift = "50 ppm" }} {MARK}')),
+         "chain[1].resistance.drift", '"50 ppm/K"'),
+    case(edited(('"10 kohm"', f'{{ value = "10 kohm", tolerence = "1 %" }} {MARK}')),
+         "chain[1].resistance.tolerence", "unknown key", "mean 'tolerance'?"),
+    case(edited(('"10 kohm"', f'{{ tolerance = "1 %" }} {MARK}')),
+         "chain[1].resistance", "without value", '{ value = "10 kohm", tolerance = "1 %" }'),
+    case(edited(('"10 kohm"', f'{{ value = "-10 kohm", tolerance = "1 %" }} {MARK}')),
+         "chain[1].resistance.value", 'given "-10 kohm"', "above 0 ohm"),
+    case(edited(('"10 kohm"', f'{{ value = "10.3 kohm", series = "E24" }} {MARK}')),
+         "chain[1].resistance.value", "series E24 of IEC 60063", "10 kohm and 11 kohm"),
+    case(edited(('"10 kohm"', f'{{ value = "10 kohm", series = "E10" }} {MARK}')),
+         "chain[1].resistance.series", 'given "E10"', "E3, E6, E12"),
+    case(edited(('"4.7 nF"', f'"4n7F" {MARK}')), "chain[1].capacitance", "unit or the letter",
+         'write "4n7"'),
+    case(edited(('"4.7 nF"', f'"4n7V" {MARK}')), "chain[1].capacitance", "no letter for a tol"),
+    case(edited(('"20 kHz"', f'{{ value = "20 kHz", tolerance = "1 %" }} {MARK}')),
+         "adc.rate", "given a table", "a frequency"),
+    case(edited(("[adc]", f'[environment]\ntemperature = "-300 degC" {MARK}\n\n[adc]')),
+         "environment.temperature", 'given "-300 degC"', "absolute zero", "-273.15 degC"),
+    case(edited(("[adc]", f"[environment]\ntemperature = -1 {MARK}\n\n[adc]")),
+         "environment.temperature", "given -1", "at least 0 K"),
+    case(edited(("[adc]", f'[environment]\ntemperature = "25 C" {MARK}\n\n[adc]')),
+         "environment.temperature", "unit of charge", "did you mean 'degC'?"),
+    case(edited(("[adc]", f'[environment]\ntemperatur = "25 degC" {MARK}\n\n[adc]')),
+         "environment.temperatur", "unknown key", "mean 'temperature'?"),
+    case(edited(('after = "1 V"', f'after = "1 degC" {MARK}')), "stimulus.after",
+         "unit of temperature", "a voltage"),
+    case(edited(('after = "1 V"', f'after = "1 V/s" {MARK}')), "stimulus.after", "dimension"),
+    case(stage('kind = "rtd"\nexcitation_current = "1 mA"').replace('"1 V"', f'"1 V" {MARK}'),
+         "stimulus.after", "unit of voltage", "'1 rtd' takes a temperature (K)"),
+    case(stage(f'kind = "thermal-lag" {MARK}\ntime_constant = 1').replace(MARK, "", 1)
+         .replace("[[chain]]", f"[[chain]] {MARK}"), "chain[1] (thermal-lag)",
+         "gives a temperature (K)", "the converter takes a voltage (V)", "put a sensor"),
+    case(stage(f'kind = "thermocouple"\ntype = "X" {MARK}').replace('"1 V"', "300"),
+         "chain[1].type (thermocouple)", 'one of "B", "E"'),
+]  # fmt: skip
+
 RATE = "waveform_rate = 1\n"
 
 SIMULATION = [
@@ -221,7 +265,7 @@ SYNTAX = [
     case(edited(("[[chain]]", "[chain]"), ("[[chain]]", f"[[chain]] {MARK}")), "given twice"),
 ]
 
-EVERY = [*TOP, *STIMULUS, *CHAIN, *ADC, *SIMULATION, *SYNTAX]
+EVERY = [*TOP, *STIMULUS, *CHAIN, *PARTS, *ADC, *SIMULATION, *SYNTAX]
 
 
 @pytest.mark.parametrize(("text", "parts"), EVERY)

@@ -96,25 +96,23 @@ def closed_loop(
             y = min(max(v + d, low), high)
         z, slope = rate * (target - y), (last - target) * share
         least, most = (target, last) if target < last else (last, target)
-        if z > up or z < -down or slope > up or slope < -down:
-            speed = up if z > 0.0 else -down
-            after = y + speed * dt
-            ending = rate * (last - after)
-            mode = UP if z > up and ending > up else DOWN
-            filled = after < high and after > low
-            if filled and ((z > up and ending > up) or (z < -down and ending < -down)):
-                y = after
-            else:
-                mode = FREE
-        # y moves towards the line, and its derivative towards the line's slope.
-        elif most < high and least > low and y < high and y > low:
-            mode = UNTOUCHED
-        elif y == high and least >= high:
+        mode = FREE
+        if y == high and least >= high:
             mode = HIGH
         elif y == low and most <= low:
             mode = LOW
-        else:
-            mode = FREE
+        elif z > up or z < -down or slope > up or slope < -down:
+            speed = up if z > 0.0 else -down
+            after = y + speed * dt
+            ending = rate * (last - after)
+            if after < high and after > low:
+                if z > up and ending > up:
+                    y, mode = after, UP
+                elif z < -down and ending < -down:
+                    y, mode = after, DOWN
+        # y moves towards the line, and its derivative towards the line's slope.
+        elif most < high and least > low and y < high and y > low:
+            mode = UNTOUCHED
         if mode >= 0:
             time[mode] += dt
             if piece[mode] < 0:

@@ -8,7 +8,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from frontend_sim.analog.block import Real
-from frontend_sim.analog.limits.limiter import Limiter, Segments, Touched
+from frontend_sim.analog.limits.limiter import Limiter, Segments, Touched, continuous
 from frontend_sim.analog.limits.sensor_curve import ENDS, left
 
 
@@ -51,8 +51,12 @@ class VariablePole(Limiter):
         middle = self.rate(0.5 * (span.begin + span.end))
         z = span.length * (ends + 4.0 * middle) / 6.0
         y = np.empty(len(z))
-        follow_line(float(state[1]), z, self.function(span.begin), self.function(span.end), y)
+        lines = self.function(span.begin), self.function(span.end)
+        if span.apart.shape[1]:
+            for s, begin in enumerate(span.apart.sum(axis=0)):
+                follow_line(begin, z[s : s + 1], lines[0][s:], lines[1][s:], y[s : s + 1])
+        else:
+            follow_line(float(state[1]), z, *lines, y)
         deviation = y - span.linear
-        before = np.where(span.jumps > 0, deviation[span.jumps - 1], state[0])
-        after = np.array([deviation[-1], y[-1]])
+        after, before = np.array([deviation[-1], y[-1]]), continuous(state, deviation, span.jumps)
         return after, deviation, before, left(span, self.low, self.high)

@@ -17,6 +17,12 @@ ON_AXIS = 1e-20
 """A part below this share of the magnitude is zero. Residues are exact, so what is left of a part
 that is truly zero is far smaller, and what is there by nature is far larger."""
 
+RESOLVED = 1e-15
+"""Imaginary parts below this share of the magnitude are not told from zero."""
+
+ALIKE = 1e-12
+"""Two conjugates differ by less than this share."""
+
 
 def roots_of(p: Polynomial) -> list[complex]:
     """Return the roots of a polynomial, complex ones as exact conjugates, equal ones repeated.
@@ -55,7 +61,8 @@ def _simple_roots(p: Polynomial) -> list[complex]:
             ratio = _newton(whole, here)
             if ratio == 0.0:
                 continue
-            pull = sum(1.0 / (here - other) for j, other in enumerate(x) if j != i)
+            # Two that meet do not push each other: their roots lie closer than doubles resolve.
+            pull = sum(1.0 / (here - other) for other in x if other != here)
             step = ratio / (1.0 - ratio * pull)
             x[i] = here - step
             settled = settled and abs(step) <= 1e-15 * abs(here)
@@ -115,16 +122,26 @@ def _newton(p: list[int], x: complex) -> complex:
 
 
 def _paired(roots: list[complex]) -> list[complex]:
-    """Set parts to zero that are zero, and make conjugates exact."""
-    real, upper, lower = [], [], 0
-    for root in roots:
-        if abs(root.imag) <= ON_AXIS * abs(root):
-            real.append(complex(root.real))
-        elif root.imag > 0.0:
-            upright = abs(root.real) <= ON_AXIS * abs(root)
-            upper.append(complex(0.0 if upright else root.real, root.imag))
-        else:
-            lower += 1
-    if lower != len(upper):
+    """Set parts to zero that are zero, and make conjugates exact.
+
+    A pair closer to the real axis than doubles resolve is a double real root.
+    """
+    real = [root.real for root in roots if abs(root.imag) <= RESOLVED * abs(root)]
+    upper = [root for root in roots if root.imag > RESOLVED * abs(root)]
+    lower = [root for root in roots if -root.imag > RESOLVED * abs(root)]
+    pairs = []
+    for root in upper:
+        match = min(lower, key=lambda other: abs(other.conjugate() - root), default=None)
+        if match is None or abs(match.conjugate() - root) > ALIKE * abs(root):
+            lower.append(root)
+            continue
+        lower.remove(match)
+        upright = abs(root.real) <= ON_AXIS * abs(root)
+        pairs.append(complex(0.0 if upright else root.real, root.imag))
+    if any(abs(root.imag) > ALIKE * abs(root) for root in lower):
         raise ModelError(f"the poles of a circuit of order {len(roots)} were not found in pairs")
-    return [*real, *(part for root in upper for part in (root, root.conjugate()))]
+    real += [root.real for root in lower]
+    return [
+        *(complex(root) for root in real),
+        *(part for root in pairs for part in (root, root.conjugate())),
+    ]

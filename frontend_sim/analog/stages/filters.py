@@ -10,7 +10,7 @@ from pydantic import Field, model_validator
 from frontend_sim.analog.block import Block
 from frontend_sim.analog.prototypes import Prototype, Response, filter_blocks
 from frontend_sim.analog.stages.base import AnyUnitStage
-from frontend_sim.quantities import Frequency
+from frontend_sim.quantities import PartFrequency
 
 Order = Annotated[int, Field(ge=1, le=12, strict=True)]
 
@@ -23,13 +23,13 @@ class Filter(AnyUnitStage):
         "poles"
     )
     response: Response = Field(default="low-pass", description="what the filter passes")
-    corner: Frequency | None = Field(
+    corner: PartFrequency | None = Field(
         default=None, description="corner frequency of a low-pass or high-pass response"
     )
-    lower_corner: Frequency | None = Field(
+    lower_corner: PartFrequency | None = Field(
         default=None, description="lower corner frequency of a band response"
     )
-    upper_corner: Frequency | None = Field(
+    upper_corner: PartFrequency | None = Field(
         default=None, description="upper corner frequency of a band response"
     )
 

@@ -10,7 +10,7 @@ from pydantic import Field
 from frontend_sim.analog.block import Block, second_order
 from frontend_sim.analog.factors import cascade
 from frontend_sim.analog.stages.base import AnyUnitStage
-from frontend_sim.quantities import Frequency, PositiveRatio, Ratio
+from frontend_sim.quantities import PartFrequency, PartRatio, PositivePartRatio
 
 SectionResponse = Literal["low-pass", "high-pass", "band-pass", "notch"]
 
@@ -26,10 +26,10 @@ class SecondOrder(AnyUnitStage):
     """
 
     kind: Literal["second-order"] = "second-order"
-    corner: Frequency = Field(description="natural frequency w0 / (2 pi)")
-    quality_factor: PositiveRatio = Field(description="quality factor Q")
+    corner: PartFrequency = Field(description="natural frequency w0 / (2 pi)")
+    quality_factor: PositivePartRatio = Field(description="quality factor Q")
     response: SectionResponse = Field(default="low-pass", description="what the section passes")
-    gain: Ratio = Field(default=1.0, description="gain in the pass band")
+    gain: PartRatio = Field(default=1.0, description="gain in the pass band")
 
     def blocks(self) -> tuple[Block, ...]:
         """Return one block of second order, or two of first order up to critical damping."""

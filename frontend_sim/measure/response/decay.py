@@ -89,12 +89,28 @@ class Decay:
         bounds all that comes after T. The maximum is taken over the march, which goes on until
         every mode t^k exp(-t/T_slowest) of the chain falls; a margin covers peaks between nodes.
         """
+        states = np.column_stack([chain.settled(1.0), chain.b])
+        return cls._from(chain, chain.c[-1], states, floor)
+
+    @classmethod
+    def to_rest(cls, chain: Chain, point: int, lack: Real, floor: float) -> Self:
+        """March a point of a chain whose input rests, from any state it is in.
+
+        Parameters
+        ----------
+        point : number of the point
+        lack : states in the end less the states now, shape (n,)
+        floor : see ``of``
+        """
+        return cls._from(chain, chain.c[point], np.column_stack([lack, -chain.a @ lack]), floor)
+
+    @classmethod
+    def _from(cls, chain: Chain, readout: Real, states: Real, floor: float) -> Self:
         if floor <= 0.0:
             raise ModelError(f"a band of {floor:g} is reached by no response; give one above zero")
-        states = np.column_stack([chain.settled(1.0), chain.b])
         slowest = 1.0 / float(np.min(-chain.poles.real))
         ladder = Ladder.of(chain.a, 1100.0 * max(chain.order, 1) * slowest)
-        return cls(*_march(ladder, chain.c[-1], chain.poles, states, slowest, floor))
+        return cls(*_march(ladder, readout, chain.poles, states, slowest, floor))
 
     def cells(self, last_first: bool, bounded_by: float = 0.0) -> Iterator[tuple[float, Samples]]:
         """Yield (bound, samples) stretch by stretch, in order of time or against it.

@@ -11,7 +11,8 @@ from typing import Any
 import numpy as np
 
 from frontend_sim.analog.discretize import METHODS
-from frontend_sim.converter.adc import Adc
+from frontend_sim.analog.stages.curved_sensor import CurvedSensor
+from frontend_sim.converter import AnyAdc
 from frontend_sim.measure.response.frequency_domain import FrequencyDomain
 from frontend_sim.measure.response.grid_model import GridModel
 from frontend_sim.measure.response.model_distance import Exact, ModelDistance, model_distance
@@ -33,6 +34,7 @@ class Inspection:
     ----------
     title : of the scenario
     adc : converter for whose rate and LSB the numbers are
+    unit : SI unit of the stimulus; responses are in V for one of it
     order : number of states of the chain
     time : step response: start, end, shape, settling
     frequency : gain, corners, group delay, attenuation, noise bandwidth
@@ -44,7 +46,8 @@ class Inspection:
     """
 
     title: str
-    adc: Adc
+    adc: AnyAdc
+    unit: str
     order: int
     time: TimeDomain
     frequency: FrequencyDomain
@@ -83,6 +86,7 @@ def inspect_scenario(scenario: Scenario) -> Inspection:
     return Inspection(
         scenario.title,
         adc,
+        scenario.stimulus_unit,
         chain.order,
         time,
         frequency,
@@ -122,7 +126,7 @@ def _models(
 
 
 def _notes(scenario: Scenario, time: TimeDomain, frequency: FrequencyDomain) -> tuple[str, ...]:
-    notes = [*_loading(scenario)]
+    notes = [*_loading(scenario), *_curves(scenario)]
     if time.end is None:
         notes.append("a pair of poles without damping: a step rings for ever and never settles")
     elif math.isinf(time.end):
@@ -145,6 +149,16 @@ def _loading(scenario: Scenario) -> list[str]:
         "taken as buffered; without a buffer between them they load each other in a real circuit"
         for place, (before, after) in enumerate(pairwise(scenario.chain), start=1)
         if before.kind in PASSIVE and after.kind in PASSIVE
+    ]
+
+
+def _curves(scenario: Scenario) -> list[str]:
+    """Tell of sensors whose curve is taken as its tangent."""
+    return [
+        f"{stage.label(place)!r} is a curve, taken as its tangent at "
+        f"{stage.shown(stage.operating_point())}; a run takes the curve itself"
+        for place, stage in enumerate(scenario.chain, start=1)
+        if isinstance(stage, CurvedSensor)
     ]
 
 

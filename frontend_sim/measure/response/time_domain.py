@@ -6,7 +6,7 @@ import math
 from dataclasses import dataclass
 from typing import Self
 
-from frontend_sim.converter.adc import Adc
+from frontend_sim.converter import AnyAdc
 from frontend_sim.measure.response.decay import Decay
 from frontend_sim.measure.response.settling import Settling, settling_time
 from frontend_sim.measure.response.shape import SEARCHED, Shape, shape_of
@@ -45,7 +45,7 @@ class TimeDomain:
     settlings: tuple[Settling, ...]
 
     @classmethod
-    def of(cls, response: StepResponse, largest: float, adc: Adc) -> Self:
+    def of(cls, response: StepResponse, largest: float, adc: AnyAdc) -> Self:
         """Measure a step response.
 
         Parameters

@@ -31,7 +31,5 @@ class DroopCheck(PointCheck):
     @model_validator(mode="after")
     def _in_order(self) -> Self:
         if not self.start < self.stop:
-            raise fault(
-                ["stop"], f"stop {self.stop:g} s must lie behind start {self.start:g} s"
-            )
+            raise fault(["stop"], f"stop {self.stop:g} s must lie behind start {self.start:g} s")
         return self

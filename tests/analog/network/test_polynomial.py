@@ -59,7 +59,9 @@ def test_common_factor_holds_what_was_put_in(
 
 def test_strangers_share_nothing() -> None:
     """(s + 1)(s + 2) and (s + 3): the factor is one; with zero it is the other one."""
-    assert common_factor((Fraction(2), Fraction(3), Fraction(1)), (Fraction(3), Fraction(1))) == (1,)
+    assert common_factor((Fraction(2), Fraction(3), Fraction(1)), (Fraction(3), Fraction(1))) == (
+        1,
+    )
     assert common_factor((Fraction(4), Fraction(2)), ()) == (2, 1)
 
 

@@ -44,8 +44,13 @@ def _numerators(poles: list[complex]) -> dict[str, tuple[Fraction, ...]]:
 
 @pytest.mark.parametrize("name", POLES)
 def test_columns_give_their_transfer_functions(name: str) -> None:
-    """c (s - a)^-1 b + d of the rounded matrices at 60 digits, to 1e-14 of the largest value."""
+    """c (s - a)^-1 b + d of the rounded matrices at 60 digits, to 1e-14 of the largest value.
+
+    The last bit of |p| moves a resonance by that share of it, so a sharp one may be off by Q bits.
+    """
     poles = POLES[name]
+    sharpest = max((abs(p) / -p.real for p in poles if p.real < 0.0), default=1.0)
+    share = 1e-14 + 2e-16 * sharpest
     numerators = _numerators(poles)
     a, c = state_matrix(poles)
     columns = input_columns(poles, numerators)
@@ -57,7 +62,7 @@ def test_columns_give_their_transfer_functions(name: str) -> None:
             found = np.array(
                 [complex(sum(row[i] * b[i] for i in range(len(b))) + d) for row in inverses]
             )
-            assert np.max(np.abs(found - true)) <= 1e-14 * np.max(np.abs(true))
+            assert np.max(np.abs(found - true)) <= share * np.max(np.abs(true))
 
 
 def _inverse(a: Any, c: Any, s: complex) -> Any:

@@ -57,6 +57,14 @@ def test_neighbours_are_told_apart() -> None:
     _assert_found([complex(-1e-9, 1.0), complex(-1e-9, 1.0000001)])
 
 
+def test_neighbours_that_no_double_tells_apart() -> None:
+    """Two real roots, or a pair, a relative 1e-20 apart: a double root to the last digits."""
+    gap = Fraction(1, 10**20)
+    for constant in (1 - gap * gap, 1 + gap * gap):
+        found = roots_of((constant, Fraction(2), Fraction(1)))
+        np.testing.assert_allclose(found, [-1.0, -1.0], rtol=2e-15)
+
+
 def test_the_axis_is_kept() -> None:
     """Real parts of zero stay zero, and small ones keep their own digits."""
     found = roots_of(_product([1j, 3j, complex(-1e-15, 2.0)]))

@@ -87,7 +87,7 @@ def test_a_differentiator_is_refused() -> None:
     """A capacitor into an ideal amplifier has a gain without bound; a bandwidth bounds it."""
     parts = (SOURCE, Capacitor("in", "minus", 1e-6), Resistor("r", "minus", "out", 1e3))
     ideal = Amplifier("amplifier", (("minus", -1.0),), "out", OpenLoop())
-    with pytest.raises(ModelError, match="grows without bound.*gain_bandwidth"):
+    with pytest.raises(ModelError, match=r"grows without bound.*gain_bandwidth"):
         solve(Circuit((*parts, ideal), "out"))
     real = Amplifier("amplifier", (("minus", -1.0),), "out", OpenLoop(gain_bandwidth=1e6))
     assert solve(Circuit((*parts, real), "out")).block.order == 2
@@ -133,6 +133,8 @@ def test_a_current_becomes_a_voltage() -> None:
 
 def test_the_same_circuit_is_solved_once() -> None:
     """Solutions are remembered by the values of the parts."""
-    circuit = Circuit((SOURCE, Resistor("r", "in", "out", 1e3), Capacitor("out", GROUND, 1.0)), "out")
+    circuit = Circuit(
+        (SOURCE, Resistor("r", "in", "out", 1e3), Capacitor("out", GROUND, 1.0)), "out"
+    )
     again = Circuit(tuple(circuit.parts), "out")
     assert solve(circuit) is solve(again)

@@ -20,7 +20,7 @@ from frontend_sim.analog.stages.base import Stage
 Complex = NDArray[np.complex128]
 Formula = Callable[[Complex], Any]
 
-SHARED = {"base", "filters", "amplifier"}
+SHARED = {"base", "filters", "amplifier", "amplifier_stage", "network_stage", "active_filter"}
 """Modules of the folder that are no kind, among others."""
 
 SCENARIOS = Path(__file__).parents[3] / "scenarios" / "stages"
@@ -80,6 +80,27 @@ ROWS: list[tuple[str, dict[str, Any], Formula]] = [
     ("inverting-amplifier",
      {"feedback_resistance": 1e4, "input_resistance": 1e4, "gain_bandwidth": 2e3},
      lambda s: -1 / (1 + s * 2 / (2 * np.pi * 2e3))),
+    ("buffer", {"gain_bandwidth": F}, lambda s: 1 / (1 + s / W)),
+    ("difference-amplifier",
+     {"input_resistance": 1e3, "feedback_resistance": 4e3, "noninverting_input_resistance": 1e3,
+      "reference_resistance": 4e3}, lambda s: 4 + 0 * s),
+    ("transimpedance-amplifier", {"feedback_resistance": 1e5, "feedback_capacitance": 2e-9},
+     lambda s: -1e5 / (1 + s * 2e-4)),
+    ("ladder",
+     {"element": 2 * [{"place": "series", "resistance": 1e4},
+                      {"place": "shunt", "capacitance": 1e-8}]},
+     lambda s: 1 / (1 + 3e-4 * s + (1e-4 * s) ** 2)),
+    ("sallen-key",
+     {"resistance_1": 1e4, "resistance_2": 1e4, "capacitance_1": 2e-8, "capacitance_2": 1e-8},
+     lambda s: 1 / (1 + 2e-4 * s + 2 * (1e-4 * s) ** 2)),
+    ("multiple-feedback",
+     {"response": "band-pass", "input_resistance": 1e4, "feedback_resistance": 8e4,
+      "feedback_capacitance": 1e-8, "middle_capacitance": 1e-8},
+     lambda s: -8e-4 * s / (1 + 2e-4 * s + 8 * (1e-4 * s) ** 2)),
+    ("twin-t-notch",
+     {"resistance_1": 1e4, "resistance_2": 1e4, "shunt_resistance": 5e3, "capacitance_1": 1e-8,
+      "capacitance_2": 1e-8, "shunt_capacitance": 2e-8},
+     lambda s: (s * s + 1e8) / (s * s + 4e4 * s + 1e8)),
     *(("second-order", {"corner": F, "quality_factor": q, "gain": 2},
        lambda s, q=q: 2 * W * W / _section(s, q)) for q in (0.2, 0.5, 0.51, 5.0, 1e3)),
     ("second-order", {"corner": F, "quality_factor": 0.3, "response": "high-pass"},

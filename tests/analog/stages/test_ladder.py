@@ -106,8 +106,10 @@ ROWS: list[tuple[Values, float]] = [
     (DECOUPLING, 1e3),
     # A capacitance straight across the source, two in parallel, two inductors in series.
     ({"source_resistance": 600.0, "load_resistance": 1e4,
-      "element": [{"place": "shunt", "capacitance": 1e-9}, {"place": "shunt", "capacitance": 2e-9},
-                  {"place": "series", "inductance": 1e-3}, {"place": "series", "inductance": 2e-3}]},
+      "element": [{"place": "shunt", "capacitance": 1e-9},
+                  {"place": "shunt", "capacitance": 2e-9},
+                  {"place": "series", "inductance": 1e-3},
+                  {"place": "series", "inductance": 2e-3}]},
      5e4),
     ({"load_resistance": 1e4,
       "element": [{"place": "shunt", "capacitance": 1e-9}, {"place": "series", "resistance": 1e3},

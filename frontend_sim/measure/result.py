@@ -8,6 +8,8 @@ from typing import Literal
 
 Verdict = Literal["none", "holds", "fails"]
 
+Bound = Literal["", "at most", "at least"]
+
 
 @dataclass(frozen=True)
 class Result:
@@ -16,12 +18,14 @@ class Result:
     Parameters
     ----------
     name : what was measured
-    value : in ``unit``; None where there is none
-    unit : of value, limit and margin; "1" for a plain number
+    value : in ``unit``; None where there is none, which no check passes
+    unit : of value, limit and margin; "1" for a plain number or a share
     limit : what the value is held against; None for a mere measure
     margin : how far the value stays on the right side of the limit, below zero where it fails
     verdict : "holds" or "fails"; "none" for a mere measure
-    method : how the value was found
+    method : how the value was found, with its reference; of a check without a value, why not
+    bound : whether the limit is the highest or the lowest value allowed; "" for a mere measure
+    advice : of a check that fails, what to change first
     """
 
     name: str
@@ -31,6 +35,8 @@ class Result:
     margin: float | None = None
     verdict: Verdict = "none"
     method: str = ""
+    bound: Bound = ""
+    advice: str = ""
 
 
 def verdict_of(results: Iterable[Result]) -> Verdict:
