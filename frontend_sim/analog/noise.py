@@ -75,8 +75,8 @@ class NoiseModel:
     ----------
     a : shape (n, n) [1/s];  b : shape (n, q) [V/sqrt(s)];  c : shape (n,) [1]
     owner : for each of the q processes, the number of the source in ``names``
-    unbounded : sources that are left out, since their white noise reaches the point with nothing
-        that limits its bandwidth, so that its power is infinite
+    unbounded : sources whose white noise has a direct way to the point, with nothing that limits
+        its bandwidth, so that its power is infinite; of these the direct part is left out
     """
 
     a: Real
@@ -100,14 +100,13 @@ def model_of(
     lowest : frequency down to which 1/f noise is made [Hz]
     """
     unbounded = tuple(s.name for s, _, direct in inputs if s.density > 0.0 and direct != 0.0)
-    inputs = [row for row in inputs if row[0].name not in unbounded]
     n = len(a)
     banks = [(source, _bank(source, lowest)) for source, _, _ in inputs]
     size = n + sum(len(rates) for _, rates in banks)
     whole, row = np.zeros((size, size)), np.zeros(size)
     whole[:n, :n], row[:n] = a, c
     columns, owner, at = [], [], n
-    for number, ((source, column, _), (_, rates)) in enumerate(
+    for number, ((source, column, direct), (_, rates)) in enumerate(
         zip(inputs, banks, strict=True)
     ):
         white = np.zeros(size)
@@ -120,6 +119,7 @@ def model_of(
             variance = source.density**2 * source.corner * math.log(10.0) / POLES_PER_DECADE
             whole[at, at] = -rate
             whole[:n, at] = column
+            row[at] = direct
             driven = np.zeros(size)
             driven[at] = math.sqrt(2.0 * variance * rate)
             columns.append(driven)

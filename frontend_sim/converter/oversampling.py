@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from functools import lru_cache
 from typing import TYPE_CHECKING, Literal, Self
 
 from pydantic import model_validator
@@ -17,16 +18,21 @@ if TYPE_CHECKING:
     from frontend_sim.converter.sinc_quantities import SincQuantities
 
 
+@lru_cache(maxsize=16)
+def _sinc(order: int, ratio: int, modulator_rate: float) -> SincFilter:
+    """Return a filter, which works its weights out once."""
+    return SincFilter(order, ratio, modulator_rate)
+
+
 class OversamplingAdc(Converter, Modulator):
     """A modulator whose samples pass a sinc^K filter before they are rounded.
 
     H(f) = (sin(pi R f / f_m) / (R sin(pi f / f_m)))^K, f_m = modulator_rate (1 + rate_error);
-    LSB = (high - low) / 2^bits. The instant of a code is that of its newest sample.
+    LSB = (high - low) / 2^bits. The instant of a code is that of its newest sample. The clock's
+    keys are about the modulator's samples; input_noise is that of a code, from white noise of them.
     """
 
     kind: Literal["oversampling"] = "oversampling"
-
-    # input_noise is that of a code; keys about the clock are about the modulator's samples.
 
     @model_validator(mode="after")
     def _instants_keep_their_order(self) -> Self:
@@ -41,7 +47,7 @@ class OversamplingAdc(Converter, Modulator):
     @property
     def sinc(self) -> SincFilter:
         """The filter, at the rate that the modulator really has."""
-        return SincFilter(self.order, self.ratio, self.modulator_rate * self.tempo)
+        return _sinc(self.order, self.ratio, self.modulator_rate * self.tempo)
 
     @property
     def continuous(self) -> bool:

@@ -49,7 +49,7 @@ class NoiseBudget:
     rms : of everything together, at the pin [V];  lsb : the same [LSB]
     folded : of the part above half the conversion rate [V]
     lowest : frequency down to which 1/f noise counts [Hz]
-    unbounded : sources that are left out: nothing limits their bandwidth before the pin
+    unbounded : sources with a part whose bandwidth nothing limits before the pin; it is left out
     """
 
     rows: tuple[NoiseRow, ...]

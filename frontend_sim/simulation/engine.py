@@ -122,7 +122,7 @@ class Simulation:
                 until = self._waveform_until(waveform.count, stop)
                 while waveform_done < until:
                     upto = min(waveform_done + self._block, until)
-                    times = np.arange(waveform_done, upto) / self._waveform_rate
+                    times = np.arange(waveform_done, upto, dtype=np.float64) / self._waveform_rate
                     waveform_states, values = waveform.model.advance(
                         waveform_states, waveform_done, times
                     )
@@ -200,9 +200,9 @@ class Simulation:
         model = self.chain.noise_model(0.1 / self.duration)
         if model.unbounded:
             self.notes += (
-                "nothing limits the bandwidth of these noise sources before the converter, so they "
-                f"are left out: {', '.join(model.unbounded)}; put a filter behind them, or give "
-                "the amplifier a gain_bandwidth",
+                "nothing limits the bandwidth of these noise sources before the converter, so the "
+                f"part that reaches it directly is left out: {', '.join(model.unbounded)}; put a "
+                "filter behind them, or give the amplifier a gain_bandwidth",
             )
         if not model.names:
             return None

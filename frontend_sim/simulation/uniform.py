@@ -210,6 +210,11 @@ class UniformPath:
         """What the outputs see of u itself when they are written in x~, shape (p,)."""
         return np.asarray(self.outputs.d + self.outputs.c @ self.model.stop)
 
+    @cached_property
+    def _static(self) -> frozenset[int]:
+        """Outputs that see no state, only u."""
+        return frozenset(np.flatnonzero(~np.any(self.outputs.c, axis=1)).tolist())
+
     def _every_stride(self, x: Real, points: Real, y: Real) -> None:
         """Fill in the outputs at every stride-th point, the first one stride after points[0]."""
         sums = self._sums(points[:-1].reshape(-1, self.stride))
@@ -232,7 +237,7 @@ class UniformPath:
         sums = rows @ matrices.weights
         kernels.recur(x, matrices.step[None], self._reach, which, sums, states[1:])
         for i, feed in enumerate(self._feed):
-            if not np.any(self.outputs.c[i]):
+            if i in self._static:
                 np.multiply(points[1:], feed, out=y[i])
                 continue
             part = y[i].reshape(-1, ROW)

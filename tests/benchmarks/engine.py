@@ -76,7 +76,8 @@ def chain_rows(points: int, runs: int) -> list[Row]:
             states = model.start()
             count = int(points / POINT_RATE * rate)
             for start in range(0, count, BLOCK):
-                instants = np.arange(start, min(start + BLOCK, count)) / rate
+                instants = np.arange(start, min(start + BLOCK, count), dtype=np.float64)
+                instants /= rate
                 states, _ = model.advance(states, start, instants)
 
         return work

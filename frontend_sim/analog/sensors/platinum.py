@@ -28,11 +28,11 @@ def resistance_ratio(temperature: Real) -> Real:
     """
     t = np.asarray(temperature, dtype=np.float64) - ZERO_CELSIUS
     cold = np.minimum(t, 0.0)
-    return np.asarray(1.0 + t * (A + B * t) + C * (cold - 100.0) * cold**3)
+    return np.asarray(1.0 + t * (A + B * t) + C * (cold - 100.0) * cold * cold * cold)
 
 
 def ratio_slope(temperature: Real) -> Real:
     """Return the derivative of ``resistance_ratio`` [1/K] at a temperature [K]."""
     t = np.asarray(temperature, dtype=np.float64) - ZERO_CELSIUS
     cold = np.minimum(t, 0.0)
-    return np.asarray(A + 2.0 * B * t + C * (4.0 * cold - 300.0) * cold**2)
+    return np.asarray(A + 2.0 * B * t + C * (4.0 * cold - 300.0) * cold * cold)

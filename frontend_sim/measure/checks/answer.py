@@ -1,0 +1,91 @@
+"""What the evaluation of one check gives, before it has a name."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Callable
+from dataclasses import dataclass, replace
+
+from frontend_sim.measure.result import Bound, Result
+from frontend_sim.quantities import Limit
+
+SENSES: dict[Bound, float] = {"at most": 1.0, "at least": -1.0}
+
+
+@dataclass(frozen=True)
+class Answer:
+    """A value against its limit.
+
+    Parameters
+    ----------
+    value : in ``unit``; infinite where it is beyond all bounds
+    limit, bound : what it is held against
+    method : how it was found, with its reference
+    advice : says what to change first if the check fails; called only then
+    beside : numbers that were found on the way, without verdict
+    """
+
+    value: float
+    unit: str
+    limit: float
+    bound: Bound
+    method: str
+    advice: Callable[[], str] = str
+    beside: tuple[Result, ...] = ()
+
+    @property
+    def margin(self) -> float:
+        """How far the value stays on the right side of its limit, below zero where it fails."""
+        return SENSES[self.bound] * (self.limit - self.value)
+
+    def results(self, name: str) -> tuple[Result, ...]:
+        """Return the verdict, and what was found beside it, under the name of the check."""
+        # Not a number is neither above nor below: it holds nothing.
+        holds = self.margin >= 0.0
+        verdict = Result(
+            name,
+            self.value,
+            self.unit,
+            self.limit,
+            self.margin,
+            "holds" if holds else "fails",
+            self.method,
+            self.bound,
+            "" if holds else self.advice(),
+        )
+        return (verdict, *(replace(row, name=f"{name}: {row.name}") for row in self.beside))
+
+
+def nearer(
+    value: float,
+    least: float | None,
+    most: float | None,
+    unit: str,
+    method: str,
+    advice: Callable[[Bound], str],
+) -> Answer:
+    """Return a value against the nearer, or the more broken, of two limits; one may be None."""
+    given: list[tuple[float, Bound]] = []
+    if least is not None:
+        given.append((least, "at least"))
+    if most is not None:
+        given.append((most, "at most"))
+    found = [
+        Answer(value, unit, limit, bound, method, lambda side=bound: advice(side))  # type: ignore[misc]  # a default that binds the loop's value
+        for limit, bound in given
+    ]
+    return min(found, key=lambda answer: answer.margin)
+
+
+def scaled(limit: float, volts: float, lsb: float, whole: float) -> tuple[float, str]:
+    """Return a voltage in the unit of a limit, and that unit.
+
+    Parameters
+    ----------
+    limit : as ``Limit``
+    volts : the voltage [V]
+    lsb : width of a code [V];  whole : what a share is a share of [V]
+    """
+    assert isinstance(limit, Limit)  # every field of this kind reads one
+    scale = limit.scale(lsb, whole)
+    return (volts / scale if scale > 0.0 else math.inf), limit.unit
