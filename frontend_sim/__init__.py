@@ -36,7 +36,9 @@ if TYPE_CHECKING:
         RecordingError,
         ScenarioError,
     )
+    from frontend_sim.measure.checks import evaluate_checks
     from frontend_sim.measure.response import Inspection, inspect_scenario
+    from frontend_sim.measure.result import Result
     from frontend_sim.present import plot_inspection, plot_run
     from frontend_sim.quantities import Part, Preferred, preferred
     from frontend_sim.scenario import (
@@ -70,6 +72,7 @@ _HOME = {
     "Record": "archive",
     "RecordError": "errors",
     "RecordingError": "errors",
+    "Result": "measure.result",
     "Run": "simulation",
     "RunBlock": "simulation",
     "Scenario": "scenario",
@@ -79,6 +82,7 @@ _HOME = {
     "SpreadPart": "scenario",
     "chain_of": "analog.chain",
     "check_scenario": "scenario",
+    "evaluate_checks": "measure.checks",
     "circuit_of": "scenario",
     "inspect_scenario": "measure.response",
     "json_schema": "scenario",
@@ -113,6 +117,7 @@ __all__ = [
     "Record",
     "RecordError",
     "RecordingError",
+    "Result",
     "Run",
     "RunBlock",
     "Scenario",
@@ -123,6 +128,7 @@ __all__ = [
     "chain_of",
     "check_scenario",
     "circuit_of",
+    "evaluate_checks",
     "inspect_scenario",
     "json_schema",
     "load_scenario",

@@ -3,8 +3,8 @@
 from frontend_sim.archive.opening import open_record
 from frontend_sim.archive.record import Record
 from frontend_sim.archive.repeat import rerun, rerun_scenario
-from frontend_sim.measure.result import Result, Verdict
 from frontend_sim.archive.save import record_run, save_record
+from frontend_sim.measure.result import Result, Verdict
 
 __all__ = [
     "Record",

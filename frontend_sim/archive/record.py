@@ -19,11 +19,11 @@ from frontend_sim.archive.grid import grid_of
 from frontend_sim.archive.names import point_name
 from frontend_sim.archive.reading import reading
 from frontend_sim.archive.rebuild import first_there, rebuild
-from frontend_sim.measure.result import Result, Verdict
 from frontend_sim.archive.table import get_table
 from frontend_sim.archive.verification import verify
 from frontend_sim.archive.waveform import Waveforms
 from frontend_sim.errors import RecordError
+from frontend_sim.measure.result import Result, Verdict
 from frontend_sim.scenario.model import Scenario
 from frontend_sim.simulation.run import GridReport, Run, RunBlock
 

@@ -11,11 +11,13 @@ from typing import Protocol
 from frontend_sim.archive.grid import grid_results
 from frontend_sim.archive.opening import open_record
 from frontend_sim.archive.provenance import document, refuse_changed, source_files
-from frontend_sim.measure.result import Result
 from frontend_sim.archive.target import new_file, usable_target
 from frontend_sim.archive.writer import Writer
 from frontend_sim.errors import OutputError, RecordError
+from frontend_sim.measure.checks import Keeper, evaluated, refuse_impossible
+from frontend_sim.measure.result import Result
 from frontend_sim.scenario.model import Scenario
+from frontend_sim.simulation import Simulation
 from frontend_sim.simulation.run import GridReport, Run, RunBlock
 
 Progress = Callable[[float], None]
@@ -51,6 +53,9 @@ def record_run(
 ) -> Path:
     """Run a simulation and store it as it goes on; memory is bounded by its block.
 
+    The checks of the scenario are evaluated, and their verdicts are stored. They alone need more
+    memory: up to 25 bytes for each conversion, see ``measure.checks.Keeper``.
+
     The record is written to a temporary name in the same directory, read back whole, and renamed:
     it exists complete or not at all.
 
@@ -60,8 +65,8 @@ def record_run(
     path : where the record goes
     overwrite : replace a record that is there; anything else is never replaced
     progress : called with the share that is done, from 0 to 1
-    results : rows of ``/measure`` and ``/check``, read after the last block, so that a generator
-        can compute them from it
+    results : further rows of ``/measure`` and ``/check``, read after the last block, so that a
+        generator can compute them from it
     inputs : further files that must not be replaced, for instance the scenario's; the files of
         the stimulus are known
 
@@ -74,18 +79,24 @@ def record_run(
     OutputError
         If the record cannot be written there.
     InputError
-        If the scenario cannot be run, or a file of the stimulus changes meanwhile.
+        If the scenario cannot be run, no run of it could answer one of its checks, or a file of
+        the stimulus changes meanwhile.
     """
     scenario = simulation.scenario
+    prepared = simulation if isinstance(simulation, Simulation) else None
     target = usable_target(path, overwrite, [*scenario.stimulus.files(), *inputs])
-    files = source_files(scenario)
+    refuse_impossible(scenario, prepared=prepared)
+    keeper, files = Keeper(scenario), source_files(scenario)
     resolved = document(scenario, files, target.parent)
     with new_file(target, path, overwrite) as temporary:
         with Writer(temporary, path, scenario, resolved) as writer:
             for block in simulation.blocks(progress):
                 writer.append(block)
+                keeper.add(block)
             refuse_changed(files)
-            writer.finish(simulation.notes, [*grid_results(simulation.grid), *results])
+            checked = evaluated(keeper, simulation)
+            rows = [*grid_results(simulation.grid), *checked, *results]
+            writer.finish(simulation.notes, rows)
         _read_back(temporary, path)
     return target
 

@@ -9,8 +9,8 @@ from typing import TYPE_CHECKING, Any, Literal, get_args
 
 import numpy as np
 
-from frontend_sim.measure.result import Result, Verdict
 from frontend_sim.archive.text import clean, describe
+from frontend_sim.measure.result import Result, Verdict
 
 if TYPE_CHECKING:
     import h5py

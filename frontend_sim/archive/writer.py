@@ -16,11 +16,11 @@ from frontend_sim.archive.interrupts import uninterrupted
 from frontend_sim.archive.inventory import inventory
 from frontend_sim.archive.names import dataset_name
 from frontend_sim.archive.provenance import PROGRAM
-from frontend_sim.measure.result import Result, verdict_of
 from frontend_sim.archive.sink import Sink
 from frontend_sim.archive.table import put_table
 from frontend_sim.archive.target import writing
 from frontend_sim.archive.text import clean, put_text
+from frontend_sim.measure.result import Result, verdict_of
 from frontend_sim.quantities import SIGNALS
 from frontend_sim.scenario.model import Scenario
 from frontend_sim.scenario.signal import PIN

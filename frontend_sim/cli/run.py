@@ -38,11 +38,13 @@ def command(
     Exit status: 0 all checks hold, 1 a check fails, 2 the input is wrong.
     """
     from frontend_sim.archive import open_record, record_run
+    from frontend_sim.measure.checks import refuse_impossible
     from frontend_sim.present import check_plot_target
     from frontend_sim.scenario import load_scenario
     from frontend_sim.simulation import Simulation
 
     values = load_scenario(scenario)
+    refuse_impossible(values, str(scenario))
     target = output or Path(f"{scenario.stem}.h5")
     if plot is not None:
         check_plot_target(plot, overwrite)

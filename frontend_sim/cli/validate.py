@@ -31,10 +31,11 @@ def command(files: tuple[Path, ...], as_json: bool) -> int:
 
 
 def _fault_of(file: Path) -> str | None:
+    from frontend_sim.measure.checks import refuse_impossible
     from frontend_sim.scenario import load_scenario
 
     try:
-        load_scenario(file)
+        refuse_impossible(load_scenario(file), str(file))
     except InputError as error:
         return str(error)
     return None

@@ -15,6 +15,7 @@ from frontend_sim.present.figure_file import check_plot_target, new_figure, save
 from frontend_sim.present.numbers import engineering, prefix_of
 from frontend_sim.present.run_like import RunLike
 from frontend_sim.present.run_panels import Conversions, draw_codes, draw_difference, draw_waveforms
+from frontend_sim.present.settling_panel import draw_settling, settling_views
 from frontend_sim.scenario.signal import PIN
 
 if TYPE_CHECKING:
@@ -28,8 +29,10 @@ def plot_run(run: RunLike, path: str | os.PathLike[str], overwrite: bool = False
     """Draw a run, or a record, into a PNG or SVG file.
 
     Pin voltage and the codes read back, with the limits of the ADC's range and marks where it was
-    exceeded; the difference of the two in LSB; and the waveforms, where some are kept. A long run
-    is reduced to the lowest and the highest value of each column of pixels, so no peak is lost.
+    exceeded; the difference of the two in LSB; the waveforms, where some are kept; and for each
+    settling check the distance from the end in LSB on a logarithmic axis, with the band, the last
+    exit and the time that is granted. A long run is reduced to the lowest and the highest value of
+    each column of pixels, so no peak is lost.
 
     Parameters
     ----------
@@ -55,23 +58,40 @@ def run_figure(run: RunLike) -> Figure:
     adc, time = run.scenario.adc, run.time
     waveform_time = run.waveform_time if len(run.waveform) else np.empty(0)
     by_unit = _by_unit(run) if len(waveform_time) else {}
+    views = settling_views(run)
     heights = [3.0, 1.2, *(2.2 for _ in by_unit)]
-    figure = new_figure(10.0, 1.9 + 1.1 * sum(heights))
-    axes: list[Axes] = list(figure.subplots(len(heights), 1, sharex=True, height_ratios=heights))
+    figure = new_figure(10.0, 1.9 + 1.1 * (sum(heights) + 2.4 * len(views)))
+    axes = _rows(figure, heights, len(views))
     last = max((float(times[-1]) for times in (time, waveform_time) if len(times)), default=0.0)
     factor, letter = prefix_of(last)
     conversions = Conversions(adc, factor * time, run.pin, run.voltage, run.overrange)
     draw_codes(axes[0], conversions)
     draw_difference(axes[1], conversions)
-    for panel, (unit, waveform) in zip(axes[2:], by_unit.items(), strict=True):
+    last_row = len(heights)
+    for panel, (unit, waveform) in zip(axes[2:last_row], by_unit.items(), strict=True):
         draw_waveforms(panel, factor * waveform_time, waveform, unit)
-    axes[-1].set_xlabel(f"time [{letter}s]")
+    axes[last_row - 1].set_xlabel(f"time [{letter}s]")
+    for panel, view in zip(axes[last_row:], views, strict=True):
+        draw_settling(panel, view)
     beyond = int(np.count_nonzero(conversions.overrange))
     figure.suptitle(_title(run.scenario.title, adc, len(time), beyond))
     for each in axes:
         each.grid(True, color="0.9", linewidth=0.6)
         each.set_axisbelow(True)
     return figure
+
+
+def _rows(figure: Figure, heights: list[float], settlings: int) -> list[Axes]:
+    """Return panels below each other; all but those of settling checks share the axis of time."""
+    every = [*heights, *(2.4 for _ in range(settlings))]
+    axes: list[Axes] = list(
+        figure.subplots(len(every), 1, height_ratios=every, squeeze=False)[:, 0]
+    )
+    for panel in axes[1 : len(heights)]:
+        panel.sharex(axes[0])
+    for panel in axes[: len(heights) - 1]:
+        panel.tick_params(labelbottom=False)
+    return axes
 
 
 def _by_unit(run: RunLike) -> dict[str, dict[str, Real]]:

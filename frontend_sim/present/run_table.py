@@ -7,10 +7,13 @@ from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
+from frontend_sim.measure.result import verdict_of
 from frontend_sim.present.numbers import engineering, fixed, level, plain
+from frontend_sim.present.result_table import result_tables
 from frontend_sim.present.run_like import RunLike
 
 if TYPE_CHECKING:
+    from rich.console import RenderableType
     from rich.table import Table
 
 
@@ -41,6 +44,7 @@ def run_summary(run: RunLike) -> dict[str, Any]:
         "difference_rms": _rms(difference),
         "difference_largest": float(np.max(np.abs(difference))) if len(difference) else None,
         "grid": _grid(run),
+        "verdict": verdict_of(getattr(run, "results", ())),
         "results": [_plain(vars(result)) for result in getattr(run, "results", ())],
         "notes": list(run.notes),
     }
@@ -80,13 +84,10 @@ def _plain(values: dict[str, Any]) -> dict[str, Any]:
     }
 
 
-def run_tables(run: RunLike) -> tuple[Table, ...]:
+def run_tables(run: RunLike) -> tuple[RenderableType, ...]:
     """Return the tables of a run for the terminal: the run, and its results where it has some."""
-    summary = run_summary(run)
-    tables = [_main_table(summary)]
-    if summary["results"]:
-        tables.append(_result_table(summary["results"]))
-    return tuple(tables)
+    results = [vars(result) for result in getattr(run, "results", ())]
+    return (_main_table(run_summary(run)), *result_tables(results))
 
 
 def run_table(run: RunLike) -> Table:
@@ -142,30 +143,3 @@ def _stimulus_rows(stimulus: dict[str, Any] | None) -> list[tuple[str, str]]:
         (f"stimulus: {name}", level(stimulus[name], unit, 5))
         for name in ("lowest", "mean", "highest")
     ]
-
-
-def _result_table(results: list[dict[str, Any]]) -> Table:
-    from rich.table import Table
-
-    table = Table(title="Measures and checks", title_justify="left")
-    for name in ("name", "value", "limit", "margin", "verdict", "method"):
-        table.add_column(name, justify="right" if name in ("value", "limit", "margin") else "left")
-    colour = {"fails": "bold red", "holds": "green"}
-    for row in results:
-        verdict = "" if row["verdict"] == "none" else row["verdict"]
-        numbers = [_quantity(row[name], row["unit"]) for name in ("value", "limit", "margin")]
-        style = colour.get(verdict)
-        table.add_row(row["name"], *numbers, verdict, row["method"], style=style)
-    return table
-
-
-PREFIXED = ("s", "V", "Hz", "V/s", "ohm", "F", "rad/s")
-"""Units that are written with a prefix."""
-
-
-def _quantity(value: float | None, unit: str) -> str:
-    if value is None:
-        return ""
-    if unit in PREFIXED:
-        return engineering(value, unit, 4)
-    return plain(value) if unit in ("", "1") else f"{plain(value)} {unit}"

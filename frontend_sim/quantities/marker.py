@@ -2,8 +2,6 @@
 
 from __future__ import annotations
 
-import math
-import re
 from collections.abc import Iterable, Mapping
 from dataclasses import dataclass
 from typing import TYPE_CHECKING, Annotated, Any, get_args
@@ -17,11 +15,11 @@ from pydantic import (
 from pydantic_core import CoreSchema, PydanticCustomError
 
 from frontend_sim.errors import QuantityError
-from frontend_sim.quantities.dimension import DRIFT, FRACTION, Bounds, Dimension
+from frontend_sim.quantities.dimension import Bounds, Dimension
 from frontend_sim.quantities.level import Level, Sense, parse_level, signal_dimension
 from frontend_sim.quantities.part import Part
-from frontend_sim.quantities.preferred import SERIES
 from frontend_sim.quantities.reading import parse, shown
+from frontend_sim.quantities.schema import limits_of, quantity_schema, table_schema
 from frontend_sim.quantities.spread import SpreadError, parse_part
 from frontend_sim.quantities.writing import as_text
 
@@ -91,21 +89,10 @@ class Reads:
         inner: JsonSchemaValue = handler(
             schema
         )  # holds what Field(ge=...) adds, under pydantic's or JSON's name
-        bounds = {
-            "exclusiveMinimum": ("gt", self.bounds.above),
-            "minimum": ("ge", self.bounds.least),
-            "exclusiveMaximum": ("lt", self.bounds.below),
-            "maximum": ("le", self.bounds.most),
-        }
-        limits = {
-            key: float(next((inner[k] for k in (key, name) if k in inner), limit))
-            for key, (name, limit) in bounds.items()
-        }
-        finite = {key: limit for key, limit in limits.items() if math.isfinite(limit)}
-        result = _quantity_schema(self.dimension, finite)
+        result = quantity_schema(self.dimension, limits_of(self.bounds, inner))
         if self.spread:
             result["type"].append("object")
-            result.update(_table_schema(result))
+            result.update(table_schema(result))
         return result
 
 
@@ -136,38 +123,6 @@ def _fault(reason: str, key: str = "") -> PydanticCustomError:
     return PydanticCustomError(
         "quantity", "{reason}", {"reason": reason, "path": [key] if key else []}
     )
-
-
-def _quantity_schema(dimension: Dimension, limits: Mapping[str, float]) -> JsonSchemaValue:
-    return {
-        "type": ["string", "number"],
-        "unit": dimension.unit or "1",
-        "quantity": dimension.name,
-        "examples": re.findall(r'"([^"]+)"', dimension.example),
-        **limits,
-    }
-
-
-def _table_schema(value: JsonSchemaValue) -> JsonSchemaValue:
-    """Return what a part's table adds to the schema of its value."""
-    limits = {"minimum": 0.0, "exclusiveMaximum": 1.0}
-    inner = {key: item for key, item in value.items() if key not in ("default", "description")}
-    properties = {
-        "value": {**inner, "type": ["string", "number"], "description": "nominal value"},
-        "tolerance": {
-            **_quantity_schema(FRACTION, limits),
-            "description": "largest deviation from the nominal value, to either side, as a share",
-        },
-        "drift": {
-            **_quantity_schema(DRIFT, {}),
-            "description": "relative change with temperature, from 25 degC on",
-        },
-        "series": {
-            "enum": list(SERIES),
-            "description": "series of preferred numbers (IEC 60063) that the value must be from",
-        },
-    }
-    return {"properties": properties, "required": ["value"], "additionalProperties": False}
 
 
 def mark_of(annotation: Any, metadata: Iterable[Any] = ()) -> Reads | None:

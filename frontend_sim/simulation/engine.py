@@ -204,7 +204,7 @@ class Simulation:
                 f"part that reaches it directly is left out: {', '.join(model.unbounded)}; put a "
                 "filter behind them, or give the amplifier a gain_bandwidth",
             )
-        if not model.names:
+        if not model.names or len(model.a) == 0:  # without states no noise is left
             return None
         return NoisePath.of(model, 1.0 / self.scenario.adc.rate, self.scenario.seed)
 

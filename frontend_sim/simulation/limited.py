@@ -211,7 +211,8 @@ class _Maker:
         """
         rows, asked = list(points), {}
         for number, one in enumerate(self.deviations):
-            if between and self.grid is None and np.any(self._direct(one.place, points)):
+            seen = np.any(self._direct(one.place, points))
+            if between and self.grid is None and one.place.limiter.bends and seen:
                 probed = one.place.probed()
                 asked[number] = tuple(range(len(rows), len(rows) + len(probed)))
                 rows += probed

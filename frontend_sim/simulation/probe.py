@@ -103,4 +103,3 @@ class Probe:
             else:
                 after.append(answer.advance(state, number, instants, signal, values))
         return tuple(after), values[: self.count]
-

@@ -16,6 +16,7 @@ from frontend_sim.stimulus.drive import Lines
 NEAR = 1e-9
 """An instant within this share of a step from a point of the grid is at the point."""
 
+
 @dataclass(frozen=True, eq=False)
 class Past:
     """What a limiter went over, from which it can go on to any instant of it.

@@ -84,7 +84,7 @@ def _temperature_faults(stimulus: Stimulus) -> list[LevelFault]:
     return faults + [
         LevelFault(
             (*path, key),
-            f'missing; left out it is 0 K, absolute zero; add for instance {key} = "25 degC"',
+            f'it is 0 K, absolute zero, where nothing is given; add for instance {key} = "25 degC"',
         )
         for key in absolute_keys(first)[1]
     ]

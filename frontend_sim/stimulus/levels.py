@@ -39,7 +39,10 @@ def level_faults(value: Value, signal: str) -> Iterator[LevelFault]:
 
 
 def absolute_keys(value: Value) -> tuple[list[str], list[str]]:
-    """Return the keys of values of the signal, not of differences: those given, and the rest."""
+    """Return the keys of values of the signal, not of differences: those not zero, and the rest.
+
+    Whether a key was given or left out does not count: plain data for JSON have all of them.
+    """
     marks = {
         name: mark_of(field.annotation, field.metadata)
         for name, field in type(value).model_fields.items()
@@ -49,5 +52,5 @@ def absolute_keys(value: Value) -> tuple[list[str], list[str]]:
         for name, mark in marks.items()
         if isinstance(mark, ReadsLevel) and mark.sense == "value"
     ]
-    given = [key for key in keys if key in value.model_fields_set]
+    given = [key for key in keys if getattr(value, key) != 0.0]
     return given, [key for key in keys if key not in given]

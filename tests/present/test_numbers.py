@@ -9,7 +9,15 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from frontend_sim.present.numbers import engineering, fixed, plain, prefix_of
+from frontend_sim.present.numbers import (
+    engineering,
+    fixed,
+    level,
+    per_unit,
+    plain,
+    prefix_of,
+    quantity,
+)
 from frontend_sim.quantities import FREQUENCY, parse
 
 
@@ -117,3 +125,27 @@ def test_axis_prefix(value):
     factor, letter = prefix_of(value)
     assert 0.999 <= value * factor <= 1000.0
     assert engineering(value, "V").split()[1] == f"{letter}V"
+
+
+@pytest.mark.parametrize(
+    ("value", "unit", "text"),
+    [
+        (1e-6, "W", "1.00 uW"),
+        (2.5e5, "Pa", "250 kPa"),
+        (0.5, "", "0.500"),
+        (19.6133, "m/s^2", "19.6 m/s^2"),
+        (5.0, "K", "5.00 K"),
+    ],
+)
+def test_quantities_have_the_unit_of_their_signal(value: float, unit: str, text: str) -> None:
+    """Prefixes where a unit takes them; nobody writes millikelvins squared."""
+    assert quantity(value, unit) == text
+
+
+def test_levels_of_temperature_are_in_degrees() -> None:
+    """Other levels are as differences are; gains are volts per unit."""
+    assert level(298.15, "K", 4) == "25.00 degC"
+    assert level(2.0, "V") == "2.00 V"
+    assert [per_unit(unit) for unit in ("V", "K", "m/s^2", "")] == [
+        "V/V", "V/K", "V/(m/s^2)", "V",
+    ]  # fmt: skip

@@ -89,7 +89,7 @@ WRONG = [
      ["stimulus.after", 'given "-300 degC"', "absolute zero"]),
     ('kind = "step"\nbefore = "20 degC"\nafter = -1.0', RTD, ["stimulus.after", "absolute zero"]),
     ('kind = "step"\nafter = "20 degC"', RTD,
-     ["stimulus.before: missing", "0 K, absolute zero", 'before = "25 degC"']),
+     ["stimulus.before", "0 K, absolute zero", 'add for instance before = "25 degC"']),
     ('kind = "sine"\namplitude = "5 K"\nfrequency = 1', RTD,
      ["stimulus", "swings around 0 K", "give offset"]),
     ('kind = "noise-burst"\nrms = "5 K"\nbandwidth = 1\nlength = 1', RTD,
@@ -110,7 +110,7 @@ WRONG = [
      ["stimulus.term[2]", "added in K", "give this one as differences"]),
     ('kind = "sum"\nterm = [{kind = "pulse", high = "50 degC", width = 1}, '
      '{kind = "sine", amplitude = "5 K", frequency = 1}]', RTD,
-     ["stimulus.term[1].low", "missing"]),
+     ["stimulus.term[1].low", "0 K, absolute zero"]),
     ('kind = "recording"\nfile = "x.csv"\nrate = 1\nunit = "bar"', AMPLIFIER,
      ["stimulus.unit", "not a unit of voltage", "mV"]),
     ('kind = "recording"\nfile = "x.csv"\nrate = 1\nunit = "mV"', RTD,
@@ -155,6 +155,8 @@ def test_differences_are_counted_from_another_term() -> None:
         '{kind = "sine", amplitude = "5 degC", frequency = 1}]',
         RTD,
     )
+    assert Scenario.model_validate(found.resolved()).resolved() == found.resolved()
+    assert parse_scenario(scenario_text(found)).resolved() == found.resolved()
     run = simulate(found)
     assert run.pin[0] == pytest.approx(0.1 * (1 + 3.9083e-3 * 50 - 5.775e-7 * 2500), rel=1e-12)
 

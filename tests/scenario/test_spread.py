@@ -71,6 +71,16 @@ def test_drift_moves_the_corner() -> None:
     np.testing.assert_allclose(run.pin, expected, rtol=0, atol=1e-12)
 
 
+def test_thermal_noise_is_that_of_the_temperature() -> None:
+    """Its density goes with the root of resistance and absolute temperature."""
+    (cold,), (hot,) = (
+        circuit_of(scenario({"value": 1e4, "drift": "100 ppm/K"}, 1e-7, t)).sections[0].noise
+        for t in ("25 degC", "85 degC")
+    )
+    expected = np.sqrt(1.006 * 358.15 / 298.15)
+    assert hot.density / cold.density == pytest.approx(expected, rel=1e-12)
+
+
 def test_without_drift_a_temperature_moves_nothing() -> None:
     """It only makes noise."""
     assert corner(scenario(10e3, "100nM", "85 degC")) == corner(scenario(10e3, 100e-9))

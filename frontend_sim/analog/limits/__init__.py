@@ -11,12 +11,14 @@ from frontend_sim.analog.limits.clipping import Clipping
 from frontend_sim.analog.limits.diodes import DiodeClamp
 from frontend_sim.analog.limits.follower import SlewFollower
 from frontend_sim.analog.limits.limiter import Limiter, Segments, Touched
+from frontend_sim.analog.limits.loop import HigherLoop
 from frontend_sim.analog.limits.static_map import StaticMap
 
 __all__ = [
     "AmplifierLimits",
     "Clipping",
     "DiodeClamp",
+    "HigherLoop",
     "Limiter",
     "Segments",
     "SlewFollower",

@@ -12,6 +12,7 @@ from frontend_sim.analog.block import Block, Real
 from frontend_sim.analog.limits.clipping import Clipping
 from frontend_sim.analog.limits.follower import NAMES, SlewFollower
 from frontend_sim.analog.limits.limiter import Limiter, Segments, Touched, continuous
+from frontend_sim.analog.limits.loop import HigherLoop
 from frontend_sim.errors import ModelError
 
 
@@ -73,10 +74,11 @@ class AmplifierLimits:
     def around(self, blocks: Sequence[Block]) -> Limiter | None:
         """Return the limiter for a stage with these blocks, None if nothing limits.
 
-        A block of first order without feed-through is the closed loop itself, see
-        ``ClosedLoop``. A gain is ideal: its output follows as fast as the slew rate lets it. Any
-        other block (a filter around the amplifier) keeps its linear answer, and its output is
-        limited as that of an ideal amplifier behind it.
+        A block of first order is the closed loop itself, see ``ClosedLoop``; one of higher order is
+        read as an integrator and what follows it, see ``HigherLoop``. A gain is ideal: its output
+        follows as fast as the slew rate lets it. A block that is no such loop, since its input
+        feeds through to its output, keeps its linear answer, and its output is limited as that of
+        an ideal amplifier behind it.
 
         Raises
         ------
@@ -90,6 +92,9 @@ class AmplifierLimits:
         if block.order == 1 and block.d == 0.0:
             return self._closed_loop(block, range(at, at + 1))
         gain, replaced = block.d, range(at, at + 1)
+        loop = HigherLoop.of(block, replaced, self.up, self.down, self.low, self.high)
+        if loop is not None:
+            return loop
         if block.order:
             gain, replaced = 1.0, range(at + 1, at + 1)
         if math.isinf(self.up) and math.isinf(self.down):

@@ -73,10 +73,13 @@ class Limiter(ABC):
         those before them stand before the limiter, those after them behind it. An empty range
         stands between two blocks and replaces none
     limits : what each limit is called in messages, after "at" ("its upper rail")
+    bends : whether the output bends where a limit begins or ends. It is then computed anew at
+        instants between the points of a grid; else lines between the points are good enough
     """
 
     replaced: range
     limits: tuple[str, ...] = ()
+    bends: bool = True
 
     @abstractmethod
     def start(self, u: float, v: float) -> Real:

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import math
-from typing import Annotated, Literal
+from typing import Literal
 
 from pydantic import Field
 
@@ -11,9 +11,7 @@ from frontend_sim.analog.block import Block
 from frontend_sim.analog.limits import AmplifierLimits
 from frontend_sim.analog.stages.amplifier import closed_loop
 from frontend_sim.analog.stages.base import Stage
-from frontend_sim.quantities import Frequency, Slope
-
-PositiveSlope = Annotated[Slope, Field(gt=0.0)]
+from frontend_sim.quantities import Frequency, PositiveSlope
 
 
 class SlewLimit(Stage):

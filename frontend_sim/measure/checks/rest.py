@@ -28,6 +28,10 @@ JUST_BEFORE = 1e-12
 NO_CHANGE = 1e-12
 """A change by less than this share is rounding."""
 
+WINDOWS = 1024.0
+"""A run is searched for events in windows, the first this share of it, each twice the one before.
+"""
+
 FINEST = 1e-9
 """Excursions are searched down to this share of the largest distance from the end."""
 
@@ -131,32 +135,30 @@ def rest_of(subject: Subject, point: str | None, after: float | None) -> Rest | 
 
 
 def _rest_of(subject: Subject, point: int, after: float | None) -> Rest | None:
-    simulation, settings = subject.simulation, subject.scenario.simulation
-    drives = [drive for drive in simulation.drives if isinstance(drive, PiecewiseDrive)]
-    if len(drives) < len(simulation.drives) or not _rests(drives, after, subject.duration):
+    from_rest = subject.scenario.simulation.initial == "rest"
+    drives = [drive for drive in subject.drives if isinstance(drive, PiecewiseDrive)]
+    if len(drives) < len(subject.drives):
         return None
-    from_rest = settings.initial == "rest"
-    events = changes(drives, math.nextafter(subject.duration, 0.0), from_rest)
-    since = float(events[-1]) if after is None else after
-    later = events[events > since]
-    until = float(later[0]) if len(later) else math.inf
-    level = _level(drives, since)
+    since = last_change(drives, subject.duration, from_rest) if after is None else after
+    if not _rests(drives, since):
+        return None
+    until = next_change(drives, since, subject.duration)
+    name, level = subject.chain.points[point], _level(drives, since)
     try:
-        final = settled_value(subject.scenario, subject.chain.points[point], level)
+        final = settled_value(subject.scenario, name, level)
         seen = _Seen.of(subject, point, drives, since, level)
     except ModelError:
-        return None  # A pole at the origin, or a pair without damping, has no end.
-    exact = settings.discretization == "exact" and not subject.limited and seen.dies_out
-    if exact:
-        departure = seen.departure
-        tail = Tail(seen.chain, seen.lack, seen.arrival, departure)
-        return Rest(since, until, final, final + departure, tail)
-    earlier = since * (1.0 - JUST_BEFORE)
-    before = subject.at_instants(subject.chain.points[point], [earlier])[0] if since > 0.0 else None
-    if before is None:
-        start = sum(drive.initial for drive in drives) if not from_rest else 0.0
-        before = settled_value(subject.scenario, subject.chain.points[point], start)
-    return Rest(since, until, final, float(before), None)
+        return None
+    if not seen.dies_out:
+        return None
+    if subject.scenario.simulation.discretization == "exact" and not subject.limited:
+        tail = Tail(seen.chain, seen.lack, seen.arrival, seen.departure)
+        return Rest(since, until, final, final + tail.departure, tail)
+    if since > 0.0:
+        before = float(subject.at_instants(name, [since * (1.0 - JUST_BEFORE)])[0])
+    else:
+        before = before_the_run(subject, name)
+    return Rest(since, until, final, before, None)
 
 
 @dataclass(frozen=True, eq=False)
@@ -205,6 +207,13 @@ class _Seen:
         return self.arrival + self.jump
 
 
+def before_the_run(subject: Subject, point: str) -> float:
+    """Return a point of the chain before t = 0. Raises as ``settled_value`` does."""
+    drives, initial = subject.drives, subject.scenario.simulation.initial
+    level = sum(drive.initial for drive in drives) if initial == "settled" else 0.0
+    return settled_value(subject.scenario, point, level)
+
+
 def settled_value(scenario: Scenario, point: str, level: float) -> float:
     """Return a point of the chain after the stimulus has rested at a level for ever.
 
@@ -216,7 +225,7 @@ def settled_value(scenario: Scenario, point: str, level: float) -> float:
         If the point would have drifted away.
     """
     adc = scenario.adc
-    settings = SimulationSettings(duration=adc.first + 0.5 / adc.rate)
+    settings = SimulationSettings(duration=adc.first + 0.5 / adc.rate, noise=False)
     still = scenario.model_copy(
         update={
             "stimulus": Step(before=level, after=level),
@@ -227,32 +236,61 @@ def settled_value(scenario: Scenario, point: str, level: float) -> float:
     return float(Simulation(still).values([point], np.zeros(1))[0, 0])
 
 
-def changes(drives: Sequence[PiecewiseDrive], last: float, from_rest: bool) -> Real:
-    """Return the times from 0 to ``last`` at which a stimulus changes its course, 0 at least [s].
+def last_change(drives: Sequence[PiecewiseDrive], stop: float, from_rest: bool) -> float:
+    """Return when a stimulus last changes its course in [0, stop), 0 if it never does [s].
 
     Parameters
     ----------
     from_rest : whether the chain was at rest before, so that t = 0 is a change in any case
     """
-    found = [np.zeros(1)] if from_rest else []
+    window, end = stop / WINDOWS, math.nextafter(stop, 0.0)
+    while end > 0.0:
+        begin = max(end - window, 0.0)
+        found = changes(drives, begin, end, from_rest)
+        if len(found):
+            return float(found[-1])
+        end, window = begin, 2.0 * window
+    return 0.0
+
+
+def next_change(drives: Sequence[PiecewiseDrive], start: float, stop: float) -> float:
+    """Return when a stimulus next changes its course in (start, stop), infinity if never [s]."""
+    window, begin = stop / WINDOWS, start
+    while begin < stop:
+        end = min(begin + window, math.nextafter(stop, 0.0))
+        found = changes(drives, begin, end, False)
+        found = found[found > start]
+        if len(found):
+            return float(found[0])
+        begin, window = begin + window, 2.0 * window
+    return math.inf
+
+
+def changes(drives: Sequence[PiecewiseDrive], start: float, stop: float, from_rest: bool) -> Real:
+    """Return the times in (start, stop] at which a stimulus changes its course [s].
+
+    t = 0 belongs to a stretch that starts there: what the signal was before is another.
+    """
+    at_once = np.zeros(1 if start == 0.0 else 0)
+    found = [at_once] if from_rest else [np.empty(0)]
     for drive in drives:
-        times = np.concatenate([np.zeros(1), drive.events(0.0, last)])
+        times = np.concatenate([at_once, drive.events(start, stop)])
+        if len(times) == 0:
+            continue
         earlier = np.where(times > 0.0, times * (1.0 - JUST_BEFORE), -1.0)
-        states = drive.states(times)
-        before = drive.states(np.maximum(earlier, 0.0))
+        states, before = drive.states(times), drive.states(np.maximum(earlier, 0.0))
         moves, moved = states @ drive.generator.T, before @ drive.generator.T
-        moved[0] = 0.0  # Before t = 0 there is one value.
+        moved[times == 0.0] = 0.0  # Before t = 0 there is one value.
         size = np.maximum(np.abs(states), np.abs(before)).sum(axis=1)
         rate = np.maximum(np.abs(moves), np.abs(moved)).sum(axis=1)
         jumps = np.abs(states @ drive.readout - drive.values(earlier)) > NO_CHANGE * size
         turns = np.abs(moves - moved).sum(axis=1) > 1e3 * NO_CHANGE * rate
         found.append(times[jumps | turns])
-    every = np.unique(np.concatenate(found)) if found else np.empty(0)
-    return every if len(every) else np.zeros(1)
+    return np.unique(np.concatenate(found))
 
 
-def _rests(drives: Sequence[PiecewiseDrive], after: float | None, duration: float) -> bool:
-    at = np.array([math.nextafter(duration, 0.0) if after is None else after])
+def _rests(drives: Sequence[PiecewiseDrive], instant: float) -> bool:
+    at = np.array([instant])
     return not any(np.any(drive.states(at) @ drive.generator.T) for drive in drives)
 
 

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass, field
 from functools import cached_property
 from typing import Any, Protocol
@@ -14,9 +15,11 @@ from frontend_sim.converter import AnyAdc
 from frontend_sim.errors import MeasureError
 from frontend_sim.measure.response.gain import LargestGain, largest_gain
 from frontend_sim.measure.response.step_response import StepResponse
-from frontend_sim.scenario.circuit import stages_of
+from frontend_sim.randomness import stream
+from frontend_sim.scenario.circuit import circuit_of, stages_of
 from frontend_sim.scenario.model import Scenario
 from frontend_sim.simulation import GridReport, Simulation
+from frontend_sim.stimulus.drive import Drive
 
 Real = NDArray[np.float64]
 
@@ -75,15 +78,24 @@ class Subject:
         """The converter."""
         return self.scenario.adc
 
-    @property
+    @cached_property
     def chain(self) -> Chain:
         """The composed model of the chain."""
-        return self.simulation.chain
+        return self.prepared.chain if self.prepared else circuit_of(self.scenario)
+
+    @cached_property
+    def drives(self) -> tuple[Drive, ...]:
+        """The drives of the stimulus."""
+        if self.prepared:
+            return self.prepared.drives
+        return self.scenario.stimulus.drives(stream(self.scenario.seed, "stimulus"))
 
     @property
     def duration(self) -> float:
         """Length of the run [s]."""
-        return self.simulation.duration
+        given = self.scenario.simulation.duration
+        known = self.scenario.stimulus.known_length() if given is None else given
+        return math.inf if known is None else known
 
     @property
     def whole(self) -> float:

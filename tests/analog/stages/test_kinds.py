@@ -160,6 +160,13 @@ ROWS: list[tuple[str, dict[str, Any], Formula]] = [
     ("ac-coupled-source",
      {"source_resistance": 2e3, "capacitance": 1e-8, "load_resistance": 1e4},
      lambda s: s * 1e-4 / (1 + s * 1.2e-4)),
+    ("rail-limit", {"low": "-1 V", "high": 3}, lambda s: 1 + 0 * s),
+    ("slew-limit", {"slew_rate": "1 V/us"}, lambda s: 1 + 0 * s),
+    ("slew-limit", {"slew_rate": 1e6, "bandwidth": F}, lambda s: 1 / (1 + s / W)),
+    ("clamp", {"high": 3}, lambda s: 1 + 0 * s),
+    ("clamp",
+     {"low": 0, "high": 3, "resistance": 1e4, "capacitance": 1e-8, "diode_resistance": 50},
+     lambda s: 1 / (1 + s * 1e-4)),
 ]  # fmt: skip
 
 

@@ -1,0 +1,57 @@
+"""Evaluates the room between the signal and the ends of the range."""
+
+from __future__ import annotations
+
+import numpy as np
+
+from frontend_sim.measure.checks import words
+from frontend_sim.measure.checks.answer import Answer, scaled
+from frontend_sim.measure.checks.subject import Real, Subject
+from frontend_sim.scenario.checks.headroom import HeadroomCheck
+
+
+def headroom(check: HeadroomCheck, subject: Subject) -> Answer:
+    """Return the least distance of the pin from an end of the range, below zero beyond it."""
+    adc, pin = subject.adc, subject.pin[subject.first_after(check.after) :]
+    room = min(adc.high - float(np.max(pin)), float(np.min(pin)) - adc.low)
+    value, unit = scaled(check.at_least, room, adc.lsb, subject.whole)
+    least = float(check.at_least)
+    wanted, _ = scaled(check.at_least, 1.0, adc.lsb, subject.whole)
+    return Answer(
+        value,
+        unit,
+        least,
+        "at least",
+        "the exact pin at the conversions",
+        lambda: advice(subject, pin, least / wanted),
+    )
+
+
+def advice(subject: Subject, pin: Real, room: float) -> str:
+    """Return how to bring a signal into the range, with some room to its ends.
+
+    Parameters
+    ----------
+    pin : shape (K,) [V]
+    room : wanted distance from the ends [V]
+    """
+    adc = subject.adc
+    highest, lowest = float(np.max(pin)), float(np.min(pin))
+    reach, width = highest - lowest, subject.whole - 2.0 * room
+    over = max(highest - (adc.high - room), 0.0)
+    under = max(adc.low + room - lowest, 0.0)
+    if reach > width and width > 0.0:
+        return (
+            f"lower the gain by {words.percent(width / reach)}: the pin goes from "
+            f"{words.voltage(lowest)} to {words.voltage(highest)}, over "
+            f"{words.voltage(reach)} of the {words.voltage(width)} that it may"
+        )
+    if over > 0.0 or under > 0.0:
+        way, by = ("down", over) if over >= under else ("up", under)
+        return (
+            f"shift the level {way} by {words.voltage(by)}, or lower the gain: the pin goes from "
+            f"{words.voltage(lowest)} to {words.voltage(highest)}"
+        )
+    return (
+        "lower noise, offset or gain error of the converter: the pin itself stays within the range"
+    )

@@ -1,0 +1,41 @@
+"""Numbers in the sentences that say what to change first."""
+
+from __future__ import annotations
+
+from decimal import ROUND_CEILING, Context
+
+from frontend_sim.quantities import FREQUENCY, TIME, VOLTAGE, Dimension, as_text
+
+DIGITS = 4
+
+
+def time(value: float) -> str:
+    """Return a time with its unit, ``13.1 ms``."""
+    return _text(value, TIME)
+
+
+def wait(value: float) -> str:
+    """Return a time that is no shorter than a value, with its unit."""
+    context = Context(prec=DIGITS, rounding=ROUND_CEILING)
+    return as_text(float(context.create_decimal(repr(value))), TIME)
+
+
+def frequency(value: float) -> str:
+    """Return a frequency with its unit."""
+    return _text(value, FREQUENCY)
+
+
+def voltage(value: float) -> str:
+    """Return a voltage with its unit."""
+    return _text(value, VOLTAGE)
+
+
+def percent(factor: float) -> str:
+    """Return how much more or less a factor is, ``12 %``; of large ones, ``a factor of 3.5``."""
+    if not 0.0 < factor < 2.0:
+        return f"a factor of {factor:.3g}"
+    return f"{max(100.0 * abs(factor - 1.0), 0.1):.2g} %"
+
+
+def _text(value: float, dimension: Dimension) -> str:
+    return as_text(value, dimension, DIGITS)
