@@ -1,4 +1,4 @@
-"""One right table for every kind of stimulus and stage, as a scenario file has them."""
+"""One right table for every kind of stimulus, stage and check, as a scenario file has them."""
 
 from __future__ import annotations
 
@@ -150,4 +150,25 @@ STAGE_SAMPLES: list[dict[str, Any]] = [
     {"kind": "photodiode", "responsivity": "0.6 A/W", "load_resistance": "1 Mohm"},
     {"kind": "current-shunt", "resistance": "10 mohm"},
     {"kind": "ac-coupled-source", "capacitance": "1 uF", "load_resistance": "47kF"},
+]
+
+CHECK_SAMPLES: list[dict[str, Any]] = [
+    {"kind": "settling", "within": "0.5 LSB", "before": "12 ms", "timer_clock": "1 MHz"},
+    {"kind": "overshoot", "at_most": "5 %", "after": "1 ms"},
+    {"kind": "level", "at": "1 ms", "at_least": "-1 V", "at_most": 2},
+    {"kind": "droop", "start": "1 ms", "stop": "2 ms", "at_most": "1 %"},
+    {"kind": "clipping", "name": "no clipping", "after": "1 ms"},
+    {"kind": "headroom", "at_least": "100 mV"},
+    {"kind": "noise", "at_most": "0.1 %", "quantity": "peak-to-peak", "source": "run"},
+    {"kind": "noise-free-bits", "at_least": 10.5},
+    {"kind": "snr", "at_least": "60 dB"},
+    {"kind": "sinad", "at_least": 60, "window": "hann"},
+    {"kind": "effective-bits", "at_least": "9 bit"},
+    {"kind": "thd", "at_most": "-70 dB", "harmonics": 5},
+    {"kind": "sfdr", "at_least": "70 dB", "frequency": "1 kHz"},
+    {"kind": "corner", "side": "lower", "at_most": "10 Hz"},
+    {"kind": "rejection", "frequency": 50, "deviation": "1 %", "at_least": "20 dB"},
+    {"kind": "alias-attenuation", "band": "1 kHz", "at_least": "40 dB", "against": "dc"},
+    {"kind": "mains-level", "at_most": "2 LSB", "harmonics": 3},
+    {"kind": "grid-error", "at_most": "0.1 LSB"},
 ]

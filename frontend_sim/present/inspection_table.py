@@ -9,6 +9,7 @@ from frontend_sim.measure.response.attenuation import Attenuation
 from frontend_sim.measure.response.gain import decibel
 from frontend_sim.measure.response.inspection import Inspection
 from frontend_sim.measure.response.model_distance import ModelDistance, ResponseError
+from frontend_sim.present.noise_table import loading_table, noise_table
 from frontend_sim.present.numbers import engineering, fixed, per_unit, plain, quantity
 
 if TYPE_CHECKING:
@@ -23,6 +24,10 @@ def inspection_tables(inspection: Inspection) -> tuple[Table, ...]:
     ]
     if inspection.poles:
         tables.append(_pole_table(inspection))
+    if inspection.loading:
+        tables.append(loading_table(inspection.loading))
+    if inspection.noise is not None and inspection.noise.rows:
+        tables.append(noise_table(inspection.noise))
     if inspection.models:
         tables.append(_model_table(inspection))
     return tuple(tables)

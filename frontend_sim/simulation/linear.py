@@ -178,13 +178,12 @@ def _path(
     axis: Axis,
     grid: GridMethod | None,
 ) -> Path:
-    uniform = axis.uniform and outputs.delay == 0.0
     if isinstance(drive, PiecewiseDrive):
         path = PiecewisePath.of(chain, drive, outputs, initial, axis.longest)
         # Over a row the generator runs by itself; many turns of it would add up their rounding.
         turns = float(np.max(np.abs(drive.generator), initial=0.0)) * axis.interval * ROW
-        return RowPath.of(path, axis.interval) if uniform and turns < MOST_TURNS else path
-    if uniform and grid is None:
+        return RowPath.of(path, axis.interval) if axis.uniform and turns < MOST_TURNS else path
+    if axis.uniform and outputs.delay == 0.0 and grid is None:
         times = 1.0 / (axis.interval * drive.rate)
         if round(times) > 1 and abs(times / round(times) - 1.0) < 1e-14:
             drive = Resampled(drive, round(times))

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass
 from typing import Self
 
@@ -20,7 +21,7 @@ ROW = 32
 
 @dataclass(frozen=True, eq=False)
 class RowPath:
-    """The chain and a generator over the instants k / rate, for k = 0, 1, 2, ...
+    """The chain and a generator over the instants k / rate - delay, from the first one not below 0.
 
     Within a row without events the outputs are fixed combinations of the states at its begin,
 
@@ -31,7 +32,7 @@ class RowPath:
     Parameters
     ----------
     exact : the same, for any instants
-    rate : [Hz]
+    rate : [Hz];  delay : [s];  lead : the first k
     spread : shape (p, n + m, ROW)
     step, feed : from x and from g at the begin of a row to x at the begin of the next, less the
         identity, shapes (n, n) and (n, m)
@@ -39,13 +40,15 @@ class RowPath:
 
     exact: PiecewisePath
     rate: float
+    delay: float
+    lead: int
     spread: Real
     step: Real
     feed: Real
 
     @classmethod
     def of(cls, exact: PiecewisePath, interval: float) -> Self:
-        """Prepare the path for instants ``interval`` apart [s]."""
+        """Prepare the path for instants ``interval`` apart [s], less the outputs' delay."""
         system, outputs, drive = exact.table.system, exact.outputs, exact.drive
         n, m = len(exact.initial), len(drive.readout)
         one = expm1(system * interval)
@@ -56,24 +59,34 @@ class RowPath:
             spread[:, :, k] = rows + rows @ power(one, k)
         e = power(one, ROW)
         step, feed = np.ascontiguousarray(e[:n, :n]), np.ascontiguousarray(e[:n, n:])
-        return cls(exact, 1.0 / interval, spread, step, feed)
+        rate, delay = 1.0 / interval, outputs.delay
+        lead = max(math.floor(delay * rate) - 1, 0)
+        while lead / rate - delay < 0.0:
+            lead += 1
+        return cls(exact, rate, delay, lead, spread, step, feed)
 
     def start(self) -> State:
         """Return the state at the first instant of row 0."""
-        return State(self.exact.initial, 0.0)
+        first = self._instants(0, 1)
+        return State(self.exact.advance(self.exact.start(), 0, first)[0].x, 0.0)
+
+    def _instants(self, first: int, last: int) -> Real:
+        """Return the first instants of rows ``first`` to ``last`` - 1 [s]."""
+        return (self.lead + np.arange(first, last) * ROW) / self.rate - self.delay
 
     def advance(
         self, state: State, number: int, instants: Real, drive: PiecewiseDrive | None = None
     ) -> tuple[State, Real]:
-        """Advance through instants ``number`` / rate and on, see ``Path``.
+        """Advance through instants number ``number`` and on, see ``Path``.
 
         The state is that at the first instant of the row that the next instant belongs to, so a
         row that is cut is computed again from its begin.
         """
         drive = drive or self.exact.drive
+        number -= self.lead
         stop = number + len(instants)
         first, last = number // ROW, -(-stop // ROW)
-        begins = np.arange(first, last + 1) * ROW / self.rate
+        begins = self._instants(first, last + 1)
         g = drive.states(begins[:-1])
         y = np.empty((len(self.spread), (last - first) * ROW))
         x, kept = state.x.copy(), state.x
@@ -97,7 +110,7 @@ class RowPath:
 
     def rested(self, state: State, number: int, instants: Real) -> State:
         """Return the state after instants at which all was zero, see ``Path``."""
-        return State(state.x, float((number + len(instants)) // ROW))
+        return State(state.x, float((number - self.lead + len(instants)) // ROW))
 
     def _clean(self, x: Real, g: Real, y: Real) -> None:
         """Fill in the outputs of rows without events, and advance x to the begin of the next."""
@@ -114,7 +127,8 @@ class RowPath:
 
     def _eventful(self, x: Real, row: int, y: Real, drive: PiecewiseDrive) -> None:
         """Go through one row from node to node."""
-        instants = np.arange(row * ROW, (row + 1) * ROW + 1) / self.rate
+        number = self.lead + row * ROW
+        instants = np.arange(number, number + ROW + 1) / self.rate - self.delay
         state = State(x, float(instants[0]))
         state, values = self.exact.advance(state, 0, instants, drive)
         y[:] = values[:, :-1]

@@ -10,7 +10,7 @@ from typing import Any
 import tomli_w
 from hypothesis import HealthCheck, given, settings
 from hypothesis import strategies as st
-from scenario_kinds import STAGE_SAMPLES, STIMULUS_SAMPLES
+from scenario_kinds import CHECK_SAMPLES, STAGE_SAMPLES, STIMULUS_SAMPLES
 
 from frontend_sim.errors import InputError
 from frontend_sim.scenario import check_scenario, parse_scenario, scenario_text
@@ -67,6 +67,7 @@ def right(draw: st.DrawFn) -> dict[str, Any]:
             "chain": draw(st.lists(st.sampled_from(STAGE_SAMPLES), max_size=3, unique_by=id)),
             "adc": {"rate": "20 kHz", "bits": 12, "high": "3.3 V", "first": "1 ms"},
             "simulation": {"duration": "250 ms", "waveform_rate": "1 MHz", "initial": "rest"},
+            "check": draw(st.lists(st.sampled_from(CHECK_SAMPLES), max_size=3, unique_by=id)),
         }
     )
 

@@ -9,11 +9,12 @@ from typing import Any
 
 import jsonschema
 import pytest
-from scenario_kinds import STAGE_SAMPLES, STIMULUS_SAMPLES
+from scenario_kinds import CHECK_SAMPLES, STAGE_SAMPLES, STIMULUS_SAMPLES
 from scenario_samples import BASE, edited
 
 from frontend_sim.analog.stages import STAGES
 from frontend_sim.scenario import json_schema
+from frontend_sim.scenario.checks import CHECKS
 from frontend_sim.scenario.tables import keys, tables
 from frontend_sim.stimulus import STIMULI
 
@@ -53,6 +54,11 @@ duration = "250 ms"
 discretization = "exact"
 grid_rate = "auto"
 initial = "settled"
+
+[[check]]
+kind = "settling"
+within = "0.5 LSB"
+before = "12 ms"
 """
 """The example of the project's design."""
 
@@ -108,7 +114,7 @@ def test_the_schema_has_every_table_and_key(schema: dict[str, Any]) -> None:
     found["Scenario"] = set(schema["properties"])
     assert found == known
     titles = {part["title"] for part in schema["$defs"].values()}
-    assert {*STAGES, *STIMULI} <= titles
+    assert {*STAGES, *STIMULI, *CHECKS} <= titles
 
 
 def test_there_is_no_null(schema: dict[str, Any]) -> None:
@@ -137,7 +143,8 @@ def test_a_table_of_every_kind_is_valid(validator: jsonschema.Draft202012Validat
     """Samples of all kinds satisfy the schema, and every kind has its sample."""
     assert {sample["kind"] for sample in STIMULUS_SAMPLES} == set(STIMULI)
     assert {sample["kind"] for sample in STAGE_SAMPLES} == set(STAGES)
-    data = tomllib.loads(BASE)
+    assert {sample["kind"] for sample in CHECK_SAMPLES} == set(CHECKS)
+    data = {**tomllib.loads(BASE), "check": CHECK_SAMPLES}
     for sample in STIMULUS_SAMPLES:
         validator.validate({**data, "stimulus": sample, "chain": STAGE_SAMPLES})
 

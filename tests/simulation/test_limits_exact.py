@@ -202,15 +202,15 @@ def test_the_rails_hold_the_offset_too() -> None:
             np.testing.assert_allclose(found, true, rtol=1e-12)
 
 
-@pytest.mark.parametrize("rate", [80e3, 111e3])
-@pytest.mark.parametrize("block", [WAVEFORM_TILE, 2 * WAVEFORM_TILE])
-@pytest.mark.parametrize("drive", ["sine", "recording"])
-def test_blocks_never_show(rate: float, block: int, drive: str) -> None:
+@pytest.mark.parametrize(("drive", "rate"), [("sine", 80e3), ("sine", 111e3), ("recording", 96e3)])
+def test_blocks_never_show(drive: str, rate: float) -> None:
     """Bit for bit the same, however the conversions are cut at multiples of a tile."""
+    # A delay that fits no grid is slow: once is enough.
+    delay = 1.23e-4 if rate == 111e3 else 0.0
     chain: list[Stage] = [
         stages.SlewLimit(slew_rate=4e3, bandwidth=5e3),
         Curve(),
-        stages.TransportDelay(delay=1.23e-4),
+        stages.TransportDelay(delay=delay),
         stages.NoninvertingAmplifier(
             gain=2, gain_bandwidth=1e5, second_pole=2e5, slew_rate=1e5, output_high=1.5
         ),
@@ -219,9 +219,9 @@ def test_blocks_never_show(rate: float, block: int, drive: str) -> None:
     ]
     data = np.random.default_rng(2).standard_normal(70000)
     source: Drive = InMemory(data, 48e3) if drive == "recording" else DRIVES["sine"]
-    times = np.arange(3 * WAVEFORM_TILE + 77) / RATE
+    times = np.arange(2 * WAVEFORM_TILE + 77) / RATE
     whole = _run(chain, [source], rate, times)
-    np.testing.assert_array_equal(_run(chain, [source], rate, times, block), whole)
+    np.testing.assert_array_equal(_run(chain, [source], rate, times, WAVEFORM_TILE), whole)
 
 
 def test_slow_conversions_hold_no_more_than_a_slot() -> None:

@@ -42,6 +42,10 @@ class Stage(Value):
     def blocks(self) -> tuple[Block, ...]:
         """Return the linear blocks of the stage, in the order of the signal."""
 
+    def buffered(self) -> tuple[Block, ...] | None:
+        """Return the blocks as if a buffer stood behind every section; None if there are none."""
+        return None
+
     def noise(self, temperature: float) -> tuple[NoiseInput, ...]:
         """Return the stage's own noise sources at a temperature [K]; an ideal stage has none."""
         return ()

@@ -4,11 +4,10 @@ from __future__ import annotations
 
 from frontend_sim.measure.checks import words
 from frontend_sim.measure.checks.answer import Answer
+from frontend_sim.measure.checks.rest import last_change
 from frontend_sim.measure.checks.subject import Subject
 from frontend_sim.scenario.checks.grid_error import GridErrorCheck
-
-ORDER = {"zoh": 1.0}
-"""Error goes with the step to this power; to the second one for the other methods."""
+from frontend_sim.stimulus.drive import PiecewiseDrive, UniformDrive
 
 
 def grid_error(check: GridErrorCheck, subject: Subject) -> Answer:
@@ -19,7 +18,7 @@ def grid_error(check: GridErrorCheck, subject: Subject) -> Answer:
     value = grid.largest_error
 
     def advice() -> str:
-        factor = (value / check.at_most) ** (1.0 / ORDER.get(grid.method, 2.0))
+        factor = (value / check.at_most) ** (1.0 / _order(subject, grid.method))
         wanted = words.frequency(factor * grid.grid_rate)
         return (
             f'raise simulation.grid_rate to about {wanted}, or set it to "auto" with '
@@ -28,3 +27,13 @@ def grid_error(check: GridErrorCheck, subject: Subject) -> Answer:
 
     method = f"{grid.method} at {words.frequency(grid.grid_rate)} against the reference run"
     return Answer(value, "LSB", check.at_most, "at most", method, advice)
+
+
+def _order(subject: Subject, method: str) -> float:
+    """Return the power of the step with which the error falls: 2 for a smooth signal, else 1."""
+    if method == "zoh":
+        return 1.0
+    uniform = [drive for drive in subject.drives if isinstance(drive, UniformDrive)]
+    pieces = [drive for drive in subject.drives if isinstance(drive, PiecewiseDrive)]
+    jumps = any(drive.between == "hold" for drive in uniform)
+    return 1.0 if jumps or last_change(pieces, subject.duration, False) > 0.0 else 2.0

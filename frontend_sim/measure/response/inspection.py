@@ -5,25 +5,26 @@ from __future__ import annotations
 import dataclasses
 import math
 from dataclasses import dataclass, field
-from itertools import pairwise
 from typing import Any
 
 import numpy as np
 
+from frontend_sim.analog.chain import Chain
 from frontend_sim.analog.discretize import METHODS
+from frontend_sim.analog.loading import unbuffered_notes
 from frontend_sim.analog.stages.curved_sensor import CurvedSensor
 from frontend_sim.converter import AnyAdc
+from frontend_sim.errors import ModelError
+from frontend_sim.measure.noise_budget import NoiseBudget, noise_budget
 from frontend_sim.measure.response.frequency_domain import FrequencyDomain
 from frontend_sim.measure.response.grid_model import GridModel
+from frontend_sim.measure.response.loading import Loading, loading_of
 from frontend_sim.measure.response.model_distance import Exact, ModelDistance, model_distance
 from frontend_sim.measure.response.pole import Pole, poles_of
 from frontend_sim.measure.response.step_response import StepResponse
 from frontend_sim.measure.response.time_domain import TimeDomain
-from frontend_sim.scenario.circuit import circuit_of
+from frontend_sim.scenario.circuit import circuit_of, stages_of
 from frontend_sim.scenario.model import Scenario
-
-PASSIVE = ("rc-lowpass", "rc-highpass")
-"""Kinds of stage that would load one another in a real circuit."""
 
 
 @dataclass(frozen=True, eq=False)
@@ -40,6 +41,8 @@ class Inspection:
     frequency : gain, corners, group delay, attenuation, noise bandwidth
     poles : stage by stage
     models : how far zoh, foh and bilinear lie from exact, at the grid rate
+    loading : what the sections of ladders do to each other
+    noise : where the noise at the pin comes from; None where a pole at the origin gathers it
     notes : what the reader should know beside the numbers
     response : the step response, for plots
     grid_models : the discrete models, for plots
@@ -53,6 +56,8 @@ class Inspection:
     frequency: FrequencyDomain
     poles: tuple[Pole, ...]
     models: tuple[ModelDistance, ...]
+    loading: tuple[Loading, ...]
+    noise: NoiseBudget | None
     notes: tuple[str, ...]
     response: StepResponse = field(repr=False)
     grid_models: tuple[GridModel, ...] = field(repr=False)
@@ -83,6 +88,7 @@ def inspect_scenario(scenario: Scenario) -> Inspection:
     frequency = FrequencyDomain.of(response, adc.rate)
     time = TimeDomain.of(response, frequency.largest.value, adc)
     grid_models, models = _models(scenario, response, time, frequency)
+    noise, about_noise = _noise(scenario, chain)
     return Inspection(
         scenario.title,
         adc,
@@ -92,9 +98,26 @@ def inspect_scenario(scenario: Scenario) -> Inspection:
         frequency,
         poles_of(chain),
         models,
-        _notes(scenario, time, frequency),
+        loading_of(stages_of(scenario), adc.rate),
+        noise,
+        (*_notes(scenario, time, frequency), *about_noise),
         response,
         grid_models,
+    )
+
+
+def _noise(scenario: Scenario, chain: Chain) -> tuple[NoiseBudget | None, tuple[str, ...]]:
+    """Return the noise budget, down to a tenth of the reciprocal of the run's length, and notes."""
+    duration = scenario.simulation.duration or scenario.stimulus.known_length() or 1.0
+    try:
+        budget = noise_budget(chain, scenario.adc, 0.1 / duration)
+    except ModelError as error:
+        return None, (f"there is no noise budget: {error}",)
+    if not budget.unbounded:
+        return budget, ()
+    return budget, (
+        "nothing limits the bandwidth of these noise sources before the converter, so the part "
+        f"that reaches it directly is left out of the budget: {', '.join(budget.unbounded)}",
     )
 
 
@@ -126,7 +149,7 @@ def _models(
 
 
 def _notes(scenario: Scenario, time: TimeDomain, frequency: FrequencyDomain) -> tuple[str, ...]:
-    notes = [*_loading(scenario), *_curves(scenario)]
+    notes = [*unbuffered_notes(scenario.chain), *_curves(scenario)]
     if time.end is None:
         notes.append("a pair of poles without damping: a step rings for ever and never settles")
     elif math.isinf(time.end):
@@ -140,16 +163,6 @@ def _notes(scenario: Scenario, time: TimeDomain, frequency: FrequencyDomain) -> 
             "bilinear model is shown without it"
         )
     return tuple(notes)
-
-
-def _loading(scenario: Scenario) -> list[str]:
-    """Tell of passive sections in a row, which load each other where no buffer stands between."""
-    return [
-        f"{before.label(place)!r} and {after.label(place + 1)!r} are passive sections in a row and "
-        "taken as buffered; without a buffer between them they load each other in a real circuit"
-        for place, (before, after) in enumerate(pairwise(scenario.chain), start=1)
-        if before.kind in PASSIVE and after.kind in PASSIVE
-    ]
 
 
 def _curves(scenario: Scenario) -> list[str]:
