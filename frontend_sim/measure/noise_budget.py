@@ -84,7 +84,8 @@ def noise_budget(chain: Chain, adc: AnyAdc, lowest: float) -> NoiseBudget:
     for number, name in enumerate(model.names):
         mine = [column for column, owner in enumerate(model.owner) if owner == number]
         b = model.b[:, mine]
-        variance = float(model.c @ stationary_covariance(model.a, b) @ model.c)
+        # Where a high pass takes nearly all of it away, rounding may fall below zero.
+        variance = max(float(model.c @ stationary_covariance(model.a, b) @ model.c), 0.0)
         inside = _power_below(model, b, half)
         powers.append((name, variance, max(variance - inside, 0.0)))
     if adc.input_noise > 0.0:

@@ -78,7 +78,7 @@ def test_a_narrow_band_pass_at_32_bits():
 def test_notes():
     """Passive sections in a row, and a pre-warp out of reach, are told."""
     notes = "\n".join(inspected(LOW, HIGH, discretization="bilinear", prewarp="15 kHz").notes)
-    assert "'1 rc-lowpass' and '2 rc-highpass' are passive sections in a row" in notes
+    assert "'1 rc-lowpass' and '2 rc-highpass' are passive and stand in a row" in notes
     assert "prewarp 15000 Hz is not below half the grid rate, 10000 Hz" in notes
     assert inspected(LOW, DOUBLE, LOW).notes == ()
 
