@@ -346,25 +346,21 @@ def follow(
         here, t = y[s], 0.0
         if apart.shape[1]:
             here = min(max(apart[1, s] + apart[0, s], low), high)
+        # The line comes in at a rail and goes out at the other one; between them it is the goal.
+        comes, goes = (low, high) if slope > 0.0 else (high, low)
+        enters = (comes - first) / slope if slope != 0.0 else -math.inf
+        leaves = (goes - first) / slope if slope != 0.0 else math.inf
         for _ in range(MOST_EVENTS):
-            q = first + slope * t
-            # The clipped line bends where it meets a rail; until then its slope is one number.
-            bend, steep = math.inf, 0.0
-            for edge in (low, high):
-                if (edge - q) * slope > 0.0:
-                    bend = min(bend, (edge - q) / slope)
-            if (slope > 0.0 and low <= q < high) or (slope < 0.0 and low < q <= high):
-                steep = slope
-            rest = dt - t
-            part = min(rest, bend)
-            goal = min(max(q, low), high)
+            until, steep, goal = dt, 0.0, min(max(first + slope * t, low), high)
+            if t < enters:
+                until, goal = min(enters, dt), comes
+            elif t < leaves:
+                until, steep = min(leaves, dt), slope
+            part = until - t
             if here == goal and -down <= steep <= up:
-                mode, step = FREE, part
-                if q >= high and q + steep * part >= high:
-                    mode = HIGH
-                elif q <= low and q + steep * part <= low:
-                    mode = LOW
-                reached = True
+                mode, step, reached = FREE, part, True
+                if steep == 0.0 and abs(goal) < math.inf:
+                    mode = HIGH if goal == high else LOW if goal == low else FREE
             else:
                 rising = goal > here or (here == goal and steep > up)
                 speed, mode = (up, UP) if rising else (-down, DOWN)
@@ -377,9 +373,9 @@ def follow(
                 time[mode] += step
                 if piece[mode] < 0:
                     piece[mode], since[mode] = s, t
-            t += step
+            t = until if step >= part else t + step
             if reached:
-                here = min(max(last if step >= rest else first + slope * t, low), high)
-            if step >= rest:
+                here = min(max(last if t >= dt else first + slope * t, low), high)
+            if t >= dt:
                 break
         y[s + 1] = here
