@@ -97,8 +97,8 @@ def _refuse_extremes(roots: Iterable[Root], noun: str) -> None:
     for root in roots:
         if root != 0.0 and not SLOWEST <= abs(root) <= FASTEST:
             raise ModelError(
-                f"the {noun} of magnitude {abs(root):g} rad/s is out of reach; it must be zero, or lie "
-                f"between {SLOWEST:g} and {FASTEST:g} rad/s"
+                f"the {noun} of magnitude {abs(root):g} rad/s is out of reach; it must be zero, or "
+                f"lie between {SLOWEST:g} and {FASTEST:g} rad/s"
             )
 
 

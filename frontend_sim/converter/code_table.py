@@ -51,12 +51,14 @@ def read_code_table(file: Path) -> Real:
 
 def _array(file: Path) -> Real:
     try:
-        row = np.load(file, allow_pickle=False)
-    except (ValueError, EOFError):
+        with file.open("rb") as stream:
+            row = np.lib.format.read_array(stream, allow_pickle=False)
+    # A damaged header may tell any shape.
+    except (ValueError, EOFError, OverflowError, MemoryError):
         raise ScenarioError(f"{file}: is damaged, or no NPY file of plain numbers") from None
-    if not isinstance(row, np.ndarray) or row.ndim != 1 or row.dtype.kind not in "iuf":
+    if row.ndim != 1 or row.dtype.kind not in "iuf":
         raise ScenarioError(f"{file}: expected one row of real numbers")
-    return row.astype(np.float64)
+    return np.asarray(row, dtype=np.float64)
 
 
 def _text(file: Path) -> Real:

@@ -4,10 +4,10 @@ from __future__ import annotations
 
 from typing import Any
 
-from numba import njit
+from frontend_sim.compiled import compiled
 
 
-@njit(cache=True)
+@compiled()
 def recur(first: float, decay: Any, kick: Any, out: Any) -> None:
     """Fill out[0] = first, out[k + 1] = decay[k] out[k] + kick[k], one after the other."""
     x = first

@@ -69,7 +69,7 @@ class Nonlinearity(Value):
             raise ValueError('peak needs a shape; add for instance shape = "bow"')
         if self.shape is not None and self.peak == 0.0:
             raise ValueError('shape needs a peak; add for instance peak = "2 LSB"')
-        if self.table is None and "table_holds" in self.model_fields_set:
+        if self.table is None and self.table_holds != "inl":
             raise ValueError("table_holds says what a table holds; add table, or take it out")
         if not (self.shape or self.table or self.capacitor_mismatch):
             raise ValueError("nothing is given; give shape and peak, table, or capacitor_mismatch")

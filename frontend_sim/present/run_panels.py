@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from typing import TYPE_CHECKING, Any
 
 import numpy as np
@@ -20,8 +20,16 @@ if TYPE_CHECKING:
 
 Real = NDArray[np.float64]
 
-FEW = 120
-"""Up to so many conversions are drawn as dots of their own."""
+FEW = 400
+"""Up to so many conversions are drawn as dots of their own, which no line joins."""
+
+WAVE_WIDTH, PIN_WIDTH, CODES_WIDTH = 1.1, 0.9, 3.6
+"""Widths of the lines; the codes are seen on both sides of the pin [points]."""
+
+DASHES: tuple[Any, ...] = (
+    "-", (0, (6, 3)), (0, (2, 2)), (0, (6, 2, 1, 2)), (0, (10, 4)), (0, (4, 2, 1, 2, 1, 2)),
+)  # fmt: skip
+"""Lines of the points of a chain, in order: what lies beneath shows through the gaps."""
 
 NARROW = 0.05
 """The limits of the range are in view unless the signal spans less than this share of it."""
@@ -37,6 +45,8 @@ class Conversions:
     time : in the unit of the axis, shape (K,)
     pin, voltage : shape (K,) [V]
     overrange : shape (K,)
+    between_time, between : the pin between conversions too, where its waveform is kept; empty
+        where it is not; shape (W,), [V]
     """
 
     adc: AnyAdc
@@ -44,6 +54,8 @@ class Conversions:
     pin: Real
     voltage: Real
     overrange: NDArray[np.bool_]
+    between_time: Real = field(default_factory=lambda: np.empty(0))
+    between: Real = field(default_factory=lambda: np.empty(0))
 
     @property
     def few(self) -> bool:
@@ -58,12 +70,9 @@ def draw_codes(axes: Axes, conversions: Conversions) -> None:
     dots: dict[str, Any] = {"marker": "o", "markersize": 5.0, "linestyle": "none"}
     _line(
         axes, time, factor * conversions.voltage, color=ORANGE, label="codes read back",
-        **(dots if conversions.few else {"linewidth": 2.6}),
+        **(dots if conversions.few else {"linewidth": CODES_WIDTH, "drawstyle": "steps-post"}),
     )  # fmt: skip
-    _line(
-        axes, time, factor * conversions.pin, color=BLUE, linewidth=1.0, label="pin, exact",
-        marker="." if conversions.few else None, markersize=4.0,
-    )  # fmt: skip
+    _draw_pin(axes, conversions, factor)
     _draw_limits(axes, conversions, factor)
     marked = shown_flags(conversions.overrange)
     if len(marked):
@@ -74,6 +83,18 @@ def draw_codes(axes: Axes, conversions: Conversions) -> None:
     axes.set_ylabel(f"voltage [{letter}V]")
     _add_code_axis(axes, adc, factor)
     _add_legend(axes)
+
+
+def _draw_pin(axes: Axes, conversions: Conversions, factor: float) -> None:
+    """Draw the pin; a few conversions are joined by what it did between them, or by nothing."""
+    style: dict[str, Any] = {"color": BLUE, "linewidth": PIN_WIDTH, "label": "pin, exact"}
+    if not conversions.few:
+        _line(axes, conversions.time, factor * conversions.pin, **style)
+    elif len(conversions.between) > len(conversions.time):
+        _line(axes, conversions.between_time, factor * conversions.between, **style)
+    else:
+        style |= {"marker": ".", "markersize": 4.0, "linestyle": "none"}
+        _line(axes, conversions.time, factor * conversions.pin, **style)
 
 
 def _draw_limits(axes: Axes, conversions: Conversions, factor: float) -> None:
@@ -136,9 +157,9 @@ def draw_waveforms(axes: Axes, time: Real, waveform: Mapping[str, Real], unit: s
     for index, (name, (at, values)) in enumerate(shown.items()):
         axes.plot(
             at, factor * values, color=SERIES[index % len(SERIES)],
-            # Curves that lie on one another show as bands.
-            linewidth=min(1.0 + 0.8 * (len(shown) - 1 - index), 3.4),
-            linestyle="-" if index < len(SERIES) else "--",
+            # Curves that lie on one another show as bands, and through the gaps of the upper one.
+            linewidth=min(WAVE_WIDTH + 0.5 * (len(shown) - 1 - index), 2.6),
+            linestyle=DASHES[index % len(DASHES)],
             # A dollar sign would begin a formula, and a name in front of "_" is not shown.
             label=name.replace("$", r"\$").lstrip("_") or "point",
         )  # fmt: skip

@@ -29,7 +29,8 @@ def plot_run(run: RunLike, path: str | os.PathLike[str], overwrite: bool = False
     """Draw a run, or a record, into a PNG or SVG file.
 
     Pin voltage and the codes read back, with the limits of the ADC's range and marks where it was
-    exceeded; the difference of the two in LSB; the waveforms, where some are kept; and for each
+    exceeded; the pin between conversions where its waveform is kept, and where it is not, a few
+    conversions are dots that no line joins; the difference of the two in LSB; the waveforms, where some are kept; and for each
     settling check the distance from the end in LSB on a logarithmic axis, with the band, the last
     exit and the time that is granted. A long run is reduced to the lowest and the highest value of
     each column of pixels, so no peak is lost.
@@ -64,7 +65,12 @@ def run_figure(run: RunLike) -> Figure:
     axes = _rows(figure, heights, len(views))
     last = max((float(times[-1]) for times in (time, waveform_time) if len(times)), default=0.0)
     factor, letter = prefix_of(last)
-    conversions = Conversions(adc, factor * time, run.pin, run.voltage, run.overrange)
+    # The output of the last stage is the pin.
+    between = run.waveform.get(run.scenario.points()[-1], np.empty(0))
+    conversions = Conversions(
+        adc, factor * time, run.pin, run.voltage, run.overrange,
+        factor * waveform_time[: len(between)], between,
+    )  # fmt: skip
     draw_codes(axes[0], conversions)
     draw_difference(axes[1], conversions)
     last_row = len(heights)

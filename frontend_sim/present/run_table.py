@@ -130,8 +130,12 @@ def _rows(summary: dict[str, Any]) -> list[tuple[str, str]]:
         rows.append(("codes less pin, rms", f"{fixed(summary['difference_rms'], 3)} LSB"))
     if (grid := summary["grid"]) is not None:
         rate = engineering(grid["grid_rate"], "Hz", 4)
-        rows.append(("discrete model", f"{grid['method']} at {rate}"))
-        rows.append(("model less exact, largest", f"{plain(grid['largest_error'], 3)} LSB"))
+        far = f"{plain(grid['largest_error'], 3)} LSB"
+        if grid["method"] == "exact":
+            rows += [("limits looked at", rate), ("half that rate changes, at most", far)]
+        else:
+            rows.append(("discrete model", f"{grid['method']} at {rate}"))
+            rows.append(("model less exact, largest", far))
     return rows
 
 

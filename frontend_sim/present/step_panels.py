@@ -62,11 +62,12 @@ def draw_distance(axes: Axes, view: StepView) -> None:
     for settling in bands:
         axes.axhline(settling.band, color=LIMIT, linestyle="--", linewidth=1.0, zorder=2)
         axes.annotate(
-            f"{settling.label} after {engineering(settling.time or 0.0, 's')}",
-            (0.0, settling.band), xycoords=("axes fraction", "data"), xytext=(32, 2),
-            textcoords="offset points", ha="left", va="bottom", fontsize="small", color=BLACK,
-            zorder=5,
-            bbox={"facecolor": "white", "edgecolor": "none", "alpha": 0.75, "pad": 0.8},
+            f"{settling.label}\nafter {engineering(settling.time or 0.0, 's')}",
+            (1.0, settling.band), xycoords=("axes fraction", "data"), xytext=(5, 0),
+            # Beside the panel, where no curve can strike it through.
+            textcoords="offset points", ha="left", va="center", fontsize="small", color=BLACK,
+            annotation_clip=False,
+            bbox={"facecolor": "white", "edgecolor": "none", "pad": 0.8},
         )  # fmt: skip
         if settling.time is not None:
             axes.plot([factor * settling.time], [settling.band], "o", color=LIMIT, markersize=5,

@@ -10,9 +10,11 @@ import numpy as np
 
 from frontend_sim.analog.chain import Chain
 from frontend_sim.analog.cut import CutChain
-from frontend_sim.converter import clock, quantizer
+from frontend_sim.converter import clock
+from frontend_sim.converter.digitizer import Converted
 from frontend_sim.errors import ScenarioError
 from frontend_sim.randomness import stream
+from frontend_sim.scenario.check import scenario_notes
 from frontend_sim.scenario.circuit import circuit_of, stages_of
 from frontend_sim.scenario.model import Scenario
 from frontend_sim.simulation.accuracy import Distance, Trials
@@ -78,6 +80,8 @@ class Simulation:
                 f"the run lasts {self.duration:g} s; lengthen simulation.duration"
             )
         self.notes: tuple[str, ...] = scenario.stimulus.notes()
+        temperature = scenario.environment.temperature
+        self._digitizer = scenario.adc.digitizer(scenario.seed, temperature)
         self.grid: GridReport | None = None
         self._block = block
         self._pin = [len(self.chain.points) - 1]
@@ -85,6 +89,8 @@ class Simulation:
         initial = scenario.simulation.initial
         self._models = Models.of(self.chain, cut, self.drives, initial, self.duration)
         self._plan = Plan.of(scenario, self._models, self._trials())
+        if all(stage.limiter() is None for stage in stages_of(scenario)):
+            self.notes += scenario_notes(scenario)
         self.notes += self._plan.notes
         self._noise = self._noise_path()
 
@@ -93,8 +99,8 @@ class Simulation:
 
         ``progress`` is called with the share that is done, from 0 to 1.
         """
-        adc, seed = self.scenario.adc, self.scenario.seed
-        axis, plan = self._conversion_axis(), self._plan
+        adc, digitizer = self.scenario.adc, self._digitizer
+        axis, plan = self._look_axis(), self._plan
         model = self._models.model(self._pin, axis, plan.stepping)
         states = model.start()
         reference = None
@@ -107,29 +113,32 @@ class Simulation:
         waveform_done = 0
         noise = self._noise
         noise_state = noise.start() if noise else np.empty(0)
-        for start in range(0, self.count, self._block):
-            stop = min(start + self._block, self.count)
-            instants = clock.sampling_instants(adc, start, stop, seed)
+        conversion, looks, done = digitizer.start(), clock.look_count(adc, self.count), 0
+        for start in range(0, looks, self._block):
+            stop = min(start + self._block, looks)
+            instants = digitizer.instants(start, stop)
             states, (pin,) = model.advance(states, start, instants)
             if reference is not None:
                 reference_states, (true,) = reference.advance(reference_states, start, instants)
                 distance.add((pin - true) / adc.lsb)
-            added = np.zeros(1)
+            added = None
             if noise is not None:
                 noise_state, added = noise.advance(noise_state, start, stop)
-            yield self._converted(start, instants, pin, added)
+            conversion, converted = digitizer.convert(conversion, start, instants, pin, added)
+            yield self._block_of(converted)
+            done = converted.start + len(converted.codes)
             if waveform is not None:
-                until = self._waveform_until(waveform.count, stop)
+                until = self._waveform_until(waveform.count, float(instants[-1]), stop == looks)
                 while waveform_done < until:
                     upto = min(waveform_done + self._block, until)
                     times = np.arange(waveform_done, upto, dtype=np.float64) / self._waveform_rate
                     waveform_states, values = waveform.model.advance(
                         waveform_states, waveform_done, times
                     )
-                    yield self._kept(stop, times, values)
+                    yield self._kept(done, times, values)
                     waveform_done = upto
             if progress is not None:
-                progress(stop / self.count)
+                progress(stop / looks)
         if isinstance(model, Limited):
             self.notes += model.notes(states)
         self.grid, note = plan.report(self.scenario, distance)
@@ -153,19 +162,23 @@ class Simulation:
         _, found = model.advance(model.start(), 0, instants)
         return found
 
-    def _conversion_axis(self) -> Axis:
-        adc = self.scenario.adc
-        interval = 1.0 / adc.rate
-        return Axis(interval, max(adc.first + adc.aperture_delay, interval) + interval)
+    def _look_axis(self) -> Axis:
+        """Return the axis of the converter's looks; whether they are number · interval exactly."""
+        adc, digitizer = self.scenario.adc, self._digitizer
+        even = adc.pattern.widest == adc.pattern.closest and adc.wander is None
+        at_once = adc.first == adc.aperture_delay == adc.aperture_jitter == 0.0
+        return Axis(digitizer.interval, digitizer.longest, uniform=even and at_once)
 
     def _trials(self) -> Trials:
-        adc, accuracy = self.scenario.adc, self.scenario.simulation.accuracy
-
-        def instants(start: int, stop: int) -> Real:
-            return clock.sampling_instants(adc, start, stop, self.scenario.seed)
-
-        scale = (adc.rate, adc.lsb, adc.high - adc.low, accuracy)
-        return Trials(*scale, self.count, self._pin, self._conversion_axis(), instants)
+        adc, digitizer = self.scenario.adc, self._digitizer
+        scale = (
+            1.0 / digitizer.interval,
+            adc.lsb,
+            adc.high - adc.low,
+            self.scenario.simulation.accuracy,
+        )
+        looks = clock.look_count(adc, self.count)
+        return Trials(*scale, looks, self._pin, self._look_axis(), digitizer.instants)
 
     @property
     def _waveform_rate(self) -> float:
@@ -185,13 +198,11 @@ class Simulation:
         model = self._models.model(self._waveform_points, axis, self._plan.stepping)
         return _Axis(model, max(math.ceil(self.duration * self._waveform_rate - 1e-9), 1))
 
-    def _waveform_until(self, count: int, conversions: int) -> int:
-        """Return how far the waveform goes after some conversions, at a multiple of tiles."""
-        if conversions == self.count:
+    def _waveform_until(self, count: int, time: float, whole: bool) -> int:
+        """Return how far the waveform goes until a time, at a multiple of tiles."""
+        if whole:
             return count
-        adc = self.scenario.adc
-        position = (adc.first + conversions / adc.rate) * self._waveform_rate
-        return min(int(position) // WAVEFORM_TILE * WAVEFORM_TILE, count)
+        return min(int(time * self._waveform_rate) // WAVEFORM_TILE * WAVEFORM_TILE, count)
 
     def _noise_path(self) -> NoisePath | None:
         """Return the noise of the circuit at the conversions, if it has any and it is wanted."""
@@ -206,14 +217,11 @@ class Simulation:
             )
         if not model.names or len(model.a) == 0:  # without states no noise is left
             return None
-        return NoisePath.of(model, 1.0 / self.scenario.adc.rate, self.scenario.seed)
+        return NoisePath.of(model, self._digitizer.interval, self.scenario.seed)
 
-    def _converted(self, start: int, instants: Real, pin: Real, noise: Real) -> RunBlock:
-        adc = self.scenario.adc
-        voltage = quantizer.converted_voltage(adc, pin + noise, start, self.scenario.seed)
-        codes, overrange = quantizer.quantize(adc, voltage)
-        read = quantizer.read_back(adc, codes)
-        return RunBlock(start, instants, pin, codes, read, overrange, np.empty(0), self._named())
+    def _block_of(self, part: Converted) -> RunBlock:
+        codes = (part.codes, part.voltage, part.overrange)
+        return RunBlock(part.start, part.time, part.pin, *codes, np.empty(0), self._named())
 
     def _kept(self, start: int, times: Real, values: Real) -> RunBlock:
         none, codes = np.empty(0), np.empty(0, np.int64)

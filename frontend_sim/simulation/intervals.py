@@ -39,7 +39,7 @@ class IntervalTable:
 
     @classmethod
     def of(cls, system: Real, states: int, longest: float) -> Self:
-        """Tabulate a system, of which the first ``states`` are the chain's, up to ``longest`` [s]."""
+        """Tabulate a system up to ``longest`` [s]; the first ``states`` of it are the chain's."""
         norm = float(np.max(np.sum(np.abs(system), axis=1), initial=0.0))
         unit = 2.0 ** math.floor(math.log2(FINEST / norm)) if norm > 0.0 else 1.0
         # Below a rounding of the longest interval no finer unit is ever needed.

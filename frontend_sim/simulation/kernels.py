@@ -5,8 +5,9 @@ from __future__ import annotations
 from typing import Any
 
 import numpy as np
-from numba import njit
 from numpy.typing import NDArray
+
+from frontend_sim.compiled import compiled
 
 Real = NDArray[np.float64]
 Index = NDArray[np.int64]
@@ -26,7 +27,7 @@ def reach(matrix: Real) -> Index:
     return reached
 
 
-@njit(cache=True, inline="always")
+@compiled(inline="always")
 def row_times(matrix: Any, z: Any, r: int, n: int, stop: Any) -> float:
     """Return row r of a matrix times z = [x; g], over the columns that the row needs."""
     total = 0.0
@@ -38,7 +39,7 @@ def row_times(matrix: Any, z: Any, r: int, n: int, stop: Any) -> float:
     return total
 
 
-@njit(cache=True)
+@compiled()
 def advance(
     z: Any, work: Any, n: int, dt: float, unit: float, system: Any, table: Any, stop: Any
 ) -> None:
@@ -69,7 +70,7 @@ def advance(
             z[r] += rest * (work[r] + 0.5 * rest * row_times(system, work, r, n, stop))
 
 
-@njit(cache=True)
+@compiled()
 def march(
     x: Any, start: Any, dt: Any, unit: float, system: Any, table: Any, stop: Any, states: Any
 ) -> None:
@@ -87,7 +88,7 @@ def march(
         states[k] = x
 
 
-@njit(cache=True)
+@compiled()
 def readout(states: Any, u: Any, c: Any, d: Any, outputs: Any) -> None:
     """outputs[i, k] = c[i] · states[k] + d[i] u[k]."""
     for i in range(len(d)):
@@ -98,7 +99,7 @@ def readout(states: Any, u: Any, c: Any, d: Any, outputs: Any) -> None:
             outputs[i, k] = total
 
 
-@njit(cache=True)
+@compiled()
 def since_point(
     states: Any, value: Any, rise: Any, since: Any, unit: float, system: Any, table: Any, stop: Any
 ) -> None:
@@ -119,7 +120,7 @@ def since_point(
             states[k] = z[:n]
 
 
-@njit(cache=True, fastmath={"reassoc", "contract", "nsz"})
+@compiled(fastmath={"reassoc", "contract", "nsz"})
 def weigh(points: Any, first: Any, count: Any, weights: Any, sums: Any) -> None:
     """sums[k, r] = sum over i < count[k] of weights[r, -count[k] + i] · points[first[k] + i].
 
@@ -137,7 +138,7 @@ def weigh(points: Any, first: Any, count: Any, weights: Any, sums: Any) -> None:
             sums[k, r] = total
 
 
-@njit(cache=True)
+@compiled()
 def recur(x: Any, powers: Any, stop: Any, which: Any, sums: Any, states: Any) -> None:
     """x += powers[which[k]] x + sums[k], kept in states[k]; powers are less the identity."""
     n = len(x)
@@ -154,7 +155,7 @@ def recur(x: Any, powers: Any, stop: Any, which: Any, sums: Any, states: Any) ->
         states[k] = x
 
 
-@njit(cache=True)
+@compiled()
 def recur_and_read(
     x: Any, power: Any, stop: Any, sums: Any, u: Any, c: Any, feed: Any, y: Any
 ) -> None:
@@ -176,7 +177,7 @@ def recur_and_read(
             y[i, k] = total
 
 
-@njit(cache=True)
+@compiled()
 def steady(index: Any, since: Any, before: int, stride: int) -> tuple[bool, bool]:
     """Tell whether every index is ``stride`` after the one before, and every instant on a point."""
     uneven, off = False, False
@@ -186,7 +187,7 @@ def steady(index: Any, since: Any, before: int, stride: int) -> tuple[bool, bool
     return not uneven, not (uneven or off)
 
 
-@njit(cache=True)
+@compiled()
 def mix(matrix: Any, white: Any, sums: Any) -> None:
     """sums[k] = matrix · white[k]."""
     for k in range(len(white)):
@@ -197,7 +198,7 @@ def mix(matrix: Any, white: Any, sums: Any) -> None:
             sums[k, r] = total
 
 
-@njit(cache=True)
+@compiled()
 def spread(z: Any, matrix: Any, y: Any) -> None:
     """y[i, r ROW + k] = sum over s of matrix[i, s, k] · z[r, s]: rows of outputs from states."""
     p, size, row = matrix.shape

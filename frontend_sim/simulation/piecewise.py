@@ -76,10 +76,11 @@ class PiecewisePath:
         self, state: State, drive: PiecewiseDrive, instants: Real, y: Real
     ) -> tuple[State, int]:
         """Advance through instants, fill in their outputs, and return the number of nodes."""
-        events = drive.events(state.node, float(instants[-1]) * (1.0 + 1e-15))
-        instants = _snapped(instants, events)
+        slack = ULPS * np.spacing(instants + self.outputs.delay)
+        events = drive.events(state.node, float(instants[-1] + slack[-1]))
+        instants = _snapped(instants, events, slack)
         nodes = np.union1d(instants, events)
-        nodes = nodes[nodes > state.node]
+        nodes = _refreshed(nodes[nodes > state.node], state.node, drive.fresh)
         g = drive.states(np.concatenate([[state.node], nodes]))
         x = state.x.copy()
         states = np.empty((len(nodes) + 1, len(x)))
@@ -101,12 +102,31 @@ class PiecewisePath:
             kernels.march(x, g, steps, table.unit, table.system, table.table, table.stop, states)
 
 
-def _snapped(instants: Real, events: Real) -> Real:
-    """Move an instant that differs from an event by rounding only onto the event."""
+def _snapped(instants: Real, events: Real, slack: Real) -> Real:
+    """Move an instant that differs from an event by rounding only onto the event.
+
+    Instants behind a delay carry the rounding of the undelayed ones, which the slack counts in.
+    """
     if len(events) == 0:
         return instants
     after = np.clip(np.searchsorted(events, instants), 0, len(events) - 1)
     before = np.maximum(after - 1, 0)
-    slack = ULPS * np.spacing(np.maximum(instants, np.finfo(np.float64).tiny))
     result = np.where(np.abs(events[after] - instants) <= slack, events[after], instants)
     return np.where(np.abs(events[before] - instants) <= slack, events[before], result)
+
+
+def _refreshed(nodes: Real, start: float, fresh: float) -> Real:
+    """Put nodes into intervals longer than ``fresh``, ever denser towards their end.
+
+    There the generator's state is set anew; the chain forgets what was lost long before the end.
+    """
+    if not np.isfinite(fresh) or len(nodes) == 0:
+        return nodes
+    begins = np.concatenate([[start], nodes[:-1]])
+    longest = float(np.max(nodes - begins))
+    if longest <= fresh:
+        return nodes
+    back = fresh * (2.0 ** np.arange(1, int(np.log2(longest / fresh)) + 2) - 1.0)
+    long = np.flatnonzero(nodes - begins > fresh)
+    added = nodes[long, None] - back[None, :]
+    return np.union1d(nodes, added[added > begins[long, None]])

@@ -15,14 +15,16 @@ Codes = NDArray[np.int64]
 
 @dataclass(frozen=True, eq=False)
 class GridReport:
-    """How far a discrete model of the chain lies from the exact answer.
+    """How far a discrete model of the chain, or the grid of its limiters, lies from exact.
 
     Parameters
     ----------
-    method : zoh, foh or bilinear
+    method : zoh, foh or bilinear; exact for exact steps between limiters on a grid
     grid_rate : points per second [Hz]
-    estimate : error estimated before the run [LSB], None where the grid was given
-    largest_error, rms_error : distance from the exact mode over all conversions [LSB]
+    estimate : error estimated before the run [LSB], None where the grid was given; for limiters it
+        is an upper bound
+    largest_error, rms_error : over all conversions, distance of a discrete model from the exact
+        mode; for limiters, what half as many points per second would change [LSB]
     warping : shift of frequency at half the conversion rate, as a share of it; 0 where the method
         does not warp
     """

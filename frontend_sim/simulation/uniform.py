@@ -55,6 +55,7 @@ class UniformPath:
     since: SincePoint
     initial: Real
     stride: int
+    settled: bool
 
     @classmethod
     def of(
@@ -74,12 +75,24 @@ class UniformPath:
         """
         x = chain.settled(drive.initial) if initial == "settled" else np.zeros(chain.order)
         gamma = model.start + model.stop + model.e @ model.stop
-        return cls(drive, outputs, model, gamma, _weights(model.e, gamma), since, x, stride)
+        return cls(
+            drive,
+            outputs,
+            model,
+            gamma,
+            _weights(model.e, gamma),
+            since,
+            x,
+            stride,
+            initial == "settled",
+        )
 
     def start(self) -> State:
         """Return the state at the last point at or before t = 0."""
         node = int(self.drive.locate(np.zeros(1))[0][0])
-        u = self.drive.points(node, node + 1)[0]
+        before, u = self.drive.points(node - 1, node + 1)
+        if self.settled and before != u:  # a jump at t = 0: the line to it begins one step earlier
+            node, u = node - 1, before
         return State(self.initial - self.model.stop * u, node)
 
     def advance(
@@ -87,10 +100,14 @@ class UniformPath:
     ) -> tuple[State, Real]:
         """Advance through instants, see ``Path``."""
         source = drive or self.drive
-        index, since = self.drive.locate(instants)
+        index, since = self.drive.locate(instants, self.outputs.delay)
         y = np.empty((len(self.outputs.d), len(instants)))
         x, node, done = state.x.copy(), int(state.node), 0
         while done < len(instants):
+            while index[done] - node > MOST_POINTS:
+                points = source.points(node, node + MOST_POINTS + 1)
+                self._states(x, points, 0, np.array([MOST_POINTS]), False)
+                node += MOST_POINTS
             part = slice(done, self._piece(index, node, number, done))
             points = source.points(node, int(index[part][-1]) + 2)
             self._fill(x, points, node, number + done, index[part], since[part], y[:, part])
@@ -99,7 +116,7 @@ class UniformPath:
 
     def rested(self, state: State, number: int, instants: Real) -> State:
         """Return the state after instants at which all was zero, see ``Path``."""
-        return State(state.x, int(self.drive.locate(instants[-1:])[0][0]))
+        return State(state.x, int(self.drive.locate(instants[-1:], self.outputs.delay)[0][0]))
 
     def _piece(self, index: Index, node: int, number: int, done: int) -> int:
         """Return where the next piece ends: few enough points, and at a multiple of tiles."""

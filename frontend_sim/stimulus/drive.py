@@ -32,11 +32,13 @@ class PiecewiseDrive(ABC):
     generator : G, shape (m, m) [1/s]
     readout : r, shape (m,)
     initial : the value before t = 0
+    fresh : time after which the generator's state, run by itself, is worth setting anew [s]
     """
 
     generator: Real
     readout: Real
     initial: float
+    fresh: float = np.inf
 
     @abstractmethod
     def events(self, start: float, stop: float) -> Real:
@@ -73,16 +75,17 @@ class UniformDrive(ABC):
         Before point 0 and after the last one the signal keeps the value of the end point.
         """
 
-    def locate(self, times: Real) -> tuple[NDArray[np.int64], Real]:
+    def locate(self, times: Real, later: float = 0.0) -> tuple[NDArray[np.int64], Real]:
         """Return the index of the point at or before each time, and the time since it [s].
 
         A time within four units in the last place of a point is that point: conversions at k/rate
-        then meet the points of a record of the same rate whatever the rounding of both.
+        then meet the points of a record of the same rate whatever the rounding of both. Times that
+        are instants less a delay carry the rounding of the instants; ``later`` is that delay [s].
         """
         from frontend_sim.stimulus.locate import locate
 
         index, since = np.empty(len(times), np.int64), np.empty(len(times))
-        locate(times, self.origin, self.rate, 4.0 * np.finfo(np.float64).eps, index, since)
+        locate(times, later, self.origin, self.rate, 4.0 * np.finfo(np.float64).eps, index, since)
         return index, since
 
     def values(self, times: Real) -> Real:

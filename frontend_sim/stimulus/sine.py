@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import math
 from dataclasses import dataclass
 from typing import Literal
 
@@ -44,10 +43,13 @@ class Tone(PiecewiseDrive):
         return self.offset + self.amplitude * float(np.sin(self.phase))
 
     def events(self, start: float, stop: float) -> Real:
-        """Return a time every ``FRESH`` cycles: there the states are set anew, with no jump."""
-        step = FRESH / self.frequency
-        times = np.arange(math.floor(start / step), math.ceil(stop / step) + 1.0) * step
-        return times[(times > start) & (times <= stop)]
+        """Return no event: the sine goes on for ever."""
+        return np.empty(0)
+
+    @property
+    def fresh(self) -> float:  # type: ignore[override]  # derived here, stored elsewhere
+        """``FRESH`` cycles."""
+        return FRESH / self.frequency
 
     def states(self, times: Real) -> Real:
         """Return sine, cosine and offset."""

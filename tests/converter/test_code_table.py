@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import io
 from pathlib import Path
 
 import numpy as np
@@ -11,6 +12,14 @@ from hypothesis import strategies as st
 
 from frontend_sim.converter.code_table import read_code_table
 from frontend_sim.errors import ScenarioError
+
+
+def header(shape: tuple[int, ...]) -> bytes:
+    """Return an NPY file that promises more numbers than it has, none."""
+    stream = io.BytesIO()
+    about = {"descr": "<f8", "fortran_order": False, "shape": shape}
+    np.lib.format.write_array_header_1_0(stream, about)
+    return stream.getvalue()
 
 
 @pytest.mark.parametrize(
@@ -61,6 +70,9 @@ def test_no_digit_is_lost(tmp_path_factory: pytest.TempPathFactory, numbers: lis
         ("a.csv", b"1\n\xff\xfe\n", "no text in UTF-8"),
         ("a.npy", b"\x93NUMPY but not really", "damaged, or no NPY file"),
         ("a.npy", b"", "damaged, or no NPY file"),
+        ("a.npy", b"PK\x05\x06", "damaged, or no NPY file"),
+        ("a.npy", header((10**15,)), "damaged, or no NPY file"),
+        ("a.npy", header((10,)), "damaged, or no NPY file"),
     ],
 )
 def test_wrong_files_are_refused(tmp_path: Path, name: str, content: bytes, message: str) -> None:

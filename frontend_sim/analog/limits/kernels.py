@@ -5,7 +5,7 @@ from __future__ import annotations
 import math
 from typing import Any
 
-from numba import njit
+from frontend_sim.compiled import compiled
 
 FREE, HIGH, LOW, UP, DOWN = -1, 0, 1, 2, 3
 """What limits: nothing, a rail or a diode, the slew rate; from 0 on, numbers of limits."""
@@ -17,7 +17,7 @@ MOST_EVENTS = 64
 """Events in one piece, far more than a line as input can make."""
 
 
-@njit(cache=True, inline="always")
+@compiled(inline="always")
 def relaxed(y: float, z: float, slope: float, rate: float, t: float) -> float:
     """Return y after t, for dy/dt = z at first, relaxing at a rate towards a constant slope:
 
@@ -26,7 +26,7 @@ def relaxed(y: float, z: float, slope: float, rate: float, t: float) -> float:
     return y + slope * t - (z - slope) * math.expm1(-rate * t) / rate
 
 
-@njit(cache=True)
+@compiled()
 def rise_through(y: float, z: float, slope: float, rate: float, level: float, rest: float) -> float:
     """Return when ``relaxed`` first rises through a level, or infinity if not within ``rest``.
 
@@ -60,7 +60,7 @@ def rise_through(y: float, z: float, slope: float, rate: float, level: float, re
     return t
 
 
-@njit(cache=True)
+@compiled()
 def steepening(z: float, slope: float, rate: float, up: float, down: float) -> float:
     """Return when the derivative of ``relaxed`` leaves [-down, up], or infinity."""
     if slope > up:
@@ -70,7 +70,7 @@ def steepening(z: float, slope: float, rate: float, up: float, down: float) -> f
     return math.inf
 
 
-@njit(cache=True)
+@compiled()
 def closed_loop(
     d: float, y: float, v: float, length: Any, begin: Any, end: Any, linear: Any, apart: Any,
     rate: float, gain: float, up: float, down: float, low: float, high: float,
@@ -140,7 +140,7 @@ UNTOUCHED = -2
 """The piece turned out to be free from its begin to its end."""
 
 
-@njit(cache=True)
+@compiled()
 def limited_piece(
     y: float, target: float, slope: float, dt: float, rate: float,
     up: float, down: float, low: float, high: float,
@@ -202,7 +202,7 @@ def limited_piece(
     return y, UNTOUCHED if untouched else mode
 
 
-@njit(cache=True)
+@compiled()
 def clamp(
     d: float, y: float, v: float, length: Any, begin: Any, end: Any, linear: Any, apart: Any,
     rate: float, ratio: float, low: float, high: float,
@@ -262,7 +262,7 @@ def clamp(
     return d, y
 
 
-@njit(cache=True)
+@compiled()
 def clamped_piece(
     y: float, first: float, slope: float, dt: float, rate: float, ratio: float,
     low: float, high: float, s: int, time: Any, piece: Any, since: Any,
@@ -303,7 +303,7 @@ def clamped_piece(
     return y, UNTOUCHED if untouched else mode
 
 
-@njit(cache=True)
+@compiled()
 def cut_off(
     length: Any, begin: Any, end: Any, gain: float, low: float, high: float, residue: float,
     deviation: Any, time: Any, piece: Any, since: Any,
@@ -324,7 +324,7 @@ def cut_off(
         deviation[s] = (1.0 - residue) * (min(max(last, low), high) - last)
 
 
-@njit(cache=True, inline="always")
+@compiled(inline="always")
 def beyond(first: float, last: float, level: float) -> tuple[float, float]:
     """Return which share of a line lies above a level that it does reach, and where it enters."""
     if first > level and last > level:
@@ -333,7 +333,7 @@ def beyond(first: float, last: float, level: float) -> tuple[float, float]:
     return (crossing, 0.0) if first > level else (1.0 - crossing, crossing)
 
 
-@njit(cache=True)
+@compiled()
 def follow(
     length: Any, begin: Any, end: Any, apart: Any,
     gain: float, up: float, down: float, low: float, high: float,

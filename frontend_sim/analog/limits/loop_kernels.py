@@ -5,15 +5,15 @@ from __future__ import annotations
 from typing import Any
 
 import numpy as np
-from numba import njit
 
 from frontend_sim.analog.limits.kernels import DOWN, FREE, GONE, HIGH, LOW, MOST_EVENTS, UP
+from frontend_sim.compiled import compiled
 
 EDGE = 1e-9
 """Share of a slew rate by which its end is later than its begin, so that the two never meet."""
 
 
-@njit(cache=True)
+@compiled()
 def stepped(table: Any, level: int, z: Any, out: Any) -> None:
     """out = z after step number ``level`` of a table of steps, which are less the identity."""
     size = len(z)
@@ -24,10 +24,9 @@ def stepped(table: Any, level: int, z: Any, out: Any) -> None:
         out[r] = total
 
 
-@njit(cache=True)
+@compiled()
 def join(table: Any, count: int, whole: Any) -> None:
     """whole = the step over ``count`` smallest steps, less the identity."""
-    size = len(whole)
     whole[:] = 0.0
     level = 0
     while count > 0:
@@ -38,17 +37,21 @@ def join(table: Any, count: int, whole: Any) -> None:
         level += 1
 
 
-@njit(cache=True)
-def valid(
-    mode: int, x: Any, u: float, c: Any, w_row: Any,
-    rate: float, gain: float, up: float, down: float, low: float, high: float,
-) -> bool:  # fmt: skip
-    """Tell whether a mode still holds at states x and input u."""
+@compiled()
+def demand(x: Any, u: float, c: Any, w_row: Any, rate: float, gain: float) -> tuple[float, float]:
+    """Return where the integrator stands at states x and input u, and the slope asked of it."""
     y, w = 0.0, 0.0
     for i in range(len(c)):
         y += c[i] * x[i]
         w += w_row[i] * x[i]
-    slope = rate * (gain * u - y)
+    return w, rate * (gain * u - y)
+
+
+@compiled()
+def valid(
+    mode: int, w: float, slope: float, up: float, down: float, low: float, high: float
+) -> bool:
+    """Tell whether a mode still holds, for an integrator at w with a demand for a slope."""
     if mode == FREE:
         inside = (w <= high or slope <= 0.0) and (w >= low or slope >= 0.0)
         return inside and -down <= slope <= up
@@ -59,18 +62,12 @@ def valid(
     return slope >= 0.0 if mode == HIGH else slope <= 0.0
 
 
-@njit(cache=True)
+@compiled()
 def mode_at(
-    mode: int, x: Any, u: float, c: Any, w_row: Any,
-    rate: float, gain: float, up: float, down: float, low: float, high: float,
-) -> int:  # fmt: skip
+    mode: int, w: float, slope: float, up: float, down: float, low: float, high: float
+) -> int:
     """Return what limits from here on, given what limited up to here."""
-    y, w = 0.0, 0.0
-    for i in range(len(c)):
-        y += c[i] * x[i]
-        w += w_row[i] * x[i]
-    slope = rate * (gain * u - y)
-    near = 1e-9 * (1.0 + abs(w))
+    near = EDGE * (1.0 + abs(w))
     if slope > 0.0 and (mode == HIGH or w >= high or (mode != LOW and w >= high - near)):
         return HIGH
     if slope < 0.0 and (mode == LOW or w <= low or (mode != HIGH and w <= low + near)):
@@ -80,82 +77,89 @@ def mode_at(
     return DOWN if slope <= -down * (1.0 - 0.5 * EDGE) else FREE
 
 
-@njit(cache=True)
+@compiled()
 def loop(
     state: Any, length: Any, begin: Any, end: Any, linear: Any,
     unit: float, free: Any, held: Any, c: Any, w_row: Any,
     rate: float, gain: float, up: float, down: float, low: float, high: float,
     deviation: Any, time: Any, piece: Any, since: Any,
 ) -> None:  # fmt: skip
-    """Advance state = [d, mode, x_lin, x - x_lin] over pieces; deviation[s] = y - linear[s]."""
+    """Advance state = [d, mode, x_lin, x - x_lin] over pieces; deviation[s] = y - linear[s].
+
+    Loops are written out rather than called: a call with arrays costs more than the whole piece.
+    """
     n = len(c)
-    mode = np.int64(state[1])
-    plain, plain_out = np.empty(n + 2), np.empty(n + 2)
-    x, trial = np.empty(n), np.empty(n)
+    mode, known, count = int(state[1]), -1.0, 0
+    plain, following = state[2 : 2 + n].copy(), np.empty(n)
     beyond, moved = state[2 + n :].copy(), np.empty(n)
-    plain[:n] = state[2 : 2 + n]
-    known = -1.0
-    count = np.int64(0)
-    whole, whole_held = np.zeros((1, n + 2, n + 2)), np.zeros((1, n + 1, n + 1))
-    narrow, narrow_out = np.empty(n + 1), np.empty(n + 1)
+    x, after = np.empty(n), np.empty(n)
+    whole, whole_held = np.zeros((n + 2, n + 2)), np.zeros((n + 1, n + 1))
     for s in range(len(length)):
         dt = length[s]
         if dt != known:
-            known, count = dt, np.int64(np.rint(dt / unit))
-            join(free, count, whole[0])
-            join(held, count, whole_held[0])
-        slope = (end[s] - begin[s]) / dt if dt > 0.0 else 0.0
-        plain[n], plain[n + 1] = begin[s], slope
-        for i in range(n):
-            x[i] = plain[i] + beyond[i]
-        mode = mode_at(mode, x, begin[s], c, w_row, rate, gain, up, down, low, high)
-        stepped(whole, 0, plain, plain_out)
-        if mode == FREE:
-            for r in range(n):
-                moved[r] = beyond[r]
+            known, count = dt, int(round(dt / unit))
+            join(free, count, whole)
+            join(held, count, whole_held)
+        rise = (end[s] - begin[s]) / dt if dt > 0.0 else 0.0
+        y, w = 0.0, 0.0
+        for r in range(n):
+            x[r] = plain[r] + beyond[r]
+            y += c[r] * x[r]
+            w += w_row[r] * x[r]
+        mode = mode_at(mode, w, rate * (gain * begin[s] - y), up, down, low, high)
+        speed = up if mode == UP else -down if mode == DOWN else 0.0
+        y, w = 0.0, 0.0
+        for r in range(n):
+            total = plain[r] + whole[r, n] * begin[s] + whole[r, n + 1] * rise
+            for k in range(n):
+                total += whole[r, k] * plain[k]
+            following[r] = total
+            if mode == FREE:
+                total = beyond[r]
                 for k in range(n):
-                    moved[r] += whole[0, r, k] * beyond[k]
-                trial[r] = plain_out[r] + moved[r]
-        else:
-            narrow[:n] = x
-            narrow[n] = up if mode == UP else -down if mode == DOWN else 0.0
-            stepped(whole_held, 0, narrow, narrow_out)
-            trial[:] = narrow_out[:n]
-            for r in range(n):
-                moved[r] = trial[r] - plain_out[r]
-        if valid(mode, trial, end[s], c, w_row, rate, gain, up, down, low, high):
+                    total += whole[r, k] * beyond[k]
+                moved[r] = total
+            else:
+                total = x[r] + whole_held[r, n] * speed
+                for k in range(n):
+                    total += whole_held[r, k] * x[k]
+                moved[r] = total - following[r]
+            after[r] = following[r] + moved[r]
+            y += c[r] * after[r]
+            w += w_row[r] * after[r]
+        if valid(mode, w, rate * (gain * end[s] - y), up, down, low, high):
             if mode >= 0:
                 time[mode] += dt
                 if piece[mode] < 0:
                     piece[mode], since[mode] = s, 0.0
         else:
             mode = through(
-                mode, x, begin[s], slope, count, unit, free, held, c, w_row,
+                mode, x, begin[s], rise, count, unit, free, held, c, w_row,
                 rate, gain, up, down, low, high, s, time, piece, since,
             )  # fmt: skip
+            y = 0.0
             for r in range(n):
-                moved[r] = x[r] - plain_out[r]
-        d, y, gone = 0.0, 0.0, True
+                moved[r] = x[r] - following[r]
+                y += c[r] * x[r]
+        d, gone = 0.0, True
         for r in range(n):
             d += c[r] * moved[r]
-            y += c[r] * (plain_out[r] + moved[r])
             gone = gone and abs(moved[r]) < GONE
-        for r in range(n):
-            beyond[r] = 0.0 if gone else moved[r]
-            plain[r] = plain_out[r]
+            plain[r], beyond[r] = following[r], moved[r]
         if gone:
+            beyond[:] = 0.0
             d = 0.0
         elif mode != FREE:
             d = y - linear[s]
         deviation[s] = d
     state[0], state[1] = deviation[len(length) - 1], mode
-    state[2 : 2 + n] = plain[:n]
+    state[2 : 2 + n] = plain
     state[2 + n :] = beyond
 
 
-@njit(cache=True)
+@compiled()
 def through(
-    mode: int, x: Any, u: float, slope: float, count: int, unit: float,
+    mode: int, x: Any, u: float, rise: float, count: int, unit: float,
     free: Any, held: Any, c: Any, w_row: Any,
     rate: float, gain: float, up: float, down: float, low: float, high: float,
     s: int, time: Any, piece: Any, since: Any,
@@ -166,32 +170,29 @@ def through(
     the mode still holds behind it.
     """
     n = len(c)
-    done = np.int64(0)
+    done = 0
     wide, wide_out = np.empty(n + 2), np.empty(n + 2)
     narrow, narrow_out = np.empty(n + 1), np.empty(n + 1)
     for _ in range(MOST_EVENTS):
         begun = done
-        at = u + slope * (done * unit)
         wide[:n], narrow[:n] = x, x
-        wide[n], wide[n + 1] = at, slope
+        wide[n], wide[n + 1] = u + rise * (done * unit), rise
         narrow[n] = up if mode == UP else -down if mode == DOWN else 0.0
         for level in range(len(free) - 1, -1, -1):
-            step = np.int64(1) << level
+            step = 1 << level
             if done + step > count:
                 continue
             if mode == FREE:
                 stepped(free, level, wide, wide_out)
-                holds = valid(
-                    mode, wide_out[:n], wide_out[n], c, w_row, rate, gain, up, down, low, high
-                )
+                w, slope = demand(wide_out, wide_out[n], c, w_row, rate, gain)
+                holds = valid(mode, w, slope, up, down, low, high)
                 if holds:
                     wide[:] = wide_out
             else:
                 stepped(held, level, narrow, narrow_out)
-                holds = valid(
-                    mode, narrow_out[:n], u + slope * ((done + step) * unit), c, w_row,
-                    rate, gain, up, down, low, high,
-                )  # fmt: skip
+                there = u + rise * ((done + step) * unit)
+                w, slope = demand(narrow_out, there, c, w_row, rate, gain)
+                holds = valid(mode, w, slope, up, down, low, high)
                 if holds:
                     narrow[:] = narrow_out
             if holds:
@@ -211,6 +212,6 @@ def through(
             stepped(held, 0, narrow, narrow_out)
             x[:] = narrow_out[:n]
         done += 1
-        at = u + slope * (done * unit)
-        mode = mode_at(mode, x, at, c, w_row, rate, gain, up, down, low, high)
+        w, slope = demand(x, u + rise * (done * unit), c, w_row, rate, gain)
+        mode = mode_at(mode, w, slope, up, down, low, high)
     return mode

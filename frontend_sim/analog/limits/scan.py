@@ -5,10 +5,10 @@ from __future__ import annotations
 import math
 from typing import Any
 
-from numba import njit
+from frontend_sim.compiled import compiled
 
 
-@njit(cache=True)
+@compiled()
 def follow_line(y: float, z: Any, begin: Any, end: Any, out: Any) -> None:
     """out[s] = y after piece s, see ``VariablePole``; z is the rate's integral over the piece."""
     for s in range(len(z)):

@@ -228,6 +228,7 @@ def _distances(chain: Chain, width: float, start: float, stop: float, doublings:
     return np.abs(row @ chain.c[-1])
 
 
+@pytest.mark.slow
 @settings(max_examples=500, deadline=None)
 @given(chains(), st.floats(1e-6, 0.3), st.sampled_from([math.inf, 30e-6, 300e-6]))
 def test_no_excursion_follows_and_one_is_missed_a_tick_earlier(
