@@ -99,3 +99,10 @@ def nearest(given: str, known: Iterable[str]) -> str:
     if close:
         return f"; did you mean {close[0]!r}?"
     return f"; known are {', '.join(names)}" if names else ""
+
+
+def shortened(path: object, most: int = 120) -> str:
+    """Return a path for a message: of a very long one the start and the end."""
+    text = str(path)
+    half = (most - 3) // 2
+    return text if len(text) <= most else f"{text[:half]}...{text[-half:]}"

@@ -159,7 +159,7 @@ CHECK_SAMPLES: list[dict[str, Any]] = [
     {"kind": "droop", "start": "1 ms", "stop": "2 ms", "at_most": "1 %"},
     {"kind": "clipping", "name": "no clipping", "after": "1 ms"},
     {"kind": "headroom", "at_least": "100 mV"},
-    {"kind": "noise", "at_most": "0.1 %", "quantity": "peak-to-peak", "source": "run"},
+    {"kind": "noise", "at_most": "0.1 %", "quantity": "peak-to-peak", "basis": "run"},
     {"kind": "noise-free-bits", "at_least": 10.5},
     {"kind": "snr", "at_least": "60 dB"},
     {"kind": "sinad", "at_least": 60, "window": "hann"},

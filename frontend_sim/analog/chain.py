@@ -204,8 +204,8 @@ def section(stage: Stage, name: str, temperature: float = ROOM_TEMPERATURE) -> S
         for pole in block.poles:
             if pole.real > 0.0:
                 raise ModelError(
-                    f"stage {name!r} is unstable: it has a pole at {_text_of(pole)} rad/s; every "
-                    "pole needs a negative real part"
+                    f"stage {name!r} is unstable: it has a pole at {_text_of(pole)} rad/s; no "
+                    "pole may lie in the right half plane"
                 )
     return Section(
         name,

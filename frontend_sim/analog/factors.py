@@ -61,7 +61,8 @@ def cascade(zeros: Iterable[Root], poles: Iterable[Root], gain: float) -> tuple[
     n_poles = 2 * len(pole_pairs) + len(real_poles)
     if n_zeros > n_poles:
         raise ModelError(
-            f"{n_zeros} zeros stand against {n_poles} poles; the gain would grow without bound "
+            f"{n_zeros} {'zero stands' if n_zeros == 1 else 'zeros stand'} against {n_poles} "
+            f"{'pole' if n_poles == 1 else 'poles'}; the gain would grow without bound "
             "with frequency, so give at least as many poles as zeros"
         )
     # Blocks of high quality factor last, as in practice: they see the quieter signal.

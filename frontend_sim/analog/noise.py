@@ -131,17 +131,18 @@ def model_of(
 
 
 def _bank(source: NoiseInput, lowest: float) -> Real:
-    """Return the rates of the bank of a source [rad/s]: from below ``lowest`` to above the corner.
+    """Return the rates of the bank of a source [rad/s], from ``lowest`` to 100 times the corner.
 
-    It begins two decades below ``lowest``, where the density then lacks less than one percent.
-    Above 100 times the corner the 1/f part is one percent of the white part and is left out.
+    Poles stand in the middle of equal ratios of frequency, so the power of the bank is that of
+    density² · corner / f between both ends; the density itself turns flat around ``lowest``. Above
+    the upper end the 1/f part is one percent of the white part and is left out.
     """
     if source.corner <= 0.0 or source.density <= 0.0:
         return np.empty(0)
-    bottom = math.floor((math.log10(lowest) - 2.0) * POLES_PER_DECADE)
-    top = math.ceil(math.log10(100.0 * source.corner) * POLES_PER_DECADE)
-    exponents = np.arange(bottom, max(top, bottom) + 1) / POLES_PER_DECADE
-    return np.asarray(2.0 * np.pi * 10.0**exponents)
+    decades = math.log10(100.0 * source.corner / lowest)
+    count = max(round(decades * POLES_PER_DECADE), 1)
+    exponents = (np.arange(count) + 0.5) / POLES_PER_DECADE
+    return np.asarray(2.0 * np.pi * lowest * 10.0**exponents)
 
 
 def step_covariance(a: Real, b: Real, step: float) -> tuple[Real, Real]:

@@ -9,7 +9,7 @@ from typing import TYPE_CHECKING
 from frontend_sim.archive.layout import FORMAT
 from frontend_sim.archive.reading import reading
 from frontend_sim.archive.record import Record
-from frontend_sim.errors import RecordError
+from frontend_sim.errors import RecordError, shortened
 
 if TYPE_CHECKING:
     import h5py
@@ -47,7 +47,7 @@ def _refuse_no_hdf5(path: Path) -> None:
         raise RecordError(f"{path} is a directory; give the name of a record in it") from None
     except (OSError, ValueError) as error:
         reason = getattr(error, "strerror", None) or error
-        raise RecordError(f"{path} cannot be opened: {reason}; check the name") from None
+        raise RecordError(f"{shortened(path)} cannot be opened: {reason}; check the name") from None
     if empty:
         raise RecordError(f"{path} is empty; run its scenario again")
     if not h5py.is_hdf5(path):

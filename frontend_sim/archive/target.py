@@ -10,7 +10,10 @@ from collections.abc import Iterable, Iterator
 from contextlib import contextmanager, suppress
 from pathlib import Path
 
-from frontend_sim.errors import OutputError
+from frontend_sim.errors import OutputError, shortened
+
+HOW_TO_REPLACE = "give another name, or overwrite it: --overwrite, in Python overwrite=True"
+"""What to do about a file that is there."""
 
 
 def usable_target(path: str | os.PathLike[str], overwrite: bool, inputs: Iterable[Path]) -> Path:
@@ -57,7 +60,7 @@ def _refuse_missing_directory(path: object, directory: Path) -> None:
 
 def _refuse_existing(path: object, target: Path, overwrite: bool) -> None:
     if not overwrite:
-        raise OutputError(f"{path} exists; give another name, or ask for it to be overwritten")
+        raise OutputError(f"{path} exists; {HOW_TO_REPLACE}")
     if target.stat().st_size > 0 and not _is_record(target):
         raise OutputError(
             f"{path} exists and is no whole record of this program, so it is not overwritten; give "
@@ -140,5 +143,5 @@ def writing(path: object) -> Iterator[None]:
         full = getattr(error, "errno", None) in _FULL
         cure = "free some space or choose another place" if full else "choose another place"
         raise OutputError(
-            f"{path} cannot be written: {reason}; {cure}, nothing was left behind"
+            f"{shortened(path)} cannot be written: {reason}; {cure}, nothing was left behind"
         ) from error

@@ -3,8 +3,11 @@
 from __future__ import annotations
 
 import os
+import signal
 import sys
-from collections.abc import Sequence
+import threading
+from collections.abc import Iterator, Sequence
+from contextlib import contextmanager, suppress
 from importlib import import_module
 
 import click
@@ -60,24 +63,57 @@ def command() -> None:
 def main(arguments: Sequence[str] | None = None) -> int:
     """Run the command and return its exit status; a user never meets a traceback."""
     try:
-        status = command.main(arguments, prog_name="frontend-sim", standalone_mode=False)
+        with _ended_like_ctrl_c():
+            status = command.main(arguments, prog_name="frontend-sim", standalone_mode=False)
+            _flush()
     except click.ClickException as error:
         error.show(sys.stderr)
         return WRONG_INPUT
     except (KeyboardInterrupt, click.Abort, Interrupted):
-        click.echo("interrupted; nothing half written is left", err=True)
-        return INTERRUPTED
-    except FrontendSimError as error:
-        click.echo(f"error: {error}", err=True)
-        return WRONG_INPUT
-    except MemoryError:
-        click.echo(
-            "error: the run does not fit into memory; shorten it, or keep fewer waveform points",
-            err=True,
-        )
-        return WRONG_INPUT
+        return _tell("interrupted; nothing half written is left", INTERRUPTED)
     except BrokenPipeError:
         # The reader of a pipe went away, as `head` does; nothing is wrong and nothing is left.
-        os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
+        _forget_output()
         return HOLDS
+    except FrontendSimError as error:
+        return _tell(f"error: {error}", WRONG_INPUT)
+    except MemoryError:
+        text = "the run does not fit into memory; shorten it, or keep or step fewer points"
+        return _tell(f"error: {text}", WRONG_INPUT)
+    except OSError as error:
+        # Files are written by the library, which has errors of its own; this is standard output.
+        _forget_output()
+        text = f"results cannot be written to standard output: {error.strerror}"
+        return _tell(f"error: {text}", WRONG_INPUT)
     return status if isinstance(status, int) else HOLDS
+
+
+def _tell(text: str, status: int) -> int:
+    click.echo(text, err=True)
+    return status
+
+
+def _flush() -> None:
+    if sys.stdout is not None:
+        sys.stdout.flush()
+
+
+def _forget_output() -> None:
+    """Let nothing that waits for standard output be written at the end of the process."""
+    with suppress(OSError, ValueError):
+        os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
+
+
+@contextmanager
+def _ended_like_ctrl_c() -> Iterator[None]:
+    """Make a scheduler's end of a run (SIGTERM, SIGHUP) the same as Ctrl-C: it cleans up."""
+    if threading.current_thread() is not threading.main_thread():
+        yield
+        return
+    numbers = [getattr(signal, name) for name in ("SIGTERM", "SIGHUP") if hasattr(signal, name)]
+    before = {number: signal.signal(number, signal.default_int_handler) for number in numbers}
+    try:
+        yield
+    finally:
+        for number, handler in before.items():
+            signal.signal(number, handler)

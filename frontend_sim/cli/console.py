@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
+import io
 import json
+import shutil
 import sys
 import time
 from collections.abc import Callable, Iterable, Iterator
@@ -22,9 +24,17 @@ def print_tables(tables: Iterable[RenderableType]) -> None:
     """Print tables to standard output."""
     from rich.console import Console
 
-    console = Console(width=None if sys.stdout.isatty() else 100, highlight=False)
-    for table in tables:
-        console.print(table)
+    at_terminal = sys.stdout is not None and sys.stdout.isatty()
+    console = Console(
+        file=io.StringIO(),
+        width=shutil.get_terminal_size().columns if at_terminal else 100,
+        force_terminal=at_terminal,
+        highlight=False,
+    )
+    with console.capture() as drawn:
+        for table in tables:
+            console.print(table)
+    click.echo(drawn.get(), nl=False)
 
 
 def print_json(values: Any) -> None:

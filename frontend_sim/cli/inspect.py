@@ -31,11 +31,11 @@ def command(scenario: Path, plot: Path | None, overwrite: bool, as_json: bool) -
 
     inspection = inspect_scenario(load_scenario(scenario))
     print_notes(inspection.notes)
+    if plot is not None:  # first, so that a closed pipe does not cost the plot
+        plot_inspection(inspection, plot, overwrite=overwrite)
     if as_json:
         print_json(inspection.as_dict())
-    else:
-        print_tables(inspection_tables(inspection))
+        return
+    print_tables(inspection_tables(inspection))
     if plot is not None:
-        plot_inspection(inspection, plot, overwrite=overwrite)
-        if not as_json:
-            click.echo(f"plot: {plot}")
+        click.echo(f"plot: {plot}")

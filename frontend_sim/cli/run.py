@@ -65,12 +65,12 @@ def _tell(record: Record, target: Path, plot: Path | None, overwrite: bool, as_j
     from frontend_sim.present import plot_run, run_summary, run_tables
 
     print_notes(record.notes)
+    if plot is not None:  # first, so that a closed pipe does not cost the plot
+        plot_run(record, plot, overwrite=overwrite)
     if as_json:
         print_json({"record": str(target), **run_summary(record)})
-    else:
-        print_tables(run_tables(record))
-        click.echo(f"record: {target}")
+        return
+    print_tables(run_tables(record))
+    click.echo(f"record: {target}")
     if plot is not None:
-        plot_run(record, plot, overwrite=overwrite)
-        if not as_json:
-            click.echo(f"plot: {plot}")
+        click.echo(f"plot: {plot}")

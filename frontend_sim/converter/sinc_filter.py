@@ -16,6 +16,9 @@ Real = NDArray[np.float64]
 HALF_POWER = 10.0 * math.log10(2.0)
 """Attenuation at the corner [dB]."""
 
+NO_TURN = 1e-100
+"""A part of a turn between two samples below this is none, and would lose its digits."""
+
 STEPS = 100
 """Halvings of an interval, more than a float has digits."""
 
@@ -81,8 +84,9 @@ class SincFilter:
         below = self.ratio * np.sin(np.pi * turns)
         # Whole turns are taken off before the sine; so the notches are zero to the last digit.
         above = np.sin(np.pi * (self.ratio * turns - np.round(self.ratio * turns)))
-        safe = np.where(below == 0.0, 1.0, below)
-        return np.asarray(np.abs(np.where(below == 0.0, 1.0, above / safe)) ** self.order)
+        still = np.abs(turns) < NO_TURN
+        gain = np.where(still, 1.0, above / np.where(still, 1.0, below))
+        return np.asarray(np.abs(gain) ** self.order)
 
     def attenuation(self, frequency: float) -> float:
         """Return the attenuation at a frequency, infinite in a notch [dB].

@@ -6,7 +6,7 @@ import os
 from pathlib import Path
 from typing import TYPE_CHECKING
 
-from frontend_sim.archive.target import new_file, writing
+from frontend_sim.archive.target import HOW_TO_REPLACE, new_file, writing
 from frontend_sim.errors import OutputError
 
 if TYPE_CHECKING:
@@ -39,7 +39,7 @@ def check_plot_target(path: str | os.PathLike[str], overwrite: bool = False) -> 
         if target.exists() and not target.is_file():
             raise OutputError(f"{path} is not a regular file; give the name of a new file")
         if target.exists() and not overwrite:
-            raise OutputError(f"{path} exists; give another name, or ask for it to be overwritten")
+            raise OutputError(f"{path} exists; {HOW_TO_REPLACE}")
         if not target.parent.is_dir():
             raise OutputError(
                 f"{path}: there is no directory {target.parent}; make it first, or give another "

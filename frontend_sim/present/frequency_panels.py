@@ -41,7 +41,7 @@ def draw_magnitude(axes: Axes, view: FrequencyView) -> None:
     axes.set_ylabel("magnitude [dB]" if one == "V" else f"magnitude [dB re 1 {per_unit(one)}]")
     _draw_rates(axes, view, labels=True)
     _draw_corners(axes, view)
-    axes.legend(loc="lower left", fontsize="small", framealpha=0.9)
+    axes.legend(loc=_free_place(view), fontsize="small", framealpha=0.9)
 
 
 def draw_phase(axes: Axes, view: FrequencyView) -> None:
@@ -85,6 +85,14 @@ def draw_delay(axes: Axes, view: FrequencyView) -> None:
     _show_flat(axes, factor * view.delay)
     _draw_rates(axes, view, labels=False)
     _draw_corners(axes, view, labels=False)
+
+
+def _free_place(view: FrequencyView) -> str:
+    """Return where the magnitude leaves room below it: under its higher end, or its middle."""
+    first, last = float(view.magnitude[0]), float(view.magnitude[-1])
+    if max(first, last) < float(np.max(view.magnitude)) - LEAST_SHOWN / 2.0:
+        return "lower center"
+    return "lower left" if first >= last else "lower right"
 
 
 def _limits(view: FrequencyView) -> tuple[float, float]:

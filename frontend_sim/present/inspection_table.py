@@ -92,7 +92,7 @@ def _frequency_rows(inspection: Inspection) -> list[tuple[str, str]]:
         for corner in frequency.corners
     ]
     rows.append(("group delay at zero frequency", engineering(frequency.group_delay_dc, "s", 4)))
-    if largest.frequency != 0.0:
+    if largest.frequency != 0.0 and math.isfinite(largest.value):
         rows.append(
             (
                 "group delay where the gain is largest",

@@ -23,7 +23,7 @@ Real = NDArray[np.float64]
 FEW = 400
 """Up to so many conversions are drawn as dots of their own, which no line joins."""
 
-WAVE_WIDTH, PIN_WIDTH, CODES_WIDTH = 1.1, 0.9, 3.6
+WAVE_WIDTH, PIN_WIDTH, CODES_WIDTH = 1.1, 1.1, 4.0
 """Widths of the lines; the codes are seen on both sides of the pin [points]."""
 
 DASHES: tuple[Any, ...] = (
@@ -67,7 +67,7 @@ def draw_codes(axes: Axes, conversions: Conversions) -> None:
     """Draw the pin, the codes read back, the limits of the range and what is beyond them."""
     adc, time = conversions.adc, conversions.time
     factor, letter = prefix_of(max(abs(adc.low), abs(adc.high)))
-    dots: dict[str, Any] = {"marker": "o", "markersize": 5.0, "linestyle": "none"}
+    dots: dict[str, Any] = {"marker": "o", "markersize": 6.0, "linestyle": "none"}
     _line(
         axes, time, factor * conversions.voltage, color=ORANGE, label="codes read back",
         **(dots if conversions.few else {"linewidth": CODES_WIDTH, "drawstyle": "steps-post"}),

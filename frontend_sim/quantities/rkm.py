@@ -8,7 +8,7 @@ from typing import NamedTuple
 
 from frontend_sim.errors import QuantityError
 
-_CODE = re.compile(r"([0-9]*)([A-Za-z\u00b5\u03bc])([0-9]*)([A-Z]?)")
+_CODE = re.compile(r"(-?)([0-9]*)([A-Za-z\u00b5\u03bc])([0-9]*)([A-Z]?)")
 
 # From memory, the standard was not at hand; lower-case k is common practice.
 _MICRO = dict.fromkeys("u\u00b5\u03bc", "1e-6")  # the sign and the Greek letter
@@ -42,6 +42,8 @@ class Code(NamedTuple):
 def read(text: str, unit: str) -> Code | None:
     """Return what an RKM code says (``4k7``, ``R47``, ``100n``, ``4k7J``), or None if it is none.
 
+    A sign is read, so that a negative part is refused for what it is.
+
     Parameters
     ----------
     unit : ``ohm``, ``F`` or ``H``; other units have no code
@@ -56,20 +58,20 @@ def read(text: str, unit: str) -> Code | None:
     letters = _LETTERS.get(unit)
     if match is None or letters is None:
         return None
-    whole, letter, fraction, tolerance = match.groups()
+    sign, whole, letter, fraction, tolerance = match.groups()
     if not (whole or fraction) or (tolerance == unit and not fraction):  # "100nF" has a unit
         return None
     if letter not in letters:
         other = letter.swapcase()
         if other in letters and fraction:
-            raise QuantityError(f'the letter is {other!r} here: "{whole}{other}{fraction}"')
+            raise QuantityError(f'the letter is {other!r} here: "{sign}{whole}{other}{fraction}"')
         return None
     if tolerance == unit:
         raise QuantityError(
             f"the {unit} at its end may be the unit or the letter for a tolerance; write "
             f'"{text[:-1]}" or {{ value = "{text[:-1]}", tolerance = "{_percent(unit)}" }}'
         )
-    value = Decimal(f"{whole or '0'}.{fraction or '0'}") * Decimal(letters[letter])
+    value = Decimal(f"{sign}{whole or '0'}.{fraction or '0'}") * Decimal(letters[letter])
     return Code(value, _tolerance(tolerance, value, unit))
 
 

@@ -14,7 +14,6 @@ from frontend_sim.scenario.checks.rules import instant_faults
 from frontend_sim.scenario.fault import problem
 from frontend_sim.scenario.locate import lines_of
 from frontend_sim.scenario.model import Scenario
-from frontend_sim.scenario.rules import conversions_fault
 from frontend_sim.scenario.spread import moved
 from frontend_sim.scenario.tables import Path
 
@@ -81,7 +80,7 @@ def _duration_fault(scenario: Scenario, known: float | None) -> str | None:
             'say how long to run, for instance duration = "10 ms"'
         )
     if duration is None or known is None:
-        return conversions_fault(scenario.adc, known) if known is not None else None
+        return scenario.length_fault(known) if known is not None else None
     end = known * (1.0 + ROUNDING)
     if duration <= end or _all_conversions_before(end, duration, scenario.adc):
         return None

@@ -30,7 +30,7 @@ def read_text(file: Path) -> str:
         raise ScenarioError("the file may not be read; check its permissions", str(file)) from None
     except (OSError, ValueError) as error:  # ValueError: a NUL in the name
         reason = getattr(error, "strerror", None) or error
-        raise ScenarioError(f"the file cannot be read: {reason}", str(file)) from None
+        raise ScenarioError(f"the file cannot be read: {reason}", shortened(file)) from None
     return _decoded(content, str(file))
 
 

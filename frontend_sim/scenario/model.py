@@ -17,7 +17,7 @@ from frontend_sim.quantities import FREQUENCY, Frequency, PositiveLsb, PositiveT
 from frontend_sim.scenario.checks import AnyCheck
 from frontend_sim.scenario.checks.rules import check_faults, instant_faults
 from frontend_sim.scenario.environment import Environment
-from frontend_sim.scenario.rules import conversions_fault, fault, faults, newer_format
+from frontend_sim.scenario.rules import conversions_fault, fault, faults, newer_format, points_fault
 from frontend_sim.scenario.signal import PIN, UnitError, named, signal_units
 from frontend_sim.stimulus import AnyStimulus
 from frontend_sim.values import Value
@@ -209,7 +209,7 @@ class Scenario(Value):
     def _some_conversion_falls_into_the_run(self) -> Self:
         duration = self.simulation.duration
         if duration is not None:
-            text = conversions_fault(self.adc, duration)
+            text = self.length_fault(duration)
             if text is not None:
                 raise fault(["simulation", "duration"], text)
         return self
@@ -222,6 +222,17 @@ class Scenario(Value):
         if found:
             raise faults(type(self).__name__, found)
         return self
+
+    def length_fault(self, duration: float) -> str | None:
+        """Return what is wrong with a run of some duration [s]: too many points, or no conversion.
+
+        A waveform and a given grid of a discrete model count as conversions do.
+        """
+        settings = self.simulation
+        rates = {"waveform_rate": settings.waveform_rate}
+        if settings.discretization != "exact":
+            rates["grid_rate"] = settings.grid_rate
+        return conversions_fault(self.adc, duration) or points_fault(duration, rates)
 
     def points(self) -> tuple[str, ...]:
         """Return the names of the chain's points: the stimulus, then the output of each stage."""

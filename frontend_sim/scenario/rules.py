@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Sequence
+from collections.abc import Callable, Mapping, Sequence
 
 from pydantic_core import InitErrorDetails, PydanticCustomError, ValidationError
 
@@ -12,6 +12,9 @@ from frontend_sim.quantities import FREQUENCY, TIME, as_text, shown
 
 MOST_CONVERSIONS = 10**12
 """More conversions than this are a slip of the pen; an array of their codes takes 8 TB."""
+
+MOST_POINTS = 10**10
+"""More points of a waveform or a grid than this are one, too; a waveform of them takes 80 GB."""
 
 
 def fault(path: Sequence[str | int], text: str) -> PydanticCustomError:
@@ -77,4 +80,22 @@ def conversions_fault(adc: AnyAdc, duration: float) -> str | None:
             f"on), and the run ends at {as_text(duration, TIME, 6)}; lengthen simulation.duration, "
             "or lower adc.first"
         )
+    return None
+
+
+def points_fault(duration: float, rates: Mapping[str, float | None]) -> str | None:
+    """Return what is wrong with the number of points in [0, duration), or None.
+
+    Parameters
+    ----------
+    duration [s]
+    rates : key of the scenario -> points per second, None where there are none [Hz]
+    """
+    for key, rate in rates.items():
+        if rate is not None and duration * rate > MOST_POINTS:
+            return (
+                f"{as_text(duration, TIME, 6)} at a {key} of {as_text(rate, FREQUENCY, 6)} are "
+                f"{duration * rate:.3g} points, more than {MOST_POINTS:.0e}; shorten "
+                f"simulation.duration, or lower simulation.{key}"
+            )
     return None

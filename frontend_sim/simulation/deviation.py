@@ -119,9 +119,9 @@ class Deviation:
         limiter, d, begun, touched = self.place.limiter.advance(state.limiter, pieces.segments)
         level, signal = self._signal(state, first, keep, pieces, d, begun)
         if self.remembers:
-            past = Past(pieces.begins, pieces.segments, float(state.limiter[0]), d, begun)
-            signal = replace(signal, past=state.signal.past).remembered(past, keep / self.rate)
-        time, when = _counted(state, touched, pieces.begins)
+            past = Past(pieces, float(state.limiter[0]), d, begun)
+            signal = replace(signal, past=state.signal.past).remembered(past, keep)
+        time, when = _counted(state, touched, pieces)
         count = state.count + (len(jumps.times) if jumps is not None else 0)
         return DeviationState(
             grid, events, count, limiter, *pieces.last, pieces.fresh, level, signal, time, when
@@ -166,14 +166,13 @@ class Deviation:
         heights = np.where(np.abs(begun - left) > NO_JUMP * size, begun - left, 0.0)
         if self.events is None or not np.any(heights):
             level = state.level
-            joined = d if pieces.uncut else d[pieces.ends_on_grid]
-            joined = joined - level if level else joined
+            joined = pieces.on_grid(d - level if level else d)
         else:
             at, level = np.flatnonzero(heights), state.level
             levels = level + np.cumsum(heights[at])
             held = np.append(level, levels)[np.searchsorted(starts[at], np.arange(len(d)), "right")]
-            joined, level = (d - held)[pieces.ends_on_grid], float(levels[-1])
-            lines = _grown(lines, pieces.begins[starts[at]], levels)
+            joined, level = pieces.on_grid(d - held), float(levels[-1])
+            lines = _grown(lines, pieces.begins(starts[at]), levels)
         if polygon is None and not np.any(joined):
             return level, Signal(None, _trimmed(lines, keep / self.rate))
         if polygon is None:
@@ -198,8 +197,8 @@ def _trimmed(lines: Lines | None, keep: float) -> Lines | None:
     return Lines.of(float(lines.levels[drop - 1]), lines.breaks[drop:], lines.levels[drop:])
 
 
-def _counted(state: DeviationState, touched: Touched, begins: Real) -> tuple[Real, Real]:
+def _counted(state: DeviationState, touched: Touched, pieces: Pieces) -> tuple[Real, Real]:
     """Return for how long each limit was touched so far, and when first."""
     found = touched.piece >= 0
-    when = np.where(found, begins[np.maximum(touched.piece, 0)] + touched.since, np.inf)
+    when = np.where(found, pieces.begins(np.maximum(touched.piece, 0)) + touched.since, np.inf)
     return state.time + touched.time, np.minimum(state.first, when)

@@ -8,7 +8,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from frontend_sim.analog.limits import Segments
-from frontend_sim.simulation.kernels import Real
+from frontend_sim.simulation.kernels import Index, Real
 
 
 @dataclass(frozen=True, eq=False)
@@ -49,22 +49,27 @@ class Pieces:
 
     Parameters
     ----------
-    begins : when each piece begins, shape (S,) [s]
-    ends_on_grid : which pieces end at a point of the grid, shape (S,)
+    rate : of the grid [Hz];  first : number of its first point
+    cut : when each piece begins [s], and which of them end at a point of the grid, shape (S,) both;
+        None where every piece is a step of the grid
     last : u and v at the last point, after its jump if it has one
     fresh : whether the last point is a jump
     """
 
     segments: Segments
-    begins: Real
-    ends_on_grid: NDArray[np.bool_]
+    rate: float
+    first: int
+    cut: tuple[Real, NDArray[np.bool_]] | None
     last: tuple[float, float]
     fresh: bool
 
-    @property
-    def uncut(self) -> bool:
-        """Whether every piece ends at a point of the grid."""
-        return bool(np.all(self.ends_on_grid))
+    def begins(self, pieces: Index) -> Real:
+        """Return when some pieces begin [s]."""
+        return (self.first + pieces) / self.rate if self.cut is None else self.cut[0][pieces]
+
+    def on_grid(self, ends: Real) -> Real:
+        """Return those of some values at the ends of all pieces that are at points of the grid."""
+        return ends if self.cut is None else ends[self.cut[1]]
 
 
 def pieces_of(stretch: Stretch, jumps: Jumps | None) -> Pieces:
@@ -74,18 +79,17 @@ def pieces_of(stretch: Stretch, jumps: Jumps | None) -> Pieces:
     stretch, and not behind its last one.
     """
     count = len(stretch.u)
-    begins = np.arange(stretch.first, stretch.first + count - 1) / stretch.rate
     if jumps is None or len(jumps.times) == 0:
         at = np.zeros(1 if stretch.fresh else 0, np.int64)
         length = np.full(count - 1, 1.0 / stretch.rate)
         u, v = stretch.u, stretch.v
         segments = Segments(length, u[:-1], u[1:], v[1:], float(v[0]), at)
-        every = np.ones(count - 1, np.bool_)
-        return Pieces(segments, begins, every, (float(u[-1]), float(v[-1])), False)
-    return _cut(stretch, jumps, begins)
+        last = (float(u[-1]), float(v[-1]))
+        return Pieces(segments, stretch.rate, stretch.first, None, last, False)
+    return _cut(stretch, jumps)
 
 
-def _cut(stretch: Stretch, jumps: Jumps, begins: Real) -> Pieces:
+def _cut(stretch: Stretch, jumps: Jumps) -> Pieces:
     count = len(stretch.u)
     position = jumps.times * stretch.rate - stretch.first
     # Relative to the time itself: the position in this stretch has lost digits.
@@ -116,6 +120,9 @@ def _cut(stretch: Stretch, jumps: Jumps, begins: Real) -> Pieces:
         float(after[1][0]),
         starts.astype(np.int64),
     )
+    begins = np.arange(stretch.first, stretch.first + count - 1) / stretch.rate
     times = np.insert(begins, cell, jumps.times[inside])
     last = (float(after[0][-1]), float(after[1][-1]))
-    return Pieces(segments, times, ends_on_grid[1:], last, bool(edge[-1] == len(edges) - 1))
+    cut = (times, ends_on_grid[1:])
+    fresh = bool(edge[-1] == len(edges) - 1)
+    return Pieces(segments, stretch.rate, stretch.first, cut, last, fresh)

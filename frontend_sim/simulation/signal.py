@@ -10,6 +10,7 @@ import numpy as np
 from frontend_sim.analog.cut import Place
 from frontend_sim.analog.limits import Segments
 from frontend_sim.simulation.kernels import Real
+from frontend_sim.simulation.pieces import Pieces
 from frontend_sim.simulation.polygon import Polygon
 from frontend_sim.stimulus.drive import Lines
 
@@ -23,24 +24,24 @@ class Past:
 
     Parameters
     ----------
-    begins : when each piece begins, shape (S,) [s]
+    pieces : in which it did
     before : deviation before the first piece
     d : deviation at the end of each piece, shape (S,)
     begun : deviation at the begin of the pieces that start with a jump, shape (J,)
     """
 
-    begins: Real
-    segments: Segments
+    pieces: Pieces
     before: float
     d: Real
     begun: Real
 
     def starts(self) -> Real:
         """Return when each piece begins, and u, v and d there after a jump, shape (4, S)."""
+        segments = self.pieces.segments
         d = np.append(self.before, self.d[:-1])
-        d[self.segments.jumps] = self.begun
-        v = np.append(self.segments.linear_begin, self.segments.linear[:-1])
-        return np.stack([self.begins, self.segments.begin, v, d])
+        d[segments.jumps] = self.begun
+        v = np.append(segments.linear_begin, segments.linear[:-1])
+        return np.stack([self.pieces.begins(np.arange(len(d))), segments.begin, v, d])
 
 
 @dataclass(frozen=True, eq=False)
@@ -65,10 +66,10 @@ class Signal:
                 total += part.values(times)
         return total
 
-    def remembered(self, part: Past, keep: float) -> Signal:
-        """Return the signal with one more part of the past, without parts before a time [s]."""
+    def remembered(self, part: Past, keep: int) -> Signal:
+        """Return the signal with one more part of the past, without those before a grid point."""
         parts = (*self.past, part)
-        old = [past for past, later in pairwise(parts) if later.begins[0] > keep]
+        old = [past for past, later in pairwise(parts) if later.pieces.first > keep]
         return replace(self, past=(*old, part))
 
     def missed(self, place: Place, rate: float, instants: Real, u: Real, v: Real) -> Real:

@@ -145,7 +145,7 @@ def test_a_gain_alone_is_one_block() -> None:
 
 def test_more_zeros_than_poles_are_refused() -> None:
     """An improper response would grow without bound."""
-    with pytest.raises(ModelError, match="2 zeros stand against 1 poles"):
+    with pytest.raises(ModelError, match="2 zeros stand against 1 pole;"):
         cascade([-1.0, -2.0], [-3.0], 1.0)
 
 

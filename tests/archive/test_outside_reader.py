@@ -135,8 +135,10 @@ def test_text(file: h5py.File, run: Run) -> None:
 
 
 def test_tables(file: h5py.File) -> None:
-    """A table has the columns of the design; the report on the grid stands among the measures."""
-    names = ("name", "value", "unit", "limit", "margin", "verdict", "method")
+    """A table has the columns of the design and two more; the grid is among the measures."""
+    names = (
+        "name", "value", "unit", "limit", "margin", "verdict", "method", "bound", "advice",
+    )  # fmt: skip
     assert file["measure"].dtype.names == file["check"].dtype.names == names
     check = file["check"][0]
     assert (check["name"], check["verdict"]) == (b"overshoot", b"holds")

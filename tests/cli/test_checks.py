@@ -105,7 +105,7 @@ def test_no_check_is_no_verdict(folder: Path, capsys: pytest.CaptureFixture[str]
 
 
 WRONG = {
-    "beyond the end": ("1 s", "", "s.toml: line 26: check[1].before (settling)"),
+    "beyond the end": ("1 s", "", "s.toml: line 27: check[1].before (settling)"),
     "beyond the end, counted from the event": ("19.5 ms", "", "before leads to t = 20.5 ms"),
     "unknown kind": ("1 ms", '\n[[check]]\nkind = "setling"\n', "did you mean 'settling'?"),
     "hum in a short run": (

@@ -3,9 +3,11 @@
 from __future__ import annotations
 
 import json
+import os
 import shutil
 import subprocess
 import sys
+import time
 from pathlib import Path
 
 import numpy as np
@@ -105,18 +107,50 @@ def test_interrupted_run_leaves_nothing(
     def interrupted(self: object, *_: object) -> None:
         raise KeyboardInterrupt
 
-    monkeypatch.setattr(Simulation, "_converted", interrupted)
+    monkeypatch.setattr(Simulation, "_block_of", interrupted)
     assert main(["run", str(PUMP), "-o", "pump.h5"]) == 130
     assert "interrupted" in capsys.readouterr().err
     assert list(folder.iterdir()) == []
 
 
-def test_a_closed_pipe_is_no_error(folder: Path) -> None:
-    """``frontend-sim schema | head -1`` ends quietly."""
+@pytest.mark.parametrize("command", ["schema", "inspect {} --plot r.png", "run {} --plot r.png"])
+def test_a_closed_pipe_is_no_error(command: str, folder: Path) -> None:
+    """``frontend-sim schema | head -1`` ends quietly, and a plot that was asked for is there."""
     head = shutil.which("head")
     if head is None:
         pytest.skip("no head on this system")
-    program = f"{sys.executable} -m frontend_sim schema | {head} -1"
+    arguments = command.format(SCENARIOS / "stages" / "gain.toml")
+    program = f"({sys.executable} -m frontend_sim {arguments}; echo $? >&2) | {head} -1"
     done = subprocess.run(program, shell=True, capture_output=True, text=True, check=True)
-    assert done.stdout == "{\n"
-    assert done.stderr == ""
+    assert done.stderr.splitlines()[-1] == "0"
+    assert "Traceback" not in done.stderr
+    assert "plot" not in command or (folder / "r.png").exists()
+
+
+@pytest.mark.skipif(not Path("/dev/full").exists(), reason="needs the device that is always full")
+def test_a_full_standard_output_is_told(folder: Path) -> None:
+    """The record is kept, the message goes to the other channel, the status is 2."""
+    program = f"{sys.executable} -m frontend_sim run {SCENARIOS}/stages/gain.toml > /dev/full"
+    done = subprocess.run(program, shell=True, capture_output=True, text=True, check=False)
+    assert done.returncode == 2
+    assert "standard output" in done.stderr
+    assert "Traceback" not in done.stderr
+    assert (folder / "gain.h5").exists()
+
+
+@pytest.mark.skipif(os.name != "posix", reason="needs POSIX signals")
+def test_a_scheduler_may_end_a_run(folder: Path) -> None:
+    """SIGTERM cleans up as Ctrl-C does: no record, no partial file, status 130."""
+    text = (SCENARIOS / "stages" / "butterworth.toml").read_text()
+    (folder / "long.toml").write_text(text.replace('duration = "10 ms"', 'duration = "3000 s"'))
+    command = [sys.executable, "-m", "frontend_sim", "run", "long.toml"]
+    with subprocess.Popen(command, stderr=subprocess.PIPE, text=True) as process:
+        for _ in range(600):
+            if list(folder.glob(".frontend-sim-*")):
+                break
+            time.sleep(0.1)
+        process.terminate()
+        _, message = process.communicate(timeout=60)
+    assert process.returncode == 130
+    assert "interrupted" in message
+    assert [file.name for file in folder.iterdir()] == ["long.toml"]

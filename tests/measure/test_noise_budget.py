@@ -92,14 +92,26 @@ def test_sources_add_in_power() -> None:
 
 
 def test_one_over_f_has_its_slope_and_its_corner() -> None:
-    """The bank's density follows density² (1 + corner/f) within 2 % over five decades."""
+    """The bank's density follows density² (1 + corner/f) within 2 % over five decades.
+
+    It begins two decades below the lowest of them, where it turns flat.
+    """
     wide = first_order(-2.0 * math.pi * 1e9, (0.0, 2.0 * math.pi * 1e9))
     source = at_input("amplifier", 1e-8, (wide,), corner=100.0)
-    model = compose([Section("amplifier", (wide,), 0.0, (source,))]).noise_model(0.01)
+    model = compose([Section("amplifier", (wide,), 0.0, (source,))]).noise_model(1e-4)
     frequency = np.geomspace(0.01, 1e3, 60)
     wanted = 1e-16 * (1.0 + 100.0 / frequency)
     # 2 %: the ripple of two poles per decade, and the end of the bank at 100 corners.
     np.testing.assert_allclose(noise_density(model, model.b, frequency), wanted, rtol=0.02)
+
+
+def test_one_over_f_has_the_power_of_its_band() -> None:
+    """Behind a wide pole the budget is that of the white part plus density² corner ln(top/lowest)."""
+    wide = first_order(-2.0 * math.pi * 1e9, (0.0, 2.0 * math.pi * 1e9))
+    source = at_input("amplifier", 1e-8, (wide,), corner=100.0)
+    budget = noise_budget(compose([Section("amplifier", (wide,), 0.0, (source,))]), ADC, 0.01)
+    power = 1e-16 * (math.pi / 2.0 * 1e9 + 100.0 * math.log(1e4 / 0.01))
+    assert budget.rms**2 == pytest.approx(power, rel=1e-6)
 
 
 def test_covariance_of_a_step_agrees_with_quadrature() -> None:

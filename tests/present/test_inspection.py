@@ -86,7 +86,7 @@ def test_the_plot_tells_what_is_to_be_seen() -> None:
         "frequency [Hz]", "response to a unit step [V/V]", "time after the step [ms]",
         "distance from the end [V/V]", "half the rate 10.0 kHz", "rate 20.0 kHz",
         "−3 dB 1.177 kHz", "−3 dB 1.692 kHz", "bilinear at 40.0 kHz", "zoh at 40.0 kHz",
-        "overshoot 58.80 %", "1 % after 2.79 ms", "0.5 LSB after 5.51 ms", "end ± 1 %",
+        "overshoot 58.80 %", "1 %\\nafter 2.79 ms", "0.5 LSB\\nafter 5.51 ms", "end ± 1 %",
     ):  # fmt: skip
         assert text in shown, text
 

@@ -94,8 +94,8 @@ def test_the_panel_marks_band_last_exit_and_granted_time() -> None:
     assert panel.get_yscale() == "log"
     shown = texts(figure)
     for text in (
-        "settling: fails", "band ± 0.5 LSB", "granted 300 us", "last exit 367.4 us", "conversions",
-        "distance from\nthe end [LSB]", "time after the event at 1.000 ms",
+        "settling: fails", "band ± 0.500 LSB", "granted 300 us", "last exit 367.4 us",
+        "conversions", "distance from\nthe end [LSB]", "time after the event at 1.000 ms",
     ):  # fmt: skip
         assert text in shown, text
 

@@ -155,3 +155,27 @@ def test_a_grid_is_told() -> None:
     summary = run_summary(coarse)
     assert summary["grid"]["method"] == "bilinear"
     assert "bilinear at 100.0 kHz" in printed(run_tables(coarse))
+
+
+def pin_line(finished: Run) -> Any:
+    """Return the line of the pin in the plot of a run."""
+    axes = run_figure(finished).axes[0]
+    return next(line for line in axes.lines if line.get_label() == "pin, exact")
+
+
+def test_a_few_conversions_are_never_joined_by_straight_lines() -> None:
+    """Between them the pin is shown as it was, or not at all."""
+    dots = pin_line(run())
+    assert (dots.get_linestyle(), dots.get_marker()) == ("None", ".")
+    coarse = pin_line(run(waveform_rate="10 kHz"))
+    assert coarse.get_linestyle() == "None"
+    finished = run(waveform_rate="1 MHz")
+    line = pin_line(finished)
+    np.testing.assert_array_equal(line.get_ydata(), finished.waveform[r"input $filter"])
+    assert line.get_linestyle() == "-"
+
+
+def test_points_of_a_waveform_panel_have_lines_of_their_own() -> None:
+    """Curves on one another are told apart by more than colour."""
+    lines = run_figure(run(waveform_rate="100 kHz")).axes[2].lines
+    assert [line.is_dashed() for line in lines] == [False, True]

@@ -90,3 +90,21 @@ def test_source_is_no_value() -> None:
     assert one.resolved() == other.resolved()
     assert one.digest() == other.digest()
     assert "source" not in one.resolved()
+
+
+@pytest.mark.parametrize("key", ["waveform_rate", "grid_rate"])
+def test_too_many_points_are_a_slip_of_the_pen(key: str) -> None:
+    """A waveform and a given grid have at most 1e10 points; the message tells the number."""
+    model = {"discretization": "foh"} if key == "grid_rate" else {}
+    settings = {"duration": 1.0, **model}
+    assert scenario(simulation={**settings, key: 1e10})
+    with pytest.raises(
+        ValidationError,
+        match=rf"1 s at a {key} of 20 GHz are 2e\+10 points, more than 1e\+10; .*simulation.{key}",
+    ):
+        scenario(simulation={**settings, key: 2e10})
+
+
+def test_a_grid_that_a_run_does_not_use_is_not_counted() -> None:
+    """With discretization exact, grid_rate is for inspect alone."""
+    assert scenario(simulation={"duration": 1.0, "grid_rate": 1e12})

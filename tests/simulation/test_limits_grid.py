@@ -15,7 +15,14 @@ STIMULI: dict[str, dict[str, Any]] = {
     "step": {"kind": "step", "before": 0.3, "after": 2.2, "at": 0.00101},
     "ramp": {"kind": "ramp", "slope": 300.0, "at": 0.00303},
     "half-sine": {"kind": "half-sine", "peak": 2.5, "length": 0.005, "at": 0.002},
-    "pulse": {"kind": "pulse", "low": 0.2, "high": 2.1, "width": 2e-4, "period": 1.7e-3, "at": 1e-3},
+    "pulse": {
+        "kind": "pulse",
+        "low": 0.2,
+        "high": 2.1,
+        "width": 2e-4,
+        "period": 1.7e-3,
+        "at": 1e-3,
+    },
 }
 
 AMPLIFIER = {

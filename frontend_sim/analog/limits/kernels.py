@@ -356,6 +356,8 @@ def follow(
                 until, goal = min(enters, dt), comes
             elif t < leaves:
                 until, steep = min(leaves, dt), slope
+            elif slope != 0.0:
+                goal = goes
             part = until - t
             if here == goal and -down <= steep <= up:
                 mode, step, reached = FREE, part, True
@@ -374,7 +376,11 @@ def follow(
                 if piece[mode] < 0:
                     piece[mode], since[mode] = s, t
             t = until if step >= part else t + step
-            if reached:
+            if reached and steep == 0.0:
+                here = goal
+            elif reached and t >= leaves:
+                here = goes
+            elif reached:
                 here = min(max(last if t >= dt else first + slope * t, low), high)
             if t >= dt:
                 break

@@ -97,7 +97,7 @@ def loop(
     for s in range(len(length)):
         dt = length[s]
         if dt != known:
-            known, count = dt, int(round(dt / unit))
+            known, count = dt, round(dt / unit)
             join(free, count, whole)
             join(held, count, whole_held)
         rise = (end[s] - begin[s]) / dt if dt > 0.0 else 0.0

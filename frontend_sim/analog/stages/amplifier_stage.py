@@ -5,9 +5,9 @@ from __future__ import annotations
 from abc import abstractmethod
 from collections.abc import Iterator, Sequence
 from fractions import Fraction
-from typing import ClassVar
+from typing import ClassVar, Self
 
-from pydantic import Field
+from pydantic import Field, model_validator
 
 from frontend_sim.analog.limits import AmplifierLimits
 from frontend_sim.analog.network import (
@@ -143,6 +143,26 @@ class AmplifierStage(NetworkStage):
     @abstractmethod
     def noise_gain(self) -> float:
         """Return the gain from the noninverting input at low frequency, ideal amplifier [1]."""
+
+    @model_validator(mode="after")
+    def _limits_need_a_loop_without_memory(self) -> Self:
+        limited = (self.slew_rate, self.output_low, self.output_high) != (None, None, None)
+        stores = [
+            name
+            for name in type(self).model_fields
+            if "capacitance" in name
+            and name != "load_capacitance"
+            and getattr(self, name) is not None
+        ]
+        if limited and stores:
+            raise ValueError(
+                "slew_rate and output rails are modelled for amplifiers with resistors alone "
+                f"around them, and here stands {stores[0]}: while the output is held, capacitors "
+                "go on charging, and the recovery depends on it. Leave the limits out; a "
+                "rail-limit or slew-limit stage behind shows where they would act, not how the "
+                "stage recovers"
+            )
+        return self
 
     def limits(self) -> AmplifierLimits:
         """Return slew rate and rails of the output.

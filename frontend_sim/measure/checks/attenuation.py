@@ -20,6 +20,9 @@ from frontend_sim.scenario.checks.rejection import Reference
 PER_BAND = 401
 """Frequencies in a band of stated ends, beside those that poles and zeros ask for."""
 
+ROUNDING = 1e-12
+"""A gain within this share of the reference is the reference."""
+
 FURTHEST = 30.0
 """A corner that must move by more than this factor is no advice."""
 
@@ -52,7 +55,9 @@ def least_attenuation(subject: Subject, frequencies: Real, against: Reference) -
     gains = np.full(len(frequencies), abs(response.start))
     gains[finite] = magnitude_of(response)(frequencies[finite])
     worst = int(np.argmax(gains))
-    level = 0.0 - decibel(float(gains[worst]) / reference)
+    ratio = float(gains[worst]) / reference
+    # What rounding makes of a gain at its reference would be printed as a level below zero.
+    level = 0.0 if abs(ratio - 1.0) < ROUNDING else -decibel(ratio)
     return Attenuation(level, float(frequencies[worst]))
 
 

@@ -28,7 +28,7 @@ def noise(check: NoiseCheck, subject: Subject) -> Answer:
         If a source has no bandwidth, or codes are clipped.
     """
     wide = check.quantity == "peak-to-peak"
-    if check.source == "budget":
+    if check.basis == "budget":
         volts = budget_of(subject).rms * (CREST if wide else 1.0)
         method = f"{CREST:g} times the {BUDGET}" if wide else BUDGET
     else:
@@ -37,7 +37,7 @@ def noise(check: NoiseCheck, subject: Subject) -> Answer:
         method = RUN_EXTENT if wide else RUN
     value, unit = scaled(check.at_most, volts, subject.adc.lsb, subject.whole)
     limit = float(check.at_most)
-    rounded = check.source == "run"
+    rounded = check.basis == "run"
     return Answer(
         value, unit, limit, "at most", method, lambda: advice(subject, value / limit, rounded)
     )
@@ -51,7 +51,7 @@ def noise_free_bits(check: NoiseFreeBitsCheck, subject: Subject) -> Answer:
     MeasureError
         As ``noise`` does.
     """
-    if check.source == "budget":
+    if check.basis == "budget":
         rms, method = budget_of(subject).rms, BUDGET
     else:
         rms, method = seen_noise(subject, check.after).rms, RUN
@@ -62,13 +62,13 @@ def noise_free_bits(check: NoiseFreeBitsCheck, subject: Subject) -> Answer:
         check.at_least,
         "at least",
         f"log2(range / ({CREST:g} rms)); {method}",
-        lambda: advice(subject, 2.0 ** (check.at_least - value), check.source == "run"),
+        lambda: advice(subject, 2.0 ** (check.at_least - value), check.basis == "run"),
     )
 
 
 def noise_possible(check: NoiseCheck | NoiseFreeBitsCheck, subject: Subject) -> None:
     """Refuse a budget that is infinite. Raises MeasureError."""
-    if check.source == "budget":
+    if check.basis == "budget":
         budget_of(subject)
 
 

@@ -25,6 +25,9 @@ from frontend_sim.stimulus.step import Step
 JUST_BEFORE = 1e-12
 """An instant this share of its time earlier is before an event, whatever was rounded."""
 
+A_FEW = 4.0
+"""Results of the converter that a run must have room for, which averages several conversions."""
+
 NO_CHANGE = 1e-12
 """A change by less than this share is rounding."""
 
@@ -104,7 +107,7 @@ class Tail:
     def furthest(self, sign: float) -> float:
         """Return the largest value of sign · (point - end) after the delay, at least 0."""
         if self.chain.order == 0:
-            return max(sign * self.arrival, 0.0)
+            return max(sign * self.arrival, 0.0) + 0.0
         floor = FINEST * max(abs(self.arrival), abs(self.departure))
         decay = self._decay(self.chain, floor) if floor > 0.0 else None
         return 0.0 if decay is None else max(furthest(decay, sign)[0], 0.0)
@@ -225,7 +228,7 @@ def settled_value(scenario: Scenario, point: str, level: float) -> float:
         If the point would have drifted away.
     """
     adc = scenario.adc
-    settings = SimulationSettings(duration=adc.first + 0.5 / adc.rate, noise=False)
+    settings = SimulationSettings(duration=adc.first + A_FEW / adc.rate, noise=False)
     still = scenario.model_copy(
         update={
             "stimulus": Step(before=level, after=level),

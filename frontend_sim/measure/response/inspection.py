@@ -65,7 +65,9 @@ class Inspection:
     def as_dict(self) -> dict[str, Any]:
         """Return plain data for JSON: SI units, None for what is not there.
 
-        JSON knows no infinity, so it becomes the text "inf" or "-inf".
+        JSON knows no infinity, so it becomes None (null) too: of a gain that grows without bound,
+        of the frequency of a gain that is largest at ever higher frequencies, of an end that drifts
+        away, of the attenuation where nothing passes.
         """
         converter = {
             name: getattr(self.adc, name) for name in ("rate", "bits", "low", "high", "lsb")
@@ -149,7 +151,7 @@ def _models(
 
 
 def _notes(scenario: Scenario, time: TimeDomain, frequency: FrequencyDomain) -> tuple[str, ...]:
-    notes = [*unbuffered_notes(scenario.chain), *_curves(scenario)]
+    notes = [*unbuffered_notes(scenario.chain), *_curves(scenario), *_limits(scenario)]
     if time.end is None:
         notes.append("a pair of poles without damping: a step rings for ever and never settles")
     elif math.isinf(time.end):
@@ -163,6 +165,16 @@ def _notes(scenario: Scenario, time: TimeDomain, frequency: FrequencyDomain) -> 
             "bilinear model is shown without it"
         )
     return tuple(notes)
+
+
+def _limits(scenario: Scenario) -> list[str]:
+    """Tell of slew rates, rails and clamps, which numbers for small signals leave out."""
+    return [
+        f"the limits of {stage.label(place)!r} are not in these numbers, which are for small "
+        "signals; a run has them"
+        for place, stage in enumerate(scenario.chain, start=1)
+        if stage.limiter() is not None and not isinstance(stage, CurvedSensor)
+    ]
 
 
 def _curves(scenario: Scenario) -> list[str]:
@@ -182,5 +194,5 @@ def _plain(value: Any) -> Any:
     if isinstance(value, tuple):
         return [_plain(item) for item in value]
     if isinstance(value, (float, np.floating)):
-        return float(value) if math.isfinite(value) else str(float(value))
+        return None if math.isinf(value) else float(value)
     return value

@@ -9,10 +9,10 @@ from pydantic import Field
 from frontend_sim.quantities import PositiveLimit
 from frontend_sim.scenario.checks.base import CodeCheck
 
-NoiseSource = Literal["budget", "run"]
+NoiseBasis = Literal["budget", "run"]
 NoiseQuantity = Literal["rms", "peak-to-peak"]
 
-SOURCE = (
+BASIS = (
     "where the noise is taken from: the budget of the circuit (sources in the chain and the "
     "converter's input noise, without rounding), or the run (codes read back less the pin, with "
     "rounding)"
@@ -29,4 +29,4 @@ class NoiseCheck(CodeCheck):
         description="rms, or peak-to-peak: 6.6 times the rms of a budget, the largest less the "
         "smallest of a run",
     )
-    source: NoiseSource = Field(default="budget", description=SOURCE)
+    basis: NoiseBasis = Field(default="budget", description=BASIS)

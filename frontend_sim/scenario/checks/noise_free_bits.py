@@ -8,7 +8,7 @@ from pydantic import Field
 
 from frontend_sim.quantities import Bits
 from frontend_sim.scenario.checks.base import CodeCheck
-from frontend_sim.scenario.checks.noise import SOURCE, NoiseSource
+from frontend_sim.scenario.checks.noise import BASIS, NoiseBasis
 
 
 class NoiseFreeBitsCheck(CodeCheck):
@@ -16,4 +16,4 @@ class NoiseFreeBitsCheck(CodeCheck):
 
     kind: Literal["noise-free-bits"] = "noise-free-bits"
     at_least: Bits = Field(description="fewest noise-free bits")
-    source: NoiseSource = Field(default="budget", description=SOURCE)
+    basis: NoiseBasis = Field(default="budget", description=BASIS)

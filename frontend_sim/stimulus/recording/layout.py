@@ -89,7 +89,7 @@ def find_layout(file: Path) -> Layout:
         names, units, header = find_header(lines[:first], delimiter, columns)
     return Layout(
         encoding, delimiter, decimal, first + 1, columns, cells, names, units,
-        _notes(lines[:first], delimiter, decimal, encoding, header)
+        _notes(lines[:first], delimiter if cells > 1 else "", decimal, encoding, header)
         + _left_out(kinds[:first], cells, header),
     )  # fmt: skip
 
@@ -182,7 +182,7 @@ def _notes(
     preamble: list[str], delimiter: str | None, decimal: str, encoding: str, header: int | None
 ) -> tuple[str, ...]:
     signs = {None: "blanks", "\t": "tab", ";": "semicolon", ",": "comma", "|": "bar"}
-    parts = [f"delimiter {signs[delimiter]}"]
+    parts = ["one column" if delimiter == "" else f"delimiter {signs[delimiter]}"]
     parts += ["decimal comma"] if decimal == "," else []
     parts += [f"names in line {header}"] if header else ["no header"]
     if preamble:

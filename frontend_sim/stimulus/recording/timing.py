@@ -97,12 +97,13 @@ def _without_duplicates(
     policy = recording.duplicates
     lines = ", ".join(stamps.series.where(at) for at in order.first_duplicates)
     lines += ", ..." if order.duplicates > len(order.first_duplicates) else ""
+    who = "1 point repeats" if order.duplicates == 1 else f"{order.duplicates} points repeat"
     if policy == "error":
         raise RecordingError(
-            f"{recording.file}: {order.duplicates} points repeat the time of the point before "
+            f"{recording.file}: {who} the time of the point before "
             f'({lines}); set duplicates = "first", "last" or "mean", or timestamps = "uniform" if '
             "the logger's clock is coarse"
         )
-    notes.append(f"{order.duplicates} points repeat a time ({lines}); kept the {policy} of each")
+    notes.append(f"{who} a time ({lines}); kept the {policy} of each")
     signal, time = merged(signal, stamps.series, policy)
     return signal, Stamps(time, stamps.factor)

@@ -37,7 +37,7 @@ WRONG: list[tuple[str, dict[str, Any], str]] = [
         "must lie below upper_corner",
     ),
     ("chebyshev", {"order": 2, "corner": 1e3, "ripple": 0}, "above 0"),
-    ("poles-zeros", {"poles": [-1.0], "zeros": [-1.0, -2.0]}, "2 zeros stand against 1 poles"),
+    ("poles-zeros", {"poles": [-1.0], "zeros": [-1.0, -2.0]}, "2 zeros stand against 1 pole;"),
     ("poles-zeros", {"poles": [[-1.0, 2.0]]}, "without its conjugate"),
     ("poles-zeros", {"poles": [True]}, "valid tuple"),
     ("polynomial", {"numerator": [1.0], "denominator": [0.0, 0.0]}, "denominator is zero"),

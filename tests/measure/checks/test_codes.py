@@ -83,7 +83,7 @@ def test_noise_free_bits() -> None:
 
 def test_noise_of_a_run_with_a_moving_signal() -> None:
     """Five LSB of noise and rounding, sqrt(25 + 1/12) LSB, on a sine; 20000 codes: 2 %."""
-    check = {"kind": "noise", "source": "run", "at_most": "6 LSB"}
+    check = {"kind": "noise", "basis": "run", "at_most": "6 LSB"}
     noisy = {"adc": {"input_noise": 5.0 * 3.3 / 4096}, "simulation": {"duration": "1 s"}}
     sine = {"kind": "sine", "amplitude": 1, "frequency": 37, "offset": 1.65}
     (found,) = verdicts(check, stimulus=sine, **noisy)
@@ -95,7 +95,7 @@ def test_noise_of_a_run_with_a_moving_signal() -> None:
 
 def test_clipped_codes_tell_no_noise() -> None:
     """The check fails with the reason, and says no number."""
-    check = {"kind": "noise", "source": "run", "at_most": "6 LSB"}
+    check = {"kind": "noise", "basis": "run", "at_most": "6 LSB"}
     (found,) = verdicts(check, stimulus={"kind": "step", "after": "5 V"})
     assert (found.verdict, found.value, found.margin) == ("fails", None, None)
     assert "codes are clipped" in found.method

@@ -88,7 +88,7 @@ def test_checks_of_a_scenario_that_was_made_in_python_read_back() -> None:
     scenario = made(
         {"kind": "settling", "within": "0.1 %", "before": 1e-3, "name": "quick"},
         {"kind": "headroom", "at_least": "3 LSB"},
-        {"kind": "noise", "at_most": "1 mV", "source": "run"},
+        {"kind": "noise", "at_most": "1 mV", "basis": "run"},
         {"kind": "thd", "at_most": -80.0},
         {"kind": "effective-bits", "at_least": 10.5},
     )
@@ -183,7 +183,7 @@ def test_blocks_do_not_show(tmp_path: Path) -> None:
     """Verdicts do not depend on how time is cut."""
     scenario = made(
         {"kind": "settling", "within": "1 LSB", "before": "10 ms"},
-        {"kind": "noise", "source": "run", "at_most": "1 LSB"},
+        {"kind": "noise", "basis": "run", "at_most": "1 LSB"},
         adc={"rate": "10 MHz"},
     )
     small, large = (fe.Simulation(scenario, block) for block in (16384, 262144))

@@ -107,11 +107,11 @@ def test_what_never_settles_says_so(stage, note):
 
 
 def test_as_dict_is_json():
-    """Plain data without NaN; infinities are text."""
+    """Plain data without NaN; infinities are null."""
     found = inspected(HIGH).as_dict()
     text = json.dumps(found, allow_nan=False)
     assert json.loads(text) == found
-    assert found["frequency"]["largest"]["frequency"] == "inf"
+    assert found["frequency"]["largest"]["frequency"] is None
     assert found["adc"] == {
         "rate": 20e3, "bits": 12, "low": 0.0, "high": 3.3, "lsb": 3.3 / 4096,
     }  # fmt: skip
