@@ -43,6 +43,16 @@ STAGE_SAMPLES: list[dict[str, Any]] = [
     {"kind": "gain", "gain": "6 dB"},
     {"kind": "noninverting-amplifier", "gain": 2, "gain_bandwidth": 1e6},
     {"kind": "inverting-amplifier", "feedback_resistance": 1, "input_resistance": 2},
+    {"kind": "rail-limit", "low": "0.2 V", "high": 3},
+    {"kind": "slew-limit", "slew_rate": "1 V/us", "slew_rate_down": 5e5, "bandwidth": "1 MHz"},
+    {
+        "kind": "clamp",
+        "high": "3.3 V",
+        "upper_forward_voltage": "0.3 V",
+        "resistance": "4k7",
+        "capacitance": "10n",
+        "diode_resistance": 40,
+    },
     {"kind": "buffer", "gain_bandwidth": "1 MHz", "bias_current": "2 nA", "slew_rate": "1 V/us"},
     {
         "kind": "difference-amplifier",

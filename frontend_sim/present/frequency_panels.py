@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import math
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, Literal
 
 import numpy as np
 from numpy.typing import NDArray
@@ -87,7 +87,7 @@ def draw_delay(axes: Axes, view: FrequencyView) -> None:
     _draw_corners(axes, view, labels=False)
 
 
-def _free_place(view: FrequencyView) -> str:
+def _free_place(view: FrequencyView) -> Literal["lower left", "lower center", "lower right"]:
     """Return where the magnitude leaves room below it: under its higher end, or its middle."""
     first, last = float(view.magnitude[0]), float(view.magnitude[-1])
     if max(first, last) < float(np.max(view.magnitude)) - LEAST_SHOWN / 2.0:

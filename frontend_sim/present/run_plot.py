@@ -30,10 +30,10 @@ def plot_run(run: RunLike, path: str | os.PathLike[str], overwrite: bool = False
 
     Pin voltage and the codes read back, with the limits of the ADC's range and marks where it was
     exceeded; the pin between conversions where its waveform is kept, and where it is not, a few
-    conversions are dots that no line joins; the difference of the two in LSB; the waveforms, where some are kept; and for each
-    settling check the distance from the end in LSB on a logarithmic axis, with the band, the last
-    exit and the time that is granted. A long run is reduced to the lowest and the highest value of
-    each column of pixels, so no peak is lost.
+    conversions are dots that no line joins; the difference of the two in LSB; the waveforms, where
+    some are kept; and for each settling check the distance from the end in LSB on a logarithmic
+    axis, with the band, the last exit and the time that is granted. A long run is
+    reduced to the lowest and the highest value of each column of pixels, so no peak is lost.
 
     Parameters
     ----------

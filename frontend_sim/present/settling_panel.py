@@ -9,7 +9,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from frontend_sim.errors import InputError
-from frontend_sim.measure.checks.settling import Settled, settled
+from frontend_sim.measure.checks.settled import Settled, settled
 from frontend_sim.measure.checks.subject import Subject
 from frontend_sim.present.colours import BLACK, EXACT, GREEN, LIMIT, MARK, ORANGE
 from frontend_sim.present.decimation import COLUMNS

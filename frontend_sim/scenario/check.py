@@ -53,7 +53,9 @@ def check_scenario(scenario: Scenario, name: str = "") -> None:
     for position, stage in enumerate(scenario.chain):
         label = stage.label(position + 1)
         try:
-            section(moved(stage, temperature, label), label, temperature)
+            warm = moved(stage, temperature, label)
+            section(warm, label, temperature)
+            warm.limiter()
         except ModelError as error:
             raise ModelError(_located(scenario, name, ("chain", position), str(error))) from error
 
@@ -62,10 +64,12 @@ def scenario_notes(scenario: Scenario) -> tuple[str, ...]:
     """Return what is allowed in a scenario but has no effect, for the log of a run."""
     settings = scenario.simulation
     notes = []
-    if settings.discretization == "exact" and settings.grid_rate is not None:
+    linear = all(stage.limiter() is None for stage in scenario.chain)
+    if settings.discretization == "exact" and settings.grid_rate is not None and linear:
         notes.append(
-            'simulation.grid_rate has no effect on a run with discretization = "exact"; inspect '
-            "shows how far discrete models at this rate are from exact"
+            'simulation.grid_rate has no effect on a run with discretization = "exact" and nothing '
+            "in the chain that limits; inspect shows how far discrete models at this rate are from "
+            "exact"
         )
     if settings.grid_rate is not None and "accuracy" in settings.model_fields_set:
         notes.append('simulation.accuracy has no effect unless grid_rate = "auto"')

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from pathlib import Path
 
-from frontend_sim.errors import Problem, ScenarioError
+from frontend_sim.errors import Problem, ScenarioError, shortened
 from frontend_sim.scenario.closest import closest
 
 LARGEST = 4 << 20

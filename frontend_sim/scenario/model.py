@@ -50,10 +50,11 @@ class SimulationSettings(Value):
     )
     grid_rate: Annotated[Frequency | None, BeforeValidator(_auto_or)] = Field(
         default=None,
-        description='points per second of a discrete model; "auto", or left out, picks the '
-        "coarsest multiple of the conversion rate whose estimated error stays below accuracy. With "
-        "discretization exact it changes nothing in a run; inspect then shows how far discrete "
-        "models at this rate are from exact",
+        description="points per second of a discrete model, and of the grid on which rails, slew "
+        'rates, clamps and curved sensors are followed; "auto", or left out, picks the coarsest '
+        "multiple of the conversion rate (or of a recording's rate) whose estimated error stays "
+        "below accuracy. With discretization exact and a linear chain it changes nothing in a run; "
+        "inspect then shows how far discrete models at this rate are from exact",
         json_schema_extra={"examples": ["auto", "1 MHz"]},
     )
     accuracy: PositiveLsb = Field(

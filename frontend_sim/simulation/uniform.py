@@ -189,7 +189,8 @@ class UniformPath:
         powers = np.array([self._power(int(length)) for length in lengths])
         sums = np.empty((len(owner), len(x)))
         kernels.weigh(points, starts, parts, self.weights, sums)
-        return self._recur(x, powers, which, sums)[np.cumsum(steps) - 1]
+        states: Real = self._recur(x, powers, which, sums)[np.cumsum(steps) - 1]
+        return states
 
     def _sums(self, rows: Real) -> Real:
         """Return the weighted sums over rows of points, shape (K, n): one product."""

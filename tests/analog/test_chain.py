@@ -193,5 +193,7 @@ def test_time_constants_twelve_decades_apart() -> None:
 def test_an_unstable_stage_is_refused(pole: tuple[float, float]) -> None:
     """A pole in the right half plane is named, with the stage that has it."""
     poles = (pole,) if pole[1] == 0.0 else (pole, (pole[0], -pole[1]))
-    with pytest.raises(ModelError, match=r"stage 'hot' is unstable.*no pole may lie in the right half plane"):
+    with pytest.raises(
+        ModelError, match=r"stage 'hot' is unstable.*no pole may lie in the right half plane"
+    ):
         chain_of([PolesZeros(name="hot", poles=poles)])

@@ -106,7 +106,7 @@ def test_one_over_f_has_its_slope_and_its_corner() -> None:
 
 
 def test_one_over_f_has_the_power_of_its_band() -> None:
-    """Behind a wide pole the budget is that of the white part plus density² corner ln(top/lowest)."""
+    """Behind a wide pole: the white part plus density² · corner · ln(top / lowest)."""
     wide = first_order(-2.0 * math.pi * 1e9, (0.0, 2.0 * math.pi * 1e9))
     source = at_input("amplifier", 1e-8, (wide,), corner=100.0)
     budget = noise_budget(compose([Section("amplifier", (wide,), 0.0, (source,))]), ADC, 0.01)

@@ -86,7 +86,7 @@ def test_the_plot_tells_what_is_to_be_seen() -> None:
         "frequency [Hz]", "response to a unit step [V/V]", "time after the step [ms]",
         "distance from the end [V/V]", "half the rate 10.0 kHz", "rate 20.0 kHz",
         "−3 dB 1.177 kHz", "−3 dB 1.692 kHz", "bilinear at 40.0 kHz", "zoh at 40.0 kHz",
-        "overshoot 58.80 %", "1 %\\nafter 2.79 ms", "0.5 LSB\\nafter 5.51 ms", "end ± 1 %",
+        "overshoot 58.80 %", "1 %\nafter 2.79 ms", "0.5 LSB\nafter 5.51 ms", "end ± 1 %",
     ):  # fmt: skip
         assert text in shown, text
 
@@ -171,3 +171,9 @@ def test_what_never_ends_says_so() -> None:
     """Drift and ringing for ever are told in words."""
     assert "drifts without bound" in printed(inspected("integrator"))
     assert "rings for ever" in printed(inspected("oscillator"))
+
+
+def test_no_group_delay_where_the_gain_has_no_largest_value() -> None:
+    """Beside a pole on the axis there is no frequency whose group delay could be told."""
+    assert "group delay where the gain is largest" in printed(inspected("band pass"))
+    assert "group delay where the gain is largest" not in printed(inspected("oscillator"))

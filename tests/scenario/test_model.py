@@ -108,3 +108,10 @@ def test_too_many_points_are_a_slip_of_the_pen(key: str) -> None:
 def test_a_grid_that_a_run_does_not_use_is_not_counted() -> None:
     """With discretization exact, grid_rate is for inspect alone."""
     assert scenario(simulation={"duration": 1.0, "grid_rate": 1e12})
+
+
+def test_a_negative_part_in_rkm_code_is_told_as_negative() -> None:
+    """The sign does not hide that "-4n7" is a capacitance."""
+    part = {"kind": "rc-lowpass", "resistance": "4k7", "capacitance": "-4n7"}
+    with pytest.raises(ValidationError, match="must be above 0 F"):
+        scenario(chain=[part])

@@ -151,7 +151,7 @@ CHAIN = [
     case(stage(f'kind = "poles-zeros"\npoles = [\n-1,\n[1, 2, 3], {MARK}\n]'),
          "chain[1].poles[2]", "given [1, 2, 3]"),
     case(stage(f'kind = "poles-zeros"\npoles = [[-1, 2]] {MARK}'), "without its conjugate"),
-    case(stage('kind = "poles-zeros"\npoles = [-1]\nzeros = [1, 2]'), "2 zeros", "1 poles"),
+    case(stage('kind = "poles-zeros"\npoles = [-1]\nzeros = [1, 2]'), "2 zeros", "1 pole;"),
     case(stage(f'kind = "poles-zeros"\npoles = [-1e300] {MARK}'), "out of reach", "1e+21"),
     case(stage('kind = "polynomial"\nnumerator = [1]\n' f'denominator = [1, "2"] {MARK}'),
          "chain[1].denominator[2]", 'given "2"', "2 without quotes"),

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from frontend_sim.measure.checks import words
 from frontend_sim.measure.checks.answer import Answer
-from frontend_sim.measure.checks.rest import last_change
+from frontend_sim.measure.checks.events import last_change
 from frontend_sim.measure.checks.subject import Subject
 from frontend_sim.scenario.checks.grid_error import GridErrorCheck
 from frontend_sim.stimulus.drive import PiecewiseDrive, UniformDrive

@@ -1,66 +1,21 @@
-"""Evaluates when a signal has settled: its last exit from the band, never the first entry."""
+"""Evaluates how long a signal takes to settle."""
 
 from __future__ import annotations
 
 import math
-from collections.abc import Callable
-from dataclasses import dataclass
 
 import numpy as np
 
 from frontend_sim.errors import MeasureError
 from frontend_sim.measure.checks import words
 from frontend_sim.measure.checks.answer import Answer
-from frontend_sim.measure.checks.rest import Rest, Tail, rest_of
+from frontend_sim.measure.checks.rest import rest_of
+from frontend_sim.measure.checks.settled import ROUNDING, Settled, event_of, settled
 from frontend_sim.measure.checks.speed import strongest_lever
-from frontend_sim.measure.checks.subject import Real, Subject
+from frontend_sim.measure.checks.subject import Subject
 from frontend_sim.measure.result import Result
-from frontend_sim.measure.transition.settling import sampled_settling
-from frontend_sim.quantities import Limit
 from frontend_sim.scenario.checks.rules import beyond_end
 from frontend_sim.scenario.checks.settling import SettlingCheck
-
-RETURNS = 1e-9
-"""A change below this share of the largest excursion counts as none."""
-
-ROUNDING = 1e-9
-"""Ticks are not rounded up for this share of their number, and bands not exceeded by it."""
-
-PROVEN = (
-    "last exit of the exact response from the band; a bound on the sum of its modes shows that "
-    "nothing follows while the stimulus rests"
-)
-SAMPLED = "last exit of the conversions from the band (nothing is known between them)"
-AS_GIVEN = "as given"
-AT_REST = "where the chain ends while the stimulus rests"
-LAST = "last conversion; the run goes on for as long again as it took to settle"
-
-
-@dataclass(frozen=True)
-class Settled:
-    """When a point of the chain has settled.
-
-    Parameters
-    ----------
-    since : instant of the event [s]
-    final : value that the band lies around;  band : half its width [V]
-    exit : instant at which the point leaves the band for the last time [s]
-    method : how it was found;  ends : how the final value was
-    tail : the exact way there, where it is known
-    """
-
-    since: float
-    final: float
-    band: float
-    exit: float
-    method: str
-    ends: str
-    tail: Tail | None = None
-
-    @property
-    def seconds(self) -> float:
-        """Time from the event to the last exit [s]."""
-        return max(self.exit - self.since, 0.0)
 
 
 def settling(check: SettlingCheck, subject: Subject) -> Answer:
@@ -91,7 +46,7 @@ def settling_possible(check: SettlingCheck, subject: Subject) -> None:
         If it does.
     """
     rest = rest_of(subject, check.point, check.after)
-    since = _since(check, rest)
+    since = event_of(check, rest)
     end = since + check.before
     if end > subject.duration * (1.0 + ROUNDING):
         raise MeasureError(beyond_end("before", end, subject.duration))
@@ -101,94 +56,6 @@ def settling_possible(check: SettlingCheck, subject: Subject) -> None:
             f"stimulus changes again at {words.time(rest.until)}; grant less, or let after name "
             "the last event"
         )
-
-
-def settled(check: SettlingCheck, subject: Subject) -> Settled:
-    """Return when a point of the chain has settled.
-
-    Raises
-    ------
-    MeasureError
-        If the run ends before it can be told.
-    """
-    rest = rest_of(subject, check.point, check.after)
-    since = _since(check, rest)
-    times, values = _stretch(check, subject, since, rest)
-    if rest is not None and rest.tail is not None and check.final is None:
-        band = _band(check, subject, rest.height, lambda: _largest(rest.tail))
-        exit_ = since + rest.tail.leaves(band)
-        # Codes come from the conversions: none of them may tell otherwise.
-        outside = times[np.abs(values - rest.final) > band * (1.0 + ROUNDING) + _grain(subject)]
-        latest = max(float(outside[-1]), exit_) if len(outside) else exit_
-        return Settled(since, rest.final, band, latest, PROVEN, AT_REST, rest.tail)
-    final, ends = _final(check, rest, values)
-    height = rest.height if rest is not None else final - float(values[0])
-    band = _band(check, subject, height, lambda: float(np.max(np.abs(values - final))))
-    sampled = sampled_settling(times, values, final, band, since)
-    exit_ = since if sampled.last_outside is None else since + sampled.settled
-    if ends == LAST and exit_ - since > float(times[-1]) - exit_:
-        raise MeasureError(
-            f"it has not settled: it leaves the band around its last value until "
-            f"{words.time(exit_ - since)} after the event, and the run ends after "
-            f"{words.time(float(times[-1]) - since)}; widen the band, lengthen "
-            "simulation.duration, or give final"
-        )
-    return Settled(since, final, band, exit_, SAMPLED, ends)
-
-
-def _since(check: SettlingCheck, rest: Rest | None) -> float:
-    if check.after is not None:
-        return check.after
-    return 0.0 if rest is None else rest.since
-
-
-def _stretch(
-    check: SettlingCheck, subject: Subject, since: float, rest: Rest | None
-) -> tuple[Real, Real]:
-    """Return instants and values of the conversions from the event to the next one."""
-    first = subject.first_after(since)
-    until = math.inf if rest is None else rest.until
-    last = int(np.searchsorted(subject.time, until))
-    if last <= first:
-        raise MeasureError(f"no conversion falls between the event at {words.time(since)} and "
-                           f"the next one at {words.time(until)}")  # fmt: skip
-    return subject.time[first:last], subject.at_conversions(check.point)[first:last]
-
-
-def _final(check: SettlingCheck, rest: Rest | None, values: Real) -> tuple[float, str]:
-    if check.final is not None:
-        return check.final, AS_GIVEN
-    if rest is not None:
-        return rest.final, AT_REST
-    return float(values[-1]), LAST
-
-
-def _band(
-    check: SettlingCheck, subject: Subject, height: float, largest: Callable[[], float]
-) -> float:
-    """Return half the width of the band [V]."""
-    limit = check.within
-    assert isinstance(limit, Limit)  # its field reads one
-    whole = abs(height)
-    if limit.unit == "1":
-        most = largest()
-        whole = whole if whole > RETURNS * most else most
-        if whole == 0.0:
-            raise MeasureError(
-                "the point does not move, so a share of its change is nothing; give within in LSB "
-                "or V, or an event in the stimulus"
-            )
-    return float(limit) * limit.scale(subject.adc.lsb, whole)
-
-
-def _largest(tail: Tail | None) -> float:
-    assert tail is not None
-    return max(tail.furthest(1.0), tail.furthest(-1.0), abs(tail.departure))
-
-
-def _grain(subject: Subject) -> float:
-    """Return what rounding may add to a voltage [V]."""
-    return 1e-12 * max(abs(subject.adc.low), abs(subject.adc.high))
 
 
 def _beside(check: SettlingCheck, subject: Subject, found: Settled) -> list[Result]:

@@ -16,7 +16,7 @@ from scipy.linalg import expm
 from frontend_sim.analog.chain import Chain, chain_of
 from frontend_sim.errors import ScenarioError
 from frontend_sim.measure.checks import evaluate_checks, refuse_impossible
-from frontend_sim.measure.checks.settling import PROVEN, SAMPLED
+from frontend_sim.measure.checks.settled import PROVEN, SAMPLED
 from frontend_sim.simulation import Simulation, simulate
 
 Real = NDArray[np.float64]

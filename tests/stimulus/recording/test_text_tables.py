@@ -13,6 +13,7 @@ from recorded import forget, points, rate, recording, write
 
 from frontend_sim.errors import RecordingError
 from frontend_sim.stimulus.recording import rows
+from frontend_sim.stimulus.recording.layout import find_layout
 
 NUMBERS = np.array([0.5, -1.25, 3.0, 0.125])
 
@@ -175,7 +176,7 @@ def test_the_line_of_an_error_is_the_line_of_the_file(
 def test_line_of_a_duplicate_is_known_without_parsing_again(tmp_path: Path) -> None:
     """Time stamps that repeat are told by line, counted over skipped lines."""
     file = write(tmp_path / "log.csv", "t,x\n0,1\n\n1,2\n# pause\n1,3\n2,4\n")
-    with pytest.raises(RecordingError, match=r"repeat .*\(line 6\)"):
+    with pytest.raises(RecordingError, match=r"1 point repeats .*\(line 6\)"):
         recording(file, time="t").known_length()
 
 
@@ -213,3 +214,10 @@ def test_tables_round_trip(
         file = write(Path(folder, "log.csv"), "\n".join(lines) + "\n", newline=newline)
         read = points(recording(file, **keys))
     assert np.array_equal(read, numbers)
+
+
+def test_a_table_of_one_column_has_no_delimiter(tmp_path: Path) -> None:
+    """None is told where none is."""
+    assert find_layout(write(tmp_path / "log.csv", "x\n1.5\n2.5\n")).notes == (
+        "text table: one column, names in line 1, numbers from line 2 on",
+    )
