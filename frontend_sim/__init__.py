@@ -25,6 +25,7 @@ if TYPE_CHECKING:
         rerun_scenario,
         save_record,
     )
+    from frontend_sim.converter import OversamplingAdc
     from frontend_sim.converter.adc import Adc
     from frontend_sim.errors import (
         FrontendSimError,
@@ -66,6 +67,7 @@ _HOME = {
     "Inspection": "measure.response",
     "ModelError": "errors",
     "OutputError": "errors",
+    "OversamplingAdc": "converter",
     "Part": "quantities",
     "Preferred": "quantities",
     "QuantityError": "errors",
@@ -111,6 +113,7 @@ __all__ = [
     "Inspection",
     "ModelError",
     "OutputError",
+    "OversamplingAdc",
     "Part",
     "Preferred",
     "QuantityError",

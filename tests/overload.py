@@ -57,9 +57,7 @@ class Machine:
                 if solution.status == 1:
                     names = list(self.modes[mode].out)
                     mode = next(
-                        name
-                        for name, at in zip(names, solution.t_events, strict=True)
-                        if len(at)
+                        name for name, at in zip(names, solution.t_events, strict=True) if len(at)
                     )
         return found
 

@@ -52,8 +52,8 @@ class SourceFile:
 
 
 def source_files(scenario: Scenario) -> tuple[SourceFile, ...]:
-    """Read size and digest of every file of the stimulus. Raises RecordingError."""
-    return tuple(map(_source_file, dict.fromkeys(scenario.stimulus.files())))
+    """Read size and digest of every file of the scenario. Raises RecordingError."""
+    return tuple(map(_source_file, scenario.files()))
 
 
 def _source_file(file: Path) -> SourceFile:

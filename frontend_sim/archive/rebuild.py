@@ -52,7 +52,7 @@ def rebuild(
         If a file of the stimulus cannot be read.
     """
     names = {name: str(path) for name, path in files.items()}
-    moved = {**values, "stimulus": _renamed(values["stimulus"], names)}
+    moved = {**values, **{key: _renamed(values[key], names) for key in ("stimulus", "adc")}}
     try:
         scenario = Scenario.model_validate(moved)
     except ValidationError as error:

@@ -84,7 +84,7 @@ def record_run(
     """
     scenario = simulation.scenario
     prepared = simulation if isinstance(simulation, Simulation) else None
-    target = usable_target(path, overwrite, [*scenario.stimulus.files(), *inputs])
+    target = usable_target(path, overwrite, [*scenario.files(), *inputs])
     refuse_impossible(scenario, prepared=prepared)
     keeper, files = Keeper(scenario), source_files(scenario)
     resolved = document(scenario, files, target.parent)

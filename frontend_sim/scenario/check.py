@@ -34,9 +34,10 @@ def check_scenario(scenario: Scenario, name: str = "") -> None:
         If a recorded stimulus cannot be read.
     ScenarioError
         If the run has no duration, or one beyond the end of what is known of the stimulus, or no
-        conversion falls into it.
+        conversion falls into it, or a table of the converter cannot be read or does not fit it.
     ModelError
-        If a stage is unstable, or a drift takes a part to a value that it cannot have.
+        If a stage is unstable, or a drift takes a part or the reference to a value that it cannot
+        have.
     """
     try:
         known = scenario.stimulus.known_length()
@@ -58,6 +59,13 @@ def check_scenario(scenario: Scenario, name: str = "") -> None:
             warm.limiter()
         except ModelError as error:
             raise ModelError(_located(scenario, name, ("chain", position), str(error))) from error
+    try:
+        scenario.adc.digitizer(scenario.seed, temperature)
+    except ScenarioError as error:
+        path = ("adc", "nonlinearity", "table")
+        raise ScenarioError([problem_of(scenario, path, str(error))], name) from error
+    except ModelError as error:
+        raise ModelError(_located(scenario, name, ("adc", "reference"), str(error))) from error
 
 
 def scenario_notes(scenario: Scenario) -> tuple[str, ...]:
@@ -71,7 +79,8 @@ def scenario_notes(scenario: Scenario) -> tuple[str, ...]:
             "in the chain that limits; inspect shows how far discrete models at this rate are from "
             "exact"
         )
-    if settings.grid_rate is not None and "accuracy" in settings.model_fields_set:
+    usual = type(settings).model_fields["accuracy"].default
+    if settings.grid_rate is not None and settings.accuracy != usual:
         notes.append('simulation.accuracy has no effect unless grid_rate = "auto"')
     return tuple(notes)
 

@@ -257,6 +257,10 @@ class Scenario(Value):
             copy._measure(copy.stimulus_unit)
         return copy
 
+    def files(self) -> tuple[Path, ...]:
+        """Return the files that the scenario is made from: recordings, tables of the converter."""
+        return tuple(dict.fromkeys([*self.stimulus.files(), *self.adc.files()]))
+
     def resolved(self) -> dict[str, Any]:
         """Return every value in SI units, defaults filled in, as plain data for JSON."""
         return self.model_dump(mode="json")
@@ -269,7 +273,7 @@ class Scenario(Value):
         """
         values = self.resolved()
         del values["title"]
-        named = {str(file): sha256_of(file) for file in self.stimulus.files()}
+        named = {str(file): sha256_of(file) for file in self.files()}
         text = json.dumps(_renamed(values, named), sort_keys=True, separators=(",", ":"))
         return hashlib.sha256(text.encode()).hexdigest()
 

@@ -19,6 +19,14 @@ from frontend_sim.simulation.signal import NEAR, Past, Signal
 from frontend_sim.stimulus.drive import Drive, Lines
 
 
+@dataclass(frozen=True)
+class Keep:
+    """From where on a deviation is still needed: a point of the grid, and a time for jumps [s]."""
+
+    point: int
+    time: float
+
+
 @dataclass(frozen=True, eq=False)
 class DeviationState:
     """Where a deviation stands: at a point of the grid.
@@ -93,7 +101,7 @@ class Deviation:
         state: DeviationState,
         done: int,
         until: int,
-        keep: int,
+        keep: Keep,
         before: Sequence[Signal],
     ) -> DeviationState:
         """Advance to point ``until`` - 1 of the grid.
@@ -101,7 +109,7 @@ class Deviation:
         Parameters
         ----------
         done : number of the first point that is not known yet
-        keep : number of the point from which on the signal is still needed
+        keep : from where on the signal is still needed
         before : deviations of the limiters before this one, known as far as to ``until`` - 1
         """
         times = np.arange(done, until) / self.rate
@@ -120,7 +128,7 @@ class Deviation:
         level, signal = self._signal(state, first, keep, pieces, d, begun)
         if self.remembers:
             past = Past(pieces, float(state.limiter[0]), d, begun)
-            signal = replace(signal, past=state.signal.past).remembered(past, keep)
+            signal = replace(signal, past=state.signal.past).remembered(past, keep.point)
         time, when = _counted(state, touched, pieces)
         count = state.count + (len(jumps.times) if jumps is not None else 0)
         return DeviationState(
@@ -153,7 +161,7 @@ class Deviation:
         self,
         state: DeviationState,
         first: int,
-        keep: int,
+        keep: Keep,
         pieces: Pieces,
         d: Real,
         begun: Real,
@@ -174,11 +182,11 @@ class Deviation:
             joined, level = pieces.on_grid(d - held), float(levels[-1])
             lines = _grown(lines, pieces.begins(starts[at]), levels)
         if polygon is None and not np.any(joined):
-            return level, Signal(None, _trimmed(lines, keep / self.rate))
+            return level, Signal(None, _trimmed(lines, keep.time))
         if polygon is None:
             polygon = Polygon(self.rate, 0.0, first, np.zeros(1))
-        lines = _trimmed(lines, keep / self.rate)
-        return level, Signal(polygon.grown(joined, keep), lines)
+        lines = _trimmed(lines, keep.time)
+        return level, Signal(polygon.grown(joined, keep.point), lines)
 
 
 def _grown(lines: Lines | None, breaks: Real, levels: Real) -> Lines:

@@ -172,7 +172,7 @@ class Simulation:
     def _trials(self) -> Trials:
         adc, digitizer = self.scenario.adc, self._digitizer
         scale = (
-            1.0 / digitizer.interval,
+            adc.pattern.look_rate,
             adc.lsb,
             adc.high - adc.low,
             self.scenario.simulation.accuracy,
@@ -217,7 +217,7 @@ class Simulation:
             )
         if not model.names or len(model.a) == 0:  # without states no noise is left
             return None
-        return NoisePath.of(model, self._digitizer.interval, self.scenario.seed)
+        return NoisePath.of(model, self.scenario.adc.pattern, self.scenario.seed)
 
     def _block_of(self, part: Converted) -> RunBlock:
         codes = (part.codes, part.voltage, part.overrange)

@@ -12,7 +12,7 @@ import numpy as np
 from frontend_sim.analog.cut import CutChain, Place
 from frontend_sim.analog.limits import Segments
 from frontend_sim.quantities import TIME, as_text
-from frontend_sim.simulation.deviation import Deviation, DeviationState
+from frontend_sim.simulation.deviation import Deviation, DeviationState, Keep
 from frontend_sim.simulation.kernels import Real
 from frontend_sim.simulation.linear import Axis, GridMethod, Initial, Linear, States
 from frontend_sim.simulation.polygon import Polygon
@@ -57,7 +57,8 @@ class Limited:
     end : points of the grid in the whole run
     piece : instants that are asked at once, a power of two; 0 if more than a SLOT of the grid lies
         between them, as a rule
-    lag : how far behind an instant the deviations are still needed [s]
+    delay : of the whole chain, up to which before an instant deviations are still needed [s]
+    lag : the same for what they hold and jump, which is asked by whole rows of instants [s]
     """
 
     deviations: tuple[Deviation, ...]
@@ -65,6 +66,7 @@ class Limited:
     rate: float
     end: int
     piece: int
+    delay: float
     lag: float
 
     @classmethod
@@ -102,8 +104,9 @@ class Limited:
         for place in cut.places:
             make.add(place)
         probe = make.probe([cut.points[point] for point in points], axis, True)
-        lag = float(cut.chain.delay[-1]) + (ROW + 2) * (axis.interval if axis.uniform else 0.0)
-        return cls(tuple(make.deviations), probe, rate, math.ceil(duration * rate) + 2, piece, lag)
+        delay, end = float(cut.chain.delay[-1]), math.ceil(duration * rate) + 2
+        lag = delay + (ROW + 2) * max(axis.interval if axis.uniform else 0.0, 1.0 / rate)
+        return cls(tuple(make.deviations), probe, rate, end, piece, delay, lag)
 
     def start(self) -> LimitedState:
         """Return the states at t = 0."""
@@ -163,7 +166,8 @@ class Limited:
         needed = math.floor(instant * self.rate) + 3
         until = -(-needed // WAVEFORM_TILE) * WAVEFORM_TILE
         until = max(min(until, self.end), needed)
-        keep = math.floor((states.asked - self.lag) * self.rate) - 1
+        point = math.floor((states.asked - self.delay) * self.rate) - 1
+        keep = Keep(point, states.asked - self.lag)
         known, deviations = states.known, states.deviations
         while known < until:
             upto = min(known + GRID_BLOCK, until)

@@ -8,6 +8,8 @@ from typing import Self
 import numpy as np
 
 from frontend_sim.analog.noise import NoiseModel, factor, stationary_covariance, step_covariance
+from frontend_sim.converter.pattern import LookPattern
+from frontend_sim.errors import ModelError
 from frontend_sim.randomness import normal, stream
 from frontend_sim.simulation import kernels
 from frontend_sim.simulation.kernels import Index, Real
@@ -15,7 +17,9 @@ from frontend_sim.simulation.kernels import Index, Real
 
 @dataclass(frozen=True, eq=False)
 class NoisePath:
-    """Noise at nominal conversion instants: x[k+1] = Phi x[k] + L n[k], y = c x.
+    """Noise at the nominal instants of looks: x[k+1] = Phi x[k] + L n[k], y = c x.
+
+    Between bursts of looks the step is longer; it has a Phi and an L of its own.
 
     The covariance of one step is exact, so noise of any bandwidth folds down as it does in the
     converter, and no grid limits it. Jitter moves a conversion by far less than noise can tell, so
@@ -23,41 +27,59 @@ class NoisePath:
     covariance. Source: C. F. Van Loan 1978, for the covariance of a step.
     """
 
-    e: Real
-    step_factor: Real
+    powers: Real
+    step_factors: Real
+    looks: int
     first_factor: Real
     c: Real
     reach: Index
     key: tuple[int, ...]
 
     @classmethod
-    def of(cls, model: NoiseModel, interval: float, seed: int) -> Self:
-        """Prepare for conversions ``interval`` apart [s]; ModelError as the covariances say."""
-        e, q = step_covariance(model.a, model.b, interval)
-        first = factor(stationary_covariance(model.a, model.b))
-        key = stream(seed, "noise of the chain")
-        return cls(e, factor(q), first, model.c, kernels.reach(e), key)
+    def of(cls, model: NoiseModel, pattern: LookPattern, seed: int) -> Self:
+        """Prepare for looks in a pattern; ModelError as the covariances say."""
+        intervals = [pattern.closest] if pattern.looks == 1 else [pattern.closest, pattern.widest]
+        steps = [step_covariance(model.a, model.b, interval) for interval in intervals]
+        powers = np.stack([np.zeros_like(model.a), *(e for e, _ in steps)])
+        factors = np.stack([factor(q) for _, q in steps])
+        first = _before(model)
+        key, reach = stream(seed, "noise of the chain"), kernels.reach(powers)
+        return cls(powers, factors, pattern.looks, first, model.c, reach, key)
 
     def start(self) -> Real:
         """Return the states at the first conversion, less the step to it."""
-        size = len(self.e)
+        size = len(self.first_factor)
         drawn = np.array([normal((*self.key, i, 1), 0, 1)[0] for i in range(size)])
         return np.asarray(self.first_factor @ drawn)
 
     def advance(self, x: Real, start: int, stop: int) -> tuple[Real, Real]:
-        """Return the states after conversions start to stop - 1, and their noise at the pin [V]."""
+        """Return the states after looks start to stop - 1, and their noise at the pin [V]."""
         x, states = x.copy(), np.empty((stop - start, len(x)))
         white = np.column_stack([normal((*self.key, i, 0), start, stop) for i in range(len(x))])
-        if start == 0:
-            white[0] = 0.0
-        which = np.zeros(stop - start, np.int64)
+        which = np.ones(stop - start, np.int64)
         sums = np.empty_like(states)
-        kernels.mix(self.step_factor, white, sums)
-        powers = self.e[None]
-        if start == 0:
-            powers = np.stack([self.e, np.zeros_like(self.e)])
-            which[0] = 1
-        kernels.recur(x, powers, self.reach, which, sums, states)
+        kernels.mix(self.step_factors[0], white, sums)
+        if self.looks > 1:
+            after_gap = np.arange(start, stop) % self.looks == 0
+            which[after_gap] = 2
+            across = np.empty_like(states)
+            kernels.mix(self.step_factors[1], white, across)
+            sums[after_gap] = across[after_gap]
+        if start == 0:  # the state at the first look is there already
+            sums[0], which[0] = 0.0, 0
+        kernels.recur(x, self.powers, self.reach, which, sums, states)
         y = np.empty((1, stop - start))
         kernels.readout(states, np.zeros(stop - start), self.c[None], np.zeros(1), y)
         return x, y[0]
+
+
+def _before(model: NoiseModel) -> Real:
+    """Return a factor of the covariance at the first look.
+
+    It is the stationary one; where a pole at the origin gathers noise without bound there is
+    none, and the gathering begins with the run.
+    """
+    try:
+        return factor(stationary_covariance(model.a, model.b))
+    except ModelError:
+        return np.zeros_like(model.a)

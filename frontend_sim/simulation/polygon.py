@@ -32,7 +32,9 @@ class Polygon(UniformDrive):
         begin, stop = first - self.first, last - self.first
         if begin >= 0 and stop <= len(self.data):
             return self.data[begin:stop]
-        return self.data[np.clip(np.arange(begin, stop), 0, len(self.data) - 1)]
+        known = self.data[np.clip(np.arange(begin, stop), 0, len(self.data) - 1)]
+        # Before t = 0 the signal may have been another one.
+        return np.where(np.arange(first, last) < 0, self.initial, known)
 
     def grown(self, data: Real, keep: int) -> Polygon:
         """Return the polygon with more points behind, and without those before number ``keep``."""

@@ -15,6 +15,7 @@ from frontend_sim.analog.discretize import DiscreteModel
 from frontend_sim.analog.exponential import power
 from frontend_sim.simulation import kernels
 from frontend_sim.simulation.path import Outputs, State
+from frontend_sim.simulation.resampled import Resampled
 from frontend_sim.simulation.since import SincePoint
 from frontend_sim.stimulus.drive import UniformDrive
 
@@ -100,6 +101,8 @@ class UniformPath:
     ) -> tuple[State, Real]:
         """Advance through instants, see ``Path``."""
         source = drive or self.drive
+        if drive is not None and isinstance(self.drive, Resampled):
+            source = Resampled(drive, self.drive.times)
         index, since = self.drive.locate(instants, self.outputs.delay)
         y = np.empty((len(self.outputs.d), len(instants)))
         x, node, done = state.x.copy(), int(state.node), 0

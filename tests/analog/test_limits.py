@@ -117,7 +117,7 @@ def test_rails_and_slew_rates_are_kept(name: str, line: list[tuple[float, float]
 @given(line=LINES)
 @settings(max_examples=40, deadline=None)
 def test_a_fast_loop_is_a_follower(line: list[tuple[float, float]]) -> None:
-    """At a rate of 1e10 rad/s the closed loop lags a follower by what slews in 0.1 ns, 30 uV each."""
+    """At 1e10 rad/s the closed loop lags a follower by what slews in 0.1 ns, 30 uV each."""
     times, u = _nodes(line)
     loop, _ = _output(ClosedLoop(range(1), 1e10, 2.0, UP, DOWN, LOW, HIGH), times, u, 1e10, 2.0)
     follower, _ = _output(SlewFollower(range(1), 2.0, UP, DOWN, LOW, HIGH), times, u, None, 2.0)

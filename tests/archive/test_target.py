@@ -63,7 +63,9 @@ def test_an_existing_file_stays(tmp_path: Path) -> None:
     """Without being asked, nothing is overwritten; asked, the new record takes the place."""
     path = save_record(RUN, tmp_path / "r.h5")
     before = path.read_bytes()
-    with pytest.raises(OutputError, match="exists; give another name, or overwrite it: --overwrite, in Python"):
+    with pytest.raises(
+        OutputError, match="exists; give another name, or overwrite it: --overwrite, in Python"
+    ):
         save_record(OTHER, path)
     assert path.read_bytes() == before
     save_record(OTHER, path, overwrite=True)

@@ -137,7 +137,7 @@ def test_second_order_at_conversions_on_the_grid(name: str) -> None:
 
 @pytest.mark.parametrize("name", CASES)
 def test_second_order_at_conversions_between_points(name: str) -> None:
-    """The same where no conversion meets a point of the grid, though rails and clamps bend there."""
+    """The same where no conversion meets a point of the grid."""
     rates = RATE * 2.0 ** np.arange(4, 9)
     errors = [
         float(np.max(np.abs(_found(CASES[name], BETWEEN, r) - _true(name)[1]))) for r in rates

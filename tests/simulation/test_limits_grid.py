@@ -69,7 +69,7 @@ def _error(run: Run, finest: Run) -> float:
 @pytest.mark.parametrize("chain", CHAINS)
 @pytest.mark.parametrize("stimulus", STIMULI)
 def test_the_estimate_is_an_upper_bound(stimulus: str, chain: str) -> None:
-    """The picked grid keeps the accuracy, and its estimate covers the distance from a far finer one.
+    """The picked grid keeps the accuracy; its estimate covers the distance from a far finer one.
 
     The finer grid has 64 times the points, so its own error is some thousand times smaller.
     """

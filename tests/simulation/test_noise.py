@@ -12,6 +12,7 @@ from hypothesis import strategies as st
 from frontend_sim.analog.chain import Chain, chain_of
 from frontend_sim.analog.noise import BOLTZMANN, stationary_covariance
 from frontend_sim.analog.stages import Butterworth, RcLowpass
+from frontend_sim.converter.pattern import LookPattern
 from frontend_sim.simulation.noise import NoisePath
 
 T = 300.0
@@ -21,7 +22,7 @@ COUNT = 40_000
 def _noise(
     chain: Chain, rate: float, seed: int, count: int = COUNT
 ) -> np.ndarray[tuple[int], np.dtype[np.float64]]:
-    path = NoisePath.of(chain.noise_model(1.0), 1.0 / rate, seed)
+    path = NoisePath.of(chain.noise_model(1.0), LookPattern(0.0, rate), seed)
     _, values = path.advance(path.start(), 0, count)
     return np.asarray(values)
 
@@ -77,7 +78,7 @@ def test_the_first_conversion_is_stationary() -> None:
 def test_cuts_never_show(cut: int) -> None:
     """Bit for bit the same noise however conversions are cut into blocks."""
     chain = chain_of([RcLowpass(resistance=1e3, capacitance=1e-8)], T)
-    path = NoisePath.of(chain.noise_model(1.0), 1e-5, 11)
+    path = NoisePath.of(chain.noise_model(1.0), LookPattern(0.0, 1e5), 11)
     _, whole = path.advance(path.start(), 0, 3000)
     state, first = path.advance(path.start(), 0, cut)
     _, second = path.advance(state, cut, 3000)
@@ -90,3 +91,20 @@ def test_seeds_differ() -> None:
     one, same, other = (_noise(chain, 1e4, seed, 1000) for seed in (1, 1, 2))
     np.testing.assert_array_equal(one, same)
     assert abs(np.corrcoef(one, other)[0, 1]) < 0.15
+
+
+def test_an_integrator_gathers_noise_from_the_start_of_the_run() -> None:
+    """A resistor before an integrator: the noise begins at zero and its variance grows with time.
+
+    White noise of density e integrated with rate k has the variance k² e² t / 2.
+    """
+    from frontend_sim.analog.stages import PolesZeros
+
+    stages = [RcLowpass(resistance=1e6, capacitance=1e-12), PolesZeros(poles=(0.0,), gain=1e3)]  # type: ignore[arg-type]  # numbers become pairs
+    chain = chain_of(stages, T)
+    ends = [_noise(chain, 1e3, seed, 100)[[0, 99]] for seed in range(400)]
+    first, last = np.mean(np.square(ends), axis=0)
+    assert first == 0.0
+    density = 4.0 * BOLTZMANN * T * 1e6
+    # 400 runs: a standard error of sqrt(2/400) = 7 %.
+    assert abs(last / (1e6 * density * 0.099 / 2.0) - 1.0) < 3 * 0.071

@@ -107,7 +107,7 @@ def code_noise(codes: ArrayLike, adc: Adc, confidence: float = 0.95) -> Noise:
                 f"{np.count_nonzero(row == end)} of {len(row)} codes are the {name} one, {end}: "
                 "the noise is cut off there; move the level into the range"
             )
-    return noise_of(row, 2.0**adc.bits, confidence)
+    return noise_of(row, adc.full_scale_codes, confidence)
 
 
 def before_rounding(rms: float) -> float:
