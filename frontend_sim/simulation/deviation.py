@@ -149,12 +149,17 @@ class Deviation:
             # The input only bends there, which a piece may do at its ends.
             position = times * self.rate
             times = times[np.abs(position - np.rint(position)) > NEAR + 1e-13 * position]
-        if len(times) == 0:
-            return state.events, None
         near = slack(times, self.interval)
         sides = np.column_stack([times - near, times + near]).reshape(-1)
+        if self.events.answers:
+            # Not to lose sight of the deviations before, which are not kept for ever.
+            sides = np.append(ends[0], sides)
+        if len(sides) == 0:
+            return state.events, None
         events, values = self.events.advance(state.events, 2 * state.count, sides, before)
-        rows = np.array(self.place.both(values))
+        if len(times) == 0:
+            return events, None
+        rows = np.array(self.place.both(values))[:, len(sides) - 2 * len(times) :]
         return events, Jumps(times, rows[:, ::2], rows[:, 1::2])
 
     def _signal(

@@ -34,17 +34,18 @@ class Curve(Stage):
     """A curved sensor, y = exp(0.7 u) - 0.3 or another curve, with a tangent that is not one."""
 
     kind: Literal["curve"] = "curve"
-    square: bool = False
+    which: Literal["exp", "square", "both"] = "exp"
 
     def blocks(self) -> tuple[Block, ...]:
-        """Return some gain."""
-        return (gain_block(0.0 if self.square else 0.5),)
+        """Return some gain, which is no tangent of the curve."""
+        return (gain_block(0.5 if self.which == "exp" else 0.0),)
 
     def limiter(self) -> Limiter:
         """Return the curve."""
-        if self.square:
-            return StaticMap(range(1), 0.0, np.square)
-        return StaticMap(range(1), 0.5, _curve)
+        if self.which == "exp":
+            return StaticMap(range(1), 0.5, _curve)
+        square = self.which == "square"
+        return StaticMap(range(1), 0.0, np.square if square else lambda u: _curve(u) ** 2)
 
 
 def _curve(u: Any) -> Any:
@@ -141,11 +142,24 @@ def test_two_curves_with_a_delay_between(jumps: list[float]) -> None:
     """A jump passes through a curve, a delay that fits no grid, and a curve without a tangent."""
     delay = 3.3e-5
     drive = Lines.of(0.2, jumps, [2.0, -1.0])
-    chain = [Curve(), stages.TransportDelay(delay=delay), Curve(square=True), LOW_PASS]
+    chain = [Curve(), stages.TransportDelay(delay=delay), Curve(which="square"), LOW_PASS]
     levels = [float(_curve(u)) ** 2 for u in (0.2, 2.0, -1.0)]
     times = np.arange(COUNT) / RATE
     found = _run(chain, [drive], 40e3, times)
     np.testing.assert_allclose(found, _held(levels, jumps, times, delay), rtol=0, atol=1e-13)
+
+
+def test_jumps_long_apart_find_the_deviations_between() -> None:
+    """Two curves in a row are one curve, also at a jump long after the last one.
+
+    A high pass makes both of what jumps and what decays; 1.5 s are more points than are held.
+    """
+    drive = Lines.of(0.2, [1e-3, 1.50001], [2.0, -1.0])
+    high_pass = stages.RcHighpass(resistance=1e5, capacitance=1e-5)
+    times = np.arange(1600) / 1e3
+    one = _run([high_pass, Curve(which="both"), LOW_PASS], [drive], 200e3, times)
+    two = _run([high_pass, Curve(), Curve(which="square"), LOW_PASS], [drive], 200e3, times)
+    np.testing.assert_allclose(two, one, rtol=0, atol=1e-12)
 
 
 @pytest.mark.parametrize("rate", [1e4, 40e3, 33e3])
