@@ -1,4 +1,4 @@
-"""Ctrl-C, held back where it would do harm."""
+"""Ctrl-C and a scheduler's end of a run, held back where they would do harm."""
 
 from __future__ import annotations
 
@@ -8,23 +8,31 @@ from collections.abc import Iterator
 from contextlib import contextmanager
 from types import FrameType
 
+NUMBERS = tuple(
+    getattr(signal, name) for name in ("SIGINT", "SIGTERM", "SIGHUP") if hasattr(signal, name)
+)
+
 
 @contextmanager
 def uninterrupted() -> Iterator[None]:
-    """Hold back Ctrl-C until the body is through.
+    """Hold back signals that raise in Python until the body is through.
 
     HDF5 calls back into ``Sink``, and an exception there would be a write that fails. Python
-    raises KeyboardInterrupt in the main thread alone, so elsewhere nothing is to be done.
+    raises in the main thread alone, so elsewhere nothing is to be done; a signal without a
+    handler in Python ends the process at once and is left alone.
     """
-    before = signal.getsignal(signal.SIGINT)
-    if threading.current_thread() is not threading.main_thread() or not callable(before):
+    before = {number: signal.getsignal(number) for number in NUMBERS}
+    handled = {number: handler for number, handler in before.items() if callable(handler)}
+    if threading.current_thread() is not threading.main_thread() or not handled:
         yield
         return
     held: list[tuple[int, FrameType | None]] = []
-    signal.signal(signal.SIGINT, lambda number, frame: held.append((number, frame)))
+    for number in handled:
+        signal.signal(number, lambda number, frame: held.append((number, frame)))
     try:
         yield
     finally:
-        signal.signal(signal.SIGINT, before)
+        for number, handler in handled.items():
+            signal.signal(number, handler)
         if held:
-            before(*held[0])
+            handled[signal.Signals(held[0][0])](*held[0])

@@ -71,7 +71,7 @@ def main(arguments: Sequence[str] | None = None) -> int:
         return WRONG_INPUT
     except (KeyboardInterrupt, click.Abort, Interrupted):
         return _tell("interrupted; nothing half written is left", INTERRUPTED)
-    except BrokenPipeError:
+    except (BrokenPipeError, SystemExit):  # click turns the one into the other
         # The reader of a pipe went away, as `head` does; nothing is wrong and nothing is left.
         _forget_output()
         return HOLDS

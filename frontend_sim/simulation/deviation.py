@@ -149,17 +149,17 @@ class Deviation:
             # The input only bends there, which a piece may do at its ends.
             position = times * self.rate
             times = times[np.abs(position - np.rint(position)) > NEAR + 1e-13 * position]
-        near = slack(times, self.interval)
-        sides = np.column_stack([times - near, times + near]).reshape(-1)
+        apart = slack(times, self.interval)
+        sides = np.column_stack([times - apart, times + apart]).reshape(-1)
         if self.events.answers:
             # Not to lose sight of the deviations before, which are not kept for ever.
-            sides = np.append(ends[0], sides)
+            sides = np.append(sides, max(ends[1], float(np.max(sides, initial=0.0))))
         if len(sides) == 0:
             return state.events, None
         events, values = self.events.advance(state.events, 2 * state.count, sides, before)
         if len(times) == 0:
             return events, None
-        rows = np.array(self.place.both(values))[:, len(sides) - 2 * len(times) :]
+        rows = np.array(self.place.both(values))[:, : 2 * len(times)]
         return events, Jumps(times, rows[:, ::2], rows[:, 1::2])
 
     def _signal(

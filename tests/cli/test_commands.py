@@ -146,8 +146,8 @@ def test_a_scheduler_may_end_a_run(folder: Path) -> None:
     command = [sys.executable, "-m", "frontend_sim", "run", "long.toml"]
     with subprocess.Popen(command, stderr=subprocess.PIPE, text=True) as process:
         for _ in range(600):
-            if list(folder.glob(".frontend-sim-*")):
-                break
+            if any(file.stat().st_size > 1e6 for file in folder.glob(".frontend-sim-*")):
+                break  # it is writing by now, libraries are loaded
             time.sleep(0.1)
         process.terminate()
         _, message = process.communicate(timeout=60)

@@ -41,7 +41,8 @@ def _run(stimulus: dict[str, Any], grid_rate: float) -> Any:
             {
                 "stimulus": stimulus,
                 "chain": [{"kind": "butterworth", "order": 4, "corner": 900.0}],
-                "adc": {"rate": 5e3, "bits": 12, "low": -2.0, "high": 2.0},
+                # Not from t = 0 on, so that every conversion is a node of its own.
+                "adc": {"rate": 5e3, "bits": 12, "low": -2.0, "high": 2.0, "first": 1e-5},
                 "simulation": {"duration": 0.01, "grid_rate": grid_rate},
             }
         )

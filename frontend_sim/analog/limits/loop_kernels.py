@@ -39,7 +39,10 @@ def join(table: Any, count: int, whole: Any) -> None:
 
 @compiled()
 def demand(x: Any, u: float, c: Any, w_row: Any, rate: float, gain: float) -> tuple[float, float]:
-    """Return where the integrator stands at states x and input u, and the slope asked of it."""
+    """Return where the integrator stands at states x and input u, and the slope asked of it.
+
+    With a rate of -1 and no gain the second is the output.
+    """
     y, w = 0.0, 0.0
     for i in range(len(c)):
         y += c[i] * x[i]
@@ -89,23 +92,21 @@ def loop(
     Loops are written out rather than called: a call with arrays costs more than the whole piece.
     """
     n = len(c)
-    mode, known, count = int(state[1]), -1.0, 0
+    mode, known, share, count = int(state[1]), -1.0, 0.0, 0
     plain, following = state[2 : 2 + n].copy(), np.empty(n)
     beyond, moved = state[2 + n :].copy(), np.empty(n)
     x, after = np.empty(n), np.empty(n)
     whole, whole_held = np.zeros((n + 2, n + 2)), np.zeros((n + 1, n + 1))
+    x[:] = plain + beyond
+    w, y = demand(x, 0.0, c, w_row, -1.0, 0.0)
+    still = not np.any(beyond)
     for s in range(len(length)):
         dt = length[s]
         if dt != known:
-            known, count = dt, round(dt / unit)
+            known, share, count = dt, 1.0 / dt if dt > 0.0 else 0.0, round(dt / unit)
             join(free, count, whole)
             join(held, count, whole_held)
-        rise = (end[s] - begin[s]) / dt if dt > 0.0 else 0.0
-        y, w = 0.0, 0.0
-        for r in range(n):
-            x[r] = plain[r] + beyond[r]
-            y += c[r] * x[r]
-            w += w_row[r] * x[r]
+        rise = (end[s] - begin[s]) * share
         mode = mode_at(mode, w, rate * (gain * begin[s] - y), up, down, low, high)
         speed = up if mode == UP else -down if mode == DOWN else 0.0
         y, w = 0.0, 0.0
@@ -116,8 +117,9 @@ def loop(
             following[r] = total
             if mode == FREE:
                 total = beyond[r]
-                for k in range(n):
-                    total += whole[r, k] * beyond[k]
+                if not still:
+                    for k in range(n):
+                        total += whole[r, k] * beyond[k]
                 moved[r] = total
             else:
                 total = x[r] + whole_held[r, n] * speed
@@ -137,16 +139,15 @@ def loop(
                 mode, x, begin[s], rise, count, unit, free, held, c, w_row,
                 rate, gain, up, down, low, high, s, time, piece, since,
             )  # fmt: skip
-            y = 0.0
+            w, y = demand(x, 0.0, c, w_row, -1.0, 0.0)
             for r in range(n):
-                moved[r] = x[r] - following[r]
-                y += c[r] * x[r]
-        d, gone = 0.0, True
+                moved[r], after[r] = x[r] - following[r], x[r]
+        d, still = 0.0, True
         for r in range(n):
             d += c[r] * moved[r]
-            gone = gone and abs(moved[r]) < GONE
-            plain[r], beyond[r] = following[r], moved[r]
-        if gone:
+            still = still and abs(moved[r]) < GONE
+            plain[r], beyond[r], x[r] = following[r], moved[r], after[r]
+        if still:
             beyond[:] = 0.0
             d = 0.0
         elif mode != FREE:

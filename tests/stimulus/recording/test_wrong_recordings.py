@@ -82,7 +82,7 @@ CASES: list[Case] = [
     ("a.csv", "t,x\n0,1\n", {"time": "t"}, "single point with a time has no length"),
     ("a.csv", "t,x\n5,1\n5,2\n", {"time": "t", "timestamps": "uniform"}, "all .* equal"),
     ("a.csv", "t,x\n0,1\n2,2\n1,3\n", {"time": "t"}, "line 4: time goes back from 2 to 1"),
-    ("a.csv", "t,x\n0,1\n0,2\n1,3\n", {"time": "t"}, r"repeat .*\(line 3\); set dupl"),
+    ("a.csv", "t,x\n0,1\n0,2\n1,3\n", {"time": "t"}, r"1 point repeats .*\(line 3\); set dupl"),
     ("a.csv", "t,x\n0,1\n1,\n2,3\n", {"time": "t"}, r"1 of 3 .* no value \(line 3\); set missing"),
     ("a.csv", "t,x\n10:00:00,1\n10:61:xx,2\n", {"time": "t"}, "line 3, .*expected an instant"),
     ("a.csv", "t,x\n2030-01-01 10:00,1\n2030-13-01 10:00,2\n", {"time": "t"}, "line 3.*an instant"),
