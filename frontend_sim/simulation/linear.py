@@ -208,4 +208,10 @@ def _uniform(
     else:
         since = Exponential(chain, drive.between, step)
     stride = round(axis.interval * drive.rate)
-    return UniformPath.of(chain, drive, outputs, model, since, initial, stride)
+    even = (
+        axis.uniform
+        and outputs.delay == drive.origin == 0.0
+        and stride >= 1
+        and abs(axis.interval * drive.rate - stride) <= 4e-16 * stride
+    )
+    return UniformPath.of(chain, drive, outputs, model, since, initial, stride, even)

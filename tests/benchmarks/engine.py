@@ -72,7 +72,9 @@ def chain_rows(points: int, runs: int) -> list[Row]:
 
     def through(rate: float) -> Callable[[], None]:
         def work() -> None:
-            model = Linear.of(chain, [drive], [1], "settled", Axis(1.0 / rate, 2.0 / rate))
+            model = Linear.of(
+                chain, [drive], [1], "settled", Axis(1.0 / rate, 2.0 / rate, uniform=True)
+            )
             states = model.start()
             count = int(points / POINT_RATE * rate)
             for start in range(0, count, BLOCK):
