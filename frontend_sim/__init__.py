@@ -54,6 +54,7 @@ if TYPE_CHECKING:
         parse_scenario,
         scenario_text,
         spread_parts,
+        with_values,
     )
     from frontend_sim.simulation import GridReport, Run, RunBlock, Simulation, simulate
 
@@ -101,6 +102,7 @@ _HOME = {
     "scenario_text": "scenario",
     "simulate": "simulation",
     "spread_parts": "scenario",
+    "with_values": "scenario",
 }
 
 __all__ = [
@@ -147,6 +149,7 @@ __all__ = [
     "scenario_text",
     "simulate",
     "spread_parts",
+    "with_values",
 ]
 
 

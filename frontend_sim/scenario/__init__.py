@@ -3,10 +3,12 @@
 from frontend_sim.scenario.check import check_scenario, scenario_notes
 from frontend_sim.scenario.circuit import circuit_of, stages_of
 from frontend_sim.scenario.environment import Environment
+from frontend_sim.scenario.key import dimension_at, numeric_keys, value_at
 from frontend_sim.scenario.load import load_scenario, parse_scenario
 from frontend_sim.scenario.model import Scenario, SimulationSettings
 from frontend_sim.scenario.schema import json_schema
 from frontend_sim.scenario.spread import SpreadPart, spread_parts
+from frontend_sim.scenario.vary import with_values
 from frontend_sim.scenario.write import scenario_text
 
 __all__ = [
@@ -16,11 +18,15 @@ __all__ = [
     "SpreadPart",
     "check_scenario",
     "circuit_of",
+    "dimension_at",
     "json_schema",
     "load_scenario",
+    "numeric_keys",
     "parse_scenario",
     "scenario_notes",
     "scenario_text",
     "spread_parts",
     "stages_of",
+    "value_at",
+    "with_values",
 ]
