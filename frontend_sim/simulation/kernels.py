@@ -127,11 +127,21 @@ def weigh(points: Any, first: Any, count: Any, weights: Any, sums: Any) -> None:
     The newest point meets the last weight. Each sum runs over its own points alone, in one order,
     whatever the block around it.
     """
-    longest = weights.shape[1]
+    n, longest = weights.shape
+    fours = n // 4 * 4
     for k in range(len(count)):
         offset = longest - count[k]
         start = first[k]
-        for r in range(weights.shape[0]):
+        for r in range(0, fours, 4):
+            one, two, three, four = 0.0, 0.0, 0.0, 0.0
+            for i in range(count[k]):
+                u = points[start + i]
+                one += weights[r, offset + i] * u
+                two += weights[r + 1, offset + i] * u
+                three += weights[r + 2, offset + i] * u
+                four += weights[r + 3, offset + i] * u
+            sums[k, r], sums[k, r + 1], sums[k, r + 2], sums[k, r + 3] = one, two, three, four
+        for r in range(fours, n):
             total = 0.0
             for i in range(count[k]):
                 total += weights[r, offset + i] * points[start + i]
@@ -153,28 +163,6 @@ def recur(x: Any, powers: Any, stop: Any, which: Any, sums: Any, states: Any) ->
         for r in range(n):
             x[r] += work[r]
         states[k] = x
-
-
-@compiled()
-def recur_and_read(
-    x: Any, power: Any, stop: Any, sums: Any, u: Any, c: Any, feed: Any, y: Any
-) -> None:
-    """x += power x + sums[k]; y[i, k] = c[i] · x + feed[i] u[k]."""
-    n = len(x)
-    work = np.empty(n)
-    for k in range(len(u)):
-        for r in range(n):
-            total = sums[k, r]
-            for s in range(stop[r]):
-                total += power[r, s] * x[s]
-            work[r] = total
-        for r in range(n):
-            x[r] += work[r]
-        for i in range(len(feed)):
-            total = feed[i] * u[k]
-            for r in range(n):
-                total += c[i, r] * x[r]
-            y[i, k] = total
 
 
 @compiled()

@@ -14,6 +14,7 @@ from frontend_sim.analog.chain import Chain
 from frontend_sim.analog.discretize import DiscreteModel
 from frontend_sim.analog.exponential import power
 from frontend_sim.simulation import kernels
+from frontend_sim.simulation.lifted import LONGEST_ROW, Lifted, row_length
 from frontend_sim.simulation.path import Outputs, State
 from frontend_sim.simulation.resampled import Resampled
 from frontend_sim.simulation.since import SincePoint
@@ -28,9 +29,7 @@ MOST_POINTS = 1 << 22
 PRODUCT = 1 << 19
 """Most multiplications in one matrix product: small enough that a BLAS library never splits it
 over threads, so the number of threads never shows in the result."""
-ROW = 32
-"""Outputs in one row of the waveform's matrix product."""
-WAVEFORM_TILE = 256 * ROW
+WAVEFORM_TILE = 256 * LONGEST_ROW
 """Instants in one product where every point is an output. All tiles are powers of two up to this
 one, so blocks that start at its multiples never cut a tile."""
 
@@ -109,16 +108,17 @@ class UniformPath:
         source, whole = drive or self.drive, 0
         if drive is not None and isinstance(self.drive, Resampled):
             source = Resampled(drive, self.drive.times)
-        if self.even and number > 0 and number % self._tile == 0 and self.stride <= LONGEST_SUM:
-            whole = len(instants) // self._tile * self._tile
+        if self.on_points and number % self.tile == 0 and (number > 0 or self.settled):
+            whole = len(instants) // self.tile * self.tile
         if whole == 0:
             return self._located(state, source, number, instants)
         x, y = state.x.copy(), np.empty((len(self.outputs.d), len(instants)))
-        fill = self._every_point if self.stride == 1 else self._every_stride
-        for done in range(0, whole, self._tile):
+        if number == 0:  # settled, so the state is the same one stride before
+            x = self.initial - self.model.stop * source.initial
+        for done in range(0, whole, self.tile):
             node = (number + done - 1) * self.stride
-            points = source.points(node, node + self._tile * self.stride + 1)
-            fill(x, points, y[:, done : done + self._tile])
+            points = source.points(node, node + self.tile * self.stride + 1)
+            self.lifted.advance(x, points, y[:, done : done + self.tile])
         state = State(x, (number + whole - 1) * self.stride)
         if whole < len(instants):
             state, y[:, whole:] = self._located(state, source, number + whole, instants[whole:])
@@ -152,11 +152,16 @@ class UniformPath:
         stop = max(int(np.searchsorted(index, last, "right")), done + 1)
         if stop >= len(index):
             return len(index)
-        aligned = (number + stop) // self._tile * self._tile - number
+        aligned = (number + stop) // self.tile * self.tile - number
         return aligned if aligned > done else stop
 
+    @property
+    def on_points(self) -> bool:
+        """Whether instant k is point k · stride for certain, and a stride fits into one sum."""
+        return self.even and self.stride <= LONGEST_SUM
+
     @cached_property
-    def _tile(self) -> int:
+    def tile(self) -> int:
         """Number of instants in one matrix product, a power of two."""
         if self.stride == 1:
             return WAVEFORM_TILE
@@ -164,8 +169,11 @@ class UniformPath:
         return 1 << min(max(most, 1).bit_length() - 1, 10)
 
     @cached_property
-    def _rows(self) -> _EveryPoint:
-        return _EveryPoint.of(self.model.e, self.gamma, self.outputs, self._feed)
+    def lifted(self) -> Lifted:
+        """The outputs of a whole tile at every stride-th point."""
+        row = min(row_length(self.stride, len(self.outputs.d)), self.tile)
+        feed = np.asarray(self.outputs.d + self.outputs.c @ self.model.stop)
+        return Lifted.of(self.model.e, self.weights, self.outputs, feed, self.stride, row)
 
     @cached_property
     def _powers(self) -> dict[int, Real]:
@@ -186,16 +194,15 @@ class UniformPath:
         """
         at, before = 0, node
         while at < len(index):
-            stop = min((number + at) // self._tile * self._tile + self._tile - number, len(index))
+            stop = min((number + at) // self.tile * self.tile + self.tile - number, len(index))
             part = slice(at, stop)
             steady, on_points = False, False
-            if stop - at == self._tile and self.stride <= LONGEST_SUM:
+            if stop - at == self.tile and self.stride <= LONGEST_SUM:
                 steady, on_points = kernels.steady(index[part], since[part], before, self.stride)
             first = before - node
-            if steady and on_points and self.stride == 1:
-                self._every_point(x, points[first : first + self._tile + 1], y[:, part])
-            elif steady and on_points:
-                self._every_stride(x, points[first : index[stop - 1] - node + 1], y[:, part])
+            if on_points:
+                here = points[first : index[stop - 1] - node + 1]
+                self.lifted.advance(x, here, y[:, part])
             else:
                 count = np.diff(index[part], prepend=before)
                 states = self._states(x, points, first, count, steady)
@@ -250,71 +257,6 @@ class UniformPath:
         y = np.empty((len(self.outputs.d), len(here)))
         kernels.readout(states, u, self.outputs.c, self.outputs.d, y)
         return y
-
-    @cached_property
-    def _feed(self) -> Real:
-        """What the outputs see of u itself when they are written in x~, shape (p,)."""
-        return np.asarray(self.outputs.d + self.outputs.c @ self.model.stop)
-
-    @cached_property
-    def _static(self) -> frozenset[int]:
-        """Outputs that see no state, only u."""
-        return frozenset(np.flatnonzero(~np.any(self.outputs.c, axis=1)).tolist())
-
-    def _every_stride(self, x: Real, points: Real, y: Real) -> None:
-        """Fill in the outputs at every stride-th point, the first one stride after points[0]."""
-        sums = self._sums(points[:-1].reshape(-1, self.stride))
-        u = points[self.stride :: self.stride]
-        kernels.recur_and_read(
-            x, self._power(self.stride), self._reach, sums, u, self.outputs.c, self._feed, y
-        )
-
-    def _every_point(self, x: Real, points: Real, y: Real) -> None:
-        """Fill in the outputs at every point after points[0], in rows of ROW.
-
-        One product with the impulse response for each row; the newest point of a row is the first
-        of the next and is added apart.
-        """
-        matrices = self._rows
-        rows = points[:-1].reshape(-1, ROW)
-        states = np.empty((len(rows) + 1, len(x)))
-        states[0] = x
-        which = np.zeros(len(rows), np.int64)
-        sums = rows @ matrices.weights
-        kernels.recur(x, matrices.step[None], self._reach, which, sums, states[1:])
-        for i, feed in enumerate(self._feed):
-            if i in self._static:
-                np.multiply(points[1:], feed, out=y[i])
-                continue
-            part = y[i].reshape(-1, ROW)
-            np.matmul(rows, matrices.impulse[i], out=part)
-            part += states[:-1] @ matrices.decay[i]
-            part[:, -1] += feed * points[ROW::ROW]
-
-
-@dataclass(frozen=True, eq=False)
-class _EveryPoint:
-    """Matrices of one row of ROW outputs: from the row's points, and from x~ at its start."""
-
-    impulse: Real
-    decay: Real
-    weights: Real
-    step: Real
-
-    @classmethod
-    def of(cls, e: Real, gamma: Real, outputs: Outputs, feed: Real) -> _EveryPoint:
-        n, p = len(gamma), len(outputs.d)
-        powers = [power(e, i) for i in range(ROW + 1)]
-        impulse, decay = np.zeros((p, ROW, ROW)), np.empty((p, n, ROW))
-        for i in range(1, ROW + 1):
-            decay[:, :, i - 1] = outputs.c + outputs.c @ powers[i]
-            for j in range(i):
-                response = gamma + powers[i - 1 - j] @ gamma
-                impulse[:, j, i - 1] = outputs.c @ response
-            if i < ROW:
-                impulse[:, i, i - 1] += feed
-        weights = np.array([gamma + powers[ROW - 1 - j] @ gamma for j in range(ROW)])
-        return cls(impulse, decay, weights.reshape(ROW, n), powers[ROW])
 
 
 def _weights(e: Real, gamma: Real) -> Real:
