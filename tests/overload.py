@@ -34,6 +34,8 @@ class Machine:
     begin: Callable[[float, Any, Input], str]
     output: Callable[[Any], float]
     longest: float = 2e-5
+    again: Callable[[float, Any, Input], str] | None = None
+    """Tells the regime behind a way out that is called "again"."""
 
     def run(
         self, u: Input, state: Sequence[float], times: Real, jumps: Sequence[float] = ()
@@ -59,6 +61,8 @@ class Machine:
                     mode = next(
                         name for name, at in zip(names, solution.t_events, strict=True) if len(at)
                     )
+                    if mode.startswith("again") and self.again is not None:
+                        mode = self.again(t, s, part)
         return found
 
     def _solve(self, mode: str, u: Input, t: float, end: float, s: Real) -> Any:

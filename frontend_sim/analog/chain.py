@@ -23,6 +23,22 @@ ROOM_TEMPERATURE = 298.15
 
 
 @dataclass(frozen=True, eq=False)
+class Tap:
+    """One more point of the chain, inside a section: c x + d u of its states and its input.
+
+    Parameters
+    ----------
+    c : shape (n,), over the states of all blocks of the section;  d : direct part
+    delay : further pure delay of this point alone [s]
+    """
+
+    name: str
+    c: Real
+    d: float
+    delay: float = 0.0
+
+
+@dataclass(frozen=True, eq=False)
 class Section:
     """What one stage brings into the chain.
 
@@ -30,6 +46,7 @@ class Section:
     ----------
     delay : pure delay [s]
     offset : constant that the stage adds to its output
+    taps : further points, behind the section's own; only a section of one block has any
     """
 
     name: str
@@ -37,6 +54,7 @@ class Section:
     delay: float
     noise: tuple[NoiseInput, ...] = ()
     offset: float = 0.0
+    taps: tuple[Tap, ...] = ()
 
 
 @dataclass(frozen=True, eq=False)
@@ -260,6 +278,7 @@ def compose(sections: Sequence[Section]) -> Chain:
     rows = [(c.copy(), d, noise_d.copy(), delay, "stimulus")]
     at, source = 0, 0
     for part in sections:
+        entry, begin = (c.copy(), d, noise_d.copy()), at
         for number, block in enumerate(part.blocks):
             here = slice(at, at + block.order)
             a[here, :] = np.outer(block.b, c)
@@ -276,6 +295,10 @@ def compose(sections: Sequence[Section]) -> Chain:
         source += len(part.noise)
         delay += part.delay
         rows.append((c.copy(), d, noise_d.copy(), delay, part.name))
+        for tap in part.taps:
+            row = tap.d * entry[0]
+            row[begin:at] = tap.c
+            rows.append((row, tap.d * entry[1], tap.d * entry[2], delay + tap.delay, tap.name))
     c_rows, d_rows, noise_rows, delays, names = zip(*rows, strict=True)
     return Chain(
         tuple(sections),
@@ -295,6 +318,10 @@ def _offsets(sections: Sequence[Section]) -> Real:
     """Return what the constant sources of all stages add to each point, shape (p,)."""
     level, levels = 0.0, [0.0]
     for part in sections:
+        tapped = [0.0] * len(part.taps)
+        if level and part.taps:
+            rest = _rest_of(part.blocks[0], level, part.name)
+            tapped = [float(tap.c @ rest + tap.d * level) for tap in part.taps]
         for block in part.blocks:
             if level == 0.0:
                 break
@@ -306,5 +333,5 @@ def _offsets(sections: Sequence[Section]) -> Real:
                 )
             level *= float(block.response(np.zeros(1, dtype=np.complex128))[0].real)
         level += part.offset
-        levels.append(level)
+        levels += [level, *tapped]
     return np.array(levels)

@@ -78,7 +78,7 @@ class CutChain:
         points, passes = [0], True
         for position, stage in enumerate(stages, start=1):
             whole = section(stage, stage.label(position), temperature)
-            limiter = _limiter(stage, whole.name)
+            limiter = _limiter(stage, whole.name, temperature)
             if limiter is None:
                 sections.append(replace(whole, noise=()))
                 passes = passes and _feeds(whole)
@@ -87,11 +87,11 @@ class CutChain:
                 sections += [before, replaced, after]
                 entry = len(sections) - 2
                 passes = passes and _feeds(before)
-                gain, shift = _gain(replaced), _shift(replaced)
+                gain, shift = _gain(replaced), 0.0 if limiter.raised else _shift(replaced)
                 place = Place(limiter, whole.name, entry, entry + 1, gain, shift, passes)
                 places.append(place)
                 # A gain passes jumps on, one of zero too: the limiter may make its own of them.
-                passes = passes and gain is not None and _feeds(after)
+                passes = passes and (gain is not None or _feeds(replaced)) and _feeds(after)
             points.append(len(sections))
         return cls(compose(sections), tuple(places), tuple(points))
 
@@ -100,9 +100,9 @@ class CutChain:
         return compose([replace(part, offset=0.0) for part in self.chain.sections[place.exit :]])
 
 
-def _limiter(stage: Stage, name: str) -> Limiter | None:
+def _limiter(stage: Stage, name: str, temperature: float) -> Limiter | None:
     try:
-        return stage.limiter()
+        return stage.limiter(temperature)
     except ModelError as error:
         raise ModelError(f"stage {name!r}: {error}") from error
 

@@ -3,8 +3,9 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass
+from itertools import pairwise
 
 import numpy as np
 
@@ -18,8 +19,12 @@ from frontend_sim.simulation.uniform import WAVEFORM_TILE
 
 MARGIN = 1.25
 """The estimate is this much above the largest error seen in the trial."""
+SURE = 0.5
+"""Share of the last change that bounds the error where the order is seen to be the second."""
 MOST_TRIAL = 20_000_000
 """Grid points in one trial; a longer run is tried over its first part."""
+MOST_WORK = 60_000_000
+"""Grid points of all trials for limiters together, each limiter counted: some ten seconds."""
 MOST_GRID = 1_000_000_000
 """Grid points in a whole run that "auto" may ask for."""
 
@@ -142,36 +147,67 @@ class LimiterGrid:
 def pick_limiter_grid(models: Models, trials: Trials) -> LimiterGrid:
     """Return the coarsest grid for the limiters that is accurate enough.
 
-    The rate is doubled until the estimate stays below the accuracy. The error of a limiter falls
-    at least by half with half the step, so the change from one grid to the next bounds the error
-    of the finer one. Two changes in a row are asked, the older as if it had fallen by four, so that
-    two grids which agree by chance deceive nobody: the estimate is
-
-        MARGIN · max(change, last change / 4) + rounding.
+    Three grids at least are tried. The rate is doubled until the estimate of ``bound`` stays below
+    the accuracy, or until the grids tried have MOST_WORK points together: then the last of them is
+    taken, and a note says so.
 
     Raises
     ------
     ScenarioError
         If the accuracy is not reached with MOST_GRID points; the message tells how near it came.
     """
+    assert models.cut is not None
     start = first_multiple(models, trials.rate, MOST_TRIAL)
-    rate, estimate, last = start.rate, math.inf, math.inf
+    rate, estimate, work = start.rate, math.inf, 0.0
+    changes: list[float] = []
     rounding = ROUNDING * trials.span / trials.lsb
     before: Real | None = None
     while models.duration * rate <= MOST_GRID:
         count = trials.fitting(rate)
+        work += count / trials.rate * rate * len(models.cut.places)
+        if changes and work > MOST_WORK:
+            note = _stopped(trials, 0.5 * rate, estimate)
+            return LimiterGrid(0.5 * rate, estimate, None, (*start.notes, note))
         pin = trials.pin(models, Stepping(rate=rate), count)
         if before is not None:
             distance = Distance()
             distance.add(pin - before[: len(pin)])
-            estimate = MARGIN * max(distance.largest, 0.25 * last) + rounding
-            if estimate <= trials.accuracy:
+            changes.append(distance.largest)
+            estimate = bound(changes) + rounding
+            if estimate <= trials.accuracy and len(changes) > 1:
                 whole = distance if count == trials.count else None
                 return LimiterGrid(rate, estimate, whole, start.notes)
-            last = distance.largest
         before, rate = pin, 2.0 * rate
     raise ScenarioError(
         f"the limiters' grid cannot reach {trials.accuracy:g} LSB with {MOST_GRID:g} points: the "
         f"estimate is still {estimate:.3g} LSB; shorten simulation.duration, raise "
         "simulation.accuracy, or give simulation.grid_rate"
+    )
+
+
+def bound(changes: Sequence[float]) -> float:
+    """Return an upper bound of a grid's error from how halvings of the step changed the answer.
+
+    Errors fall by half at least with half the step, so that the last change bounds the error of the
+    last grid. Where events happen to meet the grid two grids may agree by chance, so a change
+    counts as a quarter of the one before at least. Where the last three changes each fell by about
+    a quarter the order is the second, and the error a third of the last change: SURE of it is
+    taken then.
+
+    Parameters
+    ----------
+    changes : largest differences from each grid to the next one, of half its step, any unit
+    """
+    change = changes[-1] if len(changes) == 1 else max(changes[-1], 0.25 * changes[-2])
+    falls = [after / before if before else 1.0 for before, after in pairwise(changes[-3:])]
+    second = len(falls) == 2 and all(0.2 < fall < 0.3 for fall in falls)
+    return MARGIN * change * (SURE if second else 1.0)
+
+
+def _stopped(trials: Trials, rate: float, estimate: float) -> str:
+    return (
+        f"the search for the limiters' grid stopped at {rate:g} points per second, after grids of "
+        f"{MOST_WORK:g} points together: the estimate of {estimate:.3g} LSB is still above "
+        f"simulation.accuracy, {trials.accuracy:g} LSB; give simulation.grid_rate to look closer, "
+        "shorten simulation.duration, or raise simulation.accuracy"
     )

@@ -108,6 +108,10 @@ class Limited:
         lag = delay + (ROW + 2) * max(axis.interval if axis.uniform else 0.0, 1.0 / rate)
         return cls(tuple(make.deviations), probe, rate, end, piece, delay, lag)
 
+    def before(self) -> Real:
+        """Return the points' values before t = 0, shape (points,)."""
+        return self.probe.before()
+
     def start(self) -> LimitedState:
         """Return the states at t = 0."""
         deviations = tuple(deviation.start() for deviation in self.deviations)

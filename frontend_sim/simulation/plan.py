@@ -7,7 +7,7 @@ from dataclasses import dataclass
 from frontend_sim.analog.discretize import warped_frequency
 from frontend_sim.errors import ScenarioError
 from frontend_sim.scenario.model import Scenario
-from frontend_sim.simulation.accuracy import Distance, Trials, pick_grid, pick_limiter_grid
+from frontend_sim.simulation.accuracy import SURE, Distance, Trials, pick_grid, pick_limiter_grid
 from frontend_sim.simulation.linear import GridMethod
 from frontend_sim.simulation.models import Models, Stepping
 from frontend_sim.simulation.run import GridReport
@@ -77,10 +77,14 @@ class Plan:
             )
             name, grid = str(method.method), method.rate
         elif rate is not None:
+            # The search has looked at whether its estimate is good enough, and told if it is not.
+            far = distance.largest > (COARSE if self.estimate is None else limit / SURE)
+            cure = 'raise simulation.grid_rate, or set it to "auto"'
+            if self.estimate is not None:
+                cure = "give a simulation.grid_rate above it"
             note = (
                 f"the limiters' grid of {rate:g} points per second is coarse: half as many points "
-                f"move the pin by up to {distance.largest:.3g} LSB; raise simulation.grid_rate, or "
-                'set it to "auto"'
+                f"move the pin by up to {distance.largest:.3g} LSB; {cure}"
             )
             name, grid, warping = "exact", rate, 0.0
         else:

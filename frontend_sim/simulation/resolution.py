@@ -76,12 +76,13 @@ def _content(drive: Drive) -> float:
 
 
 def _fastest_pole(models: Models) -> float:
-    """Return the fastest pole in front of the last limiter, or in a loop that may ring [rad/s]."""
+    """Return the fastest pole in front of the last limiter [rad/s].
+
+    A limiter follows its own transients after jumps itself, at any instant.
+    """
     assert models.cut is not None
-    last = models.cut.places[-1]
-    sections = models.cut.chain.sections
-    blocks = [block for part in sections[: last.entry] for block in part.blocks]
-    blocks += [block for block in sections[last.entry].blocks if block.order > 1]
+    sections = models.cut.chain.sections[: models.cut.places[-1].entry]
+    blocks = [block for part in sections for block in part.blocks]
     return float(np.max(np.abs(np.concatenate([*(block.poles for block in blocks), [0.0]]))))
 
 

@@ -41,7 +41,7 @@ class Curve(Stage):
         """Return some gain, which is no tangent of the curve."""
         return (gain_block(0.5 if self.which == "exp" else 0.0),)
 
-    def limiter(self) -> Limiter:
+    def limiter(self, temperature: float = 298.15) -> Limiter:
         """Return the curve."""
         if self.which == "exp":
             return StaticMap(range(1), 0.5, _curve)

@@ -8,7 +8,7 @@ import numpy as np
 import pytest
 
 from frontend_sim.scenario.model import Scenario
-from frontend_sim.simulation import Run, simulate
+from frontend_sim.simulation import Run, accuracy, resolution, simulate
 
 STIMULI: dict[str, dict[str, Any]] = {
     "sine": {"kind": "sine", "amplitude": 1.2, "frequency": 997.0, "offset": 0.9},
@@ -37,6 +37,17 @@ CHAINS: dict[str, list[dict[str, Any]]] = {
     ],
     "amplifier, AC-coupled": [
         AMPLIFIER, {"kind": "rc-highpass", "resistance": 1e4, "capacitance": 1e-7}
+    ],
+    "Sallen-Key that slews, filtered": [
+        {"kind": "sallen-key", "resistance_1": 12e3, "resistance_2": 15e3, "capacitance_1": 2.2e-9,
+         "capacitance_2": 1e-9, "gain_bandwidth": 1e6, "slew_rate": 8e3, "output_high": 1.9},
+        {"kind": "rc-lowpass", "resistance": 1e3, "capacitance": 4.7e-8},
+    ],
+    "multiple feedback at its rail": [
+        {"kind": "rc-lowpass", "resistance": 1e3, "capacitance": 1e-8},
+        {"kind": "multiple-feedback", "input_resistance": 12e3, "feedback_resistance": 15e3,
+         "middle_resistance": 8e3, "ground_capacitance": 2.2e-9, "feedback_capacitance": 1e-9,
+         "output_low": -1.4},
     ],
     "clamp": [
         {"kind": "clamp", "low": 0, "high": 1.5, "resistance": 1e3, "capacitance": 1e-8,
@@ -80,6 +91,57 @@ def test_the_estimate_is_an_upper_bound(stimulus: str, chain: str) -> None:
     finest = simulate(_scenario(stimulus, chain, grid_rate=64.0 * run.grid.grid_rate))
     assert _error(run, finest) <= run.grid.estimate <= 0.05
     assert not any("coarse" in note for note in run.notes)
+
+
+@pytest.mark.parametrize("chain", CHAINS)
+@pytest.mark.parametrize("stimulus", STIMULI)
+def test_the_picked_grid_is_not_much_finer_than_needed(
+    stimulus: str, chain: str, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    """A grid of an eighth of the points is not accurate enough, unless the search began there: what
+    is picked is at most four times the coarsest sufficient one.
+    """
+    begun: list[float] = []
+
+    def first(*given: Any) -> resolution.FirstGrid:
+        begun.append(resolution.first_multiple(*given).rate)
+        return resolution.first_multiple(*given)
+
+    monkeypatch.setattr(accuracy, "first_multiple", first)
+    run = simulate(_scenario(stimulus, chain))
+    assert run.grid is not None
+    coarse = run.grid.grid_rate / 8.0
+    assert run.grid.grid_rate >= 4.0 * begun[0]
+    if coarse >= begun[0]:
+        finest = simulate(_scenario(stimulus, chain, grid_rate=16.0 * run.grid.grid_rate))
+        found = simulate(_scenario(stimulus, chain, grid_rate=coarse))
+        assert _error(found, finest) > 0.05
+
+
+def test_the_search_is_bounded_and_tells_where_it_stopped(monkeypatch: pytest.MonkeyPatch) -> None:
+    """With room for three small grids the third is taken; number, bound and cure are told."""
+    monkeypatch.setattr(accuracy, "MOST_WORK", 1500)
+    run = simulate(_scenario("sine", "amplifier between filters", accuracy=1e-9))
+    assert run.grid is not None
+    assert run.grid.grid_rate == 80e3
+    (note,) = (note for note in run.notes if "search" in note)
+    assert "stopped at 80000 points per second, after grids of 1500 points together" in note
+    assert f"the estimate of {run.grid.estimate:.3g} LSB is still above" in note
+    assert "give simulation.grid_rate to look closer" in note
+
+
+@pytest.mark.parametrize("order", [1.0, 1.5, 2.0, 3.0])
+@pytest.mark.parametrize("start", [1.0, 1e-6])
+def test_the_bound_of_smooth_convergence(order: float, start: float) -> None:
+    """Where errors fall as h^order the bound lies above the error, by a factor of 20 at most."""
+    errors = start * 0.5 ** (order * np.arange(4))
+    changes = list(-np.diff(errors))
+    found = accuracy.bound(changes)
+    assert errors[3] < found < 20.0 * errors[3]
+    if order == 2.0:
+        assert found < 2.0 * errors[3]
+    # Two grids that agree by chance do not deceive it.
+    assert accuracy.bound([*changes, 0.0]) > 0.3 * changes[-1]
 
 
 def test_a_jump_costs_no_accuracy_where_the_closed_form_is_exact() -> None:

@@ -7,18 +7,18 @@ in the chain; the limiter tells by how much the true answer deviates from it.
 from __future__ import annotations
 
 from frontend_sim.analog.limits.amplifier import AmplifierLimits
+from frontend_sim.analog.limits.amplifier_loop import AmplifierLoop
 from frontend_sim.analog.limits.clipping import Clipping
 from frontend_sim.analog.limits.diodes import DiodeClamp
 from frontend_sim.analog.limits.follower import SlewFollower
 from frontend_sim.analog.limits.limiter import Limiter, Segments, Touched
-from frontend_sim.analog.limits.loop import HigherLoop
 from frontend_sim.analog.limits.static_map import StaticMap
 
 __all__ = [
     "AmplifierLimits",
+    "AmplifierLoop",
     "Clipping",
     "DiodeClamp",
-    "HigherLoop",
     "Limiter",
     "Segments",
     "SlewFollower",

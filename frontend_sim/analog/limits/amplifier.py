@@ -12,7 +12,6 @@ from frontend_sim.analog.block import Block, Real
 from frontend_sim.analog.limits.clipping import Clipping
 from frontend_sim.analog.limits.follower import NAMES, SlewFollower
 from frontend_sim.analog.limits.limiter import Limiter, Segments, Touched, continuous
-from frontend_sim.analog.limits.loop import HigherLoop
 from frontend_sim.errors import ModelError
 
 
@@ -74,32 +73,28 @@ class AmplifierLimits:
     def around(self, blocks: Sequence[Block]) -> Limiter | None:
         """Return the limiter for a stage with these blocks, None if nothing limits.
 
-        A block of first order is the closed loop itself, see ``ClosedLoop``; one of higher order is
-        read as an integrator and what follows it, see ``HigherLoop``. A gain is ideal: its output
-        follows as fast as the slew rate lets it. A block that is no such loop, since its input
-        feeds through to its output, keeps its linear answer, and its output is limited as that of
-        an ideal amplifier behind it.
+        A block of first order is the closed loop itself, see ``ClosedLoop``. A gain is ideal: its
+        output follows as fast as the slew rate lets it. Circuits of more than that are the matter
+        of ``AmplifierLoop``.
 
         Raises
         ------
         ModelError
-            If the block has a pole at the origin.
+            If the block has a pole at the origin, or is neither of the two.
         """
         if all(math.isinf(limit) for limit in (self.up, self.down, self.low, self.high)):
             return None
         at = range(len(blocks))[self.block]
-        block = blocks[at]
+        block, replaced = blocks[at], range(at, at + 1)
         if block.order == 1 and block.d == 0.0:
-            return self._closed_loop(block, range(at, at + 1))
-        gain, replaced = block.d, range(at, at + 1)
-        loop = HigherLoop.of(block, replaced, self.up, self.down, self.low, self.high)
-        if loop is not None:
-            return loop
+            return self._closed_loop(block, replaced)
         if block.order:
-            gain, replaced = 1.0, range(at + 1, at + 1)
+            raise ModelError(
+                f"limits stand for a gain or a single pole, not for a block of order {block.order}"
+            )
         if math.isinf(self.up) and math.isinf(self.down):
-            return Clipping(replaced, gain, self.low, self.high)
-        return SlewFollower(replaced, gain, self.up, self.down, self.low, self.high)
+            return Clipping(replaced, block.d, self.low, self.high)
+        return SlewFollower(replaced, block.d, self.up, self.down, self.low, self.high)
 
     def _closed_loop(self, block: Block, replaced: range) -> Limiter:
         rate = -float(block.a[0, 0])

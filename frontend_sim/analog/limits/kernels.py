@@ -10,6 +10,9 @@ from frontend_sim.compiled import compiled
 FREE, HIGH, LOW, UP, DOWN = -1, 0, 1, 2, 3
 """What limits: nothing, a rail or a diode, the slew rate; from 0 on, numbers of limits."""
 
+UNTOUCHED = -2
+"""The piece turned out to be free from its begin to its end."""
+
 GONE = 1e-40
 """A deviation below this is none [V]."""
 
@@ -70,6 +73,19 @@ def steepening(z: float, slope: float, rate: float, up: float, down: float) -> f
     return math.inf
 
 
+@compiled(inline="always")
+def left_over(mode: int, d: float, y: float, v: float, decay: float) -> float:
+    """Return the deviation y - v at the end of a piece, at whose begin it was d.
+
+    One that was free all along dies out by itself; in one that ends free, d was told before.
+    """
+    if mode == UNTOUCHED:
+        d *= decay
+    elif mode != FREE:
+        d = y - v
+    return 0.0 if abs(d) < GONE else d
+
+
 @compiled()
 def closed_loop(
     d: float, y: float, v: float, length: Any, begin: Any, end: Any, linear: Any, apart: Any,
@@ -124,20 +140,11 @@ def closed_loop(
             if mode == FREE:
                 d = y - relaxed(v, rate * (target - v), slope, rate, dt)
         v = linear[s]
-        if mode == UNTOUCHED:
-            d *= decay
-        elif mode != FREE:
-            d = y - v
-        if abs(d) < GONE:
-            d = 0.0
+        d = left_over(mode, d, y, v, decay)
         if mode < 0:
             y = min(max(v + d, low), high)
         deviation[s] = d
     return d, y
-
-
-UNTOUCHED = -2
-"""The piece turned out to be free from its begin to its end."""
 
 
 @compiled()
@@ -250,12 +257,7 @@ def clamp(
             if mode == FREE:
                 d = y - relaxed(v, rate * (first - v), slope, rate, dt)
         v = linear[s]
-        if mode == UNTOUCHED:
-            d *= decay
-        elif mode != FREE:
-            d = y - v
-        if abs(d) < GONE:
-            d = 0.0
+        d = left_over(mode, d, y, v, decay)
         if mode < 0:
             y = v + d
         deviation[s] = d

@@ -75,11 +75,13 @@ class Limiter(ABC):
     limits : what each limit is called in messages, after "at" ("its upper rail")
     bends : whether the output bends where a limit begins or ends. It is then computed anew at
         instants between the points of a grid; else lines between the points are good enough
+    raised : whether the limiter itself knows what constants make of the output of its stage
     """
 
     replaced: range
     limits: tuple[str, ...] = ()
     bends: bool = True
+    raised: bool = False
 
     @abstractmethod
     def start(self, u: float, v: float) -> Real:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from frontend_sim.analog.network.opened import DRIVE, Opened, Way, opened
 from frontend_sim.analog.network.parts import (
     GROUND,
     SIGNAL,
@@ -18,6 +19,7 @@ from frontend_sim.analog.network.parts import (
 from frontend_sim.analog.network.solution import Solution, solve
 
 __all__ = [
+    "DRIVE",
     "GROUND",
     "SIGNAL",
     "Amplifier",
@@ -27,8 +29,11 @@ __all__ = [
     "Inductor",
     "Injected",
     "OpenLoop",
+    "Opened",
     "Part",
     "Resistor",
     "Solution",
+    "Way",
+    "opened",
     "solve",
 ]

@@ -7,20 +7,24 @@ from collections.abc import Iterator, Sequence
 from fractions import Fraction
 from typing import ClassVar, Self
 
-from pydantic import Field, model_validator
+from pydantic import Field
 
-from frontend_sim.analog.limits import AmplifierLimits
+from frontend_sim.analog.limits import AmplifierLimits, AmplifierLoop, Limiter
 from frontend_sim.analog.network import (
     GROUND,
     Amplifier,
     Capacitor,
+    Circuit,
     Injected,
     OpenLoop,
     Part,
     Resistor,
     Solution,
+    opened,
+    solve,
 )
 from frontend_sim.analog.noise import NoiseInput
+from frontend_sim.analog.stages.loop_bandwidth import loop_bandwidth
 from frontend_sim.analog.stages.network_stage import NetworkStage
 from frontend_sim.errors import ModelError
 from frontend_sim.quantities import (
@@ -44,6 +48,9 @@ OUTPUT = "output"
 REFERENCE = "reference voltage"
 """Input of the circuit that a reference voltage holds."""
 
+AMPLIFIER = "the amplifier"
+"""Name of the amplifier at the output, the one that is limited."""
+
 INPUTS = ("noninverting", "inverting")
 """Names of the two inputs of an amplifier, in the order in which they are given."""
 
@@ -56,6 +63,16 @@ NEEDS = {
     "current_noise_corner": ("current_noise",),
 }
 """Keys that do nothing without one of some others."""
+
+IDEAL = (
+    "gain_bandwidth",
+    "open_loop_gain",
+    "second_pole",
+    "output_resistance",
+    "load_resistance",
+    "load_capacitance",
+)
+"""Keys without which the amplifier is ideal."""
 
 
 class AmplifierStage(NetworkStage):
@@ -144,25 +161,19 @@ class AmplifierStage(NetworkStage):
     def noise_gain(self) -> float:
         """Return the gain from the noninverting input at low frequency, ideal amplifier [1]."""
 
-    @model_validator(mode="after")
-    def _limits_need_a_loop_without_memory(self) -> Self:
-        limited = (self.slew_rate, self.output_low, self.output_high) != (None, None, None)
-        stores = [
-            name
-            for name in type(self).model_fields
-            if "capacitance" in name
-            and name != "load_capacitance"
-            and getattr(self, name) is not None
-        ]
-        if limited and stores:
-            raise ValueError(
-                "slew_rate and output rails are modelled for amplifiers with resistors alone "
-                f"around them, and here stands {stores[0]}: while the output is held, capacitors "
-                "go on charging, and the recovery depends on it. Leave the limits out; a "
-                "rail-limit or slew-limit stage behind shows where they would act, not how the "
-                "stage recovers"
-            )
-        return self
+    def noise_gain_times(self) -> tuple[float, float]:
+        """Return the time constants of zero and pole of the noise gain, see ``loop_bandwidth``."""
+        return 0.0, 0.0
+
+    def closed_loop_bandwidth(self) -> float | None:
+        """Return up to which frequency the loop has gain, None without ``gain_bandwidth`` [Hz]."""
+        if self.gain_bandwidth is None:
+            return None
+        return loop_bandwidth(self.gain_bandwidth, self.noise_gain(), *self.noise_gain_times())
+
+    def with_ideal_amplifier(self) -> Self:
+        """Return the same parts around an amplifier without poles, of infinite gain, unloaded."""
+        return self.model_copy(update=dict.fromkeys(IDEAL))
 
     def limits(self) -> AmplifierLimits:
         """Return slew rate and rails of the output.
@@ -173,6 +184,30 @@ class AmplifierStage(NetworkStage):
             If the rails are reversed.
         """
         return AmplifierLimits(self.slew_rate, self.output_low, self.output_high)
+
+    def limiter(self, temperature: float = REFERENCE_TEMPERATURE) -> Limiter | None:
+        """Return the limits of the amplifier in its circuit, see ``Stage``.
+
+        With resistors alone around an amplifier of one pole or none the closed loop has a closed
+        form; else the circuit is cut open at what the amplifier drives, see ``AmplifierLoop``.
+        """
+        limits = self.limits()
+        if limits == AmplifierLimits():
+            return None
+        circuit = self.circuit()
+        around = opened(circuit, AMPLIFIER)
+        if around.output is None and self.second_pole is None and not len(around.difference.c):
+            return limits.around(self.blocks())
+        output = self.offset(temperature)
+        drive = output if around.output is None else self._standing(around.drive, temperature)
+        within = (limits.up, limits.down, limits.low, limits.high)
+        return AmplifierLoop.of(around, self.open_loop(), within, (drive, output))
+
+    def _standing(self, node: str, temperature: float) -> float:
+        """Return where the constant inputs of the circuit let a node stand [V]."""
+        levels = solve(Circuit(self.circuit().parts, node)).levels
+        constants = self.constants(temperature)
+        return sum((levels[key] or 0.0) * value for key, value in constants.items() if value)
 
     def solution(self) -> Solution:
         """Return the linear model of the circuit; see ``NetworkStage``."""
@@ -231,6 +266,23 @@ class AmplifierStage(NetworkStage):
             total += level * value
         return total
 
+    def offset_spread(self, temperature: float) -> float:
+        """Return how far the output can lie to either side, see ``Stage.offset_spread``.
+
+        Offset voltages may have either sign, each amplifier its own; so may the bias current, of
+        which that of both inputs is one.
+        """
+        levels, amplifiers = (
+            self.solution().levels,
+            {part.name for part in self.circuit().parts if isinstance(part, Amplifier)},
+        )
+        own = AmplifierStage.constants(self, temperature)
+        sizes = {source: (levels[source] or 0.0) * value for source, value in own.items()}
+        voltages = sum(abs(size) for source, size in sizes.items() if source in amplifiers)
+        return voltages + abs(
+            sum(size for source, size in sizes.items() if source not in amplifiers)
+        )
+
     def constants(self, temperature: float) -> dict[str, float]:
         """Return the inputs of the circuit that are held constant, and at what [V or A]."""
         voltage = self.offset_voltage + self.offset_drift * (temperature - REFERENCE_TEMPERATURE)
@@ -251,7 +303,7 @@ class AmplifierStage(NetworkStage):
         senses: Sequence[tuple[str, float | Fraction]],
         inputs: Sequence[str | None],
         output: str = OUTPUT,
-        name: str = "the amplifier",
+        name: str = AMPLIFIER,
     ) -> list[Part]:
         """Return the parts of an amplifier: its gain, output resistance and input currents.
 

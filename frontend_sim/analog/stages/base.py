@@ -9,7 +9,9 @@ from pydantic import Field
 
 from frontend_sim.analog.block import Block
 from frontend_sim.analog.limits import AmplifierLimits, Limiter
+from frontend_sim.analog.network import Circuit
 from frontend_sim.analog.noise import NoiseInput
+from frontend_sim.quantities import REFERENCE_TEMPERATURE
 from frontend_sim.values import Value
 
 
@@ -58,12 +60,29 @@ class Stage(Value):
         """
         return 0.0
 
+    def offset_spread(self, temperature: float) -> float:
+        """Return how far offset voltages and bias currents of the sizes given, but of either sign,
+        can move the output to either side [unit of the output].
+        """
+        return 0.0
+
+    def resistance_at_rest(self) -> float | None:
+        """Return the resistance of the output against ground long after anything moved [ohm].
+
+        None for a stage that drives its output, or has no way to ground.
+        """
+        return None
+
+    def output_circuit(self) -> Circuit | None:
+        """Return the circuit that a load at the output sees; None for an ideal source."""
+        return None
+
     def limits(self) -> AmplifierLimits | None:
         """Return the limits of the amplifier in the stage; None if it has none."""
         return None
 
-    def limiter(self) -> Limiter | None:
-        """Return what is not linear in the stage; None if all of it is.
+    def limiter(self, temperature: float = REFERENCE_TEMPERATURE) -> Limiter | None:
+        """Return what is not linear in the stage at a temperature [K]; None if all of it is.
 
         The limiter stands for the blocks that it names in ``replaced``: those before them stand
         before it, those after them behind it. ``blocks()`` is the model of small signals.

@@ -12,7 +12,13 @@ from frontend_sim.analog.limits import Clipping, DiodeClamp, Limiter
 from frontend_sim.analog.noise import NoiseInput, thermal_density
 from frontend_sim.analog.stages.base import Stage
 from frontend_sim.analog.stages.rail_limit import levels, refuse_levels
-from frontend_sim.quantities import Capacitance, NotNegativeVoltage, Resistance, Voltage
+from frontend_sim.quantities import (
+    REFERENCE_TEMPERATURE,
+    Capacitance,
+    NotNegativeVoltage,
+    Resistance,
+    Voltage,
+)
 
 NAMES = ("its upper clamp", "its lower clamp")
 
@@ -71,7 +77,7 @@ class Clamp(Stage):
         rate = self._rate()
         return (gain_block(1.0) if rate is None else first_order(-rate, (0.0, rate)),)
 
-    def limiter(self) -> Limiter:
+    def limiter(self, temperature: float = REFERENCE_TEMPERATURE) -> Limiter:
         """Return the diodes."""
         low, high = levels(self.low, self.high)
         low, high = low - self.lower_forward_voltage, high + self.upper_forward_voltage

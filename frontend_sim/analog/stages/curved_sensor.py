@@ -13,6 +13,7 @@ from frontend_sim.analog.limits import Limiter
 from frontend_sim.analog.limits.sensor_curve import SensorCurve
 from frontend_sim.analog.stages.base import Stage
 from frontend_sim.errors import ModelError
+from frontend_sim.quantities import REFERENCE_TEMPERATURE
 
 
 class CurvedSensor(Stage):
@@ -74,7 +75,7 @@ class CurvedSensor(Stage):
         """Return the tangent at the operating point."""
         return (gain_block(self.slope()),)
 
-    def limiter(self) -> Limiter:
+    def limiter(self, temperature: float = REFERENCE_TEMPERATURE) -> Limiter:
         """Return the curve, which stands for the tangent."""
         return SensorCurve(range(1), self.slope(), self.output, *self.ends())
 

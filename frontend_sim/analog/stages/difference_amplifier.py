@@ -8,6 +8,7 @@ from pydantic import Field
 
 from frontend_sim.analog.network import SIGNAL, Capacitor, Circuit, Held, Resistor
 from frontend_sim.analog.stages.amplifier_stage import OUTPUT, REFERENCE, AmplifierStage
+from frontend_sim.analog.stages.loop_bandwidth import feedback_times
 from frontend_sim.quantities import Capacitance, Resistance, Voltage
 
 COMMON_MODE = "common-mode voltage"
@@ -54,6 +55,11 @@ class DifferenceAmplifier(AmplifierStage):
     def noise_gain(self) -> float:
         """Return the gain from the noninverting input [1]."""
         return 1.0 + self.feedback_resistance / self.input_resistance
+
+    def noise_gain_times(self) -> tuple[float, float]:
+        """Return zero and pole that ``feedback_capacitance`` makes [s]."""
+        resistances = self.feedback_resistance, self.input_resistance
+        return feedback_times(*resistances, self.feedback_capacitance)
 
     def constants(self, temperature: float) -> dict[str, float]:
         """Return the constant inputs of the circuit, see ``AmplifierStage``."""

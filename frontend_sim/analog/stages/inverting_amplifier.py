@@ -9,6 +9,7 @@ from pydantic import Field
 
 from frontend_sim.analog.network import SIGNAL, Capacitor, Circuit, Held, Part, Resistor
 from frontend_sim.analog.stages.amplifier_stage import OUTPUT, REFERENCE, AmplifierStage
+from frontend_sim.analog.stages.loop_bandwidth import feedback_times
 from frontend_sim.quantities import Capacitance, Ratio, Resistance, Voltage
 
 
@@ -71,6 +72,13 @@ class InvertingAmplifier(AmplifierStage):
     def noise_gain(self) -> float:
         """Return the gain from the noninverting input [1]."""
         return 1.0 - self.closed_loop_gain()
+
+    def noise_gain_times(self) -> tuple[float, float]:
+        """Return zero and pole that ``feedback_capacitance`` makes [s]."""
+        if self.feedback_resistance is None or self.input_resistance is None:
+            return 0.0, 0.0
+        resistances = self.feedback_resistance, self.input_resistance
+        return feedback_times(*resistances, self.feedback_capacitance)
 
     def constants(self, temperature: float) -> dict[str, float]:
         """Return the constant inputs of the circuit, see ``AmplifierStage``."""

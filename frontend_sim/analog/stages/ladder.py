@@ -14,6 +14,7 @@ from frontend_sim.analog.network import (
     Capacitor,
     Circuit,
     Held,
+    Injected,
     Part,
     Resistor,
     solve,
@@ -21,6 +22,9 @@ from frontend_sim.analog.network import (
 from frontend_sim.analog.stages.ladder_element import LadderElement
 from frontend_sim.analog.stages.network_stage import NetworkStage
 from frontend_sim.quantities import Capacitance, Resistance
+
+PROBE = "probing current"
+"""Input of the circuit by which the resistance of its output is found."""
 
 
 class Ladder(NetworkStage):
@@ -103,6 +107,12 @@ class Ladder(NetworkStage):
         if self.load_capacitance is not None:
             parts.append(Capacitor(node, GROUND, self.load_capacitance))
         return Circuit(tuple(parts), node)
+
+    def resistance_at_rest(self) -> float | None:
+        """Return what a constant current into the output would raise it by, per ampere [ohm]."""
+        circuit = self.circuit()
+        probed = Circuit((*circuit.parts, Injected(circuit.output, PROBE)), circuit.output)
+        return solve(probed).levels[PROBE]
 
     def buffered(self) -> tuple[Block, ...]:
         """Return the blocks of the ladder's sections, each as if a buffer stood behind it.

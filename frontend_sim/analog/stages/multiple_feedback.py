@@ -71,10 +71,33 @@ class MultipleFeedback(ActiveFilter):
         super().check()
 
     def noise_gain(self) -> float:
-        """Return the gain from the noninverting input at low frequency [1]."""
-        if self.response == "low-pass":
+        """Return the largest gain from the noninverting input that the section asks for [1].
+
+        Of a low pass at low frequency, 1 + R2/R1; of a band pass at its centre, where the gain is
+        -R3 C2 / (R1 (C1 + C2)), 1 + (1/R1 + 1/R2) R3 C2 / (C1 + C2) = 1 + Q² (C1 + C2) / C1.
+        """
+        if self.middle_capacitance is None:
             return 1.0 + self.feedback_resistance / self.input_resistance
-        return 1.0
+        c1, c2 = self.feedback_capacitance, self.middle_capacitance
+        return 1.0 + self._input_conductance() * self.feedback_resistance * (c2 / (c1 + c2))
+
+    def closed_loop_bandwidth(self) -> float | None:
+        """Return up to which frequency the loop has gain, see ``AmplifierStage`` [Hz].
+
+        Away from its centre a band pass asks for a noise gain of one only.
+        """
+        return (
+            super().closed_loop_bandwidth()
+            if self.middle_capacitance is None
+            else (self.gain_bandwidth)
+        )
+
+    def _input_conductance(self) -> float:
+        """Return 1/R1 + 1/R2 of a band pass [S]."""
+        conductance = 1.0 / self.input_resistance
+        if self.ground_resistance is not None:
+            conductance += 1.0 / self.ground_resistance
+        return conductance
 
     @property
     def nominal_corner(self) -> float:
@@ -97,9 +120,7 @@ class MultipleFeedback(ActiveFilter):
     def _natural(self) -> float:
         """Return w0 [rad/s]."""
         if self.middle_capacitance is not None:
-            conductance = 1.0 / self.input_resistance
-            if self.ground_resistance is not None:
-                conductance += 1.0 / self.ground_resistance
+            conductance = self._input_conductance()
             return math.sqrt(conductance / self.feedback_resistance) / math.sqrt(
                 self.feedback_capacitance * self.middle_capacitance
             )

@@ -33,6 +33,10 @@ class NetworkStage(Stage):
     def circuit(self) -> Circuit:
         """Return the parts and how they are joined."""
 
+    def output_circuit(self) -> Circuit:
+        """Return the stage's own circuit."""
+        return self.circuit()
+
     def solution(self) -> Solution:
         """Return the linear model of the circuit.
 

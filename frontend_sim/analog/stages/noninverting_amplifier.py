@@ -9,6 +9,7 @@ from pydantic import Field
 
 from frontend_sim.analog.network import GROUND, SIGNAL, Capacitor, Circuit, Held, Part, Resistor
 from frontend_sim.analog.stages.amplifier_stage import OUTPUT, AmplifierStage
+from frontend_sim.analog.stages.loop_bandwidth import feedback_times
 from frontend_sim.quantities import Capacitance, Ratio, Resistance
 
 
@@ -66,6 +67,13 @@ class NoninvertingAmplifier(AmplifierStage):
     def noise_gain(self) -> float:
         """Return the gain from the noninverting input, which is the gain of the stage [1]."""
         return self.closed_loop_gain()
+
+    def noise_gain_times(self) -> tuple[float, float]:
+        """Return zero and pole that ``feedback_capacitance`` makes [s]."""
+        if self.feedback_resistance is None or self.ground_resistance is None:
+            return 0.0, 0.0
+        resistances = self.feedback_resistance, self.ground_resistance
+        return feedback_times(*resistances, self.feedback_capacitance)
 
     def circuit(self) -> Circuit:
         """Return the amplifier with its feedback divider."""

@@ -13,6 +13,7 @@ from frontend_sim.analog.limits.variable_pole import VariablePole
 from frontend_sim.analog.noise import NoiseInput, thermal_density
 from frontend_sim.analog.stages.curved_sensor import CurvedSensor
 from frontend_sim.quantities import (
+    REFERENCE_TEMPERATURE,
     Capacitance,
     NotNegativeResistance,
     PartVoltage,
@@ -108,10 +109,10 @@ class Potentiometer(CurvedSensor):
         rate = float(self.rate(np.array(self.operating_position)))
         return (first_order(-rate, (0.0, self.slope() * rate)),)
 
-    def limiter(self) -> Limiter:
+    def limiter(self, temperature: float = REFERENCE_TEMPERATURE) -> Limiter:
         """Return the curve, and the pole that moves with the position."""
         if self.load_capacitance is None:
-            return super().limiter()
+            return super().limiter(temperature)
         return VariablePole(range(1), self.rate, self.output, *self.ends())
 
     def noise(self, temperature: float) -> tuple[NoiseInput, ...]:

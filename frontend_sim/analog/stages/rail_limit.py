@@ -10,7 +10,7 @@ from pydantic import Field, model_validator
 from frontend_sim.analog.block import Block, gain_block
 from frontend_sim.analog.limits import Clipping, Limiter
 from frontend_sim.analog.stages.base import Stage
-from frontend_sim.quantities import Voltage
+from frontend_sim.quantities import REFERENCE_TEMPERATURE, Voltage
 
 
 class RailLimit(Stage):
@@ -33,7 +33,7 @@ class RailLimit(Stage):
         """Return a gain of one, the model while no rail is touched."""
         return (gain_block(1.0),)
 
-    def limiter(self) -> Limiter:
+    def limiter(self, temperature: float = REFERENCE_TEMPERATURE) -> Limiter:
         """Return the two rails."""
         return Clipping(range(1), 1.0, *levels(self.low, self.high))
 

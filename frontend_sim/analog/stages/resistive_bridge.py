@@ -17,6 +17,7 @@ from frontend_sim.quantities import (
     PartVoltage,
     Ratio,
     SignalSpan,
+    Time,
 )
 
 
@@ -50,7 +51,13 @@ class ResistiveBridge(Stage):
     ratiometric: bool = Field(
         default=False,
         description="true where the converter takes its reference from the excitation, so that "
-        "both spread together; a nominal run is the same",
+        "both spread together; environment.supply then moves the excitation, and a nominal run "
+        "without one is the same",
+    )
+    excitation_time_constant: Time = Field(
+        default=0.0,
+        description="R times C of the filter between environment.supply and the bridge; 0, or left "
+        "out, there is none",
     )
 
     def units(self) -> tuple[str, str]:

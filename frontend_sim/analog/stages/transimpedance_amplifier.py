@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from typing import Literal
 
 from pydantic import Field
@@ -17,6 +18,7 @@ from frontend_sim.analog.network import (
     Resistor,
 )
 from frontend_sim.analog.stages.amplifier_stage import OUTPUT, REFERENCE, AmplifierStage
+from frontend_sim.analog.stages.loop_bandwidth import feedback_times
 from frontend_sim.quantities import Capacitance, Resistance, Voltage
 
 
@@ -52,11 +54,31 @@ class TransimpedanceAmplifier(AmplifierStage):
         """Return amperes in, volts out."""
         return ("A", "V")
 
+    def check(self) -> None:
+        """Raise ValueError if an ideal amplifier would differentiate, see ``NetworkStage``."""
+        if (
+            self.input_capacitance is not None
+            and self.feedback_capacitance is None
+            and self.open_loop().ideal
+        ):
+            raise ValueError(
+                "input_capacitance at the input of an ideal amplifier makes its noise gain grow "
+                "without bound; give gain_bandwidth, or feedback_capacitance, or leave "
+                "input_capacitance out"
+            )
+        super().check()
+
     def noise_gain(self) -> float:
         """Return the gain from the noninverting input at low frequency [1]."""
         if self.shunt_resistance is None:
             return 1.0
         return 1.0 + self.feedback_resistance / self.shunt_resistance
+
+    def noise_gain_times(self) -> tuple[float, float]:
+        """Return the zero that the input's capacitance makes, and the pole of the feedback [s]."""
+        shunt = math.inf if self.shunt_resistance is None else self.shunt_resistance
+        across, at_input = self.feedback_capacitance, self.input_capacitance
+        return feedback_times(self.feedback_resistance, shunt, across, at_input)
 
     def constants(self, temperature: float) -> dict[str, float]:
         """Return the constant inputs of the circuit, see ``AmplifierStage``."""

@@ -18,16 +18,6 @@ from frontend_sim.analog.stages.active_filter import (
 from frontend_sim.analog.stages.amplifier_stage import OUTPUT
 from frontend_sim.quantities import Capacitance, Fraction, Resistance
 
-IDEAL = (
-    "gain_bandwidth",
-    "open_loop_gain",
-    "second_pole",
-    "output_resistance",
-    "load_resistance",
-    "load_capacitance",
-)
-"""Keys without which the amplifier is ideal."""
-
 
 class TwinTNotch(ActiveFilter):
     """Twin-T notch behind a buffer, its foot at ground or driven with a share k of the output.
@@ -58,6 +48,17 @@ class TwinTNotch(ActiveFilter):
         default=0.0, description="share k of the output that drives the foot, below 1; 0: ground"
     )
 
+    def check(self) -> None:
+        """Raise ValueError if the foot's amplifier would stand at a rail, see ``NetworkStage``."""
+        super().check()
+        within = self.limits()
+        if self.feedback > 0.0 and not within.low <= 0.0 <= within.high:
+            raise ValueError(
+                f"output_low {within.low:g} V and output_high {within.high:g} V leave 0 V out: the "
+                "amplifier of the foot gives a share of the output and would stand at its own "
+                "rail; give rails on both sides of 0 V, or take feedback out"
+            )
+
     def noise_gain(self) -> float:
         """Return one, the gain of the buffers."""
         return 1.0
@@ -67,12 +68,12 @@ class TwinTNotch(ActiveFilter):
         """Frequency of the notch with ideal amplifiers [Hz]."""
         r = math.sqrt(self.resistance_1 * self.resistance_2)
         c = math.sqrt(self.capacitance_1 * self.capacitance_2)
-        return self._notch_of(self._ideal(), 1.0 / (2.0 * math.pi * r * c))
+        return self._notch_of(self.with_ideal_amplifier(), 1.0 / (2.0 * math.pi * r * c))
 
     @property
     def nominal_quality_factor(self) -> float:
         """Quality factor with ideal amplifiers [1]."""
-        poles = self._ideal().solution().block.poles.tolist()
+        poles = self.with_ideal_amplifier().solution().block.poles.tolist()
         return quality_factor_of(*nearest_pair(poles, self.nominal_corner))
 
     @property
@@ -85,9 +86,6 @@ class TwinTNotch(ActiveFilter):
         """What is left of the signal at the notch, |H| there [1]."""
         s = np.array(2j * math.pi * self.notch_frequency)
         return float(abs(self.solution().block.response(s)))
-
-    def _ideal(self) -> TwinTNotch:
-        return self.model_copy(update=dict.fromkeys(IDEAL))
 
     def _notch_of(self, stage: TwinTNotch, near: float) -> float:
         return corner_of(*nearest_pair(stage.solution().block.zeros.tolist(), near))

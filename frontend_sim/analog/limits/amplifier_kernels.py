@@ -1,0 +1,309 @@
+"""The compiled steps of ``AmplifierLoop``."""
+
+from __future__ import annotations
+
+import math
+from typing import Any
+
+import numpy as np
+
+from frontend_sim.analog.limits.kernels import (
+    DOWN,
+    FREE,
+    HIGH,
+    LOW,
+    MOST_EVENTS,
+    UNTOUCHED,
+    UP,
+)
+from frontend_sim.compiled import compiled
+
+EDGE = 1e-9
+"""Share of a slew rate by which its end is later than its begin, so that the two never meet."""
+
+NEAR = 1e-11
+"""An output this near to where it is driven, or to a rail, is there [V, and share of itself]."""
+
+GONE = 1e-20
+"""A deviation of all states below this is none [V]."""
+
+EACH = 8
+"""Steps of one length after a jump or an event, before they are doubled."""
+
+
+@compiled(inline="always")
+def valid(
+    mode: int, static: bool, w: float, gap: float, slope: float,
+    up: float, down: float, low: float, high: float,
+) -> bool:  # fmt: skip
+    """Tell whether a mode still holds, at w with a gap to where it is driven, and a slope asked."""
+    near = NEAR * (1.0 + abs(w))
+    if mode == FREE:
+        return w <= high + 0.5 * near and w >= low - 0.5 * near and -down <= slope <= up
+    if static:
+        if mode in (UP, HIGH):
+            return gap >= -0.5 * near and (mode == HIGH or w <= high)
+        return gap <= 0.5 * near and (mode == LOW or w >= low)
+    if mode == UP:
+        return slope >= up * (1.0 - EDGE) and w <= high
+    if mode == DOWN:
+        return slope <= -down * (1.0 - EDGE) and w >= low
+    return slope >= 0.0 if mode == HIGH else slope <= 0.0
+
+
+@compiled(inline="always")
+def mode_at(
+    mode: int, static: bool, w: float, gap: float, slope: float,
+    up: float, down: float, low: float, high: float,
+) -> tuple[int, float]:  # fmt: skip
+    """Return what limits from here on, given what limited up to here, and w."""
+    near = NEAR * (1.0 + abs(w))
+    if static and math.isinf(up):
+        w, gap = min(max(w + gap, low), high), w + gap
+        if gap > high or (gap == high and slope > 0.0):
+            return HIGH, high
+        if gap < low or (gap == low and slope < 0.0):
+            return LOW, low
+        return FREE, w
+    if static and gap > near:
+        return (HIGH, high) if w >= high - near else (UP, w)
+    if static and gap < -near:
+        return (LOW, low) if w <= low + near else (DOWN, w)
+    if static:
+        w += gap
+    if slope > 0.0 and w >= high - (near if mode != LOW else 0.0):
+        return HIGH, high
+    if slope < 0.0 and w <= low + (near if mode != HIGH else 0.0):
+        return LOW, low
+    if slope >= up * (1.0 - 0.5 * EDGE):
+        return UP, w
+    if slope <= -down * (1.0 - 0.5 * EDGE):
+        return DOWN, w
+    return FREE, w
+
+
+@compiled()
+def join(table: Any, count: int, whole: Any) -> None:
+    """whole = the step over ``count`` smallest steps, less the identity."""
+    whole[:] = 0.0
+    level = 0
+    while count > 0:
+        if count & 1:
+            e = table[level]
+            whole[:] += e + e @ whole
+        count >>= 1
+        level += 1
+
+
+@compiled()
+def loop(
+    dims: Any, state: Any, length: Any, begin: Any, end: Any, linear: Any, standing: float,
+    jumps: Any, unit: float, first: int, free: Any, held: Any,
+    asked: Any, target: Any, static: bool, output: Any,
+    up: float, down: float, low: float, high: float,
+    deviation: Any, begun: Any, time: Any, piece: Any, since: Any,
+) -> None:  # fmt: skip
+    """Advance state = [d, mode, u, x_lin, x - x_lin] over pieces; deviation[s] = y - linear[s].
+
+    ``dims`` is a tuple as long as x, so that the loops over x are compiled for its length. They are
+    written out rather than called: a call with arrays costs more than the whole piece.
+    """
+    n = len(dims)
+    d, mode, last = state[0], int(state[1]), state[2]
+    plain, following = state[3 : 3 + n].copy(), np.empty(n)
+    beyond, moved = state[3 + n :].copy(), np.zeros(n)
+    x, after = plain + beyond, np.empty(n)
+    whole, whole_held = np.zeros((n + 2, n + 2)), np.zeros((n + 3, n + 3))
+    still = not np.any(beyond)
+    known, share, count, jump = -1.0, 0.0, 0, 0
+    slope, gap = 0.0, 0.0
+    for s in range(len(length)):
+        dt, u, ahead = length[s], begin[s], end[s]
+        if dt != known:
+            known, share, count = dt, 1.0 / dt if dt > 0.0 else 0.0, round(dt / unit)
+            join(free, count, whole)
+            join(held, count, whole_held)
+        rise = (ahead - u) * share
+        jumped = jump < len(jumps) and jumps[jump] == s
+        w = x[n - 1]
+        if static or jumped or u != last or s == 0:
+            slope, gap = asked[n] * u + asked[n + 1] * rise, 0.0
+            for k in range(n):
+                slope += asked[k] * x[k]
+        if static:
+            goal, plain_goal = target[n] * u, target[n] * u
+            for k in range(n):
+                goal += target[k] * x[k]
+                plain_goal += target[k] * plain[k]
+            plain[n - 1] = plain_goal
+            gap = goal - w
+            if mode == FREE and not jumped:
+                w, gap = goal, 0.0
+        mode, w = mode_at(mode, static, w, gap, slope, up, down, low, high)
+        if jumped:
+            if static:
+                d += output[n - 1] * ((w - x[n - 1]) - target[n] * (u - last))
+                begun[jump] = d
+            jump += 1
+        x[n - 1] = w
+        if static and not still:
+            beyond[n - 1] = w - plain[n - 1]
+        speed = up if mode == UP else -down if mode == DOWN else 0.0
+        if mode == FREE:
+            for r in range(n):
+                total = plain[r] + whole[r, n] * u + whole[r, n + 1] * rise
+                for k in range(n):
+                    total += whole[r, k] * plain[k]
+                following[r] = total
+                if not still:
+                    total = beyond[r]
+                    for k in range(n):
+                        total += whole[r, k] * beyond[k]
+                    moved[r] = total
+                    total += following[r]
+                after[r] = total
+        else:
+            for r in range(n):
+                total = plain[r] + whole[r, n] * u + whole[r, n + 1] * rise
+                for k in range(n):
+                    total += whole[r, k] * plain[k]
+                following[r] = total
+                total = x[r] + whole_held[r, n] * u + whole_held[r, n + 1] * rise
+                total += whole_held[r, n + 2] * speed
+                for k in range(n):
+                    total += whole_held[r, k] * x[k]
+                moved[r] = total - following[r]
+                after[r] = total
+        slope = asked[n] * ahead + asked[n + 1] * rise
+        for k in range(n):
+            slope += asked[k] * after[k]
+        w, gap = after[n - 1], 0.0
+        if static:
+            gap = target[n] * ahead - w
+            for k in range(n):
+                gap += target[k] * after[k]
+        holds = valid(mode, static, w, gap, slope, up, down, low, high)
+        if jumped or not holds:
+            for r in range(n):
+                after[r] = x[r]
+            passed = through(
+                mode, after, u, rise, count, unit, first, free, held, asked, target, static,
+                up, down, low, high, s, time, piece, since,
+            )  # fmt: skip
+            if passed == UNTOUCHED:
+                for r in range(n):
+                    after[r] = following[r] + moved[r]
+            else:
+                mode, still = passed, False
+                slope = asked[n] * ahead
+                for r in range(n):
+                    moved[r] = after[r] - following[r]
+                    slope += asked[r] * after[r]
+        elif mode >= 0:
+            time[mode] += dt
+            if piece[mode] < 0:
+                piece[mode], since[mode] = s, 0.0
+        last = ahead
+        if mode == FREE:
+            d = 0.0
+            if not still:
+                still = True
+                for r in range(n):
+                    d += output[r] * moved[r]
+                    still = still and abs(moved[r]) < GONE
+                if still:
+                    d = 0.0
+                    for r in range(n):
+                        moved[r] = 0.0
+        else:
+            still = False
+            d = output[n] * ahead + standing - linear[s]
+            for r in range(n):
+                d += output[r] * after[r]
+        for r in range(n):
+            plain[r], beyond[r], x[r] = following[r], moved[r], after[r]
+        deviation[s] = d
+    state[0], state[1], state[2] = d, mode, last
+    state[3 : 3 + n] = plain
+    state[3 + n :] = beyond
+
+
+@compiled()
+def through(
+    mode: int, x: Any, u: float, rise: float, count: int, unit: float, first: int,
+    free: Any, held: Any, asked: Any, target: Any, static: bool,
+    up: float, down: float, low: float, high: float,
+    s: int, time: Any, piece: Any, since: Any,
+) -> int:  # fmt: skip
+    """Go through the events of one piece; x is advanced in place, and what limits is returned.
+
+    After its begin and after every event, steps are short at first, a share of the fastest time
+    constant, and are doubled as the transient dies out: none is missed between the ends of the
+    piece. The end of a mode lies in the first step behind which it does not hold any more; there
+    it is found by bisection.
+    """
+    n = len(x)
+    done, events, level, taken, halving = 0, 0, first, 0, False
+    z, out, failed = np.zeros(n + 3), np.empty(n + 3), np.empty(n + 3)
+    failed_gap, failed_slope = 0.0, 0.0
+    z[:n] = x
+    untouched = mode == FREE
+    while done < count:
+        while done + (1 << level) > count:
+            level -= 1
+            taken = 0
+        size = n + 2 if mode == FREE else n + 3
+        table = free if mode == FREE else held
+        z[n], z[n + 1] = u + rise * (done * unit), rise
+        z[n + 2] = up if mode == UP else -down if mode == DOWN else 0.0
+        step = 1 << level
+        for r in range(n):
+            total = z[r]
+            for k in range(size):
+                total += table[level, r, k] * z[k]
+            out[r] = total
+        there = u + rise * ((done + step) * unit)
+        slope, goal = asked[n] * there + asked[n + 1] * rise, target[n] * there
+        for k in range(n):
+            slope += asked[k] * out[k]
+            goal += target[k] * out[k]
+        gap = goal - out[n - 1] if static else 0.0
+        holds = events >= MOST_EVENTS or valid(
+            mode, static, out[n - 1], gap, slope, up, down, low, high
+        )
+        if holds:
+            for r in range(n):
+                z[r] = out[r]
+            done += step
+        else:
+            for r in range(n):
+                failed[r] = out[r]
+            failed_gap, failed_slope = gap, slope
+        # The mode ends within the step that failed: each half of it is taken if it holds.
+        halving = halving or not holds
+        ends = halving and level == 0
+        passed = step if holds else 0
+        if ends:
+            # The last of it is taken in any case, so that time goes on.
+            done += 1
+            passed += 1
+            for r in range(n):
+                z[r] = failed[r]
+        if mode >= 0 and passed > 0:
+            time[mode] += passed * unit
+            if piece[mode] < 0:
+                piece[mode], since[mode] = s, (done - passed) * unit
+        if ends:
+            w = z[n - 1]
+            mode, w = mode_at(mode, static, w, failed_gap, failed_slope, up, down, low, high)
+            z[n - 1] = w
+            untouched, events, level, taken, halving = False, events + 1, first, 0, False
+        elif halving:
+            level -= 1
+        else:
+            taken += 1
+            if taken >= EACH and level < len(free) - 1:
+                level, taken = level + 1, 0
+    for r in range(n):
+        x[r] = z[r]
+    return UNTOUCHED if untouched else mode
