@@ -10,8 +10,9 @@ from pydantic import Field, model_validator
 from frontend_sim.converter.averaging import Averaging
 from frontend_sim.converter.base import MOST_JITTER, CodeFormat, Converter, Rounding
 from frontend_sim.converter.dither import Dither
+from frontend_sim.converter.input_network import InputNetwork
 from frontend_sim.converter.pattern import LookPattern
-from frontend_sim.quantities import REFERENCE_TEMPERATURE, Frequency
+from frontend_sim.quantities import REFERENCE_TEMPERATURE, TIME, Frequency, as_text
 from frontend_sim.values import OPTIONAL_KIND, Value
 
 if TYPE_CHECKING:
@@ -21,6 +22,10 @@ __all__ = ["MOST_JITTER", "Adc", "CodeFormat", "Rounding"]
 
 MOST_RESULT_BITS = 32
 """Bits of the widest averaged result."""
+
+
+MOST_DEVIATIONS = 12.0
+"""Standard deviations of jitter and of wander that an acquisition leaves room for."""
 
 
 class _Rate(Value):
@@ -42,6 +47,12 @@ class Adc(Converter, _Rate):
     )
     dither: Dither | None = Field(
         default=None, description="noise added before the quantizer; left out, none"
+    )
+
+    input: InputNetwork | None = Field(
+        default=None,
+        description="switch and sampling capacitor at the pin; left out, the converter sees the "
+        "pin itself and does not load it",
     )
 
     @model_validator(mode="after")
@@ -79,6 +90,24 @@ class Adc(Converter, _Rate):
     def _instants_keep_their_order(self) -> Self:
         averaging = self.averaging
         self._refuse_disorder("the conversion period" if averaging is None else "the interval")
+        return self
+
+    @model_validator(mode="after")
+    def _acquisition_fits(self) -> Self:
+        if self.input is None:
+            return self
+        closest = self.pattern.closest
+        # Two neighbours may each be off by several standard deviations.
+        moved = MOST_DEVIATIONS * self.aperture_jitter
+        if self.wander is not None:
+            moved += MOST_DEVIATIONS * self.wander.change(closest)
+        if not self.input.acquisition_time < closest - moved:
+            less = f", less {as_text(moved, TIME, 3)} for jitter and wander" if moved else ""
+            raise ValueError(
+                f"input.acquisition_time {as_text(self.input.acquisition_time, TIME, 6)} must be "
+                f"shorter than the interval between conversions, {as_text(closest, TIME, 6)}{less}"
+                ": the switch opens before it closes again; shorten it, or lower the rate"
+            )
         return self
 
     @property

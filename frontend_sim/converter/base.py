@@ -143,6 +143,12 @@ class Converter(Value):
     def last_look(self, code: int) -> int:
         """Return the number of the look that completes a code, numbers from 0."""
 
+    def code_count(self, duration: float) -> int:
+        """Return the number of codes whose last look is nominally within [0, duration) [s]."""
+        from frontend_sim.converter.clock import even_count
+
+        return even_count(self, duration)
+
     @abstractmethod
     def digitizer(self, seed: int, temperature: float = REFERENCE_TEMPERATURE) -> Digitizer:
         """Return the converter ready to run.

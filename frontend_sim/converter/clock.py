@@ -28,9 +28,29 @@ def conversion_count(adc: Converter, duration: float) -> int:
 
     For a converter without averaging these are all k with first + k/rate below the duration.
     """
+    return adc.code_count(duration)
+
+
+def even_count(adc: Converter, duration: float) -> int:
+    """Return the same for a converter whose codes are evenly spaced."""
     position = (duration - first_code_instant(adc)) * adc.true_rate
     whole = max(abs(position), duration * adc.true_rate, 1.0)
     return max(math.ceil(position - 4.0 * np.finfo(np.float64).eps * whole), 0)
+
+
+def uneven_count(adc: Converter, duration: float) -> int:
+    """Return the same for a converter whose codes are not evenly spaced."""
+
+    def instant(code: int) -> float:
+        return float(adc.pattern.at(np.array([adc.last_look(code)]))[0])
+
+    limit = duration - 4.0 * np.finfo(np.float64).eps * max(duration, abs(adc.pattern.first))
+    count = max(int((duration - instant(0)) * adc.true_rate), 0)
+    while count > 0 and instant(count - 1) >= limit:
+        count -= 1
+    while instant(count) < limit:
+        count += 1
+    return count
 
 
 def look_count(adc: Converter, codes: int) -> int:

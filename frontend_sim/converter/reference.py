@@ -6,7 +6,7 @@ from typing import Annotated, Self
 
 import numpy as np
 from numpy.typing import NDArray
-from pydantic import Field, model_validator
+from pydantic import Field, StrictBool, model_validator
 
 from frontend_sim.converter.gauss_markov import gauss_markov
 from frontend_sim.converter.pattern import LookPattern
@@ -57,6 +57,11 @@ class Reference(Value):
         default=0.0,
         description="R times C of the filter in front of the reference pin: noise is correlated "
         "over that time; 0, or left out, it is white from one look at the input to the next",
+    )
+    ratiometric: StrictBool = Field(
+        default=False,
+        description="true where the reference is environment.supply, behind the same filter; its "
+        "own error, drift and noise come on top",
     )
 
     @model_validator(mode="after")

@@ -110,9 +110,15 @@ class Known:
     Parameters
     ----------
     values : at every instant of the axis from number 0, shape (K,)
+    past : before t = 0
     """
 
     values: Real
+    past: float = 0.0
+
+    def before(self) -> Real:
+        """Return the value before t = 0, shape (1,)."""
+        return np.array([self.past])
 
     def start(self) -> None:
         """Return nothing: there is no state."""

@@ -4,42 +4,46 @@ from __future__ import annotations
 
 import math
 from collections.abc import Callable, Iterator, Sequence
-from dataclasses import dataclass
+from dataclasses import replace
 
 import numpy as np
 
 from frontend_sim.analog.chain import Chain
 from frontend_sim.analog.cut import CutChain
 from frontend_sim.converter import clock
-from frontend_sim.converter.digitizer import Converted
 from frontend_sim.errors import ScenarioError
 from frontend_sim.randomness import stream
+from frontend_sim.scenario.amplifier_notes import amplifier_notes
 from frontend_sim.scenario.check import scenario_notes
 from frontend_sim.scenario.circuit import circuit_of, stages_of
 from frontend_sim.scenario.model import Scenario
-from frontend_sim.simulation.accuracy import Distance, Trials
+from frontend_sim.scenario.rules import conversions_fault
+from frontend_sim.scenario.signal import PIN
+from frontend_sim.simulation.accuracy import Trials
+from frontend_sim.simulation.arriving import Arriving
 from frontend_sim.simulation.kernels import Real
 from frontend_sim.simulation.limited import Limited
 from frontend_sim.simulation.linear import Axis
 from frontend_sim.simulation.models import Model, Models
 from frontend_sim.simulation.noise import NoisePath
 from frontend_sim.simulation.plan import Plan
+from frontend_sim.simulation.ratiometric import SharedReference, excited
 from frontend_sim.simulation.run import GridReport, Run, RunBlock
+from frontend_sim.simulation.steps import PinSteps, StimulusSteps, WaveformSteps, block_of
+from frontend_sim.simulation.switched import InputSignals, SwitchedInput, switched_input
+from frontend_sim.simulation.switched_steps import HeldSteps, capacitor_noise
 from frontend_sim.simulation.uniform import WAVEFORM_TILE
 from frontend_sim.stimulus.drive import Drive
 
 BLOCK = 8 * WAVEFORM_TILE
 """Instants in one block, a multiple of every tile, so that blocks never show in a result."""
 
+NOISE_AT_A_LIMIT = (
+    "the noise in the codes is that of the linear circuit, also while an output was at a limit, "
+    "where the real circuit passes less of it, or other noise"
+)
+
 Progress = Callable[[float], None]
-
-
-@dataclass(frozen=True, eq=False)
-class _Axis:
-    """A uniform row of instants and the points of the chain that are read there."""
-
-    model: Model
-    count: int
 
 
 class Simulation:
@@ -53,6 +57,8 @@ class Simulation:
     Attributes
     ----------
     chain : the composed continuous model
+    sampler : the converter's input network behind it; None where it has none
+    noise_path : noise of the circuit at the conversions; None where there is none
     count : number of conversions
     duration : [s]
     notes : what was decided on the way; complete after the last block
@@ -74,11 +80,9 @@ class Simulation:
         self.drives: tuple[Drive, ...] = scenario.stimulus.drives(stream(scenario.seed, "stimulus"))
         self.duration = _duration(scenario)
         self.count = clock.conversion_count(scenario.adc, self.duration)
-        if self.count == 0:
-            raise ScenarioError(
-                f"no conversion falls into the run: the first one is at {scenario.adc.first:g} s, "
-                f"the run lasts {self.duration:g} s; lengthen simulation.duration"
-            )
+        fault = conversions_fault(scenario.adc, self.duration)
+        if fault is not None:
+            raise ScenarioError(fault)
         self.notes: tuple[str, ...] = scenario.stimulus.notes()
         temperature = scenario.environment.temperature
         self._digitizer = scenario.adc.digitizer(scenario.seed, temperature)
@@ -87,61 +91,116 @@ class Simulation:
         self._pin = [len(self.chain.points) - 1]
         cut = CutChain.of(stages_of(scenario), scenario.environment.temperature)
         initial = scenario.simulation.initial
-        self._models = Models.of(self.chain, cut, self.drives, initial, self.duration)
-        self._plan = Plan.of(scenario, self._models, self._trials())
+        drives = excited(scenario, self.drives)
+        self._models = Models.of(self.chain, cut, drives, initial, self.duration)
+        self._shared = SharedReference.of(scenario)
+        self.sampler: SwitchedInput | None = switched_input(scenario)
+        self._plan = Plan.of(scenario, *self._trials())
         if all(stage.limiter() is None for stage in stages_of(scenario)):
             self.notes += scenario_notes(scenario)
+        self.notes += amplifier_notes(scenario, stages_of(scenario))
         self.notes += self._plan.notes
-        self._noise = self._noise_path()
+        self.notes += self.sampler.notes if self.sampler is not None else ()
+        self.noise_path = self._noise_path()
+        self._known: Model | None = None
 
     def blocks(self, progress: Progress | None = None) -> Iterator[RunBlock]:
         """Run, and return conversions and waveform block by block, in order of time.
 
         ``progress`` is called with the share that is done, from 0 to 1.
         """
-        adc, digitizer = self.scenario.adc, self._digitizer
-        axis, plan = self._look_axis(), self._plan
-        model = self._models.model(self._pin, axis, plan.stepping)
-        states = model.start()
-        reference = None
-        if plan.reference is not None:
-            reference = self._models.model(self._pin, axis, plan.reference)
-        reference_states = reference.start() if reference else None
-        distance = Distance()
-        waveform = self._waveform_axis()
-        waveform_states = waveform.model.start() if waveform else None
-        waveform_done = 0
-        noise = self._noise
+        adc, digitizer, axis = self.scenario.adc, self._digitizer, self.look_axis()
+        steps, waveform = self.pin_steps(axis), self.waveform_steps()
+        noise, arriving = self.noise_path, self.stimulus_steps(axis)
+        sampler, held = self.held_steps(axis), np.empty(0)
         noise_state = noise.start() if noise else np.empty(0)
         conversion, looks, done = digitizer.start(), clock.look_count(adc, self.count), 0
         for start in range(0, looks, self._block):
             stop = min(start + self._block, looks)
             instants = digitizer.instants(start, stop)
-            states, (pin,) = model.advance(states, start, instants)
-            if reference is not None:
-                reference_states, (true,) = reference.advance(reference_states, start, instants)
-                distance.add((pin - true) / adc.lsb)
+            pin = steps.advance(start, instants)
             added = None
             if noise is not None:
                 noise_state, added = noise.advance(noise_state, start, stop)
+            if sampler is not None:
+                held = sampler.advance(start, instants)
+                added = sampler.added(start, held, pin, added)
+            if self._shared is not None:
+                added = self._shared.added(instants, pin, added)
             conversion, converted = digitizer.convert(conversion, start, instants, pin, added)
-            yield self._block_of(converted)
+            block = block_of(converted, arriving, waveform)
+            if sampler is not None:
+                block = replace(block, held=sampler.of_codes(start, held, converted))
+            yield block
             done = converted.start + len(converted.codes)
             if waveform is not None:
-                until = self._waveform_until(waveform.count, float(instants[-1]), stop == looks)
-                while waveform_done < until:
-                    upto = min(waveform_done + self._block, until)
-                    times = np.arange(waveform_done, upto, dtype=np.float64) / self._waveform_rate
-                    waveform_states, values = waveform.model.advance(
-                        waveform_states, waveform_done, times
-                    )
-                    yield self._kept(done, times, values)
-                    waveform_done = upto
+                yield from waveform.until(float(instants[-1]), done, stop == looks)
             if progress is not None:
                 progress(stop / looks)
-        if isinstance(model, Limited):
-            self.notes += model.notes(states)
-        self.grid, note = plan.report(self.scenario, distance)
+        self.finish(steps)
+
+    def pin_steps(self, axis: Axis) -> PinSteps:
+        """Return the converter's pin, to be advanced through instants on an axis."""
+        model = self._known or self.pin_model(axis)
+        reference = None
+        if self._plan.reference is not None:
+            reference = self._models.model(self._pin, axis, self._plan.reference)
+        return PinSteps(model, reference, self.scenario.adc.lsb)
+
+    def pin_model(self, axis: Axis) -> Model:
+        """Return the converter's pin as a function of time, for instants on an axis."""
+        return self._models.model(self._pin, axis, self._plan.stepping)
+
+    def know_pin(self, known: Model) -> None:
+        """Take the pin at the converter's looks from somewhere else, see ``together``."""
+        self._known = known
+
+    def look_instants(self) -> Real:
+        """Return the instants of all looks of the converter, shape (K,) [s]."""
+        return self._digitizer.instants(0, clock.look_count(self.scenario.adc, self.count))
+
+    def held_steps(self, axis: Axis) -> HeldSteps | None:
+        """Return what the sampling capacitor holds, to be advanced beside the pin."""
+        if self.sampler is None:
+            return None
+        settings, values = self.scenario.simulation, self.sampler.values
+        noise = 0.0
+        if settings.noise and values.noise:
+            temperature = self.scenario.environment.temperature
+            noise = capacitor_noise(values.sampling_capacitance, temperature)
+        signals = self.input_signals(self.sampler, axis)
+        return HeldSteps(self.sampler, signals, settings.initial, noise, self.scenario.seed)
+
+    def input_signals(self, sampler: SwitchedInput, axis: Axis) -> InputSignals:
+        """Return what the signal alone does at an input network, to be advanced on an axis."""
+        return sampler.signals(self._models, axis, self._plan.stepping)
+
+    def stimulus_steps(self, axis: Axis) -> StimulusSteps | None:
+        """Return what arrives at a sensor, to be advanced beside the conversions."""
+        if self.scenario.stimulus_unit == PIN:
+            return None
+        return StimulusSteps(Arriving.of(self.drives, self.scenario.adc, axis))
+
+    def waveform_steps(self) -> WaveformSteps | None:
+        """Return the waveforms that are kept, to be advanced beside the conversions."""
+        rate = self.scenario.simulation.waveform_rate
+        if rate is None:
+            return None
+        interval = 1.0 / rate
+        axis = Axis(interval, 2.0 * interval, uniform=True)
+        model = self._models.model(self._waveform_points, axis, self._plan.stepping)
+        names = tuple(self.chain.points[point] for point in self._waveform_points)
+        count = max(math.ceil(self.duration * rate - 1e-9), 1)
+        return WaveformSteps(model, rate, count, names, self._block)
+
+    def finish(self, steps: PinSteps) -> None:
+        """Take in what is known after the last step: notes, and how good the grid was."""
+        if isinstance(steps.model, Limited):
+            touched = steps.model.notes(steps.states)
+            self.notes += touched
+            if touched and self.noise_path is not None:
+                self.notes += (NOISE_AT_A_LIMIT,)
+        self.grid, note = self._plan.report(self.scenario, steps.distance)
         self.notes += (note,) if note else ()
 
     def values(self, points: Sequence[str], instants: Real) -> Real:
@@ -162,14 +221,19 @@ class Simulation:
         _, found = model.advance(model.start(), 0, instants)
         return found
 
-    def _look_axis(self) -> Axis:
-        """Return the axis of the converter's looks; whether they are number · interval exactly."""
+    def look_axis(self) -> Axis:
+        """Return the axis of the converter's looks, and whether they are an even row."""
         adc, digitizer = self.scenario.adc, self._digitizer
         even = adc.pattern.widest == adc.pattern.closest and adc.wander is None
-        at_once = adc.first == adc.aperture_delay == adc.aperture_jitter == 0.0
-        return Axis(digitizer.interval, digitizer.longest, uniform=even and at_once)
+        uniform = even and adc.aperture_jitter == 0.0
+        origin = adc.first + adc.aperture_delay
+        return Axis(digitizer.interval, digitizer.longest, uniform, origin)
 
-    def _trials(self) -> Trials:
+    def _trials(self) -> tuple[Models, Trials]:
+        """Return what trials of grids are made of: of the pin, or of what samples it."""
+        models, points = self._models, self._pin
+        if self.sampler is not None:
+            models, points = self.sampler.extended(models), [len(self.chain.points)]
         adc, digitizer = self.scenario.adc, self._digitizer
         scale = (
             adc.pattern.look_rate,
@@ -178,11 +242,7 @@ class Simulation:
             self.scenario.simulation.accuracy,
         )
         looks = clock.look_count(adc, self.count)
-        return Trials(*scale, looks, self._pin, self._look_axis(), digitizer.instants)
-
-    @property
-    def _waveform_rate(self) -> float:
-        return self.scenario.simulation.waveform_rate or 0.0
+        return models, Trials(*scale, looks, points, self.look_axis(), digitizer.instants)
 
     @property
     def _waveform_points(self) -> list[int]:
@@ -190,25 +250,13 @@ class Simulation:
         names = self.chain.points
         return list(range(len(names))) if wanted is None else [names.index(name) for name in wanted]
 
-    def _waveform_axis(self) -> _Axis | None:
-        if self._waveform_rate == 0.0:
-            return None
-        interval = 1.0 / self._waveform_rate
-        axis = Axis(interval, 2.0 * interval, uniform=True)
-        model = self._models.model(self._waveform_points, axis, self._plan.stepping)
-        return _Axis(model, max(math.ceil(self.duration * self._waveform_rate - 1e-9), 1))
-
-    def _waveform_until(self, count: int, time: float, whole: bool) -> int:
-        """Return how far the waveform goes until a time, at a multiple of tiles."""
-        if whole:
-            return count
-        return min(int(time * self._waveform_rate) // WAVEFORM_TILE * WAVEFORM_TILE, count)
-
     def _noise_path(self) -> NoisePath | None:
         """Return the noise of the circuit at the conversions, if it has any and it is wanted."""
         if not self.scenario.simulation.noise:
             return None
-        model = self.chain.noise_model(0.1 / self.duration)
+        # Noise reaches the sampling capacitor as through a switch that is closed for ever.
+        chain = self.chain if self.sampler is None else self.sampler.chain(self.chain)
+        model = chain.noise_model(0.1 / self.duration)
         if model.unbounded:
             self.notes += (
                 "nothing limits the bandwidth of these noise sources before the converter, so the "
@@ -218,22 +266,6 @@ class Simulation:
         if not model.names or len(model.a) == 0:  # without states no noise is left
             return None
         return NoisePath.of(model, self.scenario.adc.pattern, self.scenario.seed)
-
-    def _block_of(self, part: Converted) -> RunBlock:
-        codes = (part.codes, part.voltage, part.overrange)
-        return RunBlock(part.start, part.time, part.pin, *codes, np.empty(0), self._named())
-
-    def _kept(self, start: int, times: Real, values: Real) -> RunBlock:
-        none, codes = np.empty(0), np.empty(0, np.int64)
-        flags = np.empty(0, np.bool_)
-        return RunBlock(start, none, none, codes, none, flags, times, self._named(values))
-
-    def _named(self, values: Real | None = None) -> dict[str, Real]:
-        if self._waveform_rate == 0.0:
-            return {}
-        names = [self.chain.points[point] for point in self._waveform_points]
-        rows = values if values is not None else [np.empty(0)] * len(names)
-        return dict(zip(names, rows, strict=True))
 
 
 def _duration(scenario: Scenario) -> float:
@@ -261,19 +293,4 @@ def simulate(scenario: Scenario, progress: Progress | None = None, block: int = 
     """
     simulation = Simulation(scenario, block)
     blocks = list(simulation.blocks(progress))
-    waveform = {
-        name: np.concatenate([block.waveform[name] for block in blocks])
-        for name in blocks[0].waveform
-    }
-    return Run(
-        scenario,
-        np.concatenate([block.time for block in blocks]),
-        np.concatenate([block.pin for block in blocks]),
-        np.concatenate([block.codes for block in blocks]),
-        np.concatenate([block.voltage for block in blocks]),
-        np.concatenate([block.overrange for block in blocks]),
-        np.concatenate([block.waveform_time for block in blocks]),
-        waveform,
-        simulation.grid,
-        simulation.notes,
-    )
+    return Run.of(scenario, blocks, simulation.grid, simulation.notes)

@@ -9,7 +9,7 @@ from typing import Self
 import numpy as np
 
 from frontend_sim.analog.block import Real
-from frontend_sim.analog.exponential import power
+from frontend_sim.analog.exponential import joined, power
 from frontend_sim.simulation import kernels
 from frontend_sim.simulation.path import Outputs
 
@@ -76,8 +76,10 @@ class Lifted:
         p, n = outputs.c.shape
         impulse, decay = np.zeros((p, length, row)), np.empty((p, n, row))
         response = outputs.c @ weights
+        one = after = power(e, stride)
         for k in range(1, row + 1):
-            decay[:, :, k - 1] = outputs.c + outputs.c @ power(e, k * stride)
+            after = one if k == 1 else joined(after, one)
+            decay[:, :, k - 1] = outputs.c + outputs.c @ after
             impulse[:, : k * stride, k - 1] = response[:, weights.shape[1] - k * stride :]
             if k < row:
                 impulse[:, k * stride, k - 1] += feed
@@ -86,7 +88,7 @@ class Lifted:
             impulse,
             decay,
             np.ascontiguousarray(weights[:, -length:].T),
-            power(e, length)[None],
+            after[None],
             kernels.reach(e),
             feed,
             tuple(np.any(outputs.c, axis=1).tolist()),

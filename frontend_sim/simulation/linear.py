@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Sequence
 from dataclasses import dataclass
 from typing import Literal, Self
@@ -15,13 +16,10 @@ from frontend_sim.simulation.kernels import Real
 from frontend_sim.simulation.path import Outputs, Path, State
 from frontend_sim.simulation.piecewise import PiecewisePath
 from frontend_sim.simulation.resampled import Resampled
-from frontend_sim.simulation.rows import ROW, RowPath
+from frontend_sim.simulation.rows import RowPath, row_length
 from frontend_sim.simulation.since import Exponential, SincePoint, Trapezoid
 from frontend_sim.simulation.uniform import UniformPath
 from frontend_sim.stimulus.drive import Drive, PiecewiseDrive, UniformDrive
-
-MOST_TURNS = 1000.0
-"""Most radians that a generator goes without being set anew on a uniform row of instants."""
 
 Initial = Literal["settled", "rest"]
 States = tuple[tuple[State, ...], ...]
@@ -40,12 +38,14 @@ class GridMethod:
 class Axis:
     """Where a linear model is asked: the usual interval between instants and the longest [s].
 
-    ``uniform`` promises instants number · interval, for number = 0, 1, 2, ... and no others.
+    ``uniform`` promises instants origin + number · interval, for number = 0, 1, 2, ... and no
+    others.
     """
 
     interval: float
     longest: float
     uniform: bool = False
+    origin: float = 0.0
 
 
 @dataclass(frozen=True, eq=False)
@@ -180,10 +180,10 @@ def _path(
 ) -> Path:
     if isinstance(drive, PiecewiseDrive):
         path = PiecewisePath.of(chain, drive, outputs, initial, axis.longest)
-        # Over a row the generator runs by itself; many turns of it would add up their rounding.
-        turns = float(np.max(np.abs(drive.generator), initial=0.0)) * axis.interval * ROW
-        return RowPath.of(path, axis.interval) if axis.uniform and turns < MOST_TURNS else path
-    if axis.uniform and outputs.delay == 0.0 and grid is None:
+        fastest = float(np.max(np.abs(drive.generator), initial=0.0))
+        row = row_length(fastest, axis.interval) if axis.uniform else 0
+        return RowPath.of(path, axis.interval, row, axis.origin) if row else path
+    if axis.uniform and axis.origin == outputs.delay == 0.0 and grid is None:
         times = 1.0 / (axis.interval * drive.rate)
         if round(times) > 1 and abs(times / round(times) - 1.0) < 1e-14:
             drive = Resampled(drive, round(times))
@@ -206,12 +206,21 @@ def _uniform(
     if method == "bilinear":
         since = Trapezoid(chain, step, prewarp)
     else:
-        since = Exponential(chain, drive.between, step)
+        since = Exponential(chain, drive.between, step, _usual(axis, drive, outputs.delay))
     stride = round(axis.interval * drive.rate)
     even = (
         axis.uniform
-        and outputs.delay == drive.origin == 0.0
+        and axis.origin == outputs.delay == drive.origin == 0.0
         and stride >= 1
         and abs(axis.interval * drive.rate - stride) <= 4e-16 * stride
     )
     return UniformPath.of(chain, drive, outputs, model, since, initial, stride, even)
+
+
+def _usual(axis: Axis, drive: UniformDrive, delay: float) -> float:
+    """Return how far behind a point of the drive all instants of an axis lie, if they do [s]."""
+    stride = axis.interval * drive.rate
+    if not axis.uniform or abs(stride - round(stride)) > 1e-9:
+        return 0.0
+    position = (axis.origin - delay - drive.origin) * drive.rate
+    return max((position - math.floor(position)) / drive.rate, 0.0)

@@ -17,6 +17,9 @@ from frontend_sim.stimulus.drive import Drive
 class Model(Protocol):
     """Some points of a chain as functions of time: ``Linear``, or ``Limited``."""
 
+    def before(self) -> Real:
+        """Return the points' values before t = 0, shape (points,)."""
+
     def start(self) -> Any:
         """Return the states at t = 0."""
 

@@ -19,7 +19,7 @@ from frontend_sim.simulation.kernels import Index, Real
 class NoisePath:
     """Noise at the nominal instants of looks: x[k+1] = Phi x[k] + L n[k], y = c x.
 
-    Between bursts of looks the step is longer; it has a Phi and an L of its own.
+    Between bursts of looks the step is longer; each length of a step has a Phi and an L of its own.
 
     The covariance of one step is exact, so noise of any bandwidth folds down as it does in the
     converter, and no grid limits it. Jitter moves a conversion by far less than noise can tell, so
@@ -29,7 +29,7 @@ class NoisePath:
 
     powers: Real
     step_factors: Real
-    looks: int
+    lengths: Index
     first_factor: Real
     c: Real
     reach: Index
@@ -38,13 +38,13 @@ class NoisePath:
     @classmethod
     def of(cls, model: NoiseModel, pattern: LookPattern, seed: int) -> Self:
         """Prepare for looks in a pattern; ModelError as the covariances say."""
-        intervals = [pattern.closest] if pattern.looks == 1 else [pattern.closest, pattern.widest]
+        intervals, lengths = _lengths(pattern)
         steps = [step_covariance(model.a, model.b, interval) for interval in intervals]
         powers = np.stack([np.zeros_like(model.a), *(e for e, _ in steps)])
         factors = np.stack([factor(q) for _, q in steps])
         first = _before(model)
         key, reach = stream(seed, "noise of the chain"), kernels.reach(powers)
-        return cls(powers, factors, pattern.looks, first, model.c, reach, key)
+        return cls(powers, factors, lengths, first, model.c, reach, key)
 
     def start(self) -> Real:
         """Return the states at the first conversion, less the step to it."""
@@ -56,21 +56,29 @@ class NoisePath:
         """Return the states after looks start to stop - 1, and their noise at the pin [V]."""
         x, states = x.copy(), np.empty((stop - start, len(x)))
         white = np.column_stack([normal((*self.key, i, 0), start, stop) for i in range(len(x))])
-        which = np.ones(stop - start, np.int64)
+        which = self.lengths[np.arange(start, stop) % len(self.lengths)]
         sums = np.empty_like(states)
-        kernels.mix(self.step_factors[0], white, sums)
-        if self.looks > 1:
-            after_gap = np.arange(start, stop) % self.looks == 0
-            which[after_gap] = 2
-            across = np.empty_like(states)
-            kernels.mix(self.step_factors[1], white, across)
-            sums[after_gap] = across[after_gap]
+        for length, step_factor in enumerate(self.step_factors):
+            rows = np.flatnonzero(which == length)
+            mixed = np.empty((len(rows), len(x)))
+            kernels.mix(step_factor, np.ascontiguousarray(white[rows]), mixed)
+            sums[rows] = mixed
+        which = which + 1  # the first of the powers keeps the state
         if start == 0:  # the state at the first look is there already
             sums[0], which[0] = 0.0, 0
         kernels.recur(x, self.powers, self.reach, which, sums, states)
         y = np.empty((1, stop - start))
         kernels.readout(states, np.zeros(stop - start), self.c[None], np.zeros(1), y)
         return x, y[0]
+
+
+def _lengths(pattern: LookPattern) -> tuple[list[float], Index]:
+    """Return the different steps of a pattern [s], and which one leads to each look of a period."""
+    gaps = pattern.gaps
+    told = [float(f"{gap:.11e}") for gap in gaps]  # the same but for rounding
+    kinds = list(dict.fromkeys([told[-1], *told]))
+    exact = dict(zip(reversed(told), reversed(gaps), strict=True))
+    return [exact[kind] for kind in kinds], np.array([kinds.index(one) for one in told], np.int64)
 
 
 def _before(model: NoiseModel) -> Real:

@@ -16,7 +16,27 @@ from frontend_sim.simulation.piecewise import PiecewisePath
 from frontend_sim.stimulus.drive import PiecewiseDrive
 
 ROW = 32
-"""Instants between two at which the generator's state is set anew."""
+"""Most instants between two at which the generator's state is set anew."""
+
+MOST_TURNS = 1000.0
+"""Most radians that a generator goes without being set anew: its rounding adds up over them."""
+
+
+MOST_ALONE = 6000.0
+"""The same over a single interval, where nothing adds up: about ``FRESH`` cycles of a sine."""
+
+
+def row_length(fastest: float, interval: float) -> int:
+    """Return how many instants make a row, a power of two up to ROW; 0 if even one turns too far.
+
+    Parameters
+    ----------
+    fastest : largest rate of the generator [rad/s];  interval : between instants [s]
+    """
+    row = ROW
+    while row and fastest * interval * row >= MOST_TURNS:
+        row //= 2
+    return row or int(fastest * interval < MOST_ALONE)
 
 
 @dataclass(frozen=True, eq=False)
@@ -33,7 +53,8 @@ class RowPath:
     ----------
     exact : the same, for any instants
     rate : [Hz];  delay : [s];  lead : the first k
-    spread : shape (p, n + m, ROW)
+    row : instants of a row, R
+    spread : shape (p, n + m, R)
     step, feed : from x and from g at the begin of a row to x at the begin of the next, less the
         identity, shapes (n, n) and (n, m)
     """
@@ -42,28 +63,32 @@ class RowPath:
     rate: float
     delay: float
     lead: int
+    row: int
     spread: Real
     step: Real
     feed: Real
 
     @classmethod
-    def of(cls, exact: PiecewisePath, interval: float) -> Self:
-        """Prepare the path for instants ``interval`` apart [s], less the outputs' delay."""
+    def of(cls, exact: PiecewisePath, interval: float, row: int = ROW, origin: float = 0.0) -> Self:
+        """Prepare the path for instants ``interval`` apart from an origin on [s].
+
+        The outputs' delay is taken off them.
+        """
         system, outputs, drive = exact.table.system, exact.outputs, exact.drive
         n, m = len(exact.initial), len(drive.readout)
         one = expm1(system * interval)
-        spread = np.empty((len(outputs.d), n + m, ROW))
+        spread = np.empty((len(outputs.d), n + m, row))
         direct = np.outer(outputs.d, drive.readout)
         rows = np.concatenate([outputs.c, direct], axis=1)
-        for k in range(ROW):
+        for k in range(row):
             spread[:, :, k] = rows + rows @ power(one, k)
-        e = power(one, ROW)
+        e = power(one, row)
         step, feed = np.ascontiguousarray(e[:n, :n]), np.ascontiguousarray(e[:n, n:])
-        rate, delay = 1.0 / interval, outputs.delay
+        rate, delay = 1.0 / interval, outputs.delay - origin
         lead = max(math.floor(delay * rate) - 1, 0)
         while lead / rate - delay < 0.0:
             lead += 1
-        return cls(exact, rate, delay, lead, spread, step, feed)
+        return cls(exact, rate, delay, lead, row, spread, step, feed)
 
     def start(self) -> State:
         """Return the state at the first instant of row 0."""
@@ -72,7 +97,7 @@ class RowPath:
 
     def _instants(self, first: int, last: int) -> Real:
         """Return the first instants of rows ``first`` to ``last`` - 1 [s]."""
-        return (self.lead + np.arange(first, last) * ROW) / self.rate - self.delay
+        return (self.lead + np.arange(first, last) * self.row) / self.rate - self.delay
 
     def advance(
         self, state: State, number: int, instants: Real, drive: PiecewiseDrive | None = None
@@ -82,15 +107,15 @@ class RowPath:
         The state is that at the first instant of the row that the next instant belongs to, so a
         row that is cut is computed again from its begin.
         """
-        drive = drive or self.exact.drive
+        drive, size = drive or self.exact.drive, self.row
         number -= self.lead
         stop = number + len(instants)
-        first, last = number // ROW, -(-stop // ROW)
+        first, last = number // size, -(-stop // size)
         begins = self._instants(first, last + 1)
         g = drive.states(begins[:-1])
-        y = np.empty((len(self.spread), (last - first) * ROW))
+        y = np.empty((len(self.spread), (last - first) * size))
         x, kept = state.x.copy(), state.x
-        whole = stop // ROW - first
+        whole = stop // size - first
         eventful = _rows_with(drive.events(float(begins[0]), float(begins[-1])), begins)
         at = 0
         while at < last - first:
@@ -98,19 +123,19 @@ class RowPath:
             # The row of the next instant is where the state stays.
             until = min(until, whole) if at < whole else until
             if until > at:
-                self._clean(x, g[at:until], y[:, at * ROW : until * ROW])
+                self._clean(x, g[at:until], y[:, at * size : until * size])
             else:
-                self._eventful(x, first + at, y[:, at * ROW : (at + 1) * ROW], drive)
+                self._eventful(x, first + at, y[:, at * size : (at + 1) * size], drive)
                 until, eventful = at + 1, eventful[1:]
             at = until
             if at == whole:
                 kept = x.copy()
-        offset = number - first * ROW
+        offset = number - first * size
         return State(kept, float(whole + first)), y[:, offset : offset + len(instants)]
 
     def rested(self, state: State, number: int, instants: Real) -> State:
         """Return the state after instants at which all was zero, see ``Path``."""
-        return State(state.x, float((number - self.lead + len(instants)) // ROW))
+        return State(state.x, float((number - self.lead + len(instants)) // self.row))
 
     def _clean(self, x: Real, g: Real, y: Real) -> None:
         """Fill in the outputs of rows without events, and advance x to the begin of the next."""
@@ -127,8 +152,8 @@ class RowPath:
 
     def _eventful(self, x: Real, row: int, y: Real, drive: PiecewiseDrive) -> None:
         """Go through one row from node to node."""
-        number = self.lead + row * ROW
-        instants = np.arange(number, number + ROW + 1) / self.rate - self.delay
+        number = self.lead + row * self.row
+        instants = np.arange(number, number + self.row + 1) / self.rate - self.delay
         state = State(x, float(instants[0]))
         state, values = self.exact.advance(state, 0, instants, drive)
         y[:] = values[:, :-1]

@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass, field
+from typing import Any, Self
 
 import numpy as np
 from numpy.typing import NDArray
@@ -51,6 +53,10 @@ class RunBlock:
     overrange : where the code was clipped, shape (K,)
     waveform_time : shape (W,) [s], empty where no waveform is kept
     waveform : name of the point of the chain -> shape (W,) [V]
+    stimulus : what arrives at the sensor at the sampling instants, in the SI unit of the stimulus,
+        shape (K,); empty where it is a voltage
+    held : voltage of the sampling capacitor that is converted, before noise and rounding, shape
+        (K,) [V]; empty where the converter has no input network
     """
 
     start: int
@@ -61,6 +67,8 @@ class RunBlock:
     overrange: NDArray[np.bool_]
     waveform_time: Real
     waveform: dict[str, Real]
+    stimulus: Real = field(default_factory=lambda: np.empty(0))
+    held: Real = field(default_factory=lambda: np.empty(0))
 
 
 @dataclass(frozen=True, eq=False)
@@ -81,3 +89,35 @@ class Run:
     waveform: dict[str, Real]
     grid: GridReport | None = None
     notes: tuple[str, ...] = field(default=())
+    stimulus: Real = field(default_factory=lambda: np.empty(0))
+    held: Real = field(default_factory=lambda: np.empty(0))
+
+    @classmethod
+    def of(
+        cls,
+        scenario: Scenario,
+        blocks: Sequence[RunBlock],
+        grid: GridReport | None,
+        notes: tuple[str, ...],
+    ) -> Self:
+        """Join the blocks of a run, of which there is one at least."""
+
+        def joined(name: str) -> Any:
+            return np.concatenate([getattr(block, name) for block in blocks])
+
+        waveform = {
+            name: np.concatenate([block.waveform[name] for block in blocks])
+            for name in blocks[0].waveform
+        }
+        names = (
+            "time",
+            "pin",
+            "codes",
+            "voltage",
+            "overrange",
+            "waveform_time",
+            "stimulus",
+            "held",
+        )
+        arrays = {name: joined(name) for name in names}
+        return cls(scenario=scenario, waveform=waveform, grid=grid, notes=notes, **arrays)

@@ -11,8 +11,8 @@ import numpy as np
 from frontend_sim.analog.block import Real
 from frontend_sim.analog.chain import Chain
 from frontend_sim.analog.discretize import half_step
-from frontend_sim.analog.exponential import augmented
-from frontend_sim.simulation import kernels
+from frontend_sim.analog.exponential import augmented, expm1
+from frontend_sim.simulation import kernels, since_kernels
 from frontend_sim.simulation.intervals import IntervalTable
 from frontend_sim.stimulus.drive import Between
 
@@ -26,11 +26,17 @@ class SincePoint(Protocol):
 
 @dataclass(frozen=True, eq=False)
 class Exponential:
-    """The exact way, for an input that is held or goes in a line over steps [s] of a grid."""
+    """The exact way, for an input that is held or goes in a line over steps [s] of a grid.
+
+    Parameters
+    ----------
+    usual : how far behind a point most instants lie; 0 where nothing is known, for speed alone [s]
+    """
 
     chain: Chain
     between: Between
     step: float
+    usual: float = 0.0
 
     @cached_property
     def _table(self) -> IntervalTable:
@@ -43,10 +49,19 @@ class Exponential:
         system = augmented(self.chain.a, self.chain.b, generator, readout)
         return IntervalTable.of(system, self.chain.order, self.step)
 
+    @cached_property
+    def _usual_step(self) -> Real:
+        return expm1(self._table.system * self.usual)
+
     def advance(self, states: Real, value: Real, rise: Real, since: Real) -> None:
         """Advance by the tabulated exponential, see ``SincePoint``."""
         if states.shape[1] and np.any(since):
             table = self._table
+            if self.usual > 0.0:
+                steps = (table.unit, table.system, table.table, table.stop)
+                usual, step = self.usual, self._usual_step
+                since_kernels.since_usual(states, value, rise, since, usual, step, *steps)
+                return
             kernels.since_point(
                 states, value, rise, since, table.unit, table.system, table.table, table.stop
             )

@@ -51,7 +51,6 @@ class UniformPath:
     outputs: Outputs
     model: DiscreteModel
     gamma: Real
-    weights: Real
     since: SincePoint
     initial: Real
     stride: int
@@ -82,7 +81,6 @@ class UniformPath:
             outputs,
             model,
             gamma,
-            _weights(model.e, gamma),
             since,
             x,
             stride,
@@ -173,7 +171,22 @@ class UniformPath:
         """The outputs of a whole tile at every stride-th point."""
         row = min(row_length(self.stride, len(self.outputs.d)), self.tile)
         feed = np.asarray(self.outputs.d + self.outputs.c @ self.model.stop)
-        return Lifted.of(self.model.e, self.weights, self.outputs, feed, self.stride, row)
+        return Lifted.of(
+            self.model.e, self._weights(row * self.stride), self.outputs, feed, self.stride, row
+        )
+
+    @cached_property
+    def _ages(self) -> dict[int, Real]:
+        """Weights that were needed so far, by how many there are."""
+        return {}
+
+    def _weights(self, length: int) -> Real:
+        """Return Phi^age gamma for at least ``length`` ages, down to 0, shape (n, ...)."""
+        longest = max(self._ages, default=0)
+        if longest < max(length, 1):
+            longest = 1 << (length - 1).bit_length()
+            self._ages[longest] = weights_of(self.model.e, self.gamma, longest)
+        return self._ages[longest]
 
     @cached_property
     def _powers(self) -> dict[int, Real]:
@@ -223,7 +236,7 @@ class UniformPath:
         lengths, which = np.unique(parts, return_inverse=True)
         powers = np.array([self._power(int(length)) for length in lengths])
         sums = np.empty((len(owner), len(x)))
-        kernels.weigh(points, starts, parts, self.weights, sums)
+        kernels.weigh(points, starts, parts, self._weights(int(lengths[-1])), sums)
         states: Real = self._recur(x, powers, which, sums)[np.cumsum(steps) - 1]
         return states
 
@@ -235,7 +248,7 @@ class UniformPath:
     @cached_property
     def _stride_weights(self) -> Real:
         """The weights of one stride, contiguous for the matrix product, shape (stride, n)."""
-        return np.ascontiguousarray(self.weights[:, -self.stride :].T)
+        return np.ascontiguousarray(self._weights(self.stride)[:, -self.stride :].T)
 
     @cached_property
     def _reach(self) -> Index:
@@ -259,11 +272,11 @@ class UniformPath:
         return y
 
 
-def _weights(e: Real, gamma: Real) -> Real:
-    """Return Phi^age gamma for ages LONGEST_SUM - 1 down to 0, shape (n, LONGEST_SUM)."""
+def weights_of(e: Real, gamma: Real, count: int) -> Real:
+    """Return Phi^age gamma for ages count - 1 down to 0, a power of two, shape (n, count)."""
     columns = gamma[:, None]
     square = e
-    while columns.shape[1] < LONGEST_SUM:
+    while columns.shape[1] < count:
         columns = np.concatenate([columns, columns + square @ columns], axis=1)
         square = 2.0 * square + square @ square
     return np.ascontiguousarray(columns[:, ::-1])

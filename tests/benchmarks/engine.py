@@ -112,24 +112,81 @@ def chain_rows(points: int, runs: int) -> list[Row]:
     ]
 
 
-def analytic_rows(runs: int) -> list[Row]:
-    """A sine costs per conversion: a grid rate that is not used changes nothing."""
+def timed_run(
+    stimulus: dict[str, object], rate: float, count: int, **simulation: object
+) -> Callable[[], None]:
+    """Return a run of an eighth-order chain behind a noisy amplifier, block by block."""
     from frontend_sim.scenario.model import Scenario
-    from frontend_sim.simulation import simulate
+    from frontend_sim.simulation import Simulation
 
-    def run(grid_rate: float) -> Callable[[], object]:
-        scenario = Scenario.model_validate(
-            {
-                "stimulus": {"kind": "sine", "amplitude": 1.0, "frequency": 997.0},
-                "chain": [{"kind": "butterworth", "order": 8, "corner": CORNER}],
-                "adc": {"rate": CONVERSION_RATE, "bits": 16, "low": -2.0, "high": 2.0},
-                "simulation": {"duration": 10.0, "grid_rate": grid_rate},
-            }
-        )
-        return lambda: simulate(scenario)
+    amplifier = {
+        "kind": "noninverting-amplifier", "gain": 2, "gain_bandwidth": "1 MHz",
+        "voltage_noise": "10 nV/sqrt(Hz)",
+    }  # fmt: skip
+    scenario = Scenario.model_validate(
+        {
+            "stimulus": stimulus,
+            "chain": [amplifier, {"kind": "butterworth", "order": 8, "corner": CORNER}],
+            "adc": {"rate": rate, "bits": 16, "low": -8.0, "high": 8.0},
+            "simulation": {"duration": count / rate, **simulation},
+        }
+    )
 
-    ratio = paired(run(1e6), run(2e6), runs)
-    return [Row("analytic stimulus, time at twice the grid rate", ratio, 1.15, False)]
+    def work() -> None:
+        for _ in Simulation(scenario).blocks():
+            pass
+
+    return work
+
+
+def analytic_rows(count: int, runs: int) -> list[Row]:
+    """A sine costs per conversion: not per period, and twice as many conversions twice as much."""
+
+    def run(frequency: float, conversions: int) -> Callable[[], None]:
+        sine = {"kind": "sine", "amplitude": 1.0, "frequency": frequency}
+        return timed_run(sine, CONVERSION_RATE, conversions, noise=False)
+
+    fast = paired(run(9.7, count), run(97e3, count), runs)
+    faster = paired(run(97e3, count), run(9.7e6, count), runs)
+    twice = paired(run(997.0, count), run(997.0, 2 * count), runs)
+    return [
+        Row("a sine of 10 000 times the frequency, time", fast, 1.5, False),
+        Row("a sine of 200 periods between conversions against 5, time", faster, 8.0, False),
+        Row("twice the conversions of a sine, time", twice, 2.5, False),
+    ]
+
+
+def noise_rows(count: int, runs: int) -> list[Row]:
+    """Noise costs per conversion, whatever else is computed or passes between two of them.
+
+    What noise adds to a run is compared: with the waveform at 10 and at 100 points for each
+    conversion, and with a hundredfold interval between conversions.
+    """
+    sine = {"kind": "sine", "amplitude": 1.0, "frequency": 9.7}
+
+    def added(rate: float, **simulation: object) -> Callable[[], float]:
+        loud = timed_run(sine, rate, count, noise=True, **simulation)
+        quiet = timed_run(sine, rate, count, noise=False, **simulation)
+        loud()
+        quiet()
+        return lambda: seconds(loud) - seconds(quiet)
+
+    def ratio(ours: Callable[[], float], theirs: Callable[[], float]) -> float:
+        pairs = [(theirs(), ours()) for _ in range(2 * runs)]
+        return median(more for more, _ in pairs) / median(less for _, less in pairs)
+
+    rate = CONVERSION_RATE
+    few = added(rate, waveform_rate=10.0 * rate, waveform_points=["stimulus"])
+    many = added(rate, waveform_rate=100.0 * rate, waveform_points=["stimulus"])
+    alone, slow = added(rate), added(rate / 100.0)
+    whole = paired(
+        timed_run(sine, rate, count, noise=False), timed_run(sine, rate, count, noise=True), runs
+    )
+    return [
+        Row("a run with noise, times one without", whole, 12.0, False),
+        Row("cost of noise, waveform ten times as dense", ratio(few, many), 1.5, False),
+        Row("cost of noise, interval a hundred times as long", ratio(alone, slow), 1.5, False),
+    ]
 
 
 def start_row(runs: int) -> Row:
@@ -184,7 +241,8 @@ def main() -> int:
     points, runs = (1_000_000, 3) if quick else (10_000_000, 9)
     rows = [
         *chain_rows(points, runs),
-        *analytic_rows(runs),
+        *analytic_rows(points // 10, runs),
+        *noise_rows(points // 10, runs),
         start_row(runs),
         memory_row(10 * points),
     ]

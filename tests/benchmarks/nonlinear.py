@@ -33,6 +33,10 @@ STAGES: dict[str, dict[str, Any]] = {
     "amplifier, limits never reached": {**AMPLIFIER, "output_low": -9, "output_high": 9},
     "amplifier at its rails most of the time": AMPLIFIER,
     "amplifier of two poles at its rails": {**AMPLIFIER, "second_pole": 5e5},
+    "Sallen-Key at its rails": {
+        "kind": "sallen-key", "resistance_1": 1e4, "resistance_2": 1e4, "capacitance_1": 2e-9,
+        "capacitance_2": 1e-9, "gain_bandwidth": 1e6, "output_low": 0.1, "output_high": 1.6,
+    },
     "slew-limit": {"kind": "slew-limit", "slew_rate": 5e3, "bandwidth": 1e5},
     "rail-limit": {"kind": "rail-limit", "low": 0.1, "high": 1.6},
     "clamp": {"kind": "clamp", "low": 0, "high": 1.5, "resistance": 1e3, "capacitance": 1e-9,

@@ -177,3 +177,22 @@ def test_a_delay_is_exact_at_any_instant() -> None:
     np.testing.assert_allclose(shifted, plain, rtol=0, atol=1e-12)
     early = outputs(late, [InMemory(data, 1e4)], np.array([0.0, 0.5 * delay]))
     np.testing.assert_allclose(early, data[0], rtol=1e-14)
+
+
+@pytest.mark.parametrize("initial", ["settled", "rest"])
+@pytest.mark.parametrize("between", ["hold", "line"])
+def test_instants_before_the_second_point_need_no_step(between: str, initial: str) -> None:
+    """One conversion at t = 0, and one between the first two points, see what is there.
+
+    With a line from u0 to u1 the low pass of a state of rest obeys its ramp response.
+    """
+    low_pass = chain_of([RcLowpass(resistance=1e3, capacitance=1e-7)])
+    drive = InMemory(np.array([0.5, 0.75]), 1e3, between)
+    settled = initial == "settled"
+    at_once = outputs(low_pass, [drive], np.zeros(1), initial=initial)
+    assert at_once[0] == pytest.approx(0.5 if settled else 0.0, abs=1e-15)
+    later = outputs(low_pass, [drive], np.array([2e-4]), initial=initial)
+    grown = 1.0 - np.exp(-2.0)
+    slope = 0.0 if between == "hold" else 250.0
+    wanted = 0.5 * (1.0 if settled else grown) + slope * (2e-4 - 1e-4 * grown)
+    assert later[0] == pytest.approx(wanted, abs=1e-12)
