@@ -13,11 +13,16 @@ from frontend_sim.analog.block import Real
 from frontend_sim.analog.chain import Chain
 from frontend_sim.analog.noise import NoiseModel, stationary_covariance
 from frontend_sim.converter import AnyAdc
+from frontend_sim.measure.look_weights import LookWeights
 
 NODES = 12
 """Gauss-Legendre points in each panel of the integral over frequency."""
 PANELS_PER_OCTAVE = 2
+MOST_ENTRIES = 1 << 18
+"""Entries of the matrices that are solved with at once, 4 MB."""
+
 CONVERTER = "converter: input noise"
+CAPACITOR = "converter: k T / C of the sampling capacitor"
 
 
 @dataclass(frozen=True)
@@ -50,6 +55,9 @@ class NoiseBudget:
     folded : of the part above half the conversion rate [V]
     lowest : frequency down to which 1/f noise counts [Hz]
     unbounded : sources with a part whose bandwidth nothing limits before the pin; it is left out
+    filtered : whether a code is made of several looks at the pin, by an average or a sinc filter;
+        all numbers are then those of a code, referred to the input
+    sampled : whether the pin of all these numbers is the sampling capacitor behind it
     """
 
     rows: tuple[NoiseRow, ...]
@@ -58,20 +66,27 @@ class NoiseBudget:
     folded: float
     lowest: float
     unbounded: tuple[str, ...] = ()
+    filtered: bool = False
+    sampled: bool = False
 
 
-def noise_budget(chain: Chain, adc: AnyAdc, lowest: float) -> NoiseBudget:
+def noise_budget(
+    chain: Chain, adc: AnyAdc, lowest: float, capacitor: float | None = None
+) -> NoiseBudget:
     """Return the budget of a chain in front of a converter.
 
     The variance of a source at the pin is c P c' with a P + P a' + b b' = 0, its density at a
     frequency is 2 |c (jw - a)^-1 b|². What lies above half the rate is the variance less the
-    integral of the density up to there. Source: any text on stochastic systems, e.g. Astrom,
+    integral of the density up to there. Where a code is made of several looks, both are those of
+    the code, see ``LookWeights``. Source: any text on stochastic systems, e.g. Astrom,
     *Introduction to Stochastic Control Theory*; from memory.
 
     Parameters
     ----------
     lowest : frequency down to which 1/f noise counts [Hz]; a run takes a tenth of the reciprocal
         of its duration
+    capacitor : rms noise of its own that a sampling capacitor at the end of the chain adds to each
+        look; None where there is none, see ``circuit_noise`` [V]
 
     Raises
     ------
@@ -79,17 +94,21 @@ def noise_budget(chain: Chain, adc: AnyAdc, lowest: float) -> NoiseBudget:
         If a pole at the origin gathers noise without bound.
     """
     model = chain.noise_model(lowest)
-    half = 0.5 * adc.rate
+    half, looks = 0.5 * adc.rate, LookWeights.of(adc)
     powers = []
     for number, name in enumerate(model.names):
         mine = [column for column, owner in enumerate(model.owner) if owner == number]
         b = model.b[:, mine]
         # Where a high pass takes nearly all of it away, rounding may fall below zero.
-        variance = max(float(model.c @ stationary_covariance(model.a, b) @ model.c), 0.0)
-        inside = _power_below(model, b, half)
+        variance = max(looks.variance(model, stationary_covariance(model.a, b)), 0.0)
+        inside = _power_below(model, b, half, looks)
         powers.append((name, variance, max(variance - inside, 0.0)))
     if adc.input_noise > 0.0:
-        powers.append((CONVERTER, adc.input_noise**2, 0.0))
+        # That of an oversampling converter is told for a code already.
+        counted = 1.0 if adc.kind == "oversampling" else looks.white
+        powers.append((CONVERTER, counted * adc.input_noise**2, 0.0))
+    if capacitor:
+        powers.append((CAPACITOR, looks.white * capacitor**2, 0.0))
     total = sum(variance for _, variance, _ in powers)
     folded = sum(above for _, _, above in powers)
     rows = [
@@ -104,7 +123,9 @@ def noise_budget(chain: Chain, adc: AnyAdc, lowest: float) -> NoiseBudget:
     ]
     rows.sort(key=lambda row: -row.rms)
     rms = math.sqrt(total)
-    return NoiseBudget(tuple(rows), rms, rms / adc.lsb, math.sqrt(folded), lowest, model.unbounded)
+    ends = rms, rms / adc.lsb, math.sqrt(folded)
+    filtered, sampled = looks.sinc is not None, capacitor is not None
+    return NoiseBudget(tuple(rows), *ends, lowest, model.unbounded, filtered, sampled)
 
 
 def noise_density(model: NoiseModel, b: Real, frequency: Real) -> Real:
@@ -123,13 +144,18 @@ def noise_density(model: NoiseModel, b: Real, frequency: Real) -> Real:
     return np.asarray(2.0 * np.sum(np.abs(through) ** 2, axis=1))
 
 
-def _power_below(model: NoiseModel, b: Real, limit: float) -> float:
-    """Return the integral of the density from zero to a frequency [V²]."""
+def _power_below(model: NoiseModel, b: Real, limit: float, looks: LookWeights) -> float:
+    """Return the integral of the density of codes from zero to a frequency [V²]."""
     nodes, weights = np.polynomial.legendre.leggauss(NODES)
+    panels = np.array(list(_panels(model, limit)))
+    # As many panels at once as keep the matrices of all their nodes small.
+    most = max(MOST_ENTRIES // (NODES * max(len(model.a), 1) ** 2), 1)
     total = 0.0
-    for start, stop in _panels(model, limit):
-        centre, half = 0.5 * (start + stop), 0.5 * (stop - start)
-        total += half * float(weights @ noise_density(model, b, centre + half * nodes))
+    for some in np.split(panels, range(most, len(panels), most)):
+        centre, half = 0.5 * np.sum(some, axis=1), 0.5 * np.diff(some, axis=1)[:, 0]
+        frequency = centre[:, None] + half[:, None] * nodes
+        density = noise_density(model, b, frequency.ravel()) * looks.power(frequency.ravel())
+        total += float(half @ (density.reshape(frequency.shape) @ weights))
     return total
 
 

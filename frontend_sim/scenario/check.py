@@ -12,8 +12,10 @@ from frontend_sim.errors import ModelError, Problem, RecordingError, ScenarioErr
 from frontend_sim.quantities import TIME, as_text
 from frontend_sim.scenario.checks.rules import instant_faults
 from frontend_sim.scenario.fault import problem
+from frontend_sim.scenario.input_port import discretization_fault, input_network_of, input_port
 from frontend_sim.scenario.locate import lines_of
 from frontend_sim.scenario.model import Scenario
+from frontend_sim.scenario.scan_scenario import AnyScenario, ScanScenario
 from frontend_sim.scenario.spread import moved
 from frontend_sim.scenario.tables import Path
 
@@ -21,8 +23,10 @@ ROUNDING = 1e-9
 """Share by which a duration may exceed a recording, as rounding of either makes it."""
 
 
-def check_scenario(scenario: Scenario, name: str = "") -> None:
+def check_scenario(scenario: AnyScenario, name: str = "") -> None:
     """Check that a scenario can be run: its stimulus is there and long enough, its stages stable.
+
+    In a scan every channel is checked.
 
     Parameters
     ----------
@@ -39,6 +43,9 @@ def check_scenario(scenario: Scenario, name: str = "") -> None:
         If a stage is unstable, or a drift takes a part or the reference to a value that it cannot
         have.
     """
+    if isinstance(scenario, ScanScenario):
+        _check_scan(scenario, name)
+        return
     try:
         known = scenario.stimulus.known_length()
     except RecordingError as error:
@@ -56,7 +63,7 @@ def check_scenario(scenario: Scenario, name: str = "") -> None:
         try:
             warm = moved(stage, temperature, label)
             section(warm, label, temperature)
-            warm.limiter()
+            warm.limiter(temperature)
         except ModelError as error:
             raise ModelError(_located(scenario, name, ("chain", position), str(error))) from error
     try:
@@ -66,6 +73,39 @@ def check_scenario(scenario: Scenario, name: str = "") -> None:
         raise ScenarioError([problem_of(scenario, path, str(error))], name) from error
     except ModelError as error:
         raise ModelError(_located(scenario, name, ("adc", "reference"), str(error))) from error
+    _check_input(scenario, name)
+
+
+def _check_input(scenario: Scenario, name: str) -> None:
+    """Check that the converter's input network can stand behind the last stage."""
+    if (fault := discretization_fault(scenario)) is not None:
+        path: Path = ("simulation", "discretization")
+        raise ScenarioError([problem_of(scenario, path, fault)], name)
+    found = input_network_of(scenario)
+    if found is None:
+        return
+    path = ("chain", len(scenario.chain) - 1) if scenario.chain else ("adc", "input")
+    try:
+        input_port(scenario, found[1])
+    except ModelError as error:
+        raise ModelError(_located(scenario, name, path, str(error))) from error
+
+
+def _check_scan(scan: ScanScenario, name: str) -> None:
+    for channel in scan.channels():
+        try:
+            known = channel.stimulus.known_length()
+        except RecordingError as error:
+            raise RecordingError(_located(channel, name, ("stimulus",), str(error))) from error
+        if known is not None or scan.simulation.duration is not None:
+            check_scenario(channel, name)
+    try:
+        length = scan.run_length()
+    except ScenarioError as error:
+        path = ("simulation", "duration")
+        raise ScenarioError([problem_of(scan, path, str(error))], name) from error
+    for channel in scan.channels(length):
+        check_scenario(channel, name)
 
 
 def scenario_notes(scenario: Scenario) -> tuple[str, ...]:
@@ -115,7 +155,7 @@ def _all_conversions_before(end: float, duration: float, adc: AnyAdc) -> bool:
     return last <= end and duration <= end + 1.0 / adc.true_rate
 
 
-def problem_of(scenario: Scenario, path: Path, text: str) -> Problem:
+def problem_of(scenario: AnyScenario, path: Path, text: str) -> Problem:
     """Return what is wrong at a path of a scenario, with its key and line.
 
     Parameters
@@ -123,9 +163,10 @@ def problem_of(scenario: Scenario, path: Path, text: str) -> Problem:
     path : keys and positions from the top of the scenario, ``("check", 0, "before")``
     text : the whole message
     """
-    data: dict[str, Any] = tomllib.loads(scenario.source) if scenario.source else {}
-    return problem(path, text, data, lines_of(scenario.source, data))
+    source = scenario.file_text
+    data: dict[str, Any] = tomllib.loads(source) if source else {}
+    return problem(scenario.in_file(path), text, data, lines_of(source, data))
 
 
-def _located(scenario: Scenario, name: str, path: Path, text: str) -> str:
+def _located(scenario: AnyScenario, name: str, path: Path, text: str) -> str:
     return str(ScenarioError([problem_of(scenario, path, text)], name))

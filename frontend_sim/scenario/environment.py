@@ -2,9 +2,12 @@
 
 from __future__ import annotations
 
-from pydantic import Field
+from typing import Self
+
+from pydantic import Field, model_validator
 
 from frontend_sim.quantities import REFERENCE_TEMPERATURE, Temperature
+from frontend_sim.scenario.supply import Supply
 from frontend_sim.values import Value
 
 
@@ -15,3 +18,14 @@ class Environment(Value):
         default=REFERENCE_TEMPERATURE,
         description="temperature of the circuit; at 25 degC parts have their nominal values",
     )
+    supply: Supply | None = Field(
+        default=None,
+        description="source that the excitation of a bridge and the converter's reference share; "
+        "left out, it never changes",
+    )
+
+    @model_validator(mode="after")
+    def _supply_stays_near(self) -> Self:
+        if self.supply is not None:
+            self.supply.refuse_far(self.temperature)
+        return self

@@ -10,7 +10,6 @@ from typing import Any
 from frontend_sim.errors import Problem
 from frontend_sim.quantities import shown
 from frontend_sim.scenario.locate import line_of
-from frontend_sim.scenario.model import Scenario
 from frontend_sim.scenario.tables import (
     Path,
     Spot,
@@ -19,6 +18,7 @@ from frontend_sim.scenario.tables import (
     kinds,
     members,
     model_at,
+    root,
     spot,
 )
 
@@ -69,7 +69,7 @@ class Fault:
 def _path_in_file(location: Sequence[str | int], data: Any) -> tuple[Path, bool]:
     """Drop from pydantic's location what is no key: kinds, and the types that were tried."""
     path: Path = ()
-    annotation: Any = Scenario
+    annotation: Any = root(data)
     branch, here = False, data
     for step in location:
         if _has_kinds(annotation) and step == kind_in(members(annotation), here):

@@ -15,7 +15,9 @@ from frontend_sim.scenario.content import read_text
 from frontend_sim.scenario.explain import explain
 from frontend_sim.scenario.locate import lines_of
 from frontend_sim.scenario.model import Scenario
+from frontend_sim.scenario.scan_scenario import AnyScenario, ScanScenario, single
 from frontend_sim.scenario.syntax import syntax_problem
+from frontend_sim.scenario.tables import root
 
 DEEPEST = 24
 """Tables and arrays inside each other; a scenario needs fewer."""
@@ -35,8 +37,8 @@ _LEAST = """a scenario needs at least
   duration = "10 ms\""""
 
 
-def load_scenario(path: str | os.PathLike[str]) -> Scenario:
-    """Read a scenario file.
+def load_scenario(path: str | os.PathLike[str]) -> AnyScenario:
+    """Read a scenario file; with [[channel]] tables it is a ``ScanScenario``, else a ``Scenario``.
 
     Paths in the file are relative to the file. ``source`` of the result holds the file's text.
 
@@ -60,9 +62,24 @@ def load_scenario(path: str | os.PathLike[str]) -> Scenario:
     return scenario
 
 
+def load_single_scenario(path: str | os.PathLike[str], what: str = "this") -> Scenario:
+    """Read a scenario file of one channel, for what knows no scans.
+
+    Parameters
+    ----------
+    what : takes no scans, for the message
+
+    Raises
+    ------
+    InputError
+        As ``load_scenario``; ScenarioError also if the file describes a scan.
+    """
+    return single(load_scenario(path), what, str(Path(path)))
+
+
 def parse_scenario(
     text: str, directory: str | os.PathLike[str] = ".", name: str = "scenario"
-) -> Scenario:
+) -> AnyScenario:
     """Read a scenario from text.
 
     Unlike ``load_scenario`` it opens no recording: ``check_scenario`` does.
@@ -87,7 +104,12 @@ def parse_scenario(
         errors.append({"type": "extra_forbidden", "loc": ("source",)})
     values = {key: value for key, value in data.items() if key != "source"}
     try:
-        scenario = Scenario.model_validate(values, context={"directory": Path(directory)})
+        context = {"directory": Path(directory)}
+        scenario: AnyScenario
+        if root(data) is ScanScenario:
+            scenario = ScanScenario.model_validate(values, context=context)
+        else:
+            scenario = Scenario.model_validate(values, context=context)
     except ValidationError as error:
         errors.extend(error.errors(include_url=False))
     except RecursionError:

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import hashlib
 import json
-from collections.abc import Mapping
+from collections.abc import Callable, Mapping, Sequence
 from pathlib import Path
 from typing import Annotated, Any, Literal, Self
 
@@ -19,6 +19,7 @@ from frontend_sim.scenario.checks.rules import check_faults, instant_faults
 from frontend_sim.scenario.environment import Environment
 from frontend_sim.scenario.rules import conversions_fault, fault, faults, newer_format, points_fault
 from frontend_sim.scenario.signal import PIN, UnitError, named, signal_units
+from frontend_sim.scenario.supply import supply_faults
 from frontend_sim.stimulus import AnyStimulus
 from frontend_sim.values import Value
 
@@ -196,6 +197,14 @@ class Scenario(Value):
         self.__dict__["stimulus"] = self.stimulus.measured_in(unit)
 
     @model_validator(mode="after")
+    def _supply_feeds_something(self) -> Self:
+        referred = self.adc.reference is not None and self.adc.reference.ratiometric
+        text = supply_faults(self.environment.supply, self.chain, referred)
+        if text is not None:
+            raise fault(["environment", "supply"], text)
+        return self
+
+    @model_validator(mode="after")
     def _waveform_points_exist(self) -> Self:
         points = self.points()
         for position, name in enumerate(self.simulation.waveform_points or ()):
@@ -218,6 +227,10 @@ class Scenario(Value):
     @model_validator(mode="after")
     def _checks_fit(self) -> Self:
         found = list(check_faults(self.check, self.points(), self.units(), self.adc.rate))
+        for position, check in enumerate(self.check):
+            if check.channel is not None:
+                text = "has a meaning in a scan of several [[channel]] only; take it out"
+                found.append((("check", position, "channel"), text))
         if self.simulation.duration is not None:
             found += instant_faults(self.check, self.simulation.duration)
         if found:
@@ -265,17 +278,36 @@ class Scenario(Value):
         """Return every value in SI units, defaults filled in, as plain data for JSON."""
         return self.model_dump(mode="json")
 
-    def digest(self) -> str:
+    def digest(self, sha256: Callable[[Path], str] | None = None) -> str:
         """Return the SHA-256 of the resolved values, files counted by content, not by name.
 
         The same scenario in another folder has the same digest; title and source text do not
         count.
+
+        Parameters
+        ----------
+        sha256 : digest of a file's content; left out, ``sha256_of``
         """
-        values = self.resolved()
-        del values["title"]
-        named = {str(file): sha256_of(file) for file in self.files()}
-        text = json.dumps(_renamed(values, named), sort_keys=True, separators=(",", ":"))
-        return hashlib.sha256(text.encode()).hexdigest()
+        return digest_of(self.resolved(), self.files(), sha256)
+
+    def in_file(self, path: tuple[str | int, ...]) -> tuple[str | int, ...]:
+        """Return where in the file a path of the scenario is: there."""
+        return path
+
+    @property
+    def file_text(self) -> str:
+        """The file that the scenario stands in, as written."""
+        return self.source
+
+
+def digest_of(
+    values: dict[str, Any], files: Sequence[Path], sha256: Callable[[Path], str] | None = None
+) -> str:
+    """Return the SHA-256 of resolved values, files counted by content, the title not at all."""
+    counted = {key: value for key, value in values.items() if key != "title"}
+    named = {str(file): (sha256 or sha256_of)(file) for file in files}
+    text = json.dumps(_renamed(counted, named), sort_keys=True, separators=(",", ":"))
+    return hashlib.sha256(text.encode()).hexdigest()
 
 
 def sha256_of(file: Path) -> str:

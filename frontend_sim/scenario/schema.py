@@ -7,8 +7,12 @@ from collections.abc import Iterator
 from typing import Any
 
 from frontend_sim.scenario.model import Scenario
+from frontend_sim.scenario.scan_scenario import ScanScenario
 
 Schema = dict[str, Any]
+
+_OF_SCANS = ("channel", "scan")
+"""Tables that a file has instead of [stimulus] and [[chain]]."""
 
 DIALECT = "https://json-schema.org/draft/2020-12/schema"
 
@@ -20,6 +24,10 @@ def json_schema() -> dict[str, Any]:
     that are read with a unit may be text or a bare number in SI, and have a ``quantity``.
     """
     schema: Schema = Scenario.model_json_schema(by_alias=False, mode="validation")
+    scan: Schema = ScanScenario.model_json_schema(by_alias=False, mode="validation")
+    schema["properties"] |= {name: scan["properties"][name] for name in _OF_SCANS}
+    schema["$defs"] |= scan["$defs"]
+    schema["required"] = ["adc"]
     del schema["properties"]["source"]
     for part in _parts(schema):
         _drop_null(part)
@@ -30,12 +38,20 @@ def json_schema() -> dict[str, Any]:
     for name, definition in schema["$defs"].items():
         definition["title"] = definition["properties"].get("kind", {}).get("const", name)
     schema.pop("description", None)
+    schema["oneOf"] = [
+        {"required": ["stimulus"], "not": _any_of(*_OF_SCANS)},
+        {"required": ["channel"], "not": _any_of("stimulus", "chain")},
+    ]
     head = {
         "$schema": DIALECT,
         "title": "Scenario of frontend-sim",
         "description": _paragraph(Scenario),
     }
     return {**head, **{key: value for key, value in schema.items() if key != "title"}}
+
+
+def _any_of(*names: str) -> Schema:
+    return {"anyOf": [{"required": [name]} for name in names]}
 
 
 def _parts(schema: Any) -> Iterator[Schema]:
@@ -75,6 +91,8 @@ def _complete(name: str, value: Schema, table: Schema) -> None:
             table["required"] = ["kind", *table.get("required", [])]
     if isinstance(value.get("default"), dict):
         del value["default"]
+    if "auto" in value.get("examples", ()) and "pattern" in value:
+        value["pattern"] = f"^auto$|{value['pattern']}"
     numbers = [part for part in _parts(value) if part.get("type") in ("integer", "number")]
     if numbers and "unit" not in value:
         value["unit"] = "1"

@@ -10,6 +10,7 @@ from typing import Annotated, Any, get_args, get_origin
 from pydantic.fields import FieldInfo
 
 from frontend_sim.scenario.model import Scenario
+from frontend_sim.scenario.scan_scenario import ScanScenario
 from frontend_sim.values import Value, may_be_left_out
 
 Path = tuple[str | int, ...]
@@ -93,7 +94,18 @@ def is_array(annotation: Any) -> bool:
 @cache
 def tables() -> tuple[Table, ...]:
     """Return every table that a scenario file may hold, in the order of the path of the signal."""
-    return (Table((), False, "", Scenario), *_tables_in(Scenario, (), frozenset()))
+    return (
+        Table((), False, "", Scenario),
+        *_tables_in(Scenario, (), frozenset()),
+        Table(("channel",), True, "", members(ScanScenario.model_fields["channel"].annotation)[0]),
+        Table(("scan",), False, "", members(ScanScenario.model_fields["scan"].annotation)[0]),
+    )
+
+
+def root(data: Any) -> type[Value]:
+    """Return what a file's content becomes: a scenario of one channel, or a scan of several."""
+    scans = isinstance(data, dict) and not {"channel", "scan"}.isdisjoint(data)
+    return ScanScenario if scans else Scenario
 
 
 def _tables_in(
@@ -129,7 +141,7 @@ class Spot:
 
 def spot(path: Path, data: Any) -> Spot:
     """Follow a path through the models; ``data`` tells the kinds on the way."""
-    here = Spot(annotation=Scenario)
+    here = Spot(annotation=root(data))
     for step in path:
         if isinstance(step, int):
             here = Spot(_element(here.annotation), here.field, here.table)

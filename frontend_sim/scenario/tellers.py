@@ -30,6 +30,11 @@ def meant(fault: Fault) -> str | None:
 
 def _unknown_key(fault: Fault) -> str:
     key = str(fault.path[-1])
+    if fault.path in (("stimulus",), ("chain",)):  # of a scan, else the key would be known
+        return (
+            "stands at the top of a file with [[channel]] tables or [scan]; every channel has its "
+            f"own: move it into a [[channel]], as {_OF_CHANNEL[key]}"
+        )
     likely = meant(fault)
     places = list(dict.fromkeys(table.place for table in homes(key)))
     text = "unknown table" if _is_table(fault.given) else "unknown key"
@@ -41,6 +46,9 @@ def _unknown_key(fault: Fault) -> str:
     if places or fault.spot.table is None:
         return text
     return f"{text}; known are {', '.join(sorted(keys(fault.spot.table)))}"
+
+
+_OF_CHANNEL = {"stimulus": "[channel.stimulus]", "chain": "[[channel.chain]]"}
 
 
 def _is_table(value: Any) -> bool:

@@ -110,11 +110,14 @@ def _rebuilt(value: Any, changes: Mapping[Path, Any]) -> Any:
 
 
 def _given(value: Value) -> list[str]:
-    """Return the keys that were given, and the kind; in the order of the model."""
+    """Return the keys that were given, and the kind; in the order of the model.
+
+    What no file has but a value was made with (the rhythm of a channel) is among them.
+    """
     return [
         key
-        for key, field in type(value).model_fields.items()
-        if (key in value.model_fields_set or key == "kind") and not field.exclude
+        for key in type(value).model_fields
+        if (key in value.model_fields_set or key == "kind") and key != "source"
     ]
 
 

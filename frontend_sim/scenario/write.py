@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import os
 from collections.abc import Iterator
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from pathlib import Path
 from typing import Any
 
@@ -22,7 +22,8 @@ from frontend_sim.quantities import (
     part_table,
     signal_dimension,
 )
-from frontend_sim.scenario.model import Scenario
+from frontend_sim.scenario.scan_scenario import AnyScenario
+from frontend_sim.scenario.signal import PIN
 from frontend_sim.scenario.tables import is_array, keys
 from frontend_sim.values import Value, may_be_left_out
 
@@ -30,7 +31,7 @@ _ALWAYS = ("format", "kind")
 """Keys that are written though they have their default."""
 
 
-def scenario_text(scenario: Scenario, directory: str | os.PathLike[str] | None = None) -> str:
+def scenario_text(scenario: AnyScenario, directory: str | os.PathLike[str] | None = None) -> str:
     """Return a scenario as the text of a TOML file, which reads back as an equal scenario.
 
     Quantities have their units, and just as many digits as give back the same number; keys that
@@ -42,7 +43,7 @@ def scenario_text(scenario: Scenario, directory: str | os.PathLike[str] | None =
     directory : where the file will stand; paths of files below it are written relative to it
     """
     base = None if directory is None else Path(directory).resolve()
-    return "\n".join(_lines(_table(scenario, _Writing(base, scenario.stimulus_unit)), ()))
+    return "\n".join(_lines(_table(scenario, _Writing(base, PIN)), ()))
 
 
 @dataclass(frozen=True)
@@ -59,6 +60,8 @@ class _Inline(dict[str, Any]):
 
 def _table(value: Value, writing: _Writing) -> dict[str, Any]:
     """Return a value as a table: its kind first, then what differs from the default."""
+    # Scenarios and channels know in which unit their levels are.
+    writing = replace(writing, signal=getattr(value, "stimulus_unit", writing.signal))
     written: dict[str, Any] = {}
     fields = keys(type(value))
     for name in sorted(fields, key=lambda key: key not in _ALWAYS):

@@ -12,6 +12,7 @@ from hypothesis.extra import numpy as arrays
 from sines import converter
 
 from frontend_sim.errors import MeasureError
+from frontend_sim.measure.aliasing import sampled_alias_error
 from frontend_sim.measure.linearity import ramp_linearity, sine_linearity
 from frontend_sim.measure.mains import mains_levels, mains_rejection, tone_levels
 from frontend_sim.measure.noise import code_histogram, code_noise, noise_of
@@ -30,6 +31,10 @@ ADC = converter(4)
 
 ON_VALUES = {
     "spectrum": lambda values, number: amplitude_spectrum(values, number),
+    "alias error": lambda values, number: sampled_alias_error(values, number, 1.0),
+    "alias error of periods": lambda values, number: sampled_alias_error(
+        values, 10.0, number, edges="periodic"
+    ),
     "quality": lambda values, number: tone_quality(values, number),
     "quality under a window": lambda values, number: tone_quality(values, 1.0, window="hann"),
     "fit": lambda values, number: fit_sine(values, rate=number),

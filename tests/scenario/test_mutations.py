@@ -72,6 +72,29 @@ def right(draw: st.DrawFn) -> dict[str, Any]:
     )
 
 
+@st.composite
+def right_scan(draw: st.DrawFn) -> dict[str, Any]:
+    """Draw a scan that is right, of any kinds."""
+    data = draw(right())
+    stimulus, chain = data.pop("stimulus"), data.pop("chain")
+    names = ["oil", "water"]
+    data["channel"] = [
+        {"name": name, "stimulus": copy.deepcopy(stimulus), "chain": copy.deepcopy(chain)}
+        for name in names
+    ]
+    data["scan"] = draw(
+        st.sampled_from(
+            [
+                {},
+                {"order": ["oil", "water", "oil"], "dwell": 3, "discard": 2, "slot": "1 ms"},
+                {"sampling": "simultaneous", "skew_frequency": "50 Hz"},
+                {"settle": "1 us", "chain": [{"kind": "gain", "gain": 2}]},
+            ]
+        )
+    )
+    return data
+
+
 def places(data: Any) -> list[tuple[Any, Any]]:
     """Return every table or array, with each of its keys or positions."""
     found = []
@@ -85,7 +108,7 @@ def places(data: Any) -> list[tuple[Any, Any]]:
 @st.composite
 def mutated(draw: st.DrawFn) -> str:
     """Draw a right scenario, and drop, rename, add or replace up to three keys."""
-    data = draw(right())
+    data = draw(st.one_of(right(), right_scan()))
     for _ in range(draw(st.integers(1, 3))):
         spots = places(data)
         if not spots:
@@ -120,7 +143,7 @@ def test_a_mutated_scenario_is_read_or_told(text: str) -> None:
 
 
 @settings(max_examples=300, deadline=5000)
-@given(right(), st.data())
+@given(st.one_of(right(), right_scan()), st.data())
 def test_a_mutilated_text_is_read_or_told(data: dict[str, Any], draw: st.DataObject) -> None:
     """Characters that are lost or inserted anywhere in the text do no harm either."""
     text = tomli_w.dumps(data)

@@ -11,6 +11,9 @@ from frontend_sim.quantities import Limit
 
 SENSES: dict[Bound, float] = {"at most": 1.0, "at least": -1.0}
 
+ROUNDING = 1e-12
+"""A value that differs from its limit by less than this share lies on it."""
+
 
 @dataclass(frozen=True)
 class Answer:
@@ -35,7 +38,12 @@ class Answer:
 
     @property
     def margin(self) -> float:
-        """How far the value stays on the right side of its limit, below zero where it fails."""
+        """How far the value stays on the right side of its limit, below zero where it fails.
+
+        A value on its limit to rounding has no margin, and holds.
+        """
+        if math.isclose(self.value, self.limit, rel_tol=ROUNDING, abs_tol=0.0):
+            return 0.0
         return SENSES[self.bound] * (self.limit - self.value)
 
     def results(self, name: str) -> tuple[Result, ...]:

@@ -7,13 +7,14 @@ from typing import TYPE_CHECKING
 
 from frontend_sim.errors import InputError, MeasureError, ModelError, ScenarioError
 from frontend_sim.measure.checks.keeper import Keeper
-from frontend_sim.measure.checks.subject import Finished, Subject
+from frontend_sim.measure.checks.subject import Subject
 from frontend_sim.measure.checks.table import EVALUATIONS
 from frontend_sim.measure.result import Result
 from frontend_sim.scenario.check import problem_of
 from frontend_sim.scenario.checks.rules import labels
 from frontend_sim.scenario.model import Scenario
 from frontend_sim.simulation import Simulation
+from frontend_sim.simulation.finished import Finished
 
 if TYPE_CHECKING:
     from frontend_sim.scenario.checks import AnyCheck
@@ -46,17 +47,20 @@ def evaluate_checks(run: Finished | Simulation) -> tuple[Result, ...]:
     return evaluated(keeper, run)
 
 
-def evaluated(keeper: Keeper, simulation: object) -> tuple[Result, ...]:
+def evaluated(keeper: Keeper, simulation: object, sensitivities: bool = True) -> tuple[Result, ...]:
     """Hold what was kept of a run against the checks of its scenario.
 
     Parameters
     ----------
     keeper : that saw all blocks
     simulation : what they came from
+    sensitivities : whether checks that fail also say which key to change, and to what, which
+        takes several further runs
     """
     prepared = simulation if isinstance(simulation, Simulation) else None
     finished = keeper.finished(getattr(simulation, "grid", None))
-    return tuple(_evaluated(Subject(keeper.scenario, finished, prepared)))
+    subject = Subject(keeper.scenario, finished, prepared)
+    return tuple(_evaluated(subject) if sensitivities else verdicts_on(subject))
 
 
 def refuse_impossible(
@@ -90,13 +94,28 @@ def refuse_impossible(
         raise ScenarioError(problems, name)
 
 
-def _evaluated(subject: Subject) -> Iterator[Result]:
+def verdicts_on(subject: Subject) -> Iterator[Result]:
+    """Return the verdict on each check, followed by what was found beside it."""
     checks = subject.scenario.check
     for check, label in zip(checks, labels(checks), strict=True):
-        yield from _results(check, label, subject)
+        yield from results_of(check, label, subject)
 
 
-def _results(check: AnyCheck, label: str, subject: Subject) -> tuple[Result, ...]:
+def verdict_on(subject: Subject, position: int) -> Result:
+    """Return the verdict on one check; positions count from 0."""
+    checks = subject.scenario.check
+    return results_of(checks[position], labels(checks)[position], subject)[0]
+
+
+def _evaluated(subject: Subject) -> Iterator[Result]:
+    """Return the verdicts; those that fail say what to change first, by the sensitivities."""
+    from frontend_sim.measure.sensitivity.suggestion import advised
+
+    return advised(subject.scenario, subject.run, tuple(verdicts_on(subject)))
+
+
+def results_of(check: AnyCheck, label: str, subject: Subject) -> tuple[Result, ...]:
+    """Return the verdict on one check and what was found beside it, under a name."""
     try:
         return EVALUATIONS[check.kind].measure(check, subject).results(label)
     except InputError as error:

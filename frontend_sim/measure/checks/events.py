@@ -21,8 +21,8 @@ WINDOWS = 1024.0
 """
 
 
-def last_change(drives: Sequence[PiecewiseDrive], stop: float, from_rest: bool) -> float:
-    """Return when a stimulus last changes its course in [0, stop), 0 if it never does [s].
+def last_change(drives: Sequence[PiecewiseDrive], stop: float, from_rest: bool) -> float | None:
+    """Return when a stimulus last changes its course in [0, stop), None if it never does [s].
 
     Parameters
     ----------
@@ -35,7 +35,7 @@ def last_change(drives: Sequence[PiecewiseDrive], stop: float, from_rest: bool) 
         if len(found):
             return float(found[-1])
         end, window = begin, 2.0 * window
-    return 0.0
+    return None
 
 
 def next_change(drives: Sequence[PiecewiseDrive], start: float, stop: float) -> float:

@@ -36,4 +36,4 @@ def _order(subject: Subject, method: str) -> float:
     uniform = [drive for drive in subject.drives if isinstance(drive, UniformDrive)]
     pieces = [drive for drive in subject.drives if isinstance(drive, PiecewiseDrive)]
     jumps = any(drive.between == "hold" for drive in uniform)
-    return 1.0 if jumps or last_change(pieces, subject.duration, False) > 0.0 else 2.0
+    return 1.0 if jumps or last_change(pieces, subject.duration, False) else 2.0

@@ -9,6 +9,9 @@ from frontend_sim.measure.checks.answer import Answer, scaled
 from frontend_sim.measure.checks.subject import Real, Subject
 from frontend_sim.scenario.checks.headroom import HeadroomCheck
 
+NEAR = 1e-3
+"""A shift by less than this share of what the pin may go through is none."""
+
 
 def headroom(check: HeadroomCheck, subject: Subject) -> Answer:
     """Return the least distance of the pin from an end of the range, below zero beyond it."""
@@ -41,8 +44,13 @@ def advice(subject: Subject, pin: Real, room: float) -> str:
     over = max(highest - (adc.high - room), 0.0)
     under = max(adc.low + room - lowest, 0.0)
     if reach > width and width > 0.0:
+        shift = adc.low + room - lowest * width / reach  # what is left to do with the lower gain
+        then = ""
+        if abs(shift) > NEAR * width:
+            way = "up" if shift > 0.0 else "down"
+            then = f" and shift the level {way} by {words.voltage(abs(shift))}"
         return (
-            f"lower the gain by {words.percent(width / reach)}: the pin goes from "
+            f"lower the gain by {words.percent(width / reach)}{then}: the pin goes from "
             f"{words.voltage(lowest)} to {words.voltage(highest)}, over "
             f"{words.voltage(reach)} of the {words.voltage(width)} that it may"
         )

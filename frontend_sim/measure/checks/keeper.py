@@ -21,6 +21,8 @@ class Kept:
     scenario: Scenario
     time: Real
     pin: Real
+    held: Real
+    codes: NDArray[np.int64]
     voltage: Real
     overrange: NDArray[np.bool_]
     grid: GridReport | None
@@ -55,6 +57,8 @@ class Keeper:
             self.scenario,
             joined("time", np.float64),
             joined("pin", np.float64),
+            joined("held", np.float64),
+            joined("codes", np.int64),
             joined("voltage", np.float64),
             joined("overrange", np.bool_),
             grid,

@@ -9,8 +9,9 @@ import numpy as np
 from frontend_sim.errors import MeasureError
 from frontend_sim.measure.checks.answer import Answer, scaled
 from frontend_sim.measure.checks.subject import Subject
+from frontend_sim.measure.circuit_noise import circuit_noise
 from frontend_sim.measure.noise.summary import CREST, Noise, noise_of
-from frontend_sim.measure.noise_budget import NoiseBudget, noise_budget
+from frontend_sim.measure.noise_budget import NoiseBudget
 from frontend_sim.scenario.checks.noise import NoiseCheck
 from frontend_sim.scenario.checks.noise_free_bits import NoiseFreeBitsCheck
 
@@ -81,7 +82,8 @@ def budget_of(subject: Subject) -> NoiseBudget:
         If a source has no bandwidth.
     """
     if "budget" not in subject.kept:
-        subject.kept["budget"] = noise_budget(subject.chain, subject.adc, 0.1 / subject.duration)
+        lowest = 0.1 / subject.duration
+        subject.kept["budget"] = circuit_noise(subject.scenario, subject.chain, lowest)
     found: NoiseBudget = subject.kept["budget"]
     if found.unbounded:
         raise MeasureError(
@@ -110,7 +112,8 @@ def seen_noise(subject: Subject, after: float) -> Noise:
             f"{clipped} codes are clipped, which cuts their noise off; bring the signal into the "
             "range, or let after name a later instant"
         )
-    return noise_of(subject.voltage[first:] - subject.pin[first:], subject.whole)
+    analog = subject.held if len(subject.held) else subject.pin
+    return noise_of(subject.voltage[first:] - analog[first:], subject.whole)
 
 
 def advice(subject: Subject, excess: float, rounded: bool) -> str:

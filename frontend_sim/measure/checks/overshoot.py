@@ -8,13 +8,10 @@ import numpy as np
 
 from frontend_sim.errors import MeasureError
 from frontend_sim.measure.checks.answer import Answer, scaled
-from frontend_sim.measure.checks.rest import Rest, rest_of
+from frontend_sim.measure.checks.change import change_of
 from frontend_sim.measure.checks.subject import Subject
 from frontend_sim.measure.response.pole import poles_of
 from frontend_sim.scenario.checks.overshoot import OvershootCheck
-
-NO_STEP = 1e-9
-"""A change below this share of the way between is none."""
 
 
 def overshoot(check: OvershootCheck, subject: Subject) -> Answer:
@@ -27,9 +24,7 @@ def overshoot(check: OvershootCheck, subject: Subject) -> Answer:
     MeasureError
         If the stimulus does not rest, or the point returns to where it was.
     """
-    overshoot_possible(check, subject)
-    rest = rest_of(subject, check.point, check.after)
-    assert rest is not None
+    rest = change_of(subject, check.point, check.after, "an overshoot")
     sign = math.copysign(1.0, rest.height)
     if rest.tail is not None:
         volts, method = rest.tail.furthest(sign), "turning points of the exact response"
@@ -41,37 +36,16 @@ def overshoot(check: OvershootCheck, subject: Subject) -> Answer:
         volts = max(float(np.max(sign * (seen - rest.final))), 0.0)
         method = "furthest conversion (nothing is known between them)"
     value, unit = scaled(check.at_most, volts, subject.adc.lsb, abs(rest.height))
-    return Answer(value, unit, float(check.at_most), "at most", method, lambda: _advice(subject))
+    return Answer(value, unit, float(check.at_most), "at most", method, lambda: advice(subject))
 
 
 def overshoot_possible(check: OvershootCheck, subject: Subject) -> None:
-    """Refuse what has no overshoot.
-
-    Raises
-    ------
-    MeasureError
-        If the stimulus does not rest, or the point returns to where it was.
-    """
-    rest = rest_of(subject, check.point, check.after)
-    if rest is None:
-        raise MeasureError(
-            "an overshoot needs a stimulus that changes and then rests, and a chain that comes to "
-            "an end; let after name such an event, or check the level or the headroom"
-        )
-    if abs(rest.height) <= NO_STEP * _way(rest):
-        raise MeasureError(
-            "the point returns to where it was before the event, so nothing tells which way an "
-            "overshoot goes; check the level or the headroom"
-        )
+    """Refuse what has no overshoot. Raises MeasureError as ``change_of`` does."""
+    change_of(subject, check.point, check.after, "an overshoot")
 
 
-def _way(rest: Rest) -> float:
-    if rest.tail is None:
-        return abs(rest.final) + abs(rest.before)
-    return max(abs(rest.tail.arrival), abs(rest.tail.departure))
-
-
-def _advice(subject: Subject) -> str:
+def advice(subject: Subject) -> str:
+    """Return which stage to damp first."""
     poles = [pole for pole in poles_of(subject.chain) if pole.quality_factor is not None]
     worst = max(poles, key=lambda pole: pole.quality_factor or 0.0, default=None)
     if worst is None or (worst.quality_factor or 0.0) <= 0.5:

@@ -32,6 +32,7 @@ class Rest:
     before : value of the point just before ``since``
     tail : how the point comes to its final value; None where something limits, where the run goes
         by a discrete model, or where a mode never dies out
+    begins : whether something happens at ``since``; False where the stimulus rests in the whole run
     """
 
     since: float
@@ -39,6 +40,7 @@ class Rest:
     final: float
     before: float
     tail: Tail | None
+    begins: bool = True
 
     @property
     def height(self) -> float:
@@ -73,6 +75,7 @@ def _rest_of(subject: Subject, point: int, after: float | None) -> Rest | None:
     since = after
     if since is None:
         since = last_change(drives, subject.duration, settings.initial == "rest")
+    begins, since = since is not None, since or 0.0
     if not _rests(drives, since):
         return None
     until = next_change(drives, since, subject.duration)
@@ -85,12 +88,12 @@ def _rest_of(subject: Subject, point: int, after: float | None) -> Rest | None:
     if tail is None:
         return None
     if settings.discretization == "exact" and not subject.limited:
-        return Rest(since, until, final, final + tail.departure, tail)
+        return Rest(since, until, final, final + tail.departure, tail, begins)
     if since > 0.0:
         before = float(subject.at_instants(name, [since * (1.0 - JUST_BEFORE)])[0])
     else:
         before = before_the_run(subject, name)
-    return Rest(since, until, final, before, None)
+    return Rest(since, until, final, before, None, begins)
 
 
 def before_the_run(subject: Subject, point: str) -> float:

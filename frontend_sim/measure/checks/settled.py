@@ -98,6 +98,24 @@ def settled(check: SettlingCheck, subject: Subject) -> Settled:
     return Settled(since, final, band, exit_, SAMPLED, ends)
 
 
+def proven_time(check: SettlingCheck, subject: Subject) -> float | None:
+    """Return the time from the event to the last exit of the exact response [s], without a run.
+
+    Returns
+    -------
+    None where the exact response is not known, or the check tells a final value of its own.
+
+    Raises
+    ------
+    MeasureError
+        If the point does not move.
+    """
+    rest = rest_of(subject, check.point, check.after)
+    if rest is None or rest.tail is None or check.final is not None:
+        return None
+    return rest.tail.leaves(_band(check, subject, rest.height, lambda: _largest(rest.tail)))
+
+
 def event_of(check: SettlingCheck, rest: Rest | None) -> float:
     """Return the instant that the time runs from [s]."""
     if check.after is not None:

@@ -14,6 +14,7 @@ from frontend_sim.measure.checks.settled import ROUNDING, Settled, event_of, set
 from frontend_sim.measure.checks.speed import strongest_lever
 from frontend_sim.measure.checks.subject import Subject
 from frontend_sim.measure.result import Result
+from frontend_sim.scenario.channel_scenario import ChannelScenario
 from frontend_sim.scenario.checks.rules import beyond_end
 from frontend_sim.scenario.checks.settling import SettlingCheck
 
@@ -43,9 +44,17 @@ def settling_possible(check: SettlingCheck, subject: Subject) -> None:
     Raises
     ------
     MeasureError
-        If it does.
+        If it does; or if the stimulus rests in the whole run, so that any wait would do. In a scan
+        a check may count for channels that rest beside those that do not.
     """
     rest = rest_of(subject, check.point, check.after)
+    alone = not isinstance(subject.scenario, ChannelScenario)
+    if rest is not None and not rest.begins and check.final is None and alone:
+        raise MeasureError(
+            f"the stimulus rests from 0 s to the end of the run at {words.time(subject.duration)}, "
+            "so there is nothing to settle; let it change within the run, or let after name an "
+            "instant"
+        )
     since = event_of(check, rest)
     end = since + check.before
     if end > subject.duration * (1.0 + ROUNDING):

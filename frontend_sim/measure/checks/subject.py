@@ -5,7 +5,7 @@ from __future__ import annotations
 import math
 from dataclasses import dataclass, field
 from functools import cached_property
-from typing import Any, Protocol
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -18,38 +18,11 @@ from frontend_sim.measure.response.step_response import StepResponse
 from frontend_sim.randomness import stream
 from frontend_sim.scenario.circuit import circuit_of, stages_of
 from frontend_sim.scenario.model import Scenario
-from frontend_sim.simulation import GridReport, Simulation
+from frontend_sim.simulation import Simulation
+from frontend_sim.simulation.finished import Finished
 from frontend_sim.stimulus.drive import Drive
 
 Real = NDArray[np.float64]
-
-
-class Finished(Protocol):
-    """A finished run: ``Run``, ``Record``, or what was kept of one; names as in ``Run``."""
-
-    @property
-    def scenario(self) -> Scenario:
-        """What was simulated."""
-
-    @property
-    def time(self) -> Real:
-        """Sampling instants, shape (K,) [s]."""
-
-    @property
-    def pin(self) -> Real:
-        """Exact analog values at these instants, shape (K,) [V]."""
-
-    @property
-    def voltage(self) -> Real:
-        """The codes read back, shape (K,) [V]."""
-
-    @property
-    def overrange(self) -> NDArray[np.bool_]:
-        """Where the code was clipped, shape (K,)."""
-
-    @property
-    def grid(self) -> GridReport | None:
-        """How good a discrete model was; None in the exact mode."""
 
 
 @dataclass(frozen=True, eq=False)
@@ -135,9 +108,19 @@ class Subject:
         return self.finished.pin
 
     @cached_property
+    def held(self) -> Real:
+        """Voltages of the sampling capacitor, shape (K,) [V]; empty without an input network."""
+        return self.finished.held
+
+    @cached_property
     def voltage(self) -> Real:
         """The codes read back, shape (K,) [V]."""
         return self.finished.voltage
+
+    @cached_property
+    def codes(self) -> NDArray[np.int64]:
+        """Codes, shape (K,) [counts]."""
+        return self.finished.codes
 
     @cached_property
     def overrange(self) -> NDArray[np.bool_]:

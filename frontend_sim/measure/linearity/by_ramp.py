@@ -7,9 +7,10 @@ from numpy.typing import ArrayLike
 
 from frontend_sim.converter.adc import Adc
 from frontend_sim.errors import MeasureError
-from frontend_sim.measure.arrays import finite
+from frontend_sim.measure.arrays import codes_of, finite
 from frontend_sim.measure.linearity.confidence import deviate, width_confidence
 from frontend_sim.measure.linearity.histogram import code_density
+from frontend_sim.measure.linearity.in_order import misplaced, steps_unsure
 from frontend_sim.measure.linearity.linearity import Levels, Linearity, linearity_of
 from frontend_sim.measure.linearity.transitions import ideal_levels
 
@@ -28,9 +29,12 @@ def ramp_linearity(
     C[k] the samples below the change to code k: the change lies between two samples, and the
     middle is taken. Source: IEEE 1241, ramp histogram (from memory).
 
+    The confidence is the better one of two that hold: the binomial one of samples in any order, and
+    that of a ramp in the order of time, where only noise puts samples on the wrong side of a level.
+
     Parameters
     ----------
-    codes : shape (N,) [counts]
+    codes : in the order of time, shape (N,) [counts]
     adc : that they come from, for its range and codes
     span : lowest and highest voltage of the ramp among the samples, for gain and offset errors [V];
         left out, only INL and DNL are told, which do not depend on them
@@ -48,15 +52,17 @@ def ramp_linearity(
     total = density.total
     below = np.cumsum(density.counts[:-1])
     level = np.asarray(low + (high - low) * (below - 0.5) / (total - 1.0), dtype=np.float64)
-    share = below / total
-    spread = np.sqrt(share * (1.0 - share) / total)
-    levels = Levels(level, deviate(confidence) * (high - low) * spread, span is not None)
+    share, z = below / total, deviate(confidence)
+    any_order = z * total * np.sqrt(share * (1.0 - share) / total)
+    relative = codes_of(codes, 1) - density.lowest
+    in_order = steps_unsure(misplaced(relative, density.counts), z)
+    step = (high - low) / (total - 1.0)
+    levels = Levels(level, step * np.minimum(any_order, in_order), span is not None)
     inner = len(level) - 1
-    expected = np.full(inner, (below[-1] - below[0]) / (total * inner))
+    lsb = (below[-1] - below[0]) / inner
+    expected = np.full(inner, lsb / total)
+    binomial = width_confidence(density.counts[1:-1], expected, total, confidence)
+    ordered = np.maximum(in_order[:-1], in_order[1:]) / lsb
     return linearity_of(
-        density,
-        levels,
-        width_confidence(density.counts[1:-1], expected, total, confidence),
-        ideal_levels(adc, density),
-        confidence,
+        density, levels, np.minimum(binomial, ordered), ideal_levels(adc, density), confidence
     )

@@ -14,17 +14,28 @@ from frontend_sim.analog.discretize import METHODS
 from frontend_sim.analog.loading import unbuffered_notes
 from frontend_sim.analog.stages.curved_sensor import CurvedSensor
 from frontend_sim.converter import AnyAdc
+from frontend_sim.converter.sinc_quantities import SincQuantities
 from frontend_sim.errors import ModelError
-from frontend_sim.measure.noise_budget import NoiseBudget, noise_budget
+from frontend_sim.measure.acquisition import Acquisition
+from frontend_sim.measure.circuit_noise import circuit_noise
+from frontend_sim.measure.look_weights import LookWeights
+from frontend_sim.measure.noise_budget import NoiseBudget
+from frontend_sim.measure.response.amplifiers import AmplifierResponse, amplifiers_of
 from frontend_sim.measure.response.frequency_domain import FrequencyDomain
 from frontend_sim.measure.response.grid_model import GridModel
+from frontend_sim.measure.response.large_signal import LargeSignal
 from frontend_sim.measure.response.loading import Loading, loading_of
 from frontend_sim.measure.response.model_distance import Exact, ModelDistance, model_distance
+from frontend_sim.measure.response.pin_level import PinLevel
 from frontend_sim.measure.response.pole import Pole, poles_of
 from frontend_sim.measure.response.step_response import StepResponse
 from frontend_sim.measure.response.time_domain import TimeDomain
+from frontend_sim.scenario.amplifier_notes import amplifier_notes
 from frontend_sim.scenario.circuit import circuit_of, stages_of
 from frontend_sim.scenario.model import Scenario
+
+ZERO_CELSIUS = 273.15
+"""0 degC [K]."""
 
 
 @dataclass(frozen=True, eq=False)
@@ -42,7 +53,12 @@ class Inspection:
     poles : stage by stage
     models : how far zoh, foh and bilinear lie from exact, at the grid rate
     loading : what the sections of ladders do to each other
+    amplifiers : what real amplifiers do to their stages: corners, Q, stop band
+    level : what the pin rests at, and the stimulus that reaches the ends of the range
+    large_signal : what slew rates do to large signals; None if no stage has one
+    filter : what the converter's own filter does; None where a code is one look
     noise : where the noise at the pin comes from; None where a pole at the origin gathers it
+    acquisition : how the converter's input network settles; None where it has none
     notes : what the reader should know beside the numbers
     response : the step response, for plots
     grid_models : the discrete models, for plots
@@ -57,10 +73,15 @@ class Inspection:
     poles: tuple[Pole, ...]
     models: tuple[ModelDistance, ...]
     loading: tuple[Loading, ...]
+    amplifiers: tuple[AmplifierResponse, ...]
+    level: PinLevel
+    large_signal: LargeSignal | None
+    filter: SincQuantities | None
     noise: NoiseBudget | None
     notes: tuple[str, ...]
     response: StepResponse = field(repr=False)
     grid_models: tuple[GridModel, ...] = field(repr=False)
+    acquisition: Acquisition | None = None
 
     def as_dict(self) -> dict[str, Any]:
         """Return plain data for JSON: SI units, None for what is not there.
@@ -91,6 +112,10 @@ def inspect_scenario(scenario: Scenario) -> Inspection:
     time = TimeDomain.of(response, frequency.largest.value, adc)
     grid_models, models = _models(scenario, response, time, frequency)
     noise, about_noise = _noise(scenario, chain)
+    stages = stages_of(scenario)
+    zero = ZERO_CELSIUS if scenario.stimulus_unit == "K" else 0.0
+    level = PinLevel.of(chain, stages, adc, scenario.environment.temperature, zero)
+    small = next((each.time for each in time.settlings if each.label == "0.5 LSB"), None)
     return Inspection(
         scenario.title,
         adc,
@@ -100,11 +125,20 @@ def inspect_scenario(scenario: Scenario) -> Inspection:
         frequency,
         poles_of(chain),
         models,
-        loading_of(stages_of(scenario), adc.rate),
+        loading_of(stages, adc.rate),
+        amplifiers_of(stages),
+        level,
+        LargeSignal.of(scenario, chain, stages, level, small),
+        _filter_of(adc),
         noise,
-        (*_notes(scenario, time, frequency), *about_noise),
+        (
+            *_notes(scenario, time, frequency),
+            *amplifier_notes(scenario, stages),
+            *about_noise,
+        ),
         response,
         grid_models,
+        Acquisition.of(scenario),
     )
 
 
@@ -112,7 +146,7 @@ def _noise(scenario: Scenario, chain: Chain) -> tuple[NoiseBudget | None, tuple[
     """Return the noise budget, down to a tenth of the reciprocal of the run's length, and notes."""
     duration = scenario.simulation.duration or scenario.stimulus.known_length() or 1.0
     try:
-        budget = noise_budget(chain, scenario.adc, 0.1 / duration)
+        budget = circuit_noise(scenario, chain, 0.1 / duration)
     except ModelError as error:
         return None, (f"there is no noise budget: {error}",)
     if not budget.unbounded:
@@ -121,6 +155,14 @@ def _noise(scenario: Scenario, chain: Chain) -> tuple[NoiseBudget | None, tuple[
         "nothing limits the bandwidth of these noise sources before the converter, so the part "
         f"that reaches it directly is left out of the budget: {', '.join(budget.unbounded)}",
     )
+
+
+def _filter_of(adc: AnyAdc) -> SincQuantities | None:
+    """Return what the converter's filter does, an average being one of first order."""
+    if adc.kind == "oversampling":
+        return adc.quantities()
+    sinc = LookWeights.of(adc).sinc
+    return None if sinc is None else SincQuantities.of(sinc, False)
 
 
 def grid_rate_of(scenario: Scenario) -> float:

@@ -2,9 +2,9 @@
 
 from __future__ import annotations
 
-from typing import ClassVar
+from typing import Any, ClassVar
 
-from pydantic import Field
+from pydantic import Field, SerializerFunctionWrapHandler, model_serializer
 
 from frontend_sim.quantities import Time
 from frontend_sim.values import Value
@@ -23,6 +23,18 @@ class Check(Value):
     name: str = Field(
         default="", max_length=60, description="name of the check in tables, plots and records"
     )
+    channel: str | None = Field(
+        default=None,
+        description="channel of a scan that must hold; left out, each of them must",
+    )
+
+    @model_serializer(mode="wrap")
+    def _without_empty_channel(self, handler: SerializerFunctionWrapHandler) -> dict[str, Any]:
+        """Leave the channel out where there is none: the digest of a scenario never had it."""
+        values: dict[str, Any] = handler(self)
+        if values.get("channel", "") is None:
+            del values["channel"]
+        return values
 
     def latest(self) -> tuple[str, float] | None:
         """Return the key of the latest instant that is asked about, and the instant [s]."""

@@ -8,7 +8,7 @@ from pydantic import Field, model_validator
 
 from frontend_sim.quantities import Time, Voltage
 from frontend_sim.scenario.checks.base import PointCheck
-from frontend_sim.scenario.rules import fault
+from frontend_sim.scenario.checks.bounds import refuse_bounds
 
 
 class LevelCheck(PointCheck):
@@ -23,13 +23,5 @@ class LevelCheck(PointCheck):
 
     @model_validator(mode="after")
     def _some_limit(self) -> Self:
-        if self.at_least is None and self.at_most is None:
-            raise fault([], "no limit; give at_least, at_most or both")
-        both = self.at_least is not None and self.at_most is not None
-        if both and self.at_least > self.at_most:  # type: ignore[operator]  # neither is None
-            raise fault(
-                ["at_least"],
-                f"at_least {self.at_least:g} V lies above at_most {self.at_most:g} V; exchange "
-                "them, or correct one",
-            )
+        refuse_bounds(self.at_least, self.at_most, "V")
         return self

@@ -52,6 +52,17 @@ def test_headroom_in_every_unit(limit: str, value: float) -> None:
     assert found.verdict == "holds"
 
 
+def test_less_gain_may_need_a_shift_too() -> None:
+    """0 V to 3.2 V, 0.2 V to either end of 3.3 V: 2.9 V / 3.2 V of the gain, and up by 0.2 V."""
+    step = {"kind": "step", "after": 3.2, "at": "1 ms"}
+    limit = {"kind": "headroom", "at_least": "200 mV"}
+    (found,) = verdicts(limit, stimulus=step)
+    assert found.advice.startswith("lower the gain by 9.4 % and shift the level up by 200 mV")
+    mended = {"kind": "step", "before": 0.2001, "after": 0.2001 + 2.9 * 0.9999, "at": "1 ms"}
+    (holds,) = verdicts(limit, stimulus=mended, chain=[])
+    assert holds.verdict == "holds"
+
+
 def test_headroom_tells_what_to_shift() -> None:
     """0.3 V above are 0.2 V too little, and there is room below."""
     step = {"kind": "step", "before": 1.0, "after": 3.0, "at": "1 ms"}

@@ -22,6 +22,7 @@ ROOT = Path(__file__).resolve().parents[3] / "scenarios" / "checks"
 
 # Values of the checks of each example, in its own unit, to 1e-6.
 PINNED: dict[str, tuple[float, ...]] = {
+    "acquisition": (0.3088343, 0.007375105, 0.0),
     "alias-attenuation": (
         128.4045,
         181.426,
@@ -43,6 +44,15 @@ PINNED: dict[str, tuple[float, ...]] = {
     "sinad": (73.43778,),
     "snr": (73.4163,),
     "thd": (-97.55549,),
+    "alias-error": (1.562773,),
+    "total-error": (0.008316349,),
+    "dnl": (0.1123815,),
+    "inl": (0.7614363,),
+    "recovery": (0.00075,),
+    "latency": (0.000531,),
+    "delay": (0.0001646772,),
+    "rise-time": (0.0002197225,),
+    "undershoot": (0.2990381,),
 }
 
 
@@ -192,7 +202,7 @@ def test_blocks_do_not_show(tmp_path: Path) -> None:
 
 def test_evaluations_are_whole() -> None:
     """Every row of the table has a function and names arrays of a run."""
-    names = {"time", "pin", "voltage", "overrange"}
+    names = {"time", "pin", "held", "codes", "voltage", "overrange"}
     for kind, row in EVALUATIONS.items():
         assert callable(row.measure), kind
         assert set(row.columns) <= names

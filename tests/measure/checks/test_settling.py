@@ -121,10 +121,20 @@ def test_the_last_event_far_back_is_found() -> None:
     (found,) = verdicts(check(within="1 %"), stimulus=at_once, simulation={"duration": "10 s"})
     assert found.value == pytest.approx(TAU * math.log(100.0), rel=1e-9)
     settled = {"kind": "step", "before": "1 V", "after": "1 V"}
-    (nothing,) = verdicts(check(), stimulus=settled)
-    assert nothing.value == 0.0
     (from_rest,) = verdicts(check(within="1 %"), stimulus=settled, simulation={"initial": "rest"})
     assert from_rest.value == pytest.approx(TAU * math.log(100.0), rel=1e-9)
+
+
+@pytest.mark.parametrize("still", [{"before": "1 V", "after": "1 V"}, {"after": "1 V", "at": 1.0}])
+def test_nothing_settles_where_nothing_changes(still: dict[str, Any]) -> None:
+    """A step of nothing, or one after the end of the run, is told, and no wait holds for it."""
+    stimulus = {"kind": "step", **still}
+    with pytest.raises(ScenarioError, match="nothing to settle"):
+        refuse_impossible(made(check(), stimulus=stimulus))
+    (found,) = verdicts(check(), stimulus=stimulus)
+    assert (found.verdict, found.value) == ("fails", None)
+    (after,) = verdicts(check(after="1 ms"), stimulus=stimulus)
+    assert (after.verdict, after.value) == ("holds", 0.0)
 
 
 def test_terms_of_a_sum_all_count() -> None:

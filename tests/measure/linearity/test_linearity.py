@@ -124,6 +124,42 @@ def test_by_ramp():
     assert np.array_equal(falling.dnl, found.dnl)
 
 
+@pytest.mark.parametrize("noise", [0.0, 0.05, 0.3, 2.0])
+@pytest.mark.parametrize("way", [1, -1])
+def test_confidence_of_a_ramp_in_order(noise, way):
+    """98 % of all levels and widths lie within the 99 % interval, which a slow ramp makes narrow.
+
+    With s = 100 samples for each code and ``noise`` LSB rms, sum min(p, 1 - p) = 2 noise s / sqrt(2
+    pi) samples lie on the wrong side of a level.
+    """
+    inside, widths = [], []
+    for seed in range(4):
+        levels, rng = bent(seed), np.random.default_rng(40 + seed)
+        voltages = np.linspace(-1.02, 1.02, 26_000)[::way]
+        voltages = voltages + noise * ADC.lsb * rng.standard_normal(len(voltages))
+        found = ramp_linearity(codes(levels, voltages), ADC, span=(-1.02, 1.02))
+        dnl, inl = end_point(levels)
+        first = int(found.codes[0]) - 1
+        if first or len(found.inl_end_point) != len(inl):
+            continue
+        inside += list(np.abs(found.inl_end_point - inl) <= found.inl_confidence)
+        widths += list(np.abs(found.dnl - dnl) <= found.dnl_confidence)
+        wrong = 2.0 * noise * 100.0 / np.sqrt(2.0 * np.pi)
+        bound = (1.0 + 2.576 * np.sqrt(2.0 * wrong)) / 100.0
+        assert np.median(found.inl_confidence) == pytest.approx(bound, rel=0.15)
+    assert np.mean(inside) >= 0.98
+    assert np.mean(widths) >= 0.98
+
+
+def test_confidence_of_a_ramp_at_random_instants():
+    """Without order the binomial interval counts, as for a sine, and no narrower one."""
+    rng = np.random.default_rng(5)
+    found = ramp_linearity(codes(bent(2), rng.uniform(-1.1, 1.1, 100_000)), ADC)
+    share = np.cumsum(np.full(255, 1.0 / 281.6)) + 12.8 / 281.6
+    expected = 2.576 * np.sqrt(share * (1.0 - share) / 100_000) * 281.6
+    np.testing.assert_allclose(found.inl_confidence[100:150], expected[100:150], rtol=0.02)
+
+
 @pytest.mark.parametrize("rounding", ["nearest", "down"])
 @pytest.mark.parametrize("low", [-2.0, 0.0])
 def test_gain_and_offset_are_those_of_the_converter(rounding, low):

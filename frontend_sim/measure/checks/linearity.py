@@ -1,0 +1,98 @@
+"""Evaluates INL and DNL by counting the codes of the run."""
+
+from __future__ import annotations
+
+from typing import Any
+
+import numpy as np
+
+from frontend_sim.errors import MeasureError
+from frontend_sim.measure.checks.answer import Answer
+from frontend_sim.measure.checks.subject import Subject
+from frontend_sim.measure.linearity import Linearity, ramp_linearity, sine_linearity
+from frontend_sim.measure.result import Result
+from frontend_sim.scenario.checks.dnl import DnlCheck
+from frontend_sim.scenario.checks.inl import InlCheck, LinearityCheck
+
+KNOWN = {"sine": "sine", "ramp": "ramp"}
+"""Stimuli that say by themselves how their codes are counted."""
+
+SOURCES = {
+    "sine": "Doernberg, Lee and Hodges 1984",
+    "ramp": "IEEE 1241, ramp histogram, from memory",
+}
+
+
+def inl(check: InlCheck, subject: Subject) -> Answer:
+    """Return the largest distance of a code level from the line, to either side.
+
+    Raises
+    ------
+    MeasureError
+        If the codes are too few, or clip nowhere near enough of the range.
+    """
+    found = linearity_in(check, subject)
+    end_point = check.line == "end-point"
+    row = found.inl_end_point if end_point else found.inl_best_fit
+    worst = int(np.argmax(np.abs(row)))
+    where = int(found.codes[0]) - 1 + worst
+    by = method_of(check, subject)
+    return _answer(check, by, found, abs(float(row[worst])), found.inl_confidence[worst], where)
+
+
+def dnl(check: DnlCheck, subject: Subject) -> Answer:
+    """Return the largest distance of a code's width from one LSB. Raises as ``inl``."""
+    found = linearity_in(check, subject)
+    worst = int(np.argmax(np.abs(found.dnl)))
+    where = int(found.codes[worst])
+    by = method_of(check, subject)
+    return _answer(check, by, found, abs(found.worst_dnl), found.dnl_confidence[worst], where)
+
+
+def linearity_possible(check: LinearityCheck, subject: Subject) -> None:
+    """Refuse a stimulus that does not say how its codes are counted. Raises MeasureError."""
+    method_of(check, subject)
+
+
+def method_of(check: LinearityCheck, subject: Subject) -> str:
+    """Return "sine" or "ramp": as the check says, or else as the stimulus is."""
+    kind = str(getattr(subject.scenario.stimulus, "kind", ""))
+    found = check.by or KNOWN.get(kind)
+    if found is None:
+        raise MeasureError(
+            f"a stimulus of kind {kind!r} does not say how its codes are counted; set by to "
+            '"sine" or "ramp", or take a sine or a ramp over the whole range'
+        )
+    return found
+
+
+def linearity_in(check: LinearityCheck, subject: Subject) -> Linearity:
+    """Return the linearity of the codes from an instant on; once for all checks that ask alike."""
+    by = method_of(check, subject)
+    key = ("linearity", by, check.after)
+    if key not in subject.kept:
+        codes = subject.codes[subject.first_after(check.after) :]
+        adc: Any = subject.adc
+        count = sine_linearity if by == "sine" else ramp_linearity
+        subject.kept[key] = count(codes, adc)
+    found: Linearity = subject.kept[key]
+    return found
+
+
+def _answer(
+    check: InlCheck | DnlCheck, by: str, found: Linearity, value: float, half: float, where: int
+) -> Answer:
+    beside = (
+        Result("confidence", float(half), "LSB", method=f"half, at {found.confidence:.0%}"),
+        Result("at code", float(where), "counts", method="where it is largest"),
+        Result("missing codes", float(len(found.missing)), "codes", method="never seen between"),
+    )  # fmt: skip
+
+    def advice() -> str:
+        return (
+            f"take a more linear converter, or correct the codes by a table: code {where} is the "
+            f"furthest off, known to ± {half:.2g} LSB"
+        )
+
+    method = f"counting the codes of a {by}; {SOURCES[by]}"
+    return Answer(value, "LSB", check.at_most, "at most", method, advice, beside)

@@ -1,0 +1,7 @@
+"""The error of codes against the quantity that arrived, with its parts."""
+
+from frontend_sim.measure.error.ideal import Ideal
+from frontend_sim.measure.error.part import Part
+from frontend_sim.measure.error.total import TotalError, total_error
+
+__all__ = ["Ideal", "Part", "TotalError", "total_error"]

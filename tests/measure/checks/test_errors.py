@@ -1,0 +1,126 @@
+"""Alias error, total error, INL and DNL as checks."""
+
+from __future__ import annotations
+
+import math
+from pathlib import Path
+from typing import Any
+
+import numpy as np
+import pytest
+from checked import FILTER, TAU, beside, made, verdicts
+from pydantic import ValidationError
+
+from frontend_sim.errors import ScenarioError
+from frontend_sim.measure.checks import refuse_impossible
+
+TWO = {
+    "kind": "tones",
+    "tone": [{"amplitude": 1, "frequency": 400}, {"amplitude": "50 mV", "frequency": "47.3 kHz"}],
+    "offset": "1.6 V",
+}
+WHOLE = {"adc": {"rate": "100 kHz", "bits": 8, "high": 2.5}, "chain": []}
+RAMP = {"kind": "ramp", "before": "-0.1 V", "slope": "5.4 V/s"}
+
+
+def test_alias_error_of_a_line() -> None:
+    """|H| of one section times the line's peak value; over a few turns its rms is that / sqrt 2."""
+    gain = 1.0 / math.hypot(1.0, 2.0 * math.pi * 47.3e3 * TAU)
+    (peak,) = verdicts({"kind": "alias-error", "at_most": "10 LSB", "after": "1 ms"}, stimulus=TWO)
+    lsb = 3.3 / 4096
+    assert peak.value == pytest.approx(0.05 * gain / lsb, rel=0.01)
+    (rms,) = verdicts(
+        {"kind": "alias-error", "at_most": "10 mV", "quantity": "rms", "after": "1 ms"},
+        stimulus=TWO,
+    )
+    assert rms.value == pytest.approx(0.05 * gain / math.sqrt(2.0), rel=0.01)
+    (before,) = verdicts({"kind": "alias-error", "at_most": "1 LSB", "point": "stimulus"},
+                         stimulus=TWO)  # fmt: skip
+    assert before.value == pytest.approx(0.05 / lsb, rel=0.01)
+    assert "'tones, tone 2' at 47.3 kHz, which lands at 7.3 kHz" in before.advice
+
+
+def test_a_slow_recording_is_no_proof(tmp_path: Path) -> None:
+    """Told before any run; with interference beside it, the question has an answer."""
+    np.save(tmp_path / "slow.npy", np.linspace(0.0, 1.0, 400))
+    slow = {"kind": "recording", "file": str(tmp_path / "slow.npy"), "rate": "10 kHz"}
+    check = {"kind": "alias-error", "at_most": "1 LSB"}
+    with pytest.raises(ScenarioError, match="the recording cannot show aliasing"):
+        refuse_impossible(made(check, stimulus=slow))
+    hum = {"kind": "sine", "amplitude": "1 mV", "frequency": "33 kHz"}
+    both = made(check, stimulus={"kind": "sum", "term": [slow, hum]})
+    refuse_impossible(both)
+
+
+def test_total_error_and_what_it_names() -> None:
+    """A converter 1 % off: the gain is the largest part, and the share is one of the range."""
+    level = {"kind": "step", "before": "2 V", "after": "2 V"}
+    check = {"kind": "total-error", "at_most": "0.1 %"}
+    (found,) = verdicts(check, stimulus=level, adc={"gain_error": "1 %"})
+    assert (found.unit, found.verdict) == ("1", "fails")
+    assert found.value == pytest.approx(0.02 / 3.3, abs=0.5 / 4096)
+    assert found.advice.startswith("calibrate the gain")
+    gain = beside("total-error: gain", check, stimulus=level, adc={"gain_error": "1 %"})
+    assert gain == pytest.approx(0.02 / 3.3 * 4096, rel=1e-9)
+    # Firmware that knows the gain and an offset reads the right value.
+    (known,) = verdicts({**check, "gain": 1.01}, stimulus=level, adc={"gain_error": "1 %"})
+    assert known.verdict == "holds"
+    (shifted,) = verdicts({**check, "offset": "0.5 V"}, stimulus=level)
+    assert shifted.value == pytest.approx(0.5 / 3.3, abs=0.5 / 4096)
+
+
+def test_total_error_refuses_a_chain_without_gain() -> None:
+    """Told before any run, and with a gain it is answered."""
+    coupled = [{"kind": "rc-highpass", "resistance": "100k", "capacitance": "1u"}]
+    check = {"kind": "total-error", "at_most": "50 %"}
+    with pytest.raises(ScenarioError, match="give gain, that of the pass band"):
+        refuse_impossible(made(check, chain=coupled))
+    refuse_impossible(made({**check, "gain": 1}, chain=coupled))
+    with pytest.raises(ValidationError, match="a gain of 0"):
+        made({**check, "gain": 0})
+
+
+@pytest.mark.parametrize("line", ["end-point", "best-fit"])
+def test_inl_of_a_bow(line: str) -> None:
+    """A parabola of 2 LSB: that from end to end, half of it... 4/3 less from the nearest line.
+
+    The nearest line to a parabola of height h lies h · 2/3 above its ends, so at most that is left.
+    """
+    adc = {**WHOLE["adc"], "nonlinearity": {"shape": "bow", "peak": "2 LSB"}}
+    (found,) = verdicts(
+        {"kind": "inl", "at_most": "1 LSB", "line": line},
+        stimulus=RAMP, chain=[], adc=adc, simulation={"duration": "0.5 s"},
+    )  # fmt: skip
+    expected = 2.0 if line == "end-point" else 4.0 / 3.0
+    assert found.value == pytest.approx(expected, abs=0.06)
+    assert (found.unit, found.verdict) == ("LSB", "fails")
+    assert "correct the codes by a table" in found.advice
+    assert found.method == "counting the codes of a ramp; IEEE 1241, ramp histogram, from memory"
+    # A clean ramp of 5.4 V/s at 100 kHz moves by 54 uV, 1/181 LSB; both levels together know that.
+    half = beside(
+        "inl: confidence", {"kind": "inl", "at_most": "1 LSB", "line": line},
+        stimulus=RAMP, chain=[], adc=adc, simulation={"duration": "0.5 s"},
+    )  # fmt: skip
+    assert half < 2.0 / 181.0
+
+
+def test_dnl_by_sine_and_by_ramp() -> None:
+    """A bow of 2 LSB makes codes at the ends 8/256 LSB too wide or too narrow; both ways tell."""
+    adc = {**WHOLE["adc"], "nonlinearity": {"shape": "bow", "peak": "2 LSB"}}
+    sine = {"kind": "sine", "amplitude": "1.4 V", "offset": "1.25 V", "frequency": "997.137 Hz"}
+    for stimulus in (RAMP, sine):
+        tables: dict[str, Any] = {"stimulus": stimulus, "chain": [], "adc": adc}
+        (found,) = verdicts(
+            {"kind": "dnl", "at_most": "0.5 LSB"}, **tables, simulation={"duration": "0.5 s"}
+        )
+        assert found.value == pytest.approx(8.0 / 256.0, abs=0.03)
+
+
+def test_how_codes_are_counted_must_be_known() -> None:
+    """A step says nothing; two tones do not either, until the check does."""
+    with pytest.raises(ScenarioError, match="does not say how its codes are counted"):
+        refuse_impossible(made({"kind": "inl", "at_most": "1 LSB"}))
+    refuse_impossible(made({"kind": "inl", "at_most": "1 LSB", "by": "ramp"}))
+    (few,) = verdicts({"kind": "dnl", "at_most": "1 LSB", "by": "sine"}, chain=[FILTER])
+    assert few.verdict == "fails"
+    assert few.value is None

@@ -1,0 +1,217 @@
+"""The total error of codes, and the parts that add up to it."""
+
+from __future__ import annotations
+
+import math
+from pathlib import Path
+from typing import Any
+
+import numpy as np
+import pytest
+
+import frontend_sim as fe
+from frontend_sim.errors import MeasureError
+from frontend_sim.measure.error import Ideal, total_error
+from frontend_sim.scenario import Scenario
+
+ROOT = Path(__file__).resolve().parents[3] / "scenarios"
+LEVEL = {"kind": "step", "before": 1.0, "after": 1.0}
+ADC = {"rate": 1000, "bits": 16, "low": -4, "high": 4}
+
+
+def made(**tables: Any) -> Scenario:
+    """Return a scenario of a constant volt before a converter; arguments replace its tables."""
+    values = {"stimulus": LEVEL, "adc": ADC, "simulation": {"duration": "1 s"}, **tables}
+    return Scenario.model_validate(values)
+
+
+def parts_of(scenario: Scenario, **given: float) -> dict[str, Any]:
+    """Run, and return the parts by name, with the sum of them held against the total."""
+    found = total_error(fe.simulate(scenario), **given)
+    total = sum(part.volts for part in found.parts)
+    np.testing.assert_allclose(total, found.volts, rtol=0.0, atol=1e-14 * found.total.peak)
+    return {"total": found.total, **{part.name: part for part in found.parts}}
+
+
+SOME = (
+    "well_pump_valve_slam", "underdamped_section", "converter/averaging", "converter/bow",
+    "converter/clock", "converter/dither", "converter/oversampling", "converter/reference",
+    "converter/restarted",
+    "converter/input-network", "stages/clamp", "stages/rc-highpass", "stages/rtd",
+    "stages/slew-limit", "stages/thermistor", "stages/transport-delay", "stimuli/chirp",
+    "stimuli/noise-burst", "stimuli/pulse", "stimuli/recording", "stimuli/sum",
+)  # fmt: skip
+
+
+@pytest.mark.parametrize("name", SOME)
+def test_parts_add_up(name: str) -> None:
+    """Code by code, for stages, stimuli and converters of all sorts among the examples."""
+    scenario = fe.load_scenario(ROOT / f"{name}.toml")
+    gain = None
+    try:
+        Ideal.of(scenario)
+    except MeasureError:
+        gain = 1.0
+    found = total_error(fe.simulate(scenario), gain)
+    total = sum(part.volts for part in found.parts)
+    np.testing.assert_allclose(total, found.volts, rtol=0.0, atol=1e-14 * found.total.peak)
+    squares = sum(part.rms**2 for part in found.parts)
+    assert found.total.rms**2 == pytest.approx(squares + found.remainder, rel=1e-9, abs=1e-30)
+
+
+def test_gain_and_offset() -> None:
+    """(1 + 1 %) (2 · 1 V + 3 mV) + 5 mV - 2 V: gain and offset of chain and converter."""
+    found = parts_of(
+        made(
+            chain=[
+                {"kind": "noninverting-amplifier", "gain": 2, "offset_voltage": "1.5 mV"},
+            ],
+            adc={**ADC, "bits": 32, "gain_error": "1 %", "offset": "5 mV"},
+        )
+    )
+    # The converter multiplies the offset of the chain too; that counts as gain.
+    assert found["gain"].mean == pytest.approx(0.01 * 2.003, abs=1e-8)
+    assert found["offset"].mean == pytest.approx(3e-3 + 5e-3, abs=1e-8)
+    assert found["total"].mean == pytest.approx(0.02003 + 8e-3, abs=1e-8)
+
+
+def test_drift_is_gain() -> None:
+    """A divider of two parts, one of which drifts: the nominal gain is that at 25 degC."""
+    chain = [
+        {
+            "kind": "inverting-amplifier",
+            "input_resistance": "10k",
+            "feedback_resistance": {"value": "10k", "drift": "100 ppm/K"},
+        }
+    ]
+    found = parts_of(
+        made(chain=chain, adc={**ADC, "bits": 32}, environment={"temperature": "75 degC"})
+    )
+    assert found["gain"].mean == pytest.approx(-50.0 * 100e-6, rel=1e-6)
+
+
+def test_settling_of_a_step() -> None:
+    """One section: -exp(-t/T) of the step, once band limit and aliasing are put together."""
+    found = parts_of(
+        made(
+            stimulus={"kind": "step", "after": 1.0, "at": "100.2 ms"},
+            chain=[{"kind": "rc-lowpass", "resistance": "10k", "capacitance": "1u"}],
+            adc={**ADC, "bits": 32},
+        )
+    )
+    time = np.arange(1000) / 1000.0
+    lag = np.where(time > 0.1002, -np.exp(-(time - 0.1002) / 0.01), 0.0)
+    together = sum(found[name].volts for name in ("settling", "aliasing", "beyond half the rate"))
+    np.testing.assert_allclose(together, lag, rtol=0.0, atol=1e-9)
+
+
+def test_timing() -> None:
+    """A clock 100 ppm slow: the slope of a ramp times the time by which it lags."""
+    found = parts_of(
+        made(
+            stimulus={"kind": "ramp", "slope": "1 V/s"},
+            adc={**ADC, "bits": 32, "rate_error": "-100 ppm", "aperture_delay": "1 us"},
+        )
+    )
+    k = np.arange(len(found["timing"].volts))
+    late = k / 1000.0 * (1.0 / (1.0 - 1e-4) - 1.0) + 1e-6
+    np.testing.assert_allclose(found["timing"].volts, late, rtol=0.0, atol=1e-12)
+
+
+def test_noise_and_rounding() -> None:
+    """Noise has its rms, rounding 1/sqrt(12) LSB (Bennett 1948, from memory), each within 5 %."""
+    found = parts_of(made(adc={**ADC, "rate": 20e3, "input_noise": "1 mV"}))
+    lsb = 8.0 / 2**16
+    assert found["noise"].rms == pytest.approx(1e-3, rel=0.05)
+    assert found["quantization"].rms == pytest.approx(lsb / math.sqrt(12.0), rel=0.05)
+
+
+def test_clipping() -> None:
+    """A volt in a range to 0.5 V: all that is beyond the top code."""
+    found = parts_of(made(adc={"rate": 1000, "bits": 16, "low": -0.5, "high": 0.5}))
+    assert found["clipping"].mean == pytest.approx(-0.5 - 2.0**-16, abs=1e-12)
+    assert found["quantization"].peak < 1e-12
+
+
+def test_nonlinearity_of_the_converter() -> None:
+    """A bow of 6 LSB in the middle of the range."""
+    bow = {"shape": "bow", "peak": "6 LSB"}
+    found = parts_of(
+        made(stimulus={"kind": "step", "before": 0, "after": 0}, adc={**ADC, "nonlinearity": bow})
+    )
+    assert abs(found["nonlinearity"].mean) == pytest.approx(6.0 * 8.0 / 2**16, rel=0.2)
+
+
+def test_aliasing_is_the_alias_error() -> None:
+    """A tone above half the rate: what comes through is aliasing, what is kept out is no error.
+
+    The codes stand for the stimulus under a perfect band limit, so an ideal filter has no settling
+    error; without any filter the two parts cancel.
+    """
+    tone = {"kind": "sine", "amplitude": 1.0, "frequency": 733.0}
+    open_ = parts_of(made(stimulus=tone, adc={**ADC, "bits": 32}))
+    np.testing.assert_allclose(
+        open_["aliasing"].volts, -open_["beyond half the rate"].volts, atol=1e-9
+    )
+    assert open_["settling"].peak < 1e-9
+    assert open_["total"].peak < 1e-8
+
+
+def test_the_ideal() -> None:
+    """The line of a sensor with a curve is its tangent; a chain that blocks dc needs a gain."""
+    scenario = fe.load_scenario(ROOT / "stages" / "rtd.toml")
+    found = Ideal.of(scenario)
+    assert found.unit == "K"
+    # At the operating point the tangent meets the curve.
+    sensor: Any = scenario.chain[0]
+    at = sensor.operating_point()
+    gain = found.gain / float(sensor.slope())
+    assert found.gain * at + found.offset == pytest.approx(
+        gain * float(sensor.output(np.array([at]))[0]), rel=1e-9
+    )
+    ecg = [{"kind": "rc-highpass", "resistance": 1e6, "capacitance": 1e-6}]
+    run = fe.simulate(made(chain=ecg))
+    with pytest.raises(MeasureError, match="give gain, that of the pass band"):
+        total_error(run)
+    assert total_error(run, gain=1.0).ideal.gain == 1.0
+
+
+def test_from_an_instant_on() -> None:
+    """What comes before counts no more; an instant behind the end is refused."""
+    scenario = made(
+        stimulus={"kind": "step", "after": 1.0, "at": "10 ms"},
+        chain=[{"kind": "rc-lowpass", "resistance": "10k", "capacitance": "100n"}],
+    )
+    found = total_error(fe.simulate(scenario))
+    later = found.after(0.5)
+    assert later.total.peak < found.lsb < found.total.peak
+    assert found.quantity(2e-3) == 2e-3
+    with pytest.raises(MeasureError, match="no conversion follows"):
+        found.after(2.0)
+
+
+@pytest.mark.parametrize("name", ["charge_memory", "sequential", "shared_amplifier"])
+def test_parts_add_up_in_a_scan(name: str) -> None:
+    """Every channel has parts of its own; what a shared stage holds is the change of channel."""
+    run: Any = fe.simulate(fe.load_scenario(ROOT / "scan" / f"{name}.toml"))
+    for channel in run.channels.values():
+        found = total_error(channel)
+        total = sum(part.volts for part in found.parts)
+        np.testing.assert_allclose(total, found.volts, rtol=0.0, atol=1e-12)
+        parts = {part.name: part for part in found.parts}
+        assert parts["quantization"].peak <= 0.5001 * found.lsb
+        shared = name == "shared_amplifier"
+        assert (parts["channel change"].peak > 0.1 * found.lsb) == shared
+
+
+def test_a_record_tells_the_same(tmp_path: Path) -> None:
+    """What was stored is enough: the scenario and the arrays of the run."""
+    run: Any = fe.simulate(fe.load_scenario(ROOT / "converter" / "input-network.toml"))
+    fe.save_record(run, tmp_path / "run.h5")
+    with fe.open_record(tmp_path / "run.h5") as record:
+        stored: Any = record
+        found = total_error(stored)
+    assert found.volts.tolist() == total_error(run).volts.tolist()
+    parts = {part.name: part for part in found.parts}
+    assert parts["acquisition"].peak > 1.0 * found.lsb
+    assert parts["quantization"].peak <= 0.5001 * found.lsb
