@@ -10,6 +10,8 @@ from frontend_sim.converter import AnyAdc
 
 FORMAT = "frontend_sim record"
 FORMAT_VERSION = 1
+SCAN_FORMAT_VERSION = 2
+"""Version of the record of a scan; that of one channel has stayed as it was."""
 
 SCENARIO = "scenario"
 RESOLVED = "resolved"
@@ -18,6 +20,7 @@ ADC = "adc"
 WAVEFORM = "waveform"
 MEASURE = "measure"
 CHECK = "check"
+CHANNEL = "channel"
 
 TIME = "time"
 """Name of the time axis within ``/adc`` and ``/waveform``."""
@@ -61,6 +64,20 @@ CONVERSIONS = (
         "overrange", "overrange", PLAIN, "whether the code was clipped", kind="?", compressed=True
     ),
 )
+
+STIMULUS = "stimulus"
+"""Name of the dataset, and of the field of ``RunBlock``, with what arrived at a sensor."""
+
+
+HELD = Column("held", "held", "V", "voltage of the sampling capacitor, before noise and rounding")
+"""Kept where the converter has an input network; the pin is then that without its load."""
+
+
+def stimulus_column(unit: str) -> Column:
+    """Return the column of a stimulus that is no voltage, of some SI unit."""
+    about = "physical quantity at the sensor, at the instant"
+    return Column(STIMULUS, STIMULUS, unit or PLAIN, about)
+
 
 WAVEFORM_TIME = Column(
     TIME, "waveform_time", "s", "time axis of all points of the chain", compressed=True

@@ -9,17 +9,18 @@ from typing import TYPE_CHECKING
 from frontend_sim.archive.layout import FORMAT
 from frontend_sim.archive.reading import reading
 from frontend_sim.archive.record import Record
+from frontend_sim.archive.scan_record import ScanRecord
 from frontend_sim.errors import RecordError, shortened
 
 if TYPE_CHECKING:
     import h5py
 
-READERS: dict[int, type[Record]] = {1: Record}
+READERS: dict[int, type[Record] | type[ScanRecord]] = {1: Record, 2: ScanRecord}
 """Format version -> its reader. A new version adds a row; the old rows stay."""
 
 
-def open_record(path: str | os.PathLike[str]) -> Record:
-    """Open a record; nothing but its head is read yet.
+def open_record(path: str | os.PathLike[str]) -> Record | ScanRecord:
+    """Open a record; nothing but its head is read yet. That of a scan has ``channels[name]``.
 
     Raises
     ------
@@ -35,6 +36,24 @@ def open_record(path: str | os.PathLike[str]) -> Record:
     except BaseException:
         file.close()
         raise
+
+
+def open_single_record(path: str | os.PathLike[str]) -> Record:
+    """Open the record of one channel, for what knows no scans.
+
+    Raises
+    ------
+    RecordError
+        As ``open_record``, or if it is the record of a scan.
+    """
+    record = open_record(path)
+    if isinstance(record, Record):
+        return record
+    record.close()
+    raise RecordError(
+        f"{path} is the record of a scan of {len(record.channels)} channels, and this takes the "
+        "record of one channel; in Python, open_record(...).channels[name] is one"
+    )
 
 
 def _refuse_no_hdf5(path: Path) -> None:

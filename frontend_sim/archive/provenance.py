@@ -4,14 +4,16 @@ from __future__ import annotations
 
 import os
 import platform
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass
+from functools import lru_cache
 from importlib.metadata import PackageNotFoundError, version
 from pathlib import Path
 from typing import Any
 
 from frontend_sim.errors import RecordingError
-from frontend_sim.scenario.model import Scenario, sha256_of
+from frontend_sim.scenario.model import sha256_of
+from frontend_sim.scenario.scan_scenario import AnyScenario
 
 PROGRAM = "frontend-sim"
 LIBRARIES = ("numpy", "scipy", "numba", "pydantic", "h5py")
@@ -51,15 +53,20 @@ class SourceFile:
         }
 
 
-def source_files(scenario: Scenario) -> tuple[SourceFile, ...]:
-    """Read size and digest of every file of the scenario. Raises RecordingError."""
-    return tuple(map(_source_file, scenario.files()))
+def source_files(
+    scenario: AnyScenario, sha256: Callable[[Path], str] = sha256_of
+) -> tuple[SourceFile, ...]:
+    """Read size and digest of every file of the scenario. Raises RecordingError.
+
+    ``sha256`` gives the digest of a file's content.
+    """
+    return tuple(_source_file(file, sha256) for file in scenario.files())
 
 
-def _source_file(file: Path) -> SourceFile:
+def _source_file(file: Path, sha256: Callable[[Path], str]) -> SourceFile:
     try:
         about = file.stat()
-        digest = sha256_of(file)
+        digest = sha256(file)
     except OSError as error:
         raise RecordingError(f"{file} cannot be read: {error.strerror or error}") from error
     return SourceFile(str(file), file.absolute(), about.st_size, digest, about.st_mtime_ns)
@@ -92,6 +99,7 @@ def versions() -> dict[str, str]:
     }
 
 
+@lru_cache(maxsize=32)
 def _version(distribution: str) -> str:
     try:
         return version(distribution)
@@ -99,11 +107,16 @@ def _version(distribution: str) -> str:
         return "unknown"
 
 
-def document(scenario: Scenario, files: Sequence[SourceFile], directory: Path) -> dict[str, Any]:
+def document(
+    scenario: AnyScenario,
+    files: Sequence[SourceFile],
+    directory: Path,
+    sha256: Callable[[Path], str] = sha256_of,
+) -> dict[str, Any]:
     """Return the content of ``/resolved`` of a record that will lie in a directory."""
     return {
         "scenario": scenario.resolved(),
-        "scenario_digest": scenario.digest(),
+        "scenario_digest": scenario.digest(sha256),
         "files": [file.entry(directory) for file in files],
         "versions": versions(),
         "platform": platform.platform(),

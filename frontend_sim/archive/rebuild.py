@@ -4,12 +4,16 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from pathlib import Path
-from typing import Any
+from typing import Any, TypeVar
 
 from pydantic import ValidationError
 
 from frontend_sim.errors import RecordError
 from frontend_sim.scenario.model import Scenario
+from frontend_sim.scenario.scan_scenario import ScanScenario
+from frontend_sim.values import Value
+
+AnyValue = TypeVar("AnyValue", bound=Value)
 
 
 def places(entry: Mapping[str, Any], record: Path) -> tuple[Path, ...]:
@@ -35,7 +39,7 @@ def first_there(entry: Mapping[str, Any], record: Path) -> Path:
 def rebuild(
     values: dict[str, Any], files: Mapping[str, Path], source: str, record: Path
 ) -> Scenario:
-    """Build a scenario from its resolved values.
+    """Build a scenario of one channel from its resolved values.
 
     Parameters
     ----------
@@ -51,10 +55,31 @@ def rebuild(
     InputError
         If a file of the stimulus cannot be read.
     """
+    return _rebuilt(Scenario, ("stimulus", "adc"), values, files, record).model_copy(
+        update={"source": source}
+    )
+
+
+def rebuild_scan(
+    values: dict[str, Any], files: Mapping[str, Path], source: str, record: Path
+) -> ScanScenario:
+    """Build the scenario of a scan from its resolved values, see ``rebuild``."""
+    found = _rebuilt(ScanScenario, ("channel", "adc"), values, files, record)
+    return found.model_copy(update={"source": source})
+
+
+def _rebuilt(
+    model: type[AnyValue],
+    keys: tuple[str, ...],
+    values: dict[str, Any],
+    files: Mapping[str, Path],
+    record: Path,
+) -> AnyValue:
+    """Return a value from its resolved form, with files renamed under some of its keys."""
     names = {name: str(path) for name, path in files.items()}
-    moved = {**values, **{key: _renamed(values[key], names) for key in ("stimulus", "adc")}}
+    moved = {**values, **{key: _renamed(values[key], names) for key in keys}}
     try:
-        scenario = Scenario.model_validate(moved)
+        return model.model_validate(moved)
     except ValidationError as error:
         first = error.errors()[0]
         key = ".".join(map(str, first["loc"]))
@@ -62,7 +87,6 @@ def rebuild(
             f"{record}: its scenario cannot be built again, {key}: {first['msg']}; it comes from "
             "another version of frontend-sim, or was changed"
         ) from error
-    return scenario.model_copy(update={"source": source})
 
 
 def _renamed(value: Any, names: Mapping[str, str]) -> Any:

@@ -2,14 +2,9 @@
 
 from __future__ import annotations
 
-import json
-from collections.abc import Iterator
-from contextlib import contextmanager
-from datetime import datetime
 from functools import cached_property
 from pathlib import Path
-from types import TracebackType
-from typing import TYPE_CHECKING, Any, Self
+from typing import TYPE_CHECKING, Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -17,13 +12,10 @@ from numpy.typing import NDArray
 from frontend_sim.archive import layout
 from frontend_sim.archive.grid import grid_of
 from frontend_sim.archive.names import point_name
-from frontend_sim.archive.reading import reading
 from frontend_sim.archive.rebuild import first_there, rebuild
-from frontend_sim.archive.table import get_table
-from frontend_sim.archive.verification import verify
+from frontend_sim.archive.stored import Stored
 from frontend_sim.archive.waveform import Waveforms
 from frontend_sim.errors import RecordError
-from frontend_sim.measure.result import Result, Verdict
 from frontend_sim.scenario.model import Scenario
 from frontend_sim.simulation.run import GridReport, Run, RunBlock
 
@@ -34,7 +26,7 @@ Real = NDArray[np.float64]
 Codes = NDArray[np.int64]
 
 
-class Record:
+class Record(Stored):
     """A stored run; a context manager, which closes the file at its end.
 
     It has the names of ``Run``, so that what reads a run reads a record as well. Each access to
@@ -50,26 +42,18 @@ class Record:
         RecordError
             If a part is missing, or the lengths differ along time.
         """
-        self.path = path
-        self._file = file
-        with self._reading("its head"):
-            head = dict(file.attrs)
-            self.format_version = int(head["format_version"])
-            self.title = str(head["title"])
-            self.created = datetime.fromisoformat(head["created"])
-            self.program_version = str(head["program_version"])
-            self.scenario_digest = str(head["scenario_digest"])
-            self.seed = int(head["seed"])
-            self.verdict: Verdict = head["verdict"]
+        super().__init__(path, file)
         self._refuse_incomplete()
 
     def _refuse_incomplete(self) -> None:
         with self._reading("its content"):
-            self._file[layout.SCENARIO], self._file[layout.RESOLVED], self._file[layout.NOTES]
-            conversions = self._file[layout.ADC]
+            self._file[layout.SCENARIO], self._file[layout.RESOLVED], self._group[layout.NOTES]
+            conversions = self._group[layout.ADC]
             groups = [[conversions[column.name] for column in layout.CONVERSIONS]]
-            if layout.WAVEFORM in self._file:
-                waveform = self._file[layout.WAVEFORM]
+            further = (layout.STIMULUS, layout.HELD.name)
+            groups[0] += [conversions[name] for name in further if name in conversions]
+            if layout.WAVEFORM in self._group:
+                waveform = self._group[layout.WAVEFORM]
                 groups.append([waveform[layout.TIME], *waveform.values()])
             for group in groups:
                 if any(dataset.shape != (len(group[0]),) for dataset in group):
@@ -78,27 +62,16 @@ class Record:
                         "record is damaged: restore it from a copy, or run its scenario again"
                     )
 
-    @contextmanager
-    def _reading(self, what: str) -> Iterator[None]:
-        with reading(self.path, what):
-            if not self._file:
-                raise RecordError(f"{self.path} is closed; open it again")
-            yield
-
     def _stretch(self, name: str, start: int = 0, stop: int | None = None) -> Any:
         with self._reading(name):
-            dataset = self._file[name]
+            dataset = self._group[name]
             return dataset[slice(*slice(start, stop).indices(len(dataset)))]
-
-    def _text(self, name: str) -> Any:
-        with self._reading(name):
-            return self._file[name].asstr()[()]
 
     @property
     def count(self) -> int:
         """Number of conversions."""
         with self._reading(layout.ADC):
-            return len(self._file[layout.ADC][layout.TIME])
+            return len(self._group[layout.ADC][layout.TIME])
 
     @property
     def time(self) -> Real:
@@ -130,6 +103,28 @@ class Record:
         flags: NDArray[np.bool_] = self._conversion("overrange")
         return flags
 
+    @property
+    def stimulus(self) -> Real:
+        """What arrived at the sensor at these instants, in the SI unit of the stimulus, shape (K,).
+
+        Empty where the stimulus is a voltage, and in records of a program that did not keep it.
+        """
+        values: Real = self._further(layout.STIMULUS)
+        return values
+
+    @property
+    def held(self) -> Real:
+        """Voltage of the sampling capacitor, before noise and rounding, shape (K,) [V].
+
+        Empty where the converter has no input network.
+        """
+        values: Real = self._further(layout.HELD.name)
+        return values
+
+    def _further(self, column: str, start: int = 0, stop: int | None = None) -> Any:
+        name = f"{layout.ADC}/{column}"
+        return self._stretch(name, start, stop) if self._has(name) else np.empty(0)
+
     def _conversion(self, field: str, start: int = 0, stop: int | None = None) -> Any:
         column = next(column for column in layout.CONVERSIONS if column.field == field)
         values = self._stretch(f"{layout.ADC}/{column.name}", start, stop)
@@ -142,6 +137,8 @@ class Record:
             column.field: self._conversion(column.field, first, last)
             for column in layout.CONVERSIONS
         }
+        fields["stimulus"] = self._further(layout.STIMULUS, first, last)
+        fields["held"] = self._further(layout.HELD.name, first, last)
         return RunBlock(start=first, waveform_time=np.empty(0), waveform={}, **fields)
 
     @property
@@ -156,51 +153,15 @@ class Record:
     def waveform(self) -> Waveforms:
         """Point of the chain -> its waveform [V], read when asked for."""
         with self._reading(layout.WAVEFORM):
-            group = self._file.get(layout.WAVEFORM, ())
+            group = self._group.get(layout.WAVEFORM, ())
             names = [name for name in group if name != layout.TIME]
         paths = {point_name(name): f"{layout.WAVEFORM}/{name}" for name in names}
         return Waveforms(paths, self._stretch)
-
-    @cached_property
-    def notes(self) -> tuple[str, ...]:
-        """What was decided during the run."""
-        return tuple(str(note) for note in self._text(layout.NOTES))
-
-    @cached_property
-    def results(self) -> tuple[Result, ...]:
-        """Measured numbers, then checks, in the order in which they were given."""
-        found: tuple[Result, ...] = ()
-        for name in (layout.MEASURE, layout.CHECK):
-            with self._reading(name):
-                if name in self._file:
-                    found += get_table(self._file[name])
-        return found
 
     @property
     def grid(self) -> GridReport | None:
         """How good a discrete model was; None in the exact mode."""
         return grid_of(self.results)
-
-    @cached_property
-    def scenario_text(self) -> str:
-        """The scenario file as written; the text of a scenario that a program made."""
-        return str(self._text(layout.SCENARIO))
-
-    @cached_property
-    def resolved(self) -> dict[str, Any]:
-        """Values in SI with defaults filled in, files with their digests, versions."""
-        with self._reading(layout.RESOLVED):
-            content = json.loads(self._text(layout.RESOLVED))
-            if not {"scenario", "files", "versions"} <= content.keys():
-                raise ValueError("a part is missing")
-            return dict(content)
-
-    @property
-    def source(self) -> str:
-        """The scenario file as written; "" where a program made the scenario."""
-        with self._reading(layout.SCENARIO):
-            written = self._file[layout.SCENARIO].attrs["origin"] == "as written"
-        return self.scenario_text if written else ""
 
     @cached_property
     def scenario(self) -> Scenario:
@@ -221,41 +182,7 @@ class Record:
             waveform=dict(self.waveform),
             grid=self.grid,
             notes=self.notes,
+            stimulus=block.stimulus,
+            held=block.held,
             **fields,
         )
-
-    def verify(self) -> None:
-        """Read everything, so that every checksum is tested.
-
-        Raises
-        ------
-        RecordError
-            If something differs from what was written; the message names the dataset.
-        """
-        with self._reading("its content"):
-            verify(self._file, self.path)
-
-    def _has(self, name: str) -> bool:
-        with self._reading(name):
-            return name in self._file
-
-    def close(self) -> None:
-        """Close the file; what was read before stays."""
-        self._file.close()
-
-    def __enter__(self) -> Self:
-        """Return the record."""
-        return self
-
-    def __exit__(
-        self,
-        kind: type[BaseException] | None,
-        error: BaseException | None,
-        trace: TracebackType | None,
-    ) -> None:
-        """Close the file."""
-        self.close()
-
-    def __repr__(self) -> str:
-        """Tell which file, and whether it is open."""
-        return f"<{'Record' if self._file else 'closed Record'} {self.path}>"

@@ -5,21 +5,37 @@ from __future__ import annotations
 from collections.abc import Callable, Mapping
 from dataclasses import replace
 from pathlib import Path
-from typing import Any
+from typing import Any, overload
 
 from frontend_sim.archive.provenance import PROGRAM, versions
 from frontend_sim.archive.reading import reading
-from frontend_sim.archive.rebuild import places, rebuild
+from frontend_sim.archive.rebuild import places, rebuild, rebuild_scan
 from frontend_sim.archive.record import Record
+from frontend_sim.archive.scan_record import ScanRecord
+from frontend_sim.archive.stored import Stored
 from frontend_sim.errors import RecordError
 from frontend_sim.scenario.model import Scenario, sha256_of
+from frontend_sim.scenario.scan_scenario import ScanScenario
 from frontend_sim.simulation.run import Run
+from frontend_sim.simulation.scan import ScanRun
 
 _OF_THE_NUMBERS = (PROGRAM, "numpy", "scipy", "numba")
 """What the last bit of a result may depend on."""
 
 
-def rerun_scenario(record: Record) -> Scenario:
+@overload
+def rerun_scenario(record: Record) -> Scenario: ...
+
+
+@overload
+def rerun_scenario(record: ScanRecord) -> ScanScenario: ...
+
+
+@overload
+def rerun_scenario(record: Record | ScanRecord) -> Scenario | ScanScenario: ...
+
+
+def rerun_scenario(record: Record | ScanRecord) -> Scenario | ScanScenario:
     """Build the scenario of a record again, with the very files that it was run on.
 
     A file is looked for at the path it had, beside the record, and where it was as seen from the
@@ -33,10 +49,21 @@ def rerun_scenario(record: Record) -> Scenario:
     with reading(record.path, "its scenario"):
         resolved = record.resolved
         files = {entry["name"]: _same_file(entry, record.path) for entry in resolved["files"]}
-        return rebuild(resolved["scenario"], files, record.source, record.path)
+        make = rebuild_scan if isinstance(record, ScanRecord) else rebuild
+        return make(resolved["scenario"], files, record.source, record.path)
 
 
-def rerun(record: Record, progress: Callable[[float], None] | None = None) -> Run:
+@overload
+def rerun(record: Record, progress: Callable[[float], None] | None = None) -> Run: ...
+
+
+@overload
+def rerun(record: ScanRecord, progress: Callable[[float], None] | None = None) -> ScanRun: ...
+
+
+def rerun(
+    record: Record | ScanRecord, progress: Callable[[float], None] | None = None
+) -> Run | ScanRun:
     """Run the scenario of a record again; with the same versions the codes are identical.
 
     Where versions differ from those of the record, the notes of the run say so.
@@ -50,11 +77,11 @@ def rerun(record: Record, progress: Callable[[float], None] | None = None) -> Ru
     """
     from frontend_sim.simulation import simulate
 
-    run = simulate(rerun_scenario(record), progress)
+    run: Run | ScanRun = simulate(rerun_scenario(record), progress)
     return replace(run, notes=run.notes + version_changes(record))
 
 
-def version_changes(record: Record) -> tuple[str, ...]:
+def version_changes(record: Stored) -> tuple[str, ...]:
     """Return one note for each library, or this program, that is of another version now."""
     now = versions()
     with reading(record.path, "its versions"):

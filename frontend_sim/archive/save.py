@@ -6,18 +6,18 @@ import os
 from collections.abc import Callable, Iterable
 from dataclasses import dataclass, fields
 from pathlib import Path
-from typing import Protocol
+from typing import Any, Protocol
 
 from frontend_sim.archive.grid import grid_results
-from frontend_sim.archive.opening import open_record
 from frontend_sim.archive.provenance import document, refuse_changed, source_files
+from frontend_sim.archive.reading_back import read_back
+from frontend_sim.archive.save_scan import FinishedScan, ScanSource, record_scan
 from frontend_sim.archive.target import new_file, usable_target
 from frontend_sim.archive.writer import Writer
-from frontend_sim.errors import OutputError, RecordError
 from frontend_sim.measure.checks import Keeper, evaluated, refuse_impossible
 from frontend_sim.measure.result import Result
 from frontend_sim.scenario.model import Scenario
-from frontend_sim.simulation import Simulation
+from frontend_sim.simulation import ScanRun, ScanSimulation, Simulation
 from frontend_sim.simulation.run import GridReport, Run, RunBlock
 
 Progress = Callable[[float], None]
@@ -43,7 +43,7 @@ class Source(Protocol):
 
 
 def record_run(
-    simulation: Source,
+    simulation: Source | ScanSource,
     path: str | os.PathLike[str],
     *,
     overwrite: bool = False,
@@ -82,6 +82,10 @@ def record_run(
         If the scenario cannot be run, no run of it could answer one of its checks, or a file of
         the stimulus changes meanwhile.
     """
+    if isinstance(simulation, (ScanSimulation, FinishedScan)):
+        more: dict[str, Any] = {"overwrite": overwrite, "progress": progress, "inputs": inputs}
+        return record_scan(simulation, path, results=results, **more)
+    assert isinstance(simulation.scenario, Scenario)  # the source of one channel
     scenario = simulation.scenario
     prepared = simulation if isinstance(simulation, Simulation) else None
     target = usable_target(path, overwrite, [*scenario.files(), *inputs])
@@ -97,12 +101,12 @@ def record_run(
             checked = evaluated(keeper, simulation)
             rows = [*grid_results(simulation.grid), *checked, *results]
             writer.finish(simulation.notes, rows)
-        _read_back(temporary, path)
+        read_back(temporary, path)
     return target
 
 
 def save_record(
-    run: Run,
+    run: Run | ScanRun,
     path: str | os.PathLike[str],
     *,
     overwrite: bool = False,
@@ -110,7 +114,8 @@ def save_record(
     inputs: Iterable[Path] = (),
 ) -> Path:
     """Store a finished run; parameters, result and errors are those of ``record_run``."""
-    return record_run(_Finished(run), path, overwrite=overwrite, results=results, inputs=inputs)
+    source = FinishedScan(run) if isinstance(run, ScanRun) else _Finished(run)
+    return record_run(source, path, overwrite=overwrite, results=results, inputs=inputs)
 
 
 @dataclass(frozen=True)
@@ -136,12 +141,3 @@ class _Finished:
         yield RunBlock(0, **{name: getattr(self.run, name) for name in names})
         if progress is not None:
             progress(1.0)
-
-
-def _read_back(temporary: Path, path: object) -> None:
-    """Read everything once, before anything is renamed."""
-    try:
-        with open_record(temporary) as record:
-            record.verify()
-    except RecordError as error:
-        raise OutputError(f"{path} was written but does not read back: {error}") from error

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import json
-from collections.abc import Iterable, Iterator, Sequence
+from collections.abc import Iterable, Iterator, Mapping, Sequence
 from contextlib import contextmanager
 from datetime import UTC, datetime
 from pathlib import Path
@@ -11,19 +11,18 @@ from types import TracebackType
 from typing import TYPE_CHECKING, Any, Self
 
 from frontend_sim.archive import layout
-from frontend_sim.archive.datasets import attach_axis, extend, open_column
+from frontend_sim.archive.group_writer import GroupWriter, put_ending
 from frontend_sim.archive.interrupts import uninterrupted
 from frontend_sim.archive.inventory import inventory
 from frontend_sim.archive.names import dataset_name
 from frontend_sim.archive.provenance import PROGRAM
 from frontend_sim.archive.sink import Sink
-from frontend_sim.archive.table import put_table
 from frontend_sim.archive.target import writing
 from frontend_sim.archive.text import clean, put_text
-from frontend_sim.measure.result import Result, verdict_of
-from frontend_sim.quantities import SIGNALS
+from frontend_sim.measure.result import Result, Verdict, verdict_of
+from frontend_sim.scenario.channel_scenario import ChannelScenario
 from frontend_sim.scenario.model import Scenario
-from frontend_sim.scenario.signal import PIN
+from frontend_sim.scenario.scan_scenario import AnyScenario, ScanScenario
 from frontend_sim.scenario.write import scenario_text
 from frontend_sim.simulation.run import RunBlock
 
@@ -34,7 +33,7 @@ CACHE = 2**20
 """Bytes of unfinished chunks that HDF5 keeps for each dataset, room for one of the longest."""
 
 
-class Writer:
+class RecordWriter:
     """A record in the making, in the layout of ``layout.py``; a context manager.
 
     From version 1.10 on, the format of HDF5 guards its own structure by checksums; older readers
@@ -48,14 +47,15 @@ class Writer:
     resolved : content of ``/resolved``, see ``provenance.document``
     """
 
+    version = layout.FORMAT_VERSION
+
     def __init__(
-        self, file: Path, path: object, scenario: Scenario, resolved: dict[str, Any]
+        self, file: Path, path: object, scenario: AnyScenario, resolved: dict[str, Any]
     ) -> None:
         """Open the file and write the scenario and what is needed to run it again."""
         self._path = path
         self._scenario = scenario
         self._resolved = resolved
-        self._points: tuple[str, ...] | None = None
         with writing(path):
             self._stream = file.open("x+b", buffering=0)
         self._sink = Sink(self._stream)
@@ -90,70 +90,10 @@ class Writer:
         about = "JSON: every value in SI units with defaults filled in, files, versions"
         put_text(self._file, layout.RESOLVED, json.dumps(self._resolved, indent=1), about)
 
-    def append(self, block: RunBlock) -> None:
-        """Add some conversions, a stretch of waveform, or both."""
-        with self._hdf5():
-            if len(block.time) > 0:
-                self._append_conversions(block)
-            self._points = self._points or tuple(block.waveform)
-            if len(block.waveform_time) > 0:
-                self._append_waveform(block)
-
-    def _append_conversions(self, block: RunBlock) -> None:
-        if layout.ADC not in self._file:
-            self._open_conversions(len(block.time))
-        group = self._file[layout.ADC]
-        for column in layout.CONVERSIONS:
-            extend(group[column.name], getattr(block, column.field))
-
-    def _open_conversions(self, expected: int) -> None:
-        adc = self._scenario.adc
-        group = self._file.create_group(layout.ADC, track_order=True)
-        group.attrs["description"] = "conversions; low, high and lsb are in V"
-        for name in ("bits", "code_format", "lowest_code", "highest_code", "low", "high", "lsb"):
-            group.attrs[name] = getattr(adc, name)
-        for column in layout.CONVERSIONS:
-            open_column(group, column, column.kind or layout.code_type(adc), expected)
-        attach_axis(group)
-
-    def _append_waveform(self, block: RunBlock) -> None:
-        if layout.WAVEFORM not in self._file:
-            self._open_waveform(len(block.waveform_time))
-        group = self._file[layout.WAVEFORM]
-        extend(group[layout.TIME], block.waveform_time)
-        for point, values in block.waveform.items():
-            extend(group[dataset_name(point)], values)
-
-    def _open_waveform(self, expected: int) -> None:
-        group = self._file.create_group(layout.WAVEFORM, track_order=True)
-        group.attrs["description"] = "points of the chain, from the stimulus to the pin"
-        open_column(group, layout.WAVEFORM_TIME, "<f8", expected)
-        units = dict(zip(self._scenario.points(), self._scenario.units(), strict=True))
-        for point in self._points or ():
-            unit = units.get(point, PIN)
-            noun = SIGNALS[unit].name
-            column = layout.Column(dataset_name(point), "", unit or "1", f"{noun} at this point")
-            open_column(group, column, "<f8", expected).attrs["point"] = clean(point)
-        attach_axis(group)
-
-    def finish(self, notes: Iterable[str], results: Sequence[Result]) -> None:
-        """Write what is known after the run: notes, tables, the head of the record."""
-        checks = [result for result in results if result.verdict != "none"]
-        measures = [result for result in results if result.verdict == "none"]
-        with self._hdf5():
-            if layout.ADC not in self._file:
-                self._open_conversions(0)
-            if self._points and layout.WAVEFORM not in self._file:
-                self._open_waveform(0)
-            put_text(self._file, layout.NOTES, tuple(notes), "what was decided during the run")
-            put_table(self._file, layout.MEASURE, measures, "measured numbers")
-            put_table(self._file, layout.CHECK, checks, "numbers held against their limits")
-            self._put_head(verdict_of(checks))
-
-    def _put_head(self, verdict: str) -> None:
+    def _put_head(self, verdict: Verdict) -> None:
         head = {
             "format": layout.FORMAT,
-            "format_version": layout.FORMAT_VERSION,
+            "format_version": self.version,
             "title": clean(self._scenario.title),
             "created": datetime.now(UTC).isoformat(timespec="seconds"),
             "program_version": self._resolved["versions"][PROGRAM],
@@ -189,7 +129,91 @@ class Writer:
         self._stream.close()
 
 
-def _scenario_text(scenario: Scenario, directory: Path) -> tuple[str, str]:
+class Writer(RecordWriter):
+    """The record of one channel, see ``RecordWriter``."""
+
+    def __init__(
+        self, file: Path, path: object, scenario: Scenario, resolved: dict[str, Any]
+    ) -> None:
+        """Open the file and write the scenario and what is needed to run it again."""
+        super().__init__(file, path, scenario, resolved)
+        self._group = GroupWriter(self._file, scenario)
+
+    def append(self, block: RunBlock) -> None:
+        """Add some conversions, a stretch of waveform, or both."""
+        with self._hdf5():
+            self._group.append(block)
+
+    def finish(self, notes: Iterable[str], results: Sequence[Result]) -> None:
+        """Write what is known after the run: notes, tables, the head of the record."""
+        with self._hdf5():
+            self._group.finish(notes, results)
+            self._put_head(verdict_of(results))
+
+
+class ScanWriter(RecordWriter):
+    """The record of a scan: a group for each channel, see ``RecordWriter``."""
+
+    version = layout.SCAN_FORMAT_VERSION
+
+    def __init__(
+        self,
+        file: Path,
+        path: object,
+        scenario: ScanScenario,
+        channels: Mapping[str, ChannelScenario],
+        resolved: dict[str, Any],
+    ) -> None:
+        """Open the file, write the scenario, and make a group for each channel.
+
+        Parameters
+        ----------
+        channels : name -> the channel as a scenario of its own
+        """
+        super().__init__(file, path, scenario, resolved)
+        self._groups: dict[str, GroupWriter] = {}
+        rhythm = scenario.rhythm
+        with self._hdf5():
+            above = self._file.create_group(layout.CHANNEL, track_order=True)
+            above.attrs["description"] = "channels; each is laid out as a record of one channel"
+            above.attrs["order"] = [clean(scenario.names[i]) for i in rhythm.order]
+            above.attrs["sampling"] = scenario.scan.sampling
+            above.attrs["slot"] = rhythm.slot
+            for position, (name, channel) in enumerate(channels.items()):
+                group = above.create_group(dataset_name(name), track_order=True)
+                group.attrs["name"] = clean(name)
+                group.attrs["position"] = position
+                group.attrs["skew"] = rhythm.skew(position)
+                group.attrs["duration"] = channel.simulation.duration
+                self._groups[name] = GroupWriter(group, channel)
+
+    def append(self, channel: str, block: RunBlock) -> None:
+        """Add conversions or a stretch of waveform of a channel."""
+        with self._hdf5():
+            self._groups[channel].append(block)
+
+    def finish(
+        self,
+        notes: Iterable[str],
+        results: Sequence[Result],
+        channels: Mapping[str, tuple[Iterable[str], Sequence[Result]]],
+    ) -> None:
+        """Write what is known after the run: notes, tables, the head of the record.
+
+        Parameters
+        ----------
+        notes, results : of the scan as a whole
+        channels : name -> notes and results of a channel
+        """
+        every = [*results, *(row for _, rows in channels.values() for row in rows)]
+        with self._hdf5():
+            for name, (said, rows) in channels.items():
+                self._groups[name].finish(said, rows)
+            put_ending(self._file, notes, results)
+            self._put_head(verdict_of(every))
+
+
+def _scenario_text(scenario: AnyScenario, directory: Path) -> tuple[str, str]:
     """Return the scenario for people to read, and where the text comes from."""
     if scenario.source:
         return scenario.source, "as written"

@@ -1,0 +1,71 @@
+"""Whether the disk has room for a night, and how long it will take."""
+
+from __future__ import annotations
+
+import shutil
+from dataclasses import dataclass
+from pathlib import Path
+
+from frontend_sim.errors import OutputError
+
+LINE = 1 << 10
+"""Bytes of a run in the table of the set, about."""
+SPARE = 4 << 20
+"""Bytes that are left free."""
+
+
+@dataclass(frozen=True)
+class Need:
+    """What the runs that were done so far took, on average.
+
+    Parameters
+    ----------
+    seconds : of one worker for one run
+    size : bytes that one run takes on disk
+    """
+
+    seconds: float
+    size: float
+
+    def disk(self, runs: int) -> int:
+        """Return the bytes that some more runs will take."""
+        return int((self.size + LINE) * runs)
+
+    def time(self, runs: int, workers: int) -> float:
+        """Return how long some more runs will take [s]."""
+        return self.seconds * runs / workers
+
+
+def free_bytes(directory: Path) -> int:
+    """Return how many bytes the disk of a directory, which may not be there yet, has left."""
+    place = directory.absolute()
+    while not place.exists():
+        place = place.parent
+    return shutil.disk_usage(place).free
+
+
+def refuse_small_disk(directory: Path, need: Need, runs: int) -> None:
+    """Raise OutputError if some more runs will not fit onto the disk."""
+    wanted, free = need.disk(runs) + SPARE, free_bytes(directory)
+    if wanted > free:
+        raise OutputError(
+            f"{directory}: the {runs:,} runs that are left need about {told_bytes(wanted)}, but "
+            f'the disk has {told_bytes(free)} left; free some space, or keep less: keep = "nothing"'
+        )
+
+
+def told_bytes(size: float) -> str:
+    """Return a size for people, ``1.2 GB``."""
+    for unit in ("B", "kB", "MB", "GB"):
+        if size < 1000.0:
+            return f"{size:.3g} {unit}"
+        size /= 1000.0
+    return f"{size:.3g} TB"
+
+
+def told_seconds(seconds: float) -> str:
+    """Return a time for people, ``2 h 05 min``."""
+    if seconds < 60.0:
+        return f"{seconds:.0f} s"
+    minutes = round(seconds / 60.0)
+    return f"{minutes} min" if minutes < 60 else f"{minutes // 60} h {minutes % 60:02d} min"

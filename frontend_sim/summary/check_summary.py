@@ -1,0 +1,172 @@
+"""What a night says of one check."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator, Mapping
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from frontend_sim.archive.set_table import CheckColumn
+from frontend_sim.errors import MeasureError
+from frontend_sim.measure.statistics import (
+    PassRate,
+    Percentile,
+    RankCorrelation,
+    ToleranceLimits,
+    corner_excess,
+    draws_needed,
+    pass_rate,
+    percentile,
+    rank_correlations,
+    tolerance_limits,
+    worst_run,
+)
+from frontend_sim.measure.statistics.tolerance_limits import Side
+from frontend_sim.summary.population import Population
+
+Real = NDArray[np.float64]
+Flags = NDArray[np.bool_]
+
+SHARES = (0.05, 0.5, 0.95)
+"""Percentiles that are told."""
+
+COVERAGE, CONFIDENCE = 0.95, 0.95
+"""Of the tolerance limits."""
+
+SIGNIFICANT = 0.05
+"""A cause that chance explains more often is none."""
+
+ALIKE = 1e-9
+"""Relative spread that is rounding."""
+
+ROUNDING, NOISE = 1e-6, 1.0
+"""How far between the corners a response may lie beyond them, as a share of their distance: by
+rounding, and of what the codes of each run make with their noise."""
+
+
+@dataclass(frozen=True, eq=False)
+class CheckSummary:
+    """One check over all runs of a night.
+
+    Parameters
+    ----------
+    column : its values in all runs
+    runs : how many have it;  fails : how many of them fail
+    rate : share of the draws that hold, with its interval; None where nothing was drawn
+    worst : number of the run with the smallest margin
+    percentiles : of the values, at ``SHARES``; with intervals where runs are draws
+    limits : that hold 95 % of all that could be drawn, with 95 % confidence; None where there are
+        too few draws
+    draws_needed : for such limits
+    causes : parameters by the rank correlation of the values with them, the strongest first
+    warnings : corners that do not bound it
+    """
+
+    column: CheckColumn
+    runs: int
+    fails: int
+    rate: PassRate | None
+    worst: int
+    percentiles: tuple[Percentile, ...]
+    limits: ToleranceLimits | None
+    draws_needed: int
+    causes: tuple[RankCorrelation, ...]
+    warnings: tuple[str, ...]
+
+    @property
+    def name(self) -> str:
+        """Name of the check."""
+        return self.column.name
+
+    @property
+    def cause(self) -> RankCorrelation | None:
+        """The strongest cause that chance does not explain; None where there is none."""
+        first = self.causes[0] if self.causes else None
+        return first if first is not None and first.probability < SIGNIFICANT else None
+
+    @property
+    def unit(self) -> str:
+        """Unit of its values."""
+        return self.column.unit
+
+
+def summarize_check(
+    column: CheckColumn, population: Population, parameters: Mapping[str, Real], noisy: bool
+) -> CheckSummary | None:
+    """Return what a night says of a check, None where no run has it.
+
+    Parameters
+    ----------
+    parameters : key -> number in each run, shape (R,)
+    noisy : whether noise moves it from run to run
+    """
+    there = column.verdict != ""
+    if not np.any(there):
+        return None
+    drawn = there & population.drawn
+    fails = column.verdict == "fails"
+    rate = None
+    if np.any(drawn):
+        rate = pass_rate(int(np.count_nonzero(drawn & ~fails)), int(np.count_nonzero(drawn)))
+    margins = np.where(there, column.margin, np.inf)
+    margins[there & np.isnan(column.margin)] = np.nan
+    # Percentiles of draws where there are some: a grid has no distribution.
+    values = column.value[(drawn if np.any(drawn) else there) & ~np.isnan(column.value)]
+    mine = drawn if np.any(drawn) else there
+    causes: tuple[RankCorrelation, ...] = ()
+    if _spreads(values):
+        ranked = {key: row[mine] for key, row in parameters.items()}
+        causes = rank_correlations(ranked, column.value[mine])
+    return CheckSummary(
+        column,
+        int(np.count_nonzero(there)),
+        int(np.count_nonzero(there & fails)),
+        rate,
+        worst_run(margins),
+        tuple(percentile(values, share) for share in SHARES) if len(values) else (),
+        _limits(column, column.value[drawn]),
+        draws_needed(COVERAGE, CONFIDENCE, _side(column)),
+        causes,
+        tuple(_corner_warnings(column, population, parameters, noisy)),
+    )
+
+
+def _spreads(values: Real) -> bool:
+    """Return whether values differ by more than rounding, whose ranks say nothing."""
+    known = values[np.isfinite(values)]
+    if len(known) < len(values) or len(known) == 0:
+        return len(values) > 0
+    return bool(np.ptp(known) > ALIKE * np.max(np.abs(known)))
+
+
+def _side(column: CheckColumn) -> Side:
+    return "high" if column.bound == "at most" else "low"
+
+
+def _limits(column: CheckColumn, values: Real) -> ToleranceLimits | None:
+    """Return the limit to the side that the check cares for; what has no value is the worst."""
+    worst = np.inf if column.bound == "at most" else -np.inf
+    known = np.where(np.isnan(values), worst, values)
+    try:
+        return tolerance_limits(known, COVERAGE, CONFIDENCE, _side(column))
+    except MeasureError:
+        return None
+
+
+def _corner_warnings(
+    column: CheckColumn, population: Population, parameters: Mapping[str, Real], noisy: bool
+) -> Iterator[str]:
+    for group in dict.fromkeys(population.group[population.corner].tolist()):
+        corners = column.value[population.corner & (population.group == group)]
+        between = column.value[population.within_corners(group, parameters)]
+        known = corners[np.isfinite(corners)]
+        if len(known) == 0 or len(between) == 0:
+            continue
+        spread = float(np.max(known) - np.min(known))
+        size = max(spread, 1e-6 * float(np.max(np.abs(known))))
+        found = corner_excess(corners, between, (NOISE if noisy else ROUNDING) * size)
+        if found is not None:
+            where = f"{group}: " if group else ""
+            yield where + found.text(column.name, column.unit)

@@ -1,0 +1,124 @@
+"""A night in numbers."""
+
+from __future__ import annotations
+
+from collections import Counter
+from collections.abc import Iterator
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from frontend_sim.archive.set_table import SetTable
+from frontend_sim.measure.checks.quiet import quiet_checks
+from frontend_sim.measure.statistics import PassRate, pass_rate
+from frontend_sim.summary.check_summary import CheckSummary, summarize_check
+from frontend_sim.summary.population import Population
+
+Real = NDArray[np.float64]
+
+HOLDS, FAILS, INCOMPLETE = 0, 1, 3
+"""Exit statuses."""
+
+
+@dataclass(frozen=True, eq=False)
+class NightSummary:
+    """What a replayed set says.
+
+    Parameters
+    ----------
+    table : of the set
+    population : its runs by their kind
+    counts : verdict -> runs
+    rate : share of the draws in which every check holds, with its interval; None without draws
+    checks : one after the other, those with failures first
+    errors : name and reason of each run that gave no result
+    warnings : what a reader must know before believing the rest
+    """
+
+    table: SetTable
+    population: Population
+    counts: Counter[str]
+    rate: PassRate | None
+    checks: tuple[CheckSummary, ...]
+    errors: tuple[tuple[str, str], ...]
+    warnings: tuple[str, ...]
+
+    @property
+    def runs(self) -> int:
+        """Number of runs that the table has."""
+        return len(self.table.names)
+
+    @property
+    def status(self) -> int:
+        """Exit status: 3 a run is missing or gave no result, else 1 a check fails, 0 all hold."""
+        if self.errors or not self.table.complete:
+            return INCOMPLETE
+        return FAILS if self.counts["fails"] else HOLDS
+
+    def parameters_of(self, run: int) -> dict[str, float | str]:
+        """Return the varied keys of a run, without those that have their nominal value there."""
+        found: dict[str, float | str] = {}
+        for key, values in self.table.parameters.items():
+            value = values[run].item()
+            if value != "" and value == value:
+                found[key] = value
+        return found
+
+    def unit_of(self, key: str) -> str:
+        """Return the unit of a varied key, in SI; "" for text."""
+        columns = self.table.columns
+        return next((c.unit for c in columns if c.role == "parameter" and c.of == key), "")
+
+
+def summarize(table: SetTable) -> NightSummary:
+    """Return what a replayed set says."""
+    population = Population.of(table.names)
+    verdicts = table.verdicts
+    counts = Counter(verdicts.tolist())
+    drawn = population.drawn & (verdicts != "none")
+    rate = None
+    if np.any(drawn):
+        held = int(np.count_nonzero(verdicts[drawn] == "holds"))
+        rate = pass_rate(held, int(np.count_nonzero(drawn)))
+    numbers = numeric_parameters(table)
+    quiet = quiet_checks(table.base_values)
+    found = (
+        summarize_check(column, population, numbers, column.name not in quiet)
+        for column in table.checks
+    )
+    checks = sorted((each for each in found if each is not None), key=lambda each: -each.fails)
+    failed = np.flatnonzero(verdicts == "error")
+    told = table.texts("error")
+    errors = tuple((table.names[run], str(told[run])) for run in failed.tolist())
+    return NightSummary(
+        table, population, counts, rate, tuple(checks), errors,
+        tuple(_warnings(table, checks, population, len(errors))),
+    )  # fmt: skip
+
+
+def numeric_parameters(table: SetTable) -> dict[str, Real]:
+    """Return the varied keys that hold numbers: key -> its value in each run, shape (R,)."""
+    found = {}
+    for key, values in table.parameters.items():
+        if values.dtype.kind == "f":
+            found[key] = np.asarray(values, dtype=np.float64)
+    return found
+
+
+def _warnings(
+    table: SetTable, checks: list[CheckSummary], population: Population, errors: int
+) -> Iterator[str]:
+    missing = table.planned - len(table.names)
+    if missing:
+        yield f"of {table.planned} runs {missing} are missing; the next replay goes on with them"
+    if errors:
+        yield f"of {table.planned} runs {errors} gave no result, which counts as not holding"
+    for check in checks:
+        yield from check.warnings
+        drawn = int(np.count_nonzero(population.drawn))
+        if drawn and check.limits is None:
+            yield (
+                f"{check.name}: {drawn} draws are too few for a limit that holds 95 % with 95 % "
+                f"confidence; {check.draws_needed} do"
+            )

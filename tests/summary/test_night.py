@@ -1,0 +1,159 @@
+"""What a night says."""
+
+from __future__ import annotations
+
+from pathlib import Path
+
+import numpy as np
+import pytest
+from compared import night
+from nights import BASE, made_set
+
+from frontend_sim.archive.set_table import SetTable, open_set
+from frontend_sim.measure.statistics import pass_rate
+from frontend_sim.replay import replay_set
+from frontend_sim.summary import NightSummary, Population, summarize
+
+DRAWS = 'seed = 5\nkeep = "nothing"\n[corners]\n[draws]\ncount = 60\n'
+
+
+@pytest.fixture(scope="module")
+def table(tmp_path_factory: pytest.TempPathFactory) -> SetTable:
+    """A night of corners and draws."""
+    return night(tmp_path_factory.mktemp("night"), "night", DRAWS)
+
+
+@pytest.fixture(scope="module")
+def summary(table: SetTable) -> NightSummary:
+    """What it says."""
+    return summarize(table)
+
+
+def test_runs_are_told_by_their_names() -> None:
+    """Draws and corners are found behind whatever is varied besides; the nominal is no corner."""
+    names = ["corner nominal", "corner 0-1", "draw 0001", "rate=1kHz,draw 0002", "rate=2kHz"]
+    found = Population.of(names)
+    assert found.corner.tolist() == [False, True, False, False, False]
+    assert found.drawn.tolist() == [False, False, True, True, False]
+    assert found.group.tolist() == ["", "", "", "rate=1kHz", "rate=2kHz"]
+
+
+def test_the_yield_counts_draws_alone(table: SetTable, summary: NightSummary) -> None:
+    """Corners are no sample: the yield is that of the 60 draws, with its interval."""
+    drawn = np.array([name.startswith("draw") for name in table.names])
+    held = int(np.count_nonzero(table.verdicts[drawn] == "holds"))
+    assert summary.rate == pass_rate(held, 60)
+    assert summary.runs == 65  # four corners of two parts, the nominal circuit, 60 draws
+    assert summary.counts["holds"] + summary.counts["fails"] == 65
+    assert summary.status == 1
+
+
+def test_the_worst_case_is_at_least_every_draw(summary: NightSummary) -> None:
+    """No run has a smaller margin than the one that is reported, for every check."""
+    for check in summary.checks:
+        assert check.column.margin[check.worst] == np.nanmin(check.column.margin)
+    corner = next(check for check in summary.checks if check.name == "corner")
+    # Lowest with both parts at their highest values.
+    assert summary.table.names[corner.worst] == "corner 1-1"
+    assert summary.parameters_of(corner.worst) == {
+        "chain[input filter].resistance": pytest.approx(10.1e3),
+        "chain[input filter].capacitance": pytest.approx(4.935e-9),
+    }
+
+
+def test_the_cause_is_the_part_with_the_wide_tolerance(summary: NightSummary) -> None:
+    """A 5 % capacitor explains the corner more than a 1 % resistor, and the noise nothing."""
+    checks = {check.name: check for check in summary.checks}
+    cause = checks["corner"].cause
+    assert cause is not None
+    assert cause.parameter == "chain[input filter].capacitance"
+    assert cause.coefficient < -0.9
+    assert checks["noise"].cause is None
+
+
+def test_limits_need_59_draws(table: SetTable, summary: NightSummary, tmp_path: Path) -> None:
+    """60 draws give the limit of Wilks, 20 do not, and the number needed is told."""
+    corner = next(check for check in summary.checks if check.name == "corner")
+    drawn = np.array([name.startswith("draw") for name in table.names])
+    assert corner.limits is not None
+    assert corner.limits.low == corner.column.value[drawn].min()
+    few = summarize(night(tmp_path, "few", DRAWS.replace("60", "20")))
+    assert next(check for check in few.checks if check.name == "corner").limits is None
+    assert any("20 draws are too few" in text and "59 do" in text for text in few.warnings)
+
+
+def test_monotone_responses_give_no_warning(summary: NightSummary) -> None:
+    """The corner frequency falls with both parts, so its corners bound it."""
+    assert summary.warnings == ()
+
+
+TURNING = """
+format = 1
+title = "Invented: a notch that the mains may miss"
+
+[stimulus]
+kind = "sine"
+amplitude = "1 V"
+frequency = "1 kHz"
+offset = "1.5 V"
+
+[[chain]]
+kind = "twin-t-notch"
+name = "notch"
+resistance_1 = "10 kohm"
+shunt_resistance = { value = "5 kohm", tolerance = "10 %" }
+resistance_2 = "10 kohm"
+capacitance_1 = "15.915 nF"
+capacitance_2 = "15.915 nF"
+shunt_capacitance = "31.83 nF"
+
+[adc]
+rate = "20 kHz"
+bits = 12
+high = "3.3 V"
+
+[simulation]
+duration = "20 ms"
+
+[[check]]
+kind = "rejection"
+frequency = "1 kHz"
+at_least = "10 dB"
+"""
+
+
+def test_corners_that_do_not_bound_are_told(tmp_path: Path) -> None:
+    """The attenuation of a notch is largest between the ends of a tolerance: a warning says so."""
+    (tmp_path / "notch.toml").write_text(TURNING, encoding="utf-8")
+    rules = 'base = "notch.toml"\nkeep = "nothing"\n[corners]\n'
+    (tmp_path / "set.toml").write_text(rules, encoding="utf-8")
+    replay_set(tmp_path / "set.toml", tmp_path / "night", on="in-process")
+    found = summarize(open_set(tmp_path / "night"))
+    assert len(found.warnings) == 1
+    assert "is not monotone" in found.warnings[0]
+    assert "corners do not bound it" in found.warnings[0]
+
+
+def test_a_run_without_a_result_makes_a_night_incomplete(tmp_path: Path) -> None:
+    """A scenario that cannot be read has an error in its row, and the night has status 3."""
+    folder = tmp_path / "scenarios"
+    folder.mkdir()
+    (folder / "right.toml").write_text(TURNING, encoding="utf-8")
+    (folder / "wrong.toml").write_text(TURNING.replace("12", "99"), encoding="utf-8")
+    replay_set(folder, tmp_path / "night", on="in-process")
+    found = summarize(open_set(tmp_path / "night"))
+    assert found.status == 3
+    assert [name for name, _ in found.errors] == ["wrong"]
+    assert found.rate is None
+    assert any("of 2 runs 1 gave no result" in text for text in found.warnings)
+
+
+def test_rounding_has_no_cause(tmp_path: Path) -> None:
+    """A check that is the same in every run but for rounding follows no parameter."""
+    file = tmp_path / "set.toml"
+    check = '\n[[check]]\nkind = "level"\nat = "4 ms"\nat_least = "1.9 V"\n'
+    made_set(tmp_path, 'keep = "nothing"\n[draws]\ncount = 30\n', scenario=BASE + check)
+    replay_set(file, tmp_path / "night", on="in-process")
+    found = {check.name: check for check in summarize(open_set(tmp_path / "night")).checks}
+    assert found["level 1"].cause is not None  # early, it follows the filter
+    assert found["level 2"].causes == ()
