@@ -13,6 +13,7 @@ from pydantic.fields import FieldInfo
 
 from frontend_sim.quantities import ReadsLevel, as_text, mark_of, shown
 from frontend_sim.scenario.expectation import expected
+from frontend_sim.scenario.scan_scenario import ScanScenario
 from frontend_sim.scenario.tables import Table, is_array, keys, members, tables
 from frontend_sim.values import Value, may_be_left_out
 
@@ -55,7 +56,8 @@ def _heading(table: Table) -> str:
 
 
 def _field_of(table: Table) -> FieldInfo:
-    return keys(tables()[0].model)[table.path[0]]
+    name = table.path[0]
+    return {**keys(ScanScenario), **keys(tables()[0].model)}[name]
 
 
 def _keys_of(model: type[Value]) -> str:

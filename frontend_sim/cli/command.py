@@ -9,6 +9,7 @@ import threading
 from collections.abc import Iterator, Sequence
 from contextlib import contextmanager, suppress
 from importlib import import_module
+from typing import NoReturn
 
 import click
 
@@ -20,6 +21,11 @@ _COMMANDS = {
     "run": "simulate one scenario and store it",
     "inspect": "tell about the chain before any run",
     "validate": "check scenario files, run nothing",
+    "replay": "run a set of scenarios, resume it, summarize it",
+    "sensitivity": "tell which part, rate or time moves the checks most",
+    "solve": "find the least wait, the lowest rate, ... that passes",
+    "compare": "tell what changed between runs, and why",
+    "report": "write a page to read in the morning",
     "schema": "print the JSON Schema of the scenario file",
 }
 
@@ -70,7 +76,10 @@ def main(arguments: Sequence[str] | None = None) -> int:
         error.show(sys.stderr)
         return WRONG_INPUT
     except (KeyboardInterrupt, click.Abort, Interrupted):
-        return _tell("interrupted; nothing half written is left", INTERRUPTED)
+        _tell("interrupted; nothing half written is left", INTERRUPTED)
+        if arguments is None:
+            _leave(INTERRUPTED)
+        return INTERRUPTED
     except (BrokenPipeError, SystemExit):  # click turns the one into the other
         # The reader of a pipe went away, as `head` does; nothing is wrong and nothing is left.
         _forget_output()
@@ -91,6 +100,17 @@ def main(arguments: Sequence[str] | None = None) -> int:
 def _tell(text: str, status: int) -> int:
     click.echo(text, err=True)
     return status
+
+
+def _leave(status: int) -> NoReturn:
+    """End the process, in which everything is cleaned up by now.
+
+    Python itself would end it by a signal where the interruption came in the middle of code that
+    a library makes as it loads.
+    """
+    with suppress(OSError, ValueError):
+        _flush()
+    os._exit(status)
 
 
 def _flush() -> None:

@@ -30,6 +30,8 @@ def print_tables(tables: Iterable[RenderableType]) -> None:
         width=shutil.get_terminal_size().columns if at_terminal else 100,
         force_terminal=at_terminal,
         highlight=False,
+        markup=False,  # names may have [brackets] and :colons:, which stand for themselves
+        emoji=False,
     )
     with console.capture() as drawn:
         for table in tables:
@@ -56,7 +58,7 @@ def progress_bar(title: str) -> Iterator[Callable[[float], None]]:
 
     console = Console(stderr=True)
     bar = Progress(
-        TextColumn("{task.description}"),
+        TextColumn("{task.description}", markup=False),
         BarColumn(),
         TextColumn("{task.percentage:>3.0f} %"),
         TimeRemainingColumn(compact=True),

@@ -10,7 +10,7 @@ import click
 from frontend_sim.cli.console import print_json, print_notes, print_tables, progress_bar
 
 if TYPE_CHECKING:
-    from frontend_sim.archive import Record
+    from frontend_sim.archive import Record, ScanRecord
 
 
 @click.command("run")
@@ -38,19 +38,19 @@ def command(
     Exit status: 0 all checks hold, 1 a check fails, 2 the input is wrong.
     """
     from frontend_sim.archive import open_record, record_run
-    from frontend_sim.measure.checks import refuse_impossible
+    from frontend_sim.measure.checks.scan import refuse_impossible_checks
     from frontend_sim.present import check_plot_target
-    from frontend_sim.scenario import load_scenario
-    from frontend_sim.simulation import Simulation
+    from frontend_sim.scenario import ScanScenario, load_scenario
+    from frontend_sim.simulation import ScanSimulation, Simulation
 
     values = load_scenario(scenario)
-    refuse_impossible(values, str(scenario))
+    refuse_impossible_checks(values, str(scenario))
     target = output or Path(f"{scenario.stem}.h5")
     if plot is not None:
         check_plot_target(plot, overwrite)
     with progress_bar(scenario.name) as advance:
         path = record_run(
-            Simulation(values),
+            ScanSimulation(values) if isinstance(values, ScanScenario) else Simulation(values),
             target,
             overwrite=overwrite,
             progress=advance,
@@ -61,16 +61,30 @@ def command(
         return 1 if record.verdict == "fails" else 0
 
 
-def _tell(record: Record, target: Path, plot: Path | None, overwrite: bool, as_json: bool) -> None:
-    from frontend_sim.present import plot_run, run_summary, run_tables
+def _tell(
+    record: Record | ScanRecord, target: Path, plot: Path | None, overwrite: bool, as_json: bool
+) -> None:
+    from frontend_sim.archive import ScanRecord
+    from frontend_sim.present import (
+        plot_run,
+        plot_scan,
+        run_summary,
+        run_tables,
+        scan_summary,
+        scan_tables,
+    )
 
     print_notes(record.notes)
     if plot is not None:  # first, so that a closed pipe does not cost the plot
-        plot_run(record, plot, overwrite=overwrite)
+        if isinstance(record, ScanRecord):
+            plot_scan(record, plot, overwrite=overwrite)
+        else:
+            plot_run(record, plot, overwrite=overwrite)
     if as_json:
-        print_json({"record": str(target), **run_summary(record)})
+        told = scan_summary(record) if isinstance(record, ScanRecord) else run_summary(record)
+        print_json({"record": str(target), **told})
         return
-    print_tables(run_tables(record))
+    print_tables(scan_tables(record) if isinstance(record, ScanRecord) else run_tables(record))
     click.echo(f"record: {target}")
     if plot is not None:
         click.echo(f"plot: {plot}")

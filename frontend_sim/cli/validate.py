@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import tomllib
 from pathlib import Path
 
 import click
@@ -14,7 +15,7 @@ from frontend_sim.errors import InputError
 @click.argument("files", nargs=-1, required=True, type=click.Path(path_type=Path))
 @click.option("--json", "as_json", is_flag=True, help="Print results as JSON.")
 def command(files: tuple[Path, ...], as_json: bool) -> int:
-    """Check scenario FILES with all that they read, and run nothing.
+    """Check FILES of scenarios and sets, with all that they read, and run nothing.
 
     Exit status: 0 all files are right, 2 one of them is wrong.
     """
@@ -34,11 +35,27 @@ def _fault_of(file: Path) -> str | None:
     from frontend_sim.scenario import load_scenario
 
     try:
+        if _is_set(file):
+            from frontend_sim.replay import read_set
+
+            read_set(file)
+            return None
         scenario = load_scenario(file)
         if scenario.check:  # the measures take a while to load
-            from frontend_sim.measure.checks import refuse_impossible
+            from frontend_sim.measure.checks.scan import refuse_impossible_checks
 
-            refuse_impossible(scenario, str(file))
+            refuse_impossible_checks(scenario, str(file))
     except InputError as error:
         return str(error)
     return None
+
+
+def _is_set(file: Path) -> bool:
+    """Return whether a file is a set; what cannot be read is told as a scenario is."""
+    from frontend_sim.scenario.content import read_text
+
+    try:
+        data = tomllib.loads(read_text(file))
+    except (InputError, ValueError, RecursionError):
+        return False
+    return "stimulus" not in data and "adc" not in data and ("base" in data or "scenarios" in data)

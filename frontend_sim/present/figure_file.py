@@ -55,6 +55,12 @@ def new_figure(width: float, height: float) -> Figure:
     return Figure(figsize=(width, height), layout="constrained")
 
 
+def legend_text(name: str) -> str:
+    """Return a name as a legend shows it: no formula, and not left out for a leading underscore."""
+    text = name.replace("$", r"\$")
+    return f" {text}" if text.startswith("_") else text
+
+
 def save_figure(figure: Figure, path: str | os.PathLike[str], overwrite: bool = False) -> Path:
     """Write a figure as PNG or SVG, told by the suffix, under a temporary name first.
 

@@ -19,8 +19,14 @@ if TYPE_CHECKING:
 MODEL_STYLE = {"zoh": (ORANGE, "--"), "foh": (GREEN, "-."), "bilinear": (PURPLE, ":")}
 """Colour and line of each discrete model."""
 
+LABEL_WIDTH = 0.22
+"""Room that the label of a corner needs, as a share of the panel."""
+
 LEAST_SHOWN, MOST_SHOWN = 40.0, 240.0
 """The magnitude is shown at least and at most so far below its highest point [dB]."""
+
+FILTER_SHOWN = 140.0
+"""The converter's filter is followed so far down: its notches have no end [dB]."""
 
 
 def draw_magnitude(axes: Axes, view: FrequencyView) -> None:
@@ -34,6 +40,11 @@ def draw_magnitude(axes: Axes, view: FrequencyView) -> None:
         axes.plot(
             curve.frequency, curve.magnitude, color=colour, linestyle=line, linewidth=1.5,
             label=f"{curve.method} at {rate}", zorder=4,
+        )  # fmt: skip
+    if view.filtered is not None:
+        axes.plot(
+            view.frequency, view.filtered, color=BLACK, linewidth=0.9,
+            label="with the converter's filter", zorder=2,
         )  # fmt: skip
     low, high = _limits(view)
     axes.set_ylim(low, high)
@@ -88,11 +99,14 @@ def draw_delay(axes: Axes, view: FrequencyView) -> None:
 
 
 def _free_place(view: FrequencyView) -> Literal["lower left", "lower center", "lower right"]:
-    """Return where the magnitude leaves room below it: under its higher end, or its middle."""
-    first, last = float(view.magnitude[0]), float(view.magnitude[-1])
-    if max(first, last) < float(np.max(view.magnitude)) - LEAST_SHOWN / 2.0:
-        return "lower center"
-    return "lower left" if first >= last else "lower right"
+    """Return where the magnitude leaves room below it: in the third where it stays highest."""
+    share = np.log(view.frequency / view.frequency[0])
+    third = np.minimum((3.0 * share / share[-1]).astype(np.int64), 2)
+    lowest = [float(np.min(view.magnitude[third == number])) for number in range(3)]
+    places: tuple[Literal["lower left", "lower center", "lower right"], ...] = (
+        "lower left", "lower center", "lower right",
+    )  # fmt: skip
+    return places[lowest.index(max(lowest))]
 
 
 def _limits(view: FrequencyView) -> tuple[float, float]:
@@ -107,6 +121,9 @@ def _limits(view: FrequencyView) -> tuple[float, float]:
         # Nothing is to be seen in how near a point of the grid lies to a pole on the axis.
         highest = min(highest, max(float(view.magnitude[0]), float(np.max(marked))) + 60.0)
     bottom = max(lowest, min(highest - LEAST_SHOWN, float(np.min(marked))) - 20.0)
+    if view.filtered is not None:
+        deepest = float(np.min(view.filtered[np.isfinite(view.filtered)]))
+        bottom = min(bottom, max(deepest, highest - FILTER_SHOWN))
     bottom = max(bottom, highest - MOST_SHOWN)
     room = max(0.08 * (highest - bottom), 3.0)
     return bottom - room, highest + 1.8 * room
@@ -138,13 +155,31 @@ def _draw_corners(axes: Axes, view: FrequencyView, labels: bool = True) -> None:
     level = 20.0 * math.log10(measured.largest.value) - 10.0 * math.log10(2.0)
     axes.axhline(level, color=MARK, linestyle=":", linewidth=0.8, zorder=2)
     for corner in _labelled(view):
-        left = corner.side == "lower"
+        left, below = _label_side(view, corner)
         axes.annotate(
             f"−3 dB {engineering(corner.frequency, 'Hz', 4)}", (corner.frequency, level),
-            xytext=(-4 if left else 4, 3), textcoords="offset points",
-            ha="right" if left else "left", va="bottom", fontsize="small", color=BLACK, zorder=5,
+            xytext=(-4 if left else 4, -3 if below else 3), textcoords="offset points",
+            ha="right" if left else "left", va="top" if below else "bottom",
+            fontsize="small", color=BLACK, zorder=5,
             bbox={"facecolor": "white", "edgecolor": "none", "alpha": 0.75, "pad": 0.8},
         )  # fmt: skip
+
+
+def _label_side(view: FrequencyView, corner: Corner) -> tuple[bool, bool]:
+    """Return whether a corner's label stands to its left, and whether below the level.
+
+    As a rule it stands beside the pass band, above the level, where the curve is below. Where
+    another corner or the edge of the panel is too near, it stands in the pass band, below.
+    """
+    first, last = view.frequency[0], view.frequency[-1]
+    left = corner.side == "lower"
+    ends = [first if left else last]
+    ends += [each.frequency for each in view.inspection.frequency.corners if each is not corner]
+    width = math.log(last / first)
+    room = [math.log(end / corner.frequency) / width for end in ends]
+    sides = [-each for each in room if each < 0.0] if left else [each for each in room if each > 0]
+    near = min(sides, default=0.0) < LABEL_WIDTH
+    return (not left, True) if near else (left, False)
 
 
 def _labelled(view: FrequencyView) -> tuple[Corner, ...]:

@@ -9,6 +9,7 @@ from typing import Self
 import numpy as np
 from numpy.typing import NDArray
 
+from frontend_sim.measure.look_weights import LookWeights
 from frontend_sim.measure.response.frequency import frequency_grid
 from frontend_sim.measure.response.group_delay import group_delay
 from frontend_sim.measure.response.inspection import Inspection
@@ -44,6 +45,8 @@ class FrequencyView:
     frequency : shape (F,) [Hz]
     magnitude : [dB];  phase : without the pure delay [deg];  delay : group delay [s]; shape (F,)
     models : one for each discrete model
+    filtered : magnitude with the converter's own filter behind the chain, shape (F,) [dB]; None
+        where it has none
     """
 
     inspection: Inspection
@@ -52,6 +55,7 @@ class FrequencyView:
     phase: Real
     delay: Real
     models: tuple[ModelCurve, ...]
+    filtered: Real | None
 
     @classmethod
     def of(cls, inspection: Inspection) -> Self:
@@ -72,7 +76,16 @@ class FrequencyView:
             phase,
             group_delay(roots, frequency),
             tuple(_curves(inspection, frequency)),
+            _filtered(inspection, frequency, magnitude),
         )
+
+
+def _filtered(inspection: Inspection, frequency: Real, magnitude: Real) -> Real | None:
+    """Return the magnitude with the converter's filter behind the chain [dB]."""
+    looks = LookWeights.of(inspection.adc)
+    if looks.sinc is None:
+        return None
+    return np.asarray(magnitude + _decibel(np.sqrt(looks.power(frequency))))
 
 
 def phase_of(roots: Roots, frequency: Real) -> Real:
@@ -97,6 +110,8 @@ def _range(inspection: Inspection) -> tuple[float, float]:
     """Return the frequencies shown: a decade and more around corners and the conversion rate."""
     rate = inspection.adc.rate
     marks = [0.5 * rate, rate, *(corner.frequency for corner in inspection.frequency.corners)]
+    if (sinc := LookWeights.of(inspection.adc).sinc) is not None:
+        marks.append(0.2 * sinc.modulator_rate)  # where the filter passes again
     if not inspection.frequency.corners:
         marks += [
             pole.natural_frequency for pole in inspection.poles if pole.natural_frequency > 0.0

@@ -11,6 +11,7 @@ from frontend_sim.measure.response.inspection import Inspection
 from frontend_sim.present.figure_file import check_plot_target, new_figure, save_figure
 from frontend_sim.present.frequency_panels import draw_delay, draw_magnitude, draw_phase
 from frontend_sim.present.frequency_view import FrequencyView
+from frontend_sim.present.noise_panel import draw_noise
 from frontend_sim.present.step_panels import draw_distance, draw_step
 from frontend_sim.present.step_view import StepView
 
@@ -26,7 +27,7 @@ def plot_inspection(
 
     Left magnitude, phase and group delay over frequency, with corners, half the conversion rate
     and the rate; right the response to a unit step, and how it comes near to its end, with the
-    bands that it settles to. Discrete models at the grid rate are laid over.
+    bands that it settles to, and the noise budget. Discrete models at the grid rate are laid over.
 
     Parameters
     ----------
@@ -44,10 +45,11 @@ def plot_inspection(
 
 def inspection_figure(inspection: Inspection) -> Figure:
     """Return the figure of an inspection, to draw on or to show elsewhere."""
-    figure = new_figure(13.0, 9.0)
+    noisy = inspection.noise is not None and bool(inspection.noise.rows)
+    figure = new_figure(13.0, 10.0 if noisy else 9.0)
     left, right = figure.subfigures(1, 2, wspace=0.02, squeeze=False)[0]
     magnitude, phase, delay = left.subplots(3, 1, sharex=True)
-    step, distance = right.subplots(2, 1)
+    step, distance, *others = right.subplots(3 if noisy else 2, 1)
     view = FrequencyView.of(inspection)
     draw_magnitude(magnitude, view)
     draw_phase(phase, view)
@@ -55,8 +57,10 @@ def inspection_figure(inspection: Inspection) -> Figure:
     steps = StepView.of(inspection)
     draw_step(step, steps)
     draw_distance(distance, steps)
+    if inspection.noise is not None and noisy:
+        draw_noise(others[0], inspection.noise)
     figure.suptitle(_title(inspection))
-    panels: list[Axes] = [magnitude, phase, delay, step, distance]
+    panels: list[Axes] = [magnitude, phase, delay, step, distance, *others]
     for each in panels:
         each.grid(True, color="0.9", linewidth=0.6)
         each.set_axisbelow(True)

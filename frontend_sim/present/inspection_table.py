@@ -9,6 +9,13 @@ from frontend_sim.measure.response.attenuation import Attenuation
 from frontend_sim.measure.response.gain import decibel
 from frontend_sim.measure.response.inspection import Inspection
 from frontend_sim.measure.response.model_distance import ModelDistance, ResponseError
+from frontend_sim.present.acquisition_rows import acquisition_rows
+from frontend_sim.present.amplifier_table import (
+    amplifier_table,
+    large_signal_rows,
+    level_rows,
+)
+from frontend_sim.present.filter_rows import filter_rows
 from frontend_sim.present.noise_table import loading_table, noise_table
 from frontend_sim.present.numbers import engineering, fixed, per_unit, plain, quantity
 
@@ -22,10 +29,20 @@ def inspection_tables(inspection: Inspection) -> tuple[Table, ...]:
         _pairs(f"Step response of the chain: {inspection.time.shape.word}", _step_rows(inspection)),
         _pairs("Frequency response", _frequency_rows(inspection)),
     ]
+    if rows := level_rows(inspection):
+        tables.append(_pairs("Levels at rest", rows))
     if inspection.poles:
         tables.append(_pole_table(inspection))
     if inspection.loading:
         tables.append(loading_table(inspection.loading))
+    if inspection.amplifiers:
+        tables.append(amplifier_table(inspection.amplifiers))
+    if inspection.large_signal is not None:
+        tables.append(_pairs("Large signals", large_signal_rows(inspection.large_signal)))
+    if inspection.acquisition is not None:
+        tables.append(_pairs("Input of the converter", acquisition_rows(inspection.acquisition)))
+    if inspection.filter is not None:
+        tables.append(_pairs("Filter of the converter", filter_rows(inspection)))
     if inspection.noise is not None and inspection.noise.rows:
         tables.append(noise_table(inspection.noise))
     if inspection.models:
@@ -35,12 +52,13 @@ def inspection_tables(inspection: Inspection) -> tuple[Table, ...]:
 
 def _pairs(title: str, rows: list[tuple[str, str]]) -> Table:
     from rich.table import Table
+    from rich.text import Text
 
     table = Table(title=title, show_header=False, title_justify="left")
     table.add_column("quantity")
     table.add_column("value", justify="right")
     for name, value in rows:
-        table.add_row(name, value)
+        table.add_row(Text(name), Text(value))
     return table
 
 

@@ -19,7 +19,9 @@ def noise_table(budget: NoiseBudget) -> Table:
     from rich.table import Table
     from rich.text import Text
 
-    title = f"Noise at the pin, down to {engineering(budget.lowest, 'Hz')}"
+    place = "sampling capacitor" if budget.sampled else "pin"
+    what = "Noise of a code, referred to" if budget.filtered else "Noise at"
+    title = f"{what} the {place}, down to {engineering(budget.lowest, 'Hz')}"
     table = Table(title=title, title_justify="left", show_footer=len(budget.rows) > 1)
     table.add_column("source", footer="together", overflow="fold")
     table.add_column("rms", justify="right", footer=engineering(budget.rms, "V"))

@@ -86,6 +86,11 @@ def fixed(value: float, decimals: int, unit: str = "") -> str:
     return f"{text} {unit}".rstrip()
 
 
+def counted(count: int, noun: str) -> str:
+    """Return a number of things, ``"1 check"``, ``"3 checks"``."""
+    return f"{count} {noun}" if count == 1 else f"{count} {noun}s"
+
+
 def prefix_of(largest: float) -> tuple[float, str]:
     """Return (factor, letter) for an axis whose largest value is given: 0.02 s -> (1e3, "m")."""
     if not math.isfinite(largest) or largest == 0.0:

@@ -6,12 +6,14 @@ import math
 from collections.abc import Sequence
 from typing import TYPE_CHECKING, Any
 
-from frontend_sim.present.numbers import engineering, plain
+from frontend_sim.present.numbers import counted, engineering, plain
 
 if TYPE_CHECKING:
     from rich.console import RenderableType
     from rich.table import Table
     from rich.text import Text
+
+    from frontend_sim.measure.result import Result
 
 PREFIXED = ("s", "V", "Hz", "V/s", "ohm", "F", "rad/s")
 """Units that are written with a prefix."""
@@ -40,27 +42,41 @@ def result_tables(results: Sequence[dict[str, Any]]) -> tuple[RenderableType, ..
     return tuple(shown)
 
 
+def plain_results(results: Sequence[Result]) -> list[dict[str, Any]]:
+    """Return results as plain data for JSON: None for numbers that JSON has no word for."""
+    return [
+        {
+            name: None if isinstance(value, float) and not math.isfinite(value) else value
+            for name, value in vars(row).items()
+        }
+        for row in results
+    ]
+
+
 def _measure_table(rows: Sequence[dict[str, Any]]) -> Table:
     from rich.table import Table
+    from rich.text import Text
 
     table = Table(title="Measures", title_justify="left")
     for name in ("measure", "value", "method"):
         table.add_column(name, justify="right" if name == "value" else "left")
     for row in rows:
-        table.add_row(row["name"], quantity(row["value"], row["unit"]), row["method"])
+        value = quantity(row["value"], row["unit"])
+        table.add_row(Text(row["name"]), value, Text(row["method"]))
     return table
 
 
 def _check_table(rows: Sequence[dict[str, Any]]) -> Table:
     from rich.table import Table
+    from rich.text import Text
 
     table = Table(title="Checks", title_justify="left")
     for name in ("check", "value", "limit", "margin", "verdict"):
         table.add_column(name, justify="left" if name in ("check", "verdict") else "right")
     for row in rows:
-        value, limit, margin = (_checked(row, name) for name in ("value", "limit", "margin"))
+        value, limit, margin = (checked_text(row, name) for name in ("value", "limit", "margin"))
         sign = SIGNS.get(row["bound"], "") if limit else ""
-        cells = (row["name"], value or "none", sign + limit, margin, row["verdict"])
+        cells = (Text(row["name"]), value or "none", sign + limit, margin, row["verdict"])
         table.add_row(*cells, style=STYLES[row["verdict"]])
     return table
 
@@ -76,11 +92,13 @@ def _verdict(rows: Sequence[dict[str, Any]]) -> Text:
 
     broken = sum(row["verdict"] == "fails" for row in rows)
     if broken:
-        return Text(f"verdict: fails, {broken} of {len(rows)} checks", style=STYLES["fails"])
-    return Text(f"verdict: holds, all of {len(rows)} checks", style=STYLES["holds"])
+        of = counted(len(rows), "check")
+        return Text(f"verdict: fails, {broken} of {of}", style=STYLES["fails"])
+    which = "1 check" if len(rows) == 1 else f"all of {len(rows)} checks"
+    return Text(f"verdict: holds, {which}", style=STYLES["holds"])
 
 
-def _checked(row: dict[str, Any], name: str) -> str:
+def checked_text(row: dict[str, Any], name: str) -> str:
     """Return a number of a check; plain numbers of checks are shares, and read as percent."""
     value, unit = row[name], row["unit"]
     if value is not None and unit in ("", "1"):

@@ -12,6 +12,7 @@ from numpy.typing import NDArray
 from frontend_sim.converter import AnyAdc
 from frontend_sim.present.colours import BLUE, LIMIT, MARK, ORANGE, SERIES
 from frontend_sim.present.decimation import shown_flags, shown_points
+from frontend_sim.present.figure_file import legend_text
 from frontend_sim.present.numbers import ZERO_CELSIUS, engineering, prefix_of
 from frontend_sim.quantities import SIGNALS
 
@@ -131,7 +132,12 @@ def draw_difference(axes: Axes, conversions: Conversions) -> None:
     difference = (conversions.voltage[inside] - conversions.pin[inside]) / conversions.adc.lsb
     dots: dict[str, Any] = {"marker": "o", "markersize": 3.0, "linestyle": "none"}
     style = dots if conversions.few else {"linewidth": 0.7}
-    _line(axes, conversions.time[inside], difference, color=MARK, **style)
+    kept = shown_points(difference)
+    at = np.flatnonzero(inside)[kept]
+    # No line leads over what is left out.
+    gaps = np.flatnonzero(np.diff(np.cumsum(conversions.overrange)[at])) + 1
+    time = np.insert(conversions.time[at], gaps, conversions.time[at][gaps])
+    axes.plot(time, np.insert(difference[kept], gaps, np.nan), color=MARK, **style)
     axes.axhline(0.0, color="black", linewidth=0.6)
     axes.set_ylabel("codes − pin\n[LSB]")
     if not np.all(inside):
@@ -161,7 +167,7 @@ def draw_waveforms(axes: Axes, time: Real, waveform: Mapping[str, Real], unit: s
             linewidth=min(WAVE_WIDTH + 0.5 * (len(shown) - 1 - index), 2.6),
             linestyle=DASHES[index % len(DASHES)],
             # A dollar sign would begin a formula, and a name in front of "_" is not shown.
-            label=name.replace("$", r"\$").lstrip("_") or "point",
+            label=legend_text(name),
         )  # fmt: skip
     noun = "waveforms" if unit == "V" else SIGNALS[unit].name
     axes.set_ylabel(f"{noun} [{letter}{'degC' if unit == 'K' else unit or '1'}]")

@@ -11,12 +11,15 @@ import numpy as np
 from numpy.typing import NDArray
 
 from frontend_sim.converter import AnyAdc
+from frontend_sim.present.error_panel import draw_error, error_views
 from frontend_sim.present.figure_file import check_plot_target, new_figure, save_figure
-from frontend_sim.present.numbers import engineering, prefix_of
-from frontend_sim.present.run_like import RunLike
+from frontend_sim.present.margin_panel import LINE, draw_margins, verdicts_of
+from frontend_sim.present.numbers import counted, engineering, prefix_of
 from frontend_sim.present.run_panels import Conversions, draw_codes, draw_difference, draw_waveforms
 from frontend_sim.present.settling_panel import draw_settling, settling_views
+from frontend_sim.present.spectrum_panel import draw_spectrum, spectrum_view
 from frontend_sim.scenario.signal import PIN
+from frontend_sim.simulation.finished import RunLike
 
 if TYPE_CHECKING:
     from matplotlib.axes import Axes
@@ -32,8 +35,10 @@ def plot_run(run: RunLike, path: str | os.PathLike[str], overwrite: bool = False
     exceeded; the pin between conversions where its waveform is kept, and where it is not, a few
     conversions are dots that no line joins; the difference of the two in LSB; the waveforms, where
     some are kept; and for each settling check the distance from the end in LSB on a logarithmic
-    axis, with the band, the last exit and the time that is granted. A long run is
-    reduced to the lowest and the highest value of each column of pixels, so no peak is lost.
+    axis, with the band, the last exit and the time that is granted; where lines or bands fold, the
+    spectrum of the codes with each named by its source; for each total-error check its parts as
+    bars; and, of a record, the margins of all checks, also as bars. A long run is reduced to the
+    lowest and the highest value of each column of pixels, so no peak is lost.
 
     Parameters
     ----------
@@ -59,10 +64,15 @@ def run_figure(run: RunLike) -> Figure:
     adc, time = run.scenario.adc, run.time
     waveform_time = run.waveform_time if len(run.waveform) else np.empty(0)
     by_unit = _by_unit(run) if len(waveform_time) else {}
-    views = settling_views(run)
+    views, spectrum = settling_views(run), spectrum_view(run)
+    errors, verdicts = error_views(run), verdicts_of(getattr(run, "results", ()))
     heights = [3.0, 1.2, *(2.2 for _ in by_unit)]
-    figure = new_figure(10.0, 1.9 + 1.1 * (sum(heights) + 2.4 * len(views)))
-    axes = _rows(figure, heights, len(views))
+    own = [2.4 for _ in views]
+    own += [] if spectrum is None else [2.8]
+    own += [0.6 + 0.45 * len(view.bars) for view in errors]
+    own += [0.7 + LINE * len(verdicts)] if verdicts else []
+    figure = new_figure(10.0, 1.9 + 1.1 * (sum(heights) + sum(own)))
+    axes = _rows(figure, heights, own)
     last = max((float(times[-1]) for times in (time, waveform_time) if len(times)), default=0.0)
     factor, letter = prefix_of(last)
     # The output of the last stage is the pin.
@@ -77,8 +87,15 @@ def run_figure(run: RunLike) -> Figure:
     for panel, (unit, waveform) in zip(axes[2:last_row], by_unit.items(), strict=True):
         draw_waveforms(panel, factor * waveform_time, waveform, unit)
     axes[last_row - 1].set_xlabel(f"time [{letter}s]")
-    for panel, view in zip(axes[last_row:], views, strict=True):
-        draw_settling(panel, view)
+    others = iter(axes[last_row:])
+    for view in views:
+        draw_settling(next(others), view)
+    if spectrum is not None:
+        draw_spectrum(next(others), spectrum)
+    for error in errors:
+        draw_error(next(others), error)
+    if verdicts:
+        draw_margins(next(others), verdicts)
     beyond = int(np.count_nonzero(conversions.overrange))
     figure.suptitle(_title(run.scenario.title, adc, len(time), beyond))
     for each in axes:
@@ -87,9 +104,9 @@ def run_figure(run: RunLike) -> Figure:
     return figure
 
 
-def _rows(figure: Figure, heights: list[float], settlings: int) -> list[Axes]:
-    """Return panels below each other; all but those of settling checks share the axis of time."""
-    every = [*heights, *(2.4 for _ in range(settlings))]
+def _rows(figure: Figure, heights: list[float], own: list[float]) -> list[Axes]:
+    """Return panels below each other; those after the first ones have axes of their own."""
+    every = [*heights, *own]
     axes: list[Axes] = list(
         figure.subplots(len(every), 1, height_ratios=every, squeeze=False)[:, 0]
     )
@@ -111,9 +128,8 @@ def _by_unit(run: RunLike) -> dict[str, dict[str, Real]]:
 
 def _title(title: str, adc: AnyAdc, count: int, beyond: int) -> str:
     low, high = engineering(adc.low, "V"), engineering(adc.high, "V")
-    facts = (
-        f"{count} conversions at {engineering(adc.rate, 'Hz')}, {adc.bits} bits, {low} to {high}"
-    )
+    rate = engineering(adc.rate, "Hz")
+    facts = f"{counted(count, 'conversion')} at {rate}, {adc.bits} bits, {low} to {high}"
     facts += f", {beyond} beyond the range" if beyond else ", none beyond the range"
     # A dollar sign would begin a formula.
     return fill(title or "Run without a title", 90).replace("$", r"\$") + "\n" + facts

@@ -7,10 +7,18 @@ from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
+from frontend_sim.measure.acquisition import Acquisition
 from frontend_sim.measure.result import verdict_of
+from frontend_sim.present.acquisition_rows import acquisition_rows
+from frontend_sim.present.aliasing_table import (
+    aliasing_in,
+    aliasing_summary,
+    aliasing_table,
+    run_alias_error,
+)
 from frontend_sim.present.numbers import engineering, fixed, level, plain
 from frontend_sim.present.result_table import result_tables
-from frontend_sim.present.run_like import RunLike
+from frontend_sim.simulation.finished import RunLike
 
 if TYPE_CHECKING:
     from rich.console import RenderableType
@@ -21,8 +29,15 @@ def run_summary(run: RunLike) -> dict[str, Any]:
     """Return the numbers of a run as plain data for JSON, in SI units; None for what is not there.
 
     ``difference_rms`` is the rms value of codes read back less pin over the conversions within the
-    range: quantization, noise and the converter's own errors together.
+    range: quantization, noise and the converter's own errors together. ``aliasing`` tells what
+    folds, and what that does to the codes where it is no long work.
     """
+    aliasing = aliasing_in(run)
+    told = None if aliasing is None else aliasing_summary(aliasing, run_alias_error(run, aliasing))
+    return {**_summary(run), "aliasing": told}
+
+
+def _summary(run: RunLike) -> dict[str, Any]:
     adc, time, pin, voltage = run.scenario.adc, run.time, run.pin, run.voltage
     codes, overrange = run.codes, run.overrange
     inside = ~overrange
@@ -43,6 +58,7 @@ def run_summary(run: RunLike) -> dict[str, Any]:
         "overrange": int(np.count_nonzero(overrange)),
         "difference_rms": _rms(difference),
         "difference_largest": float(np.max(np.abs(difference))) if len(difference) else None,
+        "acquisition": _acquisition(run),
         "grid": _grid(run),
         "verdict": verdict_of(getattr(run, "results", ())),
         "results": [_plain(vars(result)) for result in getattr(run, "results", ())],
@@ -66,14 +82,27 @@ def _extent(values: Any) -> dict[str, Any] | None:
 
 
 def _stimulus(run: RunLike) -> dict[str, Any] | None:
-    """Return what arrived, where its waveform is kept, in its SI unit."""
-    values = run.waveform.get("stimulus", ())
-    extent = _extent(values)
-    return None if extent is None else {**extent, "unit": run.scenario.stimulus_unit or "1"}
+    """Return what arrived, in its SI unit: at the conversions, and where a waveform is kept."""
+    at_conversions, kept = run.stimulus, run.waveform.get("stimulus", np.empty(0))
+    extent = _extent(np.concatenate([at_conversions, kept]))
+    if extent is None:
+        return None
+    mean = float((kept if len(kept) else at_conversions).mean())
+    ends = {"first": _first(at_conversions), "last": _first(at_conversions[::-1])}
+    return {**extent, "mean": mean, **ends, "unit": run.scenario.stimulus_unit or "1"}
 
 
 def _grid(run: RunLike) -> dict[str, Any] | None:
     return None if run.grid is None else _plain(vars(run.grid))
+
+
+def _acquisition(run: RunLike) -> dict[str, Any] | None:
+    """Return how well the converter's input network settled; None where it has none."""
+    found, held = Acquisition.of(run.scenario), run.held
+    if found is None:
+        return None
+    error = np.abs(held - run.pin) / run.scenario.adc.lsb
+    return {**_plain(vars(found)), "largest_error": float(np.max(error)) if len(held) else None}
 
 
 def _plain(values: dict[str, Any]) -> dict[str, Any]:
@@ -87,12 +116,17 @@ def _plain(values: dict[str, Any]) -> dict[str, Any]:
 def run_tables(run: RunLike) -> tuple[RenderableType, ...]:
     """Return the tables of a run for the terminal: the run, and its results where it has some."""
     results = [vars(result) for result in getattr(run, "results", ())]
-    return (_main_table(run_summary(run)), *result_tables(results))
+    aliasing = aliasing_in(run)
+    folds = None
+    if aliasing is not None:
+        folds = aliasing_table(aliasing, run_alias_error(run, aliasing))
+    between = () if folds is None else (folds,)
+    return (_main_table(_summary(run)), *between, *result_tables(results))
 
 
 def run_table(run: RunLike) -> Table:
     """Return the table of a run without its results."""
-    return _main_table(run_summary(run))
+    return _main_table(_summary(run))
 
 
 def _main_table(summary: dict[str, Any]) -> Table:
@@ -128,6 +162,10 @@ def _rows(summary: dict[str, Any]) -> list[tuple[str, str]]:
     ]
     if summary["difference_rms"] is not None:
         rows.append(("codes less pin, rms", f"{fixed(summary['difference_rms'], 3)} LSB"))
+    if (found := summary["acquisition"]) is not None:
+        found = dict(found)
+        rows.append(("held less pin, largest", f"{plain(found.pop('largest_error'), 3)} LSB"))
+        rows += acquisition_rows(Acquisition(**found))
     if (grid := summary["grid"]) is not None:
         rate = engineering(grid["grid_rate"], "Hz", 4)
         far = f"{plain(grid['largest_error'], 3)} LSB"
@@ -143,7 +181,15 @@ def _stimulus_rows(stimulus: dict[str, Any] | None) -> list[tuple[str, str]]:
     if stimulus is None:
         return []
     unit = stimulus["unit"].removeprefix("1")
+    names = {
+        "lowest": "lowest",
+        "mean": "mean",
+        "highest": "highest",
+        "first": "at the first conversion",
+        "last": "at the last conversion",
+    }
     return [
-        (f"stimulus: {name}", level(stimulus[name], unit, 5))
-        for name in ("lowest", "mean", "highest")
+        (f"stimulus: {name}", level(stimulus[key], unit, 5))
+        for key, name in names.items()
+        if stimulus[key] is not None
     ]

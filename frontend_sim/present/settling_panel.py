@@ -14,9 +14,9 @@ from frontend_sim.measure.checks.subject import Subject
 from frontend_sim.present.colours import BLACK, EXACT, GREEN, LIMIT, MARK, ORANGE
 from frontend_sim.present.decimation import COLUMNS
 from frontend_sim.present.numbers import engineering, plain, prefix_of
-from frontend_sim.present.run_like import RunLike
 from frontend_sim.scenario.checks.rules import labels
 from frontend_sim.scenario.checks.settling import SettlingCheck
+from frontend_sim.simulation.finished import RunLike
 
 if TYPE_CHECKING:
     from matplotlib.axes import Axes

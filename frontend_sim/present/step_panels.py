@@ -18,6 +18,9 @@ if TYPE_CHECKING:
 FEW = 60
 """Up to so many points of a discrete model are drawn as dots."""
 
+LABEL_HEIGHT = 0.11
+"""Height of a label of two lines, as a share of the panel."""
+
 DECADES = 0.3
 """The distance is shown to this share below its narrowest band."""
 
@@ -59,11 +62,13 @@ def draw_distance(axes: Axes, view: StepView) -> None:
     largest = float(np.max(view.distance))
     axes.set_ylim(floor, 2.0 * max(largest, *(settling.band for settling in bands)))
     axes.set_xlim(factor * view.time[0], factor * view.settled)
-    for settling in bands:
+    low, high = (math.log(each) for each in axes.get_ylim())
+    heights = spread_out([(math.log(each.band) - low) / (high - low) for each in bands])
+    for settling, height in zip(bands, heights, strict=True):
         axes.axhline(settling.band, color=LIMIT, linestyle="--", linewidth=1.0, zorder=2)
         axes.annotate(
             f"{settling.label}\nafter {engineering(settling.time or 0.0, 's')}",
-            (1.0, settling.band), xycoords=("axes fraction", "data"), xytext=(5, 0),
+            (1.0, height), xycoords="axes fraction", xytext=(5, 0),
             # Beside the panel, where no curve can strike it through.
             textcoords="offset points", ha="left", va="center", fontsize="small", color=BLACK,
             annotation_clip=False,
@@ -76,6 +81,34 @@ def draw_distance(axes: Axes, view: StepView) -> None:
     axes.set_ylabel(f"distance from the end [{per_unit(view.inspection.unit)}]")
     step = quantity(measured.full_scale_step, view.inspection.unit)
     axes.set_title(f"Settling; LSB counted for a step of {step}", fontsize="medium")
+
+
+def spread_out(heights: list[float]) -> list[float]:
+    """Return the heights of labels so far apart that none covers another, as shares of a panel.
+
+    Labels that are too near to each other move to both sides of their common middle.
+    """
+    order = sorted(range(len(heights)), key=heights.__getitem__)
+    groups: list[list[int]] = []
+    for label in order:
+        groups.append([label])
+        while len(groups) > 1 and _bottom(groups[-1], heights) < _top(groups[-2], heights):
+            last = groups.pop()
+            groups[-1] += last
+    placed = list(heights)
+    for group in groups:
+        for number, label in enumerate(group):
+            placed[label] = _bottom(group, heights) + (number + 0.5) * LABEL_HEIGHT
+    return placed
+
+
+def _bottom(group: list[int], heights: list[float]) -> float:
+    middle = sum(heights[label] for label in group) / len(group)
+    return middle - 0.5 * LABEL_HEIGHT * len(group)
+
+
+def _top(group: list[int], heights: list[float]) -> float:
+    return _bottom(group, heights) + LABEL_HEIGHT * len(group)
 
 
 def _draw_models(axes: Axes, view: StepView, factor: float) -> None:

@@ -124,7 +124,8 @@ class ReadsLimit(Reads):
         limit = parse_limit(value)
         complaint = self.bounds.complaint(float(limit), "")
         if complaint is not None:
-            raise QuantityError(f"given {shown(value)}; a limit here {complaint}")
+            told = value.text() if isinstance(value, Limit) else shown(value)
+            raise QuantityError(f"given {told}; a limit here {complaint}")
         return limit
 
     def plain(self, value: float) -> str:

@@ -90,6 +90,8 @@ class Reads:
             schema
         )  # holds what Field(ge=...) adds, under pydantic's or JSON's name
         result = quantity_schema(self.dimension, limits_of(self.bounds, inner))
+        if type(self) is not Reads:
+            del result["pattern"]  # of levels and limits, other keys decide on the unit
         if self.spread:
             result["type"].append("object")
             result.update(table_schema(result))

@@ -77,9 +77,22 @@ def parse(value: object, dimension: Dimension) -> float:
         number = _of_text(value.strip(), dimension) if isinstance(value, str) else _of(value)
         _check_magnitude(number, dimension)
     except QuantityError as error:
+        error = _per_kelvin(value, dimension) or error
         stop = " Expected" if str(error).endswith("?") else "; expected"
         raise QuantityError(f"given {shown(value)}: {error}{stop} {dimension.expected}") from None
     return number
+
+
+def _per_kelvin(value: object, dimension: Dimension) -> QuantityError | None:
+    """Return what to say of a drift whose unit lacks the kelvin, ``"50 ppm"``; else None."""
+    if not isinstance(value, str) or not dimension.unit.endswith("/K"):
+        return None
+    wanted = f"{value.strip()}/K"
+    try:
+        _of_text(wanted, dimension)
+    except QuantityError:
+        return None
+    return QuantityError(f'a drift is per kelvin; write "{wanted}", if that is meant')
 
 
 def _of(value: Real | Decimal) -> float:

@@ -8,6 +8,7 @@ from collections.abc import Mapping
 from typing import TYPE_CHECKING, Any
 
 from frontend_sim.quantities.dimension import DRIFT, FRACTION, Bounds, Dimension
+from frontend_sim.quantities.pattern import pattern
 from frontend_sim.quantities.preferred import SERIES
 
 if TYPE_CHECKING:
@@ -38,6 +39,7 @@ def quantity_schema(dimension: Dimension, limits: Mapping[str, float]) -> JsonSc
     """Return the schema of text with a unit or a bare number."""
     return {
         "type": ["string", "number"],
+        "pattern": pattern(dimension),
         "unit": dimension.unit or "1",
         "quantity": dimension.name,
         "examples": re.findall(r'"([^"]+)"', dimension.example),

@@ -57,6 +57,10 @@ class Stimulus(Value):
         """Return how long the signal is known [s], or None where it goes on for ever."""
         return None
 
+    def highest_frequency(self) -> float | None:
+        """Return the highest frequency that is meant to arrive; None where none is named [Hz]."""
+        return None
+
     def files(self) -> tuple[Path, ...]:
         """Return the files that the signal is read from."""
         return ()

@@ -189,3 +189,7 @@ class Chirp(Stimulus):
                 self.sweep == "logarithmic",
             ),
         )
+
+    def highest_frequency(self) -> float:
+        """Return the higher end of the sweep [Hz]."""
+        return max(self.start_frequency, self.stop_frequency)

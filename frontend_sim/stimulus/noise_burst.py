@@ -88,3 +88,7 @@ class NoiseBurst(Stimulus):
     def drives(self, key: Key) -> tuple[Drive, ...]:
         """Return one burst."""
         return (Burst(self.rms, self.bandwidth, self.at, self.length, (*key, 1)),)
+
+    def highest_frequency(self) -> float:
+        """Return the bandwidth [Hz]."""
+        return self.bandwidth

@@ -75,3 +75,7 @@ class Sine(Stimulus):
     def drives(self, key: Key) -> tuple[Drive, ...]:
         """Return one tone."""
         return (Tone(self.amplitude, self.frequency, self.phase, self.offset),)
+
+    def highest_frequency(self) -> float:
+        """Return the frequency of the sine [Hz]."""
+        return self.frequency

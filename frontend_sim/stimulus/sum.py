@@ -55,6 +55,11 @@ class Sum(Stimulus):
         known = [length for term in self.term if (length := term.known_length()) is not None]
         return min(known) if known else None
 
+    def highest_frequency(self) -> float | None:
+        """Return the highest frequency of all terms that name one [Hz]."""
+        named = [each for term in self.term if (each := term.highest_frequency()) is not None]
+        return max(named, default=None)
+
     def files(self) -> tuple[Path, ...]:
         """Return the files of all terms."""
         return tuple(file for term in self.term for file in term.files())

@@ -34,3 +34,7 @@ class Tones(Stimulus):
             Tone(tone.amplitude, tone.frequency, tone.phase, 0.0 if index else self.offset)
             for index, tone in enumerate(self.tone)
         )
+
+    def highest_frequency(self) -> float:
+        """Return the highest of the tones [Hz]."""
+        return max(tone.frequency for tone in self.tone)

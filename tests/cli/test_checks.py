@@ -155,3 +155,16 @@ def test_the_designs_example_is_judged(folder: Path, capsys: pytest.CaptureFixtu
     (folder / "pump.toml").write_text(text + check)
     assert main(["run", "pump.toml"]) == 1
     assert "it has not settled" in " ".join(capsys.readouterr().out.split())
+
+
+@pytest.mark.parametrize("command", ["run", "inspect", "sensitivity"])
+def test_names_that_look_like_marks_are_shown(
+    command: str, folder: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    """Brackets and colons of a name are no styles and no pictures, in any table."""
+    name = "[red]a[/] [/] :smile:"
+    text = TEXT.replace("BEFORE", "10 ms").replace("input filter", name)
+    (folder / "s.toml").write_text(text.replace('"clipping"', f'"level"\nname = "{name}"\n'
+                                                'at = "2 ms"\nat_least = "0.1 V"'))  # fmt: skip
+    assert main([command, "s.toml"]) == 0
+    assert name in " ".join(capsys.readouterr().out.split())

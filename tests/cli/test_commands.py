@@ -107,7 +107,7 @@ def test_interrupted_run_leaves_nothing(
     def interrupted(self: object, *_: object) -> None:
         raise KeyboardInterrupt
 
-    monkeypatch.setattr(Simulation, "_block_of", interrupted)
+    monkeypatch.setattr(Simulation, "pin_steps", interrupted)
     assert main(["run", str(PUMP), "-o", "pump.h5"]) == 130
     assert "interrupted" in capsys.readouterr().err
     assert list(folder.iterdir()) == []

@@ -50,7 +50,16 @@ def test_each_failing_check_has_its_sentence() -> None:
     assert "tone fails: cannot be told: no tone" in text
     assert "wait fails" not in text
     assert text.rstrip().endswith("verdict: fails, 2 of 3 checks")
-    assert printed(HOLDS).rstrip().endswith("verdict: holds, all of 1 checks")
+    assert printed(HOLDS).rstrip().endswith("verdict: holds, 1 check")
+
+
+def test_names_stand_for_themselves() -> None:
+    """Brackets that look like a style, or like its end, are shown as they are."""
+    odd = Result("[red]x[/] [/]", 1.0, "V", 2.0, 1.0, "holds", "[b] how", "at most")
+    beside = Result("[red]x[/] [/]: final", 1.0, "V", method="of [filter]")
+    text = printed(odd, beside)
+    assert text.count("[red]x[/] [/]") == 2
+    assert "of [filter]" in text
 
 
 def test_measures_stand_apart() -> None:

@@ -5,6 +5,7 @@ from __future__ import annotations
 import csv
 import re
 import warnings
+from functools import lru_cache
 from typing import Literal
 
 import numpy as np
@@ -39,6 +40,27 @@ def split(line: str, delimiter: str | None) -> list[str]:
     if delimiter is None:
         return line.split()
     return [cell.strip() for cell in line.split(delimiter)]
+
+
+def well_quoted(line: str, delimiter: str | None, inner: bool = True) -> bool:
+    """Return whether every cell of a line that begins with a quote ends with one.
+
+    Parameters
+    ----------
+    inner : whether a quote inside of a cell that does not begin with one is let pass: an inch
+    """
+    return _quoting(delimiter, inner).fullmatch(line) is not None
+
+
+@lru_cache(maxsize=32)
+def _quoting(delimiter: str | None, inner: bool) -> re.Pattern[str]:
+    end = r"[ \t]+" if delimiter is None else re.escape(delimiter)
+    rest = r" \t" if delimiter is None else re.escape(delimiter)
+    plain = rf'[^"{rest}][^{rest}]*' if inner else rf'[^"{rest}]+'
+    cell = rf'[ \t]*(?:"(?:[^"]|"")*"[ \t]*|{plain}|)'
+    if delimiter is None:
+        cell = rf'(?:"(?:[^"]|"")*"|{plain}|)'
+    return re.compile(rf"{cell}(?:{end}{cell})*\s*")
 
 
 def number(cell: str, decimal: str) -> float | None:

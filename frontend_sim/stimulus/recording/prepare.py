@@ -65,7 +65,7 @@ def _prepared(
     source = open_source(recording.file, wanted)
     factor = signal_factor(source.signal, recording.unit, signal_unit)
     conversion = Conversion(recording.scale * factor.value, recording.offset + factor.zero)
-    notes = [f"{source.signal.label}, {source.signal.count} points", *source.notes, *factor.notes]
+    notes = [f"{source.signal.label}, {_points(source.signal.count)}", *source.notes, *factor.notes]
     signal, axis = timing(recording, source, notes)
     if isinstance(axis, Grid):
         drives, length = _on_grid(recording, signal, axis, conversion, notes)
@@ -156,13 +156,19 @@ def _without_holes(
         )
     if recording.missing == "error":
         raise RecordingError(
-            f"{recording.file}: {signal.label}: {holes.count} of {last - first} points have no "
+            f"{recording.file}: {signal.label}: {holes.count} of "
+            f"{_points(last - first)} {'has' if holes.count == 1 else 'have'} no "
             f'value ({where}); set missing = "line", "hold" or "zero" to bridge them'
         )
     done = {"line": "joined by a line", "hold": "held", "zero": "set to zero"}[recording.missing]
-    notes.append(f"{holes.count} points without a value ({where}) were {done}")
+    were = "was" if holes.count == 1 else "were"
+    notes.append(f"{_points(holes.count)} without a value ({where}) {were} {done}")
     blocks = ((times(at, at + len(seen)), seen) for at, seen in signal.blocks(first, last))
     return store(bridged(blocks, recording.missing)).read
+
+
+def _points(count: int) -> str:
+    return "1 point" if count == 1 else f"{count} points"
 
 
 def _check_gap(recording: Recording, gap: float, where: str) -> None:

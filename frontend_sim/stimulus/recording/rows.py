@@ -11,7 +11,14 @@ import numpy as np
 from numpy.typing import NDArray
 
 from frontend_sim.errors import RecordingError
-from frontend_sim.stimulus.recording.cells import dates_at_once, kind, nanoseconds, number, split
+from frontend_sim.stimulus.recording.cells import (
+    dates_at_once,
+    kind,
+    nanoseconds,
+    number,
+    split,
+    well_quoted,
+)
 from frontend_sim.stimulus.recording.columns import label
 from frontend_sim.stimulus.recording.layout import Layout
 from frontend_sim.stimulus.recording.printed_digits import PrintedDigits
@@ -105,6 +112,10 @@ class Rows:
             return None
         if not _is_regular(text, len(lines), layout):
             return None
+        if '"' in text and not all(
+            well_quoted(line, layout.delimiter, inner=False) for line in lines if '"' in line
+        ):
+            return None
         if layout.decimal == ",":
             lines = text.replace(",", ".").split("\n")
         picks = [self.signal] if self.time is None else [self.signal, self.time]
@@ -136,6 +147,11 @@ class Rows:
             if not bare or bare.startswith("#"):
                 self.comments += bool(bare)
                 continue
+            if '"' in text and not well_quoted(text, self.layout.delimiter):
+                raise RecordingError(
+                    f"{self.file}, line {line}: a quote opens a cell that no quote closes at its "
+                    f"end: {_shown(bare)}; mend or remove the line"
+                )
             row = split(text, self.layout.delimiter)
             if len(row) < self.layout.columns or any(row[self.layout.columns :]):
                 raise RecordingError(

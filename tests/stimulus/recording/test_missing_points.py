@@ -43,9 +43,7 @@ def test_policies_in_a_table(tmp_path: Path, policy: str, expected: list[float])
 def test_refused_by_default(tmp_path: Path) -> None:
     """Without a policy missing points are an error that says how many, where, and what to do."""
     file = write(tmp_path / "log.csv", "t,x\n0,1\n1,\n2,3\n")
-    with pytest.raises(
-        RecordingError, match=r"1 of 3 points have no value \(line 3\); set missing"
-    ):
+    with pytest.raises(RecordingError, match=r"1 of 3 points has no value \(line 3\); set missing"):
         recording(file, time="t").known_length()
 
 

@@ -1,0 +1,163 @@
+"""``frontend-sim replay``: run a set, resume it, summarize it."""
+
+from __future__ import annotations
+
+from pathlib import Path
+from typing import TYPE_CHECKING, Any
+
+import click
+
+from frontend_sim.cli.console import print_json, print_notes, print_tables
+
+if TYPE_CHECKING:
+    from frontend_sim.replay import Preview, Replayed
+
+INCOMPLETE, INTERRUPTED = 3, 130
+SHOWN = 20
+"""Runs that a preview lists for people."""
+
+
+@click.command("replay")
+@click.argument("source", nargs=-1, required=True, metavar="SET")
+@click.option(
+    "-o",
+    "--output",
+    type=click.Path(path_type=Path),
+    metavar="DIR",
+    help="Where records and table go; by default the set's name and _runs, in this folder.",
+)
+@click.option(
+    "--workers", type=click.IntRange(min=1), metavar="N", help="By default one for each core."
+)
+@click.option(
+    "--on",
+    type=click.Choice(["processes", "in-process", "dask"]),
+    default="processes",
+    show_default=True,
+    help="Where the runs are done.",
+)
+@click.option(
+    "--scheduler",
+    metavar="ADDRESS",
+    help="Of a Dask scheduler; by default a cluster on this machine.",
+)
+@click.option(
+    "--keep",
+    type=click.Choice(["nothing", "failures", "all"]),
+    help="Of which runs records are kept; by default what the set says, else failures.",
+)
+@click.option("--dry-run", is_flag=True, help="Tell what would be run and how long it takes.")
+@click.option("--json", "as_json", is_flag=True, help="Print results as JSON.")
+def command(
+    source: tuple[str, ...],
+    output: Path | None,
+    workers: int | None,
+    on: str,
+    scheduler: str | None,
+    keep: Any,
+    dry_run: bool,
+    as_json: bool,
+) -> int:
+    """Run SET: a set file, a directory or pattern of scenarios, or several scenarios.
+
+    What was run before and has not changed is kept, so that the same call goes on where it was
+    stopped, by whatever.
+
+    Exit status: 0 all checks hold, 1 a check fails, 2 the input is wrong, 3 the set is incomplete:
+    a run gave no result, or the disk is full; 130 interrupted.
+    """
+    from frontend_sim.cli.night_bar import night_bar
+    from frontend_sim.replay import preview_set, replay_set
+
+    given = source[0] if len(source) == 1 else list(source)
+    if dry_run:
+        _tell_preview(preview_set(given, output, workers=workers, keep=keep), as_json)
+        return 0
+    with night_bar(source[0]) as report:
+        done = replay_set(
+            given,
+            output,
+            workers=workers,
+            on=on,
+            scheduler=scheduler,
+            keep=keep,
+            report=report,
+        )
+    _tell(done, as_json)
+    return _status(done)
+
+
+def _status(done: Replayed) -> int:
+    if done.interrupted:
+        return INTERRUPTED
+    if not done.complete:
+        return INCOMPLETE
+    return 1 if done.tally.verdict == "fails" else 0
+
+
+def _tell(done: Replayed, as_json: bool) -> None:
+    from frontend_sim.present import replay_tables
+    from frontend_sim.present.night_table import night_data, night_tables
+    from frontend_sim.summary import summarize
+
+    counts = done.tally.counts
+    missing = done.tally.planned - done.tally.done
+    if as_json:
+        told: dict[str, Any] = {
+            "directory": str(done.directory),
+            "planned": done.tally.planned,
+            "ran": done.ran,
+            "kept": done.kept,
+            "missing": missing,
+            **{name: counts.get(name, 0) for name in ("holds", "fails", "none", "error")},
+            "verdict": done.tally.verdict,
+            "complete": done.complete,
+            "stopped": done.stopped,
+            "digest": done.digest,
+            "seconds": done.seconds,
+        }
+        if done.tabled and done.tally.done:
+            told["summary"] = night_data(summarize(done.table()))
+        print_json(told)
+    elif done.tabled and done.tally.done:
+        summary = summarize(done.table())
+        print_notes(summary.warnings)
+        print_tables((*replay_tables(summary.table), *night_tables(summary)))
+        click.echo(f"table: {done.directory / 'set.h5'}")
+    if done.stopped:
+        click.echo(
+            f"stopped after {done.ran:,} runs, {missing:,} are left: {done.stopped}; the same call "
+            "goes on from here",
+            err=True,
+        )
+    elif counts.get("error"):
+        click.echo(
+            f"{counts['error']:,} of {done.tally.planned:,} runs gave no result, so the set is "
+            "incomplete",
+            err=True,
+        )
+
+
+def _tell_preview(found: Preview, as_json: bool) -> None:
+    from frontend_sim.replay.estimate import told_bytes, told_seconds
+
+    if as_json:
+        told = {
+            "directory": str(found.directory),
+            "planned": found.planned,
+            "kept": found.kept,
+            "runs": list(found.names),
+            "seconds": found.seconds,
+            "bytes": found.size,
+        }
+        print_json(told)
+        return
+    for name in found.names[:SHOWN]:
+        click.echo(name)
+    if len(found.names) > SHOWN:
+        click.echo(f"... and {len(found.names) - SHOWN:,} more; --json lists all of them")
+    click.echo(
+        f"{len(found.names):,} of {found.planned:,} runs would be done, {found.kept:,} are done "
+        f"already; about {told_seconds(found.seconds)}, {told_bytes(found.size)} in "
+        f"{found.directory}"
+    )

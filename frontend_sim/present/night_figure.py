@@ -1,0 +1,133 @@
+"""How a check spreads over a night, and what it follows."""
+
+from __future__ import annotations
+
+import math
+from typing import TYPE_CHECKING
+
+import numpy as np
+from numpy.typing import NDArray
+
+from frontend_sim.present.colours import BLUE, LIMIT, MARK, ORANGE
+from frontend_sim.present.figure_file import new_figure
+from frontend_sim.present.numbers import prefix_of
+from frontend_sim.present.result_table import PREFIXED
+from frontend_sim.summary import CheckSummary, NightSummary
+from frontend_sim.summary.night_summary import numeric_parameters
+
+if TYPE_CHECKING:
+    from matplotlib.axes import Axes
+    from matplotlib.figure import Figure
+
+Real = NDArray[np.float64]
+
+ALIKE = 1e-9
+"""Relative difference of values that are drawn as one."""
+
+MOST_DOTS = 4000
+"""So many runs are drawn as dots, evenly picked, the worst among them."""
+
+
+def night_figure(summary: NightSummary, check: CheckSummary) -> Figure:
+    """Return the figure of a check: its distribution with its limit, and its strongest cause."""
+    numbers = numeric_parameters(summary.table)
+    cause = None if check.cause is None else check.cause.parameter
+    figure = new_figure(10.0, 3.4)
+    panels = figure.subplots(1, 2 if cause else 1, squeeze=False)[0]
+    factor, label = _scaled(check)
+    _draw_histogram(panels[0], summary, check, factor, label)
+    if cause is not None:
+        _draw_cause(panels[1], summary, check, numbers[cause], cause, factor, label)
+    for panel in panels:
+        panel.grid(True, color="0.9", linewidth=0.6)
+        panel.set_axisbelow(True)
+    return figure
+
+
+def _scaled(check: CheckSummary) -> tuple[float, str]:
+    """Return the factor of the axis of values and its label."""
+    name = check.name.replace("$", r"\$")
+    if check.unit in ("", "1"):
+        return 100.0, f"{name} [%]"
+    if check.unit not in PREFIXED:
+        return 1.0, f"{name} [{check.unit}]"
+    known = check.column.value[np.isfinite(check.column.value)]
+    factor, letter = prefix_of(float(np.max(np.abs(known), initial=0.0)))
+    return factor, f"{name} [{letter}{check.unit}]"
+
+
+def _draw_histogram(
+    axes: Axes, summary: NightSummary, check: CheckSummary, factor: float, label: str
+) -> None:
+    value, drawn = check.column.value, summary.population.drawn
+    known = np.isfinite(value)
+    sets = [(known & drawn, "draws", BLUE), (known & ~drawn, "other runs", ORANGE)]
+    rows = [(factor * value[which], name, colour) for which, name, colour in sets if which.any()]
+    if rows:
+        edges = bin_edges(np.concatenate([row for row, _, _ in rows]))
+        axes.hist(
+            [row for row, _, _ in rows], bins=edges, stacked=True,
+            color=[colour for _, _, colour in rows], label=[name for _, name, _ in rows],
+        )  # fmt: skip
+    limits = np.unique(check.column.limit[np.isfinite(check.column.limit)])
+    for place, limit in enumerate(limits[:8].tolist()):
+        axes.axvline(factor * limit, color=LIMIT, linestyle="--", linewidth=1.4,
+                     label=f"limit, {check.column.bound}" if place == 0 else None)  # fmt: skip
+    lost = int(np.count_nonzero(~known & (check.column.verdict != "")))
+    if lost:
+        axes.set_title(f"{lost} runs without a finite value are not shown", fontsize="small")
+    axes.set_xlabel(label)
+    axes.set_ylabel("runs")
+    axes.legend(fontsize="small", framealpha=0.9)
+
+
+def bin_edges(values: Real) -> list[float]:
+    """Return the edges of the bars of a histogram; values that are all alike are one bar.
+
+    Parameters
+    ----------
+    values : finite, at least one
+    """
+    low, high = float(np.min(values)), float(np.max(values))
+    size = max(abs(low), abs(high))
+    if high - low <= ALIKE * size or size == 0.0:
+        half = 0.05 * size or 1.0
+        return [low - half, high + half]
+    count = max(8, min(60, round(2.0 * math.sqrt(len(values)))))
+    return [float(edge) for edge in np.linspace(low, high, count + 1)]
+
+
+def _draw_cause(
+    axes: Axes,
+    summary: NightSummary,
+    check: CheckSummary,
+    parameter: Real,
+    key: str,
+    factor: float,
+    label: str,
+) -> None:
+    value = check.column.value
+    known = np.flatnonzero(np.isfinite(value) & np.isfinite(parameter))
+    step = max(1, math.ceil(len(known) / MOST_DOTS))
+    picked = known[::step]
+    unit = summary.unit_of(key)
+    far = float(np.max(np.abs(parameter[known]), initial=0.0))
+    scale, letter = prefix_of(far) if unit in PREFIXED else (1.0, "")
+    holds = check.column.verdict[picked] != "fails"
+    for which, name, colour, marker in (
+        (holds, "holds", BLUE, "o"), (~holds, "fails", LIMIT, "x"),
+    ):  # fmt: skip
+        if which.any():
+            chosen = picked[which]
+            axes.plot(
+                scale * parameter[chosen], factor * value[chosen], linestyle="none",
+                marker=marker, markersize=3.5, color=colour, alpha=0.6, label=name,
+            )  # fmt: skip
+    if check.worst in known:
+        axes.plot([scale * parameter[check.worst]], [factor * value[check.worst]], marker="D",
+                  linestyle="none", markersize=7, fillstyle="none", color=MARK,
+                  label="worst run")  # fmt: skip
+    named = key.replace("$", r"\$")
+    axes.set_xlabel(f"{named} [{letter}{unit}]" if unit not in ("", "1") else named)
+    axes.set_ylabel(label)
+    axes.legend(fontsize="small", framealpha=0.9)

@@ -1,0 +1,300 @@
+"""The page of a night."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Iterator
+
+import numpy as np
+
+from frontend_sim.comparison import SetComparison
+from frontend_sim.measure.statistics import worst_order
+from frontend_sim.present.night_figure import night_figure
+from frontend_sim.present.night_table import share, shown
+from frontend_sim.present.numbers import engineering, plain
+from frontend_sim.present.page.content import (
+    Cell,
+    Page,
+    PageFigure,
+    PageTable,
+    Section,
+    Tone,
+    number,
+)
+from frontend_sim.present.page.origin import caution_section, made, origin_section
+from frontend_sim.present.page.render import embedded
+from frontend_sim.present.page.set_difference import set_difference_section
+from frontend_sim.present.result_table import PREFIXED, SIGNS
+from frontend_sim.summary import CheckSummary, NightSummary
+
+MOST_ROWS = 20
+"""Failing runs that are listed; the table of the set has all of them."""
+
+MOST_CAUSES = 6
+
+
+def night_page(summary: NightSummary, since: SetComparison | None = None) -> Page:
+    """Return the page of a night.
+
+    Parameters
+    ----------
+    since : what changed since an earlier night, where it was asked for
+    """
+    tone, verdict = _verdict(summary)
+    sections = [_verdict_section(summary)]
+    if summary.checks:
+        sections.append(_worst_section(summary))
+    if since is not None:
+        sections.append(set_difference_section(since))
+    sections += [section for section in _distributions(summary) if section is not None]
+    sections += [_origin(summary), caution_section()]
+    return Page(
+        summary.table.title or summary.table.path.parent.name,
+        tone,
+        verdict,
+        _next_thing(summary),
+        tuple(_facts(summary)),
+        tuple(sections),
+        made(),
+    )
+
+
+def parameter_text(value: float | str, unit: str) -> str:
+    """Return the value of a parameter with its unit."""
+    if isinstance(value, str):
+        return value
+    if unit == "K":
+        return f"{plain(value - 273.15, 4)} degC"
+    if unit in PREFIXED:
+        return engineering(value, unit, 4)
+    return f"{plain(value, 5)} {unit}".removesuffix(" 1")
+
+
+def _verdict(summary: NightSummary) -> tuple[Tone, str]:
+    fails, errors, runs = summary.counts["fails"], len(summary.errors), summary.runs
+    if fails:
+        return "fails", f"Fails in {fails} of {runs} runs"
+    if errors or not summary.table.complete:
+        missing = summary.table.planned - runs
+        return "open", f"Incomplete: {errors} runs without a result, {missing} missing"
+    if not summary.checks:
+        return "open", "No check was made"
+    return "holds", f"Holds in all {runs} runs"
+
+
+def _next_thing(summary: NightSummary) -> str:
+    broken = [check for check in summary.checks if check.fails]
+    if broken:
+        first = broken[0]
+        advice = str(summary.table.texts("advice")[first.worst])
+        name = summary.table.names[first.worst]
+        return f"{first.name} is worst in {name}: {advice}" if advice else f"Worst run: {name}."
+    if summary.warnings:
+        return summary.warnings[0][:1].upper() + summary.warnings[0][1:] + "."
+    if not summary.checks:
+        return "Add [[check]] tables to the scenarios to get a verdict."
+    return "Nothing fails, and nothing is missing."
+
+
+def _facts(summary: NightSummary) -> Iterator[tuple[str, str]]:
+    yield "runs", f"{summary.runs} of {summary.table.planned}"
+    drawn = int(np.count_nonzero(summary.population.drawn))
+    if summary.rate is not None:
+        yield f"yield of {drawn} draws, 95 %", share(summary.rate)
+    yield "corners", f"{int(np.count_nonzero(summary.population.corner))}"
+    yield "checks", f"{len(summary.checks)}"
+    yield "computing time", _duration(float(np.sum(summary.table.numbers("seconds"))))
+
+
+def _duration(seconds: float) -> str:
+    if seconds < 120.0:
+        return f"{seconds:.3g} s"
+    return f"{seconds / 60.0:.0f} min" if seconds < 7200.0 else f"{seconds / 3600.0:.1f} h"
+
+
+def _verdict_section(summary: NightSummary) -> Section:
+    head = ("check", "verdict", "fails in", "worst margin", "yield of draws, 95 % interval")
+    rows = tuple(_check_row(check) for check in summary.checks)
+    tables = [PageTable("Checks, failures first", head, rows)] if rows else []
+    failing = _failing_table(summary)
+    if failing is not None:
+        tables.append(failing)
+    if summary.errors:
+        listed = tuple((Cell(a), Cell(b, "fails")) for a, b in summary.errors[:MOST_ROWS])
+        note = _rest(len(summary.errors))
+        tables.append(PageTable("Runs without a result", ("run", "why"), listed, note))
+    text = tuple(f"{warning[:1].upper()}{warning[1:]}." for warning in summary.warnings)
+    if not summary.checks:
+        told = "The scenarios have no check, so nothing was held against a limit."
+        text = (told, *text)
+    return Section("verdicts", "Verdicts", text, tuple(tables))
+
+
+def _check_row(check: CheckSummary) -> tuple[Cell, ...]:
+    tone: Tone = "fails" if check.fails else "holds"
+    margin = float(check.column.margin[check.worst])
+    return (
+        Cell(check.name),
+        Cell(tone, tone),
+        number(f"{check.fails} of {check.runs}"),
+        number(shown(margin, check)),
+        number("" if check.rate is None else share(check.rate)),
+    )
+
+
+def _failing_table(summary: NightSummary) -> PageTable | None:
+    failing = np.flatnonzero(summary.table.verdicts == "fails")
+    if len(failing) == 0:
+        return None
+    advice, records = summary.table.texts("advice"), summary.table.texts("record")
+    found = []
+    for check in summary.checks:
+        broken = np.flatnonzero(check.column.verdict == "fails")
+        if len(broken) == 0:
+            continue
+        worst = broken[worst_order(check.column.margin[broken])][:MOST_ROWS].tolist()
+        found += [(check, run) for run in worst]
+    rows = tuple(
+        (
+            Cell(summary.table.names[run]),
+            Cell(check.name),
+            number(shown(float(check.column.margin[run]), check), "fails"),
+            number(shown(float(check.column.value[run]), check)),
+            Cell(str(advice[run])),
+            Cell(str(records[run]) or "not kept"),
+        )
+        for check, run in found[:MOST_ROWS]
+    )
+    head = ("run", "check", "margin", "value", "what to change first", "record")
+    return PageTable("Runs that fail, the worst first", head, rows, _rest(len(found)))
+
+
+def _rest(count: int) -> str:
+    rest = count - MOST_ROWS
+    return f"{rest} more stand in the table of the set." if rest > 0 else ""
+
+
+def _worst_section(summary: NightSummary) -> Section:
+    head = ("check", "worst run", "value", "limit", "margin", "parameters there")
+    rows = tuple(_worst_row(summary, check) for check in summary.checks)
+    text = (
+        "The run with the smallest margin of each check; no run of this night is worse. What "
+        "was not drawn may be."
+    )
+    return Section(
+        "worst", "Worst cases", (text,), (PageTable("Worst run of each check", head, rows),)
+    )
+
+
+def _worst_row(summary: NightSummary, check: CheckSummary) -> tuple[Cell, ...]:
+    run, column = check.worst, check.column
+    told = [
+        f"{key} = {parameter_text(value, summary.unit_of(key))}"
+        for key, value in summary.parameters_of(run).items()
+    ]
+    tone: Tone = "fails" if column.verdict[run] == "fails" else ""
+    return (
+        Cell(check.name),
+        Cell(summary.table.names[run]),
+        number(shown(float(column.value[run]), check)),
+        number(SIGNS.get(column.bound, "") + shown(float(column.limit[run]), check)),
+        number(shown(float(column.margin[run]), check), tone),
+        Cell("\n".join(told) or "nominal"),
+    )
+
+
+def _distributions(summary: NightSummary) -> Iterator[Section | None]:
+    known = [check for check in summary.checks if check.percentiles]
+    if not known:
+        return
+    drawn = bool(np.any(summary.population.drawn))
+    which = "draws" if drawn else "runs"
+    head = ("check", "5 %", "median", "95 %", "95/95 limit")
+    rows = tuple(
+        (
+            Cell(check.name),
+            *(number(_percentile(check, place, drawn)) for place in range(3)),
+            number(_limit(check)),
+        )
+        for check in known
+    )
+    note = (
+        "Below each percentile the interval that contains it with 95 % confidence. The 95/95 "
+        "limit is the one that 95 % of all that could be drawn keep, with 95 % confidence and "
+        "whatever the distribution (Wilks 1941)."
+    )
+    table = PageTable(f"Values over the {which}", head, rows, note if drawn else "")
+    figures = tuple(_figure(summary, check) for check in known)
+    yield Section("distributions", "Distributions and margins", (), (table,), figures)
+    yield _causes(known)
+
+
+def _percentile(check: CheckSummary, place: int, drawn: bool) -> str:
+    found = check.percentiles[place]
+    text = shown(found.value, check)
+    if not drawn:
+        return text
+    ends = [shown(end, check) if math.isfinite(end) else "open" for end in (found.low, found.high)]
+    return f"{text}\n{ends[0]} to {ends[1]}"
+
+
+def _limit(check: CheckSummary) -> str:
+    if check.limits is None:
+        return f"needs {check.draws_needed} draws"
+    high = check.column.bound == "at most"
+    return ("≤ " if high else "≥ ") + shown(check.limits.high if high else check.limits.low, check)
+
+
+def _figure(summary: NightSummary, check: CheckSummary) -> PageFigure:
+    description = (
+        f"Histogram of {check.name} over all runs with its limit; {check.fails} of {check.runs} "
+        f"runs fail, the worst margin is {shown(float(check.column.margin[check.worst]), check)}."
+    )
+    cause = check.cause
+    caption = f"{check.name}: how it spreads"
+    if cause is not None:
+        description += f" Beside it, its values against {cause.parameter}."
+        strength = f"rank correlation {cause.coefficient:.2f}"
+        caption += f", and how it follows {cause.parameter} ({strength})"
+    return embedded(night_figure(summary, check), description, f"{caption}.")
+
+
+def _causes(checks: list[CheckSummary]) -> Section | None:
+    rows = [
+        (
+            Cell(check.name),
+            Cell(cause.parameter),
+            number(f"{cause.coefficient:+.2f}"),
+            number(f"{100.0 * cause.share:.0f} %"),
+            number("< 0.001" if cause.probability < 1e-3 else f"{cause.probability:.2g}"),
+        )
+        for check in checks
+        for cause in check.causes[:MOST_CAUSES]
+        if cause.probability < 0.05
+    ]
+    if not rows:
+        return None
+    head = ("check", "parameter", "rank correlation", "share of spread", "by chance")
+    note = (
+        "Spearman's coefficient; a response that turns between the ends of a tolerance shows "
+        "little of it. The last column is corrected for the number of parameters; what chance "
+        "explains with 5 % or more is left out."
+    )
+    table = PageTable("Parameters that a check follows", head, tuple(rows), note)
+    return Section("causes", "What explains the spread", (), (table,))
+
+
+def _origin(summary: NightSummary) -> Section:
+    table = summary.table
+    facts = (
+        ("set", str(table.path)),
+        ("begun", table.created.isoformat(sep=" ", timespec="seconds")),
+        ("seed of the set", str(table.seed)),
+        ("seed of a run", "from the seed of the set and the name of the run"),
+        ("digest of all scenarios and results (SHA-256)", table.digest),
+        ("runs", f"{summary.runs} of {table.planned}"),
+        ("interval of a yield", "mid-p, 95 %: half of the probability of what was seen counts"),
+    )
+    bases = zip(table.base_names, table.base_texts, strict=True)
+    listings = [("The set", table.text), *((f"Scenario {name}", text) for name, text in bases)]
+    return origin_section(facts, table.versions, (), (), listings)

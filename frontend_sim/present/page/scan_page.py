@@ -1,0 +1,62 @@
+"""The page of the record of a scan."""
+
+from __future__ import annotations
+
+from dataclasses import replace
+
+from frontend_sim.archive import ScanRecord
+from frontend_sim.comparison import RecordComparison
+from frontend_sim.measure.result import Result
+from frontend_sim.present.page.content import Page, Section
+from frontend_sim.present.page.difference import difference_section
+from frontend_sim.present.page.origin import caution_section, made
+from frontend_sim.present.page.record_page import (
+    check_section,
+    measure_table,
+    record_origin,
+    verdict_of_checks,
+)
+from frontend_sim.present.page.render import embedded
+from frontend_sim.present.scan_plot import scan_figure
+
+
+def scan_page(record: ScanRecord, since: RecordComparison | None = None) -> Page:
+    """Return the page of a scan; see ``record_page``."""
+    results = [*_named(record), *record.results]
+    checks = [result for result in results if result.verdict != "none"]
+    measures = [result for result in results if result.verdict == "none"]
+    broken = [result for result in checks if result.verdict == "fails"]
+    tone, verdict = verdict_of_checks(len(checks), len(broken))
+    description = (
+        f"Codes and pins of {len(record.channels)} channels over time: "
+        f"{', '.join(record.channels)}."
+    )
+    figure = embedded(scan_figure(record), description, "What each channel saw.")
+    sections = [check_section(checks), *([difference_section(since)] if since else [])]
+    sections.append(Section("signal", "The signals", (), (), (figure,)))
+    if measures:
+        sections.append(Section("measures", "Measures", (), (measure_table(measures),)))
+    sections += [record_origin(record), caution_section()]
+    counts = [channel.count for channel in record.channels.values()]
+    first = broken[0] if broken else None
+    return Page(
+        record.title or record.path.name,
+        tone,
+        verdict,
+        f"{first.name}: {(first.advice or first.method).partition(chr(10))[0]}"
+        if first
+        else "Nothing fails."
+        if checks
+        else "Add [[check]] tables to the scenario to get one.",
+        (("channels", f"{len(counts)}"), ("conversions", f"{sum(counts)}")),
+        tuple(sections),
+        made(),
+    )
+
+
+def _named(record: ScanRecord) -> list[Result]:
+    return [
+        replace(result, name=f"{name}: {result.name}")
+        for name, channel in record.channels.items()
+        for result in channel.results
+    ]

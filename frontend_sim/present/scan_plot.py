@@ -1,0 +1,51 @@
+"""The plot of a scan: every channel below the other, on one axis of time."""
+
+from __future__ import annotations
+
+import os
+from pathlib import Path
+from textwrap import fill
+from typing import TYPE_CHECKING
+
+from frontend_sim.present.figure_file import check_plot_target, new_figure, save_figure
+from frontend_sim.present.numbers import engineering, prefix_of
+from frontend_sim.present.run_panels import Conversions, draw_codes
+from frontend_sim.present.scan_like import ScanLike
+
+if TYPE_CHECKING:
+    from matplotlib.figure import Figure
+
+
+def plot_scan(scan: ScanLike, path: str | os.PathLike[str], overwrite: bool = False) -> Path:
+    """Draw a scan, or its record, into a PNG or SVG file; parameters and errors as ``plot_run``."""
+    check_plot_target(path, overwrite)
+    return save_figure(scan_figure(scan), path, overwrite)
+
+
+def scan_figure(scan: ScanLike) -> Figure:
+    """Return the figure of a scan: for each channel the pin, and the codes read back."""
+    channels = scan.channels
+    figure = new_figure(10.0, 1.6 + 2.5 * len(channels))
+    panels = figure.subplots(len(channels), 1, sharex=True, squeeze=False)[:, 0]
+    ends = [float(run.time[-1]) for run in channels.values() if len(run.time)]
+    factor, letter = prefix_of(max(ends, default=0.0))
+    for panel, (name, run) in zip(panels, channels.items(), strict=True):
+        draw_codes(
+            panel,
+            Conversions(run.scenario.adc, factor * run.time, run.pin, run.voltage, run.overrange),
+        )
+        # A dollar sign would begin a formula.
+        panel.set_title(name.replace("$", r"\$"), loc="right", fontsize="medium")
+        panel.grid(True, color="0.9", linewidth=0.6)
+        panel.set_axisbelow(True)
+    panels[-1].set_xlabel(f"time [{letter}s]")
+    scenario = scan.scenario
+    adc, rhythm = scenario.adc, scenario.rhythm
+    facts = (
+        f"{len(channels)} channels, {scenario.scan.sampling}, one scan in "
+        f"{engineering(rhythm.period, 's', 4)}; {adc.bits} bits, {engineering(adc.low, 'V')} to "
+        f"{engineering(adc.high, 'V')}"
+    )
+    title = fill(scenario.title or "Scan without a title", 90).replace("$", r"\$")
+    figure.suptitle(f"{title}\n{facts}")
+    return figure

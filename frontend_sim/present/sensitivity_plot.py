@@ -1,0 +1,79 @@
+"""The plot of the sensitivities: bars, the strongest first, one panel for each check."""
+
+from __future__ import annotations
+
+import os
+from pathlib import Path
+from textwrap import shorten
+from typing import TYPE_CHECKING
+
+from frontend_sim.present.colours import BLUE, MARK, ORANGE
+from frontend_sim.present.figure_file import check_plot_target, new_figure, save_figure
+from frontend_sim.present.sensitivity_table import nothing, strongest
+
+if TYPE_CHECKING:
+    from matplotlib.axes import Axes
+    from matplotlib.figure import Figure
+
+    from frontend_sim.measure.sensitivity import CheckSensitivity, Sensitivity
+
+MOST_BARS = 12
+"""Weaker parameters are left to the table."""
+
+
+def plot_sensitivities(
+    found: tuple[CheckSensitivity, ...], path: str | os.PathLike[str], overwrite: bool = False
+) -> Path:
+    """Draw what moves each check into a PNG or SVG file.
+
+    A bar is the normalized derivative, where the value is zero what 1 % more adds to the margin;
+    blue is for the better, orange for the worse, as the parameter grows.
+
+    Parameters
+    ----------
+    path : ends in .png or .svg
+    overwrite : whether a file that is there may be replaced
+
+    Raises
+    ------
+    OutputError
+        If the path cannot be written as asked for.
+    """
+    check_plot_target(path, overwrite)
+    return save_figure(sensitivity_figure(found), path, overwrite)
+
+
+def sensitivity_figure(found: tuple[CheckSensitivity, ...]) -> Figure:
+    """Return the figure of the sensitivities, to draw on or to show elsewhere."""
+    shown = [(each, strongest(each)[:MOST_BARS]) for each in found]
+    heights = [0.35 * max(len(rows), 1) + 1.1 for _, rows in shown]
+    figure = new_figure(9.0, sum(heights) + 0.4)
+    panels = figure.subplots(len(shown), 1, squeeze=False, height_ratios=heights)[:, 0]
+    for axes, (each, rows) in zip(panels, shown, strict=True):
+        _draw(axes, each, rows)
+    return figure
+
+
+def _draw(axes: Axes, found: CheckSensitivity, rows: list[Sensitivity]) -> None:
+    name = shorten(found.name, 60).replace("$", r"\$")
+    if not rows:
+        axes.set_axis_off()
+        axes.text(0.5, 0.5, f"{name}: {nothing(found)}", ha="center", va="center")
+        return
+    normalized = all(row.normalized is not None for row in rows)
+    values = [row.normalized if normalized else row.per_percent for row in rows]
+    colours = [BLUE if (row.per_percent or 0.0) > 0.0 else ORANGE for row in rows]
+    labels = [row.parameter.key.replace("$", r"\$") for row in rows]
+    axes.barh(labels, [value or 0.0 for value in values], color=colours)
+    axes.invert_yaxis()
+    axes.axvline(0.0, color=MARK, linewidth=0.8)
+    unit = found.result.unit
+    axes.set_xlabel(
+        "normalized derivative, (dv/v) / (dp/p)"
+        if normalized
+        else f"margin that 1 % more adds [{unit}]"
+    )
+    axes.set_title(f"What moves {name}: blue adds margin as it grows, orange costs",
+                   loc="left", fontsize="medium")  # fmt: skip
+    axes.grid(True, axis="x", color="0.9", linewidth=0.6)
+    axes.set_axisbelow(True)

@@ -1,0 +1,165 @@
+"""``frontend-sim replay`` as a user, and as a scheduler, meets it."""
+
+from __future__ import annotations
+
+import json
+import signal
+import subprocess
+import sys
+import time
+from pathlib import Path
+
+import pytest
+from nights import BASE, DRAWS, base, made_set
+
+from frontend_sim.archive import open_record
+from frontend_sim.archive.set_table import open_set
+from frontend_sim.cli import main
+
+HERE = ["--on", "in-process"]
+
+
+def test_all_checks_hold(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    """Exit status 0; the table names the worst run of each check, and says where it is."""
+    file = made_set(tmp_path, 'keep = "nothing"\n[[vary]]\nkey = "chain[2].gain"\nvalues = [2]\n')
+    assert main(["replay", str(file), "-o", str(tmp_path / "night"), *HERE]) == 0
+    told = capsys.readouterr()
+    assert "all checks hold in 1 of 1 runs" in told.out
+    assert "gain=2" in told.out
+    assert str(tmp_path / "night" / "set.h5") in told.out.replace("\n", "")
+    assert told.err == ""
+
+
+def test_a_check_fails(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    """Exit status 1; JSON has the counts."""
+    file = made_set(tmp_path, '[[vary]]\nkey = "chain[2].gain"\nvalues = [1, 2]\n')
+    arguments = ["replay", str(file), "-o", str(tmp_path / "night"), "--json", *HERE]
+    assert main(arguments) == 1
+    told = json.loads(capsys.readouterr().out)
+    assert (told["planned"], told["ran"], told["kept"]) == (2, 2, 0)
+    assert (told["fails"], told["holds"], told["verdict"]) == (1, 1, "fails")
+    assert told["complete"]
+    assert len(list((tmp_path / "night" / "records").iterdir())) == 1
+    assert main(arguments) == 1
+    assert json.loads(capsys.readouterr().out)["kept"] == 2
+
+
+def test_the_input_is_wrong(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    """Exit status 2, one message, and nothing written."""
+    file = made_set(tmp_path, '[[vary]]\nkey = "chain[2].gian"\nvalues = [1]\n')
+    assert main(["replay", str(file), "-o", str(tmp_path / "night"), *HERE]) == 2
+    told = capsys.readouterr()
+    assert told.err.startswith("error: ")
+    assert "did you mean 'gain'" in told.err
+    assert not (tmp_path / "night").exists()
+
+
+def test_a_run_gives_no_result(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    """Exit status 3: a set with a run that failed is incomplete, and the reason is told."""
+    (tmp_path / "night").mkdir()
+    base(tmp_path / "night", BASE, "a.toml")
+    base(tmp_path / "night", BASE.replace('rate = "20 kHz"', 'rate = "20 kV"'), "b.toml")
+    arguments = ["replay", str(tmp_path / "night"), "-o", str(tmp_path / "out"), *HERE]
+    assert main([*arguments, "--keep", "nothing"]) == 3
+    told = capsys.readouterr()
+    assert "no result from 1 of 2 runs" in told.out
+    assert "20 kV" in told.out
+    assert "incomplete" in told.err
+
+
+def test_a_dry_run_lists_what_would_be_done(
+    tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    """Names, time and disk are told, and nothing is written; what is done already is left out."""
+    file = made_set(tmp_path, DRAWS.format(30))
+    arguments = ["replay", str(file), "-o", str(tmp_path / "night")]
+    assert main([*arguments, "--dry-run"]) == 0
+    told = capsys.readouterr().out
+    assert told.splitlines()[0] == "draw 0001"
+    assert "... and 10 more" in told
+    assert "30 of 30 runs would be done" in told
+    assert not (tmp_path / "night").exists()
+    main([*arguments, *HERE])
+    made_set(tmp_path, DRAWS.format(31))
+    capsys.readouterr()
+    assert main([*arguments, "--dry-run", "--json"]) == 0
+    found = json.loads(capsys.readouterr().out)
+    assert found["runs"] == ["draw 0031"]
+    assert found["kept"] == 30
+    assert found["bytes"] > 0
+
+
+def test_several_scenarios_are_a_set(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    """What a shell makes of a pattern is taken as it is."""
+    files = [base(tmp_path, BASE, f"{name}.toml") for name in ("a", "b")]
+    arguments = ["replay", *map(str, files), "-o", str(tmp_path / "night"), "--json", *HERE]
+    assert main(arguments) == 0
+    assert json.loads(capsys.readouterr().out)["planned"] == 2
+
+
+def test_a_directory_of_others_is_left_alone(
+    tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    """Exit status 2 where the output directory holds something else."""
+    file = made_set(tmp_path, DRAWS.format(1))
+    assert main(["replay", str(file), "-o", str(tmp_path), *HERE]) == 2
+    assert "holds something else" in capsys.readouterr().err
+
+
+def test_validate_checks_sets(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    """A set is checked like a scenario, with the scenario that it varies."""
+    right = made_set(tmp_path, DRAWS.format(3))
+    wrong = made_set(tmp_path, '[[vary]]\nkey = "adc.rates"\nvalues = [1]\n', "wrong.toml")
+    assert main(["validate", str(right)]) == 0
+    assert main(["validate", str(wrong)]) == 2
+    assert "did you mean 'rate'" in capsys.readouterr().err
+
+
+@pytest.mark.skipif(not hasattr(signal, "SIGTERM"), reason="sends a signal")
+@pytest.mark.parametrize("number", [signal.SIGINT, signal.SIGTERM])
+def test_a_night_that_is_stopped_says_how_to_go_on(tmp_path: Path, number: signal.Signals) -> None:
+    """Exit status 130 after Ctrl-C and after a scheduler's end, with workers at work."""
+    file = made_set(tmp_path, DRAWS.format(5000))
+    arguments = ["replay", str(file), "-o", str(tmp_path / "night"), "--workers", "2"]
+    command = [sys.executable, "-m", "frontend_sim", *arguments]
+    with subprocess.Popen(command, stderr=subprocess.PIPE, text=True) as process:
+        journal = tmp_path / "night" / "night.journal"
+        until = time.monotonic() + 60.0
+        while not (journal.is_file() and journal.stat().st_size > 4000):
+            assert time.monotonic() < until
+            time.sleep(0.02)
+        process.send_signal(number)
+        _, told = process.communicate(timeout=60.0)
+    assert process.returncode == 130, told
+    assert "the same call goes on from here" in told
+    assert "Traceback" not in told
+    assert 0 < len(open_set(tmp_path / "night").runs) < 5000
+
+
+def test_a_scan_is_varied_like_any_scenario(
+    tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    """Channels keep their names in the results, and every record is kept whole."""
+    scan = Path(__file__).resolve().parents[2] / "scenarios" / "scan" / "sequential.toml"
+    file = tmp_path / "set.toml"
+    file.write_text(f'base = "{scan.as_posix()}"\n[[vary]]\nkey = "adc.bits"\nvalues = [12, 14]\n')
+    arguments = ["replay", str(file), "-o", str(tmp_path / "night"), "--keep", "all", *HERE]
+    assert main(arguments) in (0, 1)
+    table = open_set(tmp_path / "night")
+    assert table.names == ("bits=12", "bits=14")
+    path = table.record_path("bits=14")
+    assert path is not None
+    with open_record(path) as record:
+        record.verify()
+        assert record.scenario.adc.bits == 14
+
+
+def test_a_cluster_that_does_not_answer_leaves_nothing_behind(
+    tmp_path: Path, capsys: pytest.CaptureFixture[str], monkeypatch: pytest.MonkeyPatch
+) -> None:
+    """Exit status 2 and no directory where Dask is not installed."""
+    monkeypatch.setitem(sys.modules, "distributed", None)
+    file = made_set(tmp_path, DRAWS.format(1))
+    assert main(["replay", str(file), "-o", str(tmp_path / "night"), "--on", "dask"]) == 2
+    assert "pip install" in capsys.readouterr().err
+    assert not (tmp_path / "night").exists()
