@@ -1,7 +1,7 @@
 """Simulate sampled sensor front ends: what arrives, the analog chain, the ADC, the codes.
 
     import frontend_sim as fe
-    scenario = fe.load_scenario("scenarios/well_pump_valve_slam.toml")
+    scenario = fe.load_single_scenario("scenarios/well_pump_valve_slam.toml")
     run = fe.simulate(scenario)
     run.codes, run.time, run.pin             # NumPy arrays
     fe.save_record(run, "valve_slam.h5")
@@ -59,6 +59,7 @@ if TYPE_CHECKING:
         plot_map,
         plot_run,
         plot_scan,
+        plot_scan_inspection,
         plot_sensitivities,
         plot_solution,
     )
@@ -177,6 +178,7 @@ _HOME = {
     "ScanRecord": "archive",
     "inspect_scan": "measure.scan",
     "plot_scan": "present",
+    "plot_scan_inspection": "present",
     "open_single_record": "archive",
     "load_single_scenario": "scenario",
 }
@@ -245,6 +247,7 @@ __all__ = [
     "plot_map",
     "plot_run",
     "plot_scan",
+    "plot_scan_inspection",
     "plot_sensitivities",
     "plot_solution",
     "preferred",

@@ -11,6 +11,7 @@ from frontend_sim.archive.names import point_name
 from frontend_sim.archive.rebuild import first_there, rebuild_scan
 from frontend_sim.archive.record import Record
 from frontend_sim.archive.stored import Stored
+from frontend_sim.errors import RecordError
 from frontend_sim.measure.result import verdict_of
 from frontend_sim.scenario.model import Scenario
 from frontend_sim.scenario.scan_scenario import ScanScenario
@@ -39,6 +40,13 @@ class ScanRecord(Stored):
         with self._reading("its content"):
             file[layout.SCENARIO], file[layout.RESOLVED], file[layout.NOTES]
             found = {point_name(name): group for name, group in file[layout.CHANNEL].items()}
+            there = {str(group.attrs["name"]) for group in found.values()}
+            left = [name for name in file[layout.CHANNEL].attrs["order"] if name not in there]
+        if left:
+            raise RecordError(
+                f"{path}: the group of channel {left[0]!r} is missing; the record is damaged: "
+                "restore it from a copy, or run its scenario again"
+            )
         self.channels: dict[str, ChannelRecord] = {
             name: ChannelRecord(self, name, group) for name, group in found.items()
         }

@@ -62,7 +62,8 @@ class _Commands(click.Group):
 def command() -> None:
     """Simulate sampled sensor front ends: stimulus, analog chain, ADC, codes.
 
-    Exit status: 0 all checks hold, 1 a check fails, 2 the input is wrong, 130 interrupted.
+    Exit status: 0 all checks hold, 1 a check fails, 2 the input is wrong, 3 a set is incomplete,
+    130 interrupted.
     """
 
 

@@ -96,6 +96,9 @@ class _Asked:
 
         sets = is_set(first), is_set(second)
         if sets[0] != sets[1]:
+            for each in (first, second):
+                if not each.exists():
+                    raise InputError(f"{each}: there is no such record or set; check the name")
             which = first if sets[0] else second
             raise InputError(f"{which} is a set and the other is none; compare like with like")
         return self.sets(first, second) if sets[0] else self.records(first, second)

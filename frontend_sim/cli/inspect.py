@@ -37,7 +37,7 @@ def command(scenario: Path, plot: Path | None, overwrite: bool, as_json: bool) -
 
     values = load_scenario(scenario)
     if isinstance(values, ScanScenario):
-        return _inspect_scan(values, plot, as_json)
+        return _inspect_scan(values, plot, overwrite, as_json)
     inspection = inspect_scenario(values)
     told = _told(values)
     print_notes((*inspection.notes, *told.notes))
@@ -52,18 +52,24 @@ def command(scenario: Path, plot: Path | None, overwrite: bool, as_json: bool) -
     return told.status
 
 
-def _inspect_scan(scan: ScanScenario, plot: Path | None, as_json: bool) -> int:
+def _inspect_scan(scan: ScanScenario, plot: Path | None, overwrite: bool, as_json: bool) -> int:
     """Tell of timing, crosstalk and each channel."""
-    from frontend_sim.errors import ScenarioError
     from frontend_sim.measure.scan import inspect_scan
-    from frontend_sim.present import inspection_tables, report_tables
+    from frontend_sim.present import (
+        check_channels_drawn,
+        inspection_tables,
+        plot_scan_inspection,
+        report_tables,
+    )
 
     if plot is not None:
-        raise ScenarioError("inspect draws one chain, and a scan has several; leave --plot out")
+        check_channels_drawn(len(scan.channel), plot)
     inspection = inspect_scan(scan)
     told = {each.channel: _told(each) for each in scan.channels(scan.run_length())}
     status = max(each.status for each in told.values())
     print_notes(inspection.notes)
+    if plot is not None:
+        plot_scan_inspection(inspection, plot, overwrite=overwrite)
     if as_json:
         whole = inspection.as_dict()
         for name, each in told.items():
@@ -74,6 +80,8 @@ def _inspect_scan(scan: ScanScenario, plot: Path | None, as_json: bool) -> int:
     for name, one in inspection.channels.items():
         click.echo(f"\nChannel {name}")
         print_tables((*inspection_tables(one), *told[name].tables()))
+    if plot is not None:
+        click.echo(f"plot: {plot}")
     return status
 
 

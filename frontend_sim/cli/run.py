@@ -39,7 +39,7 @@ def command(
     """
     from frontend_sim.archive import open_record, record_run
     from frontend_sim.measure.checks.scan import refuse_impossible_checks
-    from frontend_sim.present import check_plot_target
+    from frontend_sim.present import check_channels_drawn, check_plot_target
     from frontend_sim.scenario import ScanScenario, load_scenario
     from frontend_sim.simulation import ScanSimulation, Simulation
 
@@ -48,6 +48,8 @@ def command(
     target = output or Path(f"{scenario.stem}.h5")
     if plot is not None:
         check_plot_target(plot, overwrite)
+        if isinstance(values, ScanScenario):
+            check_channels_drawn(len(values.channel), plot)
     with progress_bar(scenario.name) as advance:
         path = record_run(
             ScanSimulation(values) if isinstance(values, ScanScenario) else Simulation(values),

@@ -8,7 +8,8 @@ from frontend_sim.comparison.reseeded import over_seeds
 from frontend_sim.comparison.results import ResultDifference
 from frontend_sim.comparison.scans import compare_scans
 from frontend_sim.comparison.series import SeriesDifference
-from frontend_sim.comparison.sets import SetComparison, attribute_sets, compare_sets
+from frontend_sim.comparison.set_attribution import attribute_sets
+from frontend_sim.comparison.sets import SetComparison, compare_sets
 from frontend_sim.comparison.tolerance import Tolerances, parse_tolerances
 
 __all__ = [

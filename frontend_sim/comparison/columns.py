@@ -77,6 +77,7 @@ def column_difference(
     exact: bool,
     allowed: float,
     level: float,
+    draws: Text | None = None,
 ) -> ColumnDifference:
     """Return how a check or measure differs between two nights.
 
@@ -86,16 +87,17 @@ def column_difference(
     exact : whether chance plays no part, so that the largest difference counts
     allowed : tolerance, in ``unit``
     level : rate of false alarms that is accepted [1]
+    draws : what pairs of the same parts have in common, shape (N,): chance moves these together,
+        so that they count as one; left out, each pair is on its own
     """
     with np.errstate(invalid="ignore"):
         difference = np.where(first == second, 0.0, second - first)
     known = np.flatnonzero(np.isfinite(difference))
     values = difference[known]
-    shift = independent_shift(values)
+    shift = independent_shift(values if exact else _draw_means(values, draws, known))
     peak_at = int(known[np.argmax(np.abs(values))]) if len(values) else None
     peak = 0.0 if peak_at is None else float(difference[peak_at])
-    better, worse = _flips(verdicts)
-    chance = flip_probability(better, worse)
+    better, worse, chance = _flips(verdicts, draws)
     size = float(np.max(np.abs(np.stack([first[known], second[known]])), initial=0.0))
     # A run that has no value any more counts, whatever its verdict.
     lost = int(np.count_nonzero(np.isfinite(first) & ~np.isfinite(second)))
@@ -112,11 +114,12 @@ def column_difference(
     )  # fmt: skip
 
 
-def flips(name: str, verdicts: tuple[Text, Text], exact: bool, level: float) -> ColumnDifference:
+def flips(
+    name: str, verdicts: tuple[Text, Text], exact: bool, level: float, draws: Text | None = None
+) -> ColumnDifference:
     """Return how many runs changed their verdict, all checks taken together."""
-    better, worse = _flips(verdicts)
+    better, worse, chance = _flips(verdicts, draws)
     broke = int(np.count_nonzero((verdicts[1] == "error") & (verdicts[0] != "error")))
-    chance = flip_probability(better, worse)
     nan = math.nan
     if broke:
         finding: Finding = "differs"
@@ -181,12 +184,27 @@ def runs(count: int) -> str:
     return "1 run" if count == 1 else f"{count} runs"
 
 
-def _flips(verdicts: tuple[Text, Text] | None) -> tuple[int, int]:
+def _draw_means(values: Real, draws: Text | None, known: NDArray[np.int64]) -> Real:
+    """Return the mean of the pairs of each draw."""
+    if draws is None or len(values) == 0:
+        return values
+    _, place = np.unique(draws[known], return_inverse=True)
+    means: Real = np.bincount(place, weights=values) / np.bincount(place)
+    return means
+
+
+def _flips(verdicts: tuple[Text, Text] | None, draws: Text | None) -> tuple[int, int, float]:
+    """Return how many runs hold now, how many fail now, and how probable that is by chance."""
     if verdicts is None:
-        return 0, 0
+        return 0, 0, 1.0
     before, after = verdicts
-    better = np.count_nonzero((before == "fails") & (after == "holds"))
-    return int(better), int(np.count_nonzero((before == "holds") & (after == "fails")))
+    better = (before == "fails") & (after == "holds")
+    worse = (before == "holds") & (after == "fails")
+    turned = worse.astype(np.float64) - better
+    # The runs of one draw flip together; a draw counts for what most of them do.
+    net = _draw_means(turned, draws, np.arange(len(turned)))
+    chance = flip_probability(int(np.count_nonzero(net < 0)), int(np.count_nonzero(net > 0)))
+    return int(np.count_nonzero(better)), int(np.count_nonzero(worse)), chance
 
 
 def _least(margins: Real) -> float:

@@ -2,21 +2,21 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterator, Mapping
+from collections.abc import Iterator, Mapping
 from dataclasses import dataclass, replace
 from pathlib import Path
-from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
 
 from frontend_sim.archive import open_single_record
 from frontend_sim.archive.set_table import SetTable
-from frontend_sim.comparison.attribution import Attribution, attribute
+from frontend_sim.comparison.attribution import Attribution
 from frontend_sim.comparison.changes import Change, changes
 from frontend_sim.comparison.columns import ColumnDifference, column_difference, flips, runs
 from frontend_sim.comparison.records import FALSE_ALARMS, compare_records
 from frontend_sim.comparison.series import DIFFERENT
+from frontend_sim.comparison.set_attribution import scenario_of
 from frontend_sim.comparison.tolerance import Tolerances
 from frontend_sim.errors import InputError
 from frontend_sim.measure.checks.quiet import quiet_checks
@@ -125,6 +125,15 @@ class _Nights:
         self.after = {name: row for row, name in enumerate(second.names)}
         common = [name for name in first.names if name in self.after]
         self.names = common
+        # Draw n has the same parts whatever is varied besides.
+        last = [name.rpartition(",")[2] for name in common]
+        self.draws = np.array(
+            [
+                draw if draw.startswith("draw ") else name
+                for name, draw in zip(common, last, strict=True)
+            ],
+            np.str_,
+        )
         self.one = np.array([self.before[name] for name in common], np.int64)
         self.other = np.array([self.after[name] for name in common], np.int64)
         seeds = first.runs["seed"][self.one], second.runs["seed"][self.other]
@@ -167,7 +176,7 @@ class _Nights:
         level = FALSE_ALARMS / max(1, 2 * (len(names) + len(measures) + 3))
         quiet = quiet_checks((*self.first.base_values, *self.second.base_values))
         verdicts = self.first.verdicts[self.one], self.second.verdicts[self.other]
-        yield flips("all checks", verdicts, self.reseeded == 0, level)
+        yield flips("all checks", verdicts, self.reseeded == 0, level, self.draws)
         for check in self.first.checks:
             other = later.pop(check.name, None)
             if other is None:
@@ -178,7 +187,7 @@ class _Nights:
                 check.name, check.unit, check.value[self.one], other.value[self.other],
                 (check.verdict[self.one], other.verdict[self.other]),
                 (check.margin[self.one], other.margin[self.other]),
-                exact, self._allowed(check.name, check.unit, check.value), level,
+                exact, self._allowed(check.name, check.unit, check.value), level, self.draws,
             )  # fmt: skip
         for name, check in later.items():
             yield ColumnDifference.lost(name, check.unit, "added")
@@ -187,11 +196,18 @@ class _Nights:
             values = self.first.measures[name][self.one], self.second.measures[name][self.other]
             exact, unit = self._exact(name.partition(": ")[0] in quiet), units.get(name, "1")
             allowed = self._allowed(name, unit, self.first.measures[name])
-            yield column_difference(name, unit, *values, None, None, exact, allowed, level)
+            yield column_difference(
+                name, unit, *values, None, None, exact, allowed, level, self.draws
+            )
         yield from self._signals(level)
 
     def _exact(self, quiet: bool) -> bool:
-        """Return whether differences have no chance in them: same seeds, or nothing to be moved."""
+        """Return whether differences have no chance in them: same seeds, or nothing to be moved.
+
+        Parameters
+        ----------
+        quiet : whether noise does not move what is compared
+        """
         return self.reseeded == 0 or (quiet and not self.varied())
 
     def _allowed(self, name: str, unit: str, values: Real) -> float:
@@ -201,20 +217,24 @@ class _Nights:
 
     def _signals(self, level: float) -> Iterator[ColumnDifference]:
         """Compare the kept records of both nights, as many as there is time for."""
-        kept = [name for name in self.names if self._both_kept(name)]
+        kept = [row for row, name in enumerate(self.names) if self._both_kept(name)]
         step = -(-len(kept) // MOST_RECORDS) if kept else 1
-        rows = [self._signal(name) for name in kept[::step]]
+        picked = kept[::step]
+        rows = [self._signal(self.names[row]) for row in picked]
         self.records = len(rows)
         if not rows:
             return
         pin, codes, certain = (np.array(row) for row in zip(*rows, strict=True))
-        whole = bool(np.all(certain))
+        # Other seeds draw other parts, and with them another pin.
+        whole = self._exact(bool(np.all(certain)))
         adc = self.first.base_values[0]["adc"]
         extent = float(adc["high"]) - float(adc["low"])
         allowed = self.tolerances.of_signal("LSB", extent / 2.0 ** int(adc["bits"]), extent)
         zero = np.zeros(len(pin))
         for name, values, exact in (("pin", pin, whole), ("codes", codes, self.reseeded == 0)):
-            yield column_difference(name, "LSB", zero, values, None, None, exact, allowed, level)
+            yield column_difference(
+                name, "LSB", zero, values, None, None, exact, allowed, level, self.draws[picked]
+            )
 
     def _both_kept(self, name: str) -> bool:
         if self.first.path.parent == self.second.path.parent:
@@ -253,39 +273,3 @@ class _Nights:
         for table in (self.first, self.second):
             if not table.complete:
                 yield f"{table.path.parent} is incomplete"
-
-
-def attribute_sets(
-    first: SetTable,
-    second: SetTable,
-    comparison: SetComparison,
-    progress: Callable[[float], None] | None = None,
-) -> Attribution:
-    """Run the scenario that the first night varies with each change alone, see ``attribute``.
-
-    That is the nominal circuit: the runs of a night are around it.
-
-    Raises
-    ------
-    InputError
-        If the nights vary several scenarios, or one of the two cannot be run.
-    """
-    if len(first.base_values) != 1 or len(second.base_values) != 1:
-        raise InputError(
-            "the nights vary several scenarios; compare the records of one run of each to "
-            "attribute its change"
-        )
-    scenarios = scenario_of(first.base_values[0]), scenario_of(second.base_values[0])
-    if None in scenarios:
-        raise InputError("the scenarios come from another version and cannot be run by this one")
-    return attribute(*scenarios, comparison.changed, progress)
-
-
-def scenario_of(values: Mapping[str, Any]) -> Any:
-    """Return the scenario of a table, None where this version cannot build it."""
-    from frontend_sim.archive.rebuild import rebuild
-
-    try:
-        return rebuild(dict(values), {}, "", Path("set"))
-    except InputError:
-        return None

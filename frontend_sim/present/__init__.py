@@ -8,7 +8,11 @@ from frontend_sim.present.numbers import engineering
 from frontend_sim.present.replay_table import replay_tables
 from frontend_sim.present.run_plot import plot_run, run_figure
 from frontend_sim.present.run_table import run_summary, run_table, run_tables
-from frontend_sim.present.scan_plot import plot_scan, scan_figure
+from frontend_sim.present.scan_inspection_plot import (
+    plot_scan_inspection,
+    scan_inspection_figure,
+)
+from frontend_sim.present.scan_plot import check_channels_drawn, plot_scan, scan_figure
 from frontend_sim.present.scan_table import report_tables, scan_summary, scan_tables
 from frontend_sim.present.sensitivity_plot import plot_sensitivities, sensitivity_figure
 from frontend_sim.present.sensitivity_table import sensitivity_tables
@@ -16,6 +20,7 @@ from frontend_sim.present.solution_plot import plot_solution, solution_figure
 from frontend_sim.present.solution_table import map_tables, solution_tables
 
 __all__ = [
+    "check_channels_drawn",
     "check_plot_target",
     "engineering",
     "inspection_figure",
@@ -26,6 +31,7 @@ __all__ = [
     "plot_map",
     "plot_run",
     "plot_scan",
+    "plot_scan_inspection",
     "plot_sensitivities",
     "plot_solution",
     "replay_tables",
@@ -35,6 +41,7 @@ __all__ = [
     "run_table",
     "run_tables",
     "scan_figure",
+    "scan_inspection_figure",
     "scan_summary",
     "scan_tables",
     "sensitivity_figure",

@@ -76,10 +76,13 @@ def level_rows(inspection: Inspection) -> list[Row]:
         size = f"{engineering(found.offset, 'V', 4)}, {plain(found.lsb, 4)} LSB"
         rows.append((f"pin at a stimulus of {zero}", size))
         rows += _spread_rows(found, found.offset)
-    for value, end in ((found.at_low, inspection.adc.low), (found.at_high, inspection.adc.high)):
+    adc = inspection.adc
+    ends = (found.at_low, adc.low, found.low_held), (found.at_high, adc.high, found.high_held)
+    for value, end, held in ends:
         if value is not None:
             name = f"pin reaches {engineering(end, 'V')} at a stimulus of"
-            rows.append((name, level(value, unit, 4)))
+            but = f", but a rail of {held} comes first" if held else ""
+            rows.append((name, level(value, unit, 4) + but))
     return rows
 
 
@@ -102,9 +105,10 @@ def large_signal_rows(found: LargeSignal) -> list[Row]:
         )
         for power in found.stages
     ]
+    whole = "range that rails leave" if found.held else "whole range"
     for way, time in (("up", found.rise), ("down", found.fall)):
         if time is not None:
-            name = f"step over the whole range {way}, stays within 0.5 LSB"
+            name = f"step over the {whole} {way}, stays within 0.5 LSB"
             rows.append((name, f"after {engineering(time, 's', 4)}"))
     if found.reason:
         rows.append(("step over the whole range", found.reason))

@@ -75,7 +75,7 @@ def draw_error(axes: Axes, view: ErrorView) -> None:
     title = view.label.replace("$", r"\$")
     told = f"limit of the {view.of}: {plain(view.limit, 3)} LSB"
     if view.limit <= axes.get_xlim()[1]:
-        axes.axvline(view.limit, color=LIMIT, linestyle="--", linewidth=1.0, zorder=6)
+        axes.axvline(view.limit, color=LIMIT, linestyle="--", linewidth=1.0, zorder=4.5)
     else:
         told += ", out of view"
     axes.set_title(f"{title}: its parts ({told})", loc="left", fontsize="medium", color=MARK)

@@ -5,7 +5,7 @@ from __future__ import annotations
 import math
 from typing import TYPE_CHECKING, Any, Literal
 
-from frontend_sim.measure.statistics import PassRate
+from frontend_sim.measure.statistics import PassRate, Percentile
 from frontend_sim.present.numbers import fixed
 from frontend_sim.present.result_table import STYLES, quantity
 from frontend_sim.summary import CheckSummary, NightSummary
@@ -42,7 +42,8 @@ def night_tables(summary: NightSummary) -> tuple[RenderableType, ...]:
         table.add_row(Text(check.name), *rate, *spread, Text(follows), style=style)
     if summary.rate is None:
         return (table,)
-    told = f"{summary.rate.passed:,} of {summary.rate.total:,} draws hold, 95 % interval"
+    which = f" of {summary.group}, the worst group," if summary.group else ""
+    told = f"{summary.rate.passed:,} of {summary.rate.total:,} draws{which} hold, 95 % interval"
     return (table, Text(f"yield: {share(summary.rate)}: {told}"))
 
 
@@ -70,6 +71,7 @@ def night_data(summary: NightSummary) -> dict[str, Any]:
         "planned": summary.table.planned,
         "counts": dict(summary.counts),
         "yield": rate_data(summary.rate),
+        "yield_group": summary.group,
         "checks": [_check_data(summary, check) for check in summary.checks],
         "errors": [{"run": name, "error": error} for name, error in summary.errors],
         "warnings": list(summary.warnings),
@@ -91,6 +93,7 @@ def _check_data(summary: NightSummary, check: CheckSummary) -> dict[str, Any]:
         "runs": check.runs,
         "fails": check.fails,
         "yield": rate_data(check.rate),
+        "group": check.group,
         "worst": {
             "run": summary.table.names[run],
             "value": _finite(float(check.column.value[run])),
@@ -99,12 +102,12 @@ def _check_data(summary: NightSummary, check: CheckSummary) -> dict[str, Any]:
             "parameters": summary.parameters_of(run),
         },
         "percentiles": [
-            {key: _finite(value) for key, value in vars(each).items()} for each in check.percentiles
+            _percentile_data(each, check.rate is not None) for each in check.percentiles
         ],
         "tolerance_limits": None
         if limits is None
         else {key: _finite(value) for key, value in vars(limits).items()},
-        "draws_needed": check.draws_needed,
+        "draws_needed": None if check.rate is None else check.draws_needed,
         "causes": [
             {
                 "parameter": cause.parameter,
@@ -114,6 +117,12 @@ def _check_data(summary: NightSummary, check: CheckSummary) -> dict[str, Any]:
             for cause in check.causes
         ],
     }
+
+
+def _percentile_data(percentile: Percentile, drawn: bool) -> dict[str, float | None]:
+    """Return a percentile as plain data; of what was chosen, not drawn, it has no interval."""
+    told = {key: _finite(value) for key, value in vars(percentile).items()}
+    return told if drawn else {**told, "low": None, "high": None, "confidence": None}
 
 
 def _finite(value: float) -> float | None:

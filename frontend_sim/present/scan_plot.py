@@ -7,6 +7,7 @@ from pathlib import Path
 from textwrap import fill
 from typing import TYPE_CHECKING
 
+from frontend_sim.errors import OutputError
 from frontend_sim.present.figure_file import check_plot_target, new_figure, save_figure
 from frontend_sim.present.numbers import engineering, prefix_of
 from frontend_sim.present.run_panels import Conversions, draw_codes
@@ -16,9 +17,30 @@ if TYPE_CHECKING:
     from matplotlib.figure import Figure
 
 
+MOST_DRAWN = 32
+"""A figure of more channels would be taller than a picture can be, and slow to make."""
+
+
+def check_channels_drawn(count: int, path: object) -> None:
+    """Refuse a figure of too many channels.
+
+    Raises
+    ------
+    OutputError
+        If there are more than ``MOST_DRAWN``.
+    """
+    if count > MOST_DRAWN:
+        raise OutputError(
+            f"{path}: a plot shows at most {MOST_DRAWN} channels, and this scan has {count}; leave "
+            "the plot out, and draw the channels that matter from Python: "
+            "fe.plot_run(record.channels[name], path)"
+        )
+
+
 def plot_scan(scan: ScanLike, path: str | os.PathLike[str], overwrite: bool = False) -> Path:
     """Draw a scan, or its record, into a PNG or SVG file; parameters and errors as ``plot_run``."""
     check_plot_target(path, overwrite)
+    check_channels_drawn(len(scan.channels), path)
     return save_figure(scan_figure(scan), path, overwrite)
 
 

@@ -16,6 +16,7 @@ from frontend_sim.present.comparison_table import (
     finite,
     verdict_line,
 )
+from frontend_sim.present.numbers import plain
 from frontend_sim.present.result_table import quantity
 
 if TYPE_CHECKING:
@@ -71,7 +72,11 @@ def _mean(row: ColumnDifference) -> str:
 
 
 def _told(value: float, unit: str) -> str:
-    return quantity(value, unit) if math.isfinite(value) else ""
+    if not math.isfinite(value):
+        return ""
+    # A mean over runs of what is counted is no whole number.
+    counted = unit in ("conversions", "ticks")
+    return f"{plain(value)} {unit}" if counted else quantity(value, unit)
 
 
 def set_comparison_summary(comparison: SetComparison) -> dict[str, Any]:

@@ -43,26 +43,27 @@ def stretches(prepared: PreparedSet) -> Iterator[PreparedSet]:
 def tight(done: Done, until: Until) -> bool:
     """Return whether the draws of a set say enough.
 
-    That is so if the interval of the yield is as narrow as asked for, and if the values of every
-    check have stabilized in every group of draws (JCGM 101:2008, 7.9; ``statistics.stability``).
+    That is so if, in every group of draws, the interval of the yield is as narrow as asked for,
+    and the values of every check have stabilized (JCGM 101:2008, 7.9; ``statistics.stability``).
 
     Parameters
     ----------
     done : runs and what they gave, in the order of the set
     """
-    held: Counter[bool] = Counter()
+    held: dict[str, Counter[bool]] = defaultdict(Counter)
     values: dict[tuple[str, str], list[float]] = defaultdict(list)
     for run, outcome in done:
         group, _, last = run.name.rpartition(",")
         if not last.startswith(DRAW):
             continue
         if outcome.verdict != "none":
-            held[outcome.verdict == "holds"] += 1
+            held[group][outcome.verdict == "holds"] += 1
         for result in outcome.results:
             if result.verdict != "none":
                 value = np.nan if result.value is None else result.value
                 values[group, result.name].append(value)
-    if until.yield_width is not None and not _narrow(held, until.yield_width):
+    width = until.yield_width
+    if width is not None and not (held and all(_narrow(one, width) for one in held.values())):
         return False
     digits = until.digits
     return digits is None or all(_stable(row, digits, until.block) for row in values.values())

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import math
+from collections import Counter
 from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import dataclass
 from pathlib import Path
@@ -47,11 +49,41 @@ def axes_of(vary: Sequence[Vary], scenario: AnyScenario, directory: Path) -> tup
     """
     _refuse_double(vary, scenario)
     names = _short_names(vary)
+    given = [
+        _given(each, f"vary[{place + 1}]", scenario, directory) for place, each in enumerate(vary)
+    ]
+    # Before any value gets a name, which takes its time.
+    sizes: dict[object, int] = {}
+    for place, each in enumerate(vary):
+        sizes[each.together or place] = len(given[place])
+    refuse_many(math.prod(sizes.values()), " x ".join(map(str, sizes.values())))
     rows: dict[object, list[tuple[Vary, str, list[tuple[str, Any]]]]] = {}
     for place, each in enumerate(vary):
-        found = _values(each, f"vary[{place + 1}]", scenario, directory)
+        found = _named(each, given[place], scenario, directory)
         rows.setdefault(each.together or place, []).append((each, names[place], found))
     return tuple(_axis(group) for group in rows.values())
+
+
+def refuse_many(count: int, factors: str, source: str = "") -> None:
+    """Refuse more runs than a night may have.
+
+    Parameters
+    ----------
+    count : how many runs there are
+    factors : what the count is the product of
+
+    Raises
+    ------
+    ScenarioError
+        If they are more than ``MOST_RUNS``.
+    """
+    if count > MOST_RUNS:
+        raise ScenarioError(
+            f"the set has {count:,} runs ({factors}), the limit is {MOST_RUNS:,}; vary fewer keys, "
+            "give them fewer values, change keys together, name fewer parts in corners, or take "
+            "random draws",
+            source,
+        )
 
 
 def _refuse_double(vary: Sequence[Vary], scenario: AnyScenario) -> None:
@@ -93,18 +125,22 @@ def _short_names(vary: Sequence[Vary]) -> list[str]:
     ]
 
 
-def _values(
-    vary: Vary, where: str, scenario: AnyScenario, directory: Path
+def _given(vary: Vary, where: str, scenario: AnyScenario, directory: Path) -> list[Any]:
+    """Return the values of one key as they were given; of a pattern, its files."""
+    if vary.glob is not None:
+        return _files(vary, where, directory)
+    return _range(vary, where, scenario) if vary.values is None else list(vary.values)
+
+
+def _named(
+    vary: Vary, given: list[Any], scenario: AnyScenario, directory: Path
 ) -> list[tuple[str, Any]]:
     """Return label and value of each point of one key."""
     if vary.glob is not None:
-        return _files(vary, where, directory)
+        names = unlike_names(given)
+        return [(name, str(file)) for name, file in zip(names, given, strict=True)]
     found = find(scenario, vary.key)
-    if vary.values is None:
-        given: list[Any] = _range(vary, where, scenario)
-    else:
-        given = list(vary.values)
-    if found.dimension is not None:
+    if found.dimension is not None and vary.values is not None:
         given = [_in_si(scenario, vary.key, value) for value in given]
     if isinstance(found.value, Path):
         given = [str(_placed(Path(str(value)), scenario, directory)) for value in given]
@@ -130,15 +166,14 @@ def _placed(file: Path, scenario: AnyScenario, directory: Path) -> Path:
     return file if packaged else (directory / file).absolute()
 
 
-def _files(vary: Vary, where: str, directory: Path) -> list[tuple[str, Any]]:
+def _files(vary: Vary, where: str, directory: Path) -> list[Path]:
     files = matching(str(vary.glob), directory)
     if not files:
         raise ScenarioError(
             f"{where}.glob: {vary.glob!r} matches no file in {directory}; check the pattern, it is "
             "relative to the set file"
         )
-    names = unlike_names(files)
-    return [(name, str(file)) for name, file in zip(names, files, strict=True)]
+    return files
 
 
 def matching(pattern: str, directory: Path) -> list[Path]:
@@ -153,7 +188,16 @@ def matching(pattern: str, directory: Path) -> list[Path]:
 
 
 def unlike_names(files: Sequence[Path]) -> list[str]:
-    """Return a name for each file: without folder and suffix where that tells them apart."""
+    """Return a name for each file: without folder and suffix where that tells them apart.
+
+    Raises
+    ------
+    ScenarioError
+        If a file is given twice.
+    """
+    double, times = Counter(files).most_common(1)[0] if files else (Path(), 0)
+    if times > 1:
+        raise ScenarioError(f"{double} is given {times} times; every run must differ from others")
     for name in (
         lambda file: file.stem,
         lambda file: file.name,
@@ -199,7 +243,7 @@ def _labels(key: str, scenario: AnyScenario, given: Sequence[Any]) -> list[str]:
             labels.append(text.replace(" ", ""))
         if len(set(labels)) == len(labels):
             return labels
-    double = next(label for label in labels if labels.count(label) > 1)
+    double = Counter(labels).most_common(1)[0][0]
     raise ScenarioError(f"{key}: {double} is listed twice; every run must differ from the others")
 
 

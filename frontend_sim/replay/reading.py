@@ -13,9 +13,10 @@ from pydantic import ValidationError
 
 from frontend_sim.archive.provenance import versions
 from frontend_sim.errors import InputError, Problem, ScenarioError, nearest
-from frontend_sim.replay.points import axes_of, matching, unlike_names
+from frontend_sim.quantities import shown
+from frontend_sim.replay.points import axes_of, matching, refuse_many, unlike_names
 from frontend_sim.replay.runs import Base, PreparedSet
-from frontend_sim.replay.set_model import MOST_RUNS, Keep, RunSet, looks_like_a_set
+from frontend_sim.replay.set_model import Keep, RunSet, looks_like_a_set
 from frontend_sim.replay.spread import CornerSpread, DrawSpread, Spread
 from frontend_sim.scenario import load_scenario
 from frontend_sim.scenario.content import read_text
@@ -134,7 +135,9 @@ def parse_set(data: dict[str, Any], text: str, name: str) -> RunSet:
     except ValidationError as error:
         lines = lines_of(text, data)
         problems = [_problem(each, lines) for each in error.errors(include_url=False)]
-        raise ScenarioError(problems, name) from None
+        # Of the types that a value was tried as, one tells enough.
+        told = {problem.key: problem for problem in reversed(problems)}
+        raise ScenarioError(list(told.values())[::-1], name) from None
 
 
 def _problem(error: Any, lines: dict[tuple[str | int, ...], int]) -> Problem:
@@ -142,12 +145,38 @@ def _problem(error: Any, lines: dict[tuple[str | int, ...], int]) -> Problem:
     while path and path not in lines and error["type"] != "missing" and len(path) > 1:
         path = path[:-1]  # the type that was tried
     key = "".join(f"[{step + 1}]" if isinstance(step, int) else f".{step}" for step in path)
-    text = str(error["msg"]).removeprefix("Value error, ")
+    text = _told(error)
     if error["type"] == "extra_forbidden":
         text = f"unknown key{nearest(str(path[-1]), _known(path[:-1]))}"
     elif error["type"] == "missing":
         text = "missing"
     return Problem(text, key.removeprefix("."), line_of(path, lines))
+
+
+WORDS = {
+    "literal_error": "expected {expected}",
+    "int_type": "expected a whole number",
+    "string_type": "expected text in quotes",
+    "greater_than_equal": "at least {ge} is needed",
+    "less_than_equal": "at most {le} is possible",
+    "less_than": "less than {lt} is needed",
+    "finite_number": "a number must be finite",
+    "too_short": "give at least {min_length}",
+    "string_too_short": "write something, or leave the key out",
+    "string_too_long": "at most {max_length} characters are read",
+    "tuple_type": "expected a list, [...]",
+    "model_type": "expected a table",
+}
+"""Pydantic's word for what is wrong -> what to tell after what was given."""
+
+
+def _told(error: Any) -> str:
+    """Return what is wrong with a value, in the user's words."""
+    words = WORDS.get(error["type"])
+    if words is None:
+        return str(error["msg"]).removeprefix("Value error, ")
+    given = "an empty list" if error["input"] in ([], ()) else shown(error["input"])
+    return f"given {given}; {words.format(**error.get('ctx', {}))}"
 
 
 def _known(path: tuple[str | int, ...]) -> list[str]:
@@ -182,6 +211,9 @@ def _stands_on(model: RunSet, file: Path, above: tuple[Path, ...]) -> PreparedSe
 def _varied(model: RunSet, inner: PreparedSet, file: Path) -> PreparedSet:
     """Return a set with the axes and spreads of a set file around those that it stands on."""
     directory = file.parent.absolute()
+    # What this set does not say, the one that it stands on may have said.
+    own = model.model_fields_set
+    seed = model.seed if "seed" in own or inner.seed is None else inner.seed
     bases = []
     for base in inner.bases:
         if base.scenario is None:
@@ -193,7 +225,7 @@ def _varied(model: RunSet, inner: PreparedSet, file: Path) -> PreparedSet:
         if model.corners is not None:
             spreads.append(CornerSpread.of(model.corners, base.scenario))
         if model.draws is not None:
-            spreads.append(DrawSpread.of(model.draws, base.scenario, model.seed, directory))
+            spreads.append(DrawSpread.of(model.draws, base.scenario, seed, directory))
         bases.append(replace(base, axes=(*base.axes, *axes), spreads=tuple(spreads)))
     keys = {
         each.key
@@ -203,9 +235,9 @@ def _varied(model: RunSet, inner: PreparedSet, file: Path) -> PreparedSet:
     }
     return PreparedSet(
         source=str(file),
-        title=model.title,
-        seed=model.seed,
-        keep=model.keep,
+        title=model.title or inner.title,
+        seed=seed,
+        keep=model.keep if "keep" in own else inner.keep,
         text=read_text(file),
         directory=directory,
         bases=tuple(bases),
@@ -228,20 +260,14 @@ def _refuse_twice(base: Base, model: RunSet) -> None:
 
 def _checked(prepared: PreparedSet) -> PreparedSet:
     """Refuse what no night could run."""
-    if prepared.count > MOST_RUNS:
-        factors = [
-            " x ".join(
-                [*(str(len(axis)) for axis in base.axes)]
-                + ([str(sum(each.count for each in base.spreads))] if base.spreads else [])
-            )
-            for base in prepared.bases[:3]
-        ]
-        raise ScenarioError(
-            f"the set has {prepared.count:,} runs ({'; '.join(filter(None, factors))}), the limit "
-            f"is {MOST_RUNS:,}; vary fewer keys, give them fewer values, change keys together, "
-            "name fewer parts in corners, or take random draws",
-            prepared.source,
+    factors = [
+        " x ".join(
+            [*(str(len(axis)) for axis in base.axes)]
+            + ([str(sum(each.count for each in base.spreads))] if base.spreads else [])
         )
+        for base in prepared.bases[:3]
+    ]
+    refuse_many(prepared.count, "; ".join(filter(None, factors)), prepared.source)
     for base in prepared.bases:
         if base.scenario is not None and base.axes:
             _refuse_unfit(base, prepared)

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from typing import Annotated, Any, Literal, Self
 
-from pydantic import Field, StrictBool, model_validator
+from pydantic import AfterValidator, Field, StrictBool, model_validator
 
 from frontend_sim.quantities import PositiveShare, Temperature
 from frontend_sim.values import Value
@@ -17,7 +17,17 @@ MOST_RUNS = 1_000_000
 Given = int | float | str | StrictBool
 Key = Annotated[str, Field(min_length=1)]
 Count = Annotated[int, Field(strict=True, ge=1)]
-Ends = Annotated[tuple[Temperature, Temperature] | None, Field(default=None)]
+
+
+def _rising(ends: tuple[float, float] | None) -> tuple[float, float] | None:
+    if ends is not None and ends[0] >= ends[1]:
+        raise ValueError("give the lowest temperature first, then the highest")
+    return ends
+
+
+Ends = Annotated[
+    tuple[Temperature, Temperature] | None, AfterValidator(_rising), Field(default=None)
+]
 
 
 class Vary(Value):

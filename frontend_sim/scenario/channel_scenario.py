@@ -44,6 +44,11 @@ class Origin(Value):
         return path
 
 
+def with_channel(path: Path, text: str, name: str) -> str:
+    """Return a message about a channel's scenario, with its name where the path is that of all."""
+    return f"channel {name!r}: {text}" if path[:1] == ("simulation",) else text
+
+
 class ChannelScenario(Scenario):
     """What one channel of a scan sees: its stimulus, its chain and the shared one, its conversions.
 

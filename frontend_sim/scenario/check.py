@@ -10,12 +10,13 @@ from frontend_sim.converter import AnyAdc
 from frontend_sim.converter.clock import conversion_count, first_code_instant
 from frontend_sim.errors import ModelError, Problem, RecordingError, ScenarioError
 from frontend_sim.quantities import TIME, as_text
+from frontend_sim.scenario.channel_scenario import ChannelScenario, with_channel
 from frontend_sim.scenario.checks.rules import instant_faults
 from frontend_sim.scenario.fault import problem
 from frontend_sim.scenario.input_port import discretization_fault, input_network_of, input_port
 from frontend_sim.scenario.locate import lines_of
 from frontend_sim.scenario.model import Scenario
-from frontend_sim.scenario.scan_scenario import AnyScenario, ScanScenario
+from frontend_sim.scenario.scan_scenario import NO_END, AnyScenario, ScanScenario
 from frontend_sim.scenario.spread import moved
 from frontend_sim.scenario.tables import Path
 
@@ -103,7 +104,7 @@ def _check_scan(scan: ScanScenario, name: str) -> None:
         length = scan.run_length()
     except ScenarioError as error:
         path = ("simulation", "duration")
-        raise ScenarioError([problem_of(scan, path, str(error))], name) from error
+        raise ScenarioError([problem_of(scan, path, NO_END)], name) from error
     for channel in scan.channels(length):
         check_scenario(channel, name)
 
@@ -164,6 +165,8 @@ def problem_of(scenario: AnyScenario, path: Path, text: str) -> Problem:
     text : the whole message
     """
     source = scenario.file_text
+    if isinstance(scenario, ChannelScenario):
+        text = with_channel(path, text, scenario.channel)
     data: dict[str, Any] = tomllib.loads(source) if source else {}
     return problem(scenario.in_file(path), text, data, lines_of(source, data))
 

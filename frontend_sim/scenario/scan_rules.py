@@ -160,8 +160,8 @@ def _shared_faults(
             if stage.limiter() is not None:
                 yield (
                     ("channel", number, "chain", position),
-                    "a stage with limits before shared stages is not modelled; leave its limits "
-                    "out, or the shared stages",
+                    "a stage that is not linear (a limit, the curve of a sensor) is not modelled "
+                    "before shared stages; take it out, or the shared stages",
                 )
 
 

@@ -12,7 +12,7 @@ from pydantic import BeforeValidator, Field, ValidationError, model_validator
 from frontend_sim.converter import AnyAdc
 from frontend_sim.converter.adc import Adc
 from frontend_sim.errors import ScenarioError
-from frontend_sim.scenario.channel_scenario import ChannelScenario, Origin
+from frontend_sim.scenario.channel_scenario import ChannelScenario, Origin, with_channel
 from frontend_sim.scenario.checks import AnyCheck
 from frontend_sim.scenario.environment import Environment
 from frontend_sim.scenario.model import FORMAT, Scenario, SimulationSettings, digest_of
@@ -21,6 +21,13 @@ from frontend_sim.scenario.rules import faults, newer_format
 from frontend_sim.scenario.scan import Channel, Scan
 from frontend_sim.scenario.scan_rules import Fault, channel_faults, scan_faults
 from frontend_sim.values import Value
+
+
+NO_END = (
+    "missing; none of the channels' stimuli ends by itself, so say how long to run, for instance "
+    'duration = "10 ms"'
+)
+"""What is wrong with a scan that nothing ends."""
 
 
 class ScanScenario(Value):
@@ -67,7 +74,7 @@ class ScanScenario(Value):
             try:
                 made.append(self._channel(position, self.simulation.duration))
             except ValidationError as error:
-                found += _faults_in_file(error, self._origin(position))
+                found += _faults_in_file(error, self._origin(position), self.names[position])
         self._refuse(iter(dict(found).items()))
         for channel, scenario in zip(self.channel, made, strict=True):
             # As in ``Scenario``: the stimulus gets to know its unit.
@@ -121,9 +128,7 @@ class ScanScenario(Value):
         known = [channel.stimulus.known_length() for channel in self.channel]
         ends = [length for length in known if length is not None]
         if not ends:
-            raise ScenarioError(
-                "simulation.duration is missing: none of the channels' stimuli ends by itself"
-            )
+            raise ScenarioError(f"simulation.duration: {NO_END}")
         return min(ends)
 
     def _channel(self, position: int, duration: float | None) -> ChannelScenario:
@@ -222,9 +227,10 @@ def single(scenario: AnyScenario, what: str, name: str = "") -> Scenario:
     return scenario
 
 
-def _faults_in_file(error: ValidationError, origin: Origin) -> Iterator[Fault]:
+def _faults_in_file(error: ValidationError, origin: Origin, name: str) -> Iterator[Fault]:
     """Return what is wrong with one channel, with its paths in the file of the scan."""
     for detail in error.errors(include_url=False):
         context = detail.get("ctx") or {}
         path = (*detail["loc"], *context.get("path", ()))
-        yield origin.path(path), str(context.get("reason", detail["msg"]))
+        text = str(context.get("reason", detail["msg"]))
+        yield origin.path(path), with_channel(path, text, name)

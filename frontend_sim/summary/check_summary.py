@@ -55,6 +55,8 @@ class CheckSummary:
     column : its values in all runs
     runs : how many have it;  fails : how many of them fail
     rate : share of the draws that hold, with its interval; None where nothing was drawn
+    group : of draws that yield, percentiles and limits are those of, the worst of several; "" where
+        there is but one
     worst : number of the run with the smallest margin
     percentiles : of the values, at ``SHARES``; with intervals where runs are draws
     limits : that hold 95 % of all that could be drawn, with 95 % confidence; None where there are
@@ -68,6 +70,7 @@ class CheckSummary:
     runs: int
     fails: int
     rate: PassRate | None
+    group: str
     worst: int
     percentiles: tuple[Percentile, ...]
     limits: ToleranceLimits | None
@@ -105,25 +108,27 @@ def summarize_check(
     there = column.verdict != ""
     if not np.any(there):
         return None
-    drawn = there & population.drawn
     fails = column.verdict == "fails"
-    rate = None
-    if np.any(drawn):
-        rate = pass_rate(int(np.count_nonzero(drawn & ~fails)), int(np.count_nonzero(drawn)))
+    group, drawn = population.sample(there, ~fails, column.margin)
+    sampled, rate = int(np.count_nonzero(drawn)), None
+    if sampled:
+        rate = pass_rate(int(np.count_nonzero(drawn & ~fails)), sampled)
     margins = np.where(there, column.margin, np.inf)
     margins[there & np.isnan(column.margin)] = np.nan
     # Percentiles of draws where there are some: a grid has no distribution.
-    values = column.value[(drawn if np.any(drawn) else there) & ~np.isnan(column.value)]
-    mine = drawn if np.any(drawn) else there
+    values = column.value[(drawn if sampled else there) & ~np.isnan(column.value)]
+    mine = there & population.drawn if sampled else there
     causes: tuple[RankCorrelation, ...] = ()
-    if _spreads(values):
+    if _spreads(column.value[mine]):
         ranked = {key: row[mine] for key, row in parameters.items()}
-        causes = rank_correlations(ranked, column.value[mine])
+        # The draws of one group are the draws of all, so they do not become more by groups.
+        causes = rank_correlations(ranked, column.value[mine], sampled or None)
     return CheckSummary(
         column,
         int(np.count_nonzero(there)),
         int(np.count_nonzero(there & fails)),
         rate,
+        group,
         worst_run(margins),
         tuple(percentile(values, share) for share in SHARES) if len(values) else (),
         _limits(column, column.value[drawn]),

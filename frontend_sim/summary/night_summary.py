@@ -31,6 +31,7 @@ class NightSummary:
     population : its runs by their kind
     counts : verdict -> runs
     rate : share of the draws in which every check holds, with its interval; None without draws
+    group : of draws that the yield is that of, the worst of several; "" where there is but one
     checks : one after the other, those with failures first
     errors : name and reason of each run that gave no result
     warnings : what a reader must know before believing the rest
@@ -40,6 +41,7 @@ class NightSummary:
     population: Population
     counts: Counter[str]
     rate: PassRate | None
+    group: str
     checks: tuple[CheckSummary, ...]
     errors: tuple[tuple[str, str], ...]
     warnings: tuple[str, ...]
@@ -76,11 +78,11 @@ def summarize(table: SetTable) -> NightSummary:
     population = Population.of(table.names)
     verdicts = table.verdicts
     counts = Counter(verdicts.tolist())
-    drawn = population.drawn & (verdicts != "none")
+    held = verdicts == "holds"
+    group, drawn = population.sample(verdicts != "none", held, np.zeros(len(verdicts)))
     rate = None
     if np.any(drawn):
-        held = int(np.count_nonzero(verdicts[drawn] == "holds"))
-        rate = pass_rate(held, int(np.count_nonzero(drawn)))
+        rate = pass_rate(int(np.count_nonzero(held[drawn])), int(np.count_nonzero(drawn)))
     numbers = numeric_parameters(table)
     quiet = quiet_checks(table.base_values)
     found = (
@@ -92,8 +94,8 @@ def summarize(table: SetTable) -> NightSummary:
     told = table.texts("error")
     errors = tuple((table.names[run], str(told[run])) for run in failed.tolist())
     return NightSummary(
-        table, population, counts, rate, tuple(checks), errors,
-        tuple(_warnings(table, checks, population, len(errors))),
+        table, population, counts, rate, group, tuple(checks), errors,
+        tuple(_warnings(table, checks, len(errors))),
     )  # fmt: skip
 
 
@@ -106,19 +108,19 @@ def numeric_parameters(table: SetTable) -> dict[str, Real]:
     return found
 
 
-def _warnings(
-    table: SetTable, checks: list[CheckSummary], population: Population, errors: int
-) -> Iterator[str]:
+def _warnings(table: SetTable, checks: list[CheckSummary], errors: int) -> Iterator[str]:
     missing = table.planned - len(table.names)
     if missing:
         yield f"of {table.planned} runs {missing} are missing; the next replay goes on with them"
     if errors:
         yield f"of {table.planned} runs {errors} gave no result, which counts as not holding"
+    few: dict[tuple[int, int], list[str]] = {}
     for check in checks:
         yield from check.warnings
-        drawn = int(np.count_nonzero(population.drawn))
-        if drawn and check.limits is None:
-            yield (
-                f"{check.name}: {drawn} draws are too few for a limit that holds 95 % with 95 % "
-                f"confidence; {check.draws_needed} do"
-            )
+        if check.rate is not None and check.limits is None:
+            few.setdefault((check.rate.total, check.draws_needed), []).append(check.name)
+    for (drawn, needed), names in few.items():
+        yield (
+            f"{', '.join(names)}: {drawn} draws are too few for a limit that holds 95 % with 95 % "
+            f"confidence; {needed} do"
+        )

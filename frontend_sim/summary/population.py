@@ -46,6 +46,34 @@ class Population:
         ]
         return cls(drawn, corner, np.array(groups, dtype=np.str_))
 
+    def sample(self, among: Flags, held: Flags, margin: Real) -> tuple[str, Flags]:
+        """Return the draws that are a sample: those of the group of which the fewest hold.
+
+        What groups differ in was chosen, and draw n has the same parts in each of them, so that
+        the draws of several groups are no sample of anything.
+
+        Parameters
+        ----------
+        among : runs that count, shape (R,)
+        held : whether a run holds, shape (R,)
+        margin : decides between groups of which as many hold: the smallest is the worse, shape (R,)
+
+        Returns
+        -------
+        name of the group, "" where there is but one; whether a run is one of its draws, shape (R,)
+        """
+        drawn: Flags = among & self.drawn
+        names, place = np.unique(self.group[drawn], return_inverse=True)
+        if len(names) < 2:
+            return "", drawn
+        share = np.bincount(place, weights=held[drawn]) / np.bincount(place)
+        least = np.full(len(names), np.inf)
+        np.fmin.at(least, place, margin[drawn])
+        worst = int(np.lexsort((least, share))[0])
+        chosen = drawn.copy()
+        chosen[drawn] = place == worst
+        return str(names[worst]), chosen
+
     def within_corners(self, group: str, parameters: Mapping[str, Real]) -> Flags:
         """Return the runs of a group whose parameters all lie within those of its corners.
 

@@ -118,6 +118,14 @@ def test_a_channel_that_is_not_whole_is_refused(path: Path) -> None:
         open_record(path)
 
 
+def test_a_channel_that_is_gone_is_told(path: Path) -> None:
+    """The order of visits names it, and its group is not there."""
+    with h5py.File(path, "r+") as file:
+        del file["channel/c0"]
+    with pytest.raises(RecordError, match="group of channel 'c0' is missing"):
+        open_record(path)
+
+
 def test_what_takes_one_channel_says_so(path: Path) -> None:
     """And a record of one channel opens either way."""
     with pytest.raises(RecordError, match="record of a scan of 2 channels"):

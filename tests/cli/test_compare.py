@@ -134,6 +134,7 @@ def test_the_status_is_that_of_a_gate(
         (["a.h5", "moved.h5", "--tolerance", "headroom=1 Hz"], "headroom is measured in V"),
         (["a.h5", "moved.h5", "--plot", "x.pdf"], "a plot is written as .png or .svg"),
         (["a.h5", "moved.h5", "seed.h5", "--plot", "x.png"], "a plot shows two runs"),
+        (["one", "nowhere"], "nowhere: there is no such record or set"),
         (["a.h5", "moved.h5", "--seeds", "3"], "Invalid value for '--seeds'"),
     ],
 )

@@ -33,9 +33,34 @@ def test_run_and_inspect(
     assert set(json.loads(capsys.readouterr().out)) == {"title", "scan", "channels"}
 
 
-def test_a_picture_of_one_chain_refuses_a_scan(
+def test_a_plot_of_too_many_channels_is_refused_before_the_run(
     tmp_path: Path, capsys: pytest.CaptureFixture[str]
 ) -> None:
-    """With exit status 2 and one sentence."""
-    assert main(["inspect", str(SCANS[0]), "--plot", str(tmp_path / "a.png")]) == 2
-    assert "leave --plot out" in capsys.readouterr().err
+    """A picture of 33 rows is too tall; nothing is run for it, and nothing written."""
+    channels = "".join(
+        f'[[channel]]\nname = "c{i}"\n[channel.stimulus]\nkind = "step"\nafter = 1\n'
+        for i in range(33)
+    )
+    file = tmp_path / "many.toml"
+    file.write_text(
+        f"format = 1\n{channels}[adc]\nrate = 1e5\nbits = 12\nhigh = 3\n"
+        "[simulation]\nduration = 1e-3\n"
+    )
+    for command in (["run", "-o", str(tmp_path / "many.h5")], ["inspect"]):
+        assert main([*command, str(file), "--plot", str(tmp_path / "a.png")]) == 2
+        assert "at most 32 channels, and this scan has 33" in capsys.readouterr().err
+    assert [path.name for path in tmp_path.iterdir()] == ["many.toml"]
+
+
+def test_inspect_draws_every_channel(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    """One picture; it is not replaced unasked, and other formats are refused."""
+    picture = tmp_path / "channels.svg"
+    asked = ["inspect", str(SCANS[0]), "--plot", str(picture)]
+    assert main(asked) == 0
+    assert f"plot: {picture}" in capsys.readouterr().out
+    assert picture.read_text().startswith("<?xml")
+    assert main(asked) == 2
+    assert "--overwrite" in capsys.readouterr().err
+    assert main([*asked, "--overwrite", "--json"]) == 0
+    assert main(["inspect", str(SCANS[0]), "--plot", str(tmp_path / "a.pdf")]) == 2
+    assert [file.name for file in tmp_path.iterdir()] == ["channels.svg"]

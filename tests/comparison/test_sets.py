@@ -64,6 +64,35 @@ def test_a_part_that_moved_by_a_tenth_of_an_lsb_is_named(first: SetTable, tmp_pa
     assert split.shares[0].moved["pin, mean"] == pytest.approx(0.1, abs=1e-6)
 
 
+def test_other_draws_are_no_other_pin(first: SetTable, tmp_path: Path) -> None:
+    """Another seed draws other parts, so that pins differ run by run, and nothing is an alarm."""
+    found = compare_sets(first, night(tmp_path, "second", rules(seed=4, keep="all")))
+    assert not found.differs, found.alarms
+    pin = column(found, "pin")
+    assert pin.finding == "within noise"
+    assert pin.shift is not None
+    assert abs(pin.peak) > 1e-3
+
+
+def test_the_runs_of_one_draw_count_once() -> None:
+    """A grid repeats each draw; 60 pairs of 10 draws are not 60 circuits, and raise no alarm."""
+    draws = np.array([f"draw {number:04d}" for _ in range(6) for number in range(10)])
+    alarms = {True: 0, False: 0}
+    for seed in range(200):
+        one, other = np.random.default_rng(seed).normal(size=(2, 10))
+        pair = np.tile(one, 6), np.tile(other, 6)
+        verdicts = tuple(np.where(values > 0.0, "holds", "fails") for values in pair)
+        for known in alarms:
+            given = draws if known else None
+            row = column_difference(
+                "corner", "Hz", *pair, (verdicts[0], verdicts[1]), None, False, 0.0, 1e-3, given
+            )
+            alarms[known] += row.finding == "differs"
+            assert row.worse == np.count_nonzero((one > 0.0) & (other <= 0.0)) * 6
+    assert alarms[True] <= 2
+    assert alarms[False] > 20  # the test can see what it is about
+
+
 @pytest.mark.slow
 def test_seeds_alone_give_no_alarm_in_200_comparisons(tmp_path: Path) -> None:
     """Of 200 comparisons of nights of 12 draws with other seeds at most two find something."""

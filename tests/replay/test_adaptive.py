@@ -39,6 +39,22 @@ def test_draws_go_on_until_the_yield_is_narrow(tmp_path: Path) -> None:
     assert pass_rate(int(held.sum()), count - 40).width > 0.25
 
 
+def test_the_yield_of_each_group_is_narrow(tmp_path: Path) -> None:
+    """Draws at two resistors are two samples; both are as tight as asked for."""
+    vary = '[[vary]]\nkey = "chain[1].resistance"\nvalues = ["10 kohm", "9.8 kohm"]\n'
+    rules = RULES.format(count=2000, until='yield = "25 %"\nblock = 40\n')
+    replay_set(made_set(tmp_path, rules + vary), tmp_path / "night", on="in-process")
+    table = open_set(tmp_path / "night")
+    half = len(table.names) // 2
+    held = [int((part == "holds").sum()) for part in (table.verdicts[:half], table.verdicts[half:])]
+    assert max(pass_rate(one, half).width for one in held) <= 0.25
+    fewer = [
+        int((part[: half - 40] == "holds").sum())
+        for part in (table.verdicts[:half], table.verdicts[half:])
+    ]
+    assert max(pass_rate(one, half - 40).width for one in fewer) > 0.25
+
+
 def test_draws_go_on_until_digits_are_stable(tmp_path: Path) -> None:
     """One digit of the deviation of every check is stable in blocks of 40, by JCGM 101."""
     table = night(tmp_path, "digits = 1\nblock = 40")

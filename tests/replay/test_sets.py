@@ -195,6 +195,16 @@ def test_a_set_may_stand_on_another(tmp_path: Path) -> None:
     assert [run.name for run in found] == ["bits=10,rate=1kHz", "bits=12,rate=1kHz"]
 
 
+def test_a_set_has_seed_and_keep_of_the_one_it_stands_on(tmp_path: Path) -> None:
+    """What the outer set does not say, the inner says; what it says counts."""
+    made_set(tmp_path, 'seed = 7\nkeep = "all"\ntitle = "inner"\n[corners]\n', "inner.toml")
+    found = read_set(made_set(tmp_path, 'base = "inner.toml"\n'))
+    assert (found.seed, found.keep, found.title) == (7, "all", "inner")
+    found = read_set(made_set(tmp_path, 'base = "inner.toml"\nseed = 0\nkeep = "nothing"\n'))
+    assert (found.seed, found.keep) == (0, "nothing")
+    assert read_set(made_set(tmp_path, "[corners]\n")).seed == 0
+
+
 GRID = "".join(
     f'[[vary]]\nkey = "{key}"\nfrom = {low}\nto = {high}\npoints = 1000\n'
     for key, low, high in (
@@ -219,7 +229,11 @@ GRID = "".join(
         ('[[vary]]\nkey = "stimulus.after"\nglob = "no/*.csv"\n', "matches no file"),
         (GRID, r"1,000,000,000 runs \(1000 x 1000 x 1000\), the limit is 1,000,000"),
         ('[corners]\nparts = ["chain[2].gain"]\n', "has no tolerance.*resistance"),
-        ("[draws]\ncount = 0\n", "draws.count"),
+        ("[draws]\ncount = 0\n", "draws.count: given 0; at least 1 is needed"),
+        ('[[vary]]\nkey = "adc.rate"\nvalues = [inf]\n', "given inf; a number must be finite"),
+        ('[[vary]]\nkey = "adc.rate"\nvalues = []\n', "given an empty list; give at least 1"),
+        ('[corners]\ntemperature = ["85 degC", "-40 degC"]\n', "the lowest temperature first"),
+        ("[draws]\ncount = 2\ntemperature = [300, 300]\n", "the lowest temperature first"),
         ('[draws]\ncount = 5\ndistribution = "gauss"\n', "'uniform' or 'normal'"),
         ('base = "set.toml"\n', "in a circle: .*set.toml -> .*set.toml; name a scenario"),
         ('scenarios = "none/*.toml"\n', "matches no file"),
@@ -238,6 +252,26 @@ def test_wrong_sets_are_refused_with_the_cure(tmp_path: Path, text: str, message
     """Nothing is run of a set that is wrong; the message says where, and what to do."""
     with pytest.raises(InputError, match=message):
         runs(tmp_path, text)
+
+
+def test_a_huge_grid_is_refused_before_its_runs_are_named(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    """Nine million runs are counted, not listed: no value gets a name."""
+    monkeypatch.delattr("frontend_sim.replay.points._labels")
+    text = (
+        '[[vary]]\nkey = "adc.rate"\nfrom = 1000\nto = 50000\npoints = 1000000\n'
+        '[[vary]]\nkey = "adc.bits"\nfrom = 8\nto = 16\npoints = 1000\n'
+    )
+    with pytest.raises(ScenarioError, match=r"9,000,000 runs \(1000000 x 9\)"):
+        runs(tmp_path, text)
+
+
+def test_a_scenario_that_is_given_twice_is_refused(tmp_path: Path) -> None:
+    """Two runs of one name would be one run too few."""
+    file = base(tmp_path)
+    with pytest.raises(ScenarioError, match=r"base\.toml is given 2 times"):
+        read_set([file, file])
 
 
 def test_a_circle_of_two_sets_is_told_whole(tmp_path: Path) -> None:

@@ -102,11 +102,38 @@ def test_checks_go_to_the_channel_that_they_name() -> None:
             r"scan.chain\[1\].resistance \(rc-lowpass \"shared\"\)",
         ),
         ({"more": '[[check]]\nkind = "level"\nat = 1.0\nat_least = 0'}, r"check\[1\].at"),
+        ({"duration": 75e-6}, r"simulation.duration: channel 'c2': no conversion .* at 100 us"),
+        (
+            {"more": 'waveform_rate = 1e5\nwaveform_points = ["pin"]'},
+            r"waveform_points\[1\]: channel 'c2': the chain has no point 'pin'",
+        ),
+        (
+            {
+                "chain": '[[channel.chain]]\nkind = "rail-limit"\nlow = -1\nhigh = 1',
+                "scan": SHARED,
+            },
+            r"channel\[3\].chain\[1\].*not linear .* before shared stages",
+        ),
     ],
 )  # fmt: skip
 def test_what_cannot_be_is_refused_by_name(changes: dict[str, str], words: str) -> None:
     """Each message names the key, and where there is one the line."""
     assert re.search(words, refused(**changes)), refused(**changes)
+
+
+def test_a_scan_without_end_says_so_once(tmp_path: Path) -> None:
+    """The key stands once before the sentence, from a file as from a scan made in Python."""
+    scan = scan_of([level(0), level(1)])
+    endless = scan.model_copy(
+        update={"simulation": scan.simulation.model_copy(update={"duration": None})}
+    )
+    file = tmp_path / "endless.toml"
+    file.write_text(scenario_text(endless))
+    for ask in (lambda: load_scenario(file), endless.run_length):
+        with pytest.raises(ScenarioError) as caught:
+            ask()
+        assert str(caught.value).count("simulation.duration") == 1
+        assert "missing; none of the channels' stimuli ends by itself" in str(caught.value)
 
 
 def test_names_of_channels_are_their_own() -> None:

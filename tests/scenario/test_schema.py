@@ -18,7 +18,11 @@ from frontend_sim.scenario.checks import CHECKS
 from frontend_sim.scenario.tables import keys, tables
 from frontend_sim.stimulus import STIMULI
 
-SCENARIOS = sorted((Path(__file__).parents[2] / "scenarios").rglob("*.toml"))
+SCENARIOS = sorted(
+    file
+    for file in (Path(__file__).parents[2] / "scenarios").rglob("*.toml")
+    if file.parent.name != "sets"  # these vary scenarios and are none themselves
+)
 
 DESIGN = """
 format = 1

@@ -14,7 +14,7 @@ from scipy import signal
 from frontend_sim.analog.chain import chain_of
 from frontend_sim.analog.stages import Butterworth, Gain, RcHighpass, RcLowpass, TransportDelay
 from frontend_sim.simulation.uniform import LONGEST_SUM, WAVEFORM_TILE
-from frontend_sim.stimulus.drive import Lines
+from frontend_sim.stimulus.drive import Between, Lines
 
 CHAIN = chain_of(
     [
@@ -181,7 +181,7 @@ def test_a_delay_is_exact_at_any_instant() -> None:
 
 @pytest.mark.parametrize("initial", ["settled", "rest"])
 @pytest.mark.parametrize("between", ["hold", "line"])
-def test_instants_before_the_second_point_need_no_step(between: str, initial: str) -> None:
+def test_instants_before_the_second_point_need_no_step(between: Between, initial: str) -> None:
     """One conversion at t = 0, and one between the first two points, see what is there.
 
     With a line from u0 to u1 the low pass of a state of rest obeys its ramp response.

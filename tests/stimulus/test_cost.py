@@ -41,12 +41,15 @@ def _run(stimulus: dict[str, Any], grid_rate: float) -> Any:
             {
                 "stimulus": stimulus,
                 "chain": [{"kind": "butterworth", "order": 4, "corner": 900.0}],
-                # Not from t = 0 on, so that every conversion is a node of its own.
-                "adc": {"rate": 5e3, "bits": 12, "low": -2.0, "high": 2.0, "first": 1e-5},
+                # The clock is not even, so that every conversion is a node of its own.
+                "adc": {
+                    "rate": 5e3, "bits": 12, "low": -2.0, "high": 2.0, "first": 1e-5,
+                    "aperture_jitter": 1e-9,
+                },
                 "simulation": {"duration": 0.01, "grid_rate": grid_rate},
             }
         )
-    )
+    )  # fmt: skip
 
 
 @pytest.mark.parametrize("stimulus", STIMULI, ids=lambda s: s["kind"])

@@ -11,6 +11,7 @@ from nights import BASE, made_set
 
 from frontend_sim.archive.set_table import SetTable, open_set
 from frontend_sim.measure.statistics import pass_rate
+from frontend_sim.present.night_table import night_data
 from frontend_sim.replay import replay_set
 from frontend_sim.summary import NightSummary, Population, summarize
 
@@ -80,6 +81,39 @@ def test_limits_need_59_draws(table: SetTable, summary: NightSummary, tmp_path: 
     few = summarize(night(tmp_path, "few", DRAWS.replace("60", "20")))
     assert next(check for check in few.checks if check.name == "corner").limits is None
     assert any("20 draws are too few" in text and "59 do" in text for text in few.warnings)
+
+
+def test_the_yield_of_several_groups_is_that_of_the_worst(tmp_path: Path) -> None:
+    """What was chosen is no sample: 20 draws at each of two resistors are not 40 draws."""
+    vary = '[[vary]]\nkey = "chain[input filter].resistance"\nvalues = ["10 kohm", "10.1 kohm"]\n'
+    rules = f'seed = 5\nkeep = "nothing"\n{vary}[draws]\ncount = 20\n'
+    found = summarize(night(tmp_path, "groups", rules))
+    worst = "resistance=10.1kohm"
+    mine = np.array([name.startswith(worst) for name in found.table.names])
+    held = int(np.count_nonzero(found.table.verdicts[mine] == "holds"))
+    others = int(np.count_nonzero(found.table.verdicts[~mine] == "holds"))
+    assert held < others
+    assert found.group == worst
+    assert found.rate == pass_rate(held, 20)
+    corner = next(check for check in found.checks if check.name == "corner")
+    assert corner.group == worst
+    assert corner.percentiles[1].value == np.median(corner.column.value[mine])
+    assert corner.limits is None
+    assert found.warnings == (
+        "corner, noise: 20 draws are too few for a limit that holds 95 % with 95 % confidence; "
+        "59 do",
+    )
+    told = night_data(found)
+    assert (told["yield_group"], told["checks"][0]["group"]) == (worst, worst)
+
+
+def test_what_was_chosen_has_no_confidence(tmp_path: Path) -> None:
+    """The percentiles of a grid have no interval, and no draws are asked for."""
+    rules = 'keep = "nothing"\n[[vary]]\nkey = "adc.bits"\nvalues = [10, 11, 12, 13, 14]\n'
+    check = night_data(summarize(night(tmp_path, "grid", rules)))["checks"][0]
+    assert check["draws_needed"] is None
+    assert {each["confidence"] for each in check["percentiles"]} == {None}
+    assert {each["low"] for each in check["percentiles"]} == {None}
 
 
 def test_monotone_responses_give_no_warning(summary: NightSummary) -> None:

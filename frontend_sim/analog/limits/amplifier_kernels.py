@@ -95,15 +95,28 @@ def join(table: Any, count: int, whole: Any) -> None:
         level += 1
 
 
+@compiled(inline="always")
+def most_level(lasting: Any, levels: Any, age: float) -> int:
+    """Return the level of the longest step that follows what rings on at an age [s]."""
+    most = 62
+    for k in range(len(lasting)):
+        if age < lasting[k] and levels[k] < most:
+            most = levels[k]
+    return most
+
+
 @compiled()
 def loop(
     dims: Any, state: Any, length: Any, begin: Any, end: Any, linear: Any, standing: float,
-    jumps: Any, unit: float, first: int, free: Any, held: Any,
+    jumps: Any, unit: float, first: int, free: Any, held: Any, lasting: Any, levels: Any,
     asked: Any, target: Any, static: bool, output: Any,
     up: float, down: float, low: float, high: float,
     deviation: Any, begun: Any, time: Any, piece: Any, since: Any,
 ) -> None:  # fmt: skip
-    """Advance state = [d, mode, u, x_lin, x - x_lin] over pieces; deviation[s] = y - linear[s].
+    """Advance state = [d, mode, u, x_lin, x - x_lin, age]; deviation[s] = y - linear[s].
+
+    ``age`` is the time since the last jump or event. A piece is one step if its mode still holds at
+    the end, and if nothing that the step would not follow rings on; else it is walked through.
 
     ``dims`` is a tuple as long as x, so that the loops over x are compiled for its length. They are
     written out rather than called: a call with arrays costs more than the whole piece.
@@ -111,7 +124,7 @@ def loop(
     n = len(dims)
     d, mode, last = state[0], int(state[1]), state[2]
     plain, following = state[3 : 3 + n].copy(), np.empty(n)
-    beyond, moved = state[3 + n :].copy(), np.zeros(n)
+    beyond, moved, age = state[3 + n : -1].copy(), np.zeros(n), state[-1:]
     x, after = plain + beyond, np.empty(n)
     whole, whole_held = np.zeros((n + 2, n + 2)), np.zeros((n + 3, n + 3))
     still = not np.any(beyond)
@@ -183,11 +196,15 @@ def loop(
             for k in range(n):
                 gap += target[k] * after[k]
         holds = valid(mode, static, w, gap, slope, up, down, low, high)
-        if jumped or not holds:
+        if jumped:
+            age[0] = 0.0
+        most = most_level(lasting, levels, age[0])
+        if jumped or not holds or 1 << most < count:
             for r in range(n):
                 after[r] = x[r]
             passed = through(
-                mode, after, u, rise, count, unit, first, free, held, asked, target, static,
+                mode, after, u, rise, count, unit, most if holds and not jumped else first, first,
+                free, held, lasting, levels, age, asked, target, static,
                 up, down, low, high, s, time, piece, since,
             )  # fmt: skip
             if passed == UNTOUCHED:
@@ -199,10 +216,12 @@ def loop(
                 for r in range(n):
                     moved[r] = after[r] - following[r]
                     slope += asked[r] * after[r]
-        elif mode >= 0:
-            time[mode] += dt
-            if piece[mode] < 0:
-                piece[mode], since[mode] = s, 0.0
+        else:
+            age[0] += dt
+            if mode >= 0:
+                time[mode] += dt
+                if piece[mode] < 0:
+                    piece[mode], since[mode] = s, 0.0
         last = ahead
         if mode == FREE:
             d = 0.0
@@ -225,25 +244,26 @@ def loop(
         deviation[s] = d
     state[0], state[1], state[2] = d, mode, last
     state[3 : 3 + n] = plain
-    state[3 + n :] = beyond
+    state[3 + n : -1] = beyond
 
 
 @compiled()
 def through(
-    mode: int, x: Any, u: float, rise: float, count: int, unit: float, first: int,
-    free: Any, held: Any, asked: Any, target: Any, static: bool,
+    mode: int, x: Any, u: float, rise: float, count: int, unit: float, level: int, first: int,
+    free: Any, held: Any, lasting: Any, levels: Any, age: Any,
+    asked: Any, target: Any, static: bool,
     up: float, down: float, low: float, high: float,
     s: int, time: Any, piece: Any, since: Any,
 ) -> int:  # fmt: skip
-    """Go through the events of one piece; x is advanced in place, and what limits is returned.
+    """Go through the events of one piece; x and age are advanced, and what limits is returned.
 
-    After its begin and after every event, steps are short at first, a share of the fastest time
-    constant, and are doubled as the transient dies out: none is missed between the ends of the
-    piece. The end of a mode lies in the first step behind which it does not hold any more; there
-    it is found by bisection.
+    After a jump and after every event, steps are short at first, a share of the fastest time
+    constant, and are doubled as the transient dies out, but not beyond what follows a pole that
+    still rings: none is missed between the ends of the piece. The end of a mode lies in the first
+    step behind which it does not hold any more; there it is found by bisection.
     """
     n = len(x)
-    done, events, level, taken, halving = 0, 0, first, 0, False
+    done, events, taken, halving = 0, 0, 0, False
     z, out, failed = np.zeros(n + 3), np.empty(n + 3), np.empty(n + 3)
     failed_gap, failed_slope = 0.0, 0.0
     z[:n] = x
@@ -275,6 +295,7 @@ def through(
             for r in range(n):
                 z[r] = out[r]
             done += step
+            age[0] += step * unit
         else:
             for r in range(n):
                 failed[r] = out[r]
@@ -298,11 +319,13 @@ def through(
             mode, w = mode_at(mode, static, w, failed_gap, failed_slope, up, down, low, high)
             z[n - 1] = w
             untouched, events, level, taken, halving = False, events + 1, first, 0, False
+            age[0] = 0.0
         elif halving:
             level -= 1
         else:
             taken += 1
-            if taken >= EACH and level < len(free) - 1:
+            longest = min(most_level(lasting, levels, age[0]), len(free) - 1)
+            if taken >= EACH and level < longest:
                 level, taken = level + 1, 0
     for r in range(n):
         x[r] = z[r]

@@ -7,6 +7,7 @@ from dataclasses import dataclass, field
 from typing import Self
 
 import numpy as np
+from numpy.typing import NDArray
 
 from frontend_sim.analog.block import Real
 from frontend_sim.analog.exponential import expm1
@@ -15,11 +16,21 @@ from frontend_sim.analog.limits.limiter import Limiter, Segments, Touched, conti
 from frontend_sim.analog.limits.loop_model import LoopModel
 from frontend_sim.analog.network import Opened, OpenLoop
 
+Steps = tuple[float, int, Real, Real, Real, NDArray[np.int64]]
+
 LEVELS = 48
 """Halvings of the longest piece: event times are found to 4e-15 of it."""
 
 FINE = 0.1
 """First step after a jump or an event, times the fastest rate of the circuit."""
+
+
+FOLLOWED = 0.5
+"""Longest step while a pole rings on, times its magnitude."""
+
+LASTING, BRIEF = 16.0, 3.0
+"""So many times its decay a pole is followed after a jump or an event: one that rings (Q above 1)
+down to 1e-7; of the others, which hardly overshoot, the begin."""
 
 
 @dataclass(frozen=True, eq=False)
@@ -63,7 +74,7 @@ class AmplifierLoop(Limiter):
     limits = NAMES
     bends = False
     raised = True
-    _known: dict[int, tuple[float, int, Real, Real]] = field(default_factory=dict)
+    _known: dict[int, Steps] = field(default_factory=dict)
 
     @classmethod
     def of(
@@ -95,12 +106,15 @@ class AmplifierLoop(Limiter):
 
     def rates(self) -> tuple[float, ...]:
         """Return the magnitudes of the poles, free and held [rad/s]."""
+        return tuple(np.abs(self._poles()).tolist())
+
+    def _poles(self) -> NDArray[np.complex128]:
         n = len(self.held)
-        poles = np.concatenate([np.linalg.eigvals(m[:, :n]) for m in (self.free, self.held)])
-        return tuple(np.abs(poles).tolist())
+        poles = [np.linalg.eigvals(m[:, :n]) for m in (self.free, self.held)]
+        return np.concatenate(poles).astype(np.complex128)
 
     def start(self, u: float, v: float) -> Real:
-        """Return deviation, mode, input, x of the linear model, and what x lies beyond it."""
+        """Return deviation, mode, input, x of the linear model, what x lies beyond it, and age."""
         n = len(self.held)
         plain, beyond = np.zeros(n), np.zeros(n)
         states = slice(0, n) if self.target is None else slice(0, n - 1)
@@ -111,7 +125,8 @@ class AmplifierLoop(Limiter):
         if beyond[-1] != 0.0:
             a, b = self.held[:-1, : n - 1], self.held[:-1, n - 1]
             beyond[:-1] = -np.linalg.solve(a, b * beyond[-1])
-        return np.concatenate([[float(self.output[:n] @ beyond), -1.0, u], plain, beyond])
+        d = float(self.output[:n] @ beyond)
+        return np.concatenate([[d, -1.0, u], plain, beyond, [math.inf]])
 
     def advance(self, state: Real, span: Segments) -> tuple[Real, Real, Real, Touched]:
         """Advance event by event; without a pole in the amplifier the deviation jumps as u does."""
@@ -133,10 +148,11 @@ class AmplifierLoop(Limiter):
             begun = continuous(state, deviation, span.jumps)
         return after, deviation, begun, touched
 
-    def _tables(self, longest: float) -> tuple[float, int, Real, Real]:
+    def _tables(self, longest: float) -> Steps:
         """Return the smallest step [s], the first level after an event, and steps by doublings.
 
-        These are less the identity: of [x, u, du/dt] free, and of [x, u, du/dt, slope] held.
+        These are less the identity: of [x, u, du/dt] free, and of [x, u, du/dt, slope] held. Then
+        how long each pole rings on [s], and the level of the longest step that follows it.
         """
         top = math.ceil(math.log2(max(longest, 1e-300)))
         if top not in self._known:
@@ -152,7 +168,13 @@ class AmplifierLoop(Limiter):
             fastest = max(max(self.rates()) * unit, 1e-300)
             first = min(max(math.floor(math.log2(FINE / fastest)), 0), LEVELS)
             steps = (_doublings(free * unit), _doublings(held * unit))
-            self._known[top] = (unit, first, *steps)
+            poles = self._poles()
+            poles = poles[poles.real < 0.0]
+            rings = np.abs(poles) > -2.0 * poles.real
+            lasting = np.where(rings, LASTING, BRIEF) / -poles.real
+            levels = np.floor(np.log2(FOLLOWED / (np.abs(poles) * unit)))
+            levels = np.clip(levels, first, 62).astype(np.int64)
+            self._known[top] = (unit, first, *steps, lasting, levels)
         return self._known[top]
 
 

@@ -98,7 +98,7 @@ class Folder:
         if len(lines) > most:
             strongest = np.argsort(-volts, kind="stable")[:most]
             chosen = strongest[volts[strongest] >= least * self.adc.lsb]
-        return [self._of_line(lines[place], float(volts[place])) for place in chosen]
+        return [self._of_line(lines[place], float(volts[place])) for place in chosen.tolist()]
 
     def _of_line(self, line: Line, volts: float) -> Alias:
         lands = folded(line.frequency, self.rate)

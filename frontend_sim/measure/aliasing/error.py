@@ -13,7 +13,7 @@ from frontend_sim.analog.chain import Chain
 from frontend_sim.errors import MeasureError, ModelError
 from frontend_sim.measure.aliasing.sieve import MOST_LOOKS
 from frontend_sim.measure.aliasing.source import Above
-from frontend_sim.measure.aliasing.split import Edges, Points, part_above
+from frontend_sim.measure.aliasing.split import Edges, Points, split_above
 from frontend_sim.measure.arrays import Real
 from frontend_sim.simulation.linear import Axis, Initial, Linear
 from frontend_sim.stimulus.drive import Drive, UniformDrive
@@ -159,7 +159,7 @@ def _points_above(drive: UniformDrive, instants: Real, limit: float, edges: Edge
     if count < 2:
         return None
     _refuse_many(count)
-    row = part_above(drive.points(0, count), drive.rate, limit, edges)
+    row = split_above(drive.points(0, count), drive.rate, limit, edges)
     return Points(row, drive.rate, drive.origin, drive.between)
 
 
@@ -179,7 +179,7 @@ def _split_of_response(
     values[run] = response.to(part.whole, times[run])
     found = []
     for step in (1, 2):
-        high = part_above(values[::step], fine * rate / step, limit, edges)
+        high = split_above(values[::step], fine * rate / step, limit, edges)
         found.append(_between(times[::step], values[::step] - high, instants))
     whole = response.to(part.whole, instants)
     uncertainty = float(np.max(np.abs(found[0] - found[1]), initial=0.0))

@@ -6,9 +6,10 @@ from dataclasses import dataclass
 from typing import Literal, get_args
 
 import numpy as np
+from numpy.typing import ArrayLike
 
 from frontend_sim.errors import MeasureError
-from frontend_sim.measure.arrays import Real
+from frontend_sim.measure.arrays import Real, positive, samples
 from frontend_sim.stimulus.drive import Between, UniformDrive
 
 LEAST = 4
@@ -21,7 +22,7 @@ ROUNDING = 1.0 + 1e-12
 """A line that lies above the limit by less than this lies on it."""
 
 
-def part_above(points: Real, rate: float, limit: float, edges: Edges = "reflected") -> Real:
+def part_above(values: ArrayLike, rate: float, limit: float, edges: Edges = "reflected") -> Real:
     """Return the part of a row of points that lies above a frequency, shape (N,).
 
     Every line above the limit is kept whole, every other one is gone: a filter with no transition.
@@ -34,10 +35,23 @@ def part_above(points: Real, rate: float, limit: float, edges: Edges = "reflecte
 
     Parameters
     ----------
-    points : equally spaced, shape (N,), any unit
+    values : equally spaced, at least four, shape (N,), any unit
     rate : of the points [Hz]
     limit : lines at this frequency count as below [Hz]
     edges : how the row goes on beyond its ends
+
+    Raises
+    ------
+    MeasureError
+        If the points are unusable, a frequency is not above zero, or ``edges`` is no known word.
+    """
+    row = samples(values, LEAST)
+    own, top = positive(rate, "the rate", "Hz"), positive(limit, "the limit", "Hz")
+    return split_above(row, own, top, edges)
+
+
+def split_above(points: Real, rate: float, limit: float, edges: Edges) -> Real:
+    """Return what ``part_above`` does, of points that are known to be good; zeros of very few.
 
     Raises
     ------

@@ -31,14 +31,15 @@ def recovery(check: RecoveryCheck, subject: Subject) -> Answer:
     since = _end_of_overload(check, subject, free)
     own = free if check.point is None else unlimited(subject, check.point)
     wrong = np.abs(subject.at_conversions(check.point) - own) > band
-    last = np.flatnonzero((wrong | subject.overrange) & (subject.time > since))
-    if len(last) and last[-1] == len(subject.time) - 1:
+    wrong = wrong | subject.overrange
+    if wrong[-1] or since >= subject.time[-1]:
         raise MeasureError(
             "it has not recovered when the run ends, at "
             f"{words.time(float(subject.time[-1]))}; lengthen simulation.duration, or widen within"
         )
+    last = np.flatnonzero(wrong & (subject.time > since))
     value = float(subject.time[last[-1]]) - since if len(last) else 0.0
-    lost = int(np.count_nonzero(wrong | subject.overrange))
+    lost = int(np.count_nonzero(wrong))
     beside = (
         Result("overload ends", since, "s", method="as given" if check.after else "by the pin"),
         Result("conversions lost", float(lost), "conversions", method="over the whole run"),

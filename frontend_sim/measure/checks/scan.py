@@ -57,8 +57,7 @@ def _of_channel(channel: ChannelScenario, scan: ScanScenario) -> list[Problem]:
     adc = channel.adc
     uneven = adc.pattern.looks > adc.last_look(0) + 1
     for position, check in enumerate(channel.check):
-        between = isinstance(check, PointCheck) or check.kind == "total-error"
-        if between and getattr(check, "point", None) in behind:
+        if isinstance(check, PointCheck) and check.point in behind:
             text = (
                 "looks between conversions, where the shared stages have another channel; name a "
                 f"point of channel {channel.channel!r} before them"

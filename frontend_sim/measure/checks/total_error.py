@@ -5,7 +5,7 @@ from __future__ import annotations
 from frontend_sim.measure.checks import words
 from frontend_sim.measure.checks.answer import Answer, scaled
 from frontend_sim.measure.checks.subject import Subject
-from frontend_sim.measure.error import Ideal, TotalError
+from frontend_sim.measure.error import Ideal, TotalError, refuse_looks_of_a_scan
 from frontend_sim.measure.error import total_error as measured
 from frontend_sim.measure.result import Result
 from frontend_sim.scenario.checks.total_error import TotalErrorCheck
@@ -26,6 +26,7 @@ CURES = {
     "noise": "take quieter parts, lower the bandwidth, or average",
     "clipping": "bring the signal into the range",
     "quantization": "take more bits, or fill more of the range",
+    "noise and quantization": "take quieter parts, lower the bandwidth, average, or take more bits",
 }
 """What helps first against each part."""
 
@@ -63,7 +64,14 @@ def total_error(check: TotalErrorCheck, subject: Subject) -> Answer:
 
 
 def total_possible(check: TotalErrorCheck, subject: Subject) -> None:
-    """Refuse a chain without gain at dc, if none is given. Raises MeasureError."""
+    """Refuse a chain without gain at dc, if none is given, and some averages of a scan.
+
+    Raises
+    ------
+    MeasureError
+        As ``Ideal.of`` and ``refuse_looks_of_a_scan`` do.
+    """
+    refuse_looks_of_a_scan(subject.scenario)
     Ideal.of(subject.scenario, check.gain, check.offset)
 
 

@@ -2,6 +2,6 @@
 
 from frontend_sim.measure.error.ideal import Ideal
 from frontend_sim.measure.error.part import Part
-from frontend_sim.measure.error.total import TotalError, total_error
+from frontend_sim.measure.error.total import TotalError, refuse_looks_of_a_scan, total_error
 
-__all__ = ["Ideal", "Part", "TotalError", "total_error"]
+__all__ = ["Ideal", "Part", "TotalError", "refuse_looks_of_a_scan", "total_error"]

@@ -12,6 +12,7 @@ import numpy as np
 from frontend_sim.analog.chain import Chain, chain_of
 from frontend_sim.analog.stages.curved_sensor import CurvedSensor
 from frontend_sim.errors import MeasureError, ModelError
+from frontend_sim.measure.arrays import finite
 from frontend_sim.quantities import REFERENCE_TEMPERATURE
 from frontend_sim.scenario.model import Scenario
 from frontend_sim.scenario.spread import stages_at
@@ -48,20 +49,23 @@ class Ideal:
         Raises
         ------
         MeasureError
-            If the chain has no gain at zero frequency, and none is given.
+            If the chain has no gain at zero frequency, and none is given; or what is given is no
+            number, or a gain of zero.
         """
         stages = stages_at(scenario.chain, REFERENCE_TEMPERATURE)
         nominal = chain_of(stages, REFERENCE_TEMPERATURE)
-        found = dc_gain(nominal) if gain is None else gain
-        if not 0.0 < abs(found) < math.inf:
+        found = dc_gain(nominal) if gain is None else finite(gain, "the gain")
+        if gain is None and not 0.0 < abs(found) < math.inf:
             raise MeasureError(
                 f"the gain of the chain at zero frequency is {found:g}, so no code stands for a "
                 "value of the quantity; give gain, that of the pass band"
             )
+        if found == 0.0:
+            raise MeasureError("a gain of 0 makes no quantity of a voltage; leave it out")
         unit = scenario.stimulus_unit
         if offset is None:
             offset = 0.0 if unit == VOLT else constant_of(nominal, stages)
-        return cls(found, offset, unit)
+        return cls(found, finite(offset, "the offset"), unit)
 
 
 def dc_gain(chain: Chain, point: int = -1) -> float:

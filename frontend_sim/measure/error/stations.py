@@ -11,6 +11,7 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from frontend_sim.converter import Adc
+from frontend_sim.converter.paced import PacedAdc
 from frontend_sim.converter.quantizer import converted_voltage
 from frontend_sim.measure.aliasing.aliasing import Aliasing
 from frontend_sim.measure.aliasing.error import AliasError, Response
@@ -131,12 +132,14 @@ class Stations:
         yield "gain", self.codes(converted_voltage(straight, held, 0, seed, temperature))
         yield "offset", self.codes(converted_voltage(quiet, held, 0, seed, temperature))
         noise = self._noise(pin, held)
+        if isinstance(scenario, ChannelScenario) and not self._drawn_alike(held, noise):
+            yield from self._without_draws(
+                self.codes(converted_voltage(quiet, held, 0, seed, temperature)), held
+            )
+            return
         loud = converted_voltage(adc, held + noise, 0, seed, temperature)
         yield "noise", self.codes(loud)
-        top = adc.high
-        if isinstance(adc, Adc) and adc.rounding == "nearest":
-            top -= adc.core_lsb
-        yield "clipping", self.codes(np.clip(loud, adc.low, top))
+        yield "clipping", self.codes(np.clip(loud, adc.low, self._top))
         if adc.nonlinearity is not None:
             even = adc.model_copy(update={"nonlinearity": None}).digitizer(seed, temperature)
             _, made = even.convert(even.start(), 0, self.looks, held, noise)
@@ -144,6 +147,42 @@ class Stations:
             yield "nonlinearity", run.voltage
         else:
             yield "quantization", run.voltage
+
+    @property
+    def _top(self) -> float:
+        """Voltage of the highest code, where rounding ends [V]."""
+        adc = self.adc
+        nearest = isinstance(adc, Adc) and adc.rounding == "nearest"
+        return adc.high - adc.core_lsb if nearest else adc.high
+
+    def _drawn_alike(self, held: Real, noise: Real) -> bool:
+        """Return whether a channel by itself draws what it drew within its scan.
+
+        There the converter draws by the number of the conversion in the scan, which a channel does
+        not know; if nothing random is larger than the rounding, both give the same codes.
+        """
+        digitizer = self.adc.digitizer(
+            self.run.scenario.seed, self.run.scenario.environment.temperature
+        )
+        _, made = digitizer.convert(digitizer.start(), 0, self.looks, held, noise)
+        return np.array_equal(made.codes, self.run.codes)
+
+    def _without_draws(self, quiet: Real, held: Real) -> Iterator[Station]:
+        """Return the stations to the code where noise and rounding cannot be told apart."""
+        adc, scenario = self.adc, self.run.scenario
+        clipped = np.clip(quiet, adc.low, self._top)
+        yield "clipping", clipped
+        if adc.nonlinearity is not None:
+            bent, even = (
+                each.digitizer(scenario.seed, scenario.environment.temperature)
+                for each in (adc, adc.model_copy(update={"nonlinearity": None}))
+            )
+            made = [
+                each.convert(each.start(), 0, self.looks, held)[1].voltage for each in (bent, even)
+            ]
+            clipped = clipped + (made[0] - made[1])
+            yield "nonlinearity", clipped
+        yield "noise and quantization", self.run.voltage
 
     def _at_the_looks(self) -> tuple[Real, Real]:
         """Return pin and held voltage at all looks; the latter empty without an input network."""
@@ -158,7 +197,9 @@ class Stations:
         """Return the instants at which firmware believes that the codes were taken, shape (K,)."""
         adc = self.adc.model_copy(update={"rate_error": 0.0})
         newest = adc.last_look(0) + (adc.last_look(1) - adc.last_look(0)) * np.arange(self.count)
-        return adc.pattern.at(newest.astype(np.int64))
+        instants = adc.pattern.at(newest.astype(np.int64))
+        # The rhythm of a scan is in true time; its clock counts so much faster or slower.
+        return instants * self.adc.tempo if isinstance(self.adc, PacedAdc) else instants
 
     def _noise(self, pin: Real, held: Real) -> Real:
         """Return the noise of circuit and sampling capacitor at all looks, as in the run [V]."""

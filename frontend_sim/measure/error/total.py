@@ -16,6 +16,8 @@ from frontend_sim.measure.arrays import Real
 from frontend_sim.measure.error.ideal import Ideal
 from frontend_sim.measure.error.part import Part
 from frontend_sim.measure.error.stations import Stations
+from frontend_sim.scenario.channel_scenario import ChannelScenario
+from frontend_sim.scenario.model import Scenario
 from frontend_sim.simulation import Simulation
 
 if TYPE_CHECKING:
@@ -27,7 +29,7 @@ BEYOND = "beyond half the rate"
 ORDER = (
     "timing", "gain", "offset", BEYOND, "settling", "aliasing", "channel change",
     "nonlinearity",
-    "acquisition", "noise", "clipping", "quantization",
+    "acquisition", "noise", "clipping", "quantization", "noise and quantization",
 )  # fmt: skip
 """Causes in the order of the signal path."""
 
@@ -118,6 +120,7 @@ def total_error(
     * acquisition: what the converter's input network has not settled to
     * noise: of the circuit, of the converter, of its reference
     * clipping: what the range cuts off; quantization: rounding, with dither and averaging
+    * noise and quantization: both at once, of a channel of a scan whose converter draws noise
 
     Parameters
     ----------
@@ -132,8 +135,10 @@ def total_error(
     Raises
     ------
     MeasureError
-        If the chain has no gain at dc and none is given, or the run is empty or too long.
+        If the chain has no gain at dc and none is given, the run is empty or too long, or codes of
+        several looks come from a scan that keeps the pin between them to itself.
     """
+    refuse_looks_of_a_scan(run.scenario)
     if len(run.time) == 0:
         raise MeasureError("the run has no conversion; lengthen simulation.duration")
     simulation = prepared or Simulation(run.scenario)
@@ -155,3 +160,24 @@ def total_error(
     return TotalError(
         run.time, run.voltage - start, ideal, run.scenario.adc.lsb, parts, uncertainty
     )
+
+
+def refuse_looks_of_a_scan(scenario: Scenario) -> None:
+    """Refuse averages of a scan whose pin, or capacitor, other channels have a part in.
+
+    A run keeps it at the last look of each code alone, and a channel by itself cannot tell what it
+    was at the others.
+
+    Raises
+    ------
+    MeasureError
+        If it is such a channel.
+    """
+    if not isinstance(scenario, ChannelScenario) or scenario.adc.looks == 1:
+        return
+    if len(scenario.chain) > scenario.origin.stages or scenario.adc.input is not None:
+        raise MeasureError(
+            "each code is an average over several looks, and what other channels leave at them is "
+            "kept for the last one alone; take adc.averaging out, or give the channel stages of "
+            "its own"
+        )

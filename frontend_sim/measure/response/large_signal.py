@@ -57,12 +57,14 @@ class LargeSignal:
     rise, fall : from a step that takes the pin from one end of the range to the other until it
         stays within half an LSB; None where it was not found [s]
     reason : why it was not found, else ""
+    held : whether a rail ends the step before the range does
     """
 
     stages: tuple[FullPower, ...]
     rise: float | None
     fall: float | None
     reason: str
+    held: bool = False
 
     @classmethod
     def of(
@@ -96,10 +98,10 @@ class LargeSignal:
             fall = _settled(scenario, high, low, span)
         except FrontendSimError as error:
             return cls(powers, None, None, str(error))
+        text, held = "", bool(level.low_held or level.high_held)
         if rise is None or fall is None:
             text = f"it does not stay within half an LSB within {span * 2.0**DOUBLINGS:.3g} s"
-            return cls(powers, rise, fall, text)
-        return cls(powers, rise, fall, "")
+        return cls(powers, rise, fall, text, held)
 
 
 def _full_powers(

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Sequence
+from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
 from typing import Self
 
@@ -13,6 +13,9 @@ from frontend_sim.analog.chain import Chain
 from frontend_sim.analog.stages.base import Stage
 from frontend_sim.analog.stages.curved_sensor import CurvedSensor
 from frontend_sim.converter import AnyAdc
+
+NEAR = 1e-9
+"""A level that lies beyond a rail by this share of itself is at the rail."""
 
 
 @dataclass(frozen=True)
@@ -29,6 +32,7 @@ class PinLevel:
         move it to either side [V]
     at_low, at_high : stimulus, at rest, for which the pin reaches ``low`` and ``high`` of the
         converter; None where none does, or a constant does not reach the pin [SI unit]
+    low_held, high_held : name of the stage whose rail holds the pin back from there, else ""
     """
 
     zero: float
@@ -37,6 +41,8 @@ class PinLevel:
     spread: float
     at_low: float | None
     at_high: float | None
+    low_held: str = ""
+    high_held: str = ""
 
     @classmethod
     def of(
@@ -52,8 +58,9 @@ class PinLevel:
         way = _Way(tuple(stages), tuple(_gains(chain)), tuple(p.offset for p in chain.sections))
         offset = way.pin(zero)
         lsb = None if offset is None else offset / adc.lsb
-        ends = (way.stimulus(level) for level in (adc.low, adc.high))
-        return cls(zero, offset, lsb, way.spread(temperature), *ends)
+        low, high = way.stimulus(adc.low), way.stimulus(adc.high)
+        held = ("" if end is None else way.held(end) for end in (low, high))
+        return cls(zero, offset, lsb, way.spread(temperature), low, high, *held)
 
 
 @dataclass(frozen=True)
@@ -67,17 +74,33 @@ class _Way:
     def pin(self, stimulus: float) -> float | None:
         """Return the pin for a stimulus at rest [V]; None where a sensor does not reach so far."""
         level = stimulus
+        for level in self.levels(stimulus):
+            if not math.isfinite(level):
+                return None
+        return level
+
+    def levels(self, stimulus: float) -> Iterator[float]:
+        """Yield what every stage gives for a stimulus at rest, up to a nan where one gives none."""
+        level = stimulus
         for stage, gain, offset in zip(self.stages, self.gains, self.offsets, strict=True):
             if isinstance(stage, CurvedSensor):
                 low, high = stage.ends()
-                if not low <= level <= high:
-                    return None
-                level = float(stage.output(np.array(level)))
+                within = low <= level <= high
+                level = float(stage.output(np.array(level))) if within else math.nan
             elif level == 0.0:
                 level = offset
             else:
                 level = gain * level + offset
-        return level if math.isfinite(level) else None
+            yield level
+
+    def held(self, stimulus: float) -> str:
+        """Return the first stage whose rails lie before what a stimulus at rest asks, else ""."""
+        for number, level in enumerate(self.levels(stimulus), start=1):
+            limits = self.stages[number - 1].limits()
+            near = NEAR * abs(level)
+            if limits is not None and not limits.low - near <= level <= limits.high + near:
+                return self.stages[number - 1].label(number)
+        return ""
 
     def stimulus(self, level: float) -> float | None:
         """Return the stimulus at rest that takes the pin to a level [V]; None if none does."""

@@ -17,6 +17,8 @@ Real = NDArray[np.float64]
 MOST_EXHAUSTIVE = 8
 """Up to so many channels all orders are tried."""
 
+SOLVED = 24
+"""Of all orders so many, the best by the estimate, are solved for: every one of five channels."""
 
 WORTH = 0.01
 """An order that is better by a smaller share than this is not worth a change."""
@@ -44,10 +46,11 @@ def best_order(scan: ScanScenario, apart: Real) -> OrderFound | None:
     """Return the order in which the largest error from crosstalk is least.
 
     What a channel leaves in another depends on how many visits lie between, and on the victim; so
-    that is taken from the fixed point in the scan's own order, orders are compared by it, and the
-    fixed point of the best one is then solved for. Up to eight channels all orders are compared,
-    beyond that neighbours are exchanged (pairs swapped, stretches turned round) for as long as it
-    helps, from the order on that goes to the nearest level next.
+    that is taken from the fixed point in the scan's own order, and orders are compared by it. This
+    is exact behind shared stages; a sampling capacitor's memory also depends on the sources between,
+    so the best few orders are then solved for, each by itself. Up to eight channels all orders are
+    compared, beyond that neighbours are exchanged (pairs swapped, stretches turned round) for as
+    long as it helps, from the order on that goes to the nearest level next.
 
     Parameters
     ----------
@@ -71,11 +74,22 @@ def best_order(scan: ScanScenario, apart: Real) -> OrderFound | None:
     )
     costs = _costs(orders, share, apart)
     # Of two orders with the same largest error the one with the smaller sum; then the first.
-    best = orders[np.lexsort((costs[:, 1], np.round(costs[:, 0], 12)))[0]]
-    before, after = _error(found, apart), _error(crosstalk(scan, best.tolist()), apart)
+    ranked = np.lexsort((costs[:, 1], np.round(costs[:, 0], 12)))
+    solved = SOLVED if exhaustive and not scan.scan.chain else 1
+    best, after = _solved(scan, orders[ranked[:solved]], apart)
+    before = _error(found, apart)
     if after > before * (1.0 - WORTH):
         best, after = np.array(now), before
     return OrderFound(tuple(scan.names[i] for i in best), after, before, exhaustive)
+
+
+def _solved(
+    scan: ScanScenario, orders: NDArray[np.int64], apart: Real
+) -> tuple[NDArray[np.int64], float]:
+    """Return the best of some orders, each solved for by itself, and its error [LSB]."""
+    errors = [_error(crosstalk(scan, order.tolist()), apart) for order in orders]
+    least = int(np.argmin(np.round(errors, 12)))
+    return orders[least], errors[least]
 
 
 def _error(found: Crosstalk, apart: Real) -> float:

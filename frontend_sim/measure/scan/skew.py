@@ -14,7 +14,8 @@ class Skew:
     Parameters
     ----------
     channel : name
-    time : from the first kept code of a scan to the channel's own, by the converter's clock [s]
+    time : from the first kept code of a scan to the channel's own, in true time [s]; a record's
+        attribute ``skew`` is the same by the converter's clock, without its rate error
     frequency : at which the angle is told, None where none is known [Hz]
     """
 

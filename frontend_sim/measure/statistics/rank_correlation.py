@@ -37,7 +37,9 @@ class RankCorrelation:
         return self.coefficient**2
 
 
-def rank_correlations(parameters: Mapping[str, Real], measure: Real) -> tuple[RankCorrelation, ...]:
+def rank_correlations(
+    parameters: Mapping[str, Real], measure: Real, independent: int | None = None
+) -> tuple[RankCorrelation, ...]:
     """Return the correlation of a measure with each parameter, the strongest first.
 
     Spearman's coefficient is the correlation of the ranks, equal values at their average rank:
@@ -51,11 +53,13 @@ def rank_correlations(parameters: Mapping[str, Real], measure: Real) -> tuple[Ra
     ----------
     parameters : name -> value in each run, shape (N,); what does not vary is left out
     measure : value in each run, shape (N,); runs in which one of the two is NaN do not count
+    independent : how many of the runs are independent of each other, where they are fewer than N
     """
     found = [
         entry
         for name, values in parameters.items()
-        if (entry := _correlation(name, np.asarray(values), np.asarray(measure))) is not None
+        if (entry := _correlation(name, np.asarray(values), np.asarray(measure), independent))
+        is not None
     ]
     found.sort(key=lambda entry: entry.probability)
     corrected, worst = [], 0.0
@@ -65,13 +69,16 @@ def rank_correlations(parameters: Mapping[str, Real], measure: Real) -> tuple[Ra
     return tuple(sorted(corrected, key=lambda entry: -abs(entry.coefficient)))
 
 
-def _correlation(name: str, values: Real, measure: Real) -> RankCorrelation | None:
+def _correlation(
+    name: str, values: Real, measure: Real, independent: int | None
+) -> RankCorrelation | None:
     from scipy.special import stdtr
     from scipy.stats import rankdata
 
     there = ~(np.isnan(values) | np.isnan(measure))
     count = int(np.count_nonzero(there))
-    if count < FEWEST:
+    sure = count if independent is None else min(count, independent)
+    if sure < FEWEST:
         return None
     first, second = values[there], measure[there]
     if np.all(first == first[0]) or np.all(second == second[0]):
@@ -82,5 +89,5 @@ def _correlation(name: str, values: Real, measure: Real) -> RankCorrelation | No
     rest = (1.0 - coefficient) * (1.0 + coefficient)
     if rest <= 0.0:
         return RankCorrelation(name, coefficient, 0.0, count)
-    student = abs(coefficient) * np.sqrt((count - 2) / rest)
-    return RankCorrelation(name, coefficient, float(2.0 * stdtr(count - 2, -student)), count)
+    student = abs(coefficient) * np.sqrt((sure - 2) / rest)
+    return RankCorrelation(name, coefficient, float(2.0 * stdtr(sure - 2, -student)), count)

@@ -98,9 +98,9 @@ def _next_thing(summary: NightSummary) -> str:
 
 def _facts(summary: NightSummary) -> Iterator[tuple[str, str]]:
     yield "runs", f"{summary.runs} of {summary.table.planned}"
-    drawn = int(np.count_nonzero(summary.population.drawn))
     if summary.rate is not None:
-        yield f"yield of {drawn} draws, 95 %", share(summary.rate)
+        which = f" of {summary.group}, the worst group" if summary.group else ""
+        yield f"yield of {summary.rate.total} draws{which}, 95 %", share(summary.rate)
     yield "corners", f"{int(np.count_nonzero(summary.population.corner))}"
     yield "checks", f"{len(summary.checks)}"
     yield "computing time", _duration(float(np.sum(summary.table.numbers("seconds"))))
@@ -138,8 +138,13 @@ def _check_row(check: CheckSummary) -> tuple[Cell, ...]:
         Cell(tone, tone),
         number(f"{check.fails} of {check.runs}"),
         number(shown(margin, check)),
-        number("" if check.rate is None else share(check.rate)),
+        number("" if check.rate is None else f"{share(check.rate)}{_of_group(check)}"),
     )
+
+
+def _of_group(check: CheckSummary) -> str:
+    """Return which draws numbers are of, on a line of its own; "" where there is but one group."""
+    return f"\n{check.group}" if check.group else ""
 
 
 def _failing_table(summary: NightSummary) -> PageTable | None:
@@ -212,7 +217,7 @@ def _distributions(summary: NightSummary) -> Iterator[Section | None]:
     head = ("check", "5 %", "median", "95 %", "95/95 limit")
     rows = tuple(
         (
-            Cell(check.name),
+            Cell(f"{check.name}{_of_group(check)}"),
             *(number(_percentile(check, place, drawn)) for place in range(3)),
             number(_limit(check)),
         )
@@ -223,6 +228,12 @@ def _distributions(summary: NightSummary) -> Iterator[Section | None]:
         "limit is the one that 95 % of all that could be drawn keep, with 95 % confidence and "
         "whatever the distribution (Wilks 1941)."
     )
+    if any(check.group for check in known):
+        note += (
+            " Draw n has the same parts whatever is varied besides, so that only the draws of one "
+            "combination are a sample: numbers are those of the combination below the name, of "
+            "which the fewest hold."
+        )
     table = PageTable(f"Values over the {which}", head, rows, note if drawn else "")
     figures = tuple(_figure(summary, check) for check in known)
     yield Section("distributions", "Distributions and margins", (), (table,), figures)

@@ -173,6 +173,15 @@ def test_recovery_that_cannot_be_told() -> None:
         refuse_impossible(made(check, stimulus=warm, chain=[rtd]))
 
 
+def test_recovery_of_an_overload_that_never_ends() -> None:
+    """A sine that is cut off at the last conversion too has not recovered, and does not hold."""
+    check = {"kind": "recovery", "within": "1 LSB", "at_most": "2 ms"}
+    loud = {"kind": "sine", "amplitude": 3, "frequency": 97, "offset": 1.6, "phase": "20 deg"}
+    (found,) = verdicts(check, stimulus=loud, chain=[], simulation={"duration": "2 ms"})
+    assert (found.verdict, found.value) == ("fails", None)
+    assert "has not recovered when the run ends" in found.method
+
+
 def test_settling_after_power_up() -> None:
     """Power that comes at t = 0 is an event there: half an LSB in ln 2^(N+1) time constants.
 

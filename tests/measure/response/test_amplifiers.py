@@ -213,6 +213,15 @@ def test_why_there_is_no_large_step():
     assert "does not take the pin" in found.reason
 
 
+def test_rails_that_come_before_the_range_are_named():
+    """A stimulus that would take the pin beyond a rail is told with the rail that is in the way."""
+    rails = AMPLIFIER | {"output_low": "0.5 V", "output_high": "100 V"}
+    found = inspected(rails)
+    assert found.level.low_held == "1 noninverting-amplifier"
+    assert found.level.high_held == ""
+    assert inspected(AMPLIFIER).level.low_held == ""
+
+
 def test_no_slew_rate_no_large_signal():
     """A chain without a slew rate is told by its small signals."""
     assert inspected(AMPLIFIER).large_signal is None
