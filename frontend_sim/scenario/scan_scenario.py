@@ -22,7 +22,6 @@ from frontend_sim.scenario.scan import Channel, Scan
 from frontend_sim.scenario.scan_rules import Fault, channel_faults, scan_faults
 from frontend_sim.values import Value
 
-
 NO_END = (
     "missing; none of the channels' stimuli ends by itself, so say how long to run, for instance "
     'duration = "10 ms"'

@@ -47,8 +47,8 @@ def best_order(scan: ScanScenario, apart: Real) -> OrderFound | None:
 
     What a channel leaves in another depends on how many visits lie between, and on the victim; so
     that is taken from the fixed point in the scan's own order, and orders are compared by it. This
-    is exact behind shared stages; a sampling capacitor's memory also depends on the sources between,
-    so the best few orders are then solved for, each by itself. Up to eight channels all orders are
+    is exact behind shared stages; the memory of a sampling capacitor depends on the sources between
+    as well, so the best few orders are then solved for. Up to eight channels all orders are
     compared, beyond that neighbours are exchanged (pairs swapped, stretches turned round) for as
     long as it helps, from the order on that goes to the nearest level next.
 
