@@ -75,7 +75,7 @@ def _told(value: float, unit: str) -> str:
     if not math.isfinite(value):
         return ""
     # A mean over runs of what is counted is no whole number.
-    counted = unit in ("conversions", "ticks")
+    counted = unit in ("conversions", "ticks") and not value.is_integer()
     return f"{plain(value)} {unit}" if counted else quantity(value, unit)
 
 

@@ -74,8 +74,10 @@ def test_dask_gives_the_same_records(reference: tuple[Path, Replayed], tmp_path:
     same_records(whole, replay_set(file, tmp_path / "night", on="dask", workers=2))
 
 
+@pytest.mark.filterwarnings("default")
+@pytest.mark.parametrize("on", ["processes", "dask"])
 def test_a_killed_worker_is_replaced_and_loses_nothing(
-    reference: tuple[Path, Replayed], tmp_path: Path
+    reference: tuple[Path, Replayed], tmp_path: Path, on: str
 ) -> None:
     """SIGKILL to a worker in the middle: all runs are done, with the same digest."""
     file, whole = reference
@@ -89,7 +91,7 @@ def test_a_killed_worker_is_replaced_and_loses_nothing(
             os.kill(pid, signal.SIGKILL)
             killed.append(pid)
 
-    done = replay_set(file, tmp_path / "night", workers=2, report=kill_one)
+    done = replay_set(file, tmp_path / "night", on=on, workers=2, report=kill_one)
     assert killed
     assert done.complete
     assert (done.ran, done.digest) == (RUNS, whole.digest)
