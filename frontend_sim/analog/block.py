@@ -64,6 +64,16 @@ class Block:
             return _eigenvalues_of_two(self.a)
         return np.asarray(np.linalg.eigvals(self.a), dtype=np.complex128)
 
+    @cached_property
+    def at_rest(self) -> Real:
+        """States after the input has rested at one for ever, shape (n,); no pole at the origin.
+
+        Each row of the equations is taken less the size of its own rate, so that no pivot mixes
+        slow and fast ones.
+        """
+        size = np.max(np.abs(self.a), axis=1)
+        return np.asarray(np.linalg.solve(self.a / size[:, None], -self.b / size))
+
     def response(self, s: Complex) -> Complex:
         """Return the transfer function c (s - a)^-1 b + d at complex frequencies s [rad/s].
 

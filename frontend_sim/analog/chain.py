@@ -196,10 +196,8 @@ def _rest_of(block: Block, level: float, name: str) -> Real:
     if block.order == 0:
         return np.empty(0)
     if not np.any(block.poles == 0.0):
-        # Solved for a level of one, so that a high pass passes on exactly nothing of any level;
-        # each row less the size of its own rate, so that no pivot mixes slow and fast ones.
-        size = np.max(np.abs(block.a), axis=1)
-        return np.asarray(level * np.linalg.solve(block.a / size[:, None], -block.b / size))
+        # From a level of one, so that a high pass passes on exactly nothing of any level.
+        return level * block.at_rest
     if level == 0.0:
         return np.zeros(block.order)
     raise ModelError(

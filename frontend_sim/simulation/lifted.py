@@ -94,6 +94,11 @@ class Lifted:
             tuple(np.any(outputs.c, axis=1).tolist()),
         )
 
+    @property
+    def row(self) -> int:
+        """Outputs in one row."""
+        return int(self.impulse.shape[2])
+
     def advance(self, x: Real, points: Real, y: Real) -> None:
         """Fill in the outputs, and advance the state in place.
 
@@ -103,7 +108,7 @@ class Lifted:
         points : K stride + 1 of them, K a multiple of R
         y : outputs at every stride-th point, the first one a stride after points[0], shape (p, K)
         """
-        length, row = self.impulse.shape[1:]
+        length, row = self.impulse.shape[1], self.row
         rows = points[:-1].reshape(-1, length)
         states = np.empty((len(rows) + 1, len(x)))
         states[0] = x

@@ -101,25 +101,26 @@ class UniformPath:
     ) -> tuple[State, Real]:
         """Advance through instants, see ``Path``.
 
-        Where instant k is point k · stride for certain, whole tiles need not look for their points.
+        Where instant k is point k · stride for certain, whole tiles need not look for their points,
+        nor what is left of the last one, up to a row.
         """
-        source, whole = drive or self.drive, 0
+        source, sure = drive or self.drive, 0
         if drive is not None and isinstance(self.drive, Resampled):
             source = Resampled(drive, self.drive.times)
         if self.on_points and number % self.tile == 0 and (number > 0 or self.settled):
-            whole = len(instants) // self.tile * self.tile
-        if whole == 0:
+            sure = len(instants) // self.lifted.row * self.lifted.row
+        if sure == 0:
             return self._located(state, source, number, instants)
         x, y = state.x.copy(), np.empty((len(self.outputs.d), len(instants)))
         if number == 0:  # settled, so the state is the same one stride before
             x = self.initial - self.model.stop * source.initial
-        for done in range(0, whole, self.tile):
-            node = (number + done - 1) * self.stride
-            points = source.points(node, node + self.tile * self.stride + 1)
-            self.lifted.advance(x, points, y[:, done : done + self.tile])
-        state = State(x, (number + whole - 1) * self.stride)
-        if whole < len(instants):
-            state, y[:, whole:] = self._located(state, source, number + whole, instants[whole:])
+        for done in range(0, sure, self.tile):
+            upto, node = min(done + self.tile, sure), (number + done - 1) * self.stride
+            points = source.points(node, node + (upto - done) * self.stride + 1)
+            self.lifted.advance(x, points, y[:, done:upto])
+        state = State(x, (number + sure - 1) * self.stride)
+        if sure < len(instants):
+            state, y[:, sure:] = self._located(state, source, number + sure, instants[sure:])
         return state, y
 
     def _located(

@@ -17,8 +17,12 @@ from collections.abc import Callable
 from dataclasses import dataclass
 from pathlib import Path
 from statistics import median
+from typing import TYPE_CHECKING
 
 import numpy as np
+
+if TYPE_CHECKING:
+    from frontend_sim.scenario.model import Scenario
 
 sys.path.insert(0, str(Path(__file__).resolve().parents[1]))
 
@@ -112,18 +116,17 @@ def chain_rows(points: int, runs: int) -> list[Row]:
     ]
 
 
-def timed_run(
+def timed_scenario(
     stimulus: dict[str, object], rate: float, count: int, **simulation: object
-) -> Callable[[], None]:
-    """Return a run of an eighth-order chain behind a noisy amplifier, block by block."""
+) -> Scenario:
+    """Return an eighth-order chain behind a noisy amplifier."""
     from frontend_sim.scenario.model import Scenario
-    from frontend_sim.simulation import Simulation
 
     amplifier = {
         "kind": "noninverting-amplifier", "gain": 2, "gain_bandwidth": "1 MHz",
         "voltage_noise": "10 nV/sqrt(Hz)",
     }  # fmt: skip
-    scenario = Scenario.model_validate(
+    return Scenario.model_validate(
         {
             "stimulus": stimulus,
             "chain": [amplifier, {"kind": "butterworth", "order": 8, "corner": CORNER}],
@@ -131,6 +134,15 @@ def timed_run(
             "simulation": {"duration": count / rate, **simulation},
         }
     )
+
+
+def timed_run(
+    stimulus: dict[str, object], rate: float, count: int, **simulation: object
+) -> Callable[[], None]:
+    """Return a run of ``timed_scenario``, block by block."""
+    from frontend_sim.simulation import Simulation
+
+    scenario = timed_scenario(stimulus, rate, count, **simulation)
 
     def work() -> None:
         for _ in Simulation(scenario).blocks():
@@ -151,9 +163,20 @@ def analytic_rows(count: int, runs: int) -> list[Row]:
     twice = paired(run(997.0, count), run(997.0, 2 * count), runs)
     return [
         Row("a sine of 10 000 times the frequency, time", fast, 1.5, False),
-        Row("a sine of 200 periods between conversions against 5, time", faster, 8.0, False),
+        # Beyond 1000 radians between conversions a row has one instant, see ``row_length``.
+        Row("a sine of 200 periods between conversions against 5, time", faster, 15.0, False),
         Row("twice the conversions of a sine, time", twice, 2.5, False),
     ]
+
+
+def numbers(count: int) -> Callable[[], object]:
+    """Return drawing as many normal numbers as the noise of ``timed_run`` needs."""
+    from frontend_sim.simulation import Simulation
+
+    scenario = timed_scenario({"kind": "step", "after": 1.0}, CONVERSION_RATE, count)
+    states = len(Simulation(scenario).chain.noise_model(0.1 * CONVERSION_RATE / count).a)
+    generator = np.random.Generator(np.random.Philox(0))
+    return lambda: generator.standard_normal(states * count)
 
 
 def noise_rows(count: int, runs: int) -> list[Row]:
@@ -179,11 +202,9 @@ def noise_rows(count: int, runs: int) -> list[Row]:
     few = added(rate, waveform_rate=10.0 * rate, waveform_points=["stimulus"])
     many = added(rate, waveform_rate=100.0 * rate, waveform_points=["stimulus"])
     alone, slow = added(rate), added(rate / 100.0)
-    whole = paired(
-        timed_run(sine, rate, count, noise=False), timed_run(sine, rate, count, noise=True), runs
-    )
+    drawn = ratio(lambda: seconds(numbers(count)), alone)
     return [
-        Row("a run with noise, times one without", whole, 12.0, False),
+        Row("noise of a run, times drawing its random numbers", drawn, 6.0, False),
         Row("cost of noise, waveform ten times as dense", ratio(few, many), 1.5, False),
         Row("cost of noise, interval a hundred times as long", ratio(alone, slow), 1.5, False),
     ]

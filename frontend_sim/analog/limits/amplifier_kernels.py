@@ -203,7 +203,7 @@ def loop(
             for r in range(n):
                 after[r] = x[r]
             passed = through(
-                mode, after, u, rise, count, unit, most if holds and not jumped else first, first,
+                dims, mode, after, u, rise, count, unit, most if holds and not jumped else first, first,
                 free, held, lasting, levels, age, asked, target, static,
                 up, down, low, high, s, time, piece, since,
             )  # fmt: skip
@@ -249,7 +249,7 @@ def loop(
 
 @compiled()
 def through(
-    mode: int, x: Any, u: float, rise: float, count: int, unit: float, level: int, first: int,
+    dims: Any, mode: int, x: Any, u: float, rise: float, count: int, unit: float, level: int, first: int,
     free: Any, held: Any, lasting: Any, levels: Any, age: Any,
     asked: Any, target: Any, static: bool,
     up: float, down: float, low: float, high: float,
@@ -262,7 +262,7 @@ def through(
     still rings: none is missed between the ends of the piece. The end of a mode lies in the first
     step behind which it does not hold any more; there it is found by bisection.
     """
-    n = len(x)
+    n = len(dims)
     done, events, taken, halving = 0, 0, 0, False
     z, out, failed = np.zeros(n + 3), np.empty(n + 3), np.empty(n + 3)
     failed_gap, failed_slope = 0.0, 0.0
@@ -272,15 +272,16 @@ def through(
         while done + (1 << level) > count:
             level -= 1
             taken = 0
-        size = n + 2 if mode == FREE else n + 3
         table = free if mode == FREE else held
         z[n], z[n + 1] = u + rise * (done * unit), rise
         z[n + 2] = up if mode == UP else -down if mode == DOWN else 0.0
         step = 1 << level
         for r in range(n):
             total = z[r]
-            for k in range(size):
+            for k in range(n + 2):
                 total += table[level, r, k] * z[k]
+            if mode != FREE:
+                total += table[level, r, n + 2] * z[n + 2]
             out[r] = total
         there = u + rise * ((done + step) * unit)
         slope, goal = asked[n] * there + asked[n + 1] * rise, target[n] * there
