@@ -203,7 +203,8 @@ def loop(
             for r in range(n):
                 after[r] = x[r]
             passed = through(
-                dims, mode, after, u, rise, count, unit, most if holds and not jumped else first, first,
+                dims, mode, after, u, rise, count, unit,
+                most if holds and not jumped else first, first,
                 free, held, lasting, levels, age, asked, target, static,
                 up, down, low, high, s, time, piece, since,
             )  # fmt: skip
@@ -249,7 +250,8 @@ def loop(
 
 @compiled()
 def through(
-    dims: Any, mode: int, x: Any, u: float, rise: float, count: int, unit: float, level: int, first: int,
+    dims: Any, mode: int, x: Any, u: float, rise: float, count: int, unit: float,
+    level: int, first: int,
     free: Any, held: Any, lasting: Any, levels: Any, age: Any,
     asked: Any, target: Any, static: bool,
     up: float, down: float, low: float, high: float,
