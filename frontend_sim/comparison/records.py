@@ -68,8 +68,9 @@ class RecordComparison:
     def alarms(self) -> tuple[str, ...]:
         """What differs by more than noise and tolerance, in short."""
         told = [f"{row.name}: {row.finding}" for row in self.series if row.finding in DIFFERENT]
-        found = (row for row in self.results if row.finding in DIFFERENT)
-        return (*told, *(f"{row.name}: {row.flip or row.finding}" for row in found))
+        found = [row for row in self.results if row.finding in DIFFERENT]
+        told += [f"{row.name}: {row.flip or row.finding}" for row in found]
+        return (*told, *(f"{row.name}: added, fails" for row in self.results if row.newly_fails))
 
     @property
     def differs(self) -> bool:

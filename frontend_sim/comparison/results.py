@@ -48,6 +48,11 @@ class ResultDifference:
         return f"now {self.second.verdict}"
 
     @property
+    def newly_fails(self) -> bool:
+        """Whether a check that the first run does not have fails in the second."""
+        return self.first is None and self.second is not None and self.second.verdict == "fails"
+
+    @property
     def margin_change(self) -> float | None:
         """By how much the margin grew, in ``unit``; None where there is none."""
         one, other = self.first, self.second

@@ -164,10 +164,14 @@ def test_verdicts_that_flip_are_told(tmp_path: Path) -> None:
 
 
 def test_checks_that_come_and_go(tmp_path: Path) -> None:
-    """A check that is gone counts as a difference, one that is new does not."""
+    """A check that is gone counts as a difference, one that is new if it fails."""
     fewer = made(check=TABLES["check"][:1])
     assert compared(tmp_path, made(), fewer).alarms == ("noise: removed",)
     assert compared(tmp_path, fewer, made()).alarms == ()
+    failing = varied(**{"check[1].at_least": "1.3 V"})
+    assert compared(tmp_path, made(check=TABLES["check"][1:]), failing).alarms == (
+        "headroom: added, fails",
+    )
 
 
 def test_other_rates_are_compared_at_common_instants(tmp_path: Path) -> None:
