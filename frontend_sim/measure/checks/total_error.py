@@ -21,7 +21,7 @@ CURES = {
     "aliasing": "lower the corner of the filter before the converter, or raise adc.rate",
     "channel change": "wait longer after a change of channel, or give channels stages of their own",
     "nonlinearity": "keep the signal away from limits, take a more linear converter, or correct "
-    "the curve of the sensor in firmware",
+    'the curve of the sensor in firmware (reads = "curve")',
     "acquisition": "lower the source's resistance, lengthen the acquisition, or buffer the pin",
     "noise": "take quieter parts, lower the bandwidth, or average",
     "clipping": "bring the signal into the range",
@@ -56,11 +56,16 @@ def total_error(check: TotalErrorCheck, subject: Subject) -> Answer:
         unit,
         limit,
         "at most",
-        f"codes read back, less {found.ideal.gain:.6g} times the quantity and "
-        f"{found.ideal.offset:.6g} V",
+        _method(found.ideal),
         lambda: _advice(found, value / limit),
         tuple(_beside(found)),
     )
+
+
+def _method(ideal: Ideal) -> str:
+    if ideal.curve is not None:
+        return "codes read back, less what the sensor's nominal curve gives for the quantity"
+    return f"codes read back, less {ideal.gain:.6g} times the quantity and {ideal.offset:.6g} V"
 
 
 def total_possible(check: TotalErrorCheck, subject: Subject) -> None:
@@ -72,12 +77,12 @@ def total_possible(check: TotalErrorCheck, subject: Subject) -> None:
         As ``Ideal.of`` and ``refuse_looks_of_a_scan`` do.
     """
     refuse_looks_of_a_scan(subject.scenario)
-    Ideal.of(subject.scenario, check.gain, check.offset)
+    Ideal.of(subject.scenario, check.gain, check.offset, check.reads == "curve")
 
 
 def total_of(check: TotalErrorCheck, subject: Subject) -> TotalError:
     """Return the total error of a run; once for all checks that ask alike."""
-    key = ("total error", check.gain, check.offset, check.band_limited)
+    key = ("total error", check.gain, check.offset, check.band_limited, check.reads)
     if key not in subject.kept:
         subject.kept[key] = measured(
             subject.finished,
@@ -85,6 +90,7 @@ def total_of(check: TotalErrorCheck, subject: Subject) -> TotalError:
             check.offset,
             band_limited=check.band_limited,
             prepared=subject.simulation,
+            curve=check.reads == "curve",
         )
     found: TotalError = subject.kept[key]
     return found

@@ -88,6 +88,10 @@ class Stations:
             total = total + drive.values(instants)
         return total
 
+    def ideal_codes(self) -> Real:
+        """Return what the codes should stand for, shape (K,) [V]."""
+        return self.ideal.volts(self.quantity(self._nominal()))
+
     def before_the_pin(self) -> Iterator[Station]:
         """Return the stations from the quantity to the pin."""
         ideal, chain, time = self.ideal, self.simulation.chain, self.run.time

@@ -42,7 +42,7 @@ class TotalError:
     ----------
     time : true instants of the codes, shape (K,) [s]
     volts : the error, shape (K,) [V]
-    ideal : the line that firmware reads by
+    ideal : the line, or curve, that firmware reads by
     lsb : width of a code [V]
     parts : causes whose waveforms add up to the error
     uncertainty : how far the split into settling and aliasing is known, 0 where it is exact [V]
@@ -102,6 +102,7 @@ def total_error(
     edges: Edges = "reflected",
     band_limited: bool = False,
     prepared: Simulation | None = None,
+    curve: bool = False,
 ) -> TotalError:
     """Return the error of the codes of a run against the quantity that arrived.
 
@@ -131,30 +132,36 @@ def total_error(
     band_limited : whether the codes are to stand for the stimulus under a perfect band limit at
         half the rate: what lies beyond is then interference, and keeping it out is no error
     prepared : the simulation of the run, where there is one already
+    curve : whether firmware reads by the sensor's own nominal curve rather than by the line; what
+        it bends away from the line is then no error, and nonlinearity is what is left beside it
 
     Raises
     ------
     MeasureError
-        If the chain has no gain at dc and none is given, the run is empty or too long, or codes of
-        several looks come from a scan that keeps the pin between them to itself.
+        If the chain has no gain at dc and none is given, no sensor has a curve to read by, the run
+        is empty or too long, or codes of several looks come from a scan that keeps the pin between
+        them to itself.
     """
     refuse_looks_of_a_scan(run.scenario)
     if len(run.time) == 0:
         raise MeasureError("the run has no conversion; lengthen simulation.duration")
     simulation = prepared or Simulation(run.scenario)
-    ideal = Ideal.of(run.scenario, gain, offset)
+    ideal = Ideal.of(run.scenario, gain, offset, curve)
     aliasing = Aliasing.of(run.scenario, simulation.chain, edges)
     stations = Stations(run, simulation, ideal, aliasing)
     found: dict[str, Real] = {}
-    start = last = np.zeros(0)
+    start = last = line = np.zeros(0)
     for name, now in (*stations.before_the_pin(), *stations.behind_the_pin()):
         if name:
             found[name] = found[name] + (now - last) if name in found else now - last
         else:
-            start = now
+            start = line = now
         last = now
     if band_limited:
         start = start + found.pop(BEYOND, np.zeros(len(start)))
+    if ideal.curve is not None:
+        bent = stations.ideal_codes() - line
+        start, found["nonlinearity"] = start + bent, found["nonlinearity"] - bent
     parts = tuple(Part(name, found[name]) for name in ORDER if name in found)
     uncertainty = stations.folded.uncertainty
     return TotalError(

@@ -30,11 +30,23 @@ class TotalErrorCheck(CodeCheck):
         description="voltage at the pin that firmware takes for zero; left out, 0 V, or, behind a "
         "sensor, what its nominal parts give",
     )
+    reads: Literal["line", "curve"] = Field(
+        default="line",
+        description="what firmware takes the quantity from: the straight line of gain and offset, "
+        "or the sensor's own nominal curve",
+    )
     band_limited: bool = Field(
         default=False,
         description="whether the codes stand for the stimulus under a perfect band limit at half "
         "the rate, so that what is kept out beyond it is no error",
     )
+
+    @model_validator(mode="after")
+    def _line_or_curve(self) -> Self:
+        given = [key for key in ("gain", "offset") if getattr(self, key) is not None]
+        if self.reads == "curve" and given:
+            raise fault(given[:1], 'belongs to a line; leave it out, or take reads = "line"')
+        return self
 
     @model_validator(mode="after")
     def _some_gain(self) -> Self:

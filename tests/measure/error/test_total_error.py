@@ -177,6 +177,33 @@ def test_the_ideal() -> None:
     assert total_error(run, gain=1.0).ideal.gain == 1.0
 
 
+@pytest.mark.parametrize("name", ["rtd", "thermistor", "thermocouple"])
+def test_a_sensor_read_by_its_curve(name: str) -> None:
+    """What is left of a slow ramp is rounding and lag; tens of LSB of bend are gone."""
+    run = fe.simulate(fe.load_single_scenario(ROOT / "stages" / f"{name}.toml"))
+    line, curve = total_error(run), total_error(run, curve=True)
+    assert line.total.peak > 20.0 * line.lsb
+    assert curve.total.peak < 0.6 * curve.lsb  # half an LSB, and the lag of a filter
+    total = sum(part.volts for part in curve.parts)
+    np.testing.assert_allclose(total, curve.volts, rtol=0.0, atol=1e-14 * line.total.peak)
+    # From outside: the sensor's own function, at the instants of the codes.
+    sensor: Any = run.scenario.chain[0]
+    believed = np.arange(len(run.time)) / run.scenario.adc.rate
+    drive: Any = run.scenario.stimulus.drives((0,))[0]
+    gain = curve.ideal.gain / float(sensor.slope())
+    expected = run.voltage - gain * sensor.output(drive.values(believed))
+    np.testing.assert_allclose(curve.volts, expected, rtol=0.0, atol=1e-9)
+
+
+def test_a_curve_is_refused_where_there_is_none() -> None:
+    """Without a sensor that bends, or with a line besides."""
+    run = fe.simulate(made())
+    with pytest.raises(MeasureError, match="no sensor of the chain has a curve"):
+        total_error(run, curve=True)
+    with pytest.raises(MeasureError, match="exclude each other"):
+        total_error(run, gain=1.0, curve=True)
+
+
 def test_from_an_instant_on() -> None:
     """What comes before counts no more; an instant behind the end is refused."""
     scenario = made(
