@@ -32,6 +32,18 @@ def check_plot_target(path: str | os.PathLike[str], overwrite: bool = False) -> 
         raise OutputError(
             f"{path}: a plot is written as {' or '.join(FORMATS)}; give a name that ends so"
         )
+    return file_target(path, overwrite)
+
+
+def file_target(path: str | os.PathLike[str], overwrite: bool) -> Path:
+    """Return where a file goes, links followed.
+
+    Raises
+    ------
+    OutputError
+        If the directory is not there, the path is no place for a file, or a file is there that
+        must not be replaced.
+    """
     with writing(path):
         target = Path(os.path.realpath(path))
         if target.is_dir():

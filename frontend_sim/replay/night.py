@@ -84,10 +84,10 @@ class Night:
         OutputError
             If the disk is full, or is going to be.
         """
-        todo = self._batches()
+        coming = self._batches()
         waiting: dict[Future[list[Outcome]], Batch] = {}
         while True:
-            while (batch := self._next(todo, len(waiting))) is not None:
+            while (batch := self._next(coming, len(waiting))) is not None:
                 waiting[self._executor.submit(batch)] = batch
             if not waiting:
                 break
@@ -97,7 +97,7 @@ class Night:
             self._tell()
         self._tell()
 
-    def _next(self, todo: Iterator[Batch], waiting: int) -> Batch | None:
+    def _next(self, coming: Iterator[Batch], waiting: int) -> Batch | None:
         """Return what is handed out next, None if nothing is at the moment.
 
         Runs whose worker died go alone, so that it shows which of them did it.
@@ -108,7 +108,7 @@ class Night:
         self._alone = False
         # Before the first run is done, nobody knows whether the disk has room for the others.
         most = 2 * self._executor.workers if self.done else 1
-        return next(todo, None) if waiting < most else None
+        return next(coming, None) if waiting < most else None
 
     def _batches(self) -> Iterator[Batch]:
         jobs: list[Job] = []

@@ -33,12 +33,7 @@ def rise_time(check: RiseTimeCheck, subject: Subject) -> Answer:
     end = first_passage(subject, check.point, rest, check.upper)
     value = end - last_passage(subject, check.point, rest, check.lower, end)
     method = f"{check.lower:.4g} to {check.upper:.4g} of the way; {STEPS}"
-
-    def advice(side: Bound) -> str:
-        limit = check.at_most if side == "at most" else check.at_least
-        return _faster(subject, side, value, limit)
-
-    return nearer(value, check.at_least, check.at_most, "s", method, advice)
+    return _between(check, subject, value, method)
 
 
 def rise_time_possible(check: RiseTimeCheck, subject: Subject) -> Rest:
@@ -57,12 +52,7 @@ def delay(check: DelayCheck, subject: Subject) -> Answer:
     rest = delay_possible(check, subject)
     value = first_passage(subject, check.point, rest, check.share) - rest.since
     method = f"from the event at {words.time(rest.since)} to {check.share:.4g} of the way; {STEPS}"
-
-    def advice(side: Bound) -> str:
-        limit = check.at_most if side == "at most" else check.at_least
-        return _faster(subject, side, value, limit)
-
-    return nearer(value, check.at_least, check.at_most, "s", method, advice)
+    return _between(check, subject, value, method)
 
 
 def delay_possible(check: DelayCheck, subject: Subject) -> Rest:
@@ -110,6 +100,18 @@ def latency(check: LatencyCheck, subject: Subject) -> Answer:
 def latency_possible(check: LatencyCheck, subject: Subject) -> Rest:
     """Refuse what has no latency. Raises MeasureError as ``change_of`` does."""
     return change_of(subject, None, check.after, "a latency")
+
+
+def _between(
+    check: RiseTimeCheck | DelayCheck, subject: Subject, value: float, method: str
+) -> Answer:
+    """Return a time with the limit that it is nearer to, and what brings it there."""
+
+    def advice(side: Bound) -> str:
+        limit = check.at_most if side == "at most" else check.at_least
+        return _faster(subject, side, value, limit)
+
+    return nearer(value, check.at_least, check.at_most, "s", method, advice)
 
 
 def _faster(subject: Subject, side: Bound, value: float, limit: float | None) -> str:

@@ -29,8 +29,7 @@ def quiet_checks(
     moved: set[str] = set()
     for values in scenarios:
         checks = [SimpleNamespace(**{"name": "", **check}) for check in values.get("check", ())]
-        # Labels ask for name and kind alone, which the data has as the values have them.
-        for check, label in zip(checks, labels(checks), strict=True):  # type: ignore[arg-type]
+        for check, label in zip(checks, labels(checks), strict=True):  # type: ignore[arg-type]  # labels ask for name and kind alone
             every.add(label)
             known = EVALUATIONS.get(check.kind)
             columns = frozenset(known.columns) if known is not None else _OF_CODES

@@ -9,8 +9,9 @@ from importlib.resources import files
 from pathlib import Path
 from typing import TYPE_CHECKING
 
-from frontend_sim.archive.target import HOW_TO_REPLACE, new_file, writing
+from frontend_sim.archive.target import new_file, writing
 from frontend_sim.errors import OutputError
+from frontend_sim.present.figure_file import file_target
 from frontend_sim.present.page.content import Page, PageFigure
 
 if TYPE_CHECKING:
@@ -58,20 +59,7 @@ def check_page_target(path: str | os.PathLike[str], overwrite: bool = False) -> 
     """
     if Path(path).suffix.lower() not in SUFFIXES:
         raise OutputError(f"{path}: a page is written as .html; give a name that ends so")
-    with writing(path):
-        target = Path(os.path.realpath(path))
-        if target.is_dir():
-            raise OutputError(f"{path} is a directory; give the name of a file in it")
-        if target.exists() and not target.is_file():
-            raise OutputError(f"{path} is not a regular file; give the name of a new file")
-        if target.exists() and not overwrite:
-            raise OutputError(f"{path} exists; {HOW_TO_REPLACE}")
-        if not target.parent.is_dir():
-            raise OutputError(
-                f"{path}: there is no directory {target.parent}; make it first, or give another "
-                "place"
-            )
-    return target
+    return file_target(path, overwrite)
 
 
 def embedded(figure: Figure, description: str, caption: str) -> PageFigure:
