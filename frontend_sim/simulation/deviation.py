@@ -15,8 +15,11 @@ from frontend_sim.simulation.linear import States
 from frontend_sim.simulation.pieces import Jumps, Pieces, Stretch, pieces_of
 from frontend_sim.simulation.polygon import Polygon
 from frontend_sim.simulation.probe import Probe
-from frontend_sim.simulation.signal import NEAR, Past, Signal
+from frontend_sim.simulation.signal import Past, Signal
 from frontend_sim.stimulus.drive import Drive, Lines
+
+NEAR = 1e-9
+"""An input that bends within this share of a step from a point of the grid bends at the point."""
 
 
 @dataclass(frozen=True)

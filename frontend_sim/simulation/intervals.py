@@ -48,7 +48,8 @@ class IntervalTable:
         table = np.zeros((levels, BASE, *system.shape))
         for level in range(levels):
             table[level, 1] = expm1(system * (unit * float(BASE) ** level))
-            for digit in range(2, BASE):
-                half = digit // 2
-                table[level, digit] = joined(table[level, half], table[level, digit - half])
+        for bit in range(1, BITS):
+            top, half = 1 << bit, table[:, 1 << bit - 1]
+            table[:, top] = joined(half, half)
+            table[:, top + 1 : 2 * top] = joined(table[:, top, None], table[:, 1:top])
         return cls(np.ascontiguousarray(system), unit, table, reach(table[:, :, :states, :states]))

@@ -14,8 +14,8 @@ from frontend_sim.simulation.pieces import Pieces
 from frontend_sim.simulation.polygon import Polygon
 from frontend_sim.stimulus.drive import Lines
 
-NEAR = 1e-9
-"""An instant within this share of a step from a point of the grid is at the point."""
+ULPS = 8.0
+"""An instant within this many units in the last place of a point of the grid is at the point."""
 
 
 @dataclass(frozen=True, eq=False)
@@ -80,7 +80,7 @@ class Signal:
         """
         missed = np.zeros(len(instants))
         position = instants * rate
-        off = np.flatnonzero(np.abs(position - np.rint(position)) > NEAR + 1e-13 * position)
+        off = np.flatnonzero(np.abs(position - np.rint(position)) > ULPS * np.spacing(position))
         if len(off) == 0 or not self.past:
             return missed
         instants, u, v = instants[off], u[off], v[off]

@@ -73,7 +73,8 @@ def runs_of(
 
     tone = Tone(1.2, 997.0, 0.3, 0.9)
     drive = InMemory(tone.values(np.arange(points + 5) / GRID), GRID) if recorded else tone
-    cut, axis = CutChain.of(chain(stage)), Axis(1.0 / CONVERSIONS, 2.0 / CONVERSIONS)
+    cut = CutChain.of(chain(stage))
+    axis = Axis(1.0 / CONVERSIONS, 2.0 / CONVERSIONS, uniform=True)
     instants = np.arange(int(points / GRID * CONVERSIONS)) / CONVERSIONS
 
     def limited() -> object:

@@ -7,7 +7,7 @@ from typing import Any, Literal
 import numpy as np
 import pytest
 from drives import InMemory, outputs
-from hypothesis import given, settings
+from hypothesis import example, given, settings
 from hypothesis import strategies as st
 from numpy.typing import NDArray
 
@@ -178,6 +178,7 @@ def test_a_held_recording_through_a_curve_is_a_held_recording(rate: float) -> No
 
 
 @given(rate=st.floats(1e4, 3e5), shift=st.floats(0.0, 4e-5))
+@example(rate=1e4, shift=4e-16)
 @settings(max_examples=25, deadline=None)
 def test_clipping_at_the_pin_is_exact(rate: float, shift: float) -> None:
     """Where the limiter is the pin, every conversion sees it itself, not lines between points."""

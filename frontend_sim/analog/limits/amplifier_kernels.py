@@ -30,6 +30,15 @@ GONE = 1e-20
 EACH = 8
 """Steps of one length after a jump or an event, before they are doubled."""
 
+ENDLESS = 1 << 62
+"""No bound of a step, in smallest steps."""
+
+TERMS = 32
+"""Most terms of a Taylor series; over a step of level ``fine`` about twelve are needed."""
+
+RESOLVED = 1e-18
+"""A series ends with a term below this share of its largest one."""
+
 
 @compiled(inline="always")
 def valid(
@@ -96,19 +105,20 @@ def join(table: Any, count: int, whole: Any) -> None:
 
 
 @compiled(inline="always")
-def most_level(lasting: Any, levels: Any, age: float) -> int:
-    """Return the level of the longest step that follows what rings on at an age [s]."""
-    most = 62
+def most_count(lasting: Any, longest: Any, age: float) -> int:
+    """Return the longest step that follows what rings on at an age [s], in smallest steps."""
+    most = ENDLESS
     for k in range(len(lasting)):
-        if age < lasting[k] and levels[k] < most:
-            most = levels[k]
+        if age < lasting[k] and longest[k] < most:
+            most = longest[k]
     return most
 
 
-@compiled()
+@compiled(fastmath={"contract"})
 def loop(
     dims: Any, state: Any, length: Any, begin: Any, end: Any, linear: Any, standing: float,
-    jumps: Any, unit: float, first: int, free: Any, held: Any, lasting: Any, levels: Any,
+    jumps: Any, unit: float, first: int, fine: int, free: Any, held: Any,
+    free_rate: Any, held_rate: Any, lasting: Any, longest: Any,
     asked: Any, target: Any, static: bool, output: Any,
     up: float, down: float, low: float, high: float,
     deviation: Any, begun: Any, time: Any, piece: Any, since: Any,
@@ -198,14 +208,14 @@ def loop(
         holds = valid(mode, static, w, gap, slope, up, down, low, high)
         if jumped:
             age[0] = 0.0
-        most = most_level(lasting, levels, age[0])
-        if jumped or not holds or 1 << most < count:
+        most = most_count(lasting, longest, age[0])
+        if jumped or not holds or most < count:
             for r in range(n):
                 after[r] = x[r]
             passed = through(
                 dims, mode, after, u, rise, count, unit,
-                most if holds and not jumped else first, first,
-                free, held, lasting, levels, age, asked, target, static,
+                1 << first if jumped or not holds else most, first, fine,
+                free, held, free_rate, held_rate, lasting, longest, age, asked, target, static,
                 up, down, low, high, s, time, piece, since,
             )  # fmt: skip
             if passed == UNTOUCHED:
@@ -248,11 +258,60 @@ def loop(
     state[3 + n : -1] = beyond
 
 
+@compiled(inline="always")
+def level_within(count: int) -> int:
+    """Return the level of the longest doubled step within so many smallest ones."""
+    level = 0
+    while 2 << level <= count:
+        level += 1
+    return level
+
+
+@compiled(inline="always")
+def expand(
+    dims: Any, z: Any, over: float, rate: Any, size: int, asked: Any, target: Any, static: bool,
+    terms: Any, told: Any,
+) -> int:  # fmt: skip
+    """Expand what follows z = [x, u, du/dt, slope] in powers of a share of the time ``over`` [s].
+
+    terms[i, :n] are the coefficients of x, told[i] those of w, of the slope that is asked, and of
+    the gap to where w is driven. Returns the number of terms.
+    """
+    n = len(dims)
+    largest, many = 0.0, 0
+    for i in range(TERMS):
+        here = 0.0
+        for r in range(n + 3):
+            if i == 0:
+                terms[0, r] = z[r]
+            elif r < size:
+                total = 0.0
+                for k in range(size):
+                    total += rate[r, k] * terms[i - 1, k]
+                terms[i, r] = total * over / i
+            else:
+                terms[i, r] = 0.0
+            here = max(here, abs(terms[i, r]))
+        slope, goal = asked[n] * terms[i, n], target[n] * terms[i, n]
+        if i == 0:
+            slope += asked[n + 1] * z[n + 1]
+        for k in range(n):
+            slope += asked[k] * terms[i, k]
+            goal += target[k] * terms[i, k]
+        told[i, 0], told[i, 1] = terms[i, n - 1], slope
+        told[i, 2] = goal - terms[i, n - 1] if static else 0.0
+        many = i + 1
+        largest = max(largest, here)
+        if i > 1 and here <= RESOLVED * largest:
+            break
+    return many
+
+
 @compiled()
 def through(
     dims: Any, mode: int, x: Any, u: float, rise: float, count: int, unit: float,
-    level: int, first: int,
-    free: Any, held: Any, lasting: Any, levels: Any, age: Any,
+    begin: int, first: int, fine: int,
+    free: Any, held: Any, free_rate: Any, held_rate: Any, lasting: Any, longest: Any, age: Any,
     asked: Any, target: Any, static: bool,
     up: float, down: float, low: float, high: float,
     s: int, time: Any, piece: Any, since: Any,
@@ -262,73 +321,88 @@ def through(
     After a jump and after every event, steps are short at first, a share of the fastest time
     constant, and are doubled as the transient dies out, but not beyond what follows a pole that
     still rings: none is missed between the ends of the piece. The end of a mode lies in the first
-    step behind which it does not hold any more; there it is found by bisection.
+    step behind which it does not hold any more. That step is halved down to the level ``fine``,
+    below which a Taylor series converges fast; the series tells where in it the mode ends.
     """
     n = len(dims)
     done, events, taken, halving = 0, 0, 0, False
-    z, out, failed = np.zeros(n + 3), np.empty(n + 3), np.empty(n + 3)
-    failed_gap, failed_slope = 0.0, 0.0
+    level = min(level_within(begin), len(free) - 1)
+    z, out = np.zeros(n + 3), np.zeros(n + 3)
+    terms, told = np.empty((TERMS, n + 3)), np.empty((TERMS, 3))
     z[:n] = x
     untouched = mode == FREE
     while done < count:
-        while done + (1 << level) > count:
-            level -= 1
-            taken = 0
-        table = free if mode == FREE else held
+        while level > fine and 1 << level > count - done:
+            level, taken = level - 1, 0
+        step = min(1 << level, count - done)
         z[n], z[n + 1] = u + rise * (done * unit), rise
         z[n + 2] = up if mode == UP else -down if mode == DOWN else 0.0
-        step = 1 << level
-        for r in range(n):
-            total = z[r]
-            for k in range(n + 2):
-                total += table[level, r, k] * z[k]
-            if mode != FREE:
-                total += table[level, r, n + 2] * z[n + 2]
-            out[r] = total
+        table, rate = (free, free_rate) if mode == FREE else (held, held_rate)
+        size, many = len(rate), 0
+        if step == 1 << level:
+            for r in range(n):
+                total = z[r]
+                for k in range(size):
+                    total += table[level, r, k] * z[k]
+                out[r] = total
+        else:
+            many = expand(dims, z, step * unit, rate, size, asked, target, static, terms, told)
+            for r in range(n):
+                total = 0.0
+                for i in range(many - 1, -1, -1):
+                    total += terms[i, r]
+                out[r] = total
         there = u + rise * ((done + step) * unit)
         slope, goal = asked[n] * there + asked[n + 1] * rise, target[n] * there
         for k in range(n):
             slope += asked[k] * out[k]
             goal += target[k] * out[k]
         gap = goal - out[n - 1] if static else 0.0
-        holds = events >= MOST_EVENTS or valid(
+        ends = events < MOST_EVENTS and not valid(
             mode, static, out[n - 1], gap, slope, up, down, low, high
         )
-        if holds:
-            for r in range(n):
-                z[r] = out[r]
-            done += step
-            age[0] += step * unit
-        else:
-            for r in range(n):
-                failed[r] = out[r]
-            failed_gap, failed_slope = gap, slope
-        # The mode ends within the step that failed: each half of it is taken if it holds.
-        halving = halving or not holds
-        ends = halving and level == 0
-        passed = step if holds else 0
+        if ends and level > fine:
+            level, halving = level - 1, True
+            continue
         if ends:
-            # The last of it is taken in any case, so that time goes on.
-            done += 1
-            passed += 1
+            if many == 0:
+                many = expand(dims, z, step * unit, rate, size, asked, target, static, terms, told)
+            holds, share = 0, 1.0 / step
+            while step - holds > 1:
+                middle = (holds + step) >> 1
+                w, slope_there, gap_there = 0.0, 0.0, 0.0
+                for i in range(many - 1, -1, -1):
+                    w = w * (middle * share) + told[i, 0]
+                    slope_there = slope_there * (middle * share) + told[i, 1]
+                    gap_there = gap_there * (middle * share) + told[i, 2]
+                if valid(mode, static, w, gap_there, slope_there, up, down, low, high):
+                    holds = middle
+                else:
+                    step, slope, gap = middle, slope_there, gap_there
             for r in range(n):
-                z[r] = failed[r]
-        if mode >= 0 and passed > 0:
-            time[mode] += passed * unit
+                total = 0.0
+                for i in range(many - 1, -1, -1):
+                    total = total * (step * share) + terms[i, r]
+                out[r] = total
+        if mode >= 0:
+            time[mode] += step * unit
             if piece[mode] < 0:
-                piece[mode], since[mode] = s, (done - passed) * unit
+                piece[mode], since[mode] = s, done * unit
+        done += step
+        age[0] += step * unit
+        for r in range(n):
+            z[r] = out[r]
         if ends:
-            w = z[n - 1]
-            mode, w = mode_at(mode, static, w, failed_gap, failed_slope, up, down, low, high)
-            z[n - 1] = w
+            mode, z[n - 1] = mode_at(mode, static, z[n - 1], gap, slope, up, down, low, high)
             untouched, events, level, taken, halving = False, events + 1, first, 0, False
             age[0] = 0.0
         elif halving:
-            level -= 1
+            halving = level > fine
+            level, taken = max(level - 1, fine), 0
         else:
             taken += 1
-            longest = min(most_level(lasting, levels, age[0]), len(free) - 1)
-            if taken >= EACH and level < longest:
+            most = most_count(lasting, longest, age[0])
+            if taken >= EACH and level + 1 < len(free) and 2 << level <= most:
                 level, taken = level + 1, 0
     for r in range(n):
         x[r] = z[r]

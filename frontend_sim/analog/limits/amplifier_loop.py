@@ -16,7 +16,7 @@ from frontend_sim.analog.limits.limiter import Limiter, Segments, Touched, conti
 from frontend_sim.analog.limits.loop_model import LoopModel
 from frontend_sim.analog.network import Opened, OpenLoop
 
-Steps = tuple[float, int, Real, Real, Real, NDArray[np.int64]]
+Steps = tuple[float, int, int, Real, Real, Real, Real, Real, NDArray[np.int64]]
 
 LEVELS = 48
 """Halvings of the longest piece: event times are found to 4e-15 of it."""
@@ -27,6 +27,9 @@ FINE = 0.1
 
 FOLLOWED = 0.5
 """Longest step while a pole rings on, times its magnitude."""
+
+SHORT = 0.5
+"""Norm of the circuit times a step over which a Taylor series converges fast."""
 
 LASTING, BRIEF = 16.0, 3.0
 """So many times its decay a pole is followed after a jump or an event: one that rings (Q above 1)
@@ -167,14 +170,16 @@ class AmplifierLoop(Limiter):
             free[n, n + 1] = held[n, n + 1] = 1.0
             fastest = max(max(self.rates()) * unit, 1e-300)
             first = min(max(math.floor(math.log2(FINE / fastest)), 0), LEVELS)
+            norm = max(float(np.max(np.sum(np.abs(m[:n, :n]), axis=1))) for m in (free, held))
+            fine = min(max(math.floor(math.log2(SHORT / max(norm * unit, 1e-300))), 0), LEVELS)
             steps = (_doublings(free * unit), _doublings(held * unit))
             poles = self._poles()
             poles = poles[poles.real < 0.0]
             rings = np.abs(poles) > -2.0 * poles.real
             lasting = np.where(rings, LASTING, BRIEF) / -poles.real
-            levels = np.floor(np.log2(FOLLOWED / (np.abs(poles) * unit)))
-            levels = np.clip(levels, first, 62).astype(np.int64)
-            self._known[top] = (unit, first, *steps, lasting, levels)
+            longest = FOLLOWED / (np.abs(poles) * unit)
+            longest = np.clip(longest, 2.0**first, 2.0**62).astype(np.int64)
+            self._known[top] = (unit, first, fine, *steps, free, held, lasting, longest)
         return self._known[top]
 
 
