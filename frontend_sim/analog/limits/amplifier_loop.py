@@ -7,33 +7,13 @@ from dataclasses import dataclass, field
 from typing import Self
 
 import numpy as np
-from numpy.typing import NDArray
 
 from frontend_sim.analog.block import Real
-from frontend_sim.analog.exponential import expm1
 from frontend_sim.analog.limits.follower import NAMES
 from frontend_sim.analog.limits.limiter import Limiter, Segments, Touched, continuous
 from frontend_sim.analog.limits.loop_model import LoopModel
+from frontend_sim.analog.limits.loop_steps import LoopSteps, poles_of
 from frontend_sim.analog.network import Opened, OpenLoop
-
-Steps = tuple[float, int, int, Real, Real, Real, Real, Real, NDArray[np.int64]]
-
-LEVELS = 48
-"""Halvings of the longest piece: event times are found to 4e-15 of it."""
-
-FINE = 0.1
-"""First step after a jump or an event, times the fastest rate of the circuit."""
-
-
-FOLLOWED = 0.5
-"""Longest step while a pole rings on, times its magnitude."""
-
-SHORT = 0.5
-"""Norm of the circuit times a step over which a Taylor series converges fast."""
-
-LASTING, BRIEF = 16.0, 3.0
-"""So many times its decay a pole is followed after a jump or an event: one that rings (Q above 1)
-down to 1e-7; of the others, which hardly overshoot, the begin."""
 
 
 @dataclass(frozen=True, eq=False)
@@ -77,7 +57,7 @@ class AmplifierLoop(Limiter):
     limits = NAMES
     bends = False
     raised = True
-    _known: dict[int, Steps] = field(default_factory=dict)
+    _known: dict[int, LoopSteps] = field(default_factory=dict)
 
     @classmethod
     def of(
@@ -109,12 +89,7 @@ class AmplifierLoop(Limiter):
 
     def rates(self) -> tuple[float, ...]:
         """Return the magnitudes of the poles, free and held [rad/s]."""
-        return tuple(np.abs(self._poles()).tolist())
-
-    def _poles(self) -> NDArray[np.complex128]:
-        n = len(self.held)
-        poles = [np.linalg.eigvals(m[:, :n]) for m in (self.free, self.held)]
-        return np.concatenate(poles).astype(np.complex128)
+        return tuple(np.abs(poles_of(self.free, self.held)).tolist())
 
     def start(self, u: float, v: float) -> Real:
         """Return deviation, mode, input, x of the linear model, what x lies beyond it, and age."""
@@ -138,11 +113,12 @@ class AmplifierLoop(Limiter):
         touched, deviation = Touched.none(4), np.empty(len(span.length))
         begun = np.empty(len(span.jumps))
         after, n = state.copy(), len(self.held)
-        static = self.target is not None
+        static, steps = self.target is not None, self._steps(float(np.max(span.length)))
         target = np.zeros(n + 1) if self.target is None else self.target
         loop(
             (0.0,) * n, after, span.length, span.begin, span.end, span.linear, self.standing,
-            span.jumps, *self._tables(float(np.max(span.length))),
+            span.jumps, steps.unit, steps.first, steps.fine, steps.free, steps.held,
+            steps.free_rate, steps.held_rate, steps.lasting, steps.longest,
             self.free[-1], target, static, self.output,
             self.up, self.down, self.low, self.high,
             deviation, begun, touched.time, touched.piece, touched.since,
@@ -151,41 +127,11 @@ class AmplifierLoop(Limiter):
             begun = continuous(state, deviation, span.jumps)
         return after, deviation, begun, touched
 
-    def _tables(self, longest: float) -> Steps:
-        """Return the smallest step [s], the first level after an event, and steps by doublings.
-
-        These are less the identity: of [x, u, du/dt] free, and of [x, u, du/dt, slope] held. Then
-        how long each pole rings on [s], and the level of the longest step that follows it.
-        """
+    def _steps(self, longest: float) -> LoopSteps:
+        """Return the steps for pieces of up to ``longest`` [s]."""
         top = math.ceil(math.log2(max(longest, 1e-300)))
         if top not in self._known:
-            unit = 2.0 ** (top - LEVELS)
             n = len(self.held)
-            free, held = np.zeros((n + 2, n + 2)), np.zeros((n + 3, n + 3))
-            free[:n], held[:n, : n + 1], held[:n, n + 2] = (
-                self.free,
-                self.held[:, :-1],
-                self.held[:, -1],
-            )
-            free[n, n + 1] = held[n, n + 1] = 1.0
-            fastest = max(max(self.rates()) * unit, 1e-300)
-            first = min(max(math.floor(math.log2(FINE / fastest)), 0), LEVELS)
-            norm = max(float(np.max(np.sum(np.abs(m[:n, :n]), axis=1))) for m in (free, held))
-            fine = min(max(math.floor(math.log2(SHORT / max(norm * unit, 1e-300))), 0), LEVELS)
-            steps = (_doublings(free * unit), _doublings(held * unit))
-            poles = self._poles()
-            poles = poles[poles.real < 0.0]
-            rings = np.abs(poles) > -2.0 * poles.real
-            lasting = np.where(rings, LASTING, BRIEF) / -poles.real
-            longest = FOLLOWED / (np.abs(poles) * unit)
-            longest = np.clip(longest, 2.0**first, 2.0**62).astype(np.int64)
-            self._known[top] = (unit, first, fine, *steps, free, held, lasting, longest)
+            held = np.column_stack([self.held[:, : n + 1], np.zeros(n), self.held[:, -1]])
+            self._known[top] = LoopSteps.of(self.free, held, top)
         return self._known[top]
-
-
-def _doublings(step: Real) -> Real:
-    """Return exp(M 2^i) - I for i = 0 ... LEVELS, shape (LEVELS + 1, N, N)."""
-    steps = [expm1(step)]
-    for _ in range(LEVELS):
-        steps.append(2.0 * steps[-1] + steps[-1] @ steps[-1])
-    return np.array(steps)
