@@ -76,7 +76,7 @@ class PiecewisePath:
         self, state: State, drive: PiecewiseDrive, instants: Real, y: Real
     ) -> tuple[State, int]:
         """Advance through instants, fill in their outputs, and return the number of nodes."""
-        slack = ULPS * np.spacing(instants + self.outputs.delay)
+        slack = self._slack(instants)
         events = drive.events(state.node, float(instants[-1] + slack[-1]))
         instants = _snapped(instants, events, slack)
         nodes = np.union1d(instants, events)
@@ -91,6 +91,15 @@ class PiecewisePath:
         kernels.readout(states[at], g[at] @ drive.readout, self.outputs.c, self.outputs.d, values)
         y[:] = values
         return State(x, float(nodes[-1]) if len(nodes) else state.node), len(nodes)
+
+    def at_events(self, instants: Real, drive: PiecewiseDrive) -> Real:
+        """Return instants, those that differ from an event by rounding only moved onto it."""
+        slack = self._slack(instants)
+        begin, end = float(instants[0] - 2.0 * slack[0]), float(instants[-1] + slack[-1])
+        return _snapped(instants, drive.events(begin, end), slack)
+
+    def _slack(self, instants: Real) -> Real:
+        return ULPS * np.spacing(instants + self.outputs.delay)
 
     def rested(self, state: State, number: int, instants: Real) -> State:
         """Return the state after instants at which all was zero, see ``Path``."""

@@ -125,8 +125,10 @@ class RowPath:
             if until > at:
                 self._clean(x, g[at:until], y[:, at * size : until * size])
             else:
-                self._eventful(x, first + at, y[:, at * size : (at + 1) * size], drive)
-                until, eventful = at + 1, eventful[1:]
+                most = (whole if at < whole else last - first) - at
+                many = min(_in_a_row(eventful), most)
+                until, eventful = at + many, eventful[many:]
+                self._eventful(x, first + at, y[:, at * size : until * size], drive)
             at = until
             if at == whole:
                 kept = x.copy()
@@ -151,13 +153,20 @@ class RowPath:
         kernels.spread(z[:-1], self.spread, y)
 
     def _eventful(self, x: Real, row: int, y: Real, drive: PiecewiseDrive) -> None:
-        """Go through one row from node to node."""
+        """Go through some rows from node to node."""
         number = self.lead + row * self.row
-        instants = np.arange(number, number + self.row + 1) / self.rate - self.delay
-        state = State(x, float(instants[0]))
-        state, values = self.exact.advance(state, 0, instants, drive)
+        instants = np.arange(number, number + y.shape[1] + 1) / self.rate - self.delay
+        # As the end of the row before may have been moved, so that no cut of time shows.
+        instants[:1] = self.exact.at_events(instants[:1], drive)
+        state, values = self.exact.advance(State(x, float(instants[0])), 0, instants, drive)
         y[:] = values[:, :-1]
         x[:] = state.x
+
+
+def _in_a_row(rows: Real) -> int:
+    """Return how many rows follow each other without one between them, from the first one on."""
+    apart = np.flatnonzero(np.diff(rows) > 1)
+    return int(apart[0]) + 1 if len(apart) else len(rows)
 
 
 def _rows_with(events: Real, begins: Real) -> Real:

@@ -104,6 +104,24 @@ def join(table: Any, count: int, whole: Any) -> None:
         level += 1
 
 
+@compiled()
+def doubled(dims: Any, table: Any, count: int, z: Any, work: Any) -> None:
+    """Advance z = [x, u, du/dt, ...] in place by ``count`` smallest steps."""
+    n = len(dims)
+    size, level = table.shape[1], 0
+    while count > 0:
+        if count & 1:
+            for r in range(n + 1):
+                total = 0.0
+                for k in range(size):
+                    total += table[level, r, k] * z[k]
+                work[r] = total
+            for r in range(n + 1):
+                z[r] += work[r]
+        count >>= 1
+        level += 1
+
+
 @compiled(inline="always")
 def most_count(lasting: Any, longest: Any, age: float) -> int:
     """Return the longest step that follows what rings on at an age [s], in smallest steps."""
@@ -138,14 +156,17 @@ def loop(
     x, after = plain + beyond, np.empty(n)
     whole, whole_held = np.zeros((n + 2, n + 2)), np.zeros((n + 3, n + 3))
     still = not np.any(beyond)
-    known, share, count, jump = -1.0, 0.0, 0, 0
+    z, work = np.zeros(n + 3), np.empty(n + 3)
+    usual = np.max(length)
+    count = round(usual / unit)
+    join(free, count, whole)
+    join(held, count, whole_held)
+    known, share, jump = -1.0, 0.0, 0
     slope, gap = 0.0, 0.0
     for s in range(len(length)):
         dt, u, ahead = length[s], begin[s], end[s]
         if dt != known:
             known, share, count = dt, 1.0 / dt if dt > 0.0 else 0.0, round(dt / unit)
-            join(free, count, whole)
-            join(held, count, whole_held)
         rise = (ahead - u) * share
         jumped = jump < len(jumps) and jumps[jump] == s
         w = x[n - 1]
@@ -172,7 +193,24 @@ def loop(
         if static and not still:
             beyond[n - 1] = w - plain[n - 1]
         speed = up if mode == UP else -down if mode == DOWN else 0.0
-        if mode == FREE:
+        if dt != usual:
+            # Beside a jump: not worth a matrix of its own.
+            z[:n], z[n], z[n + 1] = plain, u, rise
+            doubled(dims, free, count, z, work)
+            following[:] = z[:n]
+            if mode == FREE:
+                z[:n], z[n], z[n + 1] = beyond, 0.0, 0.0
+                doubled(dims, free, count, z, work)
+                for r in range(n):
+                    moved[r] = z[r]
+                    after[r] = following[r] + moved[r]
+            else:
+                z[:n], z[n], z[n + 1], z[n + 2] = x, u, rise, speed
+                doubled(dims, held, count, z, work)
+                for r in range(n):
+                    after[r] = z[r]
+                    moved[r] = after[r] - following[r]
+        elif mode == FREE:
             for r in range(n):
                 total = plain[r] + whole[r, n] * u + whole[r, n + 1] * rise
                 for k in range(n):

@@ -1,0 +1,60 @@
+"""Rows of instants that hold events, one by one and many together."""
+
+from __future__ import annotations
+
+from typing import Any
+
+import numpy as np
+import pytest
+from hypothesis import example, given, settings
+from hypothesis import strategies as st
+
+from frontend_sim.analog.chain import Chain, chain_of
+from frontend_sim.analog.stages import Butterworth, Gain
+from frontend_sim.simulation.linear import Axis, Linear
+from frontend_sim.stimulus import Pulse
+
+RATE, COUNT, ROW = 20e3, 1000, 32
+BEGIN = 5 * ROW / RATE
+"""An instant at which a row begins."""
+
+
+def model(chain: Chain, pulse: dict[str, Any]) -> Linear:
+    """Return the output of a filter that a train of pulses drives."""
+    drives = Pulse.model_validate({"kind": "pulse", "high": 1.0, **pulse}).drives((1,))
+    axis = Axis(1.0 / RATE, 2.0 / RATE, uniform=True)
+    return Linear.of(chain, drives, [len(chain.points) - 1], "settled", axis)
+
+
+def parts(made: Linear, cuts: list[int]) -> np.ndarray:
+    """Return the outputs at all instants, asked in parts."""
+    instants, state, found = np.arange(COUNT) / RATE, made.start(), []
+    for begin, end in zip([0, *cuts], [*cuts, COUNT], strict=True):
+        if end > begin:
+            state, values = made.advance(state, begin, instants[begin:end])
+            found.append(values[0])
+    return np.concatenate(found)
+
+
+@given(
+    cuts=st.lists(st.integers(1, COUNT - 1), max_size=6).map(sorted),
+    period=st.sampled_from([1e-4, 1.7e-3, 1.6e-3, 7.7e-3]),
+    off=st.sampled_from([-3, -1, 0, 1, 3]),
+)
+@settings(max_examples=60, deadline=None)
+@example(cuts=[3 * ROW, 5 * ROW, 6 * ROW], period=1.6e-3, off=1)
+def test_no_cut_shows_where_rows_hold_events(cuts: list[int], period: float, off: int) -> None:
+    """The same bits however instants are cut, also with edges a rounding off a row's begin."""
+    at = BEGIN - 2 * 1.6e-3 + off * np.spacing(BEGIN)
+    made = model(chain_of([Butterworth(order=3, corner=3e3)]), {
+        "at": at, "width": 0.4 * period, "period": period
+    })  # fmt: skip
+    assert np.array_equal(parts(made, cuts), parts(made, []))
+
+
+@pytest.mark.parametrize("off", [-1, 0, 1])
+def test_an_edge_a_rounding_off_a_row_takes_effect_there(off: int) -> None:
+    """The instant shows the new value, on whichever side of it rounding left the edge."""
+    pulse = {"at": BEGIN + off * np.spacing(BEGIN), "width": 1.1e-3}
+    found = parts(model(chain_of([Gain(gain=2.0)]), pulse), [])
+    np.testing.assert_array_equal(found[5 * ROW - 1 : 5 * ROW + 1], [0.0, 2.0])
