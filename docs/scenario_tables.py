@@ -52,6 +52,8 @@ def _heading(table: Table) -> str:
         return "## Top of the file\n"
     field = _field_of(table)
     text = field.description or ""
+    if (inspect.getdoc(table.model) or "").lower().startswith(text):
+        return f"## {table.header}\n"  # the explanation follows
     return f"## {table.header}\n\n{text[:1].upper()}{text[1:]}.\n"
 
 
