@@ -7,6 +7,7 @@ from typing import TYPE_CHECKING
 
 from frontend_sim.archive import layout
 from frontend_sim.archive.datasets import attach_axis, extend, open_column
+from frontend_sim.archive.kept import put_stretches
 from frontend_sim.archive.names import dataset_name
 from frontend_sim.archive.table import put_table
 from frontend_sim.archive.text import clean, put_text
@@ -15,6 +16,7 @@ from frontend_sim.quantities import SIGNALS
 from frontend_sim.scenario.model import Scenario
 from frontend_sim.scenario.signal import PIN
 from frontend_sim.simulation.run import RunBlock
+from frontend_sim.simulation.stretches import Index, Stretches
 
 if TYPE_CHECKING:
     import h5py
@@ -27,28 +29,39 @@ class GroupWriter:
     ----------
     group : the root of a record, or the group of a channel
     scenario : what is run
+    stretches : what of the run is kept; None for all of it
     """
 
-    def __init__(self, group: h5py.Group, scenario: Scenario) -> None:
+    def __init__(
+        self, group: h5py.Group, scenario: Scenario, stretches: Stretches | None = None
+    ) -> None:
         """Write nothing yet."""
-        self._group, self._scenario = group, scenario
+        self._group, self._scenario, self._stretches = group, scenario, stretches
         self._points: tuple[str, ...] | None = None
+        self._seen = 0
 
     def append(self, block: RunBlock) -> None:
         """Add some conversions, a stretch of waveform, or both."""
+        numbers, seen = None, len(block.time)
+        if self._stretches is not None:
+            block, places = self._stretches.part(block)
+            numbers = self._seen + places
+        self._seen += seen
         if len(block.time) > 0:
-            self._append_conversions(block)
+            self._append_conversions(block, numbers)
         self._points = self._points or tuple(block.waveform)
         if len(block.waveform_time) > 0:
             self._append_waveform(block)
 
-    def _append_conversions(self, block: RunBlock) -> None:
+    def _append_conversions(self, block: RunBlock, numbers: Index | None) -> None:
         if layout.ADC not in self._group:
             held = len(block.held) > 0
             self._open_conversions(len(block.time), len(block.stimulus) > 0, held)
         group = self._group[layout.ADC]
         for column in layout.CONVERSIONS:
             extend(group[column.name], getattr(block, column.field))
+        if numbers is not None:
+            extend(group[layout.NUMBER.name], numbers)
         if layout.STIMULUS in group:
             extend(group[layout.STIMULUS], block.stimulus)
         if layout.HELD.name in group:
@@ -62,6 +75,8 @@ class GroupWriter:
             group.attrs[name] = getattr(adc, name)
         for column in layout.CONVERSIONS:
             open_column(group, column, column.kind or layout.code_type(adc), expected)
+        if self._stretches is not None:
+            open_column(group, layout.NUMBER, str(layout.NUMBER.kind), expected)
         if stimulus:
             column = layout.stimulus_column(self._scenario.stimulus_unit)
             open_column(group, column, "<f8", expected)
@@ -95,6 +110,8 @@ class GroupWriter:
             self._open_conversions(0)
         if self._points and layout.WAVEFORM not in self._group:
             self._open_waveform(0)
+        if self._stretches is not None:
+            put_stretches(self._group, self._stretches, self._seen)
         put_ending(self._group, notes, results)
 
 

@@ -12,6 +12,8 @@ FORMAT = "frontend_sim record"
 FORMAT_VERSION = 1
 SCAN_FORMAT_VERSION = 2
 """Version of the record of a scan; that of one channel has stayed as it was."""
+OF_A_PART = 2
+"""What both have more where a record keeps a part of its run alone: versions 3 and 4."""
 
 SCENARIO = "scenario"
 RESOLVED = "resolved"
@@ -21,6 +23,7 @@ WAVEFORM = "waveform"
 MEASURE = "measure"
 CHECK = "check"
 CHANNEL = "channel"
+KEPT = "kept"
 
 TIME = "time"
 """Name of the time axis within ``/adc`` and ``/waveform``."""
@@ -64,6 +67,11 @@ CONVERSIONS = (
         "overrange", "overrange", PLAIN, "whether the code was clipped", kind="?", compressed=True
     ),
 )
+
+NUMBER = Column(
+    "number", "", PLAIN, "number of the conversion in the whole run", kind="<i8", compressed=True
+)
+"""Kept where a record keeps a part of its run."""
 
 STIMULUS = "stimulus"
 """Name of the dataset, and of the field of ``RunBlock``, with what arrived at a sensor."""

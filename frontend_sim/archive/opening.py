@@ -15,8 +15,15 @@ from frontend_sim.errors import RecordError, shortened
 if TYPE_CHECKING:
     import h5py
 
-READERS: dict[int, type[Record] | type[ScanRecord]] = {1: Record, 2: ScanRecord}
-"""Format version -> its reader. A new version adds a row; the old rows stay."""
+READERS: dict[int, type[Record] | type[ScanRecord]] = {
+    1: Record,
+    2: ScanRecord,
+    3: Record,
+    4: ScanRecord,
+}
+"""Format version -> its reader. A new version adds a row; the old rows stay. Those of records that
+keep a part of their run are versions of their own, so that a program that knows nothing of parts
+does not take one for a whole."""
 
 
 def open_record(path: str | os.PathLike[str]) -> Record | ScanRecord:
@@ -63,7 +70,10 @@ def _refuse_no_hdf5(path: Path) -> None:
         with path.open("rb") as stream:
             empty = not stream.read(1)
     except IsADirectoryError:
-        raise RecordError(f"{path} is a directory; give the name of a record in it") from None
+        raise RecordError(
+            f"{path} is a directory; give the name of a record in it, or the directory of a set "
+            "that replay has written set.h5 into"
+        ) from None
     except (OSError, ValueError) as error:
         reason = getattr(error, "strerror", None) or error
         raise RecordError(f"{shortened(path)} cannot be opened: {reason}; check the name") from None

@@ -12,7 +12,7 @@ from pathlib import Path
 from typing import Any
 
 from frontend_sim.errors import RecordingError
-from frontend_sim.scenario.model import sha256_of
+from frontend_sim.scenario.digest import sha256_of
 from frontend_sim.scenario.scan_scenario import AnyScenario
 
 PROGRAM = "frontend-sim"

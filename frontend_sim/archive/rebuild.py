@@ -11,7 +11,7 @@ from pydantic import ValidationError
 from frontend_sim.errors import RecordError
 from frontend_sim.scenario.model import Scenario
 from frontend_sim.scenario.scan_scenario import ScanScenario
-from frontend_sim.values import Value
+from frontend_sim.values import Value, validated
 
 AnyValue = TypeVar("AnyValue", bound=Value)
 
@@ -79,7 +79,7 @@ def _rebuilt(
     names = {name: str(path) for name, path in files.items()}
     moved = {**values, **{key: _renamed(values[key], names) for key in keys}}
     try:
-        return model.model_validate(moved)
+        return validated(model, moved)
     except ValidationError as error:
         first = error.errors()[0]
         key = ".".join(map(str, first["loc"]))

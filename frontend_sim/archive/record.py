@@ -11,6 +11,7 @@ from numpy.typing import NDArray
 
 from frontend_sim.archive import layout
 from frontend_sim.archive.grid import grid_of
+from frontend_sim.archive.kept import Kept, get_stretches
 from frontend_sim.archive.names import point_name
 from frontend_sim.archive.rebuild import first_there, rebuild
 from frontend_sim.archive.stored import Stored
@@ -18,6 +19,7 @@ from frontend_sim.archive.waveform import Waveforms
 from frontend_sim.errors import RecordError
 from frontend_sim.scenario.model import Scenario
 from frontend_sim.simulation.run import GridReport, Run, RunBlock
+from frontend_sim.simulation.stretches import Stretches
 
 if TYPE_CHECKING:
     import h5py
@@ -31,7 +33,9 @@ class Record(Stored):
 
     It has the names of ``Run``, so that what reads a run reads a record as well. Each access to
     an array reads it from the file and checks it; keep the array if it is needed again, or take
-    ``conversions`` for a stretch. This class reads format version 1, see ``layout.py``.
+    ``conversions`` for a stretch. Where the record keeps a part of its run alone, arrays hold that
+    part, and ``stretches`` tells which it is. This class reads format versions 1 and 3, see
+    ``layout.py``.
     """
 
     def __init__(self, path: Path, file: h5py.File) -> None:
@@ -50,6 +54,8 @@ class Record(Stored):
             self._file[layout.SCENARIO], self._file[layout.RESOLVED], self._group[layout.NOTES]
             conversions = self._group[layout.ADC]
             groups = [[conversions[column.name] for column in layout.CONVERSIONS]]
+            if layout.KEPT in self._group:
+                groups[0].append(conversions[layout.NUMBER.name])
             further = (layout.STIMULUS, layout.HELD.name)
             groups[0] += [conversions[name] for name in further if name in conversions]
             if layout.WAVEFORM in self._group:
@@ -69,9 +75,32 @@ class Record(Stored):
 
     @property
     def count(self) -> int:
-        """Number of conversions."""
+        """Number of conversions that are kept."""
         with self._reading(layout.ADC):
             return len(self._group[layout.ADC][layout.TIME])
+
+    @cached_property
+    def _kept(self) -> Kept | None:
+        with self._reading(layout.KEPT):
+            return get_stretches(self._group)
+
+    @property
+    def stretches(self) -> Stretches | None:
+        """Which stretches of the run are kept; None where all of it is."""
+        return None if self._kept is None else self._kept.stretches
+
+    @property
+    def whole_count(self) -> int:
+        """Number of conversions of the whole run."""
+        return self.count if self._kept is None else self._kept.conversions
+
+    @property
+    def numbers(self) -> NDArray[np.int64]:
+        """Numbers of the conversions in the whole run, increasing, shape (K,)."""
+        if self._kept is None:
+            return np.arange(self.count)
+        numbers: NDArray[np.int64] = self._stretch(f"{layout.ADC}/{layout.NUMBER.name}")
+        return numbers
 
     @property
     def time(self) -> Real:
@@ -131,7 +160,7 @@ class Record(Stored):
         return values.astype(np.int64) if field == "codes" else values
 
     def conversions(self, start: int = 0, stop: int | None = None) -> RunBlock:
-        """Read conversions ``start`` to ``stop``, counted as in a slice, without waveform."""
+        """Read conversions ``start`` to ``stop`` of those kept, as in a slice, without waveform."""
         first, last, _ = slice(start, stop).indices(self.count)
         fields = {
             column.field: self._conversion(column.field, first, last)
@@ -173,7 +202,18 @@ class Record(Stored):
             return rebuild(self.resolved["scenario"], files, self.source, self.path)
 
     def run(self) -> Run:
-        """Read everything into memory."""
+        """Read everything into memory.
+
+        Raises
+        ------
+        RecordError
+            If the record keeps a part of its run alone.
+        """
+        if self._kept is not None:
+            raise RecordError(
+                f"{self.path} keeps {self.count} of {self.whole_count} conversions, which make no "
+                "run; read its arrays, or run its scenario again for all of them: rerun(record)"
+            )
         block = self.conversions()
         fields = {column.field: getattr(block, column.field) for column in layout.CONVERSIONS}
         return Run(

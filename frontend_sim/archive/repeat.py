@@ -14,7 +14,8 @@ from frontend_sim.archive.record import Record
 from frontend_sim.archive.scan_record import ScanRecord
 from frontend_sim.archive.stored import Stored
 from frontend_sim.errors import RecordError
-from frontend_sim.scenario.model import Scenario, sha256_of
+from frontend_sim.scenario.digest import sha256_of
+from frontend_sim.scenario.model import Scenario
 from frontend_sim.scenario.scan_scenario import ScanScenario
 from frontend_sim.simulation.run import Run
 from frontend_sim.simulation.scan import ScanRun

@@ -12,7 +12,7 @@ from frontend_sim.archive.grid import grid_results
 from frontend_sim.archive.provenance import document, refuse_changed, source_files
 from frontend_sim.archive.reading_back import read_back
 from frontend_sim.archive.save_scan import FinishedScan, ScanSource, record_scan
-from frontend_sim.archive.target import new_file, usable_target
+from frontend_sim.archive.target import new_file, record_target
 from frontend_sim.archive.writer import Writer
 from frontend_sim.measure.checks import Keeper, evaluated, refuse_impossible
 from frontend_sim.measure.result import Result
@@ -88,7 +88,7 @@ def record_run(
     assert isinstance(simulation.scenario, Scenario)  # the source of one channel
     scenario = simulation.scenario
     prepared = simulation if isinstance(simulation, Simulation) else None
-    target = usable_target(path, overwrite, [*scenario.files(), *inputs])
+    target = record_target(path, overwrite, [*scenario.files(), *inputs])
     refuse_impossible(scenario, prepared=prepared)
     keeper, files = Keeper(scenario), source_files(scenario)
     resolved = document(scenario, files, target.parent)

@@ -11,10 +11,10 @@ from typing import Protocol
 from frontend_sim.archive.grid import grid_results
 from frontend_sim.archive.provenance import document, refuse_changed, source_files
 from frontend_sim.archive.reading_back import read_back
-from frontend_sim.archive.target import new_file, usable_target
+from frontend_sim.archive.target import new_file, record_target
 from frontend_sim.archive.writer import ScanWriter
 from frontend_sim.measure.checks import Keeper, evaluated
-from frontend_sim.measure.checks.scan import refuse_impossible_checks
+from frontend_sim.measure.checks.impossible import refuse_impossible_checks
 from frontend_sim.measure.result import Result
 from frontend_sim.measure.scan import scan_report
 from frontend_sim.scenario.channel_scenario import ChannelScenario
@@ -65,7 +65,7 @@ def record_scan(
     """
     scenario = simulation.scenario
     prepared = simulation if isinstance(simulation, ScanSimulation) else None
-    target = usable_target(path, overwrite, [*scenario.files(), *inputs])
+    target = record_target(path, overwrite, [*scenario.files(), *inputs])
     refuse_impossible_checks(scenario, prepared=prepared)
     report = scan_report(scenario, prepared)
     keepers = {name: Keeper(channel) for name, channel in simulation.channels.items()}

@@ -25,7 +25,7 @@ class ScanRecord(Stored):
     """A stored scan; a context manager, which closes the file at its end.
 
     ``results`` are those of the scan as a whole: timing and crosstalk. This class reads format
-    version 2, see ``layout.py``.
+    versions 2 and 4, see ``layout.py``.
     """
 
     def __init__(self, path: Path, file: h5py.File) -> None:

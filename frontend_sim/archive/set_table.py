@@ -42,7 +42,7 @@ class CheckColumn:
     Parameters
     ----------
     name : of the check
-    unit, bound : as ``Result`` has them
+    unit, bound : as ``Result`` has them; of a check with two limits see ``bound_in``
     value, limit, margin : NaN where a run has none
     verdict : "holds", "fails", or "" where a run does not have this check
     """
@@ -54,6 +54,14 @@ class CheckColumn:
     limit: Real
     margin: Real
     verdict: Text
+
+    def bound_in(self, run: int) -> str:
+        """Return on which side the limit of a run stands: of two limits each has its nearer one."""
+        beyond = self.value[run] - self.limit[run]
+        high, low = abs(self.margin[run] + beyond), abs(self.margin[run] - beyond)
+        if high < low:
+            return "at most"
+        return "at least" if low < high else self.bound
 
 
 @dataclass(frozen=True, eq=False)

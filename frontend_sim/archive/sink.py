@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from io import FileIO
+from io import SEEK_END, BytesIO, FileIO
 
 
 class Sink:
@@ -10,16 +10,17 @@ class Sink:
 
     After a write that fails, HDF5 can neither flush nor close the file, and brings the
     interpreter down at its end. So this file takes whatever comes: what the disk does not hold is
-    dropped, and the first failure is kept for ``check``.
+    dropped, and the first failure is kept for ``check``. The file may lie in memory, which ends
+    as a disk does.
     """
 
-    def __init__(self, stream: FileIO) -> None:
+    def __init__(self, stream: FileIO | BytesIO) -> None:
         """Write to an open, unbuffered file."""
         self._stream = stream
-        self._failure: OSError | None = None
+        self._failure: OSError | MemoryError | None = None
 
     def check(self) -> None:
-        """Raise the first failure, an OSError, if there was one."""
+        """Raise the first failure, an OSError or a MemoryError, if there was one."""
         if self._failure is not None:
             raise self._failure
 
@@ -41,7 +42,7 @@ class Sink:
         try:
             while len(rest):
                 rest = rest[self._stream.write(rest) :]
-        except OSError as error:
+        except (OSError, MemoryError) as error:
             self._failure = self._failure or error
         return len(data)
 
@@ -49,7 +50,10 @@ class Sink:
         """Set the file's length, or keep the failure."""
         try:
             self._stream.truncate(size)
-        except OSError as error:
+            missing = size - self._stream.seek(0, SEEK_END)
+            if missing > 0:  # memory grows by what is written alone
+                self._stream.write(bytes(missing))
+        except (OSError, MemoryError) as error:
             self._failure = self._failure or error
         return size
 

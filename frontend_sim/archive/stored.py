@@ -8,10 +8,10 @@ from contextlib import contextmanager
 from datetime import datetime
 from functools import cached_property
 from pathlib import Path
-from types import TracebackType
-from typing import TYPE_CHECKING, Any, Self
+from typing import TYPE_CHECKING, Any
 
 from frontend_sim.archive import layout
+from frontend_sim.archive.closing import Closing
 from frontend_sim.archive.reading import reading
 from frontend_sim.archive.table import get_table
 from frontend_sim.archive.verification import verify
@@ -22,7 +22,7 @@ if TYPE_CHECKING:
     import h5py
 
 
-class Stored:
+class Stored(Closing):
     """An open record, read when something of it is asked for; a context manager.
 
     Parameters
@@ -113,19 +113,6 @@ class Stored:
     def close(self) -> None:
         """Close the file; what was read before stays."""
         self._file.close()
-
-    def __enter__(self) -> Self:
-        """Return the record."""
-        return self
-
-    def __exit__(
-        self,
-        kind: type[BaseException] | None,
-        error: BaseException | None,
-        trace: TracebackType | None,
-    ) -> None:
-        """Close the file."""
-        self.close()
 
     def __repr__(self) -> str:
         """Tell which file, and whether it is open."""

@@ -1,4 +1,4 @@
-"""The place that a record is written to: nothing there is lost, nothing half written appears."""
+"""The place that a file is written to: nothing there is lost, nothing half written appears."""
 
 from __future__ import annotations
 
@@ -16,20 +16,14 @@ HOW_TO_REPLACE = "give another name, or overwrite it: --overwrite, in Python ove
 """What to do about a file that is there."""
 
 
-def usable_target(path: str | os.PathLike[str], overwrite: bool, inputs: Iterable[Path]) -> Path:
-    """Return where a record goes, links followed, after everything that could forbid it.
-
-    Parameters
-    ----------
-    path : as the user gave it
-    overwrite : whether a record that is there may be replaced
-    inputs : files that the run reads, which are never replaced
+def file_target(path: str | os.PathLike[str], overwrite: bool) -> Path:
+    """Return where a file goes, links followed.
 
     Raises
     ------
     OutputError
-        If the directory is not there, if the path is no place for a file, if something is there
-        that must not be replaced.
+        If the directory is not there, the path is no place for a file, or a file is there that
+        must not be replaced.
     """
     with writing(path):
         target = Path(os.path.realpath(path))
@@ -42,13 +36,34 @@ def usable_target(path: str | os.PathLike[str], overwrite: bool, inputs: Iterabl
             raise OutputError(f"{path} is a directory; give the name of a file in it")
         if not stat.S_ISREG(there.st_mode):
             raise OutputError(f"{path} is not a regular file; give the name of a new file")
-        for file in inputs:
-            if file.exists() and file.samefile(target):
-                raise OutputError(
-                    f"{path} is an input of this run and is not replaced; give another name"
-                )
-        _refuse_existing(path, target, overwrite)
+        if not overwrite:
+            raise OutputError(f"{path} exists; {HOW_TO_REPLACE}")
         return target
+
+
+def record_target(path: str | os.PathLike[str], overwrite: bool, inputs: Iterable[Path]) -> Path:
+    """Return where a record goes, links followed, after everything that could forbid it.
+
+    Parameters
+    ----------
+    path : as the user gave it
+    overwrite : whether a record that is there may be replaced
+    inputs : files that the run reads, which are never replaced
+
+    Raises
+    ------
+    OutputError
+        As ``file_target`` does, or if an input is there, or a file that is no record.
+    """
+    _refuse_inputs(path, inputs)
+    target = file_target(path, overwrite)
+    with writing(path):
+        if target.exists() and target.stat().st_size > 0 and not _is_record(target):
+            raise OutputError(
+                f"{path} exists and is no whole record of this program, so it is not overwritten; "
+                "give another name, or delete it first"
+            )
+    return target
 
 
 def _refuse_missing_directory(path: object, directory: Path) -> None:
@@ -58,14 +73,14 @@ def _refuse_missing_directory(path: object, directory: Path) -> None:
         )
 
 
-def _refuse_existing(path: object, target: Path, overwrite: bool) -> None:
-    if not overwrite:
-        raise OutputError(f"{path} exists; {HOW_TO_REPLACE}")
-    if target.stat().st_size > 0 and not _is_record(target):
-        raise OutputError(
-            f"{path} exists and is no whole record of this program, so it is not overwritten; give "
-            "another name, or delete it first"
-        )
+def _refuse_inputs(path: str | os.PathLike[str], inputs: Iterable[Path]) -> None:
+    with writing(path):
+        target = Path(os.path.realpath(path))
+        for file in inputs:
+            if target.is_file() and file.exists() and file.samefile(target):
+                raise OutputError(
+                    f"{path} is an input of this run and is not replaced; give another name"
+                )
 
 
 def _is_record(path: Path) -> bool:

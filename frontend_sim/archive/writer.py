@@ -6,6 +6,7 @@ import json
 from collections.abc import Iterable, Iterator, Mapping, Sequence
 from contextlib import contextmanager
 from datetime import UTC, datetime
+from io import BytesIO, FileIO
 from pathlib import Path
 from types import TracebackType
 from typing import TYPE_CHECKING, Any, Self
@@ -25,6 +26,7 @@ from frontend_sim.scenario.model import Scenario
 from frontend_sim.scenario.scan_scenario import AnyScenario, ScanScenario
 from frontend_sim.scenario.write import scenario_text
 from frontend_sim.simulation.run import RunBlock
+from frontend_sim.simulation.stretches import Stretches
 
 if TYPE_CHECKING:
     import h5py
@@ -41,28 +43,36 @@ class RecordWriter:
 
     Parameters
     ----------
-    file : the file to make, which must not exist
+    file : the file to make, which must not exist; or memory, from which the caller takes it
     path : what messages call it
     scenario : what is run
     resolved : content of ``/resolved``, see ``provenance.document``
+    stretches : what of the run is kept; None for all of it
     """
 
     version = layout.FORMAT_VERSION
 
     def __init__(
-        self, file: Path, path: object, scenario: AnyScenario, resolved: dict[str, Any]
+        self,
+        file: Path | BytesIO,
+        path: object,
+        scenario: AnyScenario,
+        resolved: dict[str, Any],
+        stretches: Stretches | None = None,
     ) -> None:
         """Open the file and write the scenario and what is needed to run it again."""
+        if stretches is not None:
+            self.version += layout.OF_A_PART
         self._path = path
         self._scenario = scenario
         self._resolved = resolved
         with writing(path):
-            self._stream = file.open("x+b", buffering=0)
+            self._stream = file.open("x+b", buffering=0) if isinstance(file, Path) else file
         self._sink = Sink(self._stream)
         self._file = self._made()
         try:
             with self._hdf5():
-                self._put_scenario(file.parent)
+                self._put_scenario(file.parent if isinstance(file, Path) else None)
         except BaseException:
             self._close()
             raise
@@ -83,7 +93,7 @@ class RecordWriter:
                 yield
             self._sink.check()
 
-    def _put_scenario(self, directory: Path) -> None:
+    def _put_scenario(self, directory: Path | None) -> None:
         text, origin = _scenario_text(self._scenario, directory)
         dataset = put_text(self._file, layout.SCENARIO, text, "the scenario")
         dataset.attrs["origin"] = origin
@@ -126,18 +136,24 @@ class RecordWriter:
         """Close HDF5 before the file below it, in which it has its last word."""
         with uninterrupted():
             self._file.close()
-        self._stream.close()
+        if isinstance(self._stream, FileIO):
+            self._stream.close()
 
 
 class Writer(RecordWriter):
     """The record of one channel, see ``RecordWriter``."""
 
     def __init__(
-        self, file: Path, path: object, scenario: Scenario, resolved: dict[str, Any]
+        self,
+        file: Path | BytesIO,
+        path: object,
+        scenario: Scenario,
+        resolved: dict[str, Any],
+        stretches: Stretches | None = None,
     ) -> None:
         """Open the file and write the scenario and what is needed to run it again."""
-        super().__init__(file, path, scenario, resolved)
-        self._group = GroupWriter(self._file, scenario)
+        super().__init__(file, path, scenario, resolved, stretches)
+        self._group = GroupWriter(self._file, scenario, stretches)
 
     def append(self, block: RunBlock) -> None:
         """Add some conversions, a stretch of waveform, or both."""
@@ -158,11 +174,12 @@ class ScanWriter(RecordWriter):
 
     def __init__(
         self,
-        file: Path,
+        file: Path | BytesIO,
         path: object,
         scenario: ScanScenario,
         channels: Mapping[str, ChannelScenario],
         resolved: dict[str, Any],
+        stretches: Stretches | None = None,
     ) -> None:
         """Open the file, write the scenario, and make a group for each channel.
 
@@ -170,7 +187,7 @@ class ScanWriter(RecordWriter):
         ----------
         channels : name -> the channel as a scenario of its own
         """
-        super().__init__(file, path, scenario, resolved)
+        super().__init__(file, path, scenario, resolved, stretches)
         self._groups: dict[str, GroupWriter] = {}
         rhythm = scenario.rhythm
         with self._hdf5():
@@ -185,7 +202,7 @@ class ScanWriter(RecordWriter):
                 group.attrs["position"] = position
                 group.attrs["skew"] = rhythm.skew(position)
                 group.attrs["duration"] = channel.simulation.duration
-                self._groups[name] = GroupWriter(group, channel)
+                self._groups[name] = GroupWriter(group, channel, stretches)
 
     def append(self, channel: str, block: RunBlock) -> None:
         """Add conversions or a stretch of waveform of a channel."""
@@ -213,7 +230,7 @@ class ScanWriter(RecordWriter):
             self._put_head(verdict_of(every))
 
 
-def _scenario_text(scenario: AnyScenario, directory: Path) -> tuple[str, str]:
+def _scenario_text(scenario: AnyScenario, directory: Path | None) -> tuple[str, str]:
     """Return the scenario for people to read, and where the text comes from."""
     if scenario.source:
         return scenario.source, "as written"

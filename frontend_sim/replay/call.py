@@ -19,6 +19,7 @@ from frontend_sim.replay.runs import PreparedSet
 from frontend_sim.replay.set_model import Keep
 from frontend_sim.replay.store import Store
 from frontend_sim.replay.table import Tally, done_runs, tally, write_table
+from frontend_sim.replay.work import CannotGoOn
 
 AnyPath = str | os.PathLike[str]
 
@@ -77,6 +78,7 @@ def replay_set(
     on: str = "processes",
     scheduler: str | None = None,
     keep: Keep | None = None,
+    around: float | None = None,
     report: Report | None = None,
 ) -> Replayed:
     """Run a set, or what is left of it, and write its table.
@@ -93,6 +95,7 @@ def replay_set(
     on : the executor, "processes", "in-process" or "dask"
     scheduler : address of a Dask scheduler; left out, a cluster on this machine
     keep : of which runs records are kept, instead of what the set says
+    around : how long before and behind a failure [s], where what lies around failures is kept
     report : called with the ``Progress`` of the night
 
     Raises
@@ -100,13 +103,13 @@ def replay_set(
     InputError
         If the set is wrong; nothing is run then.
     OutputError
-        If nothing can be written to the directory. A disk that is full later does not raise:
-        ``stopped`` tells it.
+        If nothing can be written to the directory. A disk that is full later, or a cluster that
+        goes away, does not raise: ``stopped`` tells it.
 
     After Ctrl-C it returns as well, ``interrupted``: the table has what was done.
     """
     begun = time.monotonic()
-    prepared = read_set(source, keep)
+    prepared = read_set(source, keep, around)
     place = Path(directory) if directory is not None else default_directory(source)
     with _ended(executor(on, workers, scheduler)) as hands, Store(place) as store:
         stopped, interrupted, ran, kept = "", False, 0, 0
@@ -122,7 +125,7 @@ def replay_set(
                     ran += night.done
                 if until is not None and tight(done_runs(stretch, store), until):
                     break
-        except OutputError as error:
+        except (OutputError, CannotGoOn) as error:
             stopped = str(error)
         except KeyboardInterrupt:
             stopped, interrupted = "it was interrupted", True

@@ -50,7 +50,8 @@ def refuse_small_disk(directory: Path, need: Need, runs: int) -> None:
     if wanted > free:
         raise OutputError(
             f"{directory}: the {runs:,} runs that are left need about {told_bytes(wanted)}, but "
-            f'the disk has {told_bytes(free)} left; free some space, or keep less: keep = "nothing"'
+            f"the disk has {told_bytes(free)} left; free some space, or keep less: keep = "
+            '"around-failures" or "nothing"'
         )
 
 

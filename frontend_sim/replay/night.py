@@ -7,7 +7,9 @@ import time
 from collections import Counter, deque
 from collections.abc import Callable, Iterator
 from concurrent.futures import FIRST_COMPLETED, Future, wait
-from dataclasses import dataclass
+from contextlib import suppress
+from dataclasses import dataclass, replace
+from pathlib import Path
 
 from frontend_sim.replay.estimate import Need, refuse_small_disk
 from frontend_sim.replay.executors.base import Executor, WorkerDied
@@ -128,9 +130,7 @@ class Night:
             yield self._batch(base, jobs)
 
     def _batch(self, base: int, jobs: list[Job]) -> Batch:
-        records = str((self._store.directory / RECORDS).absolute())
-        place = str(self._set.directory)
-        return Batch(self._bases[base], place, records, self._set.keep, tuple(jobs))
+        return batch_of(self._set, base, self._bases[base], self._store.directory, tuple(jobs))
 
     def _size(self) -> int:
         """Return how many runs make a batch, from what those before took."""
@@ -159,9 +159,7 @@ class Night:
             if self._alone:
                 self._deaths[job.name] += self._executor.deaths_per_loss
             if self._deaths[job.name] < MOST_DEATHS:
-                self._suspects.append(
-                    Batch(batch.base, batch.directory, batch.records, batch.keep, (job,))
-                )
+                self._suspects.append(replace(batch, jobs=(job,)))
                 continue
             told = (
                 f"the run ended its worker {MOST_DEATHS} times, as a process does that takes more "
@@ -185,6 +183,30 @@ class Night:
         fails, errors = self.counts["fails"], self.counts["error"]
         rate = self.done / passed
         self._report(Progress(self.done, self.total, self.kept, fails, errors, rate, left))
+
+
+def batch_of(
+    prepared: PreparedSet, base: int, pickled: bytes, directory: Path, jobs: tuple[Job, ...]
+) -> Batch:
+    """Return some runs of one scenario of a set as a worker gets them.
+
+    Parameters
+    ----------
+    base, pickled : number of the scenario, and the scenario itself
+    directory : that the set is replayed into
+    """
+    scenario = prepared.bases[base].scenario
+    files = set(() if scenario is None else scenario.files())
+    for job in jobs:
+        files |= {Path(job.values[key]) for key in prepared.file_keys & job.values.keys()}
+    known = {}
+    for file in files:
+        with suppress(OSError):  # the run tells
+            known[str(file)] = cached_sha256(file)
+    return Batch(
+        pickled, str(prepared.directory), str((directory / RECORDS).absolute()), prepared.keep,
+        jobs, prepared.around, known, prepared.versions,
+    )  # fmt: skip
 
 
 def failed(run: PlannedRun, error: str) -> Outcome:

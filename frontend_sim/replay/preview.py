@@ -11,11 +11,11 @@ from pathlib import Path
 from frontend_sim.replay.call import default_directory
 from frontend_sim.replay.estimate import Need
 from frontend_sim.replay.executors import cores
-from frontend_sim.replay.night import pending
+from frontend_sim.replay.night import batch_of, pending
 from frontend_sim.replay.reading import read_set
 from frontend_sim.replay.runs import PlannedRun, PreparedSet
 from frontend_sim.replay.set_model import Keep
-from frontend_sim.replay.store import JOURNAL, RECORDS, Store
+from frontend_sim.replay.store import JOURNAL, Store
 from frontend_sim.replay.work import Batch, Job, cached_sha256, run_batch
 
 PROBES = 3
@@ -53,12 +53,13 @@ def preview_set(
     *,
     workers: int | None = None,
     keep: Keep | None = None,
+    around: float | None = None,
 ) -> Preview:
     """Tell what ``replay_set`` would do, from a trial of a few runs; nothing is written.
 
     Raises InputError if the set is wrong.
     """
-    prepared = read_set(source, keep)
+    prepared = read_set(source, keep, around)
     place = Path(directory) if directory is not None else default_directory(source)
     done = bytearray(prepared.count)
     if (place / JOURNAL).is_file():
@@ -91,4 +92,4 @@ def _measured(prepared: PreparedSet, probes: list[PlannedRun], place: Path) -> N
 def _batch(prepared: PreparedSet, run: PlannedRun, place: Path) -> Batch:
     job = Job(run.number, run.name, dict(run.values), run.seed, run.recipe)
     base = pickle.dumps(prepared.bases[run.base].scenario)
-    return Batch(base, str(prepared.directory), str(place / RECORDS), prepared.keep, (job,))
+    return batch_of(prepared, run.base, base, place, (job,))

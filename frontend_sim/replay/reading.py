@@ -16,14 +16,16 @@ from frontend_sim.errors import InputError, Problem, ScenarioError, nearest
 from frontend_sim.quantities import shown
 from frontend_sim.replay.points import axes_of, matching, refuse_many, unlike_names
 from frontend_sim.replay.runs import Base, PreparedSet
-from frontend_sim.replay.set_model import Keep, RunSet, looks_like_a_set
+from frontend_sim.replay.set_model import AROUND_FAILURES, Keep, RunSet
 from frontend_sim.replay.spread import CornerSpread, DrawSpread, Spread
 from frontend_sim.scenario import load_scenario
 from frontend_sim.scenario.content import read_text
 from frontend_sim.scenario.key import find
 from frontend_sim.scenario.locate import line_of, lines_of
+from frontend_sim.scenario.set_marks import looks_like_a_set
 from frontend_sim.scenario.syntax import syntax_problem
 from frontend_sim.scenario.vary import with_values
+from frontend_sim.values import validated
 
 OF_THE_NUMBERS = ("frontend-sim", "numpy", "scipy", "numba")
 """What the last bit of a result may depend on: with other versions, all is run again."""
@@ -31,19 +33,22 @@ OF_THE_NUMBERS = ("frontend-sim", "numpy", "scipy", "numba")
 AnyPath = str | os.PathLike[str]
 
 
-def read_set(source: AnyPath | Sequence[AnyPath], keep: Keep | None = None) -> PreparedSet:
+def read_set(
+    source: AnyPath | Sequence[AnyPath], keep: Keep | None = None, around: float | None = None
+) -> PreparedSet:
     """Read a set and make it ready; nothing is run.
 
     Parameters
     ----------
     source : a set file, a scenario, a directory of scenarios, a pattern, or several scenarios
     keep : what is kept of the runs, instead of what the set file says
+    around : how long before and behind a failure [s], instead of what the set file says
 
     Raises
     ------
     ScenarioError
         If a set is wrong: a key to vary is unknown, a pattern finds nothing, it has more than
-        ``MOST_RUNS`` runs, it names itself.
+        ``MOST_RUNS`` runs, it names itself; or around has nothing to stand around.
     """
     given = [source] if isinstance(source, str | os.PathLike) else list(source)
     if len(given) == 1:
@@ -51,8 +56,13 @@ def read_set(source: AnyPath | Sequence[AnyPath], keep: Keep | None = None) -> P
     else:
         prepared = _of_files([Path(each).absolute() for each in given], " ".join(map(str, given)))
     told = {name: version for name, version in versions().items() if name in OF_THE_NUMBERS}
-    changes: dict[str, Any] = {"versions": told, **({"keep": keep} if keep else {})}
-    return _checked(replace(prepared, **changes))
+    kept = keep or prepared.keep
+    if around is not None and kept != AROUND_FAILURES:
+        raise ScenarioError(
+            f"around means nothing with keep = {kept!r}; keep {AROUND_FAILURES!r}, or leave it out"
+        )
+    width = (prepared.around if around is None else around) if kept == AROUND_FAILURES else None
+    return _checked(replace(prepared, versions=told, keep=kept, around=width))
 
 
 def _read_one(place: Path) -> PreparedSet:
@@ -131,7 +141,7 @@ def parse_set(data: dict[str, Any], text: str, name: str) -> RunSet:
         If a key is unknown or has a value that it cannot have; it tells key and line.
     """
     try:
-        return RunSet.model_validate(data)
+        return validated(RunSet, data)
     except ValidationError as error:
         lines = lines_of(text, data)
         problems = [_problem(each, lines) for each in error.errors(include_url=False)]
@@ -238,6 +248,7 @@ def _varied(model: RunSet, inner: PreparedSet, file: Path) -> PreparedSet:
         title=model.title or inner.title,
         seed=seed,
         keep=model.keep if "keep" in own else inner.keep,
+        around=model.around if "keep" in own else inner.around,
         text=read_text(file),
         directory=directory,
         bases=tuple(bases),

@@ -93,7 +93,7 @@ class PreparedSet:
     Parameters
     ----------
     source : what the user named
-    title, keep : as in the set file
+    title, keep, around : as in the set file
     seed : of the set; None where the scenarios are run with their own seeds
     text : the set file as written, "" where there is none
     directory : what files in values are relative to
@@ -111,6 +111,7 @@ class PreparedSet:
     bases: tuple[Base, ...]
     file_keys: frozenset[str] = frozenset()
     versions: Mapping[str, str] = field(default_factory=dict)
+    around: float | None = None
 
     @cached_property
     def count(self) -> int:
@@ -160,7 +161,8 @@ class PreparedSet:
 
     def _recipe(self, base: str, values: Mapping[str, Any], seed: int, sha256: Sha256) -> str:
         plain = {key: self._plain(key, value, sha256) for key, value in values.items()}
-        told = [base, plain, seed, self.keep, dict(self.versions)]
+        keep = self.keep if self.around is None else [self.keep, self.around]
+        told = [base, plain, seed, keep, dict(self.versions)]
         text = json.dumps(told, sort_keys=True, separators=(",", ":"))
         return hashlib.sha256(text.encode()).hexdigest()
 

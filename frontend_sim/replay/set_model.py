@@ -2,14 +2,15 @@
 
 from __future__ import annotations
 
-from typing import Annotated, Any, Literal, Self
+from typing import Annotated, Literal, Self
 
 from pydantic import AfterValidator, Field, StrictBool, model_validator
 
-from frontend_sim.quantities import PositiveShare, Temperature
+from frontend_sim.quantities import PositiveShare, Temperature, Time
 from frontend_sim.values import Value
 
-Keep = Literal["nothing", "failures", "all"]
+Keep = Literal["nothing", "around-failures", "failures", "all"]
+AROUND_FAILURES = "around-failures"
 Distribution = Literal["uniform", "normal"]
 MOST_RUNS = 1_000_000
 """Runs that a set may have."""
@@ -173,12 +174,23 @@ class RunSet(Value):
     )
     keep: Keep = Field(
         default="failures",
-        description="of which runs the conversions and waveforms are kept as records; verdicts and "
-        "measures always are",
+        description="of which runs the conversions and waveforms are kept as records: all of those "
+        "that fail, or what lies around the failures; verdicts and measures always are",
+    )
+    around: Time | None = Field(
+        default=None,
+        description="with keep = around-failures, how long before and behind each of them; left "
+        "out, 100 conversions",
     )
     vary: tuple[Vary, ...] = Field(default=(), description="keys and their values")
     corners: Corners | None = Field(default=None, description="the ends of all tolerances")
     draws: Draws | None = Field(default=None, description="random parts")
+
+    @model_validator(mode="after")
+    def _around_what(self) -> Self:
+        if self.around is not None and self.keep != AROUND_FAILURES:
+            raise ValueError('around means nothing without keep = "around-failures"')
+        return self
 
     @model_validator(mode="after")
     def _one_source(self) -> Self:
@@ -189,17 +201,8 @@ class RunSet(Value):
         return self
 
 
-MARKS = ("base", "scenarios", "vary", "corners", "draws", "keep")
-"""Keys that tell a set file from a scenario."""
-
-
-def looks_like_a_set(data: dict[str, Any]) -> bool:
-    """Return whether the content of a TOML file is a set rather than a scenario."""
-    return "stimulus" not in data and "adc" not in data and any(mark in data for mark in MARKS)
-
-
 __all__ = [
-    "MARKS",
+    "AROUND_FAILURES",
     "MOST_RUNS",
     "Corners",
     "DrawnPart",
@@ -207,5 +210,4 @@ __all__ = [
     "Keep",
     "RunSet",
     "Vary",
-    "looks_like_a_set",
 ]

@@ -17,7 +17,8 @@ from frontend_sim.quantities import Part
 from frontend_sim.randomness import stream, uniform
 from frontend_sim.replay.set_model import Corners, Distribution, DrawnPart, Draws
 from frontend_sim.scenario import AnyScenario, spread_parts
-from frontend_sim.scenario.key import find, key_text, value_at
+from frontend_sim.scenario.key import find, value_at
+from frontend_sim.scenario.walk import key_text
 
 TEMPERATURE_KEY = "environment.temperature"
 STRETCH = 1024

@@ -8,9 +8,9 @@ from contextlib import suppress
 from dataclasses import dataclass
 from datetime import UTC, datetime
 from pathlib import Path
-from types import TracebackType
-from typing import Any, Self
+from typing import Any
 
+from frontend_sim.archive.closing import Closing
 from frontend_sim.archive.set_table import SET_FILE
 from frontend_sim.archive.target import writing
 from frontend_sim.errors import OutputError
@@ -34,7 +34,7 @@ class _Known:
     settled: bool
 
 
-class Store:
+class Store(Closing):
     """The directory that a set is replayed into; a context manager that holds it for itself.
 
     The journal is the truth: a run is done if the journal has an entry of its recipe, and if the
@@ -176,19 +176,6 @@ class Store:
             self.journal.close()
         finally:
             self._lock.release()
-
-    def __enter__(self) -> Self:
-        """Return the store."""
-        return self
-
-    def __exit__(
-        self,
-        kind: type[BaseException] | None,
-        error: BaseException | None,
-        trace: TracebackType | None,
-    ) -> None:
-        """Close the store."""
-        self.close()
 
 
 def _refuse_foreign(directory: Path) -> None:

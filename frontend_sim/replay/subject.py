@@ -4,21 +4,35 @@ from __future__ import annotations
 
 from collections.abc import Iterable, Iterator, Sequence
 from dataclasses import dataclass, replace
-from pathlib import Path
+from functools import cached_property
+from io import BytesIO
 from typing import Any, Protocol
+
+import numpy as np
 
 from frontend_sim.archive.grid import grid_results
 from frontend_sim.archive.writer import ScanWriter, Writer
-from frontend_sim.measure.checks import Keeper, evaluated, refuse_impossible
-from frontend_sim.measure.checks.scan import refuse_impossible_checks
+from frontend_sim.measure.checks import (
+    Keeper,
+    failures_in,
+    refuse_impossible,
+    subject_of_run,
+    verdicts_on,
+)
+from frontend_sim.measure.checks.impossible import refuse_impossible_checks
+from frontend_sim.measure.checks.subject import Subject as CheckedRun
 from frontend_sim.measure.result import Result
 from frontend_sim.measure.scan import scan_report
 from frontend_sim.scenario import AnyScenario, ScanScenario
 from frontend_sim.simulation import GridReport, RunBlock, ScanSimulation, Simulation
+from frontend_sim.simulation.stretches import Stretches
 from frontend_sim.simulation.together import together as side_by_side
 
 Part = tuple[str, RunBlock]
 """A block, and the channel that it belongs to; "" where there is one only."""
+
+AROUND = 100
+"""Conversions that are kept before and behind what fails, where nothing else is said."""
 
 
 class Subject(Protocol):
@@ -33,17 +47,29 @@ class Subject(Protocol):
     def notes(self) -> tuple[str, ...]:
         """Return what was decided on the way, after the last part."""
 
-    def write(
-        self, file: Path, path: object, resolved: dict[str, Any], parts: Iterable[Part]
-    ) -> None:
-        """Write the record of the run.
+    def failures(self, around: float | None) -> Stretches:
+        """Return the stretches in which checks fail, after the last part.
 
         Parameters
         ----------
-        file : that does not exist
-        path : what messages call it
+        around : what they have before and behind that [s]; None for that of ``AROUND`` conversions
+        """
+
+    def record(
+        self,
+        name: str,
+        resolved: dict[str, Any],
+        parts: Iterable[Part],
+        stretches: Stretches | None = None,
+    ) -> bytes:
+        """Return the record of the run, as its file will have it.
+
+        Parameters
+        ----------
+        name : what messages call it
         resolved : see ``provenance.document``
         parts : of the run; ``parts()`` itself, or what it gave
+        stretches : what of it is kept; None for all of it
         """
 
 
@@ -74,20 +100,34 @@ class _Single:
     def results(self) -> tuple[Result, ...]:
         if self._results is None:
             # Advice by sensitivities would take several further runs for each that fails.
-            checked = evaluated(self._keeper, self.simulation, sensitivities=False)
+            checked = verdicts_on(self._subject)
             self._results = (*grid_results(self.simulation.grid), *checked)
         return self._results
+
+    @cached_property
+    def _subject(self) -> CheckedRun:
+        return subject_of_run(self._keeper, self.simulation)
 
     def notes(self) -> tuple[str, ...]:
         return self.simulation.notes
 
-    def write(
-        self, file: Path, path: object, resolved: dict[str, Any], parts: Iterable[Part]
-    ) -> None:
-        with Writer(file, path, self.simulation.scenario, resolved) as writer:
+    def failures(self, around: float | None) -> Stretches:
+        width = AROUND / self.simulation.scenario.adc.rate if around is None else around
+        return Stretches.about(failures_in(self._subject), width)
+
+    def record(
+        self,
+        name: str,
+        resolved: dict[str, Any],
+        parts: Iterable[Part],
+        stretches: Stretches | None = None,
+    ) -> bytes:
+        memory, scenario = BytesIO(), self.simulation.scenario
+        with Writer(memory, name, scenario, resolved, stretches) as writer:
             for _, block in parts:
                 writer.append(block)
             writer.finish(self.notes(), self.results())
+        return memory.getvalue()
 
 
 @dataclass(frozen=True)
@@ -116,11 +156,24 @@ class _Scan:
     def _of_channels(self) -> dict[str, list[Result]]:
         if self._told is None:
             self._told = {}
-            for name, keeper in self._keepers.items():
+            for name, subject in self._subjects.items():
                 grid = self._simulation.grid_of(name)
-                checked = evaluated(keeper, _Graded(grid), sensitivities=False)
-                self._told[name] = [*grid_results(grid), *checked]
+                self._told[name] = [*grid_results(grid), *verdicts_on(subject)]
         return self._told
+
+    @cached_property
+    def _subjects(self) -> dict[str, CheckedRun]:
+        return {
+            name: subject_of_run(keeper, _Graded(self._simulation.grid_of(name)))
+            for name, keeper in self._keepers.items()
+        }
+
+    def failures(self, around: float | None) -> Stretches:
+        # Of all channels the same stretches: what one shows may come from another.
+        subjects = self._subjects.values()
+        slowest = min(subject.adc.rate for subject in subjects)
+        spans = np.concatenate([failures_in(subject) for subject in subjects])
+        return Stretches.about(spans, AROUND / slowest if around is None else around)
 
     def results(self) -> tuple[Result, ...]:
         of_channels = [
@@ -133,15 +186,21 @@ class _Scan:
     def notes(self) -> tuple[str, ...]:
         return self._simulation.notes
 
-    def write(
-        self, file: Path, path: object, resolved: dict[str, Any], parts: Iterable[Part]
-    ) -> None:
-        simulation = self._simulation
-        with ScanWriter(file, path, simulation.scenario, simulation.channels, resolved) as writer:
-            for name, block in parts:
-                writer.append(name, block)
+    def record(
+        self,
+        name: str,
+        resolved: dict[str, Any],
+        parts: Iterable[Part],
+        stretches: Stretches | None = None,
+    ) -> bytes:
+        simulation, memory = self._simulation, BytesIO()
+        scenario, channels = simulation.scenario, simulation.channels
+        with ScanWriter(memory, name, scenario, channels, resolved, stretches) as writer:
+            for channel, block in parts:
+                writer.append(channel, block)
             told = {
-                name: (simulation.notes_of(name), rows)
-                for name, rows in self._of_channels().items()
+                channel: (simulation.notes_of(channel), rows)
+                for channel, rows in self._of_channels().items()
             }
             writer.finish(self.notes(), self._report.results(), told)
+        return memory.getvalue()

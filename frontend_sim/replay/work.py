@@ -3,23 +3,32 @@
 from __future__ import annotations
 
 import pickle
-import tempfile
+import platform
 import time
 from collections.abc import Callable, Iterable, Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from functools import lru_cache, partial
 from pathlib import Path
 from typing import Any, TypeVar
 
-from frontend_sim.archive.provenance import document, refuse_changed, source_files
-from frontend_sim.errors import FrontendSimError, OutputError
+from frontend_sim.archive.provenance import document, refuse_changed, source_files, versions
+from frontend_sim.errors import FrontendSimError, OutputError, RecordingError
 from frontend_sim.measure.result import verdict_of
 from frontend_sim.replay.outcome import Fingerprint, Outcome
-from frontend_sim.replay.set_model import Keep
+from frontend_sim.replay.set_model import AROUND_FAILURES, Keep
 from frontend_sim.replay.subject import Part, Subject, subject_of, together
 from frontend_sim.scenario import AnyScenario, ScanScenario, Scenario, check_scenario
-from frontend_sim.scenario.model import sha256_of
+from frontend_sim.scenario.digest import sha256_of
 from frontend_sim.scenario.vary import with_values
+from frontend_sim.simulation.stretches import Stretches
+
+
+class CannotGoOn(Exception):  # noqa: N818 - it is what happened; the night ends by it, and tells it
+    """Where the runs are done, none of them can be: the message says why, and what to do."""
+
+
+class WrongFileError(RecordingError):
+    """A worker has not the recording that the set was read with."""
 
 
 @dataclass(frozen=True)
@@ -44,6 +53,9 @@ class Batch:
     records : directory of the records; a record tells where its recording is as seen from there
     keep : of which runs the record is returned
     jobs : the runs
+    around : how long before and behind a failure is kept [s]; None for some conversions
+    files : recordings by the path that scenarios have, with the SHA-256 that the set was read with
+    versions : of everything that the numbers depend on, where the set was read
     """
 
     base: bytes
@@ -51,13 +63,22 @@ class Batch:
     records: str
     keep: Keep
     jobs: tuple[Job, ...]
+    around: float | None = None
+    files: Mapping[str, str] = field(default_factory=dict)
+    versions: Mapping[str, str] = field(default_factory=dict)
 
 
 def run_batch(batch: Batch) -> list[Outcome]:
     """Run all runs of a batch; one that fails gives an outcome that says why.
 
     Runs that differ in the parts of a linear chain take one pass over their recording.
+
+    Raises
+    ------
+    CannotGoOn
+        If this worker has other versions than the coordinator, which may give other numbers.
     """
+    _refuse_other_versions(batch.versions)
     ready: list[_Ready | Outcome | None] = []
     for job in batch.jobs:
         begun = time.perf_counter()
@@ -117,8 +138,8 @@ def _guarded(job: Job, begun: float, work: Callable[[], Answer]) -> Answer | Out
     try:
         return work()
     except FrontendSimError as error:
-        # A worker's own disk may be full; that will not last.
-        lasting, told = not isinstance(error, OutputError), str(error)
+        # A worker that has another file, or no room, may have it the next time.
+        lasting, told = not isinstance(error, WrongFileError | OutputError), str(error)
     except MemoryError:
         lasting, told = False, "the run does not fit into memory; shorten it, or keep fewer points"
     except Exception as error:  # noqa: BLE001 - one run that fails never stops the night
@@ -133,6 +154,7 @@ def _prepared(job: Job, batch: Batch, begun: float) -> _Ready:
     if job.seed != base.seed:
         changes["seed"] = job.seed
     scenario = with_values(base, changes, batch.directory)
+    _refuse_other_files(scenario, batch.files)
     check_scenario(scenario)
     subject = subject_of(scenario)
     return _Ready(scenario, subject, time.perf_counter() - begun)
@@ -144,11 +166,13 @@ def _run(job: Job, batch: Batch, ready: _Ready, share: float) -> Outcome:
     parts = fingerprint.watching(subject.parts())
     record = None
     if batch.keep == "all":
-        record = _record(subject, parts, scenario, batch)
+        record = _record(job, batch, ready, parts)
     else:
-        kept = list(parts) if batch.keep == "failures" else _pass(parts)
-        if batch.keep == "failures" and verdict_of(subject.results()) == "fails":
-            record = _record(subject, kept, scenario, batch)
+        wanted = batch.keep != "nothing"
+        kept = list(parts) if wanted else _pass(parts)
+        if wanted and verdict_of(subject.results()) == "fails":
+            part = subject.failures(batch.around) if batch.keep == AROUND_FAILURES else None
+            record = _record(job, batch, ready, kept, part)
     results, notes = subject.results(), subject.notes()
     return Outcome(
         number=job.number,
@@ -165,6 +189,34 @@ def _run(job: Job, batch: Batch, ready: _Ready, share: float) -> Outcome:
     )
 
 
+def _refuse_other_versions(wanted: Mapping[str, str]) -> None:
+    here = versions()
+    for name, version in wanted.items():
+        if here.get(name) != version:
+            raise CannotGoOn(
+                f"the worker on {platform.node()} has {name} {here.get(name)}, and the set was "
+                f"read with {version}; install the same versions on all workers"
+            )
+
+
+def _refuse_other_files(scenario: AnyScenario, wanted: Mapping[str, str]) -> None:
+    """Raise WrongFileError where a recording is not the one that the set was read with."""
+    for file in scenario.files():
+        digest = wanted.get(str(file))
+        if digest is None:
+            continue
+        if not file.is_file():
+            raise WrongFileError(
+                f"{file} is not there on {platform.node()}, whose worker had this run; every "
+                "worker needs the recordings at the paths at which the set was read"
+            )
+        if cached_sha256(file) != digest:
+            raise WrongFileError(
+                f"{file} on {platform.node()}, whose worker had this run, has another content than "
+                "when the set was read; give every worker the same recordings"
+            )
+
+
 def _pass(parts: Iterable[Part]) -> list[Part]:
     """Let a run pass, and keep nothing of it."""
     for _ in parts:
@@ -172,12 +224,12 @@ def _pass(parts: Iterable[Part]) -> list[Part]:
     return []
 
 
-def _record(subject: Subject, parts: Iterable[Part], scenario: AnyScenario, batch: Batch) -> bytes:
-    """Return the record of a run; while it goes on it lies in a temporary folder."""
-    files = source_files(scenario, cached_sha256)
-    resolved = document(scenario, files, Path(batch.records), cached_sha256)
-    with tempfile.TemporaryDirectory(prefix="frontend-sim-") as folder:
-        file = Path(folder, "record.h5")
-        subject.write(file, file, resolved, parts)
-        refuse_changed(files)
-        return file.read_bytes()
+def _record(
+    job: Job, batch: Batch, ready: _Ready, parts: Iterable[Part], part: Stretches | None = None
+) -> bytes:
+    """Return the record of a run, made in memory: a worker that is killed leaves nothing behind."""
+    files = source_files(ready.scenario, cached_sha256)
+    resolved = document(ready.scenario, files, Path(batch.records), cached_sha256)
+    record = ready.subject.record(job.name, resolved, parts, part)
+    refuse_changed(files)
+    return record

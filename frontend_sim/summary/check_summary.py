@@ -18,28 +18,18 @@ from frontend_sim.measure.statistics import (
     corner_excess,
     draws_needed,
     pass_rate,
-    percentile,
-    rank_correlations,
     tolerance_limits,
     worst_run,
 )
 from frontend_sim.measure.statistics.tolerance_limits import Side
 from frontend_sim.summary.population import Population
+from frontend_sim.summary.spread import cause_in, causes_of, percentiles_of
 
 Real = NDArray[np.float64]
 Flags = NDArray[np.bool_]
 
-SHARES = (0.05, 0.5, 0.95)
-"""Percentiles that are told."""
-
 COVERAGE, CONFIDENCE = 0.95, 0.95
 """Of the tolerance limits."""
-
-SIGNIFICANT = 0.05
-"""A cause that chance explains more often is none."""
-
-ALIKE = 1e-9
-"""Relative spread that is rounding."""
 
 ROUNDING, NOISE = 1e-6, 1.0
 """How far between the corners a response may lie beyond them, as a share of their distance: by
@@ -86,8 +76,7 @@ class CheckSummary:
     @property
     def cause(self) -> RankCorrelation | None:
         """The strongest cause that chance does not explain; None where there is none."""
-        first = self.causes[0] if self.causes else None
-        return first if first is not None and first.probability < SIGNIFICANT else None
+        return cause_in(self.causes)
 
     @property
     def unit(self) -> str:
@@ -115,14 +104,7 @@ def summarize_check(
         rate = pass_rate(int(np.count_nonzero(drawn & ~fails)), sampled)
     margins = np.where(there, column.margin, np.inf)
     margins[there & np.isnan(column.margin)] = np.nan
-    # Percentiles of draws where there are some: a grid has no distribution.
-    values = column.value[(drawn if sampled else there) & ~np.isnan(column.value)]
     mine = there & population.drawn if sampled else there
-    causes: tuple[RankCorrelation, ...] = ()
-    if _spreads(column.value[mine]):
-        ranked = {key: row[mine] for key, row in parameters.items()}
-        # The draws of one group are the draws of all, so they do not become more by groups.
-        causes = rank_correlations(ranked, column.value[mine], sampled or None)
     return CheckSummary(
         column,
         int(np.count_nonzero(there)),
@@ -130,20 +112,13 @@ def summarize_check(
         rate,
         group,
         worst_run(margins),
-        tuple(percentile(values, share) for share in SHARES) if len(values) else (),
+        # Percentiles of draws where there are some: a grid has no distribution.
+        percentiles_of(column.value[drawn if sampled else there]),
         _limits(column, column.value[drawn]),
         draws_needed(COVERAGE, CONFIDENCE, _side(column)),
-        causes,
+        causes_of(column.value, parameters, mine, sampled),
         tuple(_corner_warnings(column, population, parameters, noisy)),
     )
-
-
-def _spreads(values: Real) -> bool:
-    """Return whether values differ by more than rounding, whose ranks say nothing."""
-    known = values[np.isfinite(values)]
-    if len(known) < len(values) or len(known) == 0:
-        return len(values) > 0
-    return bool(np.ptp(known) > ALIKE * np.max(np.abs(known)))
 
 
 def _side(column: CheckColumn) -> Side:

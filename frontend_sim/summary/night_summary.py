@@ -13,6 +13,7 @@ from frontend_sim.archive.set_table import SetTable
 from frontend_sim.measure.checks.quiet import quiet_checks
 from frontend_sim.measure.statistics import PassRate, pass_rate
 from frontend_sim.summary.check_summary import CheckSummary, summarize_check
+from frontend_sim.summary.measure_summary import MeasureSummary, measure_summaries
 from frontend_sim.summary.population import Population
 
 Real = NDArray[np.float64]
@@ -33,6 +34,7 @@ class NightSummary:
     rate : share of the draws in which every check holds, with its interval; None without draws
     group : of draws that the yield is that of, the worst of several; "" where there is but one
     checks : one after the other, those with failures first
+    measures : that are no checks, one after the other
     errors : name and reason of each run that gave no result
     warnings : what a reader must know before believing the rest
     """
@@ -43,6 +45,7 @@ class NightSummary:
     rate: PassRate | None
     group: str
     checks: tuple[CheckSummary, ...]
+    measures: tuple[MeasureSummary, ...]
     errors: tuple[tuple[str, str], ...]
     warnings: tuple[str, ...]
 
@@ -94,7 +97,8 @@ def summarize(table: SetTable) -> NightSummary:
     told = table.texts("error")
     errors = tuple((table.names[run], str(told[run])) for run in failed.tolist())
     return NightSummary(
-        table, population, counts, rate, group, tuple(checks), errors,
+        table, population, counts, rate, group, tuple(checks),
+        tuple(measure_summaries(table, population, numbers)), errors,
         tuple(_warnings(table, checks, len(errors))),
     )  # fmt: skip
 

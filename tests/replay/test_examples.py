@@ -14,7 +14,7 @@ ROOT = Path(__file__).resolve().parents[2] / "scenarios" / "sets"
 
 PINNED = {
     "filter_of_a_lot": (40, {"holds": 38, "fails": 2}),
-    "heat_and_tolerance": (9, {"none": 9}),
+    "heat_and_tolerance": (9, {"holds": 6, "fails": 3}),
 }
 """Set -> its runs, and their verdicts."""
 
@@ -34,6 +34,16 @@ def test_every_example_set_is_pinned() -> None:
     assert [file.stem for file in files] == sorted(PINNED)
     for file in files:
         assert read_set(file).count > 1
+
+
+def test_of_two_limits_each_run_has_the_nearer_one_on_its_side(tmp_path: Path) -> None:
+    """A corner below 300 Hz breaks the limit "at least", one above 420 Hz the limit "at most"."""
+    done = replay_set(ROOT / "heat_and_tolerance.toml", tmp_path / "night", on="in-process")
+    (check,) = done.table().checks
+    assert {float(limit) for limit in check.limit} == {300.0, 420.0}
+    sides = {300.0: "at least", 420.0: "at most"}
+    found = [check.bound_in(run) for run in range(len(check.limit))]
+    assert found == [sides[float(limit)] for limit in check.limit]
 
 
 def test_the_corners_of_a_filter_bound_its_time_constant(tmp_path: Path) -> None:

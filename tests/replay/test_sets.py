@@ -219,6 +219,7 @@ GRID = "".join(
     ("text", "message"),
     [
         ('[[vary]]\nkey = "chain[1].resistence"\nvalues = [1]\n', "did you mean 'resistance'"),
+        ("[adc]\nbits = 10\n", "adc: unknown key; known are"),
         ('[[vary]]\nkey = "chain[7].gain"\nvalues = [1]\n', "it has 2"),
         ('[[vary]]\nkey = "adc.rate"\nvalues = ["20 kohm"]\n', "adc.rate"),
         ('[[vary]]\nkey = "adc.bits"\nvalues = [12, 12]\n', "listed twice"),

@@ -6,11 +6,13 @@ import multiprocessing
 import os
 import signal
 import threading
+from collections.abc import Iterator
 from concurrent.futures import Future, ProcessPoolExecutor
 from concurrent.futures.process import BrokenProcessPool
-from contextlib import suppress
+from contextlib import contextmanager, suppress
 from multiprocessing.connection import Connection
 
+from frontend_sim.errors import ScenarioError
 from frontend_sim.replay.executors.base import WorkerDied
 from frontend_sim.replay.outcome import Outcome
 from frontend_sim.replay.work import Batch, run_batch
@@ -39,19 +41,24 @@ class Processes:
         self._pool, self._alive = self._started()
 
     def _started(self) -> tuple[ProcessPoolExecutor, Connection]:
-        reader, writer = self._context.Pipe(duplex=False)
-        pool = ProcessPoolExecutor(self.workers, self._context, _begin, (reader,))
+        with _startable():
+            reader, writer = self._context.Pipe(duplex=False)
+            pool = ProcessPoolExecutor(self.workers, self._context, _begin, (reader,))
         return pool, writer
 
     def submit(self, batch: Batch) -> Future[list[Outcome]]:
         """Hand in a batch, see ``Executor``; a pool that broke is replaced by a new one."""
         try:
-            future = self._pool.submit(run_batch, batch)
+            future = self._handed_in(batch)
         except BrokenProcessPool:
             self.close(now=True)
             self._pool, self._alive = self._started()
-            future = self._pool.submit(run_batch, batch)
+            future = self._handed_in(batch)
         return _told(future)
+
+    def _handed_in(self, batch: Batch) -> Future[list[Outcome]]:
+        with _startable(), _deaf():  # the pool starts a worker here as long as it has too few
+            return self._pool.submit(run_batch, batch)
 
     def close(self, now: bool) -> None:
         """End all workers, see ``Executor``."""
@@ -60,6 +67,31 @@ class Processes:
         self._pool.shutdown(wait=True, cancel_futures=True)
         with suppress(OSError):
             self._alive.close()
+
+
+@contextmanager
+def _startable() -> Iterator[None]:
+    """Tell what keeps workers from starting, for instance too many open files."""
+    try:
+        yield
+    except OSError as error:
+        raise ScenarioError(
+            f"workers cannot be started: {error.strerror or error}; take fewer of them, or "
+            "the executor in-process"
+        ) from error
+
+
+@contextmanager
+def _deaf() -> Iterator[None]:
+    """Hold Ctrl-C back: a worker inherits that, and would meet it before ``_begin`` ignores it."""
+    if not hasattr(signal, "pthread_sigmask"):
+        yield
+        return
+    before = signal.pthread_sigmask(signal.SIG_BLOCK, {signal.SIGINT})
+    try:
+        yield
+    finally:
+        signal.pthread_sigmask(signal.SIG_SETMASK, before)
 
 
 def _told(inner: Future[list[Outcome]]) -> Future[list[Outcome]]:
