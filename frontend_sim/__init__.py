@@ -34,6 +34,7 @@ if TYPE_CHECKING:
         Tolerances,
         attribute,
         compare_records,
+        compare_scans,
         compare_sets,
         parse_tolerances,
     )
@@ -135,6 +136,7 @@ _HOME = {
     "check_scenario": "scenario",
     "circuit_of": "scenario",
     "compare_records": "comparison",
+    "compare_scans": "comparison",
     "compare_sets": "comparison",
     "evaluate_checks": "measure.checks",
     "inspect_scenario": "measure.response",
@@ -228,6 +230,7 @@ __all__ = [
     "check_scenario",
     "circuit_of",
     "compare_records",
+    "compare_scans",
     "compare_sets",
     "evaluate_checks",
     "inspect_scan",

@@ -3,7 +3,8 @@
     FrontendSimError
     ├── InputError            what was given is wrong: exit status 2
     │   ├── QuantityError     a value or its unit cannot be read
-    │   ├── ScenarioError     a key, a table or a combination of keys of a scenario
+    │   ├── ScenarioError     a key, a table or a combination of keys of a scenario, from a file or
+    │   │                     from Python
     │   ├── ModelError        parts that give no usable circuit (unstable, improper, ...)
     │   ├── RecordingError    a recorded signal that cannot be read as asked
     │   ├── RecordError       an HDF5 record that cannot be read or is not one

@@ -2,10 +2,14 @@
 
 from __future__ import annotations
 
-from typing import Any, ClassVar, get_args
+from collections.abc import Mapping
+from typing import Any, ClassVar, Self, TypeVar, get_args
 
-from pydantic import BaseModel, ConfigDict, JsonValue
+from pydantic import BaseModel, ConfigDict, JsonValue, ValidationError
 from pydantic.fields import FieldInfo
+
+from frontend_sim.errors import Problem, ScenarioError, nearest
+from frontend_sim.quantities import shown
 
 OPTIONAL_KIND: dict[str, JsonValue] = {"optional": True}
 """``json_schema_extra`` of the kind that a table without one has; there is at most one in a union.
@@ -26,6 +30,87 @@ class Value(BaseModel):
         str_strip_whitespace=True,
         ser_json_inf_nan="constants",
     )
+
+    def __init__(self, /, **given: Any) -> None:
+        """Make a value from its parameters.
+
+        Raises
+        ------
+        ScenarioError
+            If one is wrong, missing or unknown; ``problems`` lists which, and what it may be.
+        """
+        try:
+            super().__init__(**given)
+        except ValidationError as error:
+            raise type(self)._refusal(error, given) from None
+
+    # Pydantic goes on to make values inside of others by itself, and so knows the path of a fault.
+    __init__.__pydantic_base_init__ = True  # type: ignore[attr-defined]  # as on its own __init__
+
+    @classmethod
+    def model_validate(cls, obj: Any, **options: Any) -> Self:
+        """Make a value from plain data, for instance the tables of a file.
+
+        Raises
+        ------
+        ScenarioError
+            As the constructor does.
+        """
+        try:
+            return super().model_validate(obj, **options)
+        except ValidationError as error:
+            raise cls._refusal(error, obj) from None
+
+    @classmethod
+    def _refusal(cls, error: ValidationError, given: Any) -> ScenarioError:
+        return ScenarioError(cls._problems(error, given), cls.__name__)
+
+    @classmethod
+    def _problems(cls, error: ValidationError, given: Any) -> tuple[Problem, ...]:
+        """Return what is wrong with what was given, in our own words."""
+        return tuple(
+            Problem(_told(detail, cls), _key_of(detail))
+            for detail in error.errors(include_url=False)
+        )
+
+
+AnyValue = TypeVar("AnyValue", bound=Value)
+
+
+def validated(kind: type[AnyValue], data: Any, context: Any = None) -> AnyValue:
+    """Make a value from plain data, for a reader that tells faults in words of its own.
+
+    Raises
+    ------
+    pydantic.ValidationError
+        If a parameter is wrong, missing or unknown.
+    """
+    made: AnyValue = kind.__pydantic_validator__.validate_python(data, context=context)
+    return made
+
+
+def _key_of(detail: Mapping[str, Any]) -> str:
+    """Return where a fault is: ``parts[2].sine.amplitude``, counted from 1."""
+    path = (*detail["loc"], *detail.get("ctx", {}).get("path", ()))
+    steps = (f"[{step + 1}]" if isinstance(step, int) else f".{step}" for step in path)
+    return "".join(steps).removeprefix(".")
+
+
+def _told(detail: Mapping[str, Any], kind: type[Value]) -> str:
+    """Return what is wrong, from one of pydantic's error details."""
+    context, message = detail.get("ctx", {}), str(detail["msg"])
+    if "reason" in context:  # our own error, whose message is complete
+        return str(context["reason"])
+    if "error" in context:
+        return str(context["error"])
+    path, fields = detail["loc"], kind.model_fields
+    if detail["type"] == "extra_forbidden":
+        return f"unknown here{nearest(str(path[-1]), fields) if len(path) == 1 else ''}"
+    if detail["type"] == "missing":
+        known = fields.get(str(path[-1])) if len(path) == 1 else None
+        return f"missing ({known.description})" if known else "missing"
+    wanted = message.replace("Input should be", "must be")
+    return f"given {shown(detail['input'])}; {wanted[:1].lower()}{wanted[1:]}"
 
 
 def table(union: Any) -> dict[str, Any]:

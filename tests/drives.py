@@ -22,7 +22,7 @@ class InMemory(UniformDrive):
     origin: float = 0.0
 
     @property
-    def initial(self) -> float:  # type: ignore[override]  # derived here, stored elsewhere
+    def initial(self) -> float:
         """Return the first point."""
         return float(self.data[0])
 
@@ -47,6 +47,11 @@ def outputs(
     longest = max(float(times[0]), float(np.max(np.diff(times), initial=interval)))
     last = len(chain.points) - 1
     model = Linear.of(chain, drives, [last], initial, Axis(interval, longest), grid)
+    return marched(model, times, block)
+
+
+def marched(model: Any, times: Real, block: int | None) -> Real:
+    """Return the one output of a model at times, in blocks of some length or in one."""
     states, parts = model.start(), []
     for start in range(0, len(times), block or len(times)):
         part = times[start : start + (block or len(times))]

@@ -7,7 +7,7 @@ from dataclasses import dataclass
 from typing import Any
 
 import numpy as np
-from overload import Input, Machine, Mode, Real
+from overload import Input, Machine, Mode, Real, forget
 
 Caps = Callable[[Sequence[float], float, float], list[float]]
 """Derivatives of the capacitors' voltages at their voltages, the input and the drive w."""
@@ -91,12 +91,7 @@ class Loop:
             "up": Mode(rhs(lambda t, s, u: self.up), {"high": high, done: back_up}),
             "down": Mode(rhs(lambda t, s, u: -self.down), {"low": low, done: back_down}),
         }
-        for mode in modes.values():
-            for name, limit in (
-                ("up", self.up), ("down", self.down), ("high", self.high), ("low", self.low)
-            ):  # fmt: skip
-                if np.isinf(limit):
-                    mode.out.pop(name, None)
+        forget(modes, up=self.up, down=self.down, high=self.high, low=self.low)
 
         def begin(t: float, s: Any, u: Input) -> str:
             slope, pull = self.asked(t, s, u), self.pull(t, s, u)

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Sequence
+from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass
 from typing import Any
 
@@ -24,6 +24,14 @@ class Mode:
 
     rhs: Callable[[float, Any, Input], list[float]]
     out: dict[str, tuple[Test, int]]
+
+
+def forget(modes: Mapping[str, Mode], **limits: float) -> None:
+    """Take out the ways to infinite limits: they have no events, and scipy seeks their sign."""
+    for name, limit in limits.items():
+        if np.isinf(limit):
+            for mode in modes.values():
+                mode.out.pop(name, None)
 
 
 @dataclass
@@ -150,13 +158,7 @@ class Amplifier:
                 {"low": low, "free": (lambda t, s, u: z(t, s, u) + self.down, 1)},
             ),
         }
-        # An infinite limit has no events, and scipy cannot look for their sign.
-        for mode in modes.values():
-            for name, limit in (
-                ("up", self.up), ("down", self.down), ("high", self.high), ("low", self.low)
-            ):  # fmt: skip
-                if np.isinf(limit):
-                    mode.out.pop(name, None)
+        forget(modes, up=self.up, down=self.down, high=self.high, low=self.low)
 
         def begin(t: float, s: Any, u: Input) -> str:
             slope = z(t, s, u)

@@ -8,7 +8,9 @@ import pytest
 from pydantic import Field, ValidationError
 
 from frontend_sim.analog.stages import STAGES, AnyStage
+from frontend_sim.errors import ScenarioError
 from frontend_sim.quantities import Voltage
+from frontend_sim.scenario import Scenario
 from frontend_sim.stimulus import STIMULI, AnyStimulus
 from frontend_sim.values import Value, table
 
@@ -36,14 +38,56 @@ def test_values_are_frozen() -> None:
 
 def test_unknown_keys_are_refused() -> None:
     """A key that no field knows is an error, not ignored."""
-    with pytest.raises(ValidationError, match="extra_forbidden"):
+    with pytest.raises(ScenarioError, match="Point: lvl: unknown here; did you mean 'level'"):
         Point.model_validate({"lvl": 1.0})
+
+
+def test_a_wrong_parameter_is_told_in_our_own_words() -> None:
+    """Made with keywords or from plain data: what is wrong, with its path, and what it may be."""
+    from frontend_sim.analog.stages.rc_lowpass import RcLowpass
+
+    told = "RcLowpass: resistance: given -1; a resistance here must be above 0 ohm"
+    values = {"resistance": -1, "capacitance": "1 nF"}
+    for make in (lambda: RcLowpass(**values), lambda: RcLowpass.model_validate(values)):
+        with pytest.raises(ScenarioError) as caught:
+            make()
+        assert str(caught.value) == told
+        assert caught.value.__cause__ is None
+        assert caught.value.__suppress_context__
+    with pytest.raises(ScenarioError) as caught:
+        RcLowpass(capacitance="1 V", name=3)
+    assert [problem.key for problem in caught.value.problems] == [
+        "name",
+        "resistance",
+        "capacitance",
+    ]
+
+
+def test_values_inside_of_others_are_told_with_their_path() -> None:
+    """A value made by another one is not refused by itself: the path starts at the outer one."""
+
+    class Line(Value):
+        """A value that holds others."""
+
+        ends: tuple[Point, ...]
+
+    with pytest.raises(ScenarioError) as caught:
+        Line(ends=[Point(), {"level": "1 s"}])
+    (problem,) = caught.value.problems
+    assert problem.key == "ends[2].level"
+    assert "'s' is a unit of time" in problem.text
+    with pytest.raises(ScenarioError, match=r"Scenario: chain\[1\]\.gain \(gain\): given"):
+        Scenario(
+            stimulus={"kind": "step", "after": 1.0},
+            chain=[{"kind": "gain", "gain": "x"}],
+            adc={"rate": 1e3, "bits": 12, "high": 1.0},
+        )
 
 
 @pytest.mark.parametrize("number", [float("nan"), float("inf"), -float("inf")])
 def test_numbers_are_finite(number: float) -> None:
     """Neither infinity nor NaN gets into a value."""
-    with pytest.raises(ValidationError):
+    with pytest.raises(ScenarioError):
         Point(path=(number,))
 
 
@@ -63,7 +107,7 @@ def test_defaults_are_validated() -> None:
 
         level: Annotated[float, Field(gt=0.0)] = -1.0
 
-    with pytest.raises(ValidationError):
+    with pytest.raises(ScenarioError):
         Wrong()
 
 

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass
 from functools import cached_property
 
@@ -65,6 +66,11 @@ class Block:
         return np.asarray(np.linalg.eigvals(self.a), dtype=np.complex128)
 
     @cached_property
+    def integrates(self) -> bool:
+        """Whether a pole lies at the origin."""
+        return bool(np.any(self.poles == 0.0))
+
+    @cached_property
     def at_rest(self) -> Real:
         """States after the input has rested at one for ever, shape (n,); no pole at the origin.
 
@@ -113,17 +119,17 @@ class Block:
 
 
 def _eigenvalues_of_two(a: Real) -> Complex:
-    (a11, a12), (a21, a22) = a
+    (a11, a12), (a21, a22) = a.tolist()
     if a12 == 0.0 or a21 == 0.0:
         return np.array([a11, a22], dtype=np.complex128)
     half_trace = 0.5 * (a11 + a22)
     half_difference = 0.5 * (a11 - a22)
     discriminant = half_difference * half_difference + a12 * a21
     if discriminant < 0.0:
-        imaginary = 1j * np.sqrt(-discriminant)
-        return np.array([half_trace + imaginary, half_trace - imaginary])
+        imaginary = math.sqrt(-discriminant)
+        return np.array([complex(half_trace, imaginary), complex(half_trace, -imaginary)])
     # The larger root first, the other from the product: no cancellation.
-    larger = half_trace + np.copysign(np.sqrt(discriminant), half_trace)
+    larger = half_trace + math.copysign(math.sqrt(discriminant), half_trace)
     product = a11 * a22 - a12 * a21
     smaller = product / larger if larger != 0.0 else 0.0
     return np.array([larger, smaller], dtype=np.complex128)

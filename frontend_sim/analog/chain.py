@@ -10,51 +10,15 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from frontend_sim.analog.block import Block, Complex, Real
-from frontend_sim.analog.noise import NoiseInput, NoiseModel, model_of
+from frontend_sim.analog.noise import NoiseModel, model_of
+from frontend_sim.analog.section import Section
 from frontend_sim.errors import ModelError
+from frontend_sim.quantities import REFERENCE_TEMPERATURE
 
 if TYPE_CHECKING:
     import control
 
     from frontend_sim.analog.stages.base import Stage
-
-ROOM_TEMPERATURE = 298.15
-"""25 degrees Celsius, where a scenario says nothing else [K]."""
-
-
-@dataclass(frozen=True, eq=False)
-class Tap:
-    """One more point of the chain, inside a section: c x + d u of its states and its input.
-
-    Parameters
-    ----------
-    c : shape (n,), over the states of all blocks of the section;  d : direct part
-    delay : further pure delay of this point alone [s]
-    """
-
-    name: str
-    c: Real
-    d: float
-    delay: float = 0.0
-
-
-@dataclass(frozen=True, eq=False)
-class Section:
-    """What one stage brings into the chain.
-
-    Parameters
-    ----------
-    delay : pure delay [s]
-    offset : constant that the stage adds to its output
-    taps : further points, behind the section's own; only a section of one block has any
-    """
-
-    name: str
-    blocks: tuple[Block, ...]
-    delay: float
-    noise: tuple[NoiseInput, ...] = ()
-    offset: float = 0.0
-    taps: tuple[Tap, ...] = ()
 
 
 @dataclass(frozen=True, eq=False)
@@ -195,7 +159,7 @@ class Chain:
 def _rest_of(block: Block, level: float, name: str) -> Real:
     if block.order == 0:
         return np.empty(0)
-    if not np.any(block.poles == 0.0):
+    if not block.integrates:
         # From a level of one, so that a high pass passes on exactly nothing of any level.
         return level * block.at_rest
     if level == 0.0:
@@ -207,36 +171,7 @@ def _rest_of(block: Block, level: float, name: str) -> Real:
     )
 
 
-def section(stage: Stage, name: str, temperature: float = ROOM_TEMPERATURE) -> Section:
-    """Return the section of one stage at a temperature [K].
-
-    Raises
-    ------
-    ModelError
-        If a pole lies in the right half plane: the stage has no bounded response.
-    """
-    blocks = stage.blocks()
-    for block in blocks:
-        for pole in block.poles:
-            if pole.real > 0.0:
-                raise ModelError(
-                    f"stage {name!r} is unstable: it has a pole at {_text_of(pole)} rad/s; no "
-                    "pole may lie in the right half plane"
-                )
-    return Section(
-        name,
-        blocks,
-        stage.transport_delay(),
-        stage.noise(temperature),
-        stage.offset(temperature),
-    )
-
-
-def _text_of(pole: complex) -> str:
-    return f"{pole.real:g}" if pole.imag == 0.0 else f"{pole.real:g} ± j{abs(pole.imag):g}"
-
-
-def chain_of(stages: Sequence[Stage], temperature: float = ROOM_TEMPERATURE) -> Chain:
+def chain_of(stages: Sequence[Stage], temperature: float = REFERENCE_TEMPERATURE) -> Chain:
     """Compose stages, named by their ``name`` or by kind and position.
 
     Parameters
@@ -250,7 +185,7 @@ def chain_of(stages: Sequence[Stage], temperature: float = ROOM_TEMPERATURE) -> 
     """
     return compose(
         [
-            section(stage, stage.label(position), temperature)
+            Section.of(stage, stage.label(position), temperature)
             for position, stage in enumerate(stages, start=1)
         ]
     )
@@ -279,10 +214,10 @@ def compose(sections: Sequence[Section]) -> Chain:
         entry, begin = (c.copy(), d, noise_d.copy()), at
         for number, block in enumerate(part.blocks):
             here = slice(at, at + block.order)
-            a[here, :] = np.outer(block.b, c)
+            a[here, :] = block.b[:, None] * c
             a[here, here] = block.a
             b[here] = block.b * d
-            noise_b[here] = np.outer(block.b, noise_d)
+            noise_b[here] = block.b[:, None] * noise_d
             c, d, noise_d = block.d * c, block.d * d, block.d * noise_d
             c[here] = block.c
             for j, entering in enumerate(part.noise, start=source):
@@ -323,7 +258,7 @@ def _offsets(sections: Sequence[Section]) -> Real:
         for block in part.blocks:
             if level == 0.0:
                 break
-            if np.any(block.poles == 0.0):
+            if block.integrates:
                 raise ModelError(
                     f"stage {part.name!r} has a pole at the origin and would drift away on the "
                     f"offset of {level:g} that the stages before it add; give the integrator a "

@@ -11,10 +11,12 @@ from typing import Self
 import numpy as np
 
 from frontend_sim.analog.block import Real
-from frontend_sim.analog.chain import ROOM_TEMPERATURE, Chain, Section, compose, section
+from frontend_sim.analog.chain import Chain, compose
 from frontend_sim.analog.limits import Limiter
+from frontend_sim.analog.section import Section
 from frontend_sim.analog.stages.base import Stage
 from frontend_sim.errors import ModelError
+from frontend_sim.quantities import REFERENCE_TEMPERATURE
 
 
 @dataclass(frozen=True, eq=False)
@@ -65,7 +67,7 @@ class CutChain:
     points: tuple[int, ...]
 
     @classmethod
-    def of(cls, stages: Sequence[Stage], temperature: float = ROOM_TEMPERATURE) -> Self:
+    def of(cls, stages: Sequence[Stage], temperature: float = REFERENCE_TEMPERATURE) -> Self:
         """Cut a chain of stages at a temperature [K].
 
         Raises
@@ -77,7 +79,7 @@ class CutChain:
         places: list[Place] = []
         points, passes = [0], True
         for position, stage in enumerate(stages, start=1):
-            whole = section(stage, stage.label(position), temperature)
+            whole = Section.of(stage, stage.label(position), temperature)
             limiter = _limiter(stage, whole.name, temperature)
             if limiter is None:
                 sections.append(replace(whole, noise=()))
@@ -98,6 +100,12 @@ class CutChain:
     def behind(self, place: Place) -> Chain:
         """Return the chain behind a limiter; its point 0 is the limiter's output."""
         return compose([replace(part, offset=0.0) for part in self.chain.sections[place.exit :]])
+
+
+def is_cut(stages: Sequence[Stage], temperature: float = REFERENCE_TEMPERATURE) -> bool:
+    """Return whether anything in a chain of stages limits. Raises as ``CutChain.of`` does."""
+    labelled = [(stage, stage.label(position)) for position, stage in enumerate(stages, start=1)]
+    return any(_limiter(stage, name, temperature) is not None for stage, name in labelled)
 
 
 def _limiter(stage: Stage, name: str, temperature: float) -> Limiter | None:

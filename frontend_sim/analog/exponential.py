@@ -37,27 +37,30 @@ def expm1(matrix: Real) -> Real:
     small = matrix * 2.0**-doublings
     result = small / TERMS
     for term in range(TERMS - 1, 0, -1):
-        result = (small + small @ result) / term
+        result = small @ result
+        result += small
+        result /= term
     for _ in range(doublings):
-        result = 2.0 * result + result @ result
+        result = joined(result, result)
     return result
 
 
 def joined(first: Real, second: Real) -> Real:
     """Return E of both intervals in a row, E1 + E2 + E1 E2, from E of each."""
-    return np.asarray(first + second + first @ second)
+    both: Real = first + second
+    both += first @ second
+    return both
 
 
 def power(step: Real, count: int) -> Real:
     """Return (I + E)^count - I by repeated doubling."""
-    result = np.zeros_like(step)
-    square = step
+    result, square = None, step
     while count:
         if count & 1:
-            result = joined(result, square)
-        square = joined(square, square)
+            result = square if result is None else joined(result, square)
         count >>= 1
-    return result
+        square = joined(square, square) if count else square
+    return np.zeros_like(step) if result is None else result
 
 
 def augmented(a: Real, b: Real, generator: Real, readout: Real) -> Real:

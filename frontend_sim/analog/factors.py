@@ -89,7 +89,7 @@ def cascade(zeros: Iterable[Root], poles: Iterable[Root], gain: float) -> tuple[
             _block(roots, top, scale * left if index == 0 else scale)
             for index, (roots, top, scale) in enumerate(factors)
         ]
-    if not all(np.all(np.isfinite([*block.c, block.d])) for block in blocks):
+    if not all(math.isfinite(value) for block in blocks for value in (*block.c, block.d)):
         raise ModelError(f"the gain {gain:g} with these roots leaves the range of numbers")
     return tuple(blocks)
 

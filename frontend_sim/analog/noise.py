@@ -52,6 +52,11 @@ def at_input(
     return NoiseInput(name, density, corner, 0, factor * first.b, factor * first.d)
 
 
+def at_output(name: str, density: float, share: float = 1.0) -> NoiseInput:
+    """Return a white source that reaches the output of a stage without memory by some share."""
+    return NoiseInput(name, density, 0.0, 0, np.empty(0), share)
+
+
 def thermal_density(resistance: float, temperature: float) -> float:
     """Return sqrt(4 k T R) [V/sqrt(Hz)].
 

@@ -13,9 +13,8 @@ from typing import NoReturn
 
 import click
 
+from frontend_sim.cli.status import HOLDS, INTERRUPTED, WRONG_INPUT
 from frontend_sim.errors import FrontendSimError, Interrupted
-
-HOLDS, FAILS, WRONG_INPUT, INTERRUPTED = 0, 1, 2, 130
 
 _COMMANDS = {
     "run": "simulate one scenario and store it",

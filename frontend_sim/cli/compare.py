@@ -9,14 +9,16 @@ from typing import TYPE_CHECKING, Any
 import click
 
 from frontend_sim.cli.console import print_json, print_notes, print_tables, progress_bar
+from frontend_sim.cli.options import PATH, json_option, overwrite_option, plot_option
+from frontend_sim.cli.status import FAILS, HOLDS
 
 if TYPE_CHECKING:
-    from frontend_sim.archive import Record
+    from frontend_sim.archive import Record, ScanRecord
     from frontend_sim.comparison import RecordComparison, Tolerances
 
 
 @click.command("compare")
-@click.argument("runs", nargs=-1, required=True, type=click.Path(path_type=Path))
+@click.argument("runs", nargs=-1, required=True, type=PATH)
 @click.option(
     "--tolerance",
     "tolerances",
@@ -32,14 +34,9 @@ if TYPE_CHECKING:
     metavar="N",
     help="Run both again with N seeds to judge measures that noise moves.",
 )
-@click.option(
-    "--plot",
-    type=click.Path(path_type=Path),
-    metavar="FILE",
-    help="Draw both and their difference into FILE, .png or .svg.",
-)
-@click.option("--overwrite", is_flag=True, help="Replace the plot if it exists.")
-@click.option("--json", "as_json", is_flag=True, help="Print results as JSON.")
+@plot_option("Draw both and their difference")
+@overwrite_option("the plot if it exists")
+@json_option
 def command(
     runs: tuple[Path, ...],
     tolerances: tuple[str, ...],
@@ -71,7 +68,7 @@ def command(
         print_json([summary for summary, _ in compared])
     elif plot is not None:
         click.echo(f"plot: {plot}")
-    return 1 if any(differs for _, differs in compared) else 0
+    return FAILS if any(differs for _, differs in compared) else HOLDS
 
 
 class _Asked:
@@ -108,7 +105,8 @@ class _Asked:
         from frontend_sim.archive.set_table import open_set
         from frontend_sim.comparison import attribute_sets, compare_sets
         from frontend_sim.errors import InputError
-        from frontend_sim.present.set_comparison_plot import plot_set_comparison
+        from frontend_sim.present import save_figure
+        from frontend_sim.present.set_comparison_plot import set_comparison_figure
         from frontend_sim.present.set_comparison_table import (
             set_comparison_summary,
             set_comparison_tables,
@@ -125,7 +123,7 @@ class _Asked:
                 found = attribute_sets(one, other, comparison, advance)
             comparison = replace(comparison, attribution=found)
         if self.plot is not None:
-            plot_set_comparison(comparison, one, other, self.plot, self.overwrite)
+            save_figure(set_comparison_figure(comparison, one, other), self.plot, self.overwrite)
         print_notes(comparison.notes)
         if not self.as_json:
             print_tables(set_comparison_tables(comparison))
@@ -134,30 +132,19 @@ class _Asked:
     def records(self, first: Path, second: Path) -> tuple[dict[str, Any], bool]:
         """Compare two records; return the summary, and whether they differ."""
         from frontend_sim.archive import ScanRecord, open_record
-        from frontend_sim.comparison import compare_records, compare_scans
-        from frontend_sim.errors import InputError
-        from frontend_sim.present.comparison_plot import plot_comparison
+        from frontend_sim.comparison import compare_runs
+        from frontend_sim.present import check_channels_drawn, save_figure
+        from frontend_sim.present.comparison_plot import comparison_figure
 
         with open_record(first) as one, open_record(second) as other:
-            if isinstance(one, ScanRecord) and isinstance(other, ScanRecord):
-                self._refuse_for_scans()
-                return self._told(compare_scans(one, other, self.tolerances))
-            if isinstance(one, ScanRecord) or isinstance(other, ScanRecord):
-                which = first if isinstance(one, ScanRecord) else second
-                raise InputError(f"{which} is a scan and the other is none; compare like with like")
-            comparison = self._explained(compare_records(one, other, self.tolerances), one, other)
+            for each in (one, other):
+                if self.plot is not None and isinstance(each, ScanRecord):
+                    check_channels_drawn(len(each.channels), self.plot)
+            comparison = self._explained(compare_runs(one, other, self.tolerances), one, other)
             if self.plot is not None:  # first, so that a closed pipe does not cost the plot
-                plot_comparison(comparison, one, other, self.plot, self.overwrite)
+                figure = comparison_figure(comparison, one, other)
+                save_figure(figure, self.plot, self.overwrite)
         return self._told(comparison)
-
-    def _refuse_for_scans(self) -> None:
-        from frontend_sim.errors import InputError
-
-        if self.plot is not None or self.attribute or self.seeds is not None:
-            raise InputError(
-                "--plot, --attribute and --seeds take records of one channel; of a scan compare "
-                "without them, or one channel in Python: open_record(...).channels[name]"
-            )
 
     def _told(self, comparison: RecordComparison) -> tuple[dict[str, Any], bool]:
         from frontend_sim.present.comparison_table import comparison_summary, comparison_tables
@@ -168,7 +155,7 @@ class _Asked:
         return comparison_summary(comparison), comparison.differs
 
     def _explained(
-        self, comparison: RecordComparison, one: Record, other: Record
+        self, comparison: RecordComparison, one: Record | ScanRecord, other: Record | ScanRecord
     ) -> RecordComparison:
         """Run both again where that was asked for."""
         from frontend_sim.archive import rerun_scenario

@@ -7,8 +7,7 @@ import signal
 import threading
 from types import FrameType
 
-INTERRUPTED = 130
-"""Exit status of what was interrupted."""
+from frontend_sim.cli.status import INTERRUPTED
 
 
 def _end(_number: int, _frame: FrameType | None) -> None:

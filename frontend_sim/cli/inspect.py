@@ -8,6 +8,7 @@ from typing import TYPE_CHECKING
 import click
 
 from frontend_sim.cli.console import print_json, print_notes, print_tables
+from frontend_sim.cli.options import PATH, json_option, overwrite_option, plot_option
 
 if TYPE_CHECKING:
     from frontend_sim.present.before_run import BeforeRun
@@ -15,15 +16,10 @@ if TYPE_CHECKING:
 
 
 @click.command("inspect")
-@click.argument("scenario", type=click.Path(path_type=Path))
-@click.option(
-    "--plot",
-    type=click.Path(path_type=Path),
-    metavar="FILE",
-    help="Draw magnitude, phase and step response into FILE, .png or .svg.",
-)
-@click.option("--overwrite", is_flag=True, help="Replace the plot if it exists.")
-@click.option("--json", "as_json", is_flag=True, help="Print results as JSON.")
+@click.argument("scenario", type=PATH)
+@plot_option("Draw magnitude, phase and step response")
+@overwrite_option("the plot if it exists")
+@json_option
 def command(scenario: Path, plot: Path | None, overwrite: bool, as_json: bool) -> int:
     """Tell what the transfer function of SCENARIO's chain says, without a run.
 
@@ -31,11 +27,15 @@ def command(scenario: Path, plot: Path | None, overwrite: bool, as_json: bool) -
     group delay, attenuation; how far discrete models are from exact; what folds; and the verdicts
     on the checks that need no run. Exit status: 0 these hold, 1 one fails, 2 the input is wrong.
     """
+    from frontend_sim.measure.checks.impossible import refuse_impossible_checks
     from frontend_sim.measure.response import inspect_scenario
-    from frontend_sim.present import inspection_tables, plot_inspection
+    from frontend_sim.present import check_plot_target, inspection_tables, plot_inspection
     from frontend_sim.scenario import ScanScenario, load_scenario
 
     values = load_scenario(scenario)
+    refuse_impossible_checks(values, str(scenario))
+    if plot is not None:
+        check_plot_target(plot, overwrite)
     if isinstance(values, ScanScenario):
         return _inspect_scan(values, plot, overwrite, as_json)
     inspection = inspect_scenario(values)

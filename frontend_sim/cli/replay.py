@@ -8,23 +8,21 @@ from typing import TYPE_CHECKING, Any
 import click
 
 from frontend_sim.cli.console import print_json, print_notes, print_tables
+from frontend_sim.cli.options import json_option, output_option
+from frontend_sim.cli.status import FAILS, HOLDS, INCOMPLETE, INTERRUPTED
 
 if TYPE_CHECKING:
     from frontend_sim.replay import Preview, Replayed
 
-INCOMPLETE, INTERRUPTED = 3, 130
 SHOWN = 20
 """Runs that a preview lists for people."""
 
 
 @click.command("replay")
 @click.argument("source", nargs=-1, required=True, metavar="SET")
-@click.option(
-    "-o",
-    "--output",
-    type=click.Path(path_type=Path),
-    metavar="DIR",
-    help="Where records and table go; by default the set's name and _runs, in this folder.",
+@output_option(
+    "DIR",
+    "Where records and table go; by default the set's name and _runs, in this folder.",
 )
 @click.option(
     "--workers", type=click.IntRange(min=1), metavar="N", help="By default one for each core."
@@ -43,11 +41,16 @@ SHOWN = 20
 )
 @click.option(
     "--keep",
-    type=click.Choice(["nothing", "failures", "all"]),
+    type=click.Choice(["nothing", "around-failures", "failures", "all"]),
     help="Of which runs records are kept; by default what the set says, else failures.",
 )
+@click.option(
+    "--around",
+    metavar="TIME",
+    help='With --keep around-failures, how long before and behind each of them, "2 ms".',
+)
 @click.option("--dry-run", is_flag=True, help="Tell what would be run and how long it takes.")
-@click.option("--json", "as_json", is_flag=True, help="Print results as JSON.")
+@json_option
 def command(
     source: tuple[str, ...],
     output: Path | None,
@@ -55,6 +58,7 @@ def command(
     on: str,
     scheduler: str | None,
     keep: Any,
+    around: str | None,
     dry_run: bool,
     as_json: bool,
 ) -> int:
@@ -70,9 +74,11 @@ def command(
     from frontend_sim.replay import preview_set, replay_set
 
     given = source[0] if len(source) == 1 else list(source)
+    width = None if around is None else _time(around)
     if dry_run:
-        _tell_preview(preview_set(given, output, workers=workers, keep=keep), as_json)
-        return 0
+        found = preview_set(given, output, workers=workers, keep=keep, around=width)
+        _tell_preview(found, as_json)
+        return HOLDS
     with night_bar(source[0]) as report:
         done = replay_set(
             given,
@@ -81,10 +87,24 @@ def command(
             on=on,
             scheduler=scheduler,
             keep=keep,
+            around=width,
             report=report,
         )
     _tell(done, as_json)
     return _status(done)
+
+
+def _time(text: str) -> float:
+    from frontend_sim.errors import InputError, QuantityError
+    from frontend_sim.quantities import TIME, parse
+
+    try:
+        found = parse(text, TIME)
+    except QuantityError as error:
+        raise InputError(f"--around: {error}") from None
+    if found < 0.0:
+        raise InputError(f"--around: given {text!r}; a time before and behind is 0 s or more")
+    return found
 
 
 def _status(done: Replayed) -> int:
@@ -92,7 +112,7 @@ def _status(done: Replayed) -> int:
         return INTERRUPTED
     if not done.complete:
         return INCOMPLETE
-    return 1 if done.tally.verdict == "fails" else 0
+    return FAILS if done.tally.verdict == "fails" else HOLDS
 
 
 def _tell(done: Replayed, as_json: bool) -> None:

@@ -8,6 +8,8 @@ from typing import TYPE_CHECKING
 import click
 
 from frontend_sim.cli.console import print_notes
+from frontend_sim.cli.options import PATH, output_option, overwrite_option
+from frontend_sim.cli.status import FAILS, HOLDS
 
 if TYPE_CHECKING:
     from frontend_sim.archive import Record, ScanRecord
@@ -16,23 +18,19 @@ if TYPE_CHECKING:
 
 
 @click.command("report")
-@click.argument("run", type=click.Path(path_type=Path))
-@click.option(
-    "-o",
-    "--output",
-    type=click.Path(path_type=Path),
-    metavar="PAGE.html",
-    help="Where the page goes; by default the record's or the set's name with .html, in this "
-    "folder.",
+@click.argument("run", type=PATH)
+@output_option(
+    "PAGE.html",
+    "Where the page goes; by default the record's or the set's name with .html, in this folder.",
 )
 @click.option(
     "--since",
-    type=click.Path(path_type=Path),
+    type=PATH,
     metavar="EARLIER",
     help="Tell what changed since an earlier record or set; by default, of a set, since the night "
     "before in its directory.",
 )
-@click.option("--overwrite", is_flag=True, help="Replace the page if it exists.")
+@overwrite_option("the page if it exists")
 def command(run: Path, output: Path | None, since: Path | None, overwrite: bool) -> int:
     """Write one self-contained HTML page on RUN, a record or the directory of a set.
 
@@ -59,20 +57,15 @@ def _of_record(run: Path, since: Path | None) -> tuple[Page, int]:
             page = scan_page(record, comparison)
         else:
             page = record_page(record, comparison)
-        return page, 1 if page.tone == "fails" else 0
+        return page, FAILS if page.tone == "fails" else HOLDS
 
 
 def _changes(record: Record | ScanRecord, since: Path) -> RecordComparison:
-    from frontend_sim.archive import ScanRecord, open_record
-    from frontend_sim.comparison import compare_records, compare_scans
-    from frontend_sim.errors import InputError
+    from frontend_sim.archive import open_record
+    from frontend_sim.comparison import compare_runs
 
     with open_record(since) as earlier:
-        if isinstance(record, ScanRecord) and isinstance(earlier, ScanRecord):
-            return compare_scans(earlier, record)
-        if isinstance(record, ScanRecord) or isinstance(earlier, ScanRecord):
-            raise InputError(f"{since} and {record.path}: one is a scan; compare like with like")
-        return compare_records(earlier, record)
+        return compare_runs(earlier, record)
 
 
 def _of_set(run: Path, since: Path | None) -> tuple[Page, int]:

@@ -8,28 +8,22 @@ from typing import TYPE_CHECKING
 import click
 
 from frontend_sim.cli.console import print_json, print_notes, print_tables, progress_bar
+from frontend_sim.cli.options import PATH, json_option, output_option, overwrite_option, plot_option
+from frontend_sim.cli.status import FAILS, HOLDS
 
 if TYPE_CHECKING:
     from frontend_sim.archive import Record, ScanRecord
 
 
 @click.command("run")
-@click.argument("scenario", type=click.Path(path_type=Path))
-@click.option(
-    "-o",
-    "--output",
-    type=click.Path(path_type=Path),
-    metavar="RECORD.h5",
-    help="Where the record goes; by default the scenario's name with .h5, in this folder.",
+@click.argument("scenario", type=PATH)
+@output_option(
+    "RECORD.h5",
+    "Where the record goes; by default the scenario's name with .h5, in this folder.",
 )
-@click.option(
-    "--plot",
-    type=click.Path(path_type=Path),
-    metavar="FILE",
-    help="Also draw the run into FILE, .png or .svg.",
-)
-@click.option("--overwrite", is_flag=True, help="Replace the record and the plot if they exist.")
-@click.option("--json", "as_json", is_flag=True, help="Print results as JSON.")
+@plot_option("Also draw the run")
+@overwrite_option("the record and the plot if they exist")
+@json_option
 def command(
     scenario: Path, output: Path | None, plot: Path | None, overwrite: bool, as_json: bool
 ) -> int:
@@ -38,7 +32,7 @@ def command(
     Exit status: 0 all checks hold, 1 a check fails, 2 the input is wrong.
     """
     from frontend_sim.archive import open_record, record_run
-    from frontend_sim.measure.checks.scan import refuse_impossible_checks
+    from frontend_sim.measure.checks.impossible import refuse_impossible_checks
     from frontend_sim.present import check_channels_drawn, check_plot_target
     from frontend_sim.scenario import ScanScenario, load_scenario
     from frontend_sim.simulation import ScanSimulation, Simulation
@@ -60,7 +54,7 @@ def command(
         )
     with open_record(path) as record:
         _tell(record, target, plot, overwrite, as_json)
-        return 1 if record.verdict == "fails" else 0
+        return FAILS if record.verdict == "fails" else HOLDS
 
 
 def _tell(

@@ -7,21 +7,17 @@ from pathlib import Path
 import click
 
 from frontend_sim.cli.console import print_json, print_tables, progress_bar
+from frontend_sim.cli.options import PATH, json_option, overwrite_option, plot_option
 
 
 @click.command("sensitivity")
-@click.argument("scenario", type=click.Path(path_type=Path))
+@click.argument("scenario", type=PATH)
 @click.option(
     "--key", "keys", multiple=True, metavar="KEY", help="Change only this key; may be repeated."
 )
-@click.option(
-    "--plot",
-    type=click.Path(path_type=Path),
-    metavar="FILE",
-    help="Draw the bars into FILE, .png or .svg.",
-)
-@click.option("--overwrite", is_flag=True, help="Replace the plot if it exists.")
-@click.option("--json", "as_json", is_flag=True, help="Print results as JSON.")
+@plot_option("Draw the bars")
+@overwrite_option("the plot if it exists")
+@json_option
 def command(
     scenario: Path, keys: tuple[str, ...], plot: Path | None, overwrite: bool, as_json: bool
 ) -> None:

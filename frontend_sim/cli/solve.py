@@ -8,17 +8,17 @@ from typing import TYPE_CHECKING, Any
 import click
 
 from frontend_sim.cli.console import print_json, print_tables, progress_bar
+from frontend_sim.cli.options import PATH, json_option, output_option, overwrite_option, plot_option
+from frontend_sim.cli.status import FAILS, HOLDS, INTERRUPTED
 
 if TYPE_CHECKING:
     from frontend_sim.scenario.scan_scenario import AnyScenario
     from frontend_sim.solve import PassMap, Solution, Varied
     from frontend_sim.solve.solution import Goal
 
-INTERRUPTED = 130
-
 
 @click.command("solve")
-@click.argument("scenario", type=click.Path(path_type=Path))
+@click.argument("scenario", type=PATH)
 @click.option(
     "--vary",
     nargs=3,
@@ -47,21 +47,13 @@ INTERRUPTED = 130
     "--within", metavar="SHARE", help="How near to the boundary, as a share; left out, 0.01 %."
 )
 @click.option("--points", type=int, help="Values that are looked at first; 17, in a map 15 by 15.")
-@click.option(
-    "-o",
-    "--output",
-    type=click.Path(path_type=Path),
-    metavar="DIR",
-    help="Keep the two runs on either side of the boundary: passes.h5, fails.h5, and their .toml.",
+@output_option(
+    "DIR",
+    "Keep the two runs on either side of the boundary: passes.h5, fails.h5, and their .toml.",
 )
-@click.option(
-    "--plot",
-    type=click.Path(path_type=Path),
-    metavar="FILE",
-    help="Draw the margins, or the map, into FILE, .png or .svg.",
-)
-@click.option("--overwrite", is_flag=True, help="Replace files that are there.")
-@click.option("--json", "as_json", is_flag=True, help="Print results as JSON.")
+@plot_option("Draw the margins, or the map,")
+@overwrite_option("files that are there")
+@json_option
 def command(scenario: Path, vary: tuple[tuple[str, str, str], ...], **options: Any) -> int:
     """Find which values of a KEY of SCENARIO pass its checks.
 
@@ -154,7 +146,7 @@ def _solved(values: AnyScenario, key: Varied, file: Path, options: dict[str, Any
     _tell_solution(found, file, options)
     if not found.complete:
         return INTERRUPTED
-    return 0 if found.answer is not None else 1
+    return HOLDS if found.answer is not None else FAILS
 
 
 def _tell_solution(found: Solution, file: Path, options: dict[str, Any]) -> None:
@@ -194,7 +186,7 @@ def _mapped(values: AnyScenario, keys: list[Varied], name: str, options: dict[st
     _tell_map(found, options)
     if not found.complete:
         return INTERRUPTED
-    return 0 if found.passing else 1
+    return HOLDS if found.passing else FAILS
 
 
 def _tell_map(found: PassMap, options: dict[str, Any]) -> None:

@@ -8,12 +8,14 @@ from pathlib import Path
 import click
 
 from frontend_sim.cli.console import print_json
+from frontend_sim.cli.options import PATH, json_option
+from frontend_sim.cli.status import HOLDS, WRONG_INPUT
 from frontend_sim.errors import InputError
 
 
 @click.command("validate")
-@click.argument("files", nargs=-1, required=True, type=click.Path(path_type=Path))
-@click.option("--json", "as_json", is_flag=True, help="Print results as JSON.")
+@click.argument("files", nargs=-1, required=True, type=PATH)
+@json_option
 def command(files: tuple[Path, ...], as_json: bool) -> int:
     """Check FILES of scenarios and sets, with all that they read, and run nothing.
 
@@ -28,7 +30,7 @@ def command(files: tuple[Path, ...], as_json: bool) -> int:
             click.echo(f"error: {fault}", err=True)
         elif not as_json:
             click.echo(f"{file}: right")
-    return 2 if any(faults) else 0
+    return WRONG_INPUT if any(faults) else HOLDS
 
 
 def _fault_of(file: Path) -> str | None:
@@ -42,7 +44,7 @@ def _fault_of(file: Path) -> str | None:
             return None
         scenario = load_scenario(file)
         if scenario.check:  # the measures take a while to load
-            from frontend_sim.measure.checks.scan import refuse_impossible_checks
+            from frontend_sim.measure.checks.impossible import refuse_impossible_checks
 
             refuse_impossible_checks(scenario, str(file))
     except InputError as error:
@@ -53,9 +55,10 @@ def _fault_of(file: Path) -> str | None:
 def _is_set(file: Path) -> bool:
     """Return whether a file is a set; what cannot be read is told as a scenario is."""
     from frontend_sim.scenario.content import read_text
+    from frontend_sim.scenario.set_marks import looks_like_a_set
 
     try:
         data = tomllib.loads(read_text(file))
     except (InputError, ValueError, RecursionError):
         return False
-    return "stimulus" not in data and "adc" not in data and ("base" in data or "scenarios" in data)
+    return looks_like_a_set(data)

@@ -6,7 +6,7 @@ from frontend_sim.comparison.columns import ColumnDifference
 from frontend_sim.comparison.records import RecordComparison, compare_records
 from frontend_sim.comparison.reseeded import over_seeds
 from frontend_sim.comparison.results import ResultDifference
-from frontend_sim.comparison.scans import compare_scans
+from frontend_sim.comparison.scans import compare_runs, compare_scans
 from frontend_sim.comparison.series import SeriesDifference
 from frontend_sim.comparison.set_attribution import attribute_sets
 from frontend_sim.comparison.sets import SetComparison, compare_sets
@@ -26,6 +26,7 @@ __all__ = [
     "attribute_sets",
     "changes",
     "compare_records",
+    "compare_runs",
     "compare_scans",
     "compare_sets",
     "over_seeds",

@@ -3,22 +3,16 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Callable, Iterable, Mapping, Sequence
+from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass
 
 import numpy as np
 
+from frontend_sim.comparison.again import run_again
 from frontend_sim.comparison.changes import Change
 from frontend_sim.errors import InputError
-from frontend_sim.measure.checks import Keeper, evaluated
-from frontend_sim.measure.result import Result
-from frontend_sim.scenario.model import Scenario
+from frontend_sim.scenario.scan_scenario import AnyScenario
 from frontend_sim.scenario.vary import with_values
-from frontend_sim.simulation import Simulation
-
-PIN = "pin, mean"
-CODES = "codes, mean"
-"""Measures that every run has [LSB]."""
 
 MOST = 64
 """So many parameters are run one at a time; more changes are no longer a change of a circuit."""
@@ -62,12 +56,12 @@ class Attribution:
 
 
 def attribute(
-    first: Scenario,
-    second: Scenario,
+    first: AnyScenario,
+    second: AnyScenario,
     changed: Sequence[Change],
     progress: Callable[[float], None] | None = None,
 ) -> Attribution:
-    """Run the first scenario with each change alone, and with all of them.
+    """Run the first scenario, or scan, with each change alone, and with all of them.
 
     All runs have the seed of the first, so that noise takes no part as far as it can. What
     the changes do together beyond the sum is the interaction; it is told, not shared out.
@@ -95,7 +89,7 @@ def attribute(
     return Attribution(both, {name: total[name] for name in both}, tuple(shares))
 
 
-def _share(first: Scenario, change: Change, before: Mapping[str, tuple[float, str]]) -> Share:
+def _share(first: AnyScenario, change: Change, before: Mapping[str, tuple[float, str]]) -> Share:
     try:
         alone = with_values(first, {change.key: change.value})
         return Share(change.key, _less(_measured(alone), before))
@@ -103,24 +97,13 @@ def _share(first: Scenario, change: Change, before: Mapping[str, tuple[float, st
         return Share(change.key, {}, str(error))
 
 
-def _measured(scenario: Scenario) -> dict[str, tuple[float, str]]:
-    """Run a scenario; return measure -> value and unit. Raises InputError."""
-    simulation, keeper = Simulation(scenario), Keeper(scenario)
-    sums, count = np.zeros(2), 0
-    for block in simulation.blocks():
-        keeper.add(block)
-        sums += np.sum(block.pin), np.sum(block.voltage)
-        count += len(block.time)
-    lsb = scenario.adc.lsb
-    means = sums / (count * lsb) if count else np.full(2, math.nan)
-    found = {PIN: (float(means[0]), "LSB"), CODES: (float(means[1]), "LSB")}
-    return found | dict(_margins(evaluated(keeper, simulation)))
-
-
-def _margins(results: Iterable[Result]) -> Iterable[tuple[str, tuple[float, str]]]:
-    for result in results:
-        value = result.value if result.margin is None else result.margin
-        yield result.name, (math.nan if value is None else value, result.unit)
+def _measured(scenario: AnyScenario) -> dict[str, tuple[float, str]]:
+    """Run a scenario; return measure -> margin, or value, and unit. Raises InputError."""
+    found = {}
+    for row in run_again(scenario):
+        value = row.value if row.margin is None else row.margin
+        found[row.name] = math.nan if value is None else value, row.unit
+    return found
 
 
 def _less(

@@ -8,7 +8,8 @@ from dataclasses import dataclass
 from typing import Any
 
 from frontend_sim.errors import InputError
-from frontend_sim.scenario.key import find, item_name
+from frontend_sim.scenario.key import find
+from frontend_sim.scenario.walk import item_name
 from frontend_sim.values import Value
 
 TOLD_APART = ("title", "seed", "format")

@@ -15,6 +15,8 @@ Index = NDArray[np.int64]
 CLOCK = ("kind", "rate", "rate_error", "first", "aperture_delay", "averaging", "oversampling")
 """Keys of a converter that say when, by its clock, a conversion is due."""
 
+NOTHING_IN_COMMON = "the parts that the two records keep have no conversion in common"
+
 ROUNDING = 1e-9
 """Share of an interval within which two instants are one."""
 
@@ -52,6 +54,21 @@ def by_number(first: int, second: int) -> Common:
     longer = max(first, second)
     told = "by number" if first == second else f"by number, the first {count} of {longer}"
     return Common(index, index, count / longer if longer else 0.0, told)
+
+
+def by_numbers(first: Index, second: Index) -> Common:
+    """Pair conversions by their number in the whole run, where a record keeps a part of it.
+
+    Parameters
+    ----------
+    first, second : increasing numbers, shapes (K,) and (L,)
+    """
+    both, one, other = np.intersect1d(first, second, assume_unique=True, return_indices=True)
+    longer = max(len(first), len(second))
+    told = f"by number, {len(both)} that both keep of {len(first)} and {len(second)}"
+    if len(both) == 0:
+        told = NOTHING_IN_COMMON
+    return Common(one, other, len(both) / longer if longer else 0.0, told)
 
 
 def by_instant(first: Real, second: Real) -> Common:

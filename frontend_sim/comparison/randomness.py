@@ -26,15 +26,18 @@ def random_pin(resolved: Mapping[str, Any]) -> bool:
     """Return whether the voltage at the pin depends on the seed.
 
     It does if the stimulus is random, or the instants are. Noise of the circuit is not in the pin.
+    In a scan channels that share stages, or the sampling capacitor, see each other's stimulus.
 
     Parameters
     ----------
-    resolved : the scenario, as ``Scenario.resolved`` gives it
+    resolved : the scenario, as ``Scenario.resolved`` gives it, or the scan that it is a channel of
     """
     adc = resolved.get("adc", {})
     wander = adc.get("wander") or {}
+    shared = resolved.get("scan", {}).get("chain") or adc.get("input")
     return (
         _has_kind(resolved.get("stimulus"), "noise-burst")
+        or (bool(shared) and _has_kind(resolved.get("channel"), "noise-burst"))
         or bool(adc.get("aperture_jitter"))
         or wander.get("shape") == "gauss-markov"
     )

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Collection, Iterator, Mapping
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from pathlib import Path
 from typing import Any
 
@@ -13,7 +13,7 @@ from numpy.typing import NDArray
 from frontend_sim.archive import Record
 from frontend_sim.comparison.attribution import Attribution
 from frontend_sim.comparison.changes import Change, changes
-from frontend_sim.comparison.instants import Common, by_instant, by_number, same_clock
+from frontend_sim.comparison.instants import Common, by_instant, by_number, by_numbers, same_clock
 from frontend_sim.comparison.randomness import random_pin, slow_noise
 from frontend_sim.comparison.results import ResultDifference, result_differences
 from frontend_sim.comparison.series import (
@@ -79,7 +79,10 @@ class RecordComparison:
 
 
 def compare_records(
-    first: Record, second: Record, tolerances: Tolerances | None = None
+    first: Record,
+    second: Record,
+    tolerances: Tolerances | None = None,
+    false_alarms: float = FALSE_ALARMS,
 ) -> RecordComparison:
     """Compare two records.
 
@@ -91,6 +94,7 @@ def compare_records(
     Parameters
     ----------
     tolerances : how far a difference does not matter
+    false_alarms : how often equal scenarios may be found to differ by chance [1]
 
     Raises
     ------
@@ -98,7 +102,7 @@ def compare_records(
         If a record is damaged, or a tolerance does not fit.
     """
     allowed = tolerances or Tolerances()
-    pair = _Pair(first, second, allowed)
+    pair = _Pair(first, second, allowed, false_alarms)
     results = pair.results()
     allowed.refuse_unknown(row.name for row in results)
     return RecordComparison(
@@ -120,6 +124,7 @@ class _Pair:
     first: Record
     second: Record
     tolerances: Tolerances
+    false_alarms: float
 
     def __post_init__(self) -> None:
         self.resolved = (values_of(self.first), values_of(self.second))
@@ -128,7 +133,9 @@ class _Pair:
         self.low, self.high = float(self.adc["low"]), float(self.adc["high"])
         self.lsb = (self.high - self.low) / 2.0 ** int(self.adc["bits"])
         self.reseeded = self.first.seed != self.second.seed
-        self.moving_pin = self.reseeded and any(map(random_pin, self.resolved))
+        self.parts = any(run.stretches is not None for run in (self.first, self.second))
+        whole = [record.resolved["scenario"] for record in (self.first, self.second)]
+        self.moving_pin = self.reseeded and any(map(random_pin, [*self.resolved, *whole]))
 
     def changed(self) -> tuple[Change, ...]:
         files = tuple(
@@ -140,21 +147,33 @@ class _Pair:
     def series(self) -> Iterator[SeriesDifference]:
         waveforms = [name for name in self.first.waveform if name in self.second.waveform]
         tests = 2 + (1 + len(waveforms) if self.moving_pin else 0)
-        self.level = FALSE_ALARMS / tests
-        yield from self._conversions()
+        self.level = self.false_alarms / tests
+        yield from map(self._judged, self._conversions())
         if not waveforms:
             return
         times = self.first.waveform_time, self.second.waveform_time
         common = by_instant(*times)
         for name in waveforms:
-            yield self._waveform(name, common, times[0])
+            yield self._judged(self._waveform(name, common, times[0]))
+
+    def _judged(self, row: SeriesDifference) -> SeriesDifference:
+        """Return a difference, not judged where only parts are there and they cannot tell it.
+
+        What a part keeps was chosen by what failed, and so by chance, if other seeds are at work.
+        """
+        if not self.parts or (row.count and (row.shift is None or not self.reseeded)):
+            return row
+        why = "" if row.count == 0 else "; kept for what failed, so that chance is no measure"
+        return replace(row, finding="not judged", told=f"{row.told}{why}")
 
     def _conversions(self) -> Iterator[SeriesDifference]:
         times = self.first.time, self.second.time
-        if same_clock(self.adc, self.resolved[1]["adc"]):
-            common = by_number(len(times[0]), len(times[1]))
-        else:
+        if not same_clock(self.adc, self.resolved[1]["adc"]):
             common = by_instant(*times)
+        elif self.parts:
+            common = by_numbers(self.first.numbers, self.second.numbers)
+        else:
+            common = by_number(len(times[0]), len(times[1]))
         if len(common) == 0:
             yield not_comparable("pin", "LSB", common.told)
             yield not_comparable("codes", "LSB", common.told)
@@ -230,6 +249,7 @@ class _Pair:
         )
 
     def notes(self) -> Iterator[str]:
+        yield from part_notes(self.first, self.second)
         yield from version_notes(self.first.resolved, self.second.resolved)
         if self.adc["bits"] != self.resolved[1]["adc"]["bits"] or (self.low, self.high) != (
             self.resolved[1]["adc"]["low"],
@@ -241,6 +261,16 @@ class _Pair:
         alone = set(self.first.waveform) ^ set(self.second.waveform)
         if alone:
             yield f"waveforms that one of them alone has: {', '.join(sorted(alone))}"
+
+
+def part_notes(first: Record, second: Record) -> Iterator[str]:
+    """Tell which record keeps a part of its run alone, and what that means."""
+    for record in (first, second):
+        if record.stretches is not None:
+            yield (
+                f"{record.path} keeps {record.count} of {record.whole_count} conversions, around "
+                "what failed; signals are compared where both records have them"
+            )
 
 
 def values_of(record: Record) -> dict[str, Any]:

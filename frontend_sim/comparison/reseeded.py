@@ -8,20 +8,19 @@ from dataclasses import replace
 
 import numpy as np
 
+from frontend_sim.comparison.again import run_again
 from frontend_sim.comparison.results import ResultDifference
 from frontend_sim.comparison.series import judged
 from frontend_sim.errors import InputError
-from frontend_sim.measure.checks import evaluate_checks
 from frontend_sim.measure.statistics import independent_shift
 from frontend_sim.measure.statistics.mean_shift import FEWEST
 from frontend_sim.randomness import stream
-from frontend_sim.scenario.model import Scenario
-from frontend_sim.simulation import Simulation
+from frontend_sim.scenario.scan_scenario import AnyScenario
 
 
 def over_seeds(
-    first: Scenario,
-    second: Scenario,
+    first: AnyScenario,
+    second: AnyScenario,
     results: Sequence[ResultDifference],
     seeds: int,
     level: float,
@@ -62,8 +61,8 @@ def over_seeds(
     )
 
 
-def _values(scenario: Scenario, seed: int) -> dict[str, float]:
-    found = evaluate_checks(Simulation(scenario.model_copy(update={"seed": seed})))
+def _values(scenario: AnyScenario, seed: int) -> dict[str, float]:
+    found = run_again(scenario.model_copy(update={"seed": seed}))
     return {row.name: math.nan if row.value is None else row.value for row in found}
 
 

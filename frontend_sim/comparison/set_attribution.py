@@ -1,13 +1,13 @@
-"""What each change between two nights does alone, and the scenarios of a night."""
+"""What each change between two nights does alone."""
 
 from __future__ import annotations
 
-from collections.abc import Callable, Mapping
-from pathlib import Path
-from typing import TYPE_CHECKING, Any
+from collections.abc import Callable
+from typing import TYPE_CHECKING
 
 from frontend_sim.archive.set_table import SetTable
 from frontend_sim.comparison.attribution import Attribution, attribute
+from frontend_sim.comparison.base_scenario import scenario_of
 from frontend_sim.errors import InputError
 
 if TYPE_CHECKING:
@@ -38,13 +38,3 @@ def attribute_sets(
     if None in scenarios:
         raise InputError("the scenarios come from another version and cannot be run by this one")
     return attribute(*scenarios, comparison.changed, progress)
-
-
-def scenario_of(values: Mapping[str, Any]) -> Any:
-    """Return the scenario of a table, None where this version cannot build it."""
-    from frontend_sim.archive.rebuild import rebuild
-
-    try:
-        return rebuild(dict(values), {}, "", Path("set"))
-    except InputError:
-        return None

@@ -12,11 +12,11 @@ from numpy.typing import NDArray
 from frontend_sim.archive import open_single_record
 from frontend_sim.archive.set_table import SetTable
 from frontend_sim.comparison.attribution import Attribution
+from frontend_sim.comparison.base_scenario import scenario_of
 from frontend_sim.comparison.changes import Change, changes
 from frontend_sim.comparison.columns import ColumnDifference, column_difference, flips, runs
 from frontend_sim.comparison.records import FALSE_ALARMS, compare_records
 from frontend_sim.comparison.series import DIFFERENT
-from frontend_sim.comparison.set_attribution import scenario_of
 from frontend_sim.comparison.tolerance import Tolerances
 from frontend_sim.errors import InputError
 from frontend_sim.measure.checks.quiet import quiet_checks
@@ -219,12 +219,12 @@ class _Nights:
         """Compare the kept records of both nights, as many as there is time for."""
         kept = [row for row, name in enumerate(self.names) if self._both_kept(name)]
         step = -(-len(kept) // MOST_RECORDS) if kept else 1
-        picked = kept[::step]
-        rows = [self._signal(self.names[row]) for row in picked]
-        self.records = len(rows)
-        if not rows:
+        read = {row: self._signal(self.names[row]) for row in kept[::step]}
+        told = {row: signal for row, signal in read.items() if signal is not None}
+        self.records, picked = len(told), list(told)
+        if not told:
             return
-        pin, codes, certain = (np.array(row) for row in zip(*rows, strict=True))
+        pin, codes, certain = (np.array(row) for row in zip(*told.values(), strict=True))
         # Other seeds draw other parts, and with them another pin.
         whole = self._exact(bool(np.all(certain)))
         adc = self.first.base_values[0]["adc"]
@@ -242,13 +242,18 @@ class _Nights:
         paths = self.first.record_path(name), self.second.record_path(name)
         return all(path is not None and path.is_file() for path in paths)
 
-    def _signal(self, name: str) -> tuple[float, float, bool]:
-        """Return the mean difference of pin and codes [LSB], and whether the pin has no chance."""
+    def _signal(self, name: str) -> tuple[float, float, bool] | None:
+        """Return the mean difference of pin and codes [LSB], and whether the pin has no chance.
+
+        None where records keep parts of their runs that tell nothing of each other.
+        """
         paths = self.first.record_path(name), self.second.record_path(name)
         assert paths[0] is not None  # only what both have is looked at
         assert paths[1] is not None
         with open_single_record(paths[0]) as one, open_single_record(paths[1]) as other:
             found = {row.name: row for row in compare_records(one, other).series}
+        if found["codes"].finding == "not judged":
+            return None
         return found["pin"].mean, found["codes"].mean, found["pin"].shift is None
 
     def notes(self) -> Iterator[str]:

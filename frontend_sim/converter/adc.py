@@ -8,7 +8,13 @@ import numpy as np
 from pydantic import Field, model_validator
 
 from frontend_sim.converter.averaging import Averaging
-from frontend_sim.converter.base import MOST_JITTER, CodeFormat, Converter, Rounding
+from frontend_sim.converter.base import (
+    MOST_DEVIATIONS,
+    MOST_JITTER,
+    CodeFormat,
+    Converter,
+    Rounding,
+)
 from frontend_sim.converter.dither import Dither
 from frontend_sim.converter.input_network import InputNetwork
 from frontend_sim.converter.pattern import LookPattern
@@ -22,10 +28,6 @@ __all__ = ["MOST_JITTER", "Adc", "CodeFormat", "Rounding"]
 
 MOST_RESULT_BITS = 32
 """Bits of the widest averaged result."""
-
-
-MOST_DEVIATIONS = 12.0
-"""Standard deviations of jitter and of wander that an acquisition leaves room for."""
 
 
 class _Rate(Value):
@@ -88,8 +90,7 @@ class Adc(Converter, _Rate):
 
     @model_validator(mode="after")
     def _instants_keep_their_order(self) -> Self:
-        averaging = self.averaging
-        self._refuse_disorder("the conversion period" if averaging is None else "the interval")
+        self._refuse_disorder("the conversion period" if self.averaging is None else "the interval")
         return self
 
     @model_validator(mode="after")

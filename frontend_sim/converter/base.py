@@ -7,6 +7,7 @@ from abc import abstractmethod
 from pathlib import Path
 from typing import TYPE_CHECKING, Annotated, Literal, Self
 
+import numpy as np
 from pydantic import Field, model_validator
 
 from frontend_sim.converter.nonlinearity import Nonlinearity
@@ -34,11 +35,17 @@ MOST_JITTER = 0.05
 MOST_WANDER = 0.01
 """Largest rms change of the wander from one look to the next, as a share of the same."""
 
+MOST_DEVIATIONS = 12.0
+"""Standard deviations of jitter and of wander that are left room for."""
+
 MOST_RATE_ERROR = 0.1
 """A clock that is further off its rate is a wrong rate."""
 
 FEWEST_ROUNDINGS = 16.0
 """Least width of a code in units of the last place of the range's ends."""
+
+ROUNDINGS = 4.0 * math.ulp(1.0)
+"""An instant that is nearer to the end of a run than this share of its size lies at the end."""
 
 
 class Converter(Value):
@@ -144,10 +151,17 @@ class Converter(Value):
         """Return the number of the look that completes a code, numbers from 0."""
 
     def code_count(self, duration: float) -> int:
-        """Return the number of codes whose last look is nominally within [0, duration) [s]."""
-        from frontend_sim.converter.clock import even_count
+        """Return the number of codes whose last look is nominally within [0, duration) [s].
 
-        return even_count(self, duration)
+        For a converter without averaging these are all k with first + k/rate below the duration.
+        """
+        position = (duration - self.code_instant(0)) * self.true_rate
+        whole = max(abs(position), duration * self.true_rate, 1.0)
+        return max(math.ceil(position - ROUNDINGS * whole), 0)
+
+    def code_instant(self, code: int) -> float:
+        """Return the nominal instant of the look that completes a code [s]."""
+        return float(self.pattern.at(np.array([self.last_look(code)]))[0])
 
     @abstractmethod
     def digitizer(self, seed: int, temperature: float = REFERENCE_TEMPERATURE) -> Digitizer:

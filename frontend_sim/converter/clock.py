@@ -2,8 +2,6 @@
 
 from __future__ import annotations
 
-import math
-
 import numpy as np
 from numpy.typing import NDArray
 
@@ -16,41 +14,6 @@ FURTHEST = 0.44
 """Jitter is cut at this share of the shortest interval, almost nine standard deviations away at
 the least. Two neighbours may then come nearer by 88 % of it, and a wander takes 10 % more only at
 ten standard deviations, so looks keep their order."""
-
-
-def first_code_instant(adc: Converter) -> float:
-    """Return the nominal instant of the look that completes the first code [s]."""
-    return float(adc.pattern.at(np.array([adc.last_look(0)]))[0])
-
-
-def conversion_count(adc: Converter, duration: float) -> int:
-    """Return the number of codes whose last look is nominally within [0, duration).
-
-    For a converter without averaging these are all k with first + k/rate below the duration.
-    """
-    return adc.code_count(duration)
-
-
-def even_count(adc: Converter, duration: float) -> int:
-    """Return the same for a converter whose codes are evenly spaced."""
-    position = (duration - first_code_instant(adc)) * adc.true_rate
-    whole = max(abs(position), duration * adc.true_rate, 1.0)
-    return max(math.ceil(position - 4.0 * np.finfo(np.float64).eps * whole), 0)
-
-
-def uneven_count(adc: Converter, duration: float) -> int:
-    """Return the same for a converter whose codes are not evenly spaced."""
-
-    def instant(code: int) -> float:
-        return float(adc.pattern.at(np.array([adc.last_look(code)]))[0])
-
-    limit = duration - 4.0 * np.finfo(np.float64).eps * max(duration, abs(adc.pattern.first))
-    count = max(int((duration - instant(0)) * adc.true_rate), 0)
-    while count > 0 and instant(count - 1) >= limit:
-        count -= 1
-    while instant(count) < limit:
-        count += 1
-    return count
 
 
 def look_count(adc: Converter, codes: int) -> int:

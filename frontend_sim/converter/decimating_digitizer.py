@@ -3,16 +3,17 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
-from typing import Self
+from typing import TYPE_CHECKING, Self
 
 import numpy as np
 from numpy.typing import NDArray
 
-from frontend_sim.converter.clock import sampling_instants
-from frontend_sim.converter.digitizer import Converted, longest_interval
-from frontend_sim.converter.oversampling import OversamplingAdc
+from frontend_sim.converter.digitizer import Converted, Digitizer
 from frontend_sim.converter.quantizer import Quantizer, converted_voltage, read_back
 from frontend_sim.quantities import REFERENCE_TEMPERATURE
+
+if TYPE_CHECKING:
+    from frontend_sim.converter.oversampling import OversamplingAdc
 
 Real = NDArray[np.float64]
 Flags = NDArray[np.bool_]
@@ -38,23 +39,19 @@ class Window:
 
 
 @dataclass(frozen=True, eq=False)
-class DecimatingDigitizer:
-    """An oversampling converter ready to run, see ``Digitizer``.
+class DecimatingDigitizer(Digitizer):
+    """An oversampling converter ready to run.
 
     K R samples in a row are K blocks of R; a code is the sum over b of (weights of place b) times
     (block b). Blocks lie at fixed places and each product is summed by itself, so cuts never show.
 
     Parameters
     ----------
-    adc, seed, temperature : as ``Converter.digitizer`` takes them
-    quantizer : with its levels worked out
+    adc, seed, temperature, quantizer : see ``Digitizer``
     weights : of the samples at each of the K places, the oldest place first, shape (K, R)
     """
 
     adc: OversamplingAdc
-    seed: int
-    temperature: float
-    quantizer: Quantizer
     weights: Real
 
     @classmethod
@@ -74,22 +71,6 @@ class DecimatingDigitizer:
         padded = np.concatenate([np.zeros(adc.order * adc.ratio - len(taps)), taps])
         weights = padded.reshape(adc.order, adc.ratio)
         return cls(adc, seed, temperature, Quantizer.of(adc, seed), weights)
-
-    @property
-    def interval(self) -> float:
-        """Usual interval between looks [s]."""
-        return self.adc.pattern.closest
-
-    @property
-    def longest(self) -> float:
-        """Longest interval between looks, or from t = 0 to the first of them [s]."""
-        pattern = self.adc.pattern
-        first = self.adc.first + self.adc.aperture_delay
-        return longest_interval(first, pattern.widest, pattern.closest)
-
-    def instants(self, start: int, stop: int) -> Real:
-        """Return the true instants of modulator samples start to stop - 1 [s]."""
-        return sampling_instants(self.adc, start, stop, self.seed)
 
     def start(self) -> Window:
         """Return the state before the first sample: nothing is held."""

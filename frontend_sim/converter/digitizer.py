@@ -2,11 +2,16 @@
 
 from __future__ import annotations
 
+from abc import ABC, abstractmethod
 from dataclasses import dataclass
-from typing import Any, Protocol
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
+
+from frontend_sim.converter.base import MOST_DEVIATIONS, Converter
+from frontend_sim.converter.clock import sampling_instants
+from frontend_sim.converter.quantizer import Quantizer
 
 Real = NDArray[np.float64]
 Codes = NDArray[np.int64]
@@ -34,27 +39,49 @@ class Converted:
     overrange: NDArray[np.bool_]
 
 
-class Digitizer(Protocol):
+@dataclass(frozen=True, eq=False)
+class Digitizer(ABC):
     """A converter with its tables read, its seed and its temperature.
 
     The engine asks when the pin is looked at, finds the pin's voltage there, and hands it over in
     order of time; any cut of the looks gives the same codes, bit by bit.
+
+    Parameters
+    ----------
+    adc, seed, temperature : as ``Converter.digitizer`` takes them
+    quantizer : with its levels worked out
     """
+
+    adc: Converter
+    seed: int
+    temperature: float
+    quantizer: Quantizer
 
     @property
     def interval(self) -> float:
         """Usual interval between looks [s]."""
+        return self.adc.pattern.closest
 
     @property
     def longest(self) -> float:
-        """Longest interval between looks, or from t = 0 to the first of them [s]."""
+        """Longest interval without a look, from t = 0 on, jitter and wander in it [s]."""
+        adc, pattern = self.adc, self.adc.pattern
+        first, widest = adc.first + adc.aperture_delay, pattern.widest
+        if adc.wander is not None:
+            # A slow wander may be far ahead at the start, whatever the interval.
+            first += float(adc.wander.deviation(pattern, 0, 1, self.seed)[0])
+            widest += MOST_DEVIATIONS * adc.wander.change(widest)
+        return max(first, widest) + pattern.closest
 
     def instants(self, start: int, stop: int) -> Real:
         """Return the true instants of looks start to stop - 1, increasing [s]."""
+        return sampling_instants(self.adc, start, stop, self.seed)
 
+    @abstractmethod
     def start(self) -> Any:
         """Return the state before the first look."""
 
+    @abstractmethod
     def convert(
         self, state: Any, start: int, instants: Real, pin: Real, noise: Real | None = None
     ) -> tuple[Any, Converted]:
@@ -67,14 +94,3 @@ class Digitizer(Protocol):
         pin : exact voltage at the pin there, shape (K,) [V]
         noise : what the circuit adds to it, shape (K,) or (1,) [V]
         """
-
-
-def longest_interval(first: float, widest: float, closest: float) -> float:
-    """Return how long a run can be without a look, jitter and wander in it [s].
-
-    Parameters
-    ----------
-    first : nominal instant of the first look, with its delay [s]
-    widest, closest : nominal intervals between looks [s]
-    """
-    return max(first, widest) + closest

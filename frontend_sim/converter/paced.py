@@ -7,8 +7,9 @@ from typing import Self
 from pydantic import Field, model_validator
 
 from frontend_sim.converter.adc import Adc
-from frontend_sim.converter.clock import uneven_count
+from frontend_sim.converter.base import ROUNDINGS
 from frontend_sim.converter.pattern import LookPattern
+from frontend_sim.values import validated
 
 
 class PacedAdc(Adc):
@@ -43,7 +44,7 @@ class PacedAdc(Adc):
         """
         given = {name: getattr(adc, name) for name in type(adc).model_fields}
         rate = cls._mean_rate(rhythm, adc.looks, adc.tempo)
-        return cls.model_validate({**given, "rate": rate, "first": rhythm.first, "rhythm": rhythm})
+        return validated(cls, {**given, "rate": rate, "first": rhythm.first, "rhythm": rhythm})
 
     @property
     def pattern(self) -> LookPattern:
@@ -52,4 +53,10 @@ class PacedAdc(Adc):
 
     def code_count(self, duration: float) -> int:
         """Return the number of codes whose last look is nominally within [0, duration) [s]."""
-        return uneven_count(self, duration)
+        limit = duration - ROUNDINGS * max(duration, abs(self.pattern.first))
+        count = max(int((duration - self.code_instant(0)) * self.true_rate), 0)
+        while count > 0 and self.code_instant(count - 1) >= limit:
+            count -= 1
+        while self.code_instant(count) < limit:
+            count += 1
+        return count

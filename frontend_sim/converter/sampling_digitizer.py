@@ -3,16 +3,17 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
-from typing import Self
+from typing import TYPE_CHECKING, Self
 
 import numpy as np
 from numpy.typing import NDArray
 
-from frontend_sim.converter.adc import Adc
-from frontend_sim.converter.clock import sampling_instants
-from frontend_sim.converter.digitizer import Converted, longest_interval
+from frontend_sim.converter.digitizer import Converted, Digitizer
 from frontend_sim.converter.quantizer import Quantizer, converted_voltage, read_back
 from frontend_sim.quantities import REFERENCE_TEMPERATURE
+
+if TYPE_CHECKING:
+    from frontend_sim.converter.adc import Adc
 
 Real = NDArray[np.float64]
 Codes = NDArray[np.int64]
@@ -28,19 +29,10 @@ class Rest:
 
 
 @dataclass(frozen=True, eq=False)
-class SamplingDigitizer:
-    """A sampling converter ready to run, see ``Digitizer``.
-
-    Parameters
-    ----------
-    adc, seed, temperature : as ``Converter.digitizer`` takes them
-    quantizer : with its levels worked out
-    """
+class SamplingDigitizer(Digitizer):
+    """A sampling converter ready to run."""
 
     adc: Adc
-    seed: int
-    temperature: float
-    quantizer: Quantizer
 
     @classmethod
     def of(cls, adc: Adc, seed: int, temperature: float = REFERENCE_TEMPERATURE) -> Self:
@@ -48,22 +40,6 @@ class SamplingDigitizer:
         if adc.reference is not None:
             adc.reference.level(temperature)
         return cls(adc, seed, temperature, Quantizer.of(adc, seed))
-
-    @property
-    def interval(self) -> float:
-        """Usual interval between looks [s]."""
-        return self.adc.pattern.closest
-
-    @property
-    def longest(self) -> float:
-        """Longest interval between looks, or from t = 0 to the first of them [s]."""
-        pattern = self.adc.pattern
-        first = self.adc.first + self.adc.aperture_delay
-        return longest_interval(first, pattern.widest, pattern.closest)
-
-    def instants(self, start: int, stop: int) -> Real:
-        """Return the true instants of looks start to stop - 1 [s]."""
-        return sampling_instants(self.adc, start, stop, self.seed)
 
     def start(self) -> Rest:
         """Return the state before the first look: nothing is left over."""

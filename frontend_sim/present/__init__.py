@@ -1,6 +1,6 @@
 """Tables, plots and pages, made from finished results."""
 
-from frontend_sim.present.figure_file import check_plot_target
+from frontend_sim.present.figure_file import check_plot_target, save_figure
 from frontend_sim.present.inspection_plot import inspection_figure, plot_inspection
 from frontend_sim.present.inspection_table import inspection_tables
 from frontend_sim.present.map_plot import map_figure, plot_map
@@ -40,6 +40,7 @@ __all__ = [
     "run_summary",
     "run_table",
     "run_tables",
+    "save_figure",
     "scan_figure",
     "scan_inspection_figure",
     "scan_summary",

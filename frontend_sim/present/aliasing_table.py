@@ -9,9 +9,12 @@ from typing import TYPE_CHECKING, Any
 from frontend_sim.errors import InputError
 from frontend_sim.measure.aliasing import Alias, AliasError, Aliasing, aliasing_of
 from frontend_sim.measure.aliasing.recorded import MOST_POINTS
-from frontend_sim.present.numbers import engineering, fixed, plain, quantity
+from frontend_sim.present.numbers import difference, engineering, fixed, plain
+from frontend_sim.quantities import SignalUnit
 from frontend_sim.scenario.model import Scenario
+from frontend_sim.scenario.told_unit import told_unit
 from frontend_sim.simulation.finished import Finished
+from frontend_sim.simulation.stretches import stretches_of
 
 if TYPE_CHECKING:
     from rich.table import Table
@@ -41,7 +44,7 @@ def aliasing_table(aliasing: Aliasing, error: AliasError | None = None) -> Table
     table.add_column("source", overflow="fold")
     for name in ("at", "lands at", "arrives", "in the codes", "dBFS", "less by"):
         table.add_column(name, justify="right")
-    unit = aliasing.scenario.stimulus_unit
+    unit = told_unit(aliasing.scenario)
     for alias in rows[:MOST_ROWS]:
         table.add_row(Text(alias.source), *_cells(alias, unit))
     told = []
@@ -55,7 +58,9 @@ def aliasing_table(aliasing: Aliasing, error: AliasError | None = None) -> Table
 
 
 def run_alias_error(run: Finished, aliasing: Aliasing) -> AliasError | None:
-    """Return the alias error of a run, where it is exact and no long work; else None."""
+    """Return the alias error of a whole run, where it is exact and no long work; else None."""
+    if stretches_of(run) is not None:
+        return None
     if any(part.whole for part in aliasing.parts) or not 0 < len(run.time) <= MOST_CODES:
         return None
     end = float(run.time[-1])
@@ -90,7 +95,7 @@ def aliasing_in(subject: Scenario | Finished) -> Aliasing | None:
         return None
 
 
-def _cells(alias: Alias, unit: str) -> list[str]:
+def _cells(alias: Alias, unit: SignalUnit) -> list[str]:
     lands, where = engineering(alias.lands, "Hz", 4), engineering(alias.frequency, "Hz", 4)
     if alias.up_to > alias.frequency:
         end = engineering(alias.up_to, "Hz", 4) if math.isfinite(alias.up_to) else "ever higher"
@@ -104,7 +109,7 @@ def _cells(alias: Alias, unit: str) -> list[str]:
     return [
         where,
         lands,
-        quantity(alias.arrives, unit, 4) + measure,
+        difference(alias.arrives, unit, 4) + measure,
         f"{plain(alias.lsb, 3)} LSB{measure}",
         full,
         down,

@@ -11,7 +11,8 @@ from frontend_sim.measure.response.gain import Corner, decibel
 from frontend_sim.measure.response.inspection import Inspection
 from frontend_sim.measure.response.large_signal import LargeSignal
 from frontend_sim.measure.response.pin_level import PinLevel
-from frontend_sim.present.numbers import engineering, fixed, level, plain
+from frontend_sim.measure.response.referred import Referred
+from frontend_sim.present.numbers import engineering, fixed, level, plain, quantity
 
 if TYPE_CHECKING:
     from rich.table import Table
@@ -69,7 +70,7 @@ def _corners(corners: Sequence[Corner]) -> str:
 
 def level_rows(inspection: Inspection) -> list[Row]:
     """Return rows about the constant at the pin and the range in units of the stimulus."""
-    found, unit = inspection.level, inspection.unit
+    found, unit = inspection.level, inspection.referred.unit
     rows = []
     if found.offset is not None and found.lsb is not None:
         zero = level(found.zero, unit)
@@ -81,8 +82,20 @@ def level_rows(inspection: Inspection) -> list[Row]:
     for value, end, held in ends:
         if value is not None:
             name = f"pin reaches {engineering(end, 'V')} at a stimulus of"
-            but = f", but a rail of {held} comes first" if held else ""
+            but = f", but a limit of {held} comes first" if held else ""
             rows.append((name, level(value, unit, 4) + but))
+    return rows
+
+
+def referred_rows(found: Referred) -> list[Row]:
+    """Return rows about an LSB and all noise as a stimulus, where that is not the pin itself."""
+    rows = []
+    if found.unit.si != "V" or found.gain != 1.0:
+        name = found.unit.difference
+        if found.lsb is not None:
+            rows.append(("one LSB, referred to the stimulus", quantity(found.lsb, name)))
+        if found.noise:
+            rows.append(("noise of all sources, likewise, rms", quantity(found.noise, name)))
     return rows
 
 

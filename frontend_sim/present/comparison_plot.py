@@ -2,110 +2,169 @@
 
 from __future__ import annotations
 
-import os
-from pathlib import Path
+from collections.abc import Iterator, Sequence
+from dataclasses import dataclass
 from textwrap import fill
 from typing import TYPE_CHECKING
 
 import numpy as np
+from numpy.typing import NDArray
 
-from frontend_sim.archive import Record
-from frontend_sim.comparison import RecordComparison
-from frontend_sim.comparison.instants import Common, by_instant, by_number
+from frontend_sim.archive import Record, ScanRecord
+from frontend_sim.comparison import RecordComparison, SeriesDifference
+from frontend_sim.comparison.again import named
+from frontend_sim.comparison.instants import by_instant, by_numbers
 from frontend_sim.present.colours import BLUE, LIMIT, MARK, ORANGE
-from frontend_sim.present.decimation import shown_points
-from frontend_sim.present.figure_file import check_plot_target, legend_text, new_figure, save_figure
+from frontend_sim.present.decimation import broken, shown_points
+from frontend_sim.present.drawing import draw_grid, legend_text, literal, new_figure
 from frontend_sim.present.numbers import plain, prefix_of
+from frontend_sim.simulation.stretches import breaks_in
 
 if TYPE_CHECKING:
     from matplotlib.axes import Axes
     from matplotlib.figure import Figure
 
 
-def plot_comparison(
-    comparison: RecordComparison,
-    first: Record,
-    second: Record,
-    path: str | os.PathLike[str],
-    overwrite: bool = False,
-) -> Path:
-    """Draw both records and their difference into a PNG or SVG file.
-
-    Raises
-    ------
-    OutputError
-        If the path cannot be written as asked for.
-    """
-    check_plot_target(path, overwrite)
-    return save_figure(comparison_figure(comparison, first, second), path, overwrite)
+Real = NDArray[np.float64]
 
 
-def comparison_figure(comparison: RecordComparison, first: Record, second: Record) -> Figure:
+def comparison_figure(
+    comparison: RecordComparison, first: Record | ScanRecord, second: Record | ScanRecord
+) -> Figure:
     """Return the figure: pins of both, the difference of the pins, the difference of the codes.
 
-    Differences are drawn at instants that both runs have; the tolerance is a band.
+    Differences are drawn at instants that both runs have; the tolerance is a band. Of scans each
+    channel is a row.
     """
-    figure = new_figure(10.0, 7.6)
-    axes = list(figure.subplots(3, 1, height_ratios=[2.4, 1.2, 1.2], sharex=True))
-    times = first.time, second.time
-    last = max((float(time[-1]) for time in times if len(time)), default=0.0)
-    factor, letter = prefix_of(last)
-    _draw_both(axes[0], (first, second), comparison, factor)
-    pin = next((row for row in comparison.series if row.name == "pin"), None)
-    if pin is None or pin.count == 0:
-        for panel in axes[1:]:
-            panel.set_axis_off()
-            panel.text(0.5, 0.5, "no common instants", ha="center", transform=panel.transAxes)
+    pairs = dict(_pairs(comparison, first, second))
+    factor, letter = prefix_of(max(pair.last for pair in pairs.values()))
+    if len(pairs) == 1:
+        figure = new_figure(10.0, 7.6)
+        rows = figure.subplots(3, 1, height_ratios=[2.4, 1.2, 1.2], sharex=True).reshape(1, 3)
+        lowest, width = rows[0, 2:], 110
     else:
-        numbered = pin.told.startswith("by number")
-        common = by_number(len(times[0]), len(times[1])) if numbered else by_instant(*times)
-        _draw_differences(axes[1:], (first, second), common, factor)
-        for panel in axes[1:]:
-            _draw_tolerance(panel, pin.tolerance)
-    axes[-1].set_xlabel(f"time [{letter}s]")
+        figure = new_figure(16.0, 1.4 + 2.7 * len(pairs))
+        rows = figure.subplots(len(pairs), 3, width_ratios=[1.5, 1.0, 1.0], sharex=True)
+        lowest, width = rows[-1], 180
+    for panels, (name, pair) in zip(rows, pairs.items(), strict=True):
+        pair.draw(panels, factor)
+        panels[0].set_title(literal(name), loc="right", fontsize="medium")
+    for panel in lowest:
+        panel.set_xlabel(f"time [{letter}s]")
+    _name_files(rows[0, 0], comparison)
+    figure.align_ylabels()
     told = "; ".join(comparison.alarms) or "no difference beyond noise and tolerance"
-    title = f"{fill(comparison.title or 'Two runs', 90)}\n{fill(told, 110)}"
-    figure.suptitle(title.replace("$", r"\$"))  # a dollar sign would begin a formula
-    for each in axes:
-        each.grid(True, color="0.9", linewidth=0.6)
-        each.set_axisbelow(True)
+    title = f"{fill(comparison.title or 'Two runs', 90)}\n{fill(told, width)}"
+    figure.suptitle(literal(title))
     return figure
 
 
-def _draw_both(
-    axes: Axes, runs: tuple[Record, Record], comparison: RecordComparison, factor: float
+def _pairs(
+    comparison: RecordComparison, first: Record | ScanRecord, second: Record | ScanRecord
+) -> Iterator[tuple[str, _Pair]]:
+    """Return the runs of both records by channel; a record of one channel has no name for it."""
+    series = {row.name: row for row in comparison.series}
+    one, other = (
+        run.channels if isinstance(run, ScanRecord) else {"": run} for run in (first, second)
+    )
+    for name in dict.fromkeys((*one, *other)):
+        pin = series[named(name, "pin") if name else "pin"]
+        yield name, _Pair((one.get(name), other.get(name)), pin)
+
+
+def _name_files(panel: Axes, comparison: RecordComparison) -> None:
+    """Tell above a panel which file has which colour."""
+    from matplotlib.lines import Line2D
+
+    files = (comparison.first, comparison.second)
+    lines = [
+        Line2D([], [], color=colour, linewidth=width, label=legend_text(file.name))
+        for file, (colour, width) in zip(files, _STYLES, strict=True)
+    ]
+    panel.legend(
+        handles=lines, loc="lower left", bbox_to_anchor=(0.0, 1.0), ncols=2, fontsize="small",
+        frameon=False,
+    )  # fmt: skip
+
+
+_STYLES = ((BLUE, 2.2), (ORANGE, 1.0))
+"""Colour and width of the lines of the first and the second run."""
+
+
+@dataclass(frozen=True, eq=False)
+class _Pair:
+    """Two runs side by side.
+
+    Parameters
+    ----------
+    runs : first and second; None where a scan does not have the channel
+    pin : how the pins differ
+    """
+
+    runs: tuple[Record | None, Record | None]
+    pin: SeriesDifference
+
+    @property
+    def last(self) -> float:
+        """Instant of the last conversion [s]."""
+        times = (run.time for run in self.runs if run is not None)
+        return max((float(time[-1]) for time in times if len(time)), default=0.0)
+
+    def draw(self, panels: Sequence[Axes], factor: float) -> None:
+        """Draw the pins, their difference and that of the codes into three panels.
+
+        Parameters
+        ----------
+        factor : units of the axis of time in a second
+        """
+        draw_grid(*panels)
+        self._draw_pins(panels[0], factor)
+        first, second = self.runs
+        for panel in panels[1:] if self.pin.count == 0 else ():
+            panel.set_yticks([])
+            panel.text(0.5, 0.5, self.pin.told, ha="center", transform=panel.transAxes)
+        if self.pin.count and first is not None and second is not None:
+            for panel, (noun, time, difference) in zip(
+                panels[1:], self._differences(first, second), strict=True
+            ):
+                _draw_difference(panel, noun, factor * time, difference, self.pin.tolerance)
+
+    def _draw_pins(self, panel: Axes, factor: float) -> None:
+        pins = [None if run is None else run.pin for run in self.runs]
+        largest = max(float(np.max(np.abs(pin), initial=0.0)) for pin in pins if pin is not None)
+        volts, letter = prefix_of(largest)
+        for run, pin, (colour, width) in zip(self.runs, pins, _STYLES, strict=True):
+            if run is not None and pin is not None:
+                time, pin = broken(breaks_in(run, run.time), factor * run.time, pin)
+                kept = shown_points(pin)
+                panel.plot(time[kept], volts * pin[kept], color=colour, linewidth=width)
+        panel.set_ylabel(f"pin [{letter}V]")
+
+    def _differences(self, first: Record, second: Record) -> Iterator[tuple[str, Real, Real]]:
+        """Return what differs, at common instants [s], by how much [LSB]."""
+        times = first.time, second.time
+        numbered = self.pin.told.startswith("by number")
+        common = by_numbers(first.numbers, second.numbers) if numbered else by_instant(*times)
+        lsb, time = first.scenario.adc.lsb, times[0][common.first]
+        pins = second.pin[common.second] - first.pin[common.first]
+        codes = second.voltage[common.second] - first.voltage[common.first]
+        breaks = np.union1d(breaks_in(first, time), breaks_in(second, time))
+        time, pins, codes = broken(breaks, time, pins / lsb, codes / lsb)
+        yield "pins", time, pins
+        yield "codes", time, codes
+
+
+def _draw_difference(
+    panel: Axes, noun: str, time: Real, difference: Real, tolerance: float
 ) -> None:
-    largest = max(float(np.max(np.abs(run.pin), initial=0.0)) for run in runs)
-    volts, letter = prefix_of(largest)
-    names = (comparison.first, comparison.second)
-    for run, name, colour, width in zip(runs, names, (BLUE, ORANGE), (2.2, 1.0), strict=True):
-        pin = run.pin
-        kept = shown_points(pin)
-        label = legend_text(str(name.name))
-        axes.plot(factor * run.time[kept], volts * pin[kept], color=colour, linewidth=width,
-                  label=label)  # fmt: skip
-    axes.set_ylabel(f"pin [{letter}V]")
-    axes.legend(loc="lower left", bbox_to_anchor=(0.0, 1.0), ncols=2, fontsize="small",
-                frameon=False)  # fmt: skip
-
-
-def _draw_differences(
-    axes: list[Axes], runs: tuple[Record, Record], common: Common, factor: float
-) -> None:
-    first, second = runs
-    lsb = first.scenario.adc.lsb
-    time = factor * first.time[common.first]
-    for panel, field, noun in zip(axes, ("pin", "voltage"), ("pins", "codes"), strict=True):
-        one, other = getattr(first, field)[common.first], getattr(second, field)[common.second]
-        difference = (other - one) / lsb
-        kept = shown_points(difference)
-        panel.plot(time[kept], difference[kept], color=MARK, linewidth=0.8)
-        mean = float(np.mean(difference))
-        panel.axhline(mean, color=ORANGE, linewidth=1.0, label=f"mean {plain(mean, 3)} LSB")
-        panel.set_ylabel(f"{noun}, second −\nfirst [LSB]")
-        panel.legend(loc="upper right", fontsize="small", framealpha=0.9)
-
-
-def _draw_tolerance(axes: Axes, tolerance: float) -> None:
+    kept = shown_points(difference)
+    panel.plot(time[kept], difference[kept], color=MARK, linewidth=0.8)
+    mean = float(np.nanmean(difference))
+    panel.axhline(mean, color=ORANGE, linewidth=1.0, label=f"mean {plain(mean, 3)} LSB")
+    panel.set_ylabel(f"{noun}, second −\nfirst [LSB]")
+    panel.legend(
+        loc="lower right", bbox_to_anchor=(1.0, 1.0), fontsize="small", frameon=False,
+        borderaxespad=0.1,
+    )  # fmt: skip
     for limit in (-tolerance, tolerance) if tolerance > 0.0 else ():
-        axes.axhline(limit, color=LIMIT, linestyle="--", linewidth=1.0)
+        panel.axhline(limit, color=LIMIT, linestyle="--", linewidth=1.0)

@@ -20,7 +20,7 @@ def shown_points(values: Real, columns: int = COLUMNS) -> NDArray[np.int64]:
 
     Parameters
     ----------
-    values : equally spaced in time, shape (K,)
+    values : equally spaced in time, shape (K,); NaN breaks the line, and is kept
     """
     count = len(values)
     if count <= 4 * columns:
@@ -29,15 +29,28 @@ def shown_points(values: Real, columns: int = COLUMNS) -> NDArray[np.int64]:
     whole = int(np.min(np.diff(edges)))
     # Columns hold `whole` or `whole + 1` points: the table repeats the last point of short ones.
     table = np.minimum(edges[:-1, None] + np.arange(whole + 1), edges[1:, None] - 1)
-    found = values[table]
-    rows = np.arange(columns)
+    found, breaks = values[table], np.isnan(values)
+    rows, broken = np.arange(columns), breaks[table]
     kept = [
         edges[:-1],
-        table[rows, np.argmin(found, axis=1)],
-        table[rows, np.argmax(found, axis=1)],
+        table[rows, np.argmin(np.where(broken, np.inf, found), axis=1)],
+        table[rows, np.argmax(np.where(broken, -np.inf, found), axis=1)],
         edges[1:] - 1,
+        np.flatnonzero(breaks),
     ]
     return np.unique(np.concatenate(kept))
+
+
+def broken(breaks: NDArray[np.int64], time: Real, *values: Real) -> tuple[Real, ...]:
+    """Return series in time with a NaN before each break, over which no line leads.
+
+    Parameters
+    ----------
+    breaks : numbers of the points that begin anew
+    time, values : shapes (K,)
+    """
+    rows = (np.insert(row, breaks, np.nan) for row in values)
+    return np.insert(time, breaks, time[breaks]), *rows
 
 
 def shown_flags(flags: NDArray[np.bool_], columns: int = COLUMNS) -> NDArray[np.int64]:

@@ -9,6 +9,7 @@ from frontend_sim.errors import InputError
 from frontend_sim.measure.checks.subject import Subject
 from frontend_sim.measure.checks.total_error import ROUNDING, total_of
 from frontend_sim.present.colours import LIMIT, MARK
+from frontend_sim.present.drawing import literal
 from frontend_sim.present.named_bars import Bar, draw_named_bars, short
 from frontend_sim.present.numbers import plain
 from frontend_sim.quantities import Limit
@@ -72,7 +73,7 @@ def _view(check: TotalErrorCheck, label: str, subject: Subject) -> ErrorView:
 def draw_error(axes: Axes, view: ErrorView) -> None:
     """Draw rms and peak of every part, and of the total, with the limit where it is in view."""
     draw_named_bars(axes, view.bars, ("rms", "peak"))
-    title = view.label.replace("$", r"\$")
+    title = literal(view.label)
     told = f"limit of the {view.of}: {plain(view.limit, 3)} LSB"
     if view.limit <= axes.get_xlim()[1]:
         axes.axvline(view.limit, color=LIMIT, linestyle="--", linewidth=1.0, zorder=4.5)

@@ -6,7 +6,7 @@ import os
 from pathlib import Path
 from typing import TYPE_CHECKING
 
-from frontend_sim.archive.target import HOW_TO_REPLACE, new_file, writing
+from frontend_sim.archive.target import file_target, new_file, writing
 from frontend_sim.errors import OutputError
 
 if TYPE_CHECKING:
@@ -33,44 +33,6 @@ def check_plot_target(path: str | os.PathLike[str], overwrite: bool = False) -> 
             f"{path}: a plot is written as {' or '.join(FORMATS)}; give a name that ends so"
         )
     return file_target(path, overwrite)
-
-
-def file_target(path: str | os.PathLike[str], overwrite: bool) -> Path:
-    """Return where a file goes, links followed.
-
-    Raises
-    ------
-    OutputError
-        If the directory is not there, the path is no place for a file, or a file is there that
-        must not be replaced.
-    """
-    with writing(path):
-        target = Path(os.path.realpath(path))
-        if target.is_dir():
-            raise OutputError(f"{path} is a directory; give the name of a file in it")
-        if target.exists() and not target.is_file():
-            raise OutputError(f"{path} is not a regular file; give the name of a new file")
-        if target.exists() and not overwrite:
-            raise OutputError(f"{path} exists; {HOW_TO_REPLACE}")
-        if not target.parent.is_dir():
-            raise OutputError(
-                f"{path}: there is no directory {target.parent}; make it first, or give another "
-                "place"
-            )
-    return target
-
-
-def new_figure(width: float, height: float) -> Figure:
-    """Return an empty figure of a size in inches, free of the state of ``pyplot``."""
-    from matplotlib.figure import Figure
-
-    return Figure(figsize=(width, height), layout="constrained")
-
-
-def legend_text(name: str) -> str:
-    """Return a name as a legend shows it: no formula, and not left out for a leading underscore."""
-    text = name.replace("$", r"\$")
-    return f" {text}" if text.startswith("_") else text
 
 
 def save_figure(figure: Figure, path: str | os.PathLike[str], overwrite: bool = False) -> Path:

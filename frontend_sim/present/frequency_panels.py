@@ -48,7 +48,7 @@ def draw_magnitude(axes: Axes, view: FrequencyView) -> None:
         )  # fmt: skip
     low, high = _limits(view)
     axes.set_ylim(low, high)
-    one = view.inspection.unit
+    one = view.inspection.referred.unit.difference
     axes.set_ylabel("magnitude [dB]" if one == "V" else f"magnitude [dB re 1 {per_unit(one)}]")
     _draw_rates(axes, view, labels=True)
     _draw_corners(axes, view)
@@ -152,7 +152,8 @@ def _draw_corners(axes: Axes, view: FrequencyView, labels: bool = True) -> None:
         axes.axvline(corner.frequency, color=MARK, linestyle=":", linewidth=1.2, zorder=2)
     if not labels or not measured.corners:
         return
-    level = 20.0 * math.log10(measured.largest.value) - 10.0 * math.log10(2.0)
+    largest = view.inspection.referred.unit.size * measured.largest.value
+    level = 20.0 * math.log10(largest) - 10.0 * math.log10(2.0)
     axes.axhline(level, color=MARK, linestyle=":", linewidth=0.8, zorder=2)
     for corner in _labelled(view):
         left, below = _label_side(view, corner)

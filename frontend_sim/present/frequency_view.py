@@ -37,7 +37,7 @@ class ModelCurve:
 
 @dataclass(frozen=True, eq=False)
 class FrequencyView:
-    """The curves of the frequency panels.
+    """The curves of the frequency panels, for the stimulus in the unit that the file has for it.
 
     Parameters
     ----------
@@ -122,7 +122,7 @@ def _range(inspection: Inspection) -> tuple[float, float]:
 def _response(inspection: Inspection, frequency: Real) -> NDArray[np.complex128]:
     chain = inspection.response.chain.without_delay()
     with np.errstate(divide="ignore", invalid="ignore"):
-        return chain.response(frequency)
+        return np.asarray(inspection.referred.unit.size * chain.response(frequency))
 
 
 def _decibel(size: Real) -> Real:
@@ -136,7 +136,7 @@ def _curves(inspection: Inspection, frequency: Real) -> list[ModelCurve]:
         shown = frequency[frequency < 0.5 * model.rate]
         if len(shown) == 0:
             continue
-        discrete = model.response(shown)
+        discrete = inspection.referred.unit.size * model.response(shown)
         with np.errstate(divide="ignore", invalid="ignore"):
             beside = np.angle(discrete / _response(inspection, shown))
         phase = phase_of(inspection.response.roots, shown) + np.degrees(beside)

@@ -8,7 +8,8 @@ from textwrap import fill
 from typing import TYPE_CHECKING
 
 from frontend_sim.measure.response.inspection import Inspection
-from frontend_sim.present.figure_file import check_plot_target, new_figure, save_figure
+from frontend_sim.present.drawing import draw_grid, literal, new_figure
+from frontend_sim.present.figure_file import save_figure
 from frontend_sim.present.frequency_panels import draw_delay, draw_magnitude, draw_phase
 from frontend_sim.present.frequency_view import FrequencyView
 from frontend_sim.present.noise_panel import draw_noise
@@ -16,7 +17,6 @@ from frontend_sim.present.step_panels import draw_distance, draw_step
 from frontend_sim.present.step_view import StepView
 
 if TYPE_CHECKING:
-    from matplotlib.axes import Axes
     from matplotlib.figure import Figure
 
 
@@ -29,17 +29,8 @@ def plot_inspection(
     and the rate; right the response to a unit step, and how it comes near to its end, with the
     bands that it settles to, and the noise budget. Discrete models at the grid rate are laid over.
 
-    Parameters
-    ----------
-    path : ends in .png or .svg
-    overwrite : whether a file that is there may be replaced
-
-    Raises
-    ------
-    OutputError
-        If the path cannot be written as asked for.
+    Parameters and errors as ``plot_run``.
     """
-    check_plot_target(path, overwrite)
     return save_figure(inspection_figure(inspection), path, overwrite)
 
 
@@ -60,13 +51,10 @@ def inspection_figure(inspection: Inspection) -> Figure:
     if inspection.noise is not None and noisy:
         draw_noise(others[0], inspection.noise)
     figure.suptitle(_title(inspection))
-    panels: list[Axes] = [magnitude, phase, delay, step, distance, *others]
-    for each in panels:
-        each.grid(True, color="0.9", linewidth=0.6)
-        each.set_axisbelow(True)
+    draw_grid(magnitude, phase, delay, step, distance, *others)
     return figure
 
 
 def _title(inspection: Inspection) -> str:
-    title = fill(inspection.title or "Chain without a title", 110).replace("$", r"\$")
+    title = literal(fill(inspection.title or "Chain without a title", 110))
     return f"{title}\nResponse of the chain from the stimulus to the converter's pin"

@@ -14,10 +14,12 @@ from frontend_sim.present.amplifier_table import (
     amplifier_table,
     large_signal_rows,
     level_rows,
+    referred_rows,
 )
 from frontend_sim.present.filter_rows import filter_rows
 from frontend_sim.present.noise_table import loading_table, noise_table
-from frontend_sim.present.numbers import engineering, fixed, per_unit, plain, quantity
+from frontend_sim.present.numbers import difference, engineering, fixed, per_unit, plain
+from frontend_sim.quantities import SignalUnit
 
 if TYPE_CHECKING:
     from rich.table import Table
@@ -29,7 +31,7 @@ def inspection_tables(inspection: Inspection) -> tuple[Table, ...]:
         _pairs(f"Step response of the chain: {inspection.time.shape.word}", _step_rows(inspection)),
         _pairs("Frequency response", _frequency_rows(inspection)),
     ]
-    if rows := level_rows(inspection):
+    if rows := [*level_rows(inspection), *referred_rows(inspection.referred)]:
         tables.append(_pairs("Levels at rest", rows))
     if inspection.poles:
         tables.append(_pole_table(inspection))
@@ -64,16 +66,21 @@ def _pairs(title: str, rows: list[tuple[str, str]]) -> Table:
 
 def _step_rows(inspection: Inspection) -> list[tuple[str, str]]:
     time, shape = inspection.time, inspection.time.shape
+    unit = inspection.referred.unit
+
+    def response(value: float) -> str:
+        return engineering(value * unit.size, "V", 4)
+
     rows = []
     if time.delay > 0.0:
         rows.append(("pure delay, counted in the times below", engineering(time.delay, "s", 4)))
-    one = f"1 {inspection.unit}".rstrip()
-    rows.append((f"at the start, for a step of {one}", engineering(time.start, "V", 4)))
-    rows.append(("in the end", _end_text(time.end)))
+    one = f"1 {unit.difference}".rstrip()
+    rows.append((f"at the start, for a step of {one}", response(time.start)))
+    rows.append(("in the end", _end_text(time.end) or response(time.end or 0.0)))
     if shape.peak is not None and shape.peak_time is not None:
         when = shape.peak_time
         at = f"at {engineering(when, 's', 4)}" if math.isfinite(when) else "in the end"
-        rows.append(("largest excursion", f"{engineering(shape.peak, 'V', 4)} {at}"))
+        rows.append(("largest excursion", f"{response(shape.peak)} {at}"))
     if shape.overshoot is not None:
         of = "the end value" if shape.reference == "end value" else "the start value"
         rows.append((f"overshoot, of {of}", fixed(100.0 * shape.overshoot, 2, "%")))
@@ -87,16 +94,17 @@ def _step_rows(inspection: Inspection) -> list[tuple[str, str]]:
             name += f" of the {shape.reference}"
         else:
             name += f" of {inspection.adc.bits} bits, step of "
-            name += quantity(time.full_scale_step, inspection.unit, 4)
+            name += difference(time.full_scale_step, unit, 4)
         if settling.time is not None:
             rows.append((name, f"after {engineering(settling.time, 's', 4)}"))
     return rows
 
 
 def _end_text(end: float | None) -> str:
+    """Return what becomes of a response that has no end, "" where it has one."""
     if end is None:
         return "rings for ever"
-    return engineering(end, "V", 4) if math.isfinite(end) else "drifts without bound"
+    return "" if math.isfinite(end) else "drifts without bound"
 
 
 def _frequency_rows(inspection: Inspection) -> list[tuple[str, str]]:
@@ -104,7 +112,7 @@ def _frequency_rows(inspection: Inspection) -> list[tuple[str, str]]:
     where = {0.0: "at zero frequency", math.inf: "at high frequencies"}.get(
         largest.frequency, f"at {engineering(largest.frequency, 'Hz', 4)}"
     )
-    rows = [("largest gain", f"{_gain(largest.value, inspection.unit)} {where}")]
+    rows = [("largest gain", f"{_gain(largest.value, inspection.referred.unit)} {where}")]
     rows += [
         (f"-3 dB corner, {corner.side}", engineering(corner.frequency, "Hz", 4))
         for corner in frequency.corners
@@ -134,9 +142,9 @@ def _attenuation_row(attenuation: Attenuation) -> tuple[str, str]:
     return name, ", ".join(parts) or f"gain {plain(attenuation.gain)}"
 
 
-def _gain(value: float, unit: str) -> str:
-    if unit != "V":
-        return engineering(value, per_unit(unit), 4)
+def _gain(value: float, unit: SignalUnit) -> str:
+    if unit.si != "V":
+        return engineering(value * unit.size, per_unit(unit.difference), 4)
     return f"{plain(value)} ({_db(decibel(value))})" if 0.0 < value < math.inf else plain(value)
 
 

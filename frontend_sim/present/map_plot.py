@@ -10,8 +10,9 @@ import numpy as np
 from numpy.typing import NDArray
 
 from frontend_sim.present.colours import BLACK, BLUE, ORANGE, PURPLE, SKY_BLUE, VERMILION, YELLOW
-from frontend_sim.present.figure_file import check_plot_target, new_figure, save_figure
-from frontend_sim.present.solution_plot import label_axis
+from frontend_sim.present.drawing import legend_text, new_figure
+from frontend_sim.present.figure_file import save_figure
+from frontend_sim.present.key_axis import label_axis
 
 if TYPE_CHECKING:
     from matplotlib.artist import Artist
@@ -35,17 +36,8 @@ def plot_map(found: PassMap, path: str | os.PathLike[str], overwrite: bool = Fal
     Each pair of values is a tile: one colour for all that pass, and one for each check that stops
     the others. A cross marks the scenario as it is.
 
-    Parameters
-    ----------
-    path : ends in .png or .svg
-    overwrite : whether a file that is there may be replaced
-
-    Raises
-    ------
-    OutputError
-        If the path cannot be written as asked for.
+    Parameters and errors as ``plot_run``.
     """
-    check_plot_target(path, overwrite)
     return save_figure(map_figure(found), path, overwrite)
 
 
@@ -106,7 +98,7 @@ def _colours(found: PassMap) -> dict[str, str]:
 
 def _told(name: str) -> str:
     fixed = ("passes", "cannot be run", "not tried")
-    return name if name in fixed else f"{name} fails".replace("$", r"\$")
+    return name if name in fixed else legend_text(f"{name} fails")
 
 
 def _within(found: PassMap, across: float, up: float) -> bool:

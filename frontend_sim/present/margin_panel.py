@@ -8,6 +8,7 @@ from typing import TYPE_CHECKING
 
 from frontend_sim.measure.result import Result
 from frontend_sim.present.colours import GREEN, LIMIT, MARK
+from frontend_sim.present.drawing import literal
 from frontend_sim.present.result_table import SIGNS, checked_text
 
 if TYPE_CHECKING:
@@ -46,7 +47,7 @@ def draw_margins(axes: Axes, rows: Sequence[Result]) -> None:
     colours = [GREEN if row.verdict == "holds" else LIMIT for row in rows]
     axes.barh(places, shares, color=colours, height=0.6, zorder=3)
     axes.axvline(0.0, color=MARK, linewidth=1.0, zorder=4)
-    axes.set_yticks(places, [row.name.replace("$", r"\$") for row in rows], fontsize="small")
+    axes.set_yticks(places, [literal(row.name) for row in rows], fontsize="small")
     axes.set_ylim(max(len(rows), FEWEST) - 0.5, -0.5)
     axes.set_xlim(-105.0, 105.0)
     axes.set_xlabel("margin [% of the limit]")

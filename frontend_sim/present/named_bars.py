@@ -6,6 +6,7 @@ from collections.abc import Sequence
 from typing import TYPE_CHECKING
 
 from frontend_sim.present.colours import BLUE, SKY_BLUE
+from frontend_sim.present.drawing import literal
 
 if TYPE_CHECKING:
     from matplotlib.axes import Axes
@@ -47,4 +48,4 @@ def draw_named_bars(axes: Axes, bars: Sequence[Bar], names: tuple[str, str]) -> 
 def short(name: str) -> str:
     """Return a name that fits above a bar, with nothing in it that begins a formula."""
     cut = name if len(name) <= SHORT else f"{name[: SHORT - 1]}…"
-    return cut.replace("$", r"\$")
+    return literal(cut)

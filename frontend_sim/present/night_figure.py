@@ -9,7 +9,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from frontend_sim.present.colours import BLUE, LIMIT, MARK, ORANGE
-from frontend_sim.present.figure_file import new_figure
+from frontend_sim.present.drawing import axis_scale, draw_grid, literal, new_figure
 from frontend_sim.present.numbers import prefix_of
 from frontend_sim.present.result_table import PREFIXED
 from frontend_sim.summary import CheckSummary, NightSummary
@@ -38,27 +38,21 @@ def night_figure(summary: NightSummary, check: CheckSummary) -> Figure:
     _draw_histogram(panels[0], summary, check, factor, label)
     if cause is not None:
         _draw_cause(panels[1], summary, check, numbers[cause], cause, factor, label)
-    for panel in panels:
-        panel.grid(True, color="0.9", linewidth=0.6)
-        panel.set_axisbelow(True)
+    draw_grid(*panels)
     return figure
 
 
 def _scaled(check: CheckSummary) -> tuple[float, str]:
     """Return the factor of the axis of values and its label."""
-    name = check.name.replace("$", r"\$")
-    if check.unit in ("", "1"):
-        return 100.0, f"{name} [%]"
-    if check.unit not in PREFIXED:
-        return 1.0, f"{name} [{check.unit}]"
-    known = check.column.value[np.isfinite(check.column.value)]
-    factor, letter = prefix_of(float(np.max(np.abs(known), initial=0.0)))
-    return factor, f"{name} [{letter}{check.unit}]"
+    factor, unit = axis_scale(check.unit, check.column.value)
+    return factor, f"{literal(check.name)} [{unit}]"
 
 
 def _draw_histogram(
     axes: Axes, summary: NightSummary, check: CheckSummary, factor: float, label: str
 ) -> None:
+    from matplotlib.ticker import MaxNLocator
+
     value, drawn = check.column.value, summary.population.drawn
     known = np.isfinite(value)
     sets = [(known & drawn, "draws", BLUE), (known & ~drawn, "other runs", ORANGE)]
@@ -69,15 +63,18 @@ def _draw_histogram(
             [row for row, _, _ in rows], bins=edges, stacked=True,
             color=[colour for _, _, colour in rows], label=[name for _, name, _ in rows],
         )  # fmt: skip
-    limits = np.unique(check.column.limit[np.isfinite(check.column.limit)])
-    for place, limit in enumerate(limits[:8].tolist()):
-        axes.axvline(factor * limit, color=LIMIT, linestyle="--", linewidth=1.4,
-                     label=f"limit, {check.column.bound}" if place == 0 else None)  # fmt: skip
+    limits, runs = np.unique(check.column.limit, return_index=True)
+    told = [check.column.bound_in(run) for run in runs[:8].tolist()]
+    for place, (limit, bound) in enumerate(zip(limits.tolist(), told, strict=False)):
+        if np.isfinite(limit):
+            axes.axvline(factor * limit, color=LIMIT, linestyle="--", linewidth=1.4,
+                         label=None if bound in told[:place] else f"limit, {bound}")  # fmt: skip
     lost = int(np.count_nonzero(~known & (check.column.verdict != "")))
     if lost:
         axes.set_title(f"{lost} runs without a finite value are not shown", fontsize="small")
     axes.set_xlabel(label)
     axes.set_ylabel("runs")
+    axes.yaxis.set_major_locator(MaxNLocator(integer=True))
     axes.legend(fontsize="small", framealpha=0.9)
 
 
@@ -127,7 +124,7 @@ def _draw_cause(
         axes.plot([scale * parameter[check.worst]], [factor * value[check.worst]], marker="D",
                   linestyle="none", markersize=7, fillstyle="none", color=MARK,
                   label="worst run")  # fmt: skip
-    named = key.replace("$", r"\$")
+    named = literal(key)
     axes.set_xlabel(f"{named} [{letter}{unit}]" if unit not in ("", "1") else named)
     axes.set_ylabel(label)
     axes.legend(fontsize="small", framealpha=0.9)

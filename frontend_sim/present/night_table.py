@@ -3,12 +3,13 @@
 from __future__ import annotations
 
 import math
+from collections.abc import Sequence
 from typing import TYPE_CHECKING, Any, Literal
 
-from frontend_sim.measure.statistics import PassRate, Percentile
+from frontend_sim.measure.statistics import PassRate, Percentile, RankCorrelation
 from frontend_sim.present.numbers import fixed
 from frontend_sim.present.result_table import STYLES, quantity
-from frontend_sim.summary import CheckSummary, NightSummary
+from frontend_sim.summary import CheckSummary, MeasureSummary, NightSummary
 
 FEWEST = 3
 """With fewer runs there is no spread to tell."""
@@ -73,6 +74,7 @@ def night_data(summary: NightSummary) -> dict[str, Any]:
         "yield": rate_data(summary.rate),
         "yield_group": summary.group,
         "checks": [_check_data(summary, check) for check in summary.checks],
+        "measures": [_measure_data(summary, measure) for measure in summary.measures],
         "errors": [{"run": name, "error": error} for name, error in summary.errors],
         "warnings": list(summary.warnings),
         "digest": summary.table.digest,
@@ -108,15 +110,37 @@ def _check_data(summary: NightSummary, check: CheckSummary) -> dict[str, Any]:
         if limits is None
         else {key: _finite(value) for key, value in vars(limits).items()},
         "draws_needed": None if check.rate is None else check.draws_needed,
-        "causes": [
-            {
-                "parameter": cause.parameter,
-                "rank_correlation": cause.coefficient,
-                "probability": cause.probability,
-            }
-            for cause in check.causes
-        ],
+        "causes": _cause_data(check.causes),
     }
+
+
+def _measure_data(summary: NightSummary, measure: MeasureSummary) -> dict[str, Any]:
+    drawn = bool(summary.population.drawn.any())
+    return {
+        "name": measure.name,
+        "unit": measure.unit,
+        "runs": measure.runs,
+        "group": measure.group,
+        **{
+            which: {
+                "run": summary.table.names[run], "value": _finite(float(measure.values[run])),
+            }
+            for which, run in (("lowest", measure.lowest), ("highest", measure.highest))
+        },
+        "percentiles": [_percentile_data(each, drawn) for each in measure.percentiles],
+        "causes": _cause_data(measure.causes),
+    }  # fmt: skip
+
+
+def _cause_data(causes: Sequence[RankCorrelation]) -> list[dict[str, Any]]:
+    return [
+        {
+            "parameter": cause.parameter,
+            "rank_correlation": cause.coefficient,
+            "probability": cause.probability,
+        }
+        for cause in causes
+    ]
 
 
 def _percentile_data(percentile: Percentile, drawn: bool) -> dict[str, float | None]:

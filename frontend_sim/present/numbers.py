@@ -5,10 +5,8 @@ from __future__ import annotations
 import math
 from decimal import ROUND_HALF_EVEN, Context, Decimal
 
-from frontend_sim.quantities.units import PREFIXES
-
-ZERO_CELSIUS = 273.15
-"""0 degC [K]."""
+from frontend_sim.quantities import SignalUnit
+from frontend_sim.quantities.units import PREFIXES, symbols
 
 _LETTERS = {0: ""} | {power.adjusted(): letter for letter, (_, power) in PREFIXES.items()}
 
@@ -46,22 +44,31 @@ def quantity(value: float, unit: str, digits: int = 3) -> str:
     Parameters
     ----------
     value : in ``unit``; a temperature is a difference
-    unit : SI unit of a signal, empty for a share
+    unit : of a signal, without a prefix of its own; empty for a share
     """
-    if unit in ("", "K", "m/s^2"):
-        return f"{plain(value, digits)} {unit}".rstrip()
-    return engineering(value, unit, digits)
+    if takes_prefix(unit):
+        return engineering(value, unit, digits)
+    return f"{plain(value, digits)} {unit}".rstrip()
 
 
-def level(value: float, unit: str, digits: int = 3) -> str:
-    """Return a value of a signal as ``quantity`` does, a temperature in degrees."""
-    if unit == "K":
-        return f"{plain(value - ZERO_CELSIUS, digits)} degC"
-    return quantity(value, unit, digits)
+def takes_prefix(unit: str) -> bool:
+    """Return whether a unit is written with prefixes; nobody writes millikelvin of a signal."""
+    known = symbols().get(unit)
+    return known is not None and known.unit.prefixed and unit != "K"
+
+
+def level(value: float, unit: SignalUnit, digits: int = 3) -> str:
+    """Return a value of a signal, in SI, in a unit of it: ``"25.0 degC"``."""
+    return quantity(unit.number(value), unit.name, digits)
+
+
+def difference(value: float, unit: SignalUnit, digits: int = 3) -> str:
+    """Return a difference of two values of a signal, in SI, in a unit of it: ``"5.00 K"``."""
+    return quantity(unit.number_of_difference(value), unit.difference, digits)
 
 
 def per_unit(unit: str) -> str:
-    """Return the unit of volts for one of an SI unit: ``V/V``, ``V/(m/s^2)``."""
+    """Return the unit of volts for one of a unit: ``V/V``, ``V/(m/s^2)``, ``V/g``."""
     return f"V/({unit})" if "/" in unit else f"V/{unit}" if unit else "V"
 
 
@@ -86,9 +93,9 @@ def fixed(value: float, decimals: int, unit: str = "") -> str:
     return f"{text} {unit}".rstrip()
 
 
-def counted(count: int, noun: str) -> str:
-    """Return a number of things, ``"1 check"``, ``"3 checks"``."""
-    return f"{count} {noun}" if count == 1 else f"{count} {noun}s"
+def counted(count: int, noun: str, several: str = "") -> str:
+    """Return a number of things, ``"1 check"``, ``"3 checks"``; ``several`` of an odd plural."""
+    return f"{count} {noun}" if count == 1 else f"{count} {several or f'{noun}s'}"
 
 
 def prefix_of(largest: float) -> tuple[float, str]:

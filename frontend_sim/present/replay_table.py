@@ -76,7 +76,7 @@ def _add(rows: Table, check: CheckColumn, table: SetTable) -> None:
         Text(check.name),
         Text(f"{fails:,} of {len(judged):,}", style=STYLES["fails" if fails else "holds"]),
         quantity(float(check.value[worst]), unit),
-        SIGNS.get(check.bound, "") + quantity(float(check.limit[worst]), unit),
+        SIGNS.get(check.bound_in(worst), "") + quantity(float(check.limit[worst]), unit),
         quantity(float(check.margin[worst]), unit),
         Text(table.names[worst]),
     )

@@ -4,17 +4,19 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from dataclasses import dataclass, field
-from typing import TYPE_CHECKING, Any
+from typing import TYPE_CHECKING, Any, Self
 
 import numpy as np
 from numpy.typing import NDArray
 
 from frontend_sim.converter import AnyAdc
 from frontend_sim.present.colours import BLUE, LIMIT, MARK, ORANGE, SERIES
-from frontend_sim.present.decimation import shown_flags, shown_points
-from frontend_sim.present.figure_file import legend_text
-from frontend_sim.present.numbers import ZERO_CELSIUS, engineering, prefix_of
-from frontend_sim.quantities import SIGNALS
+from frontend_sim.present.decimation import broken, shown_flags, shown_points
+from frontend_sim.present.drawing import legend_text
+from frontend_sim.present.numbers import engineering, prefix_of, takes_prefix
+from frontend_sim.quantities import SIGNALS, SignalUnit
+from frontend_sim.simulation.finished import RunLike
+from frontend_sim.simulation.stretches import breaks_in
 
 if TYPE_CHECKING:
     from matplotlib.axes import Axes
@@ -48,6 +50,7 @@ class Conversions:
     overrange : shape (K,)
     between_time, between : the pin between conversions too, where its waveform is kept; empty
         where it is not; shape (W,), [V]
+    held : of the sampling capacitor, shape (K,); empty where there is none [V]
     """
 
     adc: AnyAdc
@@ -57,6 +60,27 @@ class Conversions:
     overrange: NDArray[np.bool_]
     between_time: Real = field(default_factory=lambda: np.empty(0))
     between: Real = field(default_factory=lambda: np.empty(0))
+    held: Real = field(default_factory=lambda: np.empty(0))
+
+    @classmethod
+    def of(cls, run: RunLike, factor: float, between: str = "") -> Self:
+        """Return the conversions of a run, or of the part of it that a record keeps.
+
+        Parameters
+        ----------
+        factor : units of the axis of time in a second
+        between : name of the point whose waveform is the pin between conversions; "" for none
+        """
+        breaks = breaks_in(run, run.time)
+        time, pin, voltage = broken(breaks, factor * run.time, run.pin, run.voltage)
+        conversions = time, pin, voltage, np.insert(run.overrange, breaks, False)
+        held = broken(breaks, run.time, run.held)[1] if len(run.held) else run.held
+        if between not in run.waveform:
+            return cls(run.scenario.adc, *conversions, held=held)
+        waveform_time = run.waveform_time
+        gaps = breaks_in(run, waveform_time)
+        at, waveform = broken(gaps, factor * waveform_time, run.waveform[between])
+        return cls(run.scenario.adc, *conversions, at, waveform, held)
 
     @property
     def few(self) -> bool:
@@ -101,8 +125,8 @@ def _draw_pin(axes: Axes, conversions: Conversions, factor: float) -> None:
 def _draw_limits(axes: Axes, conversions: Conversions, factor: float) -> None:
     """Draw the limits of the range; where the signal is small beside it, tell of them instead."""
     adc, both = conversions.adc, (conversions.pin, conversions.voltage)
-    lowest = min(float(np.min(values, initial=np.inf)) for values in both)
-    highest = max(float(np.max(values, initial=-np.inf)) for values in both)
+    lowest = min(float(np.nanmin(values, initial=np.inf)) for values in both)
+    highest = max(float(np.nanmax(values, initial=-np.inf)) for values in both)
     style: dict[str, Any] = {"color": LIMIT, "linestyle": "--", "linewidth": 1.0}
     text = f"ADC range {engineering(adc.low, 'V')} to {engineering(adc.high, 'V')}"
     small = 0.0 < highest - lowest < NARROW * (adc.high - adc.low)
@@ -127,39 +151,57 @@ def _add_code_axis(axes: Axes, adc: AnyAdc, factor: float) -> None:
 
 
 def draw_difference(axes: Axes, conversions: Conversions) -> None:
-    """Draw what the codes read back lie above the pin; clipped conversions are left out."""
-    inside = ~conversions.overrange
-    difference = (conversions.voltage[inside] - conversions.pin[inside]) / conversions.adc.lsb
-    dots: dict[str, Any] = {"marker": "o", "markersize": 3.0, "linestyle": "none"}
-    style = dots if conversions.few else {"linewidth": 0.7}
-    kept = shown_points(difference)
-    at = np.flatnonzero(inside)[kept]
-    # No line leads over what is left out.
-    gaps = np.flatnonzero(np.diff(np.cumsum(conversions.overrange)[at])) + 1
-    time = np.insert(conversions.time[at], gaps, conversions.time[at][gaps])
-    axes.plot(time, np.insert(difference[kept], gaps, np.nan), color=MARK, **style)
+    """Draw what the codes read back lie above the pin; clipped conversions are left out.
+
+    Where a sampling capacitor is converted, what it held is a second curve: what of the difference
+    the acquisition makes, and what noise and rounding do.
+    """
+    held = conversions.held
+    wide = 2.5 if len(held) else 1.0  # seen on both sides of what lies above it
+    _draw_above_pin(axes, conversions, conversions.voltage, wide, color=MARK, label="codes")
     axes.axhline(0.0, color="black", linewidth=0.6)
     axes.set_ylabel("codes − pin\n[LSB]")
-    if not np.all(inside):
+    if len(held):
+        label = "held by the sampling capacitor"
+        _draw_above_pin(axes, conversions, held, 1.0, color=BLUE, label=label)
+        axes.set_ylabel("less the pin\n[LSB]")
+        _add_legend(axes)
+    if np.any(conversions.overrange):
         axes.set_title(
             "without conversions beyond the range", loc="right", fontsize="small", color=LIMIT
         )
 
 
-def draw_waveforms(axes: Axes, time: Real, waveform: Mapping[str, Real], unit: str = "V") -> None:
+def _draw_above_pin(
+    axes: Axes, conversions: Conversions, values: Real, width: float, **style: Any
+) -> None:
+    inside = ~conversions.overrange
+    difference = (values[inside] - conversions.pin[inside]) / conversions.adc.lsb
+    dots: dict[str, Any] = {"marker": "o", "markersize": 3.0 * width, "linestyle": "none"}
+    style |= dots if conversions.few else {"linewidth": 0.7 * width}
+    kept = shown_points(difference)
+    at = np.flatnonzero(inside)[kept]
+    # No line leads over what is left out.
+    gaps = np.flatnonzero(np.diff(np.cumsum(conversions.overrange)[at])) + 1
+    time = np.insert(conversions.time[at], gaps, conversions.time[at][gaps])
+    axes.plot(time, np.insert(difference[kept], gaps, np.nan), **style)
+
+
+def draw_waveforms(axes: Axes, time: Real, waveform: Mapping[str, Real], unit: SignalUnit) -> None:
     """Draw the waveforms of points that are kept and have the same unit.
 
     Parameters
     ----------
-    waveform : name of the point -> values, in the SI unit ``unit``
+    waveform : name of the point -> values, in SI
+    unit : that they are drawn in
     """
     shown, largest = {}, 0.0
     for name in waveform:
-        values = waveform[name] - (ZERO_CELSIUS if unit == "K" else 0.0)
+        values = (waveform[name] - unit.zero) / unit.size
         kept = shown_points(values)
         shown[name] = time[kept], values[kept]
-        largest = max(largest, float(np.max(np.abs(values))))
-    factor, letter = (1.0, "") if unit in ("", "K", "m/s^2") else prefix_of(largest)
+        largest = max(largest, float(np.nanmax(np.abs(values), initial=0.0)))
+    factor, letter = prefix_of(largest) if takes_prefix(unit.name) else (1.0, "")
     for index, (name, (at, values)) in enumerate(shown.items()):
         axes.plot(
             at, factor * values, color=SERIES[index % len(SERIES)],
@@ -169,8 +211,8 @@ def draw_waveforms(axes: Axes, time: Real, waveform: Mapping[str, Real], unit: s
             # A dollar sign would begin a formula, and a name in front of "_" is not shown.
             label=legend_text(name),
         )  # fmt: skip
-    noun = "waveforms" if unit == "V" else SIGNALS[unit].name
-    axes.set_ylabel(f"{noun} [{letter}{'degC' if unit == 'K' else unit or '1'}]")
+    noun = "waveforms" if unit.si == "V" else SIGNALS[unit.si].name
+    axes.set_ylabel(f"{noun} [{letter}{unit.name or '1'}]")
     _add_legend(axes)
 
 

@@ -11,15 +11,21 @@ import numpy as np
 from numpy.typing import NDArray
 
 from frontend_sim.converter import AnyAdc
-from frontend_sim.present.error_panel import draw_error, error_views
-from frontend_sim.present.figure_file import check_plot_target, new_figure, save_figure
+from frontend_sim.present.decimation import broken
+from frontend_sim.present.drawing import draw_grid, literal, new_figure
+from frontend_sim.present.error_panel import ErrorView, draw_error, error_views
+from frontend_sim.present.figure_file import save_figure
 from frontend_sim.present.margin_panel import LINE, draw_margins, verdicts_of
-from frontend_sim.present.numbers import counted, engineering, prefix_of
+from frontend_sim.present.numbers import engineering, prefix_of
+from frontend_sim.present.part import kept_conversions
 from frontend_sim.present.run_panels import Conversions, draw_codes, draw_difference, draw_waveforms
-from frontend_sim.present.settling_panel import draw_settling, settling_views
-from frontend_sim.present.spectrum_panel import draw_spectrum, spectrum_view
+from frontend_sim.present.settling_panel import SettlingView, draw_settling, settling_views
+from frontend_sim.present.spectrum_panel import SpectrumView, draw_spectrum, spectrum_view
+from frontend_sim.quantities import SignalUnit
 from frontend_sim.scenario.signal import PIN
+from frontend_sim.scenario.told_unit import told_unit
 from frontend_sim.simulation.finished import RunLike
+from frontend_sim.simulation.stretches import breaks_in, stretches_of
 
 if TYPE_CHECKING:
     from matplotlib.axes import Axes
@@ -33,12 +39,13 @@ def plot_run(run: RunLike, path: str | os.PathLike[str], overwrite: bool = False
 
     Pin voltage and the codes read back, with the limits of the ADC's range and marks where it was
     exceeded; the pin between conversions where its waveform is kept, and where it is not, a few
-    conversions are dots that no line joins; the difference of the two in LSB; the waveforms, where
-    some are kept; and for each settling check the distance from the end in LSB on a logarithmic
+    conversions are dots that no line joins; the difference of the two in LSB, beside that of what
+    the sampling capacitor held, where there is one; the waveforms, where some are kept; and for each settling check the distance from the end in LSB on a logarithmic
     axis, with the band, the last exit and the time that is granted; where lines or bands fold, the
     spectrum of the codes with each named by its source; for each total-error check its parts as
     bars; and, of a record, the margins of all checks, also as bars. A long run is reduced to the
-    lowest and the highest value of each column of pixels, so no peak is lost.
+    lowest and the highest value of each column of pixels, so no peak is lost. Of a record that keeps
+    a part of its run, lines break at each gap, and panels that need all of it are left out.
 
     Parameters
     ----------
@@ -55,7 +62,6 @@ def plot_run(run: RunLike, path: str | os.PathLike[str], overwrite: bool = False
     OutputError
         If the path cannot be written as asked for.
     """
-    check_plot_target(path, overwrite)
     return save_figure(run_figure(run), path, overwrite)
 
 
@@ -64,8 +70,8 @@ def run_figure(run: RunLike) -> Figure:
     adc, time = run.scenario.adc, run.time
     waveform_time = run.waveform_time if len(run.waveform) else np.empty(0)
     by_unit = _by_unit(run) if len(waveform_time) else {}
-    views, spectrum = settling_views(run), spectrum_view(run)
-    errors, verdicts = error_views(run), verdicts_of(getattr(run, "results", ()))
+    views, spectrum, errors = _own_panels(run)
+    verdicts = verdicts_of(getattr(run, "results", ()))
     heights = [3.0, 1.2, *(2.2 for _ in by_unit)]
     own = [2.4 for _ in views]
     own += [] if spectrum is None else [2.8]
@@ -76,16 +82,16 @@ def run_figure(run: RunLike) -> Figure:
     last = max((float(times[-1]) for times in (time, waveform_time) if len(times)), default=0.0)
     factor, letter = prefix_of(last)
     # The output of the last stage is the pin.
-    between = run.waveform.get(run.scenario.points()[-1], np.empty(0))
-    conversions = Conversions(
-        adc, factor * time, run.pin, run.voltage, run.overrange,
-        factor * waveform_time[: len(between)], between,
-    )  # fmt: skip
+    conversions = Conversions.of(run, factor, run.scenario.points()[-1])
     draw_codes(axes[0], conversions)
     draw_difference(axes[1], conversions)
     last_row = len(heights)
     for panel, (unit, waveform) in zip(axes[2:last_row], by_unit.items(), strict=True):
-        draw_waveforms(panel, factor * waveform_time, waveform, unit)
+        arrives = unit == run.scenario.stimulus_unit
+        told = told_unit(run.scenario) if arrives else SignalUnit.of(unit)
+        gaps = breaks_in(run, waveform_time)
+        at, *values = broken(gaps, factor * waveform_time, *waveform.values())
+        draw_waveforms(panel, at, dict(zip(waveform, values, strict=True)), told)
     axes[last_row - 1].set_xlabel(f"time [{letter}s]")
     others = iter(axes[last_row:])
     for view in views:
@@ -97,10 +103,8 @@ def run_figure(run: RunLike) -> Figure:
     if verdicts:
         draw_margins(next(others), verdicts)
     beyond = int(np.count_nonzero(conversions.overrange))
-    figure.suptitle(_title(run.scenario.title, adc, len(time), beyond))
-    for each in axes:
-        each.grid(True, color="0.9", linewidth=0.6)
-        each.set_axisbelow(True)
+    figure.suptitle(_title(run.scenario.title, adc, kept_conversions(run), beyond))
+    draw_grid(*axes)
     return figure
 
 
@@ -117,6 +121,15 @@ def _rows(figure: Figure, heights: list[float], own: list[float]) -> list[Axes]:
     return axes
 
 
+def _own_panels(
+    run: RunLike,
+) -> tuple[list[SettlingView], SpectrumView | None, list[ErrorView]]:
+    """Return what panels of their own show; nothing for a part of a run, as all of it is needed."""
+    if stretches_of(run) is not None:
+        return [], None, []
+    return settling_views(run), spectrum_view(run), error_views(run)
+
+
 def _by_unit(run: RunLike) -> dict[str, dict[str, Real]]:
     """Return the waveforms by the SI unit of their points, in the order of the chain."""
     units = dict(zip(run.scenario.points(), run.scenario.units(), strict=True))
@@ -126,10 +139,9 @@ def _by_unit(run: RunLike) -> dict[str, dict[str, Real]]:
     return found
 
 
-def _title(title: str, adc: AnyAdc, count: int, beyond: int) -> str:
+def _title(title: str, adc: AnyAdc, count: str, beyond: int) -> str:
     low, high = engineering(adc.low, "V"), engineering(adc.high, "V")
     rate = engineering(adc.rate, "Hz")
-    facts = f"{counted(count, 'conversion')} at {rate}, {adc.bits} bits, {low} to {high}"
+    facts = f"{count} at {rate}, {adc.bits} bits, {low} to {high}"
     facts += f", {beyond} beyond the range" if beyond else ", none beyond the range"
-    # A dollar sign would begin a formula.
-    return fill(title or "Run without a title", 90).replace("$", r"\$") + "\n" + facts
+    return literal(fill(title or "Run without a title", 90)) + "\n" + facts

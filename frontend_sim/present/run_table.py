@@ -18,6 +18,8 @@ from frontend_sim.present.aliasing_table import (
 )
 from frontend_sim.present.numbers import engineering, fixed, level, plain
 from frontend_sim.present.result_table import result_tables
+from frontend_sim.quantities import SignalUnit
+from frontend_sim.scenario.told_unit import told_unit
 from frontend_sim.simulation.finished import RunLike
 
 if TYPE_CHECKING:
@@ -121,27 +123,24 @@ def run_tables(run: RunLike) -> tuple[RenderableType, ...]:
     if aliasing is not None:
         folds = aliasing_table(aliasing, run_alias_error(run, aliasing))
     between = () if folds is None else (folds,)
-    return (_main_table(_summary(run)), *between, *result_tables(results))
+    return (run_table(run), *between, *result_tables(results))
 
 
 def run_table(run: RunLike) -> Table:
     """Return the table of a run without its results."""
-    return _main_table(_summary(run))
-
-
-def _main_table(summary: dict[str, Any]) -> Table:
     from rich.table import Table
     from rich.text import Text
 
+    summary, unit = _summary(run), told_unit(run.scenario)
     table = Table(title=Text(summary["title"] or "Run"), show_header=False, title_justify="left")
     table.add_column("quantity")
     table.add_column("value", justify="right")
-    for name, value in _rows(summary):
+    for name, value in _rows(summary, unit):
         table.add_row(name, value)
     return table
 
 
-def _rows(summary: dict[str, Any]) -> list[tuple[str, str]]:
+def _rows(summary: dict[str, Any], unit: SignalUnit) -> list[tuple[str, str]]:
     count, lsb = summary["conversions"], summary["lsb"]
     rows = [("conversions", f"{count} at {engineering(summary['rate'], 'Hz')}")]
     if count == 0:
@@ -153,7 +152,7 @@ def _rows(summary: dict[str, Any]) -> list[tuple[str, str]]:
     rows += [
         ("from, to", f"{first}, {last}"),
         ("converter", f"{summary['bits']} bits, {low} to {high}, LSB {engineering(lsb, 'V', 4)}"),
-        *_stimulus_rows(summary["stimulus"]),
+        *_stimulus_rows(summary["stimulus"], unit),
         ("pin: lowest", engineering(pin["lowest"], "V", 5)),
         ("pin: mean", engineering(pin["mean"], "V", 5)),
         ("pin: highest", engineering(pin["highest"], "V", 5)),
@@ -177,10 +176,9 @@ def _rows(summary: dict[str, Any]) -> list[tuple[str, str]]:
     return rows
 
 
-def _stimulus_rows(stimulus: dict[str, Any] | None) -> list[tuple[str, str]]:
+def _stimulus_rows(stimulus: dict[str, Any] | None, unit: SignalUnit) -> list[tuple[str, str]]:
     if stimulus is None:
         return []
-    unit = stimulus["unit"].removeprefix("1")
     names = {
         "lowest": "lowest",
         "mean": "mean",

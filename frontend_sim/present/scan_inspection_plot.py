@@ -9,7 +9,8 @@ from typing import TYPE_CHECKING
 
 from frontend_sim.measure.response.inspection import Inspection
 from frontend_sim.measure.scan.inspection import ScanInspection
-from frontend_sim.present.figure_file import check_plot_target, new_figure, save_figure
+from frontend_sim.present.drawing import draw_grid, literal, new_figure
+from frontend_sim.present.figure_file import save_figure
 from frontend_sim.present.frequency_panels import draw_magnitude
 from frontend_sim.present.frequency_view import FrequencyView
 from frontend_sim.present.numbers import engineering
@@ -31,7 +32,6 @@ def plot_scan_inspection(
     count as if the channel were connected all the time. Parameters and errors as
     ``plot_inspection``.
     """
-    check_plot_target(path, overwrite)
     check_channels_drawn(len(inspection.channels), path)
     return save_figure(scan_inspection_figure(inspection), path, overwrite)
 
@@ -44,7 +44,7 @@ def scan_inspection_figure(inspection: ScanInspection) -> Figure:
     for panels, (name, one) in zip(rows, channels.items(), strict=True):
         _draw_channel(list(panels), name, one)
     report = inspection.report
-    title = fill(inspection.title or "Scan without a title", 120).replace("$", r"\$")
+    title = literal(fill(inspection.title or "Scan without a title", 120))
     facts = (
         f"{len(channels)} channels, {report.sampling}, one scan in "
         f"{engineering(report.period, 's', 4)}; each channel from its stimulus to the "
@@ -62,8 +62,6 @@ def _draw_channel(panels: list[Axes], name: str, inspection: Inspection) -> None
     magnitude.set_xlim(view.frequency[0], view.frequency[-1])
     draw_step(step, steps)
     draw_distance(distance, steps)
-    # A dollar sign would begin a formula; the name stands above the labels of the rates.
-    magnitude.set_title(name.replace("$", r"\$"), loc="left", fontsize="large", pad=20.0)
-    for panel in panels:
-        panel.grid(True, color="0.9", linewidth=0.6)
-        panel.set_axisbelow(True)
+    # The name stands above the labels of the rates.
+    magnitude.set_title(literal(name), loc="left", fontsize="large", pad=20.0)
+    draw_grid(*panels)

@@ -8,7 +8,8 @@ from textwrap import fill
 from typing import TYPE_CHECKING
 
 from frontend_sim.errors import OutputError
-from frontend_sim.present.figure_file import check_plot_target, new_figure, save_figure
+from frontend_sim.present.drawing import draw_grid, literal, new_figure
+from frontend_sim.present.figure_file import save_figure
 from frontend_sim.present.numbers import engineering, prefix_of
 from frontend_sim.present.run_panels import Conversions, draw_codes
 from frontend_sim.present.scan_like import ScanLike
@@ -39,7 +40,6 @@ def check_channels_drawn(count: int, path: object) -> None:
 
 def plot_scan(scan: ScanLike, path: str | os.PathLike[str], overwrite: bool = False) -> Path:
     """Draw a scan, or its record, into a PNG or SVG file; parameters and errors as ``plot_run``."""
-    check_plot_target(path, overwrite)
     check_channels_drawn(len(scan.channels), path)
     return save_figure(scan_figure(scan), path, overwrite)
 
@@ -52,14 +52,9 @@ def scan_figure(scan: ScanLike) -> Figure:
     ends = [float(run.time[-1]) for run in channels.values() if len(run.time)]
     factor, letter = prefix_of(max(ends, default=0.0))
     for panel, (name, run) in zip(panels, channels.items(), strict=True):
-        draw_codes(
-            panel,
-            Conversions(run.scenario.adc, factor * run.time, run.pin, run.voltage, run.overrange),
-        )
-        # A dollar sign would begin a formula.
-        panel.set_title(name.replace("$", r"\$"), loc="right", fontsize="medium")
-        panel.grid(True, color="0.9", linewidth=0.6)
-        panel.set_axisbelow(True)
+        draw_codes(panel, Conversions.of(run, factor))
+        panel.set_title(literal(name), loc="right", fontsize="medium")
+    draw_grid(*panels)
     panels[-1].set_xlabel(f"time [{letter}s]")
     scenario = scan.scenario
     adc, rhythm = scenario.adc, scenario.rhythm
@@ -68,6 +63,6 @@ def scan_figure(scan: ScanLike) -> Figure:
         f"{engineering(rhythm.period, 's', 4)}; {adc.bits} bits, {engineering(adc.low, 'V')} to "
         f"{engineering(adc.high, 'V')}"
     )
-    title = fill(scenario.title or "Scan without a title", 90).replace("$", r"\$")
+    title = literal(fill(scenario.title or "Scan without a title", 90))
     figure.suptitle(f"{title}\n{facts}")
     return figure

@@ -8,7 +8,8 @@ from textwrap import shorten
 from typing import TYPE_CHECKING
 
 from frontend_sim.present.colours import BLUE, MARK, ORANGE
-from frontend_sim.present.figure_file import check_plot_target, new_figure, save_figure
+from frontend_sim.present.drawing import draw_grid, literal, new_figure
+from frontend_sim.present.figure_file import save_figure
 from frontend_sim.present.sensitivity_table import nothing, strongest
 
 if TYPE_CHECKING:
@@ -29,17 +30,8 @@ def plot_sensitivities(
     A bar is the normalized derivative, where the value is zero what 1 % more adds to the margin;
     blue is for the better, orange for the worse, as the parameter grows.
 
-    Parameters
-    ----------
-    path : ends in .png or .svg
-    overwrite : whether a file that is there may be replaced
-
-    Raises
-    ------
-    OutputError
-        If the path cannot be written as asked for.
+    Parameters and errors as ``plot_run``.
     """
-    check_plot_target(path, overwrite)
     return save_figure(sensitivity_figure(found), path, overwrite)
 
 
@@ -55,7 +47,7 @@ def sensitivity_figure(found: tuple[CheckSensitivity, ...]) -> Figure:
 
 
 def _draw(axes: Axes, found: CheckSensitivity, rows: list[Sensitivity]) -> None:
-    name = shorten(found.name, 60).replace("$", r"\$")
+    name = literal(shorten(found.name, 60))
     if not rows:
         axes.set_axis_off()
         axes.text(0.5, 0.5, f"{name}: {nothing(found)}", ha="center", va="center")
@@ -63,7 +55,7 @@ def _draw(axes: Axes, found: CheckSensitivity, rows: list[Sensitivity]) -> None:
     normalized = all(row.normalized is not None for row in rows)
     values = [row.normalized if normalized else row.per_percent for row in rows]
     colours = [BLUE if (row.per_percent or 0.0) > 0.0 else ORANGE for row in rows]
-    labels = [row.parameter.key.replace("$", r"\$") for row in rows]
+    labels = [literal(row.parameter.key) for row in rows]
     axes.barh(labels, [value or 0.0 for value in values], color=colours)
     axes.invert_yaxis()
     axes.axvline(0.0, color=MARK, linewidth=0.8)
@@ -75,5 +67,4 @@ def _draw(axes: Axes, found: CheckSensitivity, rows: list[Sensitivity]) -> None:
     )
     axes.set_title(f"What moves {name}: blue adds margin as it grows, orange costs",
                    loc="left", fontsize="medium")  # fmt: skip
-    axes.grid(True, axis="x", color="0.9", linewidth=0.6)
-    axes.set_axisbelow(True)
+    draw_grid(axes, axis="x")

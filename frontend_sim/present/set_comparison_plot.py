@@ -2,8 +2,6 @@
 
 from __future__ import annotations
 
-import os
-from pathlib import Path
 from textwrap import fill
 from typing import TYPE_CHECKING
 
@@ -13,9 +11,7 @@ from numpy.typing import NDArray
 from frontend_sim.archive.set_table import SetTable
 from frontend_sim.comparison import ColumnDifference, SetComparison
 from frontend_sim.present.colours import BLUE, LIMIT, MARK, ORANGE
-from frontend_sim.present.figure_file import check_plot_target, new_figure, save_figure
-from frontend_sim.present.numbers import prefix_of
-from frontend_sim.present.result_table import PREFIXED
+from frontend_sim.present.drawing import axis_scale, draw_grid, literal, new_figure
 
 Real = NDArray[np.float64]
 
@@ -25,24 +21,6 @@ if TYPE_CHECKING:
 
 MOST_CHECKS = 8
 """So many checks are drawn, those with the most flipped verdicts first."""
-
-
-def plot_set_comparison(
-    comparison: SetComparison,
-    first: SetTable,
-    second: SetTable,
-    path: str | os.PathLike[str],
-    overwrite: bool = False,
-) -> Path:
-    """Draw two nights and their differences into a PNG or SVG file.
-
-    Raises
-    ------
-    OutputError
-        If the path cannot be written as asked for.
-    """
-    check_plot_target(path, overwrite)
-    return save_figure(set_comparison_figure(comparison, first, second), path, overwrite)
 
 
 def set_comparison_figure(comparison: SetComparison, first: SetTable, second: SetTable) -> Figure:
@@ -55,7 +33,7 @@ def set_comparison_figure(comparison: SetComparison, first: SetTable, second: Se
     panels = figure.subplots(max(len(rows), 1), 2, squeeze=False)
     earlier = {check.name: check for check in first.checks}
     for (left, right), row in zip(panels, rows, strict=False):
-        scale, unit = _scale(
+        scale, unit = axis_scale(
             row.unit, np.concatenate([earlier[row.name].value, later[row.name].value])
         )
         for check, colour, name in (
@@ -65,7 +43,7 @@ def set_comparison_figure(comparison: SetComparison, first: SetTable, second: Se
         limits = np.unique(later[row.name].limit)
         for limit in limits[np.isfinite(limits)][:8].tolist():
             left.axvline(scale * limit, color=LIMIT, linestyle="--", linewidth=1.2)
-        name = row.name.replace("$", r"\$")
+        name = literal(row.name)
         left.set_xlabel(f"{name} [{unit}]")
         left.set_ylabel("share of runs below")
         left.legend(fontsize="small", framealpha=0.9)
@@ -75,19 +53,9 @@ def set_comparison_figure(comparison: SetComparison, first: SetTable, second: Se
         panels[0][1].set_axis_off()
         panels[0][0].text(0.0, 0.5, "both nights have no check in common", wrap=True)
     told = "differs" if comparison.differs else "no difference beyond noise and tolerance"
-    title = fill(comparison.title or "Two nights", 90).replace("$", r"\$")
+    title = literal(fill(comparison.title or "Two nights", 90))
     figure.suptitle(f"{title}\n{comparison.matched} runs in both, limits dashed: {told}")
     return figure
-
-
-def _scale(unit: str, values: Real) -> tuple[float, str]:
-    if unit in ("", "1"):
-        return 100.0, "%"
-    if unit not in PREFIXED:
-        return 1.0, unit
-    known = np.abs(values[np.isfinite(values)])
-    scale, letter = prefix_of(float(np.max(known, initial=0.0)))
-    return scale, f"{letter}{unit}"
 
 
 def _draw_shares(axes: Axes, values: Real, colour: str, name: str) -> None:
@@ -95,11 +63,11 @@ def _draw_shares(axes: Axes, values: Real, colour: str, name: str) -> None:
         ordered = np.sort(values)
         axes.step(ordered, np.arange(1, len(ordered) + 1) / len(ordered), where="post",
                   color=colour, label=name)  # fmt: skip
-    axes.grid(True, color="0.9", linewidth=0.6)
+    draw_grid(axes)
 
 
 def _draw_differences(axes: Axes, row: ColumnDifference) -> None:
-    scale, unit = _scale(row.unit, row.difference)
+    scale, unit = axis_scale(row.unit, row.difference)
     difference = scale * row.difference
     axes.plot(difference, color=MARK, marker=".", markersize=3.0, linestyle="none")
     axes.axhline(0.0, color="black", linewidth=0.6)
@@ -108,4 +76,4 @@ def _draw_differences(axes: Axes, row: ColumnDifference) -> None:
     axes.set_xlabel("run, in the order of the first night")
     axes.set_ylabel(f"second − first [{unit}]")
     axes.set_title(row.finding if row.finding != "differs" else row.told, fontsize="medium")
-    axes.grid(True, color="0.9", linewidth=0.6)
+    draw_grid(axes)

@@ -13,6 +13,7 @@ from frontend_sim.measure.checks.settled import Settled, settled
 from frontend_sim.measure.checks.subject import Subject
 from frontend_sim.present.colours import BLACK, EXACT, GREEN, LIMIT, MARK, ORANGE
 from frontend_sim.present.decimation import COLUMNS
+from frontend_sim.present.drawing import literal
 from frontend_sim.present.numbers import engineering, plain, prefix_of
 from frontend_sim.scenario.checks.rules import labels
 from frontend_sim.scenario.checks.settling import SettlingCheck
@@ -90,11 +91,11 @@ def _view(check: SettlingCheck, label: str, subject: Subject) -> SettlingView:
 def draw_settling(axes: Axes, view: SettlingView) -> None:
     """Draw the distance from the end, the band, the last exit, and the time that is granted."""
     axes.set_ylabel("distance from\nthe end [LSB]")
-    title = view.label.replace("$", r"\$")
+    title = literal(view.label)
     if view.found is None:
         axes.set_axis_off()
         axes.text(
-            0.5, 0.5, f"{title}: cannot be told\n{view.reason}".replace("$", r"\$"),
+            0.5, 0.5, literal(f"{view.label}: cannot be told\n{view.reason}"),
             ha="center", va="center", transform=axes.transAxes, wrap=True, color=LIMIT,
         )  # fmt: skip
         return

@@ -9,20 +9,15 @@ from textwrap import fill
 from typing import TYPE_CHECKING
 
 from frontend_sim.present.colours import GREEN, LIMIT, MARK, SERIES
-from frontend_sim.present.figure_file import check_plot_target, legend_text, new_figure, save_figure
+from frontend_sim.present.drawing import draw_grid, legend_text, literal, new_figure
+from frontend_sim.present.figure_file import save_figure
+from frontend_sim.present.key_axis import label_axis
 
 if TYPE_CHECKING:
     from matplotlib.axes import Axes
-    from matplotlib.axis import Axis
     from matplotlib.figure import Figure
 
-    from frontend_sim.solve import Solution, Varied
-
-PLAIN_UNITS = ("K", "LSB", "1", "dB", "bit", "m/s^2", "1/K")
-"""Units that take no prefix on an axis."""
-
-FEW_DECADES = 2.5
-"""Of fewer decades more than their beginnings are labelled."""
+    from frontend_sim.solve import Solution
 
 LINEAR_BELOW = 0.1
 """Margins below this share of their limit are drawn to scale, larger ones by their logarithm."""
@@ -36,17 +31,8 @@ def plot_solution(
     For each check its margin as a share of its limit, over the values that were tried: above zero
     it holds. What passes is shaded, and the answer is marked.
 
-    Parameters
-    ----------
-    path : ends in .png or .svg
-    overwrite : whether a file that is there may be replaced
-
-    Raises
-    ------
-    OutputError
-        If the path cannot be written as asked for.
+    Parameters and errors as ``plot_run``.
     """
-    check_plot_target(path, overwrite)
     return save_figure(solution_figure(solution), path, overwrite)
 
 
@@ -66,10 +52,9 @@ def solution_figure(solution: Solution) -> Figure:
                      label=f"answer {solution.key.text(solution.value)}")  # fmt: skip
     axes.set_yscale("symlog", linthresh=LINEAR_BELOW)
     axes.set_ylabel("margin, as a share of the limit")
-    axes.grid(True, color="0.9", linewidth=0.6)
-    axes.set_axisbelow(True)
+    draw_grid(axes)
     axes.legend(loc="best", fontsize="small", framealpha=0.9)
-    axes.set_title(fill(solution.sentences()[0], 100).replace("$", r"\$"), loc="left",
+    axes.set_title(literal(fill(solution.sentences()[0], 100)), loc="left",
                    fontsize="medium")  # fmt: skip
     return figure
 
@@ -89,34 +74,3 @@ def _draw_margins(axes: Axes, solution: Solution, factor: float) -> None:
         colour = SERIES[number % len(SERIES)]
         axes.plot(x, y, marker="o", markersize=4.0, linewidth=1.2, color=colour,
                   label=legend_text(name))  # fmt: skip
-
-
-def label_axis(axis: Axis, key: Varied) -> float:
-    """Name an axis after a key, with its unit and prefixes, and return the factor of its values."""
-    from matplotlib.ticker import EngFormatter, MaxNLocator
-
-    if key.domain.scale == "log":
-        _mark_decades(axis, key)
-    elif key.whole:
-        axis.set_major_locator(MaxNLocator(integer=True))
-    name = key.key.replace("$", r"\$")
-    if key.of_tolerance:
-        axis.set_label_text(f"{name} [%]")
-        return 100.0
-    if key.symbol and key.symbol not in PLAIN_UNITS:
-        axis.set_major_formatter(EngFormatter(unit=key.symbol))
-        axis.set_label_text(name)
-        return 1.0
-    axis.set_label_text(f"{name} [{key.symbol}]" if key.symbol else name)
-    return 1.0
-
-
-def _mark_decades(axis: Axis, key: Varied) -> None:
-    """Label 1, 2 and 5 of few decades, of many their beginnings."""
-    from matplotlib.ticker import LogLocator, NullFormatter, ScalarFormatter
-
-    low, *_, high = key.domain.spread(2)
-    few = math.log10(high / low) < FEW_DECADES
-    axis.set_major_locator(LogLocator(subs=(1.0, 2.0, 5.0) if few else (1.0,)))
-    axis.set_minor_formatter(NullFormatter())
-    axis.set_major_formatter(ScalarFormatter())

@@ -15,6 +15,7 @@ from frontend_sim.measure.spectrum import amplitude_spectrum
 from frontend_sim.present.aliasing_table import aliasing_in
 from frontend_sim.present.colours import BLUE, MARK, SERIES
 from frontend_sim.present.decimation import shown_points
+from frontend_sim.present.drawing import legend_text
 from frontend_sim.present.numbers import engineering, prefix_of
 from frontend_sim.simulation.finished import RunLike
 
@@ -76,7 +77,7 @@ def draw_spectrum(axes: Axes, view: SpectrumView) -> None:
     for number, alias in enumerate(seen):
         named = number < MOST_NAMED
         colour = colours[number % len(colours)] if named else MARK
-        label = f"{alias.source}: {_where(alias)}".replace("$", r"\$") if named else None
+        label = legend_text(f"{alias.source}: {_where(alias)}") if named else None
         if alias.up_to > alias.frequency:
             axes.axvspan(
                 factor * alias.lands, factor * alias.lands_up_to,

@@ -3,13 +3,21 @@
 from __future__ import annotations
 
 import math
+from dataclasses import replace
 from typing import TYPE_CHECKING
 
 import numpy as np
 
 from frontend_sim.present.colours import BLACK, EXACT, LIMIT, MARK
 from frontend_sim.present.frequency_panels import MODEL_STYLE
-from frontend_sim.present.numbers import engineering, fixed, per_unit, plain, prefix_of, quantity
+from frontend_sim.present.numbers import (
+    difference,
+    engineering,
+    fixed,
+    per_unit,
+    plain,
+    prefix_of,
+)
 from frontend_sim.present.step_view import StepView
 
 if TYPE_CHECKING:
@@ -30,24 +38,29 @@ def draw_step(axes: Axes, view: StepView) -> None:
     factor, letter = prefix_of(view.settled)
     axes.plot(factor * view.time, view.value, color=EXACT, linewidth=1.8, label="exact", zorder=3)
     _draw_models(axes, view, factor)
-    measured = view.inspection.time
-    end = measured.end
+    measured, unit = view.inspection.time, view.inspection.referred.unit
+    end = None if measured.end is None else unit.size * measured.end
     if end is not None and math.isfinite(end):
         axes.axhline(end, color=MARK, linestyle=":", linewidth=1.0, label=f"end {plain(end)}")
     for settling in measured.settlings[:1]:
-        low, high = (end or 0.0) - settling.band, (end or 0.0) + settling.band
+        band = unit.size * settling.band
+        low, high = (end or 0.0) - band, (end or 0.0) + band
         axes.axhspan(low, high, color=LIMIT, alpha=0.12, zorder=1, label=f"end ± {settling.label}")
     axes.set_xlim(factor * view.time[0], factor * view.settled)
     axes.set_xlabel(f"time after the step [{letter}s]")
-    axes.set_ylabel(f"response to a unit step [{per_unit(view.inspection.unit)}]")
+    axes.set_ylabel(f"response to a unit step [{per_unit(unit.difference)}]")
     axes.set_title(_shape_text(view), fontsize="medium")
     axes.legend(loc="best", fontsize="small", framealpha=0.9)
 
 
 def draw_distance(axes: Axes, view: StepView) -> None:
     """Draw how far the response is from its end, with the bands and the times of settling."""
-    measured = view.inspection.time
-    bands = [settling for settling in measured.settlings if settling.band > 0.0]
+    measured, unit = view.inspection.time, view.inspection.referred.unit
+    bands = [
+        replace(settling, band=unit.size * settling.band)
+        for settling in measured.settlings
+        if settling.band > 0.0
+    ]
     silent = view.inspection.frequency.largest.value == 0.0
     if not bands or silent or measured.end is None or view.inspection.order == 0:
         axes.set_axis_off()
@@ -78,8 +91,8 @@ def draw_distance(axes: Axes, view: StepView) -> None:
             axes.plot([factor * settling.time], [settling.band], "o", color=LIMIT, markersize=5,
                       zorder=4)  # fmt: skip
     axes.set_xlabel(f"time after the step [{letter}s]")
-    axes.set_ylabel(f"distance from the end [{per_unit(view.inspection.unit)}]")
-    step = quantity(measured.full_scale_step, view.inspection.unit)
+    axes.set_ylabel(f"distance from the end [{per_unit(unit.difference)}]")
+    step = difference(measured.full_scale_step, unit)
     axes.set_title(f"Settling; LSB counted for a step of {step}", fontsize="medium")
 
 

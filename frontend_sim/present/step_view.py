@@ -32,7 +32,7 @@ class GridSteps:
     ----------
     method : zoh, foh or bilinear
     time : shape (K,) [s]
-    value : shape (K,) [1]
+    value : shape (K,) [V]
     """
 
     method: str
@@ -42,16 +42,16 @@ class GridSteps:
 
 @dataclass(frozen=True, eq=False)
 class StepView:
-    """The curves of the step panels.
+    """The curves of the step panels, for a step of one unit that the file has for the stimulus.
 
     Parameters
     ----------
     inspection : what is shown
     time : from a little before the step on, shape (T,) [s]
-    value : response to a unit step, shape (T,) [1]
+    value : response to the step, shape (T,) [V]
     distance_time : shape (D,) [s]
     distance : |value - end|; of a response that rings faster than columns of pixels can show, the
-        largest value of each column; empty without an end; shape (D,) [1]
+        largest value of each column; empty without an end; shape (D,) [V]
     settled : end of the time axis [s]
     models : discrete models that are shown
     """
@@ -80,6 +80,7 @@ class StepView:
         time = np.concatenate([span * np.arange(count + 1.0), early])
         response = inspection.response
         value = np.concatenate([response.evenly(span, count), response.without_delay(early)])
+        value *= inspection.referred.unit.size
         order = np.argsort(time, kind="stable")
         time, value = delay + time[order], value[order]
         kept = shown_points(value)
@@ -98,7 +99,7 @@ def _distance(inspection: Inspection, time: Real, value: Real) -> tuple[Real, Re
     end = inspection.time.end
     if end is None or not math.isfinite(end):
         return np.empty(0), np.empty(0)
-    distance = np.abs(value - end)
+    distance = np.abs(value - inspection.referred.unit.size * end)
     if len(distance) <= 4 * COLUMNS:
         return time, distance
     starts = np.linspace(0, len(distance), COLUMNS, endpoint=False).astype(np.int64)
@@ -125,5 +126,6 @@ def _grid_steps(inspection: Inspection, last: float) -> list[GridSteps]:
         if count <= MOST_GRID:
             number = np.arange(float(count))
             time = inspection.time.delay + number / model.rate
-            found.append(GridSteps(model.method, time, model.step_response(number)))
+            value = inspection.referred.unit.size * model.step_response(number)
+            found.append(GridSteps(model.method, time, value))
     return found

@@ -54,6 +54,7 @@ from frontend_sim.quantities.marker import Reads, ReadsLevel, dimension_of, mark
 from frontend_sim.quantities.part import REFERENCE_TEMPERATURE, Part
 from frontend_sim.quantities.preferred import SERIES, Preferred, preferred
 from frontend_sim.quantities.reading import parse, shown
+from frontend_sim.quantities.signal_unit import SignalUnit
 from frontend_sim.quantities.spread import part_table
 from frontend_sim.quantities.writing import as_text
 
@@ -206,6 +207,7 @@ __all__ = [
     "SignalLevel",
     "SignalSlope",
     "SignalSpan",
+    "SignalUnit",
     "Slope",
     "Temperature",
     "Time",

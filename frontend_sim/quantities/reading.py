@@ -16,7 +16,8 @@ from frontend_sim.errors import QuantityError
 from frontend_sim.quantities import rkm
 from frontend_sim.quantities.dimension import RATIO, Dimension
 from frontend_sim.quantities.part import Part
-from frontend_sim.quantities.units import factor, zero_of
+from frontend_sim.quantities.unit_factor import factor
+from frontend_sim.quantities.units import zero_of
 
 _DIGITS = r"[0-9]+(?:_[0-9]+)*"
 _NUMBER = re.compile(

@@ -6,9 +6,8 @@ from pydantic import Field
 
 from frontend_sim.converter.paced import PacedAdc
 from frontend_sim.scenario.model import Scenario
+from frontend_sim.scenario.rules import Path
 from frontend_sim.values import Value
-
-Path = tuple[str | int, ...]
 
 
 class Origin(Value):

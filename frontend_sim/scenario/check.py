@@ -5,9 +5,8 @@ from __future__ import annotations
 import tomllib
 from typing import Any
 
-from frontend_sim.analog.chain import section
+from frontend_sim.analog.section import Section
 from frontend_sim.converter import AnyAdc
-from frontend_sim.converter.clock import conversion_count, first_code_instant
 from frontend_sim.errors import ModelError, Problem, RecordingError, ScenarioError
 from frontend_sim.quantities import TIME, as_text
 from frontend_sim.scenario.channel_scenario import ChannelScenario, with_channel
@@ -16,9 +15,9 @@ from frontend_sim.scenario.fault import problem
 from frontend_sim.scenario.input_port import discretization_fault, input_network_of, input_port
 from frontend_sim.scenario.locate import lines_of
 from frontend_sim.scenario.model import Scenario
+from frontend_sim.scenario.rules import Path
 from frontend_sim.scenario.scan_scenario import NO_END, AnyScenario, ScanScenario
 from frontend_sim.scenario.spread import moved
-from frontend_sim.scenario.tables import Path
 
 ROUNDING = 1e-9
 """Share by which a duration may exceed a recording, as rounding of either makes it."""
@@ -63,7 +62,7 @@ def check_scenario(scenario: AnyScenario, name: str = "") -> None:
         label = stage.label(position + 1)
         try:
             warm = moved(stage, temperature, label)
-            section(warm, label, temperature)
+            Section.of(warm, label, temperature)
             warm.limiter(temperature)
         except ModelError as error:
             raise ModelError(_located(scenario, name, ("chain", position), str(error))) from error
@@ -151,8 +150,8 @@ def _all_conversions_before(end: float, duration: float, adc: AnyAdc) -> bool:
 
     N points at a rate may be said to last N or N - 1 intervals; both are let pass.
     """
-    since = (conversion_count(adc, duration) - 1) / adc.true_rate
-    last = first_code_instant(adc) + since + adc.aperture_delay
+    since = (adc.code_count(duration) - 1) / adc.true_rate
+    last = adc.code_instant(0) + since + adc.aperture_delay
     return last <= end and duration <= end + 1.0 / adc.true_rate
 
 

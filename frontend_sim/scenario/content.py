@@ -37,9 +37,8 @@ def read_text(file: Path) -> str:
 def _near(file: Path) -> str:
     if not file.parent.is_dir():
         return f"; the directory {file.parent} does not exist"
-    names = _scenarios(file.parent)
-    meant = closest(file.name, names)
-    return f"; did you mean {file.parent / meant}?" if meant else ""
+    meant = closest(file.stem, [Path(name).stem for name in _scenarios(file.parent)])
+    return f"; did you mean {file.parent / meant}.toml?" if meant else ""
 
 
 def _inside(directory: Path) -> str:

@@ -9,7 +9,7 @@ from pydantic_core.core_schema import ErrorType
 
 from frontend_sim.errors import Problem
 from frontend_sim.scenario.fault import Fault, problem
-from frontend_sim.scenario.tables import Path
+from frontend_sim.scenario.rules import Path
 from frontend_sim.scenario.tellers import TELLERS, meant, wrong_kind, wrong_value
 
 _OF_PYDANTIC = frozenset([*get_args(ErrorType), "path_type"])

@@ -10,8 +10,8 @@ from typing import Any
 from frontend_sim.errors import Problem
 from frontend_sim.quantities import shown
 from frontend_sim.scenario.locate import line_of
+from frontend_sim.scenario.rules import Path
 from frontend_sim.scenario.tables import (
-    Path,
     Spot,
     is_array,
     kind_in,

@@ -16,8 +16,10 @@ from frontend_sim.scenario.explain import explain
 from frontend_sim.scenario.locate import lines_of
 from frontend_sim.scenario.model import Scenario
 from frontend_sim.scenario.scan_scenario import AnyScenario, ScanScenario, single
+from frontend_sim.scenario.set_marks import looks_like_a_set
 from frontend_sim.scenario.syntax import syntax_problem
 from frontend_sim.scenario.tables import root
+from frontend_sim.values import validated
 
 DEEPEST = 24
 """Tables and arrays inside each other; a scenario needs fewer."""
@@ -99,6 +101,10 @@ def parse_scenario(
     if not data:
         what = "empty" if not text.strip() else "without any key"
         raise ScenarioError(f"the file is {what}; {_LEAST}", name)
+    if looks_like_a_set(data):
+        raise ScenarioError(
+            "this is a set of runs, no scenario; 'frontend-sim replay' runs it", name
+        )
     errors: list[Any] = []
     if "source" in data:  # the one field that no file may set
         errors.append({"type": "extra_forbidden", "loc": ("source",)})
@@ -107,9 +113,9 @@ def parse_scenario(
         context = {"directory": Path(directory)}
         scenario: AnyScenario
         if root(data) is ScanScenario:
-            scenario = ScanScenario.model_validate(values, context=context)
+            scenario = validated(ScanScenario, values, context)
         else:
-            scenario = Scenario.model_validate(values, context=context)
+            scenario = validated(Scenario, values, context)
     except ValidationError as error:
         errors.extend(error.errors(include_url=False))
     except RecursionError:

@@ -12,7 +12,7 @@ from bisect import bisect_right
 from collections.abc import Iterator, Mapping
 from typing import Any
 
-from frontend_sim.scenario.tables import Path
+from frontend_sim.scenario.rules import Path
 
 _BLANK = re.compile(r"(?:[ \t\r\n]|#[^\n]*)*")
 _SPACE = re.compile(r"[ \t]*")

@@ -2,142 +2,32 @@
 
 from __future__ import annotations
 
-import hashlib
-import json
-from collections.abc import Callable, Mapping, Sequence
+from collections.abc import Mapping
 from pathlib import Path
-from typing import Annotated, Any, Literal, Self
+from typing import Any, Self
 
-from pydantic import BeforeValidator, Field, StrictBool, model_validator
+from pydantic import Field, model_validator
 
 from frontend_sim.analog.stages import AnyStage
 from frontend_sim.converter import AnyAdc
 from frontend_sim.errors import nearest
-from frontend_sim.quantities import FREQUENCY, Frequency, PositiveLsb, PositiveTime, as_text
 from frontend_sim.scenario.checks import AnyCheck
 from frontend_sim.scenario.checks.rules import check_faults, instant_faults
 from frontend_sim.scenario.environment import Environment
-from frontend_sim.scenario.rules import conversions_fault, fault, faults, newer_format, points_fault
+from frontend_sim.scenario.rules import conversions_fault, fault, faults, points_fault
+from frontend_sim.scenario.scenario_file import ScenarioFile
+from frontend_sim.scenario.settings import SimulationSettings
 from frontend_sim.scenario.signal import PIN, UnitError, named, signal_units
 from frontend_sim.scenario.supply import supply_faults
 from frontend_sim.stimulus import AnyStimulus
-from frontend_sim.values import Value
-
-FORMAT = 1
-"""Version of the scenario format that this program reads."""
 
 STIMULUS = "stimulus"
 """Name of the first point of the chain, before any stage."""
 
-Discretization = Literal["exact", "zoh", "foh", "bilinear"]
 
+class Scenario(ScenarioFile):
+    """What arrives, what the circuit does to it, how the converter looks, how it is computed."""
 
-def _auto_or(value: object) -> object:
-    return None if value == "auto" else value
-
-
-class SimulationSettings(Value):
-    """How the run is computed and what is kept of it."""
-
-    duration: PositiveTime | None = Field(
-        default=None,
-        description="conversions are taken for t in [0, duration); left out, the length of the "
-        "recording",
-    )
-    discretization: Discretization = Field(
-        default="exact",
-        description="exact, or a discrete model of the chain at grid_rate: zoh (step-invariant), "
-        "foh (ramp-invariant), bilinear (trapezoidal)",
-    )
-    grid_rate: Annotated[Frequency | None, BeforeValidator(_auto_or)] = Field(
-        default=None,
-        description="points per second of a discrete model, and of the grid on which rails, slew "
-        'rates, clamps and curved sensors are followed; "auto", or left out, picks the coarsest '
-        "multiple of the conversion rate (or of a recording's rate) whose estimated error stays "
-        "below accuracy. With discretization exact and a linear chain it changes nothing in a run; "
-        "inspect then shows how far discrete models at this rate are from exact",
-        json_schema_extra={"examples": ["auto", "1 MHz"]},
-    )
-    accuracy: PositiveLsb = Field(
-        default=0.05, description='largest error of a grid picked by "auto"'
-    )
-    prewarp: Frequency | None = Field(
-        default=None, description="frequency that the bilinear model keeps exactly"
-    )
-    initial: Literal["settled", "rest"] = Field(
-        default="settled",
-        description="before t = 0 the chain has settled on the stimulus's first value, or is at "
-        "rest",
-    )
-    noise: StrictBool = Field(
-        default=True,
-        description="whether codes carry the noise of the circuit: thermal noise of resistors, "
-        "voltage and current noise of amplifiers; pin and waveform stay free of it",
-    )
-    waveform_rate: Frequency | None = Field(
-        default=None, description="points per second of the kept waveforms; left out, none is kept"
-    )
-    waveform_points: tuple[str, ...] | None = Field(
-        default=None,
-        description='points of the chain whose waveform is kept: "stimulus" or names of stages (a '
-        'stage without a name is called by its place and kind, "2 gain"); left out, all of them',
-        json_schema_extra={"examples": [["stimulus", "input filter"]]},
-    )
-
-    @model_validator(mode="after")
-    def _prewarp_suits_the_model(self) -> Self:
-        if self.prewarp is None:
-            return self
-        if self.discretization != "bilinear":
-            raise fault(
-                ["prewarp"],
-                f'prewarp has a meaning for discretization = "bilinear" only, not for '
-                f'"{self.discretization}"; take prewarp out, or choose "bilinear"',
-            )
-        if self.grid_rate is not None and not self.prewarp < 0.5 * self.grid_rate:
-            raise fault(
-                ["prewarp"],
-                f"prewarp {as_text(self.prewarp, FREQUENCY, 6)} must lie below half the grid_rate, "
-                f"{as_text(0.5 * self.grid_rate, FREQUENCY, 6)}",
-            )
-        return self
-
-    @model_validator(mode="after")
-    def _points_need_a_rate(self) -> Self:
-        points = self.waveform_points
-        if points is None:
-            return self
-        if self.waveform_rate is None:
-            raise fault(
-                ["waveform_points"],
-                "waveform_points needs waveform_rate, the points per second that are kept; add "
-                'for instance waveform_rate = "100 kHz", or take waveform_points out',
-            )
-        if not points:
-            raise fault(
-                ["waveform_points"],
-                "waveform_points names no point; name one, or leave waveform_points out for all of "
-                "them, or leave waveform_rate out for none",
-            )
-        for position, point in enumerate(points):
-            if point in points[:position]:
-                raise fault(["waveform_points", position], f"{point!r} is listed twice")
-        return self
-
-
-class Scenario(Value):
-    """What arrives, what the circuit does to it, how the converter looks, and how it is computed.
-
-    ``source`` holds the file as it was written, and is empty for a scenario made in Python.
-    """
-
-    format: Annotated[Literal[1], BeforeValidator(newer_format(FORMAT))] = Field(
-        default=1, description="version of the scenario format"
-    )
-    title: str = Field(default="", max_length=200, description="what the scenario shows")
-    seed: int = Field(
-        default=0, ge=0, lt=2**63, strict=True, description="seed of everything random in the run"
-    )
     stimulus: AnyStimulus = Field(description="what arrives at the first stage")
     chain: tuple[AnyStage, ...] = Field(
         default=(), description="the stages, in order from the sensor to the converter's pin"
@@ -150,7 +40,6 @@ class Scenario(Value):
     check: tuple[AnyCheck, ...] = Field(
         default=(), description="what must hold, each check with its limit"
     )
-    source: str = Field(default="", exclude=True, repr=False, description="the file as written")
 
     @model_validator(mode="after")
     def _stages_have_names_of_their_own(self) -> Self:
@@ -273,52 +162,3 @@ class Scenario(Value):
     def files(self) -> tuple[Path, ...]:
         """Return the files that the scenario is made from: recordings, tables of the converter."""
         return tuple(dict.fromkeys([*self.stimulus.files(), *self.adc.files()]))
-
-    def resolved(self) -> dict[str, Any]:
-        """Return every value in SI units, defaults filled in, as plain data for JSON."""
-        return self.model_dump(mode="json")
-
-    def digest(self, sha256: Callable[[Path], str] | None = None) -> str:
-        """Return the SHA-256 of the resolved values, files counted by content, not by name.
-
-        The same scenario in another folder has the same digest; title and source text do not
-        count.
-
-        Parameters
-        ----------
-        sha256 : digest of a file's content; left out, ``sha256_of``
-        """
-        return digest_of(self.resolved(), self.files(), sha256)
-
-    def in_file(self, path: tuple[str | int, ...]) -> tuple[str | int, ...]:
-        """Return where in the file a path of the scenario is: there."""
-        return path
-
-    @property
-    def file_text(self) -> str:
-        """The file that the scenario stands in, as written."""
-        return self.source
-
-
-def digest_of(
-    values: dict[str, Any], files: Sequence[Path], sha256: Callable[[Path], str] | None = None
-) -> str:
-    """Return the SHA-256 of resolved values, files counted by content, the title not at all."""
-    counted = {key: value for key, value in values.items() if key != "title"}
-    named = {str(file): (sha256 or sha256_of)(file) for file in files}
-    text = json.dumps(_renamed(counted, named), sort_keys=True, separators=(",", ":"))
-    return hashlib.sha256(text.encode()).hexdigest()
-
-
-def sha256_of(file: Path) -> str:
-    """Return the SHA-256 of a file's content, read in blocks."""
-    with file.open("rb") as stream:
-        return hashlib.file_digest(stream, "sha256").hexdigest()
-
-
-def _renamed(value: Any, names: dict[str, str]) -> Any:
-    if isinstance(value, dict):
-        return {key: _renamed(item, names) for key, item in value.items()}
-    if isinstance(value, list):
-        return [_renamed(item, names) for item in value]
-    return names.get(value, value) if isinstance(value, str) else value

@@ -7,8 +7,13 @@ from collections.abc import Callable, Mapping, Sequence
 from pydantic_core import InitErrorDetails, PydanticCustomError, ValidationError
 
 from frontend_sim.converter import AnyAdc
-from frontend_sim.converter.clock import conversion_count, first_code_instant
 from frontend_sim.quantities import FREQUENCY, TIME, as_text, shown
+
+Path = tuple[str | int, ...]
+"""Keys and positions (from 0) on the way from the top of a scenario to a value."""
+
+BrokenRule = tuple[Path, str]
+"""Path from the top of a scenario, and the whole message."""
 
 MOST_CONVERSIONS = 10**12
 """More conversions than this are a slip of the pen; an array of their codes takes 8 TB."""
@@ -73,10 +78,10 @@ def conversions_fault(adc: AnyAdc, duration: float) -> str | None:
             f"{duration * rate:.3g} conversions, more than {MOST_CONVERSIONS:.0e}; shorten "
             f"simulation.duration, or lower adc.{key}"
         )
-    if conversion_count(adc, duration) < 1:
+    if adc.code_count(duration) < 1:
         return (
             "no conversion falls into the run: the first is done at "
-            f"{as_text(first_code_instant(adc), TIME, 6)} (adc.first, and what it takes from there "
+            f"{as_text(adc.code_instant(0), TIME, 6)} (adc.first, and what it takes from there "
             f"on), and the run ends at {as_text(duration, TIME, 6)}; lengthen simulation.duration, "
             "or lower adc.first"
         )

@@ -13,14 +13,12 @@ from frontend_sim.converter.adc import Adc
 from frontend_sim.errors import ModelError, nearest
 from frontend_sim.quantities import TIME, as_text
 from frontend_sim.scenario.checks.base import Check
+from frontend_sim.scenario.rules import BrokenRule
 from frontend_sim.scenario.scan import Channel, Scan
 from frontend_sim.scenario.signal import PIN, UnitError, named, signal_units
 
 if TYPE_CHECKING:
-    from frontend_sim.scenario.model import SimulationSettings
-
-Fault = tuple[tuple[str | int, ...], str]
-"""Path from the top of the scenario, and the whole message."""
+    from frontend_sim.scenario.settings import SimulationSettings
 
 MOST_LOOKS = 1 << 17
 """Most looks in one scan."""
@@ -28,7 +26,7 @@ MOST_LOOKS = 1 << 17
 LINEAR = "stages behind the multiplexer must be linear"
 
 
-def channel_faults(channels: Sequence[Channel], checks: Sequence[Check]) -> Iterator[Fault]:
+def channel_faults(channels: Sequence[Channel], checks: Sequence[Check]) -> Iterator[BrokenRule]:
     """Return which channels share a name, and which checks name a channel that is not there."""
     taken: dict[str, int] = {}
     for position, channel in enumerate(channels):
@@ -51,7 +49,7 @@ def scan_faults(
     adc: AnyAdc,
     settings: SimulationSettings,
     channels: Sequence[Channel],
-) -> Iterator[Fault]:
+) -> Iterator[BrokenRule]:
     """Return what is wrong with the turns of a scan."""
     if not isinstance(adc, Adc):
         yield (
@@ -76,7 +74,7 @@ def scan_faults(
         yield from _shared_faults(scan, settings, channels)
 
 
-def _order_faults(scan: Scan, names: Sequence[str]) -> Iterator[Fault]:
+def _order_faults(scan: Scan, names: Sequence[str]) -> Iterator[BrokenRule]:
     if scan.order is None:
         return
     for position, name in enumerate(scan.order):
@@ -92,7 +90,7 @@ def _order_faults(scan: Scan, names: Sequence[str]) -> Iterator[Fault]:
         )
 
 
-def _time_faults(scan: Scan, adc: Adc) -> Iterator[Fault]:
+def _time_faults(scan: Scan, adc: Adc) -> Iterator[BrokenRule]:
     needed = scan.settle + scan.dwell / adc.rate
     if scan.slot is not None and needed > scan.slot * (1.0 + 1e-9):
         parts = f"{scan.dwell} / adc.rate = {as_text(scan.dwell / adc.rate, TIME, 6)}"
@@ -111,7 +109,7 @@ def _time_faults(scan: Scan, adc: Adc) -> Iterator[Fault]:
         )
 
 
-def _simultaneous_faults(scan: Scan, names: Sequence[str], adc: Adc) -> Iterator[Fault]:
+def _simultaneous_faults(scan: Scan, names: Sequence[str], adc: Adc) -> Iterator[BrokenRule]:
     held = "a sample-and-hold has one value for each channel and scan"
     if scan.dwell > 1:
         yield ("scan", "dwell"), f"{held}; leave dwell out with simultaneous sampling"
@@ -128,7 +126,7 @@ def _simultaneous_faults(scan: Scan, names: Sequence[str], adc: Adc) -> Iterator
 
 def _shared_faults(
     scan: Scan, settings: SimulationSettings, channels: Sequence[Channel]
-) -> Iterator[Fault]:
+) -> Iterator[BrokenRule]:
     if settings.discretization != "exact":
         yield (
             ("simulation", "discretization"),

@@ -2,12 +2,12 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterator, Mapping
+from collections.abc import Iterator, Mapping
 from functools import cached_property
-from pathlib import Path as FilePath
-from typing import Annotated, Any, Literal, Self
+from pathlib import Path
+from typing import Any, Self
 
-from pydantic import BeforeValidator, Field, ValidationError, model_validator
+from pydantic import Field, ValidationError, model_validator
 
 from frontend_sim.converter import AnyAdc
 from frontend_sim.converter.adc import Adc
@@ -15,12 +15,14 @@ from frontend_sim.errors import ScenarioError
 from frontend_sim.scenario.channel_scenario import ChannelScenario, Origin, with_channel
 from frontend_sim.scenario.checks import AnyCheck
 from frontend_sim.scenario.environment import Environment
-from frontend_sim.scenario.model import FORMAT, Scenario, SimulationSettings, digest_of
+from frontend_sim.scenario.model import Scenario
 from frontend_sim.scenario.rhythm import Rhythm
-from frontend_sim.scenario.rules import faults, newer_format
+from frontend_sim.scenario.rules import BrokenRule, faults
 from frontend_sim.scenario.scan import Channel, Scan
-from frontend_sim.scenario.scan_rules import Fault, channel_faults, scan_faults
-from frontend_sim.values import Value
+from frontend_sim.scenario.scan_rules import channel_faults, scan_faults
+from frontend_sim.scenario.scenario_file import ScenarioFile
+from frontend_sim.scenario.settings import SimulationSettings
+from frontend_sim.values import Value, validated
 
 NO_END = (
     "missing; none of the channels' stimuli ends by itself, so say how long to run, for instance "
@@ -29,19 +31,9 @@ NO_END = (
 """What is wrong with a scan that nothing ends."""
 
 
-class ScanScenario(Value):
-    """What arrives at several channels, what their circuits do, how one converter scans them.
+class ScanScenario(ScenarioFile):
+    """What arrives at several channels, what their circuits do, how one converter scans them."""
 
-    ``source`` holds the file as it was written, and is empty for a scan made in Python.
-    """
-
-    format: Annotated[Literal[1], BeforeValidator(newer_format(FORMAT))] = Field(
-        default=1, description="version of the scenario format"
-    )
-    title: str = Field(default="", max_length=200, description="what the scenario shows")
-    seed: int = Field(
-        default=0, ge=0, lt=2**63, strict=True, description="seed of everything random in the run"
-    )
     channel: tuple[Channel, ...] = Field(
         min_length=1, description="the channels of a scan, instead of [stimulus] and [[chain]]"
     )
@@ -54,7 +46,6 @@ class ScanScenario(Value):
     check: tuple[AnyCheck, ...] = Field(
         default=(), description="what must hold, each check with its limit"
     )
-    source: str = Field(default="", exclude=True, repr=False, description="the file as written")
 
     @model_validator(mode="after")
     def _turns_are_possible(self) -> Self:
@@ -68,7 +59,7 @@ class ScanScenario(Value):
     @model_validator(mode="after")
     def _channels_are_scenarios(self) -> Self:
         made: list[ChannelScenario] = []
-        found: list[Fault] = []
+        found: list[BrokenRule] = []
         for position in range(len(self.channel)):
             try:
                 made.append(self._channel(position, self.simulation.duration))
@@ -80,7 +71,7 @@ class ScanScenario(Value):
             channel.__dict__["stimulus"] = scenario.stimulus
         return self
 
-    def _refuse(self, found: Iterator[Fault]) -> None:
+    def _refuse(self, found: Iterator[BrokenRule]) -> None:
         told = list(found)
         if told:
             raise faults(type(self).__name__, told)
@@ -139,7 +130,8 @@ class ScanScenario(Value):
             # Behind the multiplexer there is no waveform of one channel.
             own = [stage.label(place) for place, stage in enumerate(channel.chain, start=1)]
             changes["waveform_points"] = ("stimulus", *own)
-        return ChannelScenario.model_validate(
+        return validated(
+            ChannelScenario,
             {
                 "title": f"{self.title}: {channel.name}"[:200] if self.title else channel.name,
                 "seed": channel_seed(self.seed, channel.name),
@@ -151,7 +143,7 @@ class ScanScenario(Value):
                 "check": [self._check(place) for place in origin.checks],
                 "channel": channel.name,
                 "origin": origin,
-            }
+            },
         )
 
     def _check(self, place: int) -> Value:
@@ -170,27 +162,10 @@ class ScanScenario(Value):
             {**given, **({"source": ""} if update else {}), **(update or {})}
         )
 
-    def files(self) -> tuple[FilePath, ...]:
+    def files(self) -> tuple[Path, ...]:
         """Return the files that the scenario is made from: recordings, tables of the converter."""
         of_channels = [file for channel in self.channel for file in channel.stimulus.files()]
         return tuple(dict.fromkeys([*of_channels, *self.adc.files()]))
-
-    def resolved(self) -> dict[str, Any]:
-        """Return every value in SI units, defaults filled in, as plain data for JSON."""
-        return self.model_dump(mode="json")
-
-    def digest(self, sha256: Callable[[FilePath], str] | None = None) -> str:
-        """Return the SHA-256 of the resolved values, see ``Scenario.digest``."""
-        return digest_of(self.resolved(), self.files(), sha256)
-
-    def in_file(self, path: tuple[str | int, ...]) -> tuple[str | int, ...]:
-        """Return where in the file a path is: there."""
-        return path
-
-    @property
-    def file_text(self) -> str:
-        """The file as written."""
-        return self.source
 
 
 AnyScenario = Scenario | ScanScenario
@@ -226,7 +201,7 @@ def single(scenario: AnyScenario, what: str, name: str = "") -> Scenario:
     return scenario
 
 
-def _faults_in_file(error: ValidationError, origin: Origin, name: str) -> Iterator[Fault]:
+def _faults_in_file(error: ValidationError, origin: Origin, name: str) -> Iterator[BrokenRule]:
     """Return what is wrong with one channel, with its paths in the file of the scan."""
     for detail in error.errors(include_url=False):
         context = detail.get("ctx") or {}

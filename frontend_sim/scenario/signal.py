@@ -7,6 +7,8 @@ from collections.abc import Sequence
 from frontend_sim.analog.stages.base import Stage
 from frontend_sim.errors import ModelError
 from frontend_sim.quantities import SIGNALS
+from frontend_sim.stimulus.base import Stimulus
+from frontend_sim.stimulus.levels import written_level
 
 PIN = "V"
 """SI unit of what the converter takes."""
@@ -48,6 +50,17 @@ def signal_units(stages: Sequence[Stage]) -> tuple[str, ...]:
         taker = repr(label)
         units.append(both[0])
     return tuple(reversed(units))
+
+
+def level_as_written(stimulus: Stimulus, stages: Sequence[Stage]) -> str:
+    """Return a level of what arrives as the file has it, ``"2 g"``; empty where none has a unit.
+
+    Parameters
+    ----------
+    stages : of the chain; the full scale of the first one that takes the stimulus is a level too
+    """
+    takers = (written_level(stage) for stage in stages if stage.units() is not None)
+    return stimulus.written_level() or next(takers, "")
 
 
 def named(unit: str) -> str:

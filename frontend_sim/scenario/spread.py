@@ -16,13 +16,13 @@ from frontend_sim.quantities import (
     as_text,
     dimension_of,
 )
-from frontend_sim.values import Value
+from frontend_sim.scenario.rules import Path
+from frontend_sim.values import Value, validated
 
 if TYPE_CHECKING:
     from frontend_sim.analog.stages.base import Stage
 
 AnyValue = TypeVar("AnyValue", bound=Value)
-Path = tuple[str | int, ...]
 
 
 @dataclass(frozen=True)
@@ -129,7 +129,7 @@ def moved(value: AnyValue, temperature: float, name: str) -> AnyValue:
         return value
     given = {key: getattr(value, key) for key in value.model_fields_set}
     try:
-        return type(value).model_validate({**given, **changes})
+        return validated(type(value), {**given, **changes})
     except ValidationError as error:
         told = error.errors(include_url=False)[0]["msg"].removeprefix("Value error, ")
         where = as_text(temperature, TEMPERATURE, 6)

@@ -10,11 +10,9 @@ from typing import Annotated, Any, get_args, get_origin
 from pydantic.fields import FieldInfo
 
 from frontend_sim.scenario.model import Scenario
+from frontend_sim.scenario.rules import Path
 from frontend_sim.scenario.scan_scenario import ScanScenario
 from frontend_sim.values import Value, may_be_left_out
-
-Path = tuple[str | int, ...]
-"""Keys and positions (from 0) on the way from the top of a file to a value."""
 
 
 @dataclass(frozen=True)

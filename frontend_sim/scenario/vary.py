@@ -13,8 +13,8 @@ from frontend_sim.errors import ScenarioError
 from frontend_sim.quantities import Part
 from frontend_sim.scenario.explain import explain
 from frontend_sim.scenario.key import Found, find
-from frontend_sim.scenario.tables import Path
-from frontend_sim.values import Value
+from frontend_sim.scenario.rules import Path
+from frontend_sim.values import Value, validated
 
 AnyScenario = TypeVar("AnyScenario", bound=Value)
 
@@ -56,9 +56,9 @@ def with_values(
         changes[path] = item
     context = {"directory": FilePath(directory or ".")}
     try:
-        return type(scenario).model_validate(_rebuilt(scenario, changes), context=context)
+        return validated(type(scenario), _rebuilt(scenario, changes), context)
     except ValidationError as error:
-        data = _plain(_rebuilt(scenario, changes))
+        data = as_tables(_rebuilt(scenario, changes))
         raise ScenarioError(explain(error.errors(include_url=False), data, {})) from None
 
 
@@ -121,12 +121,12 @@ def _given(value: Value) -> list[str]:
     ]
 
 
-def _plain(value: Any) -> Any:
-    """Return values as tables, for messages."""
+def as_tables(value: Any) -> Any:
+    """Return values as the tables of a file, for messages."""
     if isinstance(value, Value):
-        return {key: _plain(getattr(value, key)) for key in _given(value)}
-    if isinstance(value, dict):
-        return {key: _plain(item) for key, item in value.items()}
+        return {key: as_tables(getattr(value, key)) for key in _given(value)}
+    if isinstance(value, Mapping):
+        return {key: as_tables(item) for key, item in value.items()}
     if isinstance(value, list | tuple):
-        return [_plain(item) for item in value]
+        return [as_tables(item) for item in value]
     return value

@@ -10,7 +10,7 @@ from itertools import pairwise
 import numpy as np
 
 from frontend_sim.errors import ScenarioError
-from frontend_sim.scenario.model import SimulationSettings
+from frontend_sim.scenario.settings import SimulationSettings
 from frontend_sim.simulation.kernels import Real
 from frontend_sim.simulation.linear import Axis, GridMethod
 from frontend_sim.simulation.models import Model, Models, Stepping

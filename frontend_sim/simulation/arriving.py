@@ -10,7 +10,6 @@ import numpy as np
 
 from frontend_sim.analog.chain import compose
 from frontend_sim.converter import AnyAdc
-from frontend_sim.converter.clock import first_code_instant
 from frontend_sim.simulation.kernels import Real
 from frontend_sim.simulation.linear import Axis, Linear, States
 from frontend_sim.stimulus.drive import Drive, PiecewiseDrive, UniformDrive
@@ -40,7 +39,7 @@ class Arriving:
         axis = look_axis
         if adc.last_look(0) != 0 or adc.last_look(1) != 1:
             period = 1.0 / adc.true_rate
-            axis = Axis(period, first_code_instant(adc) + abs(adc.aperture_delay) + 2.0 * period)
+            axis = Axis(period, adc.code_instant(0) + abs(adc.aperture_delay) + 2.0 * period)
         return cls.along(drives, axis)
 
     @classmethod

@@ -9,7 +9,7 @@ from dataclasses import replace
 import numpy as np
 
 from frontend_sim.analog.chain import Chain
-from frontend_sim.analog.cut import CutChain
+from frontend_sim.analog.cut import CutChain, is_cut
 from frontend_sim.converter import clock
 from frontend_sim.errors import ScenarioError
 from frontend_sim.randomness import stream
@@ -28,7 +28,7 @@ from frontend_sim.simulation.models import Model, Models
 from frontend_sim.simulation.noise import NoisePath
 from frontend_sim.simulation.plan import Plan
 from frontend_sim.simulation.ratiometric import SharedReference, excited
-from frontend_sim.simulation.run import GridReport, Run, RunBlock
+from frontend_sim.simulation.run import GridReport, RunBlock
 from frontend_sim.simulation.steps import PinSteps, StimulusSteps, WaveformSteps, block_of
 from frontend_sim.simulation.switched import InputSignals, SwitchedInput, switched_input
 from frontend_sim.simulation.switched_steps import HeldSteps, capacitor_noise
@@ -79,7 +79,7 @@ class Simulation:
         self.chain: Chain = circuit_of(scenario)
         self.drives: tuple[Drive, ...] = scenario.stimulus.drives(stream(scenario.seed, "stimulus"))
         self.duration = _duration(scenario)
-        self.count = clock.conversion_count(scenario.adc, self.duration)
+        self.count = scenario.adc.code_count(self.duration)
         fault = conversions_fault(scenario.adc, self.duration)
         if fault is not None:
             raise ScenarioError(fault)
@@ -89,16 +89,17 @@ class Simulation:
         self.grid: GridReport | None = None
         self._block = block
         self._pin = [len(self.chain.points) - 1]
-        cut = CutChain.of(stages_of(scenario), scenario.environment.temperature)
+        stages = stages_of(scenario)
+        cut = CutChain.of(stages, temperature) if is_cut(stages, temperature) else None
         initial = scenario.simulation.initial
         drives = excited(scenario, self.drives)
-        self._models = Models.of(self.chain, cut, drives, initial, self.duration)
+        self._models = Models(self.chain, cut, drives, initial, self.duration)
         self._shared = SharedReference.of(scenario)
         self.sampler: SwitchedInput | None = switched_input(scenario)
         self._plan = Plan.of(scenario, *self._trials())
-        if all(stage.limiter() is None for stage in stages_of(scenario)):
+        if cut is None:
             self.notes += scenario_notes(scenario)
-        self.notes += amplifier_notes(scenario, stages_of(scenario))
+        self.notes += amplifier_notes(scenario, stages)
         self.notes += self._plan.notes
         self.notes += self.sampler.notes if self.sampler is not None else ()
         self.noise_path = self._noise_path()
@@ -275,22 +276,3 @@ def _duration(scenario: Scenario) -> float:
     if known is None:
         raise ScenarioError("simulation.duration is missing: this stimulus never ends by itself")
     return known
-
-
-def simulate(scenario: Scenario, progress: Progress | None = None, block: int = BLOCK) -> Run:
-    """Run a scenario and return its arrays.
-
-    Parameters
-    ----------
-    scenario : what to simulate
-    progress : called with the share that is done, from 0 to 1
-    block : instants computed at once; it bounds memory and never changes a result
-
-    Raises
-    ------
-    InputError
-        If the scenario cannot be run, see ``Simulation``.
-    """
-    simulation = Simulation(scenario, block)
-    blocks = list(simulation.blocks(progress))
-    return Run.of(scenario, blocks, simulation.grid, simulation.notes)

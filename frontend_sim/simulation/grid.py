@@ -20,7 +20,7 @@ class GridDrive(UniformDrive):
     origin: float = 0.0
 
     @property
-    def initial(self) -> float:  # type: ignore[override]  # derived here, stored elsewhere
+    def initial(self) -> float:
         """Value before t = 0."""
         return sum(drive.initial for drive in self.drives)
 

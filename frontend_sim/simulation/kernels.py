@@ -166,6 +166,39 @@ def recur(x: Any, powers: Any, stop: Any, which: Any, sums: Any, states: Any) ->
 
 
 @compiled()
+def follow(x: Any, free: Any, found: Any) -> None:
+    """found[i, k] += x[i] · free[i], and x[i] += found[i, k, :n], row k after row, in chain i."""
+    chains, n, width = free.shape
+    for i in range(chains):
+        for k in range(found.shape[1]):
+            for s in range(0, n - 1, 2):  # two at a time, in the same order
+                one, two = x[i, s], x[i, s + 1]
+                for j in range(width):
+                    total = found[i, k, j] + one * free[i, s, j]
+                    found[i, k, j] = total + two * free[i, s + 1, j]
+            if n % 2:
+                for j in range(width):
+                    found[i, k, j] += x[i, n - 1] * free[i, n - 1, j]
+            for s in range(n):
+                x[i, s] += found[i, k, s]
+
+
+@compiled()
+def pick(found: Any, begin: int, feed: Any, points: Any, y: Any) -> None:
+    """y[i, r R + k] = found[i, r, begin + k] + feed[i] u, u the point at the end of the stride."""
+    chains, rows = found.shape[:2]
+    row, stride = y.shape[1] // rows, (len(points) - 1) // y.shape[1]
+    for i in range(chains):
+        share = feed[i]
+        for r in range(rows):
+            at = r * row
+            u = points[(at + 1) * stride : (at + row) * stride + 1 : stride]
+            part, here = y[i, at : at + row], found[i, r, begin : begin + row]
+            for k in range(row):
+                part[k] = here[k] + share * u[k]
+
+
+@compiled()
 def steady(index: Any, since: Any, before: int, stride: int) -> tuple[bool, bool]:
     """Tell whether every index is ``stride`` after the one before, and every instant on a point."""
     uneven, off = False, False

@@ -94,12 +94,12 @@ class Linear:
         level = sum(drive.initial for drive in drives)
         x = chain.settled(level) if initial == "settled" else np.zeros(chain.order)
         groups = []
-        for delay in np.unique(chain.delay[list(points)]):
+        for delay in sorted(set(chain.delay[list(points)].tolist())):
             rows = tuple(row for row, point in enumerate(points) if chain.delay[point] == delay)
             outputs = Outputs.of(chain, [points[row] for row in rows])
             before = outputs.c @ x + outputs.d * (level if initial == "settled" else 0.0)
             paths = tuple(_path(chain, drive, outputs, initial, axis, grid) for drive in drives)
-            groups.append(Group(rows, float(delay), before, paths))
+            groups.append(Group(rows, delay, before, paths))
         return cls(tuple(groups), len(points), chain.offset[list(points)])
 
     def before(self) -> Real:

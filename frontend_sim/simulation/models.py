@@ -51,18 +51,6 @@ class Models:
     initial: Initial
     duration: float
 
-    @classmethod
-    def of(
-        cls,
-        chain: Chain,
-        cut: CutChain,
-        drives: tuple[Drive, ...],
-        initial: Initial,
-        duration: float,
-    ) -> Models:
-        """Note whether anything in the chain limits."""
-        return cls(chain, cut if cut.places else None, drives, initial, duration)
-
     def model(self, points: Sequence[int], axis: Axis, stepping: Stepping) -> Model:
         """Return some points of the chain as functions of time. Raises as ``Limited.of`` does."""
         if self.cut is None:

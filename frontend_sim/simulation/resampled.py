@@ -18,22 +18,22 @@ class Resampled(UniformDrive):
     times: int
 
     @property
-    def rate(self) -> float:  # type: ignore[override]  # derived here, stored elsewhere
+    def rate(self) -> float:
         """Points per second [Hz]."""
         return self.drive.rate * self.times
 
     @property
-    def origin(self) -> float:  # type: ignore[override]  # derived here, stored elsewhere
+    def origin(self) -> float:
         """Time of point 0 [s]."""
         return self.drive.origin
 
     @property
-    def between(self) -> Between:  # type: ignore[override]  # derived here, stored elsewhere
+    def between(self) -> Between:
         """What the signal does between points."""
         return self.drive.between
 
     @property
-    def initial(self) -> float:  # type: ignore[override]  # derived here, stored elsewhere
+    def initial(self) -> float:
         """Value before point 0."""
         return self.drive.initial
 

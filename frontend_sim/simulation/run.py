@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, fields
 from typing import Any, Self
 
 import numpy as np
@@ -109,15 +109,6 @@ class Run:
             name: np.concatenate([block.waveform[name] for block in blocks])
             for name in blocks[0].waveform
         }
-        names = (
-            "time",
-            "pin",
-            "codes",
-            "voltage",
-            "overrange",
-            "waveform_time",
-            "stimulus",
-            "held",
-        )
+        names = {field.name for field in fields(RunBlock)} - {"start", "waveform"}
         arrays = {name: joined(name) for name in names}
         return cls(scenario=scenario, waveform=waveform, grid=grid, notes=notes, **arrays)

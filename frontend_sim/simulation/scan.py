@@ -82,10 +82,10 @@ class ScanSimulation:
             for i, channel in enumerate(self.channels.values())
         ]
         self._adc = rhythm.sequence(adc)
-        self.count = clock.conversion_count(self._adc, self.duration)
+        self.count = self._adc.code_count(self.duration)
         if rhythm.simultaneous:
             held = rhythm.visiting(adc, 0)
-            self.count = clock.conversion_count(held, self.duration) * rhythm.conversions
+            self.count = held.code_count(self.duration) * rhythm.conversions
         temperature = scenario.environment.temperature
         self._digitizer = self._adc.digitizer(scenario.seed, temperature)
         self._scans = scans or max(LOOKS // self._turns.looks, 1)

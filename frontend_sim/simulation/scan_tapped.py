@@ -7,7 +7,8 @@ from dataclasses import replace
 
 import numpy as np
 
-from frontend_sim.analog.chain import Chain, Section
+from frontend_sim.analog.chain import Chain
+from frontend_sim.analog.section import Section
 from frontend_sim.scenario.rhythm import Rhythm
 from frontend_sim.scenario.scan_scenario import ScanScenario
 from frontend_sim.simulation.engine import Simulation

@@ -6,7 +6,8 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
-from frontend_sim.analog.chain import Chain, Section, compose
+from frontend_sim.analog.chain import Chain, compose
+from frontend_sim.analog.section import Section
 from frontend_sim.simulation.engine import Simulation
 from frontend_sim.simulation.kernels import Real
 from frontend_sim.simulation.linear import Axis, Linear, States

@@ -6,8 +6,7 @@ from typing import overload
 
 from frontend_sim.scenario.model import Scenario
 from frontend_sim.scenario.scan_scenario import ScanScenario
-from frontend_sim.simulation.engine import BLOCK, Progress
-from frontend_sim.simulation.engine import simulate as simulate_one
+from frontend_sim.simulation.engine import BLOCK, Progress, Simulation
 from frontend_sim.simulation.run import Run
 from frontend_sim.simulation.scan import ScanRun, simulate_scan
 
@@ -53,4 +52,6 @@ def simulate(
     """
     if isinstance(scenario, ScanScenario):
         return simulate_scan(scenario, progress, discarded)
-    return simulate_one(scenario, progress, block)
+    simulation = Simulation(scenario, block)
+    blocks = list(simulation.blocks(progress))
+    return Run.of(scenario, blocks, simulation.grid, simulation.notes)

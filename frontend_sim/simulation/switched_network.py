@@ -9,9 +9,9 @@ from typing import Self
 import numpy as np
 
 from frontend_sim.analog.block import Block
-from frontend_sim.analog.chain import Section, Tap
 from frontend_sim.analog.exponential import expm1
 from frontend_sim.analog.port import Port
+from frontend_sim.analog.section import Section, Tap
 from frontend_sim.errors import ModelError
 from frontend_sim.simulation.kernels import Real
 

@@ -14,7 +14,14 @@ from frontend_sim.analog.chain import Chain
 from frontend_sim.analog.discretize import DiscreteModel
 from frontend_sim.analog.exponential import power
 from frontend_sim.simulation import kernels
-from frontend_sim.simulation.lifted import LONGEST_ROW, Lifted, row_length
+from frontend_sim.simulation.lifted import (
+    LONGEST_ROW,
+    PRODUCT,
+    Lifted,
+    entries,
+    row_length,
+    weights_of,
+)
 from frontend_sim.simulation.path import Outputs, State
 from frontend_sim.simulation.resampled import Resampled
 from frontend_sim.simulation.since import SincePoint
@@ -26,9 +33,6 @@ LONGEST_SUM = 4096
 """Most points in one weighted sum; longer stretches are cut after the conversion before them."""
 MOST_POINTS = 1 << 22
 """Most points held in memory at once."""
-PRODUCT = 1 << 19
-"""Most multiplications in one matrix product: small enough that a BLAS library never splits it
-over threads, so the number of threads never shows in the result."""
 WAVEFORM_TILE = 256 * LONGEST_ROW
 """Instants in one product where every point is an output. All tiles are powers of two up to this
 one, so blocks that start at its multiples never cut a tile."""
@@ -107,17 +111,21 @@ class UniformPath:
         source, sure = drive or self.drive, 0
         if drive is not None and isinstance(self.drive, Resampled):
             source = Resampled(drive, self.drive.times)
-        if self.on_points and number % self.tile == 0 and (number > 0 or self.settled):
+        if self.on_points and number % self.tile == 0:
             sure = len(instants) // self.lifted.row * self.lifted.row
         if sure == 0:
             return self._located(state, source, number, instants)
-        x, y = state.x.copy(), np.empty((len(self.outputs.d), len(instants)))
-        if number == 0:  # settled, so the state is the same one stride before
+        x, y, begin = state.x.copy(), np.empty((len(self.outputs.d), len(instants))), 0
+        if number == 0 and self.settled:  # so the state is the same one stride before
             x = self.initial - self.model.stop * source.initial
-        for done in range(0, sure, self.tile):
+        elif number == 0:
+            begin = min(self.tile, sure)
+            state, y[:, :begin] = self._located(state, source, 0, instants[:begin])
+            x = state.x
+        for done in range(begin, sure, self.tile):
             upto, node = min(done + self.tile, sure), (number + done - 1) * self.stride
             points = source.points(node, node + (upto - done) * self.stride + 1)
-            self.lifted.advance(x, points, y[:, done:upto])
+            self.lifted.advance(x[None], points, y[:, None, done:upto])
         state = State(x, (number + sure - 1) * self.stride)
         if sure < len(instants):
             state, y[:, sure:] = self._located(state, source, number + sure, instants[sure:])
@@ -170,11 +178,11 @@ class UniformPath:
     @cached_property
     def lifted(self) -> Lifted:
         """The outputs of a whole tile at every stride-th point."""
-        row = min(row_length(self.stride, len(self.outputs.d)), self.tile)
+        entry = entries(self.stride, len(self.gamma))
+        row = min(row_length(entry, len(self.outputs.d)), self.tile)
         feed = np.asarray(self.outputs.d + self.outputs.c @ self.model.stop)
-        return Lifted.of(
-            self.model.e, self._weights(row * self.stride), self.outputs, feed, self.stride, row
-        )
+        step = self._power(self.stride)
+        return Lifted.of(step, self._stride_weights, self.outputs, feed, row)
 
     @cached_property
     def _ages(self) -> dict[int, Real]:
@@ -186,7 +194,8 @@ class UniformPath:
         longest = max(self._ages, default=0)
         if longest < max(length, 1):
             longest = 1 << (length - 1).bit_length()
-            self._ages[longest] = weights_of(self.model.e, self.gamma, longest)
+            columns, step = weights_of(self.model.e, self.gamma[:, None], longest)
+            self._ages[longest], self._powers[longest] = columns, step
         return self._ages[longest]
 
     @cached_property
@@ -216,7 +225,7 @@ class UniformPath:
             first = before - node
             if on_points:
                 here = points[first : index[stop - 1] - node + 1]
-                self.lifted.advance(x, here, y[:, part])
+                self.lifted.advance(x[None], here, y[:, None, part])
             else:
                 count = np.diff(index[part], prepend=before)
                 states = self._states(x, points, first, count, steady)
@@ -271,13 +280,3 @@ class UniformPath:
         y = np.empty((len(self.outputs.d), len(here)))
         kernels.readout(states, u, self.outputs.c, self.outputs.d, y)
         return y
-
-
-def weights_of(e: Real, gamma: Real, count: int) -> Real:
-    """Return Phi^age gamma for ages count - 1 down to 0, a power of two, shape (n, count)."""
-    columns = gamma[:, None]
-    square = e
-    while columns.shape[1] < count:
-        columns = np.concatenate([columns, columns + square @ columns], axis=1)
-        square = 2.0 * square + square @ square
-    return np.ascontiguousarray(columns[:, ::-1])

@@ -13,8 +13,9 @@ from frontend_sim.quantities import Dimension, Limit, Part, as_text, mark_of, pa
 from frontend_sim.quantities.dimension import FRACTION
 from frontend_sim.quantities.limit import parse_limit
 from frontend_sim.quantities.writing import as_share
-from frontend_sim.scenario.key import find, key_text, number_at, read_number
+from frontend_sim.scenario.key import find, number_at, read_number
 from frontend_sim.scenario.scan_scenario import AnyScenario
+from frontend_sim.scenario.walk import key_text
 from frontend_sim.solve.domain import (
     Continuous,
     Domain,

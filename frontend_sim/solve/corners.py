@@ -8,10 +8,10 @@ from itertools import product
 
 from frontend_sim.errors import InputError
 from frontend_sim.quantities import Part
-from frontend_sim.scenario.key import key_text
 from frontend_sim.scenario.scan_scenario import AnyScenario
 from frontend_sim.scenario.spread import SpreadPart, spread_parts
 from frontend_sim.scenario.vary import with_values
+from frontend_sim.scenario.walk import key_text
 
 MOST_PARTS = 10
 """Parts with a tolerance; they have 2 to this power corners."""

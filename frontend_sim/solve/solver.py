@@ -50,7 +50,7 @@ class Solver:
         """Prepare the search; nothing is run yet."""
         if not FEWEST_POINTS <= points <= MOST_POINTS:
             raise InputError(
-                f"the search takes from {FEWEST_POINTS} to {MOST_POINTS} points; given {points}"
+                f"points must lie from {FEWEST_POINTS} to {MOST_POINTS}; given {points}"
             )
         self.key, self.goal, self.points = key, goal, points
         wide = corners or key.of_tolerance

@@ -136,8 +136,8 @@ def varied(
     """
     if not FINEST <= tolerance <= COARSEST:
         raise InputError(
-            f"the relative tolerance of a solution must lie from {FINEST:g} to {COARSEST:g}; given "
-            f"{tolerance:g}"
+            f"the tolerance of a solution (--within) must lie from {FINEST:g} to {COARSEST:g}; "
+            f"given {tolerance:g}"
         )
     whose = tolerance_key(scenario, key) or value_key(scenario, key)
     ends = [read_bound(scenario, whose, bound) for bound in (low, high)]

@@ -8,7 +8,7 @@ from pathlib import Path
 from typing import Self
 
 from frontend_sim.stimulus.drive import Drive
-from frontend_sim.stimulus.levels import LevelFault, absolute_keys, level_faults
+from frontend_sim.stimulus.levels import LevelFault, absolute_keys, level_faults, written_level
 from frontend_sim.values import Value
 
 Key = tuple[int, ...]
@@ -44,6 +44,10 @@ class Stimulus(Value):
     def foreign_levels(self, signal: str) -> list[LevelFault]:
         """Return which values are in units of something else, see ``unit_faults``."""
         return list(level_faults(self, signal))
+
+    def written_level(self) -> str:
+        """Return a level of the signal as the file has it, with its unit; empty without one."""
+        return written_level(self)
 
     def terms(self) -> Iterator[tuple[tuple[str | int, ...], Stimulus]]:
         """Return what the signal is the sum of, each with its path; a plain stimulus is its own."""

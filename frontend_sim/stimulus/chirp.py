@@ -52,21 +52,21 @@ class Sweep(PiecewiseDrive):
         return 2.0 * np.pi * max(self.start, self.stop)
 
     @property
-    def generator(self) -> Real:  # type: ignore[override]  # derived here, stored elsewhere
+    def generator(self) -> Real:
         """A chain of integrators, and a held offset."""
         g = np.zeros((DEGREE + 2, DEGREE + 2))
         np.fill_diagonal(g[:DEGREE, 1 : DEGREE + 1], self._fastest)
         return g
 
     @property
-    def readout(self) -> Real:  # type: ignore[override]  # derived here, stored elsewhere
+    def readout(self) -> Real:
         """The value of the polynomial, and the offset."""
         r = np.zeros(DEGREE + 2)
         r[0] = r[-1] = 1.0
         return r
 
     @property
-    def initial(self) -> float:  # type: ignore[override]  # derived here, stored elsewhere
+    def initial(self) -> float:
         """Return the offset."""
         return self.offset
 

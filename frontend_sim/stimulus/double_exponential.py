@@ -30,17 +30,17 @@ class Surge(PiecewiseDrive):
     rise: float
 
     @property
-    def generator(self) -> Real:  # type: ignore[override]  # derived here, stored elsewhere
+    def generator(self) -> Real:
         """Two decays and a held baseline."""
         return np.diag([-1.0 / self.decay, -1.0 / self.rise, 0.0])
 
     @property
-    def readout(self) -> Real:  # type: ignore[override]  # derived here, stored elsewhere
+    def readout(self) -> Real:
         """The difference of the decays, and the baseline."""
         return np.array([1.0, -1.0, 1.0])
 
     @property
-    def initial(self) -> float:  # type: ignore[override]  # derived here, stored elsewhere
+    def initial(self) -> float:
         """Return the baseline."""
         return self.baseline
 

@@ -14,7 +14,7 @@ from __future__ import annotations
 from abc import ABC, abstractmethod
 from dataclasses import dataclass
 from functools import cached_property
-from typing import Literal
+from typing import TYPE_CHECKING, Literal
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
@@ -27,18 +27,29 @@ LINE = np.array([[0.0, 1.0], [0.0, 0.0]])
 
 
 class PiecewiseDrive(ABC):
-    """A signal given by a linear generator whose states are known in closed form at any time.
+    """A signal given by a linear generator whose states are known in closed form at any time."""
 
-    generator : G, shape (m, m) [1/s]
-    readout : r, shape (m,)
-    initial : the value before t = 0
-    fresh : time after which the generator's state, run by itself, is worth setting anew [s]
-    """
+    if TYPE_CHECKING:  # read-only here, so that a drive may store these, or work them out
 
-    generator: Real
-    readout: Real
-    initial: float
-    fresh: float = np.inf
+        @property
+        @abstractmethod
+        def generator(self) -> Real:
+            """G, shape (m, m) [1/s]."""
+
+        @property
+        @abstractmethod
+        def readout(self) -> Real:
+            """r, shape (m,)."""
+
+        @property
+        @abstractmethod
+        def initial(self) -> float:
+            """The value before t = 0."""
+
+    @property
+    def fresh(self) -> float:
+        """Time after which the generator's state, run by itself, is worth setting anew [s]."""
+        return np.inf
 
     @abstractmethod
     def events(self, start: float, stop: float) -> Real:
@@ -54,19 +65,49 @@ class PiecewiseDrive(ABC):
         return np.where(times < 0.0, self.initial, inside)
 
 
+class LineDrive(PiecewiseDrive):
+    """A signal of straight lines, or of held values alone, from event to event."""
+
+    @property
+    def held(self) -> bool:
+        """Whether no value ever changes between events; one state is then enough."""
+        return False
+
+    @property
+    def generator(self) -> Real:
+        """Value and slope, or one held value."""
+        return np.zeros((1, 1)) if self.held else LINE
+
+    @property
+    def readout(self) -> Real:
+        """The value."""
+        return np.ones(1) if self.held else np.array([1.0, 0.0])
+
+
 class UniformDrive(ABC):
-    """A signal given by points at ``origin + j / rate``, held or joined by lines.
+    """A signal given by points at ``origin + j / rate``, held or joined by lines."""
 
-    rate : points per second [Hz]
-    origin : time of point 0, at least 0 [s]
-    between : what the signal does between points
-    initial : the value before point 0, which is the value of point 0
-    """
+    if TYPE_CHECKING:  # read-only here, as those of ``PiecewiseDrive``
 
-    rate: float
-    origin: float
-    between: Between
-    initial: float
+        @property
+        @abstractmethod
+        def rate(self) -> float:
+            """Points per second [Hz]."""
+
+        @property
+        @abstractmethod
+        def origin(self) -> float:
+            """Time of point 0, at least 0 [s]."""
+
+        @property
+        @abstractmethod
+        def between(self) -> Between:
+            """What the signal does between points."""
+
+        @property
+        @abstractmethod
+        def initial(self) -> float:
+            """The value before point 0, which is the value of point 0."""
 
     @abstractmethod
     def points(self, first: int, last: int) -> Real:
@@ -105,7 +146,7 @@ Drive = PiecewiseDrive | UniformDrive
 
 
 @dataclass(frozen=True, eq=False)
-class Lines(PiecewiseDrive):
+class Lines(LineDrive):
     """Pieces of straight lines: value ``levels[i] + slopes[i] (t - breaks[i])`` from breaks[i] on.
 
     Parameters
@@ -133,18 +174,9 @@ class Lines(PiecewiseDrive):
         return cls(float(initial), np.asarray(breaks, dtype=np.float64), level_array, slope_array)
 
     @cached_property
-    def _held(self) -> bool:
+    def held(self) -> bool:
+        """Whether all slopes are zero."""
         return not np.any(self.slopes)
-
-    @property
-    def generator(self) -> Real:  # type: ignore[override]  # derived here, stored elsewhere
-        """One state where all levels are held, else value and slope."""
-        return np.zeros((1, 1)) if self._held else LINE
-
-    @property
-    def readout(self) -> Real:  # type: ignore[override]  # derived here, stored elsewhere
-        """Return the weights of the generator's states."""
-        return np.ones(1) if self._held else np.array([1.0, 0.0])
 
     def events(self, start: float, stop: float) -> Real:
         """Return the breaks in (start, stop]."""
@@ -157,6 +189,6 @@ class Lines(PiecewiseDrive):
         inside = np.maximum(piece, 0)
         slope = np.where(piece < 0, 0.0, self.slopes[inside])
         level = np.where(piece < 0, self.initial, self.levels[inside])
-        if self._held:
+        if self.held:
             return level[:, None]
         return np.column_stack([level + slope * (times - self.breaks[inside]), slope])

@@ -23,18 +23,18 @@ class HalfWave(PiecewiseDrive):
     length: float
 
     @property
-    def generator(self) -> Real:  # type: ignore[override]  # derived here, stored elsewhere
+    def generator(self) -> Real:
         """A rotation by pi / length, and a held baseline."""
         w = np.pi / self.length
         return np.array([[0.0, w, 0.0], [-w, 0.0, 0.0], [0.0, 0.0, 0.0]])
 
     @property
-    def readout(self) -> Real:  # type: ignore[override]  # derived here, stored elsewhere
+    def readout(self) -> Real:
         """Sine and baseline."""
         return np.array([1.0, 0.0, 1.0])
 
     @property
-    def initial(self) -> float:  # type: ignore[override]  # derived here, stored elsewhere
+    def initial(self) -> float:
         """Return the baseline."""
         return self.baseline
 

@@ -3,10 +3,11 @@
 from __future__ import annotations
 
 from collections.abc import Iterator
+from functools import cache
 from typing import NamedTuple
 
 from frontend_sim.errors import QuantityError
-from frontend_sim.quantities import ReadsLevel, level_in, mark_of
+from frontend_sim.quantities import ReadsLevel, Sense, level_in, mark_of
 from frontend_sim.values import Value
 
 
@@ -24,18 +25,43 @@ def level_faults(value: Value, signal: str) -> Iterator[LevelFault]:
     ----------
     signal : SI unit of the signal
     """
-    for name, field in type(value).model_fields.items():
+    for path, level, sense in _levels(value):
+        try:
+            level_in(level, signal, sense)
+        except QuantityError as error:
+            yield LevelFault(path, str(error))
+
+
+def written_level(value: Value) -> str:
+    """Return the text of a level as it was given, "" without one; not that of a mere difference,
+    if there is another.
+    """
+    texts = {"value": "", "difference": "", "slope": ""}
+    for _, level, sense in _levels(value):
+        texts[sense] = texts[sense] or getattr(level, "given", "")
+    return texts["value"] or texts["difference"]
+
+
+def _levels(value: Value) -> Iterator[tuple[tuple[str | int, ...], float, Sense]]:
+    """Return the levels of a value, and of the values in it, with their keys and positions."""
+    senses = _senses(type(value))
+    for name in type(value).model_fields:
         item = getattr(value, name)
-        mark = mark_of(field.annotation, field.metadata)
-        if isinstance(mark, ReadsLevel) and item is not None:
-            try:
-                level_in(item, signal, mark.sense)
-            except QuantityError as error:
-                yield LevelFault((name,), str(error))
+        if name in senses and item is not None:
+            yield (name,), item, senses[name]
         for position, inner in enumerate(item if isinstance(item, tuple) else ()):
             if isinstance(inner, Value):
-                for path, text in level_faults(inner, signal):
-                    yield LevelFault((name, position, *path), text)
+                for path, level, sense in _levels(inner):
+                    yield (name, position, *path), level, sense
+
+
+@cache
+def _senses(kind: type[Value]) -> dict[str, Sense]:
+    """Return the keys of a kind that hold levels, and what each level is."""
+    marks = {
+        name: mark_of(field.annotation, field.metadata) for name, field in kind.model_fields.items()
+    }
+    return {name: mark.sense for name, mark in marks.items() if isinstance(mark, ReadsLevel)}
 
 
 def absolute_keys(value: Value) -> tuple[list[str], list[str]]:
@@ -43,14 +69,6 @@ def absolute_keys(value: Value) -> tuple[list[str], list[str]]:
 
     Whether a key was given or left out does not count: plain data for JSON have all of them.
     """
-    marks = {
-        name: mark_of(field.annotation, field.metadata)
-        for name, field in type(value).model_fields.items()
-    }
-    keys = [
-        name
-        for name, mark in marks.items()
-        if isinstance(mark, ReadsLevel) and mark.sense == "value"
-    ]
+    keys = [name for name, sense in _senses(type(value)).items() if sense == "value"]
     given = [key for key in keys if getattr(value, key) != 0.0]
     return given, [key for key in keys if key not in given]

@@ -33,7 +33,7 @@ class Burst(UniformDrive):
     between: Between = "line"
 
     @property
-    def rate(self) -> float:  # type: ignore[override]  # derived here, stored elsewhere
+    def rate(self) -> float:
         """Points per second."""
         return POINTS_PER_CYCLE * self.bandwidth
 

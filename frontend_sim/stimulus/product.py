@@ -6,7 +6,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from frontend_sim.stimulus.drive import LINE, Drive, PiecewiseDrive, Real, UniformDrive
+from frontend_sim.stimulus.drive import Drive, LineDrive, PiecewiseDrive, Real, UniformDrive
 
 
 @dataclass(frozen=True, eq=False)
@@ -22,25 +22,25 @@ class Product(PiecewiseDrive):
     second: PiecewiseDrive
 
     @property
-    def generator(self) -> Real:  # type: ignore[override]  # derived here, stored elsewhere
+    def generator(self) -> Real:
         """G ⊗ 1 + 1 ⊗ H."""
         g, h = self.first.generator, self.second.generator
         total = np.kron(g, np.eye(len(h))) + np.kron(np.eye(len(g)), h)
         return np.asarray(total, dtype=np.float64)
 
     @property
-    def readout(self) -> Real:  # type: ignore[override]  # derived here, stored elsewhere
+    def readout(self) -> Real:
         """Kronecker product of both readouts."""
         both = np.kron(self.first.readout, self.second.readout)
         return np.asarray(both, dtype=np.float64)
 
     @property
-    def initial(self) -> float:  # type: ignore[override]  # derived here, stored elsewhere
+    def initial(self) -> float:
         """Product of both initial values."""
         return self.first.initial * self.second.initial
 
     @property
-    def fresh(self) -> float:  # type: ignore[override]  # derived here, stored elsewhere
+    def fresh(self) -> float:
         """The shorter one of both."""
         return min(self.first.fresh, self.second.fresh)
 
@@ -55,23 +55,13 @@ class Product(PiecewiseDrive):
 
 
 @dataclass(frozen=True, eq=False)
-class PointByPoint(PiecewiseDrive):
+class PointByPoint(LineDrive):
     """A drive of points as pieces of lines, with an event at each point."""
 
     points: UniformDrive
 
     @property
-    def generator(self) -> Real:  # type: ignore[override]  # derived here, stored elsewhere
-        """Value and slope."""
-        return LINE
-
-    @property
-    def readout(self) -> Real:  # type: ignore[override]  # derived here, stored elsewhere
-        """Return the value."""
-        return np.array([1.0, 0.0])
-
-    @property
-    def initial(self) -> float:  # type: ignore[override]  # derived here, stored elsewhere
+    def initial(self) -> float:
         """Value before the first point."""
         return self.points.initial
 

@@ -10,11 +10,11 @@ from pydantic import Field, model_validator
 
 from frontend_sim.quantities import PositiveTime, SignalLevel, Time
 from frontend_sim.stimulus.base import Key, Stimulus
-from frontend_sim.stimulus.drive import LINE, Drive, Lines, PiecewiseDrive, Real
+from frontend_sim.stimulus.drive import Drive, LineDrive, Lines, Real
 
 
 @dataclass(frozen=True, eq=False)
-class Train(PiecewiseDrive):
+class Train(LineDrive):
     """A cycle of straight pieces that repeats.
 
     Parameters
@@ -33,16 +33,6 @@ class Train(PiecewiseDrive):
     offsets: Real
     levels: Real
     slopes: Real
-
-    @property
-    def generator(self) -> Real:  # type: ignore[override]  # derived here, stored elsewhere
-        """A line."""
-        return LINE
-
-    @property
-    def readout(self) -> Real:  # type: ignore[override]  # derived here, stored elsewhere
-        """The value of the line."""
-        return np.array([1.0, 0.0])
 
     def _breaks(self, first: int, last: int) -> Real:
         cycle = np.arange(first, last, dtype=np.float64)

@@ -27,18 +27,18 @@ class Tone(PiecewiseDrive):
     offset: float
 
     @property
-    def generator(self) -> Real:  # type: ignore[override]  # derived here, stored elsewhere
+    def generator(self) -> Real:
         """A rotation by 2 pi f, and a held offset."""
         w = 2.0 * np.pi * self.frequency
         return np.array([[0.0, w, 0.0], [-w, 0.0, 0.0], [0.0, 0.0, 0.0]])
 
     @property
-    def readout(self) -> Real:  # type: ignore[override]  # derived here, stored elsewhere
+    def readout(self) -> Real:
         """Sine and offset."""
         return np.array([1.0, 0.0, 1.0])
 
     @property
-    def initial(self) -> float:  # type: ignore[override]  # derived here, stored elsewhere
+    def initial(self) -> float:
         """Return the value at t = 0."""
         return self.offset + self.amplitude * float(np.sin(self.phase))
 
@@ -47,7 +47,7 @@ class Tone(PiecewiseDrive):
         return np.empty(0)
 
     @property
-    def fresh(self) -> float:  # type: ignore[override]  # derived here, stored elsewhere
+    def fresh(self) -> float:
         """``FRESH`` cycles."""
         return FRESH / self.frequency
 

@@ -36,7 +36,7 @@ class SupplyDrive(PiecewiseDrive):
     scale: float = 1.0
 
     @property
-    def generator(self) -> Real:  # type: ignore[override]  # derived here, stored elsewhere
+    def generator(self) -> Real:
         """A held value, a rotation, a decay."""
         g, w = np.zeros((4, 4)), 2.0 * math.pi * self.frequency
         g[1, 2], g[2, 1] = w, -w
@@ -44,17 +44,17 @@ class SupplyDrive(PiecewiseDrive):
         return g
 
     @property
-    def readout(self) -> Real:  # type: ignore[override]  # derived here, stored elsewhere
+    def readout(self) -> Real:
         """Held value, sine, decay; all scaled."""
         return self.scale * np.array([1.0, 1.0, 0.0, 1.0])
 
     @property
-    def initial(self) -> float:  # type: ignore[override]  # derived here, stored elsewhere
+    def initial(self) -> float:
         """Return the level before t = 0."""
         return self.scale * self.level
 
     @property
-    def fresh(self) -> float:  # type: ignore[override]  # derived here, stored elsewhere
+    def fresh(self) -> float:
         """A thousand cycles of the ripple."""
         return 1000.0 / self.frequency if self.ripple else math.inf
 

@@ -11,7 +11,6 @@ import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
 from numpy.typing import NDArray
-from pydantic import ValidationError
 
 from frontend_sim.analog.block import first_order, gain_block, second_order
 from frontend_sim.analog.cut import CutChain
@@ -29,7 +28,7 @@ from frontend_sim.analog.limits.amplifier import ClosedLoop
 from frontend_sim.analog.network import opened
 from frontend_sim.analog.stages import STAGES
 from frontend_sim.analog.stages.amplifier_stage import AmplifierStage
-from frontend_sim.errors import ModelError
+from frontend_sim.errors import ModelError, ScenarioError
 
 Real = NDArray[np.float64]
 
@@ -248,7 +247,7 @@ def test_impossible_limits_are_refused(given: dict[str, float], words: str) -> N
 )
 def test_wrong_keys_are_refused(kind: str, values: dict[str, Any], words: str) -> None:
     """Each wrong value of a kind is named."""
-    with pytest.raises(ValidationError, match=words):
+    with pytest.raises(ScenarioError, match=words):
         STAGES[kind].model_validate({"kind": kind, **values})
 
 

@@ -49,6 +49,7 @@ SCENARIOS: dict[str, tuple[str, str]] = {
     "unknown stage": (_text(chain='kind = "rc-low"'), "rc-low"),
     "stage without kind": (_text(chain='resistance = "1 ohm"'), "kind"),
     "missing key": (_text(chain='kind = "rc-lowpass"\nresistance = "1 kohm"'), "capacitance"),
+    "a set of runs": ('format = 1\nbase = "a.toml"\n[draws]\ncount = 3\n', "frontend-sim replay"),
     "missing adc": ('[stimulus]\nkind = "step"\nafter = 1\n', "adc"),
     "wrong dimension": (_text(adc=_adc(high='"3.3 ohm"')), "3.3 ohm"),
     "unknown unit": (_text(adc=_adc(rate='"20 kHzz"')), "kHzz"),

@@ -108,6 +108,11 @@ WRONG = {
     "beyond the end": ("1 s", "", "s.toml: line 27: check[1].before (settling)"),
     "beyond the end, counted from the event": ("19.5 ms", "", "before leads to t = 20.5 ms"),
     "unknown kind": ("1 ms", '\n[[check]]\nkind = "setling"\n', "did you mean 'settling'?"),
+    "no input network": (
+        "1 ms",
+        '\n[[check]]\nkind = "acquisition"\n',
+        "the converter has no input network; give [adc.input]",
+    ),
     "hum in a short run": (
         "1 ms",
         '\n[[check]]\nkind = "mains-level"\nat_most = "1 mV"\n',
@@ -117,7 +122,7 @@ WRONG = {
 
 
 @pytest.mark.parametrize("name", WRONG)
-@pytest.mark.parametrize("command", ["run", "validate"])
+@pytest.mark.parametrize("command", ["run", "inspect", "validate"])
 def test_a_wrong_check_is_status_2(
     name: str, command: str, folder: Path, capsys: pytest.CaptureFixture[str]
 ) -> None:

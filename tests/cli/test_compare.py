@@ -103,6 +103,8 @@ def here(runs: Path, tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> Path:
         (["a.h5", "same.h5", "moved.h5"], 1),
         (["scan.h5", "scan.h5"], 0),
         (["scan.h5", "scan2.h5"], 1),
+        (["scan.h5", "scan2.h5", "--tolerance", "40 LSB", "--tolerance", "1 %"], 0),
+        (["scan.h5", "scan.h5", "--attribute", "--seeds", "8"], 0),
         (["one", "one"], 0),
         (["one", "two"], 1),
         (["one/set.h5", "two"], 1),
@@ -127,7 +129,6 @@ def test_the_status_is_that_of_a_gate(
         (["a.h5", "none.h5"], "none.h5 cannot be opened"),
         (["a.h5", "one"], "one is a set and the other is none"),
         (["a.h5", "scan.h5"], "scan.h5 is a scan and the other is none"),
-        (["scan.h5", "scan2.h5", "--attribute"], "take records of one channel"),
         (["one", "two", "--seeds", "9"], "the runs of sets have many seeds already"),
         (["a.h5", "moved.h5", "--tolerance", "much"], '"much" is no tolerance'),
         (["a.h5", "moved.h5", "--tolerance", "hedroom=1 V"], "did you mean 'headroom'"),
@@ -165,6 +166,34 @@ def test_json_tells_all(here: Path, capsys: pytest.CaptureFixture[str]) -> None:
     assert found["attribution"]["remainder"]["pin, mean"] == pytest.approx(0.0, abs=1e-9)
 
 
+def test_json_of_scans(here: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    """The key that changed names its channel, and so do the measures that it moves."""
+    assert main(["compare", "scan.h5", "scan2.h5", "--attribute", "--json"]) == 1
+    (found,) = json.loads(capsys.readouterr().out)
+    key = "channel[oil].chain[filter].resistance"
+    assert [row["key"] for row in found["changed"]] == [key]
+    (share,) = found["attribution"]["parameters"]
+    assert share["moved"]["oil: pin, mean"] < -0.01
+    assert share["moved"]["water: pin, mean"] == 0.0
+    assert found["attribution"]["units"]["oil: headroom"] == "V"
+
+
+def test_more_channels_than_a_picture_has_rows_are_refused(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str]
+) -> None:
+    """The message names the number, before anything is run again, and no file is left."""
+    monkeypatch.chdir(tmp_path)
+    head, _, tail = SCAN.replace("RESISTANCE", "10 kohm").partition("[[channel]]")
+    _, _, rest = tail.partition("[adc]")
+    level = '[channel.stimulus]\nkind = "step"\nafter = "1 V"\n'
+    channels = "".join(f'[[channel]]\nname = "c{i}"\n{level}' for i in range(33))
+    scan: Any = parse_scenario(f"{head}{channels}[adc]{rest}")
+    record_run(ScanSimulation(scan), "many.h5")
+    assert main(["compare", "many.h5", "many.h5", "--plot", "x.png"]) == 2
+    assert "at most 32 channels, and this scan has 33" in capsys.readouterr().err
+    assert not Path("x.png").exists()
+
+
 def test_json_of_nights(here: Path, capsys: pytest.CaptureFixture[str]) -> None:
     """Runs, changed keys and flipped verdicts of two sets, as plain data."""
     assert main(["compare", "one", "two", "--json"]) == 1
@@ -178,7 +207,9 @@ def test_json_of_nights(here: Path, capsys: pytest.CaptureFixture[str]) -> None:
     assert corner["now_fail"] > 0
 
 
-@pytest.mark.parametrize("pair", [("a.h5", "moved.h5"), ("a.h5", "shifted.h5"), ("one", "two")])
+@pytest.mark.parametrize(
+    "pair", [("a.h5", "moved.h5"), ("a.h5", "shifted.h5"), ("scan.h5", "scan2.h5"), ("one", "two")]
+)
 @pytest.mark.parametrize("name", ["both.png", "both.svg"])
 def test_plots_are_drawn(here: Path, pair: tuple[str, str], name: str) -> None:
     """Both runs and their difference become a file, which is not overwritten unasked."""
@@ -217,7 +248,7 @@ def test_report_writes_a_page(
     [
         (["none.h5"], "none.h5 cannot be opened"),
         (["a.h5", "-o", "page.pdf"], "a page is written as .html"),
-        (["a.h5", "--since", "scan.h5"], "one is a scan"),
+        (["a.h5", "--since", "scan.h5"], "scan.h5 is a scan and the other is none"),
         (["a.h5", "--since", "one"], "one is a directory"),
         (["one", "--since", "a.h5"], "no set of this program"),
     ],

@@ -12,7 +12,7 @@ from pathlib import Path
 import pytest
 from nights import BASE, DRAWS, base, made_set
 
-from frontend_sim.archive import open_record
+from frontend_sim.archive import Record, open_record
 from frontend_sim.archive.set_table import open_set
 from frontend_sim.cli import main
 
@@ -42,6 +42,27 @@ def test_a_check_fails(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> No
     assert len(list((tmp_path / "night" / "records").iterdir())) == 1
     assert main(arguments) == 1
     assert json.loads(capsys.readouterr().out)["kept"] == 2
+
+
+def test_what_lies_around_failures_is_kept(
+    tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    """By two options; a window that is no time, or stands around nothing, is exit status 2."""
+    file = made_set(tmp_path, '[[vary]]\nkey = "chain[2].gain"\nvalues = [1, 2]\n')
+    arguments = ["replay", str(file), "-o", str(tmp_path / "night"), *HERE]
+    kept = ["--keep", "around-failures", "--around"]
+    assert main([*arguments, *kept, "0.12 ms"]) == 1
+    with open_record(tmp_path / "night" / "records" / "gain=1.h5") as record:
+        assert isinstance(record, Record)
+        assert record.time.tolist() == pytest.approx([0.0, 0.05e-3, 0.1e-3, 0.15e-3, 0.2e-3])
+    capsys.readouterr()
+    for wrong, message in (
+        ([*kept, "3 V"], "unit of voltage"),
+        ([*kept, "-1 ms"], "0 s or more"),
+        (["--around", "1 ms"], "around means nothing with keep = 'failures'"),
+    ):
+        assert main([*arguments, *wrong]) == 2
+        assert message in capsys.readouterr().err
 
 
 def test_the_input_is_wrong(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:

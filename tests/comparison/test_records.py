@@ -17,7 +17,7 @@ from frontend_sim.comparison import (
     over_seeds,
     parse_tolerances,
 )
-from frontend_sim.comparison.attribution import CODES, PIN
+from frontend_sim.comparison.again import CODES, PIN
 from frontend_sim.comparison.randomness import slow_noise
 from frontend_sim.errors import InputError
 from frontend_sim.scenario import Scenario

@@ -9,10 +9,10 @@ import pytest
 from digitizing import constant, digitized
 from hypothesis import given, settings
 from hypothesis import strategies as st
-from pydantic import ValidationError
 
 from frontend_sim.converter import Adc
 from frontend_sim.converter.quantizer import read_back
+from frontend_sim.errors import ScenarioError
 
 
 def adc(averaging: dict[str, Any] | None, **values: Any) -> Adc:
@@ -147,5 +147,5 @@ def test_impossible_averaging_is_refused(
     if message is None:
         adc(averaging, **values)
         return
-    with pytest.raises(ValidationError, match=message):
+    with pytest.raises(ScenarioError, match=message):
         adc(averaging, **values)

@@ -12,7 +12,7 @@ from hypothesis import example, given, settings
 from hypothesis import strategies as st
 
 from frontend_sim.converter.adc import Adc
-from frontend_sim.converter.clock import conversion_count, nominal_instants, sampling_instants
+from frontend_sim.converter.clock import nominal_instants, sampling_instants
 
 
 def _adc(rate: float, **values: float) -> Adc:
@@ -41,7 +41,7 @@ def _adc(rate: float, **values: float) -> Adc:
 )
 def test_awkward_durations(duration: float, rate: float, first: float, count: int) -> None:
     """All k with first + k/rate in [0, duration), where decimal fractions meet their multiples."""
-    assert conversion_count(_adc(rate, first=first), duration) == count
+    assert _adc(rate, first=first).code_count(duration) == count
 
 
 @given(
@@ -63,7 +63,7 @@ def test_the_count_is_that_of_exact_fractions(milliseconds: int, tenths: int, fi
     start = Fraction(first, 1000)
     exact = max(math.ceil((duration - start) * rate), 0)
     adc = _adc(float(rate), first=float(start))
-    assert conversion_count(adc, float(duration)) == exact
+    assert adc.code_count(float(duration)) == exact
     if exact:
         last = nominal_instants(adc, exact - 1, exact)[0]
         assert last < float(duration)

@@ -10,12 +10,12 @@ import pytest
 from digitizing import constant, digitized
 from hypothesis import given, settings
 from hypothesis import strategies as st
-from pydantic import ValidationError
 from scipy import integrate, stats
 
 from frontend_sim.converter import Adc
 from frontend_sim.converter.dither import Dither
 from frontend_sim.converter.dither_error import dither_error
+from frontend_sim.errors import ScenarioError
 
 SHAPES = ("uniform", "triangular")
 
@@ -128,7 +128,7 @@ def test_taking_it_off_leaves_codes_alone() -> None:
     [
         ({"shape": "uniform", "width": 0.0}, "above 0 LSB"),
         ({"shape": "uniform", "width": "1 mV"}, "not LSB"),
-        ({"shape": "uniform"}, "Field required"),
+        ({"shape": "uniform"}, "missing"),
         ({"shape": "gaussian", "width": 1.0}, "'uniform' or 'triangular'"),
         ({"shape": "uniform", "width": 513.0}, "513 LSB is more than half of the range, 512 LSB"),
         ({"shape": "uniform", "width": 1.0, "subtractive": "yes"}, "valid boolean"),
@@ -136,5 +136,5 @@ def test_taking_it_off_leaves_codes_alone() -> None:
 )
 def test_impossible_dither_is_refused(dither: dict[str, Any], message: str) -> None:
     """Each with a message of its own."""
-    with pytest.raises(ValidationError, match=message):
+    with pytest.raises(ScenarioError, match=message):
         adc(dither=dither)

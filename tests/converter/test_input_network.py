@@ -5,10 +5,10 @@ from __future__ import annotations
 from typing import Any
 
 import pytest
-from pydantic import ValidationError
 
 from frontend_sim.converter.adc import Adc
 from frontend_sim.converter.input_network import InputNetwork
+from frontend_sim.errors import ScenarioError
 
 PARTS = {
     "switch_resistance": "1 kohm",
@@ -57,7 +57,7 @@ def test_what_the_capacitor_starts_from(
 )
 def test_values_that_cannot_be(keys: dict[str, Any], message: str) -> None:
     """Values without a meaning are refused with the reason."""
-    with pytest.raises(ValidationError, match=message):
+    with pytest.raises(ScenarioError, match=message):
         network(**keys)
 
 
@@ -79,5 +79,5 @@ def test_an_acquisition_needs_room_between_looks(keys: dict[str, Any], fits: boo
     if fits:
         Adc.model_validate(values)
         return
-    with pytest.raises(ValidationError, match="acquisition_time 1 us must be shorter"):
+    with pytest.raises(ScenarioError, match="acquisition_time 1 us must be shorter"):
         Adc.model_validate(values)

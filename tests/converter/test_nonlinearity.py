@@ -9,7 +9,6 @@ import numpy as np
 import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
-from pydantic import ValidationError
 
 from frontend_sim.converter import Adc, OversamplingAdc
 from frontend_sim.converter.bends import bend, largest_peak
@@ -244,14 +243,14 @@ def test_impossible_nonlinearity_is_refused(
     nonlinearity: dict[str, Any], values: dict[str, Any], message: str
 ) -> None:
     """Each with a message of its own, the number and the limit in it."""
-    with pytest.raises(ValidationError, match=message):
+    with pytest.raises(ScenarioError, match=message):
         adc(nonlinearity, **values)
 
 
 def test_an_oversampling_converter_has_no_array() -> None:
     """Capacitor mismatch is about successive approximation; a bow is welcome."""
     keys: dict[str, Any] = {"modulator_rate": 1e5, "decimation": 8, "order": 2, "high": 1.0}
-    with pytest.raises(ValidationError, match="successive-approximation array"):
+    with pytest.raises(ScenarioError, match="successive-approximation array"):
         OversamplingAdc(**keys, bits=16, nonlinearity={"capacitor_mismatch": 0.01})
     OversamplingAdc(**keys, bits=24, nonlinearity={"shape": "bow", "peak": 10.0})
 

@@ -14,6 +14,7 @@ from pydantic import TypeAdapter, ValidationError
 from frontend_sim.converter import ADCS, Adc, AnyAdc, OversamplingAdc
 from frontend_sim.converter.clock import look_count
 from frontend_sim.converter.sinc_filter import SincFilter
+from frontend_sim.errors import ScenarioError
 from frontend_sim.values import may_be_left_out
 
 
@@ -64,7 +65,7 @@ def test_rates_and_ratio_tell_each_other(
 ) -> None:
     """Any two of modulator rate, decimation and data rate; a ratio that is no whole one is told."""
     if ratio is None:
-        with pytest.raises(ValidationError, match=r"100 Hz needs a decimation of 333.333333"):
+        with pytest.raises(ScenarioError, match=r"100 Hz needs a decimation of 333.333333"):
             adc(**values)
         return
     made = adc(**values)
@@ -275,8 +276,8 @@ def test_looks_of_both_conversions() -> None:
          r"700 Hz is too fast: .* 3 times 50 samples, at most 666.666667 Hz"),
         ({"conversion": "single"}, "'continuous' or 'restarted'"),
         ({"modulator_rate": 0.0}, "above 0"),
-        ({"rate": 5.0}, "Extra inputs"),
-        ({"averaging": {"count": 2}}, "Extra inputs"),
+        ({"rate": 5.0}, "unknown here"),
+        ({"averaging": {"count": 2}}, "unknown here"),
         ({"aperture_jitter": "1 us"}, "at most 5% of the modulator's period, 5e-07 s"),
         ({"high": -2.0}, "reversed or empty"),
         ({"reference": {"voltage": 0.5}}, "reference of 0.5 V"),
@@ -284,5 +285,5 @@ def test_looks_of_both_conversions() -> None:
 )  # fmt: skip
 def test_impossible_converters_are_refused(values: dict[str, Any], message: str) -> None:
     """Each with a message of its own."""
-    with pytest.raises(ValidationError, match=message):
+    with pytest.raises(ScenarioError, match=message):
         adc(**values)

@@ -8,10 +8,9 @@ from typing import Any
 import numpy as np
 import pytest
 from digitizing import constant, digitized
-from pydantic import ValidationError
 
 from frontend_sim.converter import Adc, OversamplingAdc
-from frontend_sim.errors import ModelError
+from frontend_sim.errors import ModelError, ScenarioError
 from frontend_sim.randomness import TILE
 
 
@@ -118,12 +117,12 @@ def test_oversampling_averages_the_reference_too() -> None:
         ({"noise": "-1 ppm"}, "at least 0"),
         ({"drift": "10 ppm"}, "drift"),
         ({"filter_time_constant": "-1 ms"}, "at least 0"),
-        ({"ratio": 1}, "Extra inputs"),
+        ({"ratio": 1}, "unknown here"),
     ],
 )
 def test_impossible_references_are_refused(reference: dict[str, Any], message: str) -> None:
     """Each with a message of its own."""
-    with pytest.raises(ValidationError, match=message):
+    with pytest.raises(ScenarioError, match=message):
         adc(reference)
 
 

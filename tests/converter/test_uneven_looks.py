@@ -9,7 +9,6 @@ from hypothesis import strategies as st
 
 from frontend_sim.analog.chain import compose
 from frontend_sim.converter import Adc
-from frontend_sim.converter.clock import conversion_count
 from frontend_sim.converter.paced import PacedAdc
 from frontend_sim.converter.pattern import LookPattern
 
@@ -45,16 +44,16 @@ def test_codes_within_a_duration_are_counted(
     instants = pattern.between(0, 400)
     close = np.min(np.abs(instants - duration)) < 1e-12
     if not close:
-        assert conversion_count(adc, duration) == np.count_nonzero(instants < duration)
+        assert adc.code_count(duration) == np.count_nonzero(instants < duration)
 
 
 def test_noise_remembers_over_gaps_of_any_length() -> None:
     """kT/C noise of one pole: its correlation from look to look is exp(-gap / RC), within 4 se."""
-    from frontend_sim.analog.chain import section
+    from frontend_sim.analog.section import Section
     from frontend_sim.analog.stages.rc_lowpass import RcLowpass
     from frontend_sim.simulation.noise import NoisePath
 
-    chain = compose([section(RcLowpass(resistance=1e3, capacitance=1e-6), "rc")])
+    chain = compose([Section.of(RcLowpass(resistance=1e3, capacitance=1e-6), "rc")])
     pattern = LookPattern.of(0.0, 4e-3, [0.0, 0.2e-3, 1.5e-3])
     path = NoisePath.of(chain.noise_model(1.0), pattern, 1)
     _, noise = path.advance(path.start(), 0, 300_000)

@@ -10,17 +10,17 @@ import pytest
 from digitizing import digitized
 from hypothesis import given, settings
 from hypothesis import strategies as st
-from pydantic import ValidationError
 
 from frontend_sim.converter import Adc, AnyAdc, OversamplingAdc
 from frontend_sim.converter.clock import (
-    conversion_count,
-    first_code_instant,
     look_count,
     nominal_instants,
     sampling_instants,
 )
+from frontend_sim.errors import ScenarioError
 from frontend_sim.randomness import TILE
+from frontend_sim.scenario.model import Scenario
+from frontend_sim.simulation import simulate
 
 SINUSOIDAL = {"shape": "sinusoidal", "rms": "10 ns", "frequency": "50 Hz", "phase": "90 deg"}
 RANDOM = {"shape": "gauss-markov", "rms": "30 ns", "correlation_time": "5 ms"}
@@ -37,8 +37,8 @@ def test_a_fast_clock_comes_early() -> None:
     np.testing.assert_allclose(
         sampling_instants(fast, 0, 5, 0), 1e-3 + np.arange(5) / 10001.0, rtol=1e-15
     )
-    assert conversion_count(adc(rate_error="100 ppm"), 1.0) == 10001
-    assert conversion_count(adc(rate_error="-100 ppm"), 1.0) == 9999
+    assert adc(rate_error="100 ppm").code_count(1.0) == 10001
+    assert adc(rate_error="-100 ppm").code_count(1.0) == 9999
     assert fast.true_rate == pytest.approx(10001.0, rel=1e-15)
 
 
@@ -116,7 +116,10 @@ def test_looks_stay_in_order_and_cuts_never_show(
     seed: int,
     cuts: list[int],
 ) -> None:
-    """At any rate, rhythm, jitter and wander that is let pass, instants increase strictly."""
+    """At any rate, rhythm, jitter and wander that is let pass, instants increase strictly.
+
+    None lies further from the one before, or the first from t = 0, than the engine is told.
+    """
     make: type[AnyAdc] = OversamplingAdc if "decimation" in kind else Adc
     plain = make(**kind, bits=12, high=1.0, rate_error=rate_error)
     closest = plain.pattern.closest
@@ -136,8 +139,34 @@ def test_looks_stay_in_order_and_cuts_never_show(
     whole = sampling_instants(clocked, 0, 20_000, seed)
     np.testing.assert_array_equal(np.concatenate(parts), whole)
     assert np.all(np.diff(whole) > 0.0)
+    assert np.max(np.diff(whole, prepend=0.0)) <= clocked.digitizer(seed).longest
     far = sampling_instants(clocked, 10**7, 10**7 + 50, seed)
     assert np.all(np.diff(far) > 0.0)
+
+
+@pytest.mark.parametrize(
+    "wander",
+    [
+        {"shape": "sinusoidal", "rms": "0.5 s", "frequency": "1 mHz", "phase": "90 deg"},
+        {"shape": "gauss-markov", "rms": "0.5 s", "correlation_time": "1e7 s"},
+    ],
+)
+def test_a_clock_far_ahead_finds_the_pin(wander: dict[str, Any]) -> None:
+    """A first look hundreds of periods late still sees 1 - exp(-t / RC), 1e-12 of full scale near."""
+    scenario = Scenario.model_validate(
+        {
+            "format": 1,
+            "title": "a clock far ahead",
+            "seed": 3,
+            "stimulus": {"kind": "step", "before": 0.0, "after": 1.0},
+            "chain": [{"kind": "rc-lowpass", "resistance": 1e4, "capacitance": 1e-4}],
+            "adc": {"rate": 1e3, "bits": 12, "high": 1.0, "wander": wander},
+            "simulation": {"duration": 0.1},
+        }
+    )
+    run = simulate(scenario)
+    assert run.time[0] > 0.5
+    np.testing.assert_allclose(run.pin, -np.expm1(-run.time), rtol=0, atol=1e-12)
 
 
 @given(kind=KINDS, codes=st.integers(1, 5000))
@@ -148,11 +177,11 @@ def test_the_count_is_that_of_the_last_looks(kind: dict[str, Any], codes: int) -
     made = make(**kind, bits=12, high=1.0, first=1e-3)
     instant = float(made.pattern.at(np.array([made.last_look(codes - 1)]))[0])
     period = 1.0 / made.true_rate
-    assert conversion_count(made, instant + 0.001 * period) == codes
-    assert conversion_count(made, instant - 0.001 * period) == codes - 1
+    assert made.code_count(instant + 0.001 * period) == codes
+    assert made.code_count(instant - 0.001 * period) == codes - 1
     assert look_count(made, codes) == made.last_look(codes - 1) + 1
     assert look_count(made, 0) == 0
-    assert first_code_instant(made) <= instant
+    assert made.code_instant(0) <= instant
 
 
 @pytest.mark.parametrize(
@@ -179,5 +208,5 @@ def test_the_count_is_that_of_the_last_looks(kind: dict[str, Any], codes: int) -
 )
 def test_clocks_out_of_order_are_refused(values: dict[str, Any], message: str) -> None:
     """Each with a message of its own, the number and the limit in it."""
-    with pytest.raises(ValidationError, match=message):
+    with pytest.raises(ScenarioError, match=message):
         adc(**values)

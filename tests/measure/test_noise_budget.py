@@ -9,7 +9,7 @@ import pytest
 from scipy import integrate
 
 from frontend_sim.analog.block import first_order
-from frontend_sim.analog.chain import Section, compose
+from frontend_sim.analog.chain import compose
 from frontend_sim.analog.noise import (
     BOLTZMANN,
     NoiseInput,
@@ -18,6 +18,7 @@ from frontend_sim.analog.noise import (
     step_covariance,
     thermal_density,
 )
+from frontend_sim.analog.section import Section
 from frontend_sim.analog.stages import Butterworth, RcHighpass, RcLowpass
 from frontend_sim.converter.adc import Adc
 from frontend_sim.errors import ModelError

@@ -9,7 +9,8 @@ from pathlib import Path
 import pytest
 
 from frontend_sim.errors import OutputError
-from frontend_sim.present.figure_file import check_plot_target, new_figure, save_figure
+from frontend_sim.present.drawing import new_figure
+from frontend_sim.present.figure_file import check_plot_target, save_figure
 
 
 def drawn():

@@ -10,12 +10,16 @@ from typing import Any
 
 import numpy as np
 import pytest
+from rich.console import Console
 
+from frontend_sim.archive import open_record, record_run
 from frontend_sim.measure.response import Inspection, inspect_scenario
-from frontend_sim.present import inspection_figure, inspection_tables, plot_inspection
+from frontend_sim.present import inspection_figure, inspection_tables, plot_inspection, run_tables
 from frontend_sim.present.frequency_view import FrequencyView, phase_of
 from frontend_sim.present.step_view import StepView
-from frontend_sim.scenario.model import Scenario
+from frontend_sim.scenario import Scenario, parse_scenario
+from frontend_sim.scenario.told_unit import told_unit
+from frontend_sim.simulation import Simulation
 
 LOW = {"kind": "rc-lowpass", "resistance": "10 kohm", "capacitance": "4.7 nF"}
 HIGH = {"kind": "rc-highpass", "resistance": "10 kohm", "capacitance": "4.7 uF"}
@@ -160,6 +164,81 @@ def test_numbers_of_the_tables() -> None:
         "grid at 20.00 kHz, the conversion rate",
     ):  # fmt: skip
         assert text in shown, text
+
+
+BRIDGE = {
+    "stimulus": {"kind": "step", "after": 0.5e5},
+    "chain": [
+        {
+            "kind": "resistive-bridge",
+            "sensitivity": "2 mV/V",
+            "full_scale": "10 bar",
+            "excitation": "5 V",
+            "resistance": "350 ohm",
+        },
+        {"kind": "rc-lowpass", "resistance": "1 kohm", "capacitance": "10 nF"},
+        {"kind": "gain", "gain": 200.0},
+    ],
+    "adc": {"rate": "1 kHz", "bits": 12, "high": 2.0, "input_noise": "1 mV"},
+    "simulation": {"duration": "10 ms"},
+}
+"""Invented: 10 mV at 10 bar, 200 times, are 0.2 V per bar."""
+
+
+@pytest.mark.parametrize(
+    ("after", "one", "step", "gain", "noise"),
+    [
+        (0.5e5, "1 bar", "10.00 bar", "200.0 mV/bar", 5e-3),  # the bridge alone has a unit
+        ("500 mbar", "1 bar", "10.00 bar", "200.0 mV/bar", 5e-3),
+        ("50 kPa", "1 Pa", "1.000 MPa", "2.000 uV/Pa", 500.0),
+    ],
+)
+def test_the_stimulus_is_told_in_the_unit_of_the_file(
+    after: object, one: str, step: str, gain: str, noise: float
+) -> None:
+    """Steps, levels, gain, LSB and noise; JSON has the same numbers, and all of them in SI too."""
+    scenario = Scenario.model_validate({**BRIDGE, "stimulus": {"kind": "step", "after": after}})
+    found = inspect_scenario(scenario)
+    text = " ".join(printed(found).split())
+    for part in (f"for a step of {one} ", f"12 bits, step of {step} ", f"largest gain | {gain} "):
+        assert part in text.replace("│", "|"), part
+    assert f"pin reaches 2.00 V at a stimulus of | {step}" in text.replace("│", "|")
+    plain = found.as_dict()
+    size = plain["referred"]["unit"]["size"]
+    assert plain["unit"] == "Pa"
+    assert plain["time"]["full_scale_step"] == pytest.approx(1e6)
+    assert plain["referred"]["full_scale_step"] == pytest.approx(1e6 / size)
+    assert plain["referred"]["at_high"] == pytest.approx(plain["level"]["at_high"] / size)
+    assert plain["referred"]["lsb"] == pytest.approx(1e6 / size / 4096.0)
+    # The converter's 1 mV over 0.2 V per bar; bridge and filter, 0.15 mV of the pin, add 1 %.
+    assert plain["referred"]["noise"] == pytest.approx(noise, rel=0.02)
+
+
+def test_a_record_tells_the_unit_of_its_file(tmp_path: Path) -> None:
+    """Its values are in SI, and its file as written has the unit that a run is told in."""
+    text = """
+format = 1
+[stimulus]
+kind = "step"
+after = "2 g"
+[[chain]]
+kind = "accelerometer"
+sensitivity = "100 mV/g"
+natural_frequency = "2 kHz"
+quality_factor = 1
+[adc]
+rate = "1 kHz"
+bits = 12
+high = "2 V"
+[simulation]
+duration = "10 ms"
+"""
+    record_run(Simulation(parse_scenario(text)), tmp_path / "run.h5")
+    console = Console(file=io.StringIO(), width=100)
+    with open_record(tmp_path / "run.h5") as record:
+        assert told_unit(record.scenario).name == "g"
+        console.print(*run_tables(record))
+    assert "2.0000 g" in console.file.getvalue()
 
 
 def test_the_high_pass_says_what_its_times_refer_to() -> None:

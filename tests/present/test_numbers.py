@@ -10,6 +10,7 @@ from hypothesis import given
 from hypothesis import strategies as st
 
 from frontend_sim.present.numbers import (
+    difference,
     engineering,
     fixed,
     level,
@@ -18,7 +19,7 @@ from frontend_sim.present.numbers import (
     prefix_of,
     quantity,
 )
-from frontend_sim.quantities import FREQUENCY, parse
+from frontend_sim.quantities import FREQUENCY, SignalUnit, parse
 
 
 @pytest.mark.parametrize(
@@ -144,8 +145,11 @@ def test_quantities_have_the_unit_of_their_signal(value: float, unit: str, text:
 
 def test_levels_of_temperature_are_in_degrees() -> None:
     """Other levels are as differences are; gains are volts per unit."""
-    assert level(298.15, "K", 4) == "25.00 degC"
-    assert level(2.0, "V") == "2.00 V"
-    assert [per_unit(unit) for unit in ("V", "K", "m/s^2", "")] == [
-        "V/V", "V/K", "V/(m/s^2)", "V",
+    assert level(298.15, SignalUnit.of("K"), 4) == "25.00 degC"
+    assert difference(25.0, SignalUnit.of("K"), 4) == "25.00 K"
+    assert level(2.0, SignalUnit.of("V")) == "2.00 V"
+    assert level(5e4, SignalUnit.of("Pa", "1 bar")) == "500 mbar"
+    assert difference(9.80665e-3, SignalUnit.of("m/s^2", "1 g")) == "0.00100 g"
+    assert [per_unit(unit) for unit in ("V", "K", "m/s^2", "g", "")] == [
+        "V/V", "V/K", "V/(m/s^2)", "V/g", "V",
     ]  # fmt: skip

@@ -53,6 +53,27 @@ def printed(tables: Any) -> str:
     return stream.getvalue()
 
 
+@pytest.mark.parametrize("duration", ["2 ms", "30 ms"])
+def test_what_the_sampling_capacitor_held_is_drawn_beside_the_codes(duration: str) -> None:
+    """Dots of a few conversions and lines of many: the lag of the capacitor, in LSB."""
+    network = {
+        "switch_resistance": "10 kohm", "sampling_capacitance": "20 pF", "acquisition_time": "1 us",
+    }  # fmt: skip
+    plain = run(duration=duration)
+    scenario = plain.scenario.model_dump(exclude_unset=True)
+    scenario["adc"] = {**scenario["adc"], "input": network, "high": 5.0}
+    held = simulate(Scenario.model_validate(scenario))
+    panel = run_figure(held).axes[1]
+    curves = {str(line.get_label()): line.get_ydata() for line in panel.lines}
+    lag = (held.held - held.pin) / held.scenario.adc.lsb
+    drawn = np.asarray(curves["held by the sampling capacitor"])
+    np.testing.assert_allclose(drawn, lag, rtol=1e-12)
+    # Codes lie on what was held, within rounding; the lag is much larger than that.
+    assert float(np.max(np.abs(np.asarray(curves["codes"]) - drawn))) <= 0.5 + 1e-6
+    assert float(np.max(np.abs(lag))) > 5.0
+    assert "sampling capacitor" not in texts(run_figure(plain))
+
+
 def test_the_plot_shows_pin_codes_limits_and_overrange() -> None:
     """Axes have names with units, the limits of the range and what is beyond are drawn in."""
     figure = run_figure(run(waveform_rate="100 kHz"))

@@ -11,8 +11,9 @@ from hypothesis import strategies as st
 from frontend_sim.errors import ScenarioError
 from frontend_sim.quantities import CAPACITANCE, FREQUENCY, RESISTANCE, Part
 from frontend_sim.scenario import Scenario, load_scenario, parse_scenario
-from frontend_sim.scenario.key import find, key_text, number_at, numeric_keys, read_number
+from frontend_sim.scenario.key import find, number_at, numeric_keys, read_number
 from frontend_sim.scenario.vary import with_values
+from frontend_sim.scenario.walk import key_text
 
 ROOT = Path(__file__).parents[2]
 FILES = sorted((ROOT / "scenarios").rglob("*.toml"))

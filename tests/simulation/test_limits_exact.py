@@ -6,7 +6,7 @@ from typing import Any, Literal
 
 import numpy as np
 import pytest
-from drives import InMemory, outputs
+from drives import InMemory, marched, outputs
 from hypothesis import example, given, settings
 from hypothesis import strategies as st
 from numpy.typing import NDArray
@@ -65,12 +65,7 @@ def _run(
     longest = max(float(times[0]), float(np.max(np.diff(times)))) + interval
     axis, last = Axis(interval, longest), float(times[-1])
     model = Limited.of(CutChain.of(chain), drives, [len(chain)], initial, axis, rate, last)
-    states, parts = model.start(), []
-    for start in range(0, len(times), block or len(times)):
-        part = times[start : start + (block or len(times))]
-        states, (values,) = model.advance(states, start, part)
-        parts.append(values)
-    return np.concatenate(parts)
+    return marched(model, times, block)
 
 
 RECORDED = InMemory(np.random.default_rng(1).standard_normal(400), 1e4)

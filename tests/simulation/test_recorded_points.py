@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from typing import Literal
+
 import mpmath as mp
 import numpy as np
 import oracles
@@ -13,6 +15,7 @@ from scipy import signal
 
 from frontend_sim.analog.chain import chain_of
 from frontend_sim.analog.stages import Butterworth, Gain, RcHighpass, RcLowpass, TransportDelay
+from frontend_sim.simulation.linear import Axis, Linear
 from frontend_sim.simulation.uniform import LONGEST_SUM, WAVEFORM_TILE
 from frontend_sim.stimulus.drive import Between, Lines
 
@@ -131,6 +134,25 @@ def test_blocks_never_show(stride: int, block: int) -> None:
     times = np.arange(count) * (stride / 1e6)
     whole = outputs(EIGHTH, [drive], times)
     np.testing.assert_array_equal(outputs(EIGHTH, [drive], times, block=block), whole)
+
+
+@pytest.mark.parametrize("initial", ["settled", "rest"])
+@pytest.mark.parametrize("stride", [1, 7, 50])
+def test_blocks_of_an_even_row_never_show(stride: int, initial: Literal["settled", "rest"]) -> None:
+    """The same where every instant is known to be a point, and for a chain that was at rest."""
+    count = 2 * WAVEFORM_TILE + 777
+    drive, interval = InMemory(_noise(count * stride), 1e6), stride / 1e6
+    axis = Axis(interval, 2.0 * interval, uniform=True)
+    model = Linear.of(EIGHTH, [drive], [1], initial, axis)
+    times = np.arange(count) * interval
+    found = []
+    for block in (WAVEFORM_TILE, count):
+        states, parts = model.start(), []
+        for start in range(0, count, block):
+            states, (values,) = model.advance(states, start, times[start : start + block])
+            parts.append(values)
+        found.append(np.concatenate(parts))
+    np.testing.assert_array_equal(*found)
 
 
 @given(block=st.integers(1, 700), rate=st.floats(100.0, 5e4))

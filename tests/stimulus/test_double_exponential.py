@@ -9,11 +9,11 @@ import pytest
 from drives import outputs
 from hypothesis import given, settings
 from hypothesis import strategies as st
-from pydantic import ValidationError
 from scipy.optimize import brentq, minimize_scalar
 
 from frontend_sim.analog.chain import chain_of
 from frontend_sim.analog.stages import RcLowpass
+from frontend_sim.errors import ScenarioError
 from frontend_sim.stimulus.double_exponential import DoubleExponential, shape_of
 from frontend_sim.stimulus.drive import Drive
 
@@ -104,7 +104,7 @@ def test_its_own_pole_in_the_chain_is_nothing_special() -> None:
 )
 def test_impossible_shapes_are_refused(values: dict[str, float], message: str) -> None:
     """Half a shape, two shapes, and tails that no double exponential has."""
-    with pytest.raises(ValidationError, match=message):
+    with pytest.raises(ScenarioError, match=message):
         DoubleExponential(peak=1.0, **values)
 
 

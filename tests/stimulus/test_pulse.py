@@ -10,11 +10,11 @@ from drives import outputs
 from hypothesis import given
 from hypothesis import strategies as st
 from numpy.typing import NDArray
-from pydantic import ValidationError
 from scipy.optimize import brentq
 
 from frontend_sim.analog.chain import chain_of
 from frontend_sim.analog.stages import RcLowpass
+from frontend_sim.errors import ScenarioError
 from frontend_sim.stimulus.drive import PiecewiseDrive
 from frontend_sim.stimulus.pulse import Pulse
 
@@ -128,5 +128,5 @@ def test_a_train_through_a_low_pass_reaches_its_cycle() -> None:
 )
 def test_impossible_pulses_are_refused(values: dict[str, Any], message: str) -> None:
     """Each contradiction is told in words of its own."""
-    with pytest.raises(ValidationError, match=message):
+    with pytest.raises(ScenarioError, match=message):
         Pulse(high=1.0, **values)

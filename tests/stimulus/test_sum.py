@@ -7,10 +7,10 @@ from typing import Any
 import numpy as np
 import pytest
 from drives import outputs
-from pydantic import ValidationError
 
 from frontend_sim.analog.chain import chain_of
 from frontend_sim.analog.stages import RcLowpass
+from frontend_sim.errors import ScenarioError
 from frontend_sim.stimulus.sum import Sum
 
 STEP: dict[str, Any] = {"kind": "step", "before": 0.5, "after": -1.0, "at": 0.01}
@@ -67,5 +67,5 @@ def test_a_sum_of_endless_terms_is_endless() -> None:
 @pytest.mark.parametrize("values", [{}, {"term": []}, {"term": [{"kind": "step"}]}, {"term": [5]}])
 def test_wrong_sums_are_refused(values: dict[str, Any]) -> None:
     """No terms, an incomplete term, a term that is none."""
-    with pytest.raises(ValidationError):
+    with pytest.raises(ScenarioError):
         Sum.model_validate(values)

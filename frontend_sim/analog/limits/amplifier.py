@@ -70,6 +70,11 @@ class AmplifierLimits:
         """Steepest fall, or infinity [V/s]."""
         return self.up if self.slew_rate_down is None else self.slew_rate_down
 
+    @property
+    def any(self) -> bool:
+        """Whether anything limits."""
+        return not all(math.isinf(limit) for limit in (self.up, self.down, self.low, self.high))
+
     def around(self, blocks: Sequence[Block]) -> Limiter | None:
         """Return the limiter for a stage with these blocks, None if nothing limits.
 
@@ -82,7 +87,7 @@ class AmplifierLimits:
         ModelError
             If the block has a pole at the origin, or is neither of the two.
         """
-        if all(math.isinf(limit) for limit in (self.up, self.down, self.low, self.high)):
+        if not self.any:
             return None
         at = range(len(blocks))[self.block]
         block, replaced = blocks[at], range(at, at + 1)

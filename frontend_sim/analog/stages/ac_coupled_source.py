@@ -36,6 +36,10 @@ class AcCoupledSource(Stage):
         rate = 1.0 / (self.capacitance * self._total())
         return (first_order(-rate, (self.load_resistance / self._total(), 0.0)),)
 
+    def resistance_at_rest(self) -> float:
+        """Return R_l: the capacitor keeps the source away at rest [ohm]."""
+        return self.load_resistance
+
     def noise(self, temperature: float) -> tuple[NoiseInput, ...]:
         """Return the thermal noise of both resistors.
 

@@ -73,13 +73,18 @@ class Stage(Value):
         """
         return None
 
+    def rails(self) -> tuple[float, float]:
+        """Return the levels that the output does not pass at rest, infinite without any [V]."""
+        limits = self.limits()
+        return limits.low, limits.high
+
     def output_circuit(self) -> Circuit | None:
         """Return the circuit that a load at the output sees; None for an ideal source."""
         return None
 
-    def limits(self) -> AmplifierLimits | None:
-        """Return the limits of the amplifier in the stage; None if it has none."""
-        return None
+    def limits(self) -> AmplifierLimits:
+        """Return the limits of the amplifier in the stage; without one nothing limits."""
+        return AmplifierLimits()
 
     def limiter(self, temperature: float = REFERENCE_TEMPERATURE) -> Limiter | None:
         """Return what is not linear in the stage at a temperature [K]; None if all of it is.
@@ -93,7 +98,7 @@ class Stage(Value):
             If the limits cannot be put on these blocks, see ``AmplifierLimits.around``.
         """
         limits = self.limits()
-        return None if limits is None else limits.around(self.blocks())
+        return limits.around(self.blocks()) if limits.any else None
 
     def transport_delay(self) -> float:
         """Return the pure delay of the stage [s]."""

@@ -6,9 +6,10 @@ from typing import Literal
 
 from pydantic import Field
 
-from frontend_sim.analog.network import Circuit
-from frontend_sim.analog.stages.amplifier_stage import OUTPUT, AmplifierStage
-from frontend_sim.analog.stages.noninverting_amplifier import source
+from frontend_sim.analog.network import SIGNAL, Circuit
+from frontend_sim.analog.stages.amplifier_stage import AmplifierStage
+from frontend_sim.analog.stages.feedback_amplifier import held_behind
+from frontend_sim.analog.stages.operational_amplifier import OUTPUT
 from frontend_sim.quantities import Resistance
 
 
@@ -31,6 +32,6 @@ class Buffer(AmplifierStage):
 
     def circuit(self) -> Circuit:
         """Return the amplifier with its output as the inverting input."""
-        parts, plus = source(self.source_resistance)
+        parts, plus = held_behind("source", SIGNAL, "source_resistance", self.source_resistance)
         parts += self.amplifier([(plus, 1.0), (OUTPUT, -1.0)], (plus, OUTPUT))
         return Circuit((*parts, *self.load()), OUTPUT)

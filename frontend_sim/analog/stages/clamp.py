@@ -77,10 +77,18 @@ class Clamp(Stage):
         rate = self._rate()
         return (gain_block(1.0) if rate is None else first_order(-rate, (0.0, rate)),)
 
+    def rails(self) -> tuple[float, float]:
+        """Return where the diodes begin to conduct [V]."""
+        low, high = levels(self.low, self.high)
+        return low - self.lower_forward_voltage, high + self.upper_forward_voltage
+
+    def resistance_at_rest(self) -> float | None:
+        """Return R, while no diode conducts [ohm]."""
+        return self.resistance
+
     def limiter(self, temperature: float = REFERENCE_TEMPERATURE) -> Limiter:
         """Return the diodes."""
-        low, high = levels(self.low, self.high)
-        low, high = low - self.lower_forward_voltage, high + self.upper_forward_voltage
+        low, high = self.rails()
         ratio = math.inf
         if self.resistance is not None and self.diode_resistance is not None:
             ratio = self.resistance / self.diode_resistance

@@ -65,6 +65,10 @@ class CurrentShunt(Stage):
             return None
         return 1.0 / (self.filter_resistance * self.filter_capacitance)
 
+    def resistance_at_rest(self) -> float | None:
+        """Return that of the filter, beside which the shunt is nothing [ohm]."""
+        return self.filter_resistance
+
     def noise(self, temperature: float) -> tuple[NoiseInput, ...]:
         """Return the thermal noise of shunt and filter, which the filter limits."""
         rate = self._rate()

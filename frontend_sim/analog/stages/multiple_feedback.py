@@ -9,7 +9,7 @@ from pydantic import Field
 
 from frontend_sim.analog.network import GROUND, SIGNAL, Capacitor, Circuit, Held, Part, Resistor
 from frontend_sim.analog.stages.active_filter import ActiveFilter
-from frontend_sim.analog.stages.amplifier_stage import OUTPUT
+from frontend_sim.analog.stages.operational_amplifier import OUTPUT
 from frontend_sim.quantities import Capacitance, Resistance
 
 

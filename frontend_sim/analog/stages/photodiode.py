@@ -71,6 +71,10 @@ class Photodiode(Stage):
         rate = 1.0 / (self.load_resistance * self.junction_capacitance)
         return (first_order(-rate, (0.0, gain * rate)),)
 
+    def resistance_at_rest(self) -> float | None:
+        """Return the load, where the output is a voltage [ohm]."""
+        return self.load_resistance
+
     def noise(self, temperature: float) -> tuple[NoiseInput, ...]:
         """Return shot noise at the operating power, and thermal noise of the load."""
         blocks, size = self.blocks(), abs(self.responsivity)

@@ -10,7 +10,7 @@ from pydantic import Field
 from frontend_sim.analog.block import Block, Real, first_order
 from frontend_sim.analog.limits import Limiter
 from frontend_sim.analog.limits.variable_pole import VariablePole
-from frontend_sim.analog.noise import NoiseInput, thermal_density
+from frontend_sim.analog.noise import NoiseInput, at_output, thermal_density
 from frontend_sim.analog.stages.curved_sensor import CurvedSensor
 from frontend_sim.quantities import (
     REFERENCE_TEMPERATURE,
@@ -69,6 +69,11 @@ class Potentiometer(CurvedSensor):
         """Return R_s at positions [ohm]."""
         return self.resistance * position * (1.0 - position) + self.wiper_resistance
 
+    def resistance_at_rest(self) -> float:
+        """Return R_s with the load beside it, at the operating position [ohm]."""
+        source = float(self.source_resistance(np.array(self.operating_position)))
+        return source / (1.0 + source * self._load())
+
     def curve(self, signal: Real) -> Real:
         """Return the voltage at rest at positions [V]."""
         loaded = 1.0 + self.source_resistance(signal) * self._load()
@@ -117,13 +122,11 @@ class Potentiometer(CurvedSensor):
 
     def noise(self, temperature: float) -> tuple[NoiseInput, ...]:
         """Return the thermal noise of track, wiper and load at the operating position."""
-        source = float(self.source_resistance(np.array(self.operating_position)))
-        together = 1.0 / (1.0 / source + self._load()) if source > 0.0 else 0.0
-        density = thermal_density(together, temperature)
+        density = thermal_density(self.resistance_at_rest(), temperature)
         (block,) = self.blocks()
         name = "thermal noise of the potentiometer and its load"
         if block.order == 0:
-            return (NoiseInput(name, density, 0.0, 0, np.empty(0), 1.0),)
+            return (at_output(name, density),)
         column = np.array([-block.a[0, 0] / block.c[0]])
         return (NoiseInput(name, density, 0.0, 0, column, 0.0),)
 

@@ -33,9 +33,13 @@ class RailLimit(Stage):
         """Return a gain of one, the model while no rail is touched."""
         return (gain_block(1.0),)
 
+    def rails(self) -> tuple[float, float]:
+        """Return the two rails [V]."""
+        return levels(self.low, self.high)
+
     def limiter(self, temperature: float = REFERENCE_TEMPERATURE) -> Limiter:
         """Return the two rails."""
-        return Clipping(range(1), 1.0, *levels(self.low, self.high))
+        return Clipping(range(1), 1.0, *self.rails())
 
 
 def levels(low: float | None, high: float | None) -> tuple[float, float]:

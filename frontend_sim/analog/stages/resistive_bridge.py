@@ -4,11 +4,10 @@ from __future__ import annotations
 
 from typing import Literal
 
-import numpy as np
 from pydantic import Field
 
 from frontend_sim.analog.block import Block, gain_block
-from frontend_sim.analog.noise import NoiseInput, thermal_density
+from frontend_sim.analog.noise import NoiseInput, at_output, thermal_density
 from frontend_sim.analog.stages.base import Stage
 from frontend_sim.quantities import (
     Level,
@@ -74,7 +73,11 @@ class ResistiveBridge(Stage):
         if self.resistance == 0.0:
             return ()
         density = thermal_density(self.resistance, temperature)
-        return (NoiseInput("thermal noise of the bridge", density, 0.0, 0, np.empty(0), 1.0),)
+        return (at_output("thermal noise of the bridge", density),)
+
+    def resistance_at_rest(self) -> float:
+        """Return the resistance between the two outputs [ohm]."""
+        return self.resistance
 
     def offset(self, temperature: float) -> float:
         """Return the output without a load [V]."""

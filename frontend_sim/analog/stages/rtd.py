@@ -8,24 +8,20 @@ import numpy as np
 from pydantic import Field
 
 from frontend_sim.analog.block import Real
-from frontend_sim.analog.noise import NoiseInput, thermal_density
+from frontend_sim.analog.noise import NoiseInput, at_output, thermal_density
 from frontend_sim.analog.sensors.platinum import HIGHEST, LOWEST, ratio_slope, resistance_ratio
-from frontend_sim.analog.stages.curved_sensor import CurvedSensor
+from frontend_sim.analog.stages.temperature_sensor import TemperatureSensor
 from frontend_sim.quantities import (
-    REFERENCE_TEMPERATURE,
-    TEMPERATURE,
     NotNegativeResistance,
     PartCurrent,
     PartVoltage,
     Resistance,
-    Temperature,
-    as_text,
 )
 
 Wiring = Literal["two-wire", "three-wire", "four-wire"]
 
 
-class Rtd(CurvedSensor):
+class Rtd(TemperatureSensor):
     """Platinum resistance thermometer, R(t) = R0 (1 + A t + B t² + C (t - 100 degC) t³), t in degC
 
         v = I (R + R_e)                                  fed by a current I,
@@ -57,14 +53,6 @@ class Rtd(CurvedSensor):
     series_resistance: Resistance | None = Field(
         default=None, description="resistor R_s from excitation_voltage to the thermometer"
     )
-    operating_temperature: Temperature = Field(
-        default=REFERENCE_TEMPERATURE,
-        description="temperature at which inspect and noise take the curve's tangent",
-    )
-
-    def units(self) -> tuple[str, str]:
-        """Return temperature in, volts out."""
-        return ("K", "V")
 
     def check(self) -> None:
         """Refuse keys that leave the circuit open or mean nothing."""
@@ -101,31 +89,34 @@ class Rtd(CurvedSensor):
         seen = self.resistance(signal) + self._error()
         return voltage * series / (seen + series) ** 2 * by_kelvin
 
+    def resistance_at_rest(self) -> float:
+        """Return the resistance between the measuring leads, at the operating temperature [ohm].
+
+        A source of current adds nothing to it; the resistor of a divider stands beside it.
+        """
+        seen = float(self.resistance(np.array(self.operating_temperature))) + self._error()
+        if self.excitation_current is not None:
+            return seen
+        _, series = self._divider()
+        return seen * series / (seen + series)
+
     def ends(self) -> tuple[float, float]:
         """Return the range of the standard [K]."""
         return LOWEST, HIGHEST
-
-    def operating_point(self) -> float:
-        """Return the operating temperature [K]."""
-        return self.operating_temperature
-
-    def shown(self, signal: float) -> str:
-        """Return a temperature in degrees."""
-        return as_text(signal, TEMPERATURE, 6)
 
     def noise(self, temperature: float) -> tuple[NoiseInput, ...]:
         """Return the thermal noise of the thermometer, and of the resistor in series with it."""
         own = float(self.resistance(np.array(self.operating_temperature)))
         density = thermal_density(own, self.operating_temperature)
         if self.excitation_current is not None:
-            return (_direct("thermal noise of the thermometer", density, 1.0),)
+            return (at_output("thermal noise of the thermometer", density),)
         _, series = self._divider()
         assert self.series_resistance is not None
         share = series / (own + self._error() + series)
         other = thermal_density(self.series_resistance, temperature)
         return (
-            _direct("thermal noise of the thermometer", density, share),
-            _direct("thermal noise of series_resistance", other, 1.0 - share),
+            at_output("thermal noise of the thermometer", density, share),
+            at_output("thermal noise of series_resistance", other, 1.0 - share),
         )
 
     def _error(self) -> float:
@@ -140,7 +131,3 @@ class Rtd(CurvedSensor):
         assert self.series_resistance is not None
         wires = 2.0 * self.lead_resistance if self.wiring != "two-wire" else 0.0
         return self.excitation_voltage, self.series_resistance + wires
-
-
-def _direct(name: str, density: float, share: float) -> NoiseInput:
-    return NoiseInput(name, density, 0.0, 0, np.empty(0), share)

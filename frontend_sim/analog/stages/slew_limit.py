@@ -7,9 +7,8 @@ from typing import Literal
 
 from pydantic import Field
 
-from frontend_sim.analog.block import Block
+from frontend_sim.analog.block import Block, first_order, gain_block
 from frontend_sim.analog.limits import AmplifierLimits
-from frontend_sim.analog.stages.amplifier import closed_loop
 from frontend_sim.analog.stages.base import Stage
 from frontend_sim.quantities import Frequency, PositiveSlope
 
@@ -38,7 +37,10 @@ class SlewLimit(Stage):
 
     def blocks(self) -> tuple[Block, ...]:
         """Return the follower of small signals."""
-        return closed_loop(1.0, 1.0, self.bandwidth)
+        if self.bandwidth is None:
+            return (gain_block(1.0),)
+        rate = 2.0 * math.pi * self.bandwidth
+        return (first_order(-rate, (0.0, rate)),)
 
     def limits(self) -> AmplifierLimits:
         """Return the slew rates."""

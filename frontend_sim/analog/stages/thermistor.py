@@ -8,22 +8,20 @@ import numpy as np
 from pydantic import Field
 
 from frontend_sim.analog.block import Real
-from frontend_sim.analog.noise import NoiseInput, thermal_density
+from frontend_sim.analog.noise import NoiseInput, at_output, thermal_density
 from frontend_sim.analog.sensors.thermistor import (
     beta_slope,
     by_beta,
     by_steinhart_hart,
     steinhart_hart_slope,
 )
-from frontend_sim.analog.stages.curved_sensor import CurvedSensor
+from frontend_sim.analog.stages.temperature_sensor import TemperatureSensor
 from frontend_sim.quantities import (
     REFERENCE_TEMPERATURE,
-    TEMPERATURE,
     Beta,
     PartVoltage,
     Resistance,
     Temperature,
-    as_text,
 )
 
 LOWEST, HIGHEST = 50.0, 1000.0
@@ -32,7 +30,7 @@ LOWEST, HIGHEST = 50.0, 1000.0
 Coefficient = Annotated[float, Field(strict=True)]
 
 
-class Thermistor(CurvedSensor):
+class Thermistor(TemperatureSensor):
     """Thermistor R(T) with a resistor R_s across an excitation E
 
         v = E R / (R_s + R)    with the thermistor to ground,    v = E R_s / (R_s + R)    from E.
@@ -60,14 +58,6 @@ class Thermistor(CurvedSensor):
     place: Literal["to-ground", "to-excitation"] = Field(
         default="to-ground", description="where the thermistor stands, seen from the output"
     )
-    operating_temperature: Temperature = Field(
-        default=REFERENCE_TEMPERATURE,
-        description="temperature at which inspect and noise take the curve's tangent",
-    )
-
-    def units(self) -> tuple[str, str]:
-        """Return temperature in, volts out."""
-        return ("K", "V")
 
     def check(self) -> None:
         """Refuse keys that give no curve, or two, or one that does not fall."""
@@ -114,17 +104,14 @@ class Thermistor(CurvedSensor):
         sign = 1.0 if self.place == "to-ground" else -1.0
         return sign * self.excitation_voltage * share * (1.0 - share) * relative
 
+    def resistance_at_rest(self) -> float:
+        """Return both resistors side by side, at the operating temperature [ohm]."""
+        own = float(self.resistance(np.array(self.operating_temperature)))
+        return 1.0 / (1.0 / own + 1.0 / self.series_resistance)
+
     def ends(self) -> tuple[float, float]:
         """Return the range in which the models mean anything [K]."""
         return LOWEST, HIGHEST
-
-    def operating_point(self) -> float:
-        """Return the operating temperature [K]."""
-        return self.operating_temperature
-
-    def shown(self, signal: float) -> str:
-        """Return a temperature in degrees."""
-        return as_text(signal, TEMPERATURE, 6)
 
     def noise(self, temperature: float) -> tuple[NoiseInput, ...]:
         """Return the thermal noise of both resistors, which divide each other's."""
@@ -133,6 +120,6 @@ class Thermistor(CurvedSensor):
         own = thermal_density(float(self.resistance(at)), self.operating_temperature)
         other = thermal_density(self.series_resistance, temperature)
         return (
-            NoiseInput("thermal noise of the thermistor", own, 0.0, 0, np.empty(0), 1.0 - share),
-            NoiseInput("thermal noise of series_resistance", other, 0.0, 0, np.empty(0), share),
+            at_output("thermal noise of the thermistor", own, 1.0 - share),
+            at_output("thermal noise of series_resistance", other, share),
         )

@@ -17,8 +17,9 @@ from frontend_sim.analog.network import (
     Part,
     Resistor,
 )
-from frontend_sim.analog.stages.amplifier_stage import OUTPUT, REFERENCE, AmplifierStage
+from frontend_sim.analog.stages.amplifier_stage import REFERENCE, AmplifierStage
 from frontend_sim.analog.stages.loop_bandwidth import feedback_times
+from frontend_sim.analog.stages.operational_amplifier import OUTPUT
 from frontend_sim.quantities import Capacitance, Resistance, Voltage
 
 

@@ -15,7 +15,7 @@ from frontend_sim.analog.stages.active_filter import (
     nearest_pair,
     quality_factor_of,
 )
-from frontend_sim.analog.stages.amplifier_stage import OUTPUT
+from frontend_sim.analog.stages.operational_amplifier import OUTPUT
 from frontend_sim.quantities import Capacitance, Fraction, Resistance
 
 

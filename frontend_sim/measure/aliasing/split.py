@@ -112,7 +112,7 @@ class Points(UniformDrive):
     between: Between
 
     @property
-    def initial(self) -> float:  # type: ignore[override]  # derived here, stored elsewhere
+    def initial(self) -> float:
         """Return the value of point 0."""
         return float(self.row[0])
 

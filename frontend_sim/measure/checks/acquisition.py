@@ -2,12 +2,15 @@
 
 from __future__ import annotations
 
+from functools import partial
+
 import numpy as np
 
 from frontend_sim.errors import MeasureError
 from frontend_sim.measure.acquisition import Acquisition, time_needed
 from frontend_sim.measure.checks import words
 from frontend_sim.measure.checks.answer import Answer
+from frontend_sim.measure.checks.places import beyond, nowhere
 from frontend_sim.measure.checks.subject import Subject
 from frontend_sim.scenario.checks.acquisition import AcquisitionCheck
 from frontend_sim.simulation.switched import switched_input
@@ -22,10 +25,12 @@ METHODS = {
 def acquisition(check: AcquisitionCheck, subject: Subject) -> Answer:
     """Return the largest error of acquisition [LSB]."""
     known = _known(subject)
+    where = nowhere
     if check.of == "run":
         first = subject.first_after(check.after)
-        error = subject.held[first:] - subject.pin[first:]
-        value = float(np.max(np.abs(error))) / subject.adc.lsb
+        error = np.abs(subject.held[first:] - subject.pin[first:]) / subject.adc.lsb
+        value = float(np.max(error))
+        where = partial(beyond, subject.time[first:], error - check.at_most)
     else:
         value = known.step_error if check.of == "step" else known.steady_error
     return Answer(
@@ -35,6 +40,7 @@ def acquisition(check: AcquisitionCheck, subject: Subject) -> Answer:
         "at most",
         METHODS[check.of],
         lambda: _advice(subject, known, check.at_most),
+        where=where,
     )
 
 

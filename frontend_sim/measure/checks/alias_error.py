@@ -5,7 +5,8 @@ from __future__ import annotations
 from frontend_sim.errors import MeasureError
 from frontend_sim.measure.aliasing import Aliasing
 from frontend_sim.measure.checks import words
-from frontend_sim.measure.checks.answer import Answer, scaled
+from frontend_sim.measure.checks.answer import Answer, in_volts, scaled
+from frontend_sim.measure.checks.places import peaks
 from frontend_sim.measure.checks.subject import Subject
 from frontend_sim.measure.result import Result
 from frontend_sim.scenario.checks.alias_error import AliasErrorCheck
@@ -27,6 +28,7 @@ def alias_error(check: AliasErrorCheck, subject: Subject) -> Answer:
     peak, rms = float(max(abs(volts.max()), abs(volts.min()))), float((volts**2).mean() ** 0.5)
     chosen = peak if check.quantity == "peak" else rms
     value, unit = scaled(check.at_most, chosen, subject.adc.lsb, subject.whole)
+    most = in_volts(check.at_most, subject.adc.lsb, subject.whole)
     beside = (
         Result("alias error, rms", rms / subject.adc.lsb, "LSB", method="; ".join(error.methods)),
         Result("alias error, peak", peak / subject.adc.lsb, "LSB", method="largest size"),
@@ -40,6 +42,7 @@ def alias_error(check: AliasErrorCheck, subject: Subject) -> Answer:
         "stimulus above half the rate, through the chain, by superposition",
         lambda: _advice(found, value / float(check.at_most)),
         beside,
+        peaks(check.quantity, subject.time[first:], volts, most),
     )
 
 

@@ -5,7 +5,9 @@ from __future__ import annotations
 import math
 from collections.abc import Callable
 from dataclasses import dataclass, replace
+from functools import partial
 
+from frontend_sim.measure.arrays import Real
 from frontend_sim.measure.result import Bound, Result
 from frontend_sim.quantities import Limit
 
@@ -26,6 +28,8 @@ class Answer:
     method : how it was found, with its reference
     advice : says what to change first if the check fails; called only then
     beside : numbers that were found on the way, without verdict
+    where : tells where in time the check fails, shape (N, 2) [s], see ``places``; called only then.
+        None for a number that is made from all that the check reads of the run
     """
 
     value: float
@@ -35,6 +39,7 @@ class Answer:
     method: str
     advice: Callable[[], str] = str
     beside: tuple[Result, ...] = ()
+    where: Callable[[], Real] | None = None
 
     @property
     def margin(self) -> float:
@@ -46,20 +51,23 @@ class Answer:
             return 0.0
         return SENSES[self.bound] * (self.limit - self.value)
 
+    @property
+    def holds(self) -> bool:
+        """Whether the value keeps its limit; not a number is neither above nor below, and fails."""
+        return self.margin >= 0.0
+
     def results(self, name: str) -> tuple[Result, ...]:
         """Return the verdict, and what was found beside it, under the name of the check."""
-        # Not a number is neither above nor below: it holds nothing.
-        holds = self.margin >= 0.0
         verdict = Result(
             name,
             self.value,
             self.unit,
             self.limit,
             self.margin,
-            "holds" if holds else "fails",
+            "holds" if self.holds else "fails",
             self.method,
             self.bound,
-            "" if holds else self.advice(),
+            "" if self.holds else self.advice(),
         )
         return (verdict, *(replace(row, name=f"{name}: {row.name}") for row in self.beside))
 
@@ -71,6 +79,7 @@ def nearer(
     unit: str,
     method: str,
     advice: Callable[[Bound], str],
+    where: Callable[[], Real] | None = None,
 ) -> Answer:
     """Return a value against the nearer, or the more broken, of two limits; one may be None."""
     given: list[tuple[float, Bound]] = []
@@ -79,10 +88,16 @@ def nearer(
     if most is not None:
         given.append((most, "at most"))
     found = [
-        Answer(value, unit, limit, bound, method, lambda side=bound: advice(side))  # type: ignore[misc]  # a default that binds the loop's value
+        Answer(value, unit, limit, bound, method, partial(advice, bound), where=where)
         for limit, bound in given
     ]
     return min(found, key=lambda answer: answer.margin)
+
+
+def in_volts(limit: float, lsb: float, whole: float) -> float:
+    """Return a limit as a voltage [V]; parameters as ``scaled``."""
+    assert isinstance(limit, Limit)  # every field of this kind reads one
+    return float(limit) * limit.scale(lsb, whole)
 
 
 def scaled(limit: float, volts: float, lsb: float, whole: float) -> tuple[float, str]:

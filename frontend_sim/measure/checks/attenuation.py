@@ -103,7 +103,7 @@ def advice(subject: Subject, found: Attenuation, least: float, otherwise: str) -
     least : attenuation that is asked for [dB]
     otherwise : what else would help
     """
-    more = f"{least - found.level:.1f} dB more at {words.frequency(found.frequency)}"
+    more = f"{least - found.level:.2g} dB more at {words.frequency(found.frequency)}"
     if not math.isfinite(found.frequency):
         return f"{otherwise}: high frequencies pass the chain unhindered"
 

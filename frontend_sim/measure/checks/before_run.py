@@ -4,9 +4,9 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING
 
-from frontend_sim.measure.checks.evaluate import results_of
 from frontend_sim.measure.checks.subject import Subject
 from frontend_sim.measure.checks.table import EVALUATIONS
+from frontend_sim.measure.checks.verdict import results_of
 from frontend_sim.scenario.checks.rules import labels
 
 if TYPE_CHECKING:

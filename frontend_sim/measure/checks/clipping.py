@@ -6,6 +6,7 @@ import numpy as np
 
 from frontend_sim.measure.checks.answer import Answer
 from frontend_sim.measure.checks.headroom import advice
+from frontend_sim.measure.checks.places import instants
 from frontend_sim.measure.checks.subject import Subject
 from frontend_sim.measure.result import Result
 from frontend_sim.scenario.checks.clipping import ClippingCheck
@@ -25,4 +26,5 @@ def clipping(check: ClippingCheck, subject: Subject) -> Answer:
         "overrange flags of the converter",
         lambda: advice(subject, subject.pin[first:], 0.0),
         beside,
+        lambda: instants(subject.time[first:][clipped]),
     )

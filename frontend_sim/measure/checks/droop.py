@@ -6,10 +6,11 @@ import math
 
 import numpy as np
 
-from frontend_sim.analog.chain import Section
+from frontend_sim.analog.section import Section
 from frontend_sim.errors import MeasureError, ModelError
 from frontend_sim.measure.checks import words
 from frontend_sim.measure.checks.answer import Answer
+from frontend_sim.measure.checks.places import stretch
 from frontend_sim.measure.checks.rest import before_the_run
 from frontend_sim.measure.checks.subject import Subject
 from frontend_sim.measure.result import Result
@@ -38,6 +39,7 @@ def droop(check: DroopCheck, subject: Subject) -> Answer:
         "values at the two instants by the engine's own steps; 1 - exp(-t/T) behind a high pass",
         lambda: _advice(check, subject, found.droop),
         (Result("tilt", found.tilt, "V/s", method="line between the two instants"),),
+        lambda: stretch(check.start, check.stop),
     )
 
 

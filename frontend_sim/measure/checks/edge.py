@@ -11,6 +11,7 @@ from frontend_sim.measure.checks import words
 from frontend_sim.measure.checks.answer import Answer, nearer
 from frontend_sim.measure.checks.change import change_of
 from frontend_sim.measure.checks.passage import first_passage, last_passage
+from frontend_sim.measure.checks.places import stretch
 from frontend_sim.measure.checks.rest import Rest
 from frontend_sim.measure.checks.subject import Subject
 from frontend_sim.measure.result import Bound, Result
@@ -33,7 +34,7 @@ def rise_time(check: RiseTimeCheck, subject: Subject) -> Answer:
     end = first_passage(subject, check.point, rest, check.upper)
     value = end - last_passage(subject, check.point, rest, check.lower, end)
     method = f"{check.lower:.4g} to {check.upper:.4g} of the way; {STEPS}"
-    return _between(check, subject, value, method)
+    return _between(check, subject, value, method, end - value)
 
 
 def rise_time_possible(check: RiseTimeCheck, subject: Subject) -> Rest:
@@ -52,7 +53,7 @@ def delay(check: DelayCheck, subject: Subject) -> Answer:
     rest = delay_possible(check, subject)
     value = first_passage(subject, check.point, rest, check.share) - rest.since
     method = f"from the event at {words.time(rest.since)} to {check.share:.4g} of the way; {STEPS}"
-    return _between(check, subject, value, method)
+    return _between(check, subject, value, method, rest.since)
 
 
 def delay_possible(check: DelayCheck, subject: Subject) -> Rest:
@@ -94,7 +95,8 @@ def latency(check: LatencyCheck, subject: Subject) -> Answer:
         return _faster(subject, "at most", value, check.at_most)
 
     method = f"first code at {check.share:.4g} of the way, by its last look at the pin"
-    return Answer(value, "s", check.at_most, "at most", method, advice, beside)
+    seen = stretch(rest.since, rest.since + value)
+    return Answer(value, "s", check.at_most, "at most", method, advice, beside, lambda: seen)
 
 
 def latency_possible(check: LatencyCheck, subject: Subject) -> Rest:
@@ -103,15 +105,21 @@ def latency_possible(check: LatencyCheck, subject: Subject) -> Rest:
 
 
 def _between(
-    check: RiseTimeCheck | DelayCheck, subject: Subject, value: float, method: str
+    check: RiseTimeCheck | DelayCheck, subject: Subject, value: float, method: str, since: float
 ) -> Answer:
-    """Return a time with the limit that it is nearer to, and what brings it there."""
+    """Return a time with the limit that it is nearer to, and what brings it there.
+
+    Parameters
+    ----------
+    since : instant that it runs from [s]
+    """
 
     def advice(side: Bound) -> str:
         limit = check.at_most if side == "at most" else check.at_least
         return _faster(subject, side, value, limit)
 
-    return nearer(value, check.at_least, check.at_most, "s", method, advice)
+    limits = check.at_least, check.at_most
+    return nearer(value, *limits, "s", method, advice, lambda: stretch(since, since + value))
 
 
 def _faster(subject: Subject, side: Bound, value: float, limit: float | None) -> str:

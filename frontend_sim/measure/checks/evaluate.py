@@ -3,21 +3,15 @@
 from __future__ import annotations
 
 from collections.abc import Iterator
-from typing import TYPE_CHECKING
 
-from frontend_sim.errors import InputError, MeasureError, ModelError, ScenarioError
+from frontend_sim.measure.checks.impossible import refuse_impossible
 from frontend_sim.measure.checks.keeper import Keeper
 from frontend_sim.measure.checks.subject import Subject
-from frontend_sim.measure.checks.table import EVALUATIONS
+from frontend_sim.measure.checks.verdict import verdicts_on
 from frontend_sim.measure.result import Result
-from frontend_sim.scenario.check import problem_of
-from frontend_sim.scenario.checks.rules import labels
-from frontend_sim.scenario.model import Scenario
 from frontend_sim.simulation import Simulation
 from frontend_sim.simulation.finished import Finished
-
-if TYPE_CHECKING:
-    from frontend_sim.scenario.checks import AnyCheck
+from frontend_sim.simulation.stretches import refuse_part
 
 
 def evaluate_checks(run: Finished | Simulation) -> tuple[Result, ...]:
@@ -37,7 +31,10 @@ def evaluate_checks(run: Finished | Simulation) -> tuple[Result, ...]:
     ------
     ScenarioError
         If no run of the scenario could answer a check, see ``refuse_impossible``.
+    MeasureError
+        If it is a record that keeps a part of its run; the verdicts of all of it are in it.
     """
+    refuse_part(run, "a verdict")
     if not isinstance(run, Simulation):
         return tuple(_evaluated(Subject(run.scenario, run)))
     keeper = Keeper(run.scenario)
@@ -47,64 +44,25 @@ def evaluate_checks(run: Finished | Simulation) -> tuple[Result, ...]:
     return evaluated(keeper, run)
 
 
-def evaluated(keeper: Keeper, simulation: object, sensitivities: bool = True) -> tuple[Result, ...]:
+def evaluated(keeper: Keeper, simulation: object) -> tuple[Result, ...]:
     """Hold what was kept of a run against the checks of its scenario.
+
+    Checks that fail also say which key to change, and to what, which takes several further runs;
+    ``verdicts_on`` leaves that out.
 
     Parameters
     ----------
     keeper : that saw all blocks
     simulation : what they came from
-    sensitivities : whether checks that fail also say which key to change, and to what, which
-        takes several further runs
     """
+    return tuple(_evaluated(subject_of_run(keeper, simulation)))
+
+
+def subject_of_run(keeper: Keeper, simulation: object) -> Subject:
+    """Return what was kept of a run for its checks to be made on; parameters as ``evaluated``."""
     prepared = simulation if isinstance(simulation, Simulation) else None
     finished = keeper.finished(getattr(simulation, "grid", None))
-    subject = Subject(keeper.scenario, finished, prepared)
-    return tuple(_evaluated(subject) if sensitivities else verdicts_on(subject))
-
-
-def refuse_impossible(
-    scenario: Scenario, name: str = "", prepared: Simulation | None = None
-) -> None:
-    """Refuse checks that no run of the scenario could answer, before it is run.
-
-    Parameters
-    ----------
-    name : what the scenario is called in messages
-    prepared : the simulation, where there is one already
-
-    Raises
-    ------
-    ScenarioError
-        If there is one; ``problems`` lists them with key and line.
-    """
-    if not scenario.check:
-        return
-    subject = Subject(scenario, prepared=prepared)
-    problems = []
-    for position, check in enumerate(scenario.check):
-        possible = EVALUATIONS[check.kind].possible
-        if possible is None:
-            continue
-        try:
-            possible(check, subject)
-        except (MeasureError, ModelError) as error:
-            problems.append(problem_of(scenario, ("check", position), str(error)))
-    if problems:
-        raise ScenarioError(problems, name)
-
-
-def verdicts_on(subject: Subject) -> Iterator[Result]:
-    """Return the verdict on each check, followed by what was found beside it."""
-    checks = subject.scenario.check
-    for check, label in zip(checks, labels(checks), strict=True):
-        yield from results_of(check, label, subject)
-
-
-def verdict_on(subject: Subject, position: int) -> Result:
-    """Return the verdict on one check; positions count from 0."""
-    checks = subject.scenario.check
-    return results_of(checks[position], labels(checks)[position], subject)[0]
+    return Subject(keeper.scenario, finished, prepared)
 
 
 def _evaluated(subject: Subject) -> Iterator[Result]:
@@ -112,11 +70,3 @@ def _evaluated(subject: Subject) -> Iterator[Result]:
     from frontend_sim.measure.sensitivity.suggestion import advised
 
     return advised(subject.scenario, subject.run, tuple(verdicts_on(subject)))
-
-
-def results_of(check: AnyCheck, label: str, subject: Subject) -> tuple[Result, ...]:
-    """Return the verdict on one check and what was found beside it, under a name."""
-    try:
-        return EVALUATIONS[check.kind].measure(check, subject).results(label)
-    except InputError as error:
-        return (Result(label, None, verdict="fails", method=f"cannot be told: {error}"),)

@@ -5,7 +5,8 @@ from __future__ import annotations
 import numpy as np
 
 from frontend_sim.measure.checks import words
-from frontend_sim.measure.checks.answer import Answer, scaled
+from frontend_sim.measure.checks.answer import Answer, in_volts, scaled
+from frontend_sim.measure.checks.places import beyond
 from frontend_sim.measure.checks.subject import Real, Subject
 from frontend_sim.scenario.checks.headroom import HeadroomCheck
 
@@ -15,18 +16,23 @@ NEAR = 1e-3
 
 def headroom(check: HeadroomCheck, subject: Subject) -> Answer:
     """Return the least distance of the pin from an end of the range, below zero beyond it."""
-    adc, pin = subject.adc, subject.pin[subject.first_after(check.after) :]
+    first = subject.first_after(check.after)
+    adc, pin = subject.adc, subject.pin[first:]
     room = min(adc.high - float(np.max(pin)), float(np.min(pin)) - adc.low)
     value, unit = scaled(check.at_least, room, adc.lsb, subject.whole)
-    least = float(check.at_least)
-    wanted, _ = scaled(check.at_least, 1.0, adc.lsb, subject.whole)
+    needed = in_volts(check.at_least, adc.lsb, subject.whole)
+
+    def where() -> Real:
+        return beyond(subject.time[first:], needed - np.minimum(adc.high - pin, pin - adc.low))
+
     return Answer(
         value,
         unit,
-        least,
+        float(check.at_least),
         "at least",
         "the exact pin at the conversions",
-        lambda: advice(subject, pin, least / wanted),
+        lambda: advice(subject, pin, needed),
+        where=where,
     )
 
 

@@ -9,10 +9,10 @@ import numpy as np
 from numpy.typing import NDArray
 
 from frontend_sim.errors import MeasureError
-from frontend_sim.measure.checks.evaluate import verdicts_on
+from frontend_sim.measure.checks.impossible import refuse_impossible_checks
 from frontend_sim.measure.checks.keeper import Keeper, Kept
-from frontend_sim.measure.checks.scan import refuse_impossible_checks
 from frontend_sim.measure.checks.subject import Real, Subject
+from frontend_sim.measure.checks.verdict import verdicts_on
 from frontend_sim.measure.result import Result
 from frontend_sim.scenario.checks.rules import labels
 from frontend_sim.scenario.model import Scenario

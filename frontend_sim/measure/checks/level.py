@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from frontend_sim.measure.checks import words
 from frontend_sim.measure.checks.answer import Answer, nearer
+from frontend_sim.measure.checks.places import instants
 from frontend_sim.measure.checks.subject import Subject
 from frontend_sim.measure.result import Bound
 from frontend_sim.scenario.checks.level import LevelCheck
@@ -23,4 +24,5 @@ def level(check: LevelCheck, subject: Subject) -> Answer:
         return f"{way} the level{by}: gain, offset or stimulus"
 
     method = "the engine's own steps, at the instant"
-    return nearer(value, check.at_least, check.at_most, "V", method, advice)
+    limits = check.at_least, check.at_most
+    return nearer(value, *limits, "V", method, advice, lambda: instants(check.at))

@@ -82,8 +82,9 @@ def linearity_in(check: LinearityCheck, subject: Subject) -> Linearity:
 def _answer(
     check: InlCheck | DnlCheck, by: str, found: Linearity, value: float, half: float, where: int
 ) -> Answer:
+    interval = f"half the {100 * found.confidence:g} % interval"
     beside = (
-        Result("confidence", float(half), "LSB", method=f"half, at {found.confidence:.0%}"),
+        Result("confidence", float(half), "LSB", method=interval),
         Result("at code", float(where), "counts", method="where it is largest"),
         Result("missing codes", float(len(found.missing)), "codes", method="never seen between"),
     )  # fmt: skip

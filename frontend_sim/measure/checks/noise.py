@@ -8,6 +8,7 @@ import numpy as np
 
 from frontend_sim.errors import MeasureError
 from frontend_sim.measure.checks.answer import Answer, scaled
+from frontend_sim.measure.checks.places import nowhere
 from frontend_sim.measure.checks.subject import Subject
 from frontend_sim.measure.circuit_noise import circuit_noise
 from frontend_sim.measure.noise.summary import CREST, Noise, noise_of
@@ -40,8 +41,9 @@ def noise(check: NoiseCheck, subject: Subject) -> Answer:
     limit = float(check.at_most)
     rounded = check.basis == "run"
     return Answer(
-        value, unit, limit, "at most", method, lambda: advice(subject, value / limit, rounded)
-    )
+        value, unit, limit, "at most", method, lambda: advice(subject, value / limit, rounded),
+        where=None if rounded else nowhere,
+    )  # fmt: skip
 
 
 def noise_free_bits(check: NoiseFreeBitsCheck, subject: Subject) -> Answer:
@@ -64,6 +66,7 @@ def noise_free_bits(check: NoiseFreeBitsCheck, subject: Subject) -> Answer:
         "at least",
         f"log2(range / ({CREST:g} rms)); {method}",
         lambda: advice(subject, 2.0 ** (check.at_least - value), check.basis == "run"),
+        where=None if check.basis == "run" else nowhere,
     )
 
 

@@ -9,6 +9,7 @@ from frontend_sim.errors import MeasureError
 from frontend_sim.measure.aliasing.error import Response
 from frontend_sim.measure.checks import words
 from frontend_sim.measure.checks.answer import Answer
+from frontend_sim.measure.checks.places import stretch
 from frontend_sim.measure.checks.subject import Real, Subject
 from frontend_sim.measure.result import Result
 from frontend_sim.quantities import Limit
@@ -45,7 +46,10 @@ def recovery(check: RecoveryCheck, subject: Subject) -> Answer:
         Result("conversions lost", float(lost), "conversions", method="over the whole run"),
     )
     method = "conversions against the same chain without limits (nothing is known between them)"
-    return Answer(value, "s", check.at_most, "at most", method, lambda: _advice(value), beside)
+    late = stretch(since + check.at_most, since + value)
+    return Answer(
+        value, "s", check.at_most, "at most", method, lambda: _advice(value), beside, lambda: late
+    )
 
 
 def recovery_possible(check: RecoveryCheck, subject: Subject) -> None:

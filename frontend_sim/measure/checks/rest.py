@@ -11,7 +11,8 @@ from frontend_sim.errors import ModelError
 from frontend_sim.measure.checks.events import JUST_BEFORE, last_change, next_change
 from frontend_sim.measure.checks.subject import Subject
 from frontend_sim.measure.checks.tail import Tail, up_to
-from frontend_sim.scenario.model import Scenario, SimulationSettings
+from frontend_sim.scenario.model import Scenario
+from frontend_sim.scenario.settings import SimulationSettings
 from frontend_sim.simulation import Simulation
 from frontend_sim.stimulus.drive import Drive, PiecewiseDrive
 from frontend_sim.stimulus.step import Step

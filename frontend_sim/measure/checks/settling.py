@@ -9,6 +9,7 @@ import numpy as np
 from frontend_sim.errors import MeasureError
 from frontend_sim.measure.checks import words
 from frontend_sim.measure.checks.answer import Answer
+from frontend_sim.measure.checks.places import stretch
 from frontend_sim.measure.checks.rest import rest_of
 from frontend_sim.measure.checks.settled import ROUNDING, Settled, event_of, settled
 from frontend_sim.measure.checks.speed import strongest_lever
@@ -35,6 +36,7 @@ def settling(check: SettlingCheck, subject: Subject) -> Answer:
         found.method,
         lambda: _advice(check, found),
         tuple(_beside(check, subject, found)),
+        lambda: stretch(found.since + check.before, found.exit),
     )
 
 

@@ -3,7 +3,8 @@
 from __future__ import annotations
 
 from frontend_sim.measure.checks import words
-from frontend_sim.measure.checks.answer import Answer, scaled
+from frontend_sim.measure.checks.answer import Answer, in_volts, scaled
+from frontend_sim.measure.checks.places import peaks
 from frontend_sim.measure.checks.subject import Subject
 from frontend_sim.measure.error import Ideal, TotalError, refuse_looks_of_a_scan
 from frontend_sim.measure.error import total_error as measured
@@ -51,6 +52,7 @@ def total_error(check: TotalErrorCheck, subject: Subject) -> Answer:
     chosen = found.total.peak if check.quantity == "peak" else found.total.rms
     value, unit = scaled(check.at_most, chosen, subject.adc.lsb, subject.whole)
     limit = float(check.at_most)
+    most = in_volts(check.at_most, subject.adc.lsb, subject.whole)
     return Answer(
         value,
         unit,
@@ -59,6 +61,7 @@ def total_error(check: TotalErrorCheck, subject: Subject) -> Answer:
         _method(found.ideal),
         lambda: _advice(found, value / limit),
         tuple(_beside(found)),
+        peaks(check.quantity, found.time, found.volts, most),
     )
 
 

@@ -7,9 +7,10 @@ import math
 import numpy as np
 
 from frontend_sim.errors import MeasureError
-from frontend_sim.measure.checks.answer import Answer, scaled
+from frontend_sim.measure.checks.answer import Answer, in_volts, scaled
 from frontend_sim.measure.checks.change import change_of
-from frontend_sim.measure.checks.subject import Subject
+from frontend_sim.measure.checks.places import excursion
+from frontend_sim.measure.checks.subject import Real, Subject
 from frontend_sim.scenario.checks.undershoot import UndershootCheck
 
 ADVICE = (
@@ -41,7 +42,14 @@ def undershoot(check: UndershootCheck, subject: Subject) -> Answer:
         volts = max(float(np.max(sign * (rest.before - seen))), 0.0)
         method = "furthest conversion (nothing is known between them)"
     value, unit = scaled(check.at_most, volts, subject.adc.lsb, abs(rest.height))
-    return Answer(value, unit, float(check.at_most), "at most", method, lambda: ADVICE)
+    most = in_volts(check.at_most, subject.adc.lsb, abs(rest.height))
+
+    def where() -> Real:
+        back = rest.before
+        return excursion(subject, check.point, rest, lambda seen: sign * (back - seen) - most)
+
+    limit = float(check.at_most)
+    return Answer(value, unit, limit, "at most", method, lambda: ADVICE, where=where)
 
 
 def undershoot_possible(check: UndershootCheck, subject: Subject) -> None:

@@ -19,6 +19,7 @@ from frontend_sim.measure.error.stations import Stations
 from frontend_sim.scenario.channel_scenario import ChannelScenario
 from frontend_sim.scenario.model import Scenario
 from frontend_sim.simulation import Simulation
+from frontend_sim.simulation.stretches import refuse_part
 
 if TYPE_CHECKING:
     from frontend_sim.simulation.finished import Finished
@@ -139,9 +140,10 @@ def total_error(
     ------
     MeasureError
         If the chain has no gain at dc and none is given, no sensor has a curve to read by, the run
-        is empty or too long, or codes of several looks come from a scan that keeps the pin between
-        them to itself.
+        is empty, too long or not kept whole, or codes of several looks come from a scan that keeps
+        the pin between them to itself.
     """
+    refuse_part(run, "the total error")
     refuse_looks_of_a_scan(run.scenario)
     if len(run.time) == 0:
         raise MeasureError("the run has no conversion; lengthen simulation.duration")

@@ -10,10 +10,12 @@ from typing import Self
 import numpy as np
 
 from frontend_sim.analog.block import Real
-from frontend_sim.analog.chain import Section, compose
+from frontend_sim.analog.chain import compose
+from frontend_sim.analog.section import Section
 from frontend_sim.analog.stages.active_filter import ActiveFilter
-from frontend_sim.analog.stages.amplifier_stage import IDEAL, AmplifierStage
+from frontend_sim.analog.stages.amplifier_stage import AmplifierStage
 from frontend_sim.analog.stages.base import Stage
+from frontend_sim.analog.stages.operational_amplifier import IDEAL
 from frontend_sim.errors import ModelError
 from frontend_sim.measure.response.frequency import frequency_grid
 from frontend_sim.measure.response.gain import Corner, corners_of, largest_gain, magnitude_of

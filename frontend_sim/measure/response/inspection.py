@@ -28,11 +28,14 @@ from frontend_sim.measure.response.loading import Loading, loading_of
 from frontend_sim.measure.response.model_distance import Exact, ModelDistance, model_distance
 from frontend_sim.measure.response.pin_level import PinLevel
 from frontend_sim.measure.response.pole import Pole, poles_of
+from frontend_sim.measure.response.referred import Referred
 from frontend_sim.measure.response.step_response import StepResponse
 from frontend_sim.measure.response.time_domain import TimeDomain
 from frontend_sim.scenario.amplifier_notes import amplifier_notes
 from frontend_sim.scenario.circuit import circuit_of, stages_of
+from frontend_sim.scenario.loading_notes import loading_notes
 from frontend_sim.scenario.model import Scenario
+from frontend_sim.scenario.told_unit import told_unit
 
 ZERO_CELSIUS = 273.15
 """0 degC [K]."""
@@ -55,6 +58,7 @@ class Inspection:
     loading : what the sections of ladders do to each other
     amplifiers : what real amplifiers do to their stages: corners, Q, stop band
     level : what the pin rests at, and the stimulus that reaches the ends of the range
+    referred : range, LSB and noise as a stimulus, in the unit that the file has for it
     large_signal : what slew rates do to large signals; None if no stage has one
     filter : what the converter's own filter does; None where a code is one look
     noise : where the noise at the pin comes from; None where a pole at the origin gathers it
@@ -75,6 +79,7 @@ class Inspection:
     loading: tuple[Loading, ...]
     amplifiers: tuple[AmplifierResponse, ...]
     level: PinLevel
+    referred: Referred
     large_signal: LargeSignal | None
     filter: SincQuantities | None
     noise: NoiseBudget | None
@@ -84,7 +89,9 @@ class Inspection:
     acquisition: Acquisition | None = None
 
     def as_dict(self) -> dict[str, Any]:
-        """Return plain data for JSON: SI units, None for what is not there.
+        """Return plain data for JSON: None for what is not there.
+
+        All is in SI units but ``referred``, which has the same numbers in the file's unit.
 
         JSON knows no infinity, so it becomes None (null) too: of a gain that grows without bound,
         of the frequency of a gain that is largest at ever higher frequencies, of an end that drifts
@@ -128,6 +135,7 @@ def inspect_scenario(scenario: Scenario) -> Inspection:
         loading_of(stages, adc.rate),
         amplifiers_of(stages),
         level,
+        Referred.of(told_unit(scenario), adc, time, frequency.largest.value, level, noise),
         LargeSignal.of(scenario, chain, stages, level, small),
         _filter_of(adc),
         noise,
@@ -194,6 +202,7 @@ def _models(
 
 def _notes(scenario: Scenario, time: TimeDomain, frequency: FrequencyDomain) -> tuple[str, ...]:
     notes = [*unbuffered_notes(scenario.chain), *_curves(scenario), *_limits(scenario)]
+    notes += loading_notes(stages_of(scenario))
     if time.end is None:
         notes.append("a pair of poles without damping: a step rings for ever and never settles")
     elif math.isinf(time.end):

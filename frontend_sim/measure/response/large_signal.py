@@ -14,7 +14,8 @@ from frontend_sim.analog.stages.base import Stage
 from frontend_sim.converter import Adc
 from frontend_sim.errors import FrontendSimError
 from frontend_sim.measure.response.pin_level import PinLevel
-from frontend_sim.scenario.model import Scenario, SimulationSettings
+from frontend_sim.scenario.model import Scenario
+from frontend_sim.scenario.settings import SimulationSettings
 from frontend_sim.stimulus.step import Step
 
 POINTS = 2000
@@ -112,8 +113,8 @@ def _full_powers(
     found = []
     for number, stage in enumerate(stages, start=1):
         limits = stage.limits()
-        rate = math.inf if limits is None else min(limits.up, limits.down)
-        if limits is None or math.isinf(rate):
+        rate = min(limits.up, limits.down)
+        if math.isinf(rate):
             continue
         behind = _largest_gain(chain, number)
         amplitude = half / behind if behind > 0.0 else half

@@ -5,7 +5,8 @@ from __future__ import annotations
 from collections.abc import Sequence
 from dataclasses import dataclass
 
-from frontend_sim.analog.chain import Section, compose
+from frontend_sim.analog.chain import compose
+from frontend_sim.analog.section import Section
 from frontend_sim.analog.stages.base import Stage
 from frontend_sim.measure.response.frequency_domain import FrequencyDomain
 from frontend_sim.measure.response.gain import Corner

@@ -32,7 +32,7 @@ class PinLevel:
         move it to either side [V]
     at_low, at_high : stimulus, at rest, for which the pin reaches ``low`` and ``high`` of the
         converter; None where none does, or a constant does not reach the pin [SI unit]
-    low_held, high_held : name of the stage whose rail holds the pin back from there, else ""
+    low_held, high_held : name of the stage whose rail or clamp keeps the pin from there, else ""
     """
 
     zero: float
@@ -94,11 +94,11 @@ class _Way:
             yield level
 
     def held(self, stimulus: float) -> str:
-        """Return the first stage whose rails lie before what a stimulus at rest asks, else ""."""
+        """Return the first stage whose rail or clamp lies before what a stimulus asks, else ""."""
         for number, level in enumerate(self.levels(stimulus), start=1):
-            limits = self.stages[number - 1].limits()
+            low, high = self.stages[number - 1].rails()
             near = NEAR * abs(level)
-            if limits is not None and not limits.low - near <= level <= limits.high + near:
+            if not low - near <= level <= high + near:
                 return self.stages[number - 1].label(number)
         return ""
 

@@ -7,9 +7,10 @@ from dataclasses import dataclass
 import numpy as np
 
 from frontend_sim.analog.block import Block, Complex, Real
-from frontend_sim.analog.chain import Chain, Section, compose
+from frontend_sim.analog.chain import Chain, compose
 from frontend_sim.analog.factored_block import FactoredBlock
 from frontend_sim.analog.factors import cascade
+from frontend_sim.analog.section import Section
 
 ROUNDING = 8.0 * float(np.finfo(np.float64).eps)
 """A coefficient below this share of its neighbours is what rounding left of zero."""

@@ -55,7 +55,7 @@ class TimeDomain:
         decay = _decay_of(response, SEARCHED * largest) if largest > SILENT else None
         shape = shape_of(response, decay)
         reference = abs(shape.reference_value or 0.0)
-        step = (adc.high - adc.low) / _filling_gain(response, largest)
+        step = (adc.high - adc.low) / (filling_gain(response.end, largest) or 1.0)
         bands = [(label, share * reference) for label, share in PERCENTAGES]
         bands.append(("0.5 LSB", 0.5 * adc.lsb / step))
         finest = min(band for _, band in bands)
@@ -69,10 +69,13 @@ class TimeDomain:
         return cls(response.delay, response.start, response.end, shape, step, tuple(settlings))
 
 
-def _filling_gain(response: StepResponse, largest: float) -> float:
-    """Return the gain by which a step fills the range: the end, else the largest gain, else one."""
-    candidates = [0.0 if response.end is None else abs(response.end), largest]
-    return next((gain for gain in candidates if SILENT < gain < math.inf), 1.0)
+def filling_gain(end: float | None, largest: float) -> float | None:
+    """Return the gain by which a step fills the range: its end, else the largest gain [1].
+
+    None where the chain passes nothing, or without bound.
+    """
+    candidates = [0.0 if end is None else abs(end), largest]
+    return next((gain for gain in candidates if SILENT < gain < math.inf), None)
 
 
 def _decay_of(response: StepResponse, floor: float) -> Decay | None:

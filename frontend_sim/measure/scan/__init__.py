@@ -3,7 +3,7 @@
 from frontend_sim.measure.scan.crosstalk import Crosstalk, crosstalk
 from frontend_sim.measure.scan.inspection import ScanInspection, inspect_scan
 from frontend_sim.measure.scan.order import OrderFound, best_order
-from frontend_sim.measure.scan.report import ScanReport, scan_report
+from frontend_sim.measure.scan.report import ScanReport, scan_report, scan_results
 from frontend_sim.measure.scan.skew import Skew, skews
 
 __all__ = [
@@ -16,5 +16,6 @@ __all__ = [
     "crosstalk",
     "inspect_scan",
     "scan_report",
+    "scan_results",
     "skews",
 ]

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Iterable, Iterator
 from dataclasses import dataclass
 from typing import Any
 
@@ -67,22 +68,31 @@ class ScanReport:
 
     def results(self) -> tuple[Result, ...]:
         """Return the numbers as rows of ``/measure``."""
-        rows = []
-        for skew in self.skew:
-            rows.append(Result(f"skew of {skew.channel}", skew.time, "s", method="timing"))
-            if skew.degrees is not None:
-                name = f"skew of {skew.channel} at {skew.frequency:g} Hz"
-                rows.append(Result(name, skew.degrees, "deg", method="360 · frequency · skew"))
-        if self.crosstalk.ways:
-            method = f"fixed point of the scan, {', '.join(self.crosstalk.ways)}"
-            rows += [
-                Result(f"crosstalk from {aggressor} into {victim}", float(value), "LSB",
-                       method=method)
-                for victim, row in zip(self.crosstalk.names, self.crosstalk.matrix, strict=True)
-                for aggressor, value in zip(self.crosstalk.names, row, strict=True)
-                if aggressor != victim
-            ]  # fmt: skip
-        return tuple(rows)
+        return (*_of_skew(self.skew), *_of_crosstalk(self.crosstalk))
+
+
+def scan_results(scan: ScanScenario) -> tuple[Result, ...]:
+    """Return the results of ``scan_report`` alone, without the search for another order."""
+    return (*_of_skew(skews(scan)), *_of_crosstalk(crosstalk(scan)))
+
+
+def _of_skew(skew: Iterable[Skew]) -> Iterator[Result]:
+    for each in skew:
+        yield Result(f"skew of {each.channel}", each.time, "s", method="timing")
+        if each.degrees is not None:
+            name = f"skew of {each.channel} at {each.frequency:g} Hz"
+            yield Result(name, each.degrees, "deg", method="360 · frequency · skew")
+
+
+def _of_crosstalk(found: Crosstalk) -> Iterator[Result]:
+    if not found.ways:
+        return
+    method = f"fixed point of the scan, {', '.join(found.ways)}"
+    for victim, row in zip(found.names, found.matrix, strict=True):
+        for aggressor, value in zip(found.names, row, strict=True):
+            if aggressor != victim:
+                name = f"crosstalk from {aggressor} into {victim}"
+                yield Result(name, float(value), "LSB", method=method)
 
 
 def scan_report(scan: ScanScenario, prepared: ScanSimulation | None = None) -> ScanReport:

@@ -7,8 +7,8 @@ from dataclasses import dataclass
 from decimal import ROUND_CEILING, ROUND_FLOOR, Context
 
 from frontend_sim.errors import InputError
-from frontend_sim.measure.checks.evaluate import verdict_on
 from frontend_sim.measure.checks.judge import subject_of
+from frontend_sim.measure.checks.verdict import verdict_on
 from frontend_sim.measure.result import Result
 from frontend_sim.measure.sensitivity.number import number_of
 from frontend_sim.measure.sensitivity.parameter import Parameter

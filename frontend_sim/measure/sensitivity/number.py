@@ -5,10 +5,10 @@ from __future__ import annotations
 import math
 
 from frontend_sim.errors import InputError
-from frontend_sim.measure.checks.evaluate import verdict_on
 from frontend_sim.measure.checks.judge import judge, subject_of
 from frontend_sim.measure.checks.settled import proven_time
 from frontend_sim.measure.checks.subject import Subject
+from frontend_sim.measure.checks.verdict import verdict_on
 from frontend_sim.measure.result import Result
 from frontend_sim.scenario.checks.settling import SettlingCheck
 from frontend_sim.scenario.scan_scenario import AnyScenario, ScanScenario

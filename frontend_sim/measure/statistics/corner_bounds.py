@@ -36,7 +36,7 @@ class CornerExcess:
         """Return the warning, for the log of a night."""
         far = max(self.below, self.above)
         side = "above the highest" if self.above >= self.below else "below the lowest"
-        shown = f"{far:.3g} {unit}".rstrip(" 1")
+        shown = f"{far:.3g} {unit}".removesuffix(" 1")
         return (
             f"{measure} is not monotone: runs within the tolerances lie up to {shown} {side} "
             f"corner, {100 * self.share:.3g} % of them beyond; corners do not bound it, so draw at "

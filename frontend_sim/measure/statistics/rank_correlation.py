@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Mapping
 from dataclasses import dataclass
 
@@ -45,7 +46,8 @@ def rank_correlations(
     Spearman's coefficient is the correlation of the ranks, equal values at their average rank:
     it sees any response that rises or falls all the way, and none that turns. Its probability is
     that of Student's t = r sqrt((n - 2) / (1 - r^2)) with n - 2 degrees of freedom, two-sided
-    (Kendall and Gibbons 1990, *Rank Correlation Methods*, from memory), then corrected for the
+    (Kendall and Gibbons 1990, *Rank Correlation Methods*, from memory), and no less than 2 / n!,
+    which is that of ranks in one order exactly; then corrected for the
     number of parameters by Holm's procedure (Holm 1979), so that of many parameters without any
     influence one is called significant in 5 % of nights, not in most.
 
@@ -87,7 +89,8 @@ def _correlation(
     coefficient = float(one @ other / np.sqrt((one @ one) * (other @ other)))
     coefficient = min(max(coefficient, -1.0), 1.0)
     rest = (1.0 - coefficient) * (1.0 + coefficient)
-    if rest <= 0.0:
-        return RankCorrelation(name, coefficient, 0.0, count)
-    student = abs(coefficient) * np.sqrt((sure - 2) / rest)
-    return RankCorrelation(name, coefficient, float(2.0 * stdtr(sure - 2, -student)), count)
+    student = abs(coefficient) * np.sqrt((sure - 2) / rest) if rest > 0.0 else np.inf
+    # Of sure! orders, all as likely by chance, two at the least are as strong: one each way.
+    rarest = 2.0 * math.exp(-math.lgamma(sure + 1.0))
+    probability = max(float(2.0 * stdtr(sure - 2, -student)), rarest)
+    return RankCorrelation(name, coefficient, probability, count)

@@ -18,7 +18,7 @@ from frontend_sim.present.page.content import (
     Tone,
     number,
 )
-from frontend_sim.present.page.night_spread import of_group, spread_sections
+from frontend_sim.present.page.night_spread import measure_section, of_group, spread_sections
 from frontend_sim.present.page.origin import caution_section, made, origin_section
 from frontend_sim.present.page.set_difference import set_difference_section
 from frontend_sim.present.result_table import PREFIXED, SIGNS
@@ -41,7 +41,8 @@ def night_page(summary: NightSummary, since: SetComparison | None = None) -> Pag
         sections.append(_worst_section(summary))
     if since is not None:
         sections.append(set_difference_section(since))
-    sections += [section for section in spread_sections(summary) if section is not None]
+    spread = (*spread_sections(summary), measure_section(summary))
+    sections += [section for section in spread if section is not None]
     sections += [_origin(summary), caution_section()]
     return Page(
         summary.table.title or summary.table.path.parent.name,
@@ -194,7 +195,7 @@ def _worst_row(summary: NightSummary, check: CheckSummary) -> tuple[Cell, ...]:
         Cell(check.name),
         Cell(summary.table.names[run]),
         number(shown(float(column.value[run]), check)),
-        number(SIGNS.get(column.bound, "") + shown(float(column.limit[run]), check)),
+        number(SIGNS.get(column.bound_in(run), "") + shown(float(column.limit[run]), check)),
         number(shown(float(column.margin[run]), check), tone),
         Cell("\n".join(told) or "nominal"),
     )

@@ -7,13 +7,17 @@ from collections.abc import Iterator
 
 import numpy as np
 
+from frontend_sim.present.measure_figure import MOST_PANELS, measure_figure
 from frontend_sim.present.night_figure import night_figure
 from frontend_sim.present.night_table import shown
+from frontend_sim.present.numbers import counted
 from frontend_sim.present.page.content import Cell, PageFigure, PageTable, Section, number
 from frontend_sim.present.page.render import embedded
-from frontend_sim.summary import CheckSummary, NightSummary
+from frontend_sim.present.result_table import quantity
+from frontend_sim.summary import CheckSummary, MeasureSummary, NightSummary
 
 MOST_CAUSES = 6
+MOST_MEASURES = 40
 
 
 def spread_sections(summary: NightSummary) -> Iterator[Section | None]:
@@ -47,6 +51,47 @@ def spread_sections(summary: NightSummary) -> Iterator[Section | None]:
     figures = tuple(_figure(summary, check) for check in known)
     yield Section("distributions", "Distributions and margins", (), (table,), figures)
     yield _causes(known)
+
+
+def measure_section(summary: NightSummary) -> Section | None:
+    """Return how the measures spread that are no checks, to be unfolded; None where none does.
+
+    It is folded, as nothing in it holds or fails.
+    """
+    moving = [measure for measure in summary.measures if measure.spreads]
+    if not moving:
+        return None
+    which = "draws" if np.any(summary.population.drawn) else "runs"
+    rest, still = len(moving) - MOST_MEASURES, len(summary.measures) - len(moving)
+    told = [f"{rest} more stand in the table of the set."] if rest > 0 else []
+    told += [f"{counted(still, 'measure')} left out: the same in all runs."] if still else []
+    head = ("measure", "lowest", "5 %", "median", "95 %", "highest", "follows")
+    rows = tuple(_measure_row(summary, each) for each in moving[:MOST_MEASURES])
+    figure = embedded(
+        measure_figure(summary, moving),
+        f"Histograms of {', '.join(each.name for each in moving[:MOST_PANELS])} over all runs.",
+        "How measures spread that are held against nothing.",
+    )
+    table = PageTable(f"Measures over the {which}", head, rows, " ".join(told))
+    return Section("measures", "Measures", (), (table,), (figure,), folded=True)
+
+
+def _measure_row(summary: NightSummary, measure: MeasureSummary) -> tuple[Cell, ...]:
+    def told(value: float) -> str:
+        return quantity(value, measure.unit)
+
+    def extreme(run: int) -> str:
+        return f"{told(float(measure.values[run]))}\n{summary.table.names[run]}"
+
+    cause = measure.cause
+    follows = "" if cause is None else f"{cause.parameter} ({cause.coefficient:+.2f})"
+    return (
+        Cell(f"{measure.name}{of_group(measure)}"),
+        number(extreme(measure.lowest)),
+        *(number(told(each.value)) for each in measure.percentiles),
+        number(extreme(measure.highest)),
+        Cell(follows),
+    )
 
 
 def _percentile(check: CheckSummary, place: int, drawn: bool) -> str:
@@ -104,6 +149,6 @@ def _causes(checks: list[CheckSummary]) -> Section | None:
     return Section("causes", "What explains the spread", (), (table,))
 
 
-def of_group(check: CheckSummary) -> str:
+def of_group(found: CheckSummary | MeasureSummary) -> str:
     """Return which draws numbers are of, on a line of its own; "" where there is but one group."""
-    return f"\n{check.group}" if check.group else ""
+    return f"\n{found.group}" if found.group else ""

@@ -13,6 +13,7 @@ from frontend_sim.present.page.content import Cell, Page, PageTable, Section, To
 from frontend_sim.present.page.difference import difference_section
 from frontend_sim.present.page.origin import caution_section, made, origin_section
 from frontend_sim.present.page.render import embedded
+from frontend_sim.present.part import part_text
 from frontend_sim.present.result_table import SIGNS, quantity
 from frontend_sim.present.run_plot import run_figure
 from frontend_sim.present.run_table import run_summary
@@ -40,7 +41,7 @@ def record_page(record: Record, since: RecordComparison | None = None) -> Page:
         tone,
         verdict,
         _summary(checks, broken),
-        tuple(_facts(summary)),
+        tuple(_facts(record, summary)),
         tuple(sections),
         made(),
     )
@@ -104,7 +105,7 @@ def _signal_section(record: Record, summary: dict[str, Any]) -> Section:
         "kept."
     )
     figure = embedded(run_figure(record), description, "What the pin did, and what the codes say.")
-    return Section("signal", "The signal", (), (), (figure,))
+    return Section("signal", "The signal", part_text(record), (), (figure,))
 
 
 def _summary(checks: Sequence[Result], broken: Sequence[Result]) -> str:
@@ -118,14 +119,17 @@ def _summary(checks: Sequence[Result], broken: Sequence[Result]) -> str:
     return f"Nearest to its limit: {nearest.name}, margin {check_cells(nearest)[4].text}."
 
 
-def _facts(summary: dict[str, Any]) -> Iterator[tuple[str, str]]:
-    yield "conversions", f"{summary['conversions']}"
+def _facts(record: Record, summary: dict[str, Any]) -> Iterator[tuple[str, str]]:
+    yield "conversions", f"{record.whole_count}"
+    of_kept = "" if record.stretches is None else ", of those kept"
+    if of_kept:
+        yield "kept around failures", f"{record.count}"
     yield "rate", engineering(summary["rate"], "Hz")
     low, high = engineering(summary["low"], "V"), engineering(summary["high"], "V")
     yield "converter", f"{summary['bits']} bits, {low} to {high}"
-    yield "beyond the range", f"{summary['overrange']}"
+    yield f"beyond the range{of_kept}", f"{summary['overrange']}"
     if summary["difference_rms"] is not None:
-        yield "codes less pin, rms", f"{fixed(summary['difference_rms'], 3)} LSB"
+        yield f"codes less pin, rms{of_kept}", f"{fixed(summary['difference_rms'], 3)} LSB"
 
 
 def record_origin(record: Record | ScanRecord) -> Section:

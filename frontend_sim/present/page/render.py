@@ -9,9 +9,8 @@ from importlib.resources import files
 from pathlib import Path
 from typing import TYPE_CHECKING
 
-from frontend_sim.archive.target import new_file, writing
+from frontend_sim.archive.target import file_target, new_file, writing
 from frontend_sim.errors import OutputError
-from frontend_sim.present.figure_file import file_target
 from frontend_sim.present.page.content import Page, PageFigure
 
 if TYPE_CHECKING:

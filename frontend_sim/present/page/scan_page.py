@@ -17,6 +17,7 @@ from frontend_sim.present.page.record_page import (
     verdict_of_checks,
 )
 from frontend_sim.present.page.render import embedded
+from frontend_sim.present.part import part_text
 from frontend_sim.present.scan_plot import scan_figure
 
 
@@ -33,11 +34,13 @@ def scan_page(record: ScanRecord, since: RecordComparison | None = None) -> Page
     )
     figure = embedded(scan_figure(record), description, "What each channel saw.")
     sections = [check_section(checks), *([difference_section(since)] if since else [])]
-    sections.append(Section("signal", "The signals", (), (), (figure,)))
+    # All channels keep the same stretches.
+    told = part_text(next(iter(record.channels.values())))
+    sections.append(Section("signal", "The signals", told, (), (figure,)))
     if measures:
         sections.append(Section("measures", "Measures", (), (measure_table(measures),)))
     sections += [record_origin(record), caution_section()]
-    counts = [channel.count for channel in record.channels.values()]
+    counts = [channel.whole_count for channel in record.channels.values()]
     first = broken[0] if broken else None
     return Page(
         record.title or record.path.name,

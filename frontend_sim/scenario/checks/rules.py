@@ -9,9 +9,7 @@ from frontend_sim.errors import nearest
 from frontend_sim.quantities import FREQUENCY, TIME, as_text
 from frontend_sim.scenario.checks.alias_attenuation import AliasAttenuationCheck
 from frontend_sim.scenario.checks.base import Check, PointCheck
-
-Fault = tuple[tuple[str | int, ...], str]
-"""Path from the top of the scenario, and the whole message."""
+from frontend_sim.scenario.rules import BrokenRule
 
 MEASURED_IN = "V"
 """Limits of checks are voltages, and so are the points that they look at."""
@@ -37,7 +35,7 @@ def labels(checks: Sequence[Check]) -> tuple[str, ...]:
 
 def check_faults(
     checks: Sequence[Check], points: Sequence[str], units: Sequence[str], rate: float
-) -> Iterator[Fault]:
+) -> Iterator[BrokenRule]:
     """Return what is wrong with checks in front of a chain and a converter.
 
     Parameters
@@ -65,7 +63,7 @@ def check_faults(
                 yield ("check", position, key), text
 
 
-def instant_faults(checks: Sequence[Check], duration: float) -> Iterator[Fault]:
+def instant_faults(checks: Sequence[Check], duration: float) -> Iterator[BrokenRule]:
     """Return which checks ask for what lies beyond the end of the run.
 
     Parameters

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import re
+from functools import cache
 from pathlib import Path
 from typing import Any
 
@@ -13,6 +14,7 @@ from frontend_sim.errors import RecordingError
 from frontend_sim.stimulus.recording.arrays import Array, source_of
 from frontend_sim.stimulus.recording.border import border
 from frontend_sim.stimulus.recording.series import Source, Wanted
+from frontend_sim.stimulus.recording.store import IN_MEMORY
 
 
 def read_npy(file: Path, wanted: Wanted) -> Source:
@@ -48,4 +50,11 @@ def mapped_array(file: Path, name: str) -> Array:
             part: NDArray[Any] = np.memmap(file, dtype, "r", offset, shape, order)[index]
         return np.array(part)
 
-    return Array(name, shape, dtype, read)
+    @cache
+    def numbers() -> NDArray[Any]:
+        held = read(...)
+        held.setflags(write=False)
+        return held
+
+    few = whole.nbytes <= IN_MEMORY * 8
+    return Array(name, shape, dtype, (lambda index: numbers()[index]) if few else read)

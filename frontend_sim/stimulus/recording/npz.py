@@ -7,14 +7,14 @@ import tempfile
 import weakref
 import zipfile
 from pathlib import Path
-from typing import Any
+from typing import IO, Any, Literal
 
+import numpy as np
 from numpy.lib import format as npy_format
 from numpy.typing import NDArray
 
 from frontend_sim.stimulus.recording.arrays import Array, source_of
 from frontend_sim.stimulus.recording.border import border
-from frontend_sim.stimulus.recording.npy import mapped_array
 from frontend_sim.stimulus.recording.series import Source, Wanted
 
 IN_MEMORY = 1 << 25
@@ -43,13 +43,7 @@ class _Member:
     def described(self, archive: zipfile.ZipFile) -> Array:
         """Return shape and type from the header alone."""
         with archive.open(self._name) as stream:
-            version = npy_format.read_magic(stream)
-            header = (
-                npy_format.read_array_header_1_0
-                if version == (1, 0)
-                else npy_format.read_array_header_2_0
-            )
-            shape, _, dtype = header(stream)
+            shape, _, dtype = _header(stream)
         return Array(self._name.removesuffix(".npy"), shape, dtype, self._read)
 
     def _read(self, index: object) -> NDArray[Any]:
@@ -64,8 +58,30 @@ class _Member:
                 with archive.open(self._name) as stream:
                     whole = npy_format.read_array(stream, allow_pickle=False)
                 return Array("", whole.shape, whole.dtype, lambda index: whole[index])
-            folder = tempfile.mkdtemp(prefix="frontend-sim-")
-            # Removed with this object or with the process, whichever ends first.
-            weakref.finalize(self, shutil.rmtree, folder, ignore_errors=True)
-            unpacked = Path(archive.extract(self._name, folder))
-        return mapped_array(unpacked, "")
+            unpacked = tempfile.TemporaryFile(prefix="frontend-sim-")  # noqa: SIM115 - see below
+            # Without a name, it goes with this object or with the process, whatever ends that.
+            weakref.finalize(self, unpacked.close)
+            with archive.open(self._name) as stream:
+                shutil.copyfileobj(stream, unpacked)
+        unpacked.seek(0)
+        shape, fortran, dtype = _header(unpacked)
+        offset = unpacked.tell()
+        order: Literal["F", "C"] = "F" if fortran else "C"
+
+        def read(index: Any) -> NDArray[Any]:
+            # Mapped anew each time, so that pages which were read once do not stay in memory.
+            with border(self._file, f"member {self._name!r} is cut off"):
+                part = np.memmap(unpacked, dtype, "r", offset, shape, order)[index]
+            return np.array(part)
+
+        return Array("", shape, dtype, read)
+
+
+def _header(stream: IO[bytes]) -> tuple[tuple[int, ...], bool, np.dtype[Any]]:
+    """Return shape, whether columns lie one after the other, and type of an NPY stream."""
+    version = npy_format.read_magic(stream)
+    header = (
+        npy_format.read_array_header_1_0 if version == (1, 0) else npy_format.read_array_header_2_0
+    )
+    found: tuple[tuple[int, ...], bool, np.dtype[Any]] = header(stream)
+    return found

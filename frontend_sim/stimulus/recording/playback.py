@@ -8,7 +8,7 @@ from functools import cached_property
 
 import numpy as np
 
-from frontend_sim.stimulus.drive import LINE, Between, PiecewiseDrive, UniformDrive
+from frontend_sim.stimulus.drive import Between, LineDrive, UniformDrive
 from frontend_sim.stimulus.recording.series import Real
 from frontend_sim.stimulus.recording.store import Stored
 
@@ -52,7 +52,7 @@ class Playback(UniformDrive):
     conversion: Conversion
 
     @cached_property
-    def initial(self) -> float:  # type: ignore[override]  # derived here, stored elsewhere
+    def initial(self) -> float:
         """Return the value of point 0."""
         return float(self.points(0, 1)[0])
 
@@ -75,7 +75,7 @@ class Playback(UniformDrive):
 
 
 @dataclass(frozen=True, eq=False)
-class StampedPlayback(PiecewiseDrive):
+class StampedPlayback(LineDrive):
     """Points of a recording with a time stamp each.
 
     Parameters
@@ -92,17 +92,12 @@ class StampedPlayback(PiecewiseDrive):
     conversion: Conversion
 
     @property
-    def generator(self) -> Real:  # type: ignore[override]  # derived here, stored elsewhere
-        """A line, or a held value."""
-        return LINE if self.between == "line" else np.zeros((1, 1))
-
-    @property
-    def readout(self) -> Real:  # type: ignore[override]  # derived here, stored elsewhere
-        """Return the weights of the generator's states."""
-        return np.array([1.0, 0.0]) if self.between == "line" else np.ones(1)
+    def held(self) -> bool:
+        """Whether points are held until the next."""
+        return self.between == "hold"
 
     @cached_property
-    def initial(self) -> float:  # type: ignore[override]  # derived here, stored elsewhere
+    def initial(self) -> float:
         """Return the value of the first point."""
         return float(self.conversion(self.numbers.read(0, 1))[0])
 
@@ -116,7 +111,7 @@ class StampedPlayback(PiecewiseDrive):
         stamps, numbers = self.times.view(), self.numbers.view()
         piece = np.maximum(np.searchsorted(stamps, times, side="right") - 1, 0)
         here = np.asarray(self.conversion(np.asarray(numbers[piece])))
-        if self.between == "hold":
+        if self.held:
             return here[:, None]
         following = np.minimum(piece + 1, self.times.count - 1)
         there = self.conversion(np.asarray(numbers[following]))

@@ -2,100 +2,35 @@
 
 from __future__ import annotations
 
-import os
-from importlib.util import find_spec
 from pathlib import Path
 from typing import Annotated, Literal, Self
 
-from pydantic import (
-    AfterValidator,
-    BeforeValidator,
-    Field,
-    PrivateAttr,
-    ValidationInfo,
-    model_validator,
-)
-from pydantic_core import PydanticCustomError
+from pydantic import Field, PrivateAttr, model_validator
 
 from frontend_sim.errors import QuantityError
 from frontend_sim.quantities import (
-    TIME,
     Frequency,
     Instant,
     PositiveRatio,
     PositiveTime,
     Ratio,
     SignalDifference,
-    parse_level,
 )
 from frontend_sim.stimulus.base import Key, Stimulus
 from frontend_sim.stimulus.drive import Between, Drive
 from frontend_sim.stimulus.levels import LevelFault
 from frontend_sim.stimulus.recording.duplicates import Duplicates
+from frontend_sim.stimulus.recording.keys import (
+    Column,
+    FilePath,
+    Name,
+    Package,
+    SignalUnit,
+    TimeUnit,
+)
 from frontend_sim.stimulus.recording.missing import Missing
 from frontend_sim.stimulus.recording.prepare import prepared
-from frontend_sim.stimulus.recording.units import factor_of, signal_factor_of
-
-
-def _installed(name: str) -> str:
-    """Refuse a package that is not installed; it is looked up, never imported."""
-    if not name.isidentifier() or _folder_of(name) is None:
-        raise PydanticCustomError(
-            "package",
-            "no package {name} is installed; install it, or leave out package and give the path "
-            "of a file",
-            {"name": repr(name)},
-        )
-    return name
-
-
-def _folder_of(package: str) -> Path | None:
-    spec = find_spec(package)
-    folders = list(spec.submodule_search_locations or []) if spec is not None else []
-    return Path(folders[0]) if folders else None
-
-
-def _absolute(value: Path, info: ValidationInfo) -> Path:
-    """Make a path absolute, from the folder of the package or else of the scenario."""
-    folder = (info.context or {}).get("directory")
-    package = info.data.get("package")
-    if package is not None:
-        folder = _folder_of(package)
-    return Path(os.path.abspath(Path(folder, value) if folder is not None else value))
-
-
-def _column(value: object) -> object:
-    if isinstance(value, str) and value.strip():
-        return value.strip()
-    if isinstance(value, int) and not isinstance(value, bool) and value >= 1:
-        return value
-    raise PydanticCustomError(
-        "column",
-        "given {given}; expected a name, or a number counted from 1",
-        {"given": repr(value)},
-    )
-
-
-def _unit_of_time(unit: str) -> str:
-    try:
-        factor_of(unit, TIME)
-    except QuantityError as error:
-        raise PydanticCustomError("unit", "{reason}", {"reason": str(error)}) from None
-    return unit
-
-
-def _unit_of_a_signal(unit: str) -> str:
-    """Refuse what is the unit of no signal; the scenario knows which unit it must be."""
-    try:
-        parse_level(f"1 {unit}", "difference")
-    except QuantityError:
-        reason = f"given {unit!r}, which is not a unit of a signal; expected for instance mV"
-        raise PydanticCustomError("unit", "{reason}", {"reason": reason}) from None
-    return unit
-
-
-Column = Annotated[int | str, BeforeValidator(_column, json_schema_input_type=int | str)]
-Name = Annotated[str, Field(min_length=1)]
+from frontend_sim.stimulus.recording.units import signal_factor_of
 
 
 class Recording(Stimulus):
@@ -105,11 +40,11 @@ class Recording(Stimulus):
     """
 
     kind: Literal["recording"] = "recording"
-    package: Annotated[str, AfterValidator(_installed)] | None = Field(
+    package: Package | None = Field(
         default=None,
         description="installed Python package that the file is a part of, for open example data",
     )
-    file: Annotated[Path, AfterValidator(_absolute)] = Field(
+    file: FilePath = Field(
         description="file of the recording, relative to the scenario, or to the package: "
         ".csv .tsv .txt .wav .npy .npz .h5 .hdf5 .mat"
     )
@@ -131,7 +66,7 @@ class Recording(Stimulus):
     rate: Frequency | None = Field(
         default=None, description="points per second, where there is no time column"
     )
-    time_unit: Annotated[Name, AfterValidator(_unit_of_time)] | None = Field(
+    time_unit: TimeUnit | None = Field(
         default=None,
         description="unit of the time column; left out, as the file says, else s",
         examples=["ms"],
@@ -156,7 +91,7 @@ class Recording(Stimulus):
     between: Between = Field(
         default="line", description="what the signal does between two points: line or hold"
     )
-    unit: Annotated[Name, AfterValidator(_unit_of_a_signal)] | None = Field(
+    unit: SignalUnit | None = Field(
         default=None,
         description="unit of the numbers; left out, as the file says if that is a unit of the "
         "signal, else the signal's own in SI",
@@ -221,6 +156,10 @@ class Recording(Stimulus):
             except QuantityError as error:
                 faults.append(LevelFault(("unit",), str(error)))
         return faults
+
+    def written_level(self) -> str:
+        """Return one of the unit that the numbers are in, where the file tells it."""
+        return f"1 {self.unit}" if self.unit is not None else super().written_level()
 
     def is_absolute(self) -> bool:
         """Return that a recording is given by its values."""

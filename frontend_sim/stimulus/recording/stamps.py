@@ -81,9 +81,10 @@ def check_order(file: Path, stamps: Stamps) -> Order:
         if len(back):
             at = int(back[0])
             before = raw[at - 1] if at else last
+            midnight = "; times of day that pass midnight need a date" if series.absolute else ""
             raise RecordingError(
                 f"{file}, {series.where(position + at)}: time goes back from {before:.12g} to "
-                f"{raw[at]:.12g}; sort the rows, or cut the file there"
+                f"{raw[at]:.12g}; sort the rows, or cut the file there{midnight}"
             )
         same = np.flatnonzero(steps == 0.0)
         duplicates += len(same)

@@ -11,11 +11,11 @@ import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
 from nodal import GROUND, Net, open_loop, transfers
+from noisy import NOISE, by_nodes, by_sources
 from numpy.typing import NDArray
 from scipy import signal
 
 from frontend_sim.analog.chain import chain_of
-from frontend_sim.analog.noise import BOLTZMANN
 from frontend_sim.analog.stages import STAGES, Butterworth
 from frontend_sim.analog.stages.active_filter import ActiveFilter
 
@@ -175,14 +175,6 @@ def test_response_is_that_of_the_nodes(build: Any, values: Values) -> None:
     np.testing.assert_allclose(found, true, rtol=1e-9)
 
 
-NOISE = {
-    "voltage_noise": 8e-9,
-    "voltage_noise_corner": 30.0,
-    "current_noise": 5e-12,
-    "current_noise_corner": 200.0,
-}
-
-
 @pytest.mark.parametrize(("build", "values"), ROWS)
 def test_noise_at_the_output_is_that_of_the_nodes(build: Any, values: Values) -> None:
     """Sum of |H|² S over resistors, voltage and current noise of every amplifier, to 1e-9.
@@ -192,24 +184,8 @@ def test_noise_at_the_output_is_that_of_the_nodes(build: Any, values: Values) ->
     """
     stage = _stage({**values, **NOISE})
     frequencies = stage.nominal_corner * DECADES[::2]
-    gains = transfers(lambda net: build(net, values), frequencies)
-    net = Net(mp.mpf(1))
-    build(net, values)
-    true = np.zeros(len(frequencies))
-    for source, gain in gains.items():
-        if source in net.resistors:
-            density = 4.0 * BOLTZMANN * 300.0 * float(net.resistors[source][2])
-            true += np.abs(gain) ** 2 * density
-        elif source != "u":
-            density, corner = (8e-9, 30.0) if "amplifier" in source else (5e-12, 200.0)
-            true += np.abs(gain) ** 2 * density**2 * (1.0 + corner / frequencies)
-    (block,) = stage.blocks()
-    found = np.zeros(len(frequencies))
-    for noise in stage.noise(300.0):
-        for i, f in enumerate(frequencies):
-            system = 2j * np.pi * f * np.eye(block.order) - block.a
-            gain = block.c @ np.linalg.solve(system, noise.b) + noise.d
-            found[i] += abs(gain) ** 2 * noise.density**2 * (1.0 + noise.corner / f)
+    true = by_nodes(lambda net: build(net, values), frequencies, 300.0)
+    found = by_sources(stage, frequencies, 300.0)
     np.testing.assert_allclose(found, true, rtol=1e-9)
 
 

@@ -41,7 +41,7 @@ REFUSED: list[tuple[Values, str]] = [
     ({**INVERTING, "open_loop_gain": 11}, "open_loop_gain 11 must be above the gain 11"),
     ({**GAINED, "feedback_capacitance": 1e-9}, "feedback_capacitance needs feedback_resistance"),
     ({**INVERTING, "feedback_capacitance": 1e-9}, "feedback_capacitance needs feedback_resistance"),
-    ({"kind": "difference-amplifier", "input_resistance": 1e3}, "Field required"),
+    ({"kind": "difference-amplifier", "input_resistance": 1e3}, "feedback_resistance: missing"),
     ({**DIODE, "feedback_resistance": "0 ohm"}, "above 0"),
     (
         {**DIODE, "input_capacitance": 1e-9, "gain_bandwidth": 1e6, "second_pole": 1e5},

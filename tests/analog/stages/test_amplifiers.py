@@ -9,9 +9,9 @@ import mpmath as mp
 import numpy as np
 import pytest
 from nodal import GROUND, Net, at_rest, open_loop, transfers
+from noisy import NOISE, by_nodes, by_sources
 
 from frontend_sim.analog.chain import chain_of
-from frontend_sim.analog.noise import BOLTZMANN
 from frontend_sim.analog.stages import STAGES
 from frontend_sim.analog.stages.amplifier_stage import AmplifierStage
 
@@ -173,46 +173,13 @@ def test_response_is_that_of_the_nodes(kind: str, build: Any, values: Values) ->
     np.testing.assert_allclose(found, true, rtol=1e-9)
 
 
-NOISE = {
-    "voltage_noise": 8e-9,
-    "voltage_noise_corner": 30.0,
-    "current_noise": 5e-12,
-    "current_noise_corner": 200.0,
-}
-
-
 @pytest.mark.parametrize(("kind", "build", "values"), ROWS)
 def test_noise_at_the_output_is_that_of_the_nodes(kind: str, build: Any, values: Values) -> None:
-    """The density of all sources together, sum of |H|² S, to 1e-9 at every frequency.
-
-    4 k T R of every resistor; e_n² (1 + f_c/f) at the noninverting input; i_n² (1 + f_c/f) into
-    both inputs.
-    """
+    """The density of all sources together, sum of |H|² S, to 1e-9 at every frequency."""
     stage = _stage(kind, {**values, **NOISE})
-    gains = transfers(lambda net: build(net, values), FREQUENCIES)
-    densities = {"amplifier": (8e-9, 30.0), "i+": (5e-12, 200.0), "i-": (5e-12, 200.0)}
-    true = np.zeros(len(FREQUENCIES))
-    for source, gain in gains.items():
-        if source in densities:
-            density, corner = densities[source]
-            true += np.abs(gain) ** 2 * density**2 * (1.0 + corner / FREQUENCIES)
-    net = Net(mp.mpf(1))
-    build(net, values)
-    for name, (_, _, ohms) in net.resistors.items():
-        true += np.abs(gains[name]) ** 2 * 4.0 * BOLTZMANN * TEMPERATURE * float(ohms)
-    np.testing.assert_allclose(_density(stage, FREQUENCIES), true, rtol=1e-9)
-
-
-def _density(stage: AmplifierStage, frequencies: Any) -> Any:
-    """Return the squared density at the stage's output from its noise inputs [V²/Hz]."""
-    (block,) = stage.blocks()
-    total = np.zeros(len(frequencies))
-    for source in stage.noise(TEMPERATURE):
-        for i, f in enumerate(frequencies):
-            system = 2j * np.pi * f * np.eye(block.order) - block.a
-            gain = block.c @ np.linalg.solve(system, source.b) + source.d
-            total[i] += abs(gain) ** 2 * source.density**2 * (1.0 + source.corner / f)
-    return total
+    true = by_nodes(lambda net: build(net, values), FREQUENCIES, TEMPERATURE)
+    found = by_sources(stage, FREQUENCIES, TEMPERATURE)
+    np.testing.assert_allclose(found, true, rtol=1e-9)
 
 
 CONSTANTS = {"offset_voltage": 2e-3, "offset_drift": 1e-5, "bias_current": 3e-8}

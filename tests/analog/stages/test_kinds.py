@@ -20,7 +20,16 @@ from frontend_sim.analog.stages.base import Stage
 Complex = NDArray[np.complex128]
 Formula = Callable[[Complex], Any]
 
-SHARED = {"base", "filters", "amplifier", "amplifier_stage", "network_stage", "active_filter"}
+SHARED = {
+    "base",
+    "filters",
+    "operational_amplifier",
+    "amplifier_stage",
+    "network_stage",
+    "active_filter",
+    "feedback_amplifier",
+    "temperature_sensor",
+}
 """Modules of the folder that are no kind, among others."""
 
 SCENARIOS = Path(__file__).parents[3] / "scenarios" / "stages"

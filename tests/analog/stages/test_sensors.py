@@ -7,7 +7,6 @@ from typing import Any
 import numpy as np
 import pytest
 from numpy.typing import NDArray
-from pydantic import ValidationError
 from scipy.integrate import solve_ivp
 
 from frontend_sim.analog.block import Block
@@ -16,6 +15,7 @@ from frontend_sim.analog.noise import BOLTZMANN, NoiseInput
 from frontend_sim.analog.sensors.thermocouple import thermovoltage
 from frontend_sim.analog.stages import STAGES
 from frontend_sim.analog.stages.base import Stage
+from frontend_sim.errors import ScenarioError
 from frontend_sim.scenario import Scenario
 from frontend_sim.simulation import simulate
 
@@ -361,5 +361,5 @@ WRONG: list[tuple[dict[str, Any], str]] = [
 @pytest.mark.parametrize(("values", "message"), WRONG)
 def test_what_makes_no_sensor_is_refused(values: dict[str, Any], message: str) -> None:
     """Each contradiction is told in words of its own."""
-    with pytest.raises(ValidationError, match=message):
+    with pytest.raises(ScenarioError, match=message):
         stage(**values)

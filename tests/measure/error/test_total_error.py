@@ -11,7 +11,7 @@ import pytest
 
 import frontend_sim as fe
 from frontend_sim.errors import MeasureError, ScenarioError
-from frontend_sim.measure.checks.scan import refuse_impossible_checks
+from frontend_sim.measure.checks.impossible import refuse_impossible_checks
 from frontend_sim.measure.error import Ideal, total_error
 from frontend_sim.scenario import ScanScenario, Scenario, parse_scenario
 

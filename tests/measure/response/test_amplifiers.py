@@ -13,6 +13,7 @@ from frontend_sim.analog.stages.loop_bandwidth import feedback_times, loop_bandw
 from frontend_sim.analog.stages.multiple_feedback import MultipleFeedback
 from frontend_sim.measure.response import Inspection, inspect_scenario
 from frontend_sim.present import inspection_tables
+from frontend_sim.present.amplifier_table import level_rows
 from frontend_sim.scenario.model import Scenario
 
 SALLEN_KEY = {
@@ -150,6 +151,27 @@ def test_offset_and_range_at_the_pin():
     assert found.spread == pytest.approx(2.0 * (20e-3 + 1e-3), rel=1e-9)
     assert found.at_low == pytest.approx((0.0 - offset) / -20.0, rel=1e-9)
     assert found.at_high == pytest.approx((4.0 - offset) / -20.0, rel=1e-9)
+
+
+@pytest.mark.parametrize(
+    ("limit", "name"),
+    [
+        ({"kind": "rail-limit", "high": "1.9 V"}, "2 rail-limit"),
+        ({"kind": "rail-limit", "name": "supply", "low": "-1 V", "high": "2 V"}, ""),
+        ({"kind": "clamp", "high": "1.5 V", "upper_forward_voltage": "0.3 V"}, "2 clamp"),
+        ({"kind": "clamp", "high": "1.5 V", "upper_forward_voltage": "0.6 V"}, ""),
+        ({"kind": "noninverting-amplifier", "gain": 1, "output_high": "1.9 V"},
+         "2 noninverting-amplifier"),
+    ],
+)  # fmt: skip
+def test_a_limit_that_comes_before_the_end_of_the_range_is_named(limit, name):
+    """2 V before the gain of two reach the upper end, 4 V: rails and clamps below keep it away."""
+    chain = [{"kind": "gain", "gain": 1}, limit, {"kind": "gain", "gain": 2}]
+    found = inspected(*chain)
+    assert found.level.at_high == pytest.approx(2.0)
+    assert (found.level.low_held, found.level.high_held) == ("", name)
+    told = dict(level_rows(found))["pin reaches 4.00 V at a stimulus of"]
+    assert told == (f"2.000 V, but a limit of {name} comes first" if name else "2.000 V")
 
 
 THERMISTOR = {

@@ -6,7 +6,7 @@ from itertools import permutations
 
 import numpy as np
 import pytest
-from scanned import SHARED, level, scan_of, sine
+from scanned import SHARED, level, sampled, scan_of, sine
 
 from frontend_sim.measure.scan import best_order, crosstalk, inspect_scan, scan_report, skews
 from frontend_sim.measure.scan.order import MOST_EXHAUSTIVE
@@ -73,11 +73,7 @@ def test_the_unit_is_a_full_scale_at_the_pin() -> None:
 
 def test_charge_memory_is_crosstalk() -> None:
     """Check value: 0.0103991 of the difference to what the other channel is held at."""
-    adc = (
-        "[adc.input]\nsource_resistance = 1e6\npin_capacitance = 1e-8\nswitch_resistance = 1\n"
-        "sampling_capacitance = 1e-11\nacquisition_time = 1e-9\nnoise = false"
-    )
-    found = crosstalk(scan_of([level(0)] * 2, rate=2e3, adc=adc))
+    found = crosstalk(scan_of([level(0)] * 2, rate=2e3, adc=sampled(1e6, 1e-8, 1.0, 1e-11, 1e-9)))
     assert found.ways == ("sampling capacitor",)
     share = found.matrix[0, 1] / FULL
     # With both at their fixed point: x = m (1 - x), hence m = x / (1 - x).

@@ -47,6 +47,14 @@ def test_a_response_that_turns_is_found() -> None:
     assert corner_excess(_corners(response, 2), values, tolerance=1.0) is None
 
 
+def test_a_plain_number_keeps_its_digits() -> None:
+    """The unit 1 of a share is not written, and takes no digit of the number with it."""
+    found = corner_excess(np.array([0.0, 1.0]), np.array([1.21]))
+    assert found is not None
+    assert "up to 0.21 above" in found.text("overshoot", "1")
+    assert "up to 0.21 V above" in found.text("level", "V")
+
+
 def test_midpoints_name_the_parameter() -> None:
     """Ends and middle of one parameter at a time show along which the response turns."""
     lines = {"a": (0.0, 1.0, 0.0), "b": (0.0, 1.0, 2.0), "c": (1.0, 0.5, 1.2)}

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import os
+import tempfile
 from pathlib import Path
 from typing import Any
 
@@ -70,6 +72,29 @@ def test_npz(tmp_path: Path, save: Any, limit: int, monkeypatch: pytest.MonkeyPa
         assert rate(stimulus) == 250.0
     with pytest.raises(RecordingError, match=r"several arrays .* 't' .* 'x' .* 'wide'"):
         recording(file, rate=1).notes()
+
+
+@pytest.mark.skipif(os.name != "posix", reason="elsewhere a temporary file has a name")
+def test_what_is_unpacked_of_an_npz_has_no_name(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    """A process that is killed leaves nothing: no name is there, not even while it is read."""
+    scratch = tmp_path / "scratch"
+    scratch.mkdir()
+    monkeypatch.setattr(npz, "IN_MEMORY", 16)
+    monkeypatch.setattr(tempfile, "tempdir", str(scratch))
+    np.savez(tmp_path / "a.npz", x=X)
+    opened, unpacked = tempfile.TemporaryFile, []
+
+    def watched(**keys: Any) -> Any:
+        unpacked.append(opened(**keys))
+        return unpacked[-1]
+
+    monkeypatch.setattr(tempfile, "TemporaryFile", watched)
+    stimulus = recording(tmp_path / "a.npz", rate=250, column="x")
+    assert np.array_equal(points(stimulus), X)
+    assert unpacked
+    assert list(scratch.iterdir()) == []
 
 
 def test_npz_of_one_array_and_its_time(tmp_path: Path) -> None:

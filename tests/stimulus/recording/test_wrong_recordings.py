@@ -16,11 +16,10 @@ import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
 from numpy.typing import NDArray
-from pydantic import ValidationError
 from recorded import recording, values, wav, write
 from scipy.io import savemat
 
-from frontend_sim.errors import RecordingError
+from frontend_sim.errors import RecordingError, ScenarioError
 from frontend_sim.stimulus.recording import READERS, Recording
 
 X = np.arange(6.0)
@@ -82,6 +81,7 @@ CASES: list[Case] = [
     ("a.csv", "t,x\n0,1\n", {"time": "t"}, "single point with a time has no length"),
     ("a.csv", "t,x\n5,1\n5,2\n", {"time": "t", "timestamps": "uniform"}, "all .* equal"),
     ("a.csv", "t,x\n0,1\n2,2\n1,3\n", {"time": "t"}, "line 4: time goes back from 2 to 1"),
+    ("a.csv", "t,x\n23:59:59,1\n00:00:01,2\n", {"time": "t"}, "midnight need a date"),
     ("a.csv", "t,x\n0,1\n0,2\n1,3\n", {"time": "t"}, r"1 point repeats .*\(line 3\); set dupl"),
     ("a.csv", "t,x\n0,1\n1,\n2,3\n", {"time": "t"}, r"1 of 3 .* no value \(line 3\); set missing"),
     ("a.csv", "t,x\n10:00:00,1\n10:61:xx,2\n", {"time": "t"}, "line 3, .*expected an instant"),
@@ -199,7 +199,7 @@ def test_one_message(
 )
 def test_wrong_keys(tmp_path: Path, keys: dict[str, Any], message: str) -> None:
     """Keys that contradict each other or lie outside of their limits never make a recording."""
-    with pytest.raises(ValidationError, match=message):
+    with pytest.raises(ScenarioError, match=message):
         recording(tmp_path / "a.csv", **keys)
 
 

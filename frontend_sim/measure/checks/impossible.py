@@ -1,17 +1,50 @@
-"""The checks of a scan: those of its channels, each held against its own run."""
+"""Checks that no run could answer are refused before there is one."""
 
 from __future__ import annotations
 
-from frontend_sim.errors import Problem, ScenarioError
-from frontend_sim.measure.checks.evaluate import refuse_impossible
+from frontend_sim.errors import MeasureError, ModelError, Problem, ScenarioError
+from frontend_sim.measure.checks.subject import Subject
+from frontend_sim.measure.checks.table import EVALUATIONS
 from frontend_sim.scenario.channel_scenario import ChannelScenario
 from frontend_sim.scenario.check import problem_of
 from frontend_sim.scenario.checks import PointCheck, ToneCheck
+from frontend_sim.scenario.model import Scenario
 from frontend_sim.scenario.scan_scenario import AnyScenario, ScanScenario
-from frontend_sim.simulation import ScanSimulation
+from frontend_sim.simulation import ScanSimulation, Simulation
 
 EVENLY = ("mains-level", "latency")
 """Kinds besides those of tones that need evenly spaced conversions."""
+
+
+def refuse_impossible(
+    scenario: Scenario, name: str = "", prepared: Simulation | None = None
+) -> None:
+    """Refuse checks that no run of the scenario could answer, before it is run.
+
+    Parameters
+    ----------
+    name : what the scenario is called in messages
+    prepared : the simulation, where there is one already
+
+    Raises
+    ------
+    ScenarioError
+        If there is one; ``problems`` lists them with key and line.
+    """
+    if not scenario.check:
+        return
+    subject = Subject(scenario, prepared=prepared)
+    problems = []
+    for position, check in enumerate(scenario.check):
+        possible = EVALUATIONS[check.kind].possible
+        if possible is None:
+            continue
+        try:
+            possible(check, subject)
+        except (MeasureError, ModelError) as error:
+            problems.append(problem_of(scenario, ("check", position), str(error)))
+    if problems:
+        raise ScenarioError(problems, name)
 
 
 def refuse_impossible_checks(
