@@ -9,7 +9,8 @@ import numpy as np
 from frontend_sim.analog.block import Real
 
 TERMS = 16
-"""Terms of the Taylor series: at a norm of 1/2 the rest is below 0.5^17 / 17! = 2e-20."""
+"""Terms of the Taylor series: at a norm of 1/2 the rest is below 0.5^17 / 17! = 2e-20. A small norm
+is no reason for fewer: far along a chain an entry begins with a high power."""
 
 
 def expm1(matrix: Real) -> Real:

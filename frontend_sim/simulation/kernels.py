@@ -224,11 +224,15 @@ def spread(z: Any, matrix: Any, y: Any) -> None:
     """y[i, r ROW + k] = sum over s of matrix[i, s, k] · z[r, s]: rows of outputs from states."""
     p, size, row = matrix.shape
     for i in range(p):
+        weight = matrix[i]
         for r in range(len(z)):
-            start = r * row
+            part = y[i, r * row : (r + 1) * row]
             for k in range(row):
-                y[i, start + k] = 0.0
-            for s in range(size):
-                weight = z[r, s]
+                part[k] = weight[0, k] * z[r, 0]
+            for s in range(1, size - 1, 2):  # two at a time, in the same order
+                one, two = z[r, s], z[r, s + 1]
                 for k in range(row):
-                    y[i, start + k] += matrix[i, s, k] * weight
+                    part[k] = (part[k] + weight[s, k] * one) + weight[s + 1, k] * two
+            if size % 2 == 0:
+                for k in range(row):
+                    part[k] += weight[size - 1, k] * z[r, size - 1]

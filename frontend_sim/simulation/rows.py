@@ -8,7 +8,7 @@ from typing import Self
 
 import numpy as np
 
-from frontend_sim.analog.exponential import expm1, power
+from frontend_sim.analog.exponential import expm1, joined
 from frontend_sim.simulation import kernels
 from frontend_sim.simulation.kernels import Real
 from frontend_sim.simulation.path import State
@@ -76,18 +76,18 @@ class RowPath:
         """
         system, outputs, drive = exact.table.system, exact.outputs, exact.drive
         n, m = len(exact.initial), len(drive.readout)
-        one = expm1(system * interval)
-        spread = np.empty((len(outputs.d), n + m, row))
         direct = np.outer(outputs.d, drive.readout)
-        rows = np.concatenate([outputs.c, direct], axis=1)
-        for k in range(row):
-            spread[:, :, k] = rows + rows @ power(one, k)
-        e = power(one, row)
+        e = expm1(system * interval)
+        spread = np.concatenate([outputs.c, direct], axis=1)[None]
+        while len(spread) < row:
+            spread = np.concatenate([spread, spread + spread @ e])
+            e = joined(e, e)
         step, feed = np.ascontiguousarray(e[:n, :n]), np.ascontiguousarray(e[:n, n:])
         rate, delay = 1.0 / interval, outputs.delay - origin
         lead = max(math.floor(delay * rate) - 1, 0)
         while lead / rate - delay < 0.0:
             lead += 1
+        spread = np.ascontiguousarray(spread.transpose(1, 2, 0))
         return cls(exact, rate, delay, lead, row, spread, step, feed)
 
     def start(self) -> State:
