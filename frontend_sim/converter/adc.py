@@ -8,13 +8,7 @@ import numpy as np
 from pydantic import Field, model_validator
 
 from frontend_sim.converter.averaging import Averaging
-from frontend_sim.converter.base import (
-    MOST_DEVIATIONS,
-    MOST_JITTER,
-    CodeFormat,
-    Converter,
-    Rounding,
-)
+from frontend_sim.converter.base import MOST_DEVIATIONS, Converter
 from frontend_sim.converter.dither import Dither
 from frontend_sim.converter.input_network import InputNetwork
 from frontend_sim.converter.pattern import LookPattern
@@ -23,8 +17,6 @@ from frontend_sim.values import OPTIONAL_KIND, Value
 
 if TYPE_CHECKING:
     from frontend_sim.converter.digitizer import Digitizer
-
-__all__ = ["MOST_JITTER", "Adc", "CodeFormat", "Rounding"]
 
 MOST_RESULT_BITS = 32
 """Bits of the widest averaged result."""

@@ -179,6 +179,12 @@ class Converter(Value):
         """
 
     @property
+    def latest(self) -> float:
+        """How late delay and wander may make a look, the very first one too [s]."""
+        wander = 0.0 if self.wander is None else MOST_DEVIATIONS * self.wander.rms
+        return self.aperture_delay + wander
+
+    @property
     def look_noise(self) -> float:
         """Rms noise of one look at the input [V]."""
         return self.input_noise

@@ -66,12 +66,10 @@ class Digitizer(ABC):
     def longest(self) -> float:
         """Longest interval without a look, from t = 0 on, jitter and wander in it [s]."""
         adc, pattern = self.adc, self.adc.pattern
-        first, widest = adc.first + adc.aperture_delay, pattern.widest
+        widest = pattern.widest
         if adc.wander is not None:
-            # A slow wander may be far ahead at the start, whatever the interval.
-            first += float(adc.wander.deviation(pattern, 0, 1, self.seed)[0])
             widest += MOST_DEVIATIONS * adc.wander.change(widest)
-        return max(first, widest) + pattern.closest
+        return max(adc.first + adc.latest, widest) + pattern.closest
 
     def instants(self, start: int, stop: int) -> Real:
         """Return the true instants of looks start to stop - 1, increasing [s]."""

@@ -69,9 +69,9 @@ class Acquisition:
         return cls(
             values.acquisition_time,
             step,
-            abs(step * left) / adc.core_lsb,
-            time_needed(network, step, 0.5 * adc.core_lsb),
-            error / adc.core_lsb,
+            abs(step * left) / adc.lsb,
+            time_needed(network, step, 0.5 * adc.lsb),
+            error / adc.lsb,
             current,
             capacitor_noise(values.sampling_capacitance, temperature) if values.noise else 0.0,
         )

@@ -9,14 +9,12 @@ FULL_SCALE_SINE = 1.5
 
 
 def decibel(ratio: float) -> float:
-    """Return 20 lg of a ratio of amplitudes, minus infinity of zero [dB]."""
-    if ratio == math.inf:
-        return math.inf
-    return 20.0 * math.log10(ratio) if ratio > 0.0 else -math.inf
+    """Return 20 lg of a ratio of amplitudes, minus infinity of zero, none of none (NaN) [dB]."""
+    return -math.inf if ratio <= 0.0 else 20.0 * math.log10(ratio)
 
 
 def quotient(part: float, whole: float) -> float:
-    """Return part / whole of two levels, infinite over a silent whole [1]."""
+    """Return part / whole of two levels, infinite over a silent whole, NaN if both are [1]."""
     if whole == 0.0:
         return math.inf if part > 0.0 else math.nan
     return part / whole

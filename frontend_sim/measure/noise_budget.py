@@ -94,7 +94,7 @@ def noise_budget(
         If a pole at the origin gathers noise without bound.
     """
     model = chain.noise_model(lowest)
-    half, looks = 0.5 * adc.rate, LookWeights.of(adc)
+    half, looks = 0.5 * adc.true_rate, LookWeights.of(adc)
     powers = []
     for number, name in enumerate(model.names):
         mine = [column for column, owner in enumerate(model.owner) if owner == number]

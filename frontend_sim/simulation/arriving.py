@@ -39,7 +39,7 @@ class Arriving:
         axis = look_axis
         if adc.last_look(0) != 0 or adc.last_look(1) != 1:
             period = 1.0 / adc.true_rate
-            axis = Axis(period, adc.code_instant(0) + abs(adc.aperture_delay) + 2.0 * period)
+            axis = Axis(period, adc.code_instant(0) + adc.latest + 2.0 * period)
         return cls.along(drives, axis)
 
     @classmethod

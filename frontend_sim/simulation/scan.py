@@ -210,7 +210,8 @@ class _Keeping:
     def of(cls, channel: Simulation, period: float) -> _Keeping:
         arriving = None
         if channel.scenario.stimulus_unit != PIN:
-            axis = Axis(period, 3.0 * period + 2.0 * channel.scenario.adc.first)
+            adc = channel.scenario.adc
+            axis = Axis(period, 3.0 * period + 2.0 * adc.first + adc.latest)
             arriving = StimulusSteps(Arriving.along(channel.drives, axis))
         return cls(channel.noise_path, arriving, channel.waveform_steps())
 

@@ -90,7 +90,7 @@ class SharedPins:
         self._first = adc.first + adc.aperture_delay - rhythm.lead / tempo
         steady = adc.aperture_jitter == 0.0 and adc.wander is None
         self._even = steady and turns.visit <= MOST_COLUMNS
-        longest = 2.0 * self._period + abs(self._first) + adc.first
+        longest = 2.0 * self._period + abs(self._first) + adc.first + adc.latest
         at_switch = -1 - behind.stages
         self._rest = [shared.settled(float(each.chain.offset[at_switch])) for each in channels]
         rows = turns.visit + 2 if self._even else 1

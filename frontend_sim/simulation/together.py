@@ -4,8 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 
-import numpy as np
-
+from frontend_sim.converter import clock
 from frontend_sim.simulation.draws import MOST_VALUES, Draws, Known
 from frontend_sim.simulation.engine import Simulation
 from frontend_sim.simulation.linear import Linear
@@ -23,13 +22,8 @@ def together(simulations: Sequence[Simulation]) -> int:
     """
     if len(simulations) < 2 or Draws.of(_models(simulations[:1])) is None:
         return 0
-    instants = simulations[0].look_instants()
-    axis = simulations[0].look_axis()
-    alike = [
-        each
-        for each in simulations
-        if each.look_axis() == axis and np.array_equal(each.look_instants(), instants)
-    ]
+    instants, looks = simulations[0].look_instants(), _looks(simulations[0])
+    alike = [each for each in simulations if _looks(each) == looks]
     most = max(1, MOST_VALUES // max(len(instants), 1))
     done = 0
     for start in range(0, len(alike), most):
@@ -42,6 +36,13 @@ def together(simulations: Sequence[Simulation]) -> int:
             each.know_pin(Known(pin, float(model.before()[0])))
         done += len(group)
     return done
+
+
+def _looks(simulation: Simulation) -> tuple[object, ...]:
+    """Return all that the instants of an even row of looks follow from."""
+    adc = simulation.scenario.adc
+    count = clock.look_count(adc, simulation.count)
+    return simulation.look_axis(), adc.pattern, adc.aperture_delay, count
 
 
 def _models(simulations: Sequence[Simulation]) -> list[Linear]:

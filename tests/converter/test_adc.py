@@ -8,7 +8,8 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from frontend_sim.converter.adc import MOST_JITTER, Adc
+from frontend_sim.converter.adc import Adc
+from frontend_sim.converter.base import MOST_JITTER
 from frontend_sim.errors import ScenarioError
 
 

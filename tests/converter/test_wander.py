@@ -152,7 +152,7 @@ def test_looks_stay_in_order_and_cuts_never_show(
     ],
 )
 def test_a_clock_far_ahead_finds_the_pin(wander: dict[str, Any]) -> None:
-    """A first look hundreds of periods late still sees 1 - exp(-t / RC), 1e-12 of full scale near."""
+    """A first look hundreds of periods late still sees 1 - exp(-t / RC), within 1e-12."""
     scenario = Scenario.model_validate(
         {
             "format": 1,

@@ -18,7 +18,9 @@ SOURCE, SWITCH, SAMPLING = 2e3, 1e3, 20e-12
 TAU = (SOURCE + SWITCH) * SAMPLING
 
 
-def acquisition(acquisition_time: float = 300e-9, **keys: Any) -> Acquisition:
+def acquisition(
+    acquisition_time: float = 300e-9, averaging: dict[str, int] | None = None, **keys: Any
+) -> Acquisition:
     """Return the acquisition behind a resistance alone, with some keys of its own."""
     network = {
         "source_resistance": SOURCE,
@@ -27,7 +29,7 @@ def acquisition(acquisition_time: float = 300e-9, **keys: Any) -> Acquisition:
         "acquisition_time": acquisition_time,
         **keys,
     }
-    adc = {"rate": RATE, "bits": BITS, "high": HIGH, "input": network}
+    adc = {"rate": RATE, "bits": BITS, "high": HIGH, "averaging": averaging, "input": network}
     values = {"stimulus": {"kind": "step", "after": 1.0}, "adc": adc}
     found = Acquisition.of(Scenario.model_validate({**values, "simulation": {"duration": 1e-3}}))
     assert found is not None
@@ -40,6 +42,14 @@ def test_a_resistance_alone_settles_by_one_time_constant() -> None:
     assert found.step_error == pytest.approx(2.0**BITS * math.exp(-300e-9 / TAU), rel=1e-9)
     assert found.time_needed == pytest.approx(TAU * math.log(2.0 ** (BITS + 1)), rel=1e-9)
     assert found.steady_error == pytest.approx(0.0, abs=1e-9)
+
+
+def test_an_lsb_is_that_of_the_codes() -> None:
+    """A sum of 16 codes has LSB of a sixteenth: errors count 16 times, half an LSB takes longer."""
+    plain, summed = acquisition(holds="zero"), acquisition(averaging={"count": 16}, holds="zero")
+    assert summed.step_error == pytest.approx(16.0 * plain.step_error, rel=1e-12)
+    assert summed.steady_error == pytest.approx(16.0 * plain.steady_error, rel=1e-9)
+    assert summed.time_needed == pytest.approx(TAU * math.log(2.0 ** (BITS + 5)), rel=1e-9)
 
 
 def test_a_capacitor_that_starts_from_zero_draws_a_current() -> None:

@@ -82,6 +82,16 @@ def test_the_part_above_half_the_rate_of_one_pole() -> None:
     assert budget.rows[0].folded == budget.folded
 
 
+@pytest.mark.parametrize("error", [-0.1, 0.1])
+def test_a_clock_off_its_rate_folds_at_its_own_half(error: float) -> None:
+    """The codes come at rate (1 + rate_error), so half of that is where folding begins."""
+    adc = ADC.model_copy(update={"rate_error": error})
+    budget = noise_budget(compose([_rc(1e3, 1e-9)]), adc, 1.0)
+    corner = 1.0 / (2.0 * math.pi * 1e-6)
+    above = 1.0 - 2.0 / math.pi * math.atan(10e3 * (1.0 + error) / corner)
+    assert (budget.folded / budget.rms) ** 2 == pytest.approx(above, rel=1e-9)
+
+
 def test_sources_add_in_power() -> None:
     """Shares add up to one, the total to the root of the sum of squares, the largest first."""
     adc = ADC.model_copy(update={"input_noise": 30e-6})

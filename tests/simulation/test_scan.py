@@ -32,6 +32,25 @@ def test_channels_are_exact_at_their_own_instants() -> None:
         assert np.all(np.diff(channel.time) > 0)
 
 
+def test_a_clock_far_ahead_finds_the_pins_behind_shared_stages() -> None:
+    """A first look 0.7 s late, 350 scans, still sees A (1 - exp(-t / RC)).
+
+    The shared stage lags behind by its 1 us, of a slope of A / RC at most.
+    """
+    rc = 'kind = "rc-lowpass"\nresistance = {}\ncapacitance = {}\n'
+    scan = scan_of(
+        [f'kind = "step"\nbefore = 0.0\nafter = {volts}' for volts in (1.0, 0.5)],
+        rate=1e3,
+        adc='wander = {shape = "sinusoidal", rms = "0.5 s", frequency = "1 mHz", phase = "90 deg"}',
+        scan=f"[[scan.chain]]\n{rc.format(1e3, 1e-9)}",
+        chain=f"[[channel.chain]]\n{rc.format(1e4, 1e-4)}",
+    )
+    for run, volts in zip(simulate(scan).channels.values(), (1.0, 0.5), strict=True):
+        assert run.time[0] > 0.7
+        ideal = -volts * np.expm1(-(run.time - 1e-6))
+        np.testing.assert_allclose(run.pin, ideal, rtol=0, atol=1e-9)
+
+
 def test_a_channel_that_is_alone_is_a_scenario_of_its_own() -> None:
     """A scan of one channel gives, bit by bit, the codes of the file without channels."""
     noise = 'input_noise = 1e-3\naperture_jitter = 1e-7\n[adc.dither]\nshape = "uniform"\nwidth = 1'

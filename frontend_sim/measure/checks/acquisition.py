@@ -63,7 +63,7 @@ def _advice(subject: Subject, known: Acquisition, limit: float) -> str:
     """Return how long an acquisition has to be, and whether there is room for it."""
     found = switched_input(subject.scenario)
     assert found is not None
-    needed = time_needed(found.network, known.step, limit * found.adc.core_lsb)
+    needed = time_needed(found.network, known.step, limit * found.adc.lsb)
     closest = found.adc.pattern.closest
     if needed is None or needed >= closest:
         return (

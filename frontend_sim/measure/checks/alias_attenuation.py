@@ -20,7 +20,7 @@ def alias_attenuation(check: AliasAttenuationCheck, subject: Subject) -> Answer:
     MeasureError
         If the gain that it counts from is zero or infinite.
     """
-    rate = subject.adc.rate
+    rate = subject.adc.true_rate
     if check.frequency is not None:
         low, high = check.frequency, check.frequency
     else:

@@ -32,7 +32,7 @@ def alias_error(check: AliasErrorCheck, subject: Subject) -> Answer:
     beside = (
         Result("alias error, rms", rms / subject.adc.lsb, "LSB", method="; ".join(error.methods)),
         Result("alias error, peak", peak / subject.adc.lsb, "LSB", method="largest size"),
-        Result("known to", error.uncertainty / subject.adc.lsb, "LSB", method="of the split"),
+        Result("uncertainty", error.uncertainty / subject.adc.lsb, "LSB", method="of the split"),
     )
     return Answer(
         value,

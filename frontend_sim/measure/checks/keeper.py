@@ -8,6 +8,7 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
+from frontend_sim.converter.adc import Adc
 from frontend_sim.measure.checks.subject import Real
 from frontend_sim.measure.checks.table import EVALUATIONS
 from frontend_sim.scenario.model import Scenario
@@ -32,7 +33,7 @@ class Keeper:
     """Collects the arrays that the checks of a scenario read.
 
     Without checks nothing is kept, and memory stays bounded by the block; with all of them it is
-    25 bytes for each conversion.
+    33 bytes for each conversion, 41 with an input network.
     """
 
     def __init__(self, scenario: Scenario) -> None:
@@ -40,6 +41,13 @@ class Keeper:
         self.scenario = scenario
         wanted = {name for check in scenario.check for name in EVALUATIONS[check.kind].columns}
         self._parts: dict[str, list[Any]] = {name: [] for name in wanted}
+
+    @property
+    def per_conversion(self) -> int:
+        """Bytes that are kept for each conversion."""
+        held = isinstance(self.scenario.adc, Adc) and self.scenario.adc.input is not None
+        there = set(self._parts) - (set() if held else {"held"})
+        return sum(1 if name == "overrange" else 8 for name in there)
 
     def add(self, block: RunBlock) -> None:
         """Keep what is needed of a block."""

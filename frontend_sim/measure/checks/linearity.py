@@ -87,6 +87,7 @@ def _answer(
         Result("confidence", float(half), "LSB", method=interval),
         Result("at code", float(where), "counts", method="where it is largest"),
         Result("missing codes", float(len(found.missing)), "codes", method="never seen between"),
+        Result("codes beyond", float(found.below + found.above), "codes", method="never reached"),
     )  # fmt: skip
 
     def advice() -> str:

@@ -25,7 +25,7 @@ def mains_level(check: MainsLevelCheck, subject: Subject) -> Answer:
     """
     found = mains_levels(
         subject.voltage[subject.first_after(check.after) :],
-        subject.adc.rate,
+        subject.adc.true_rate,
         mains=check.frequency,
         deviation=check.deviation,
         harmonics=check.harmonics,
@@ -57,7 +57,7 @@ def mains_possible(check: MainsLevelCheck, subject: Subject) -> None:
     MeasureError
         If either is so.
     """
-    half = 0.5 * subject.adc.rate
+    half = 0.5 * subject.adc.true_rate
     highest = check.harmonics * check.frequency * (1.0 + check.deviation)
     if highest >= half:
         raise MeasureError(

@@ -40,9 +40,9 @@ def recovery(check: RecoveryCheck, subject: Subject) -> Answer:
         )
     last = np.flatnonzero(wrong & (subject.time > since))
     value = float(subject.time[last[-1]]) - since if len(last) else 0.0
-    lost = int(np.count_nonzero(wrong))
+    lost, told = int(np.count_nonzero(wrong)), "by the pin" if check.after is None else "as given"
     beside = (
-        Result("overload ends", since, "s", method="as given" if check.after else "by the pin"),
+        Result("overload ends", since, "s", method=told),
         Result("conversions lost", float(lost), "conversions", method="over the whole run"),
     )
     method = "conversions against the same chain without limits (nothing is known between them)"

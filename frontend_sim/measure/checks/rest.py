@@ -18,7 +18,7 @@ from frontend_sim.stimulus.drive import Drive, PiecewiseDrive
 from frontend_sim.stimulus.step import Step
 
 A_FEW = 4.0
-"""Results of the converter that a run must have room for, which averages several conversions."""
+"""Codes after the first one that a run has room for."""
 
 
 @dataclass(frozen=True, eq=False)
@@ -115,7 +115,7 @@ def settled_value(scenario: Scenario, point: str, level: float) -> float:
         If the point would have drifted away.
     """
     adc = scenario.adc
-    settings = SimulationSettings(duration=adc.first + A_FEW / adc.rate, noise=False)
+    settings = SimulationSettings(duration=adc.code_instant(0) + A_FEW / adc.true_rate, noise=False)
     still = scenario.model_copy(
         update={
             "stimulus": Step(before=level, after=level),

@@ -74,7 +74,7 @@ def _beside(check: SettlingCheck, subject: Subject, found: Settled) -> list[Resu
         np.searchsorted(subject.time, found.since)
     )
     if found.exit > subject.time[-1]:
-        lost += math.ceil((found.exit - float(subject.time[-1])) * subject.adc.rate) - 1
+        lost += math.ceil((found.exit - float(subject.time[-1])) * subject.adc.true_rate) - 1
     rows = [
         Result("conversions to discard", float(lost), "conversions", method="after the event"),
         Result("final value", found.final, "V", method=found.ends),

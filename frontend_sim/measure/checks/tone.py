@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from frontend_sim.errors import MeasureError
 from frontend_sim.measure.checks.answer import Answer
 from frontend_sim.measure.checks.subject import Subject
 from frontend_sim.measure.level import quantization_limit
@@ -40,8 +41,21 @@ def sfdr(check: SfdrCheck, subject: Subject) -> Answer:
 
 
 def thd(check: ThdCheck, subject: Subject) -> Answer:
-    """Return the total harmonic distortion. Raises MeasureError as ``quality_of`` does."""
+    """Return the total harmonic distortion.
+
+    Raises
+    ------
+    MeasureError
+        As ``quality_of`` does, or if every harmonic folds onto another line.
+    """
     found = quality_of(check, subject)
+    hidden = ", ".join(map(str, found.hidden))
+    if len(found.hidden) == len(found.harmonics):
+        raise MeasureError(
+            f"harmonics {hidden} all fold onto the tone, the offset or one another, so none can be "
+            "told; move the tone away from a simple share of the rate"
+        )
+    method = _method(found) + (f"; without harmonics {hidden}, hidden by others" if hidden else "")
 
     def advice() -> str:
         seen = [each for each in found.harmonics if each.amplitude is not None]
@@ -49,7 +63,7 @@ def thd(check: ThdCheck, subject: Subject) -> Answer:
         which = "" if worst is None else f"; harmonic {worst.order} is the strongest"
         return f"lower the level of the tone, or give the stages more range{which}"
 
-    return Answer(found.thd, "dB", check.at_most, "at most", _method(found), advice)
+    return Answer(found.thd, "dB", check.at_most, "at most", method, advice)
 
 
 def effective_bits(check: EffectiveBitsCheck, subject: Subject) -> Answer:
@@ -77,7 +91,7 @@ def quality_of(check: ToneCheck, subject: Subject) -> ToneQuality:
     if key not in subject.kept:
         subject.kept[key] = tone_quality(
             subject.voltage[subject.first_after(check.after) :],
-            subject.adc.rate,
+            subject.adc.true_rate,
             window=check.window,
             harmonics=check.harmonics,
             full_scale=subject.whole,

@@ -34,7 +34,8 @@ def percent(factor: float) -> str:
     """Return how much more or less a factor is, ``12 %``; of large ones, ``a factor of 3.5``."""
     if not 0.0 < factor < 2.0:
         return f"a factor of {factor:.3g}"
-    return f"{max(100.0 * abs(factor - 1.0), 0.1):.2g} %"
+    share = max(100.0 * abs(factor - 1.0), 0.1)
+    return f"{share:.2g} %" if share < 10.0 else f"{share:.0f} %"
 
 
 def _text(value: float, dimension: Dimension) -> str:

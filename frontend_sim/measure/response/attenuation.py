@@ -7,7 +7,8 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from frontend_sim.measure.response.gain import decibel, magnitude_of
+from frontend_sim.measure.level import decibel
+from frontend_sim.measure.response.gain import magnitude_of
 from frontend_sim.measure.response.step_response import StepResponse
 
 

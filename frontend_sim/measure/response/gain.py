@@ -49,11 +49,6 @@ class Corner:
     side: Side
 
 
-def decibel(ratio: float) -> float:
-    """Return 20 lg of a ratio of magnitudes, minus infinity of zero [dB]."""
-    return 20.0 * math.log10(ratio) if ratio > 0.0 else -math.inf
-
-
 def magnitude_of(response: StepResponse) -> Magnitude:
     """Return the function |H(f)|, infinite at a pole on the imaginary axis."""
 

@@ -9,8 +9,9 @@ import numpy as np
 
 from frontend_sim.analog.block import Real
 from frontend_sim.analog.discretize import Method
+from frontend_sim.measure.level import decibel
 from frontend_sim.measure.response.frequency import frequency_grid
-from frontend_sim.measure.response.gain import Corner, crossings, decibel
+from frontend_sim.measure.response.gain import Corner, crossings
 from frontend_sim.measure.response.grid_model import GridModel
 from frontend_sim.measure.response.step_response import StepResponse
 

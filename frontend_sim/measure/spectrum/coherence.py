@@ -9,7 +9,10 @@ from frontend_sim.errors import MeasureError
 from frontend_sim.measure.arrays import positive
 
 ON_BIN = 1e-9
-"""Distance from a whole number of cycles that is rounding [bins]."""
+"""Distance from a whole number of cycles that leaks nothing to speak of, -175 dB [bins]."""
+
+ROUNDING = 8.0 * math.ulp(1.0)
+"""What rounding of frequency and rate may add to it, as a share of the cycles."""
 
 
 @dataclass(frozen=True)
@@ -49,7 +52,8 @@ class Coherence:
     @property
     def coherent(self) -> bool:
         """Whether the tone lies on its bin to rounding, M and N have no common factor."""
-        return abs(self.deviation) <= ON_BIN * max(self.cycles, 1) and self.common_factor == 1
+        close = abs(self.deviation) <= ON_BIN + ROUNDING * self.cycles
+        return close and self.common_factor == 1
 
 
 def coherence_of(frequency: float, rate: float, count: int) -> Coherence:

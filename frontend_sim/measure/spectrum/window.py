@@ -78,7 +78,7 @@ class Window:
     def half_width(self) -> int:
         """Bins on either side of a tone's bin that its main lobe reaches.
 
-        None for the rectangular window, whose tones must lie on their bins.
+        0 for the rectangular window, whose tones must lie on their bins.
         """
         terms = len(self.coefficients)
         return terms if terms > 1 else 0

@@ -47,9 +47,9 @@ def rank_correlations(
     it sees any response that rises or falls all the way, and none that turns. Its probability is
     that of Student's t = r sqrt((n - 2) / (1 - r^2)) with n - 2 degrees of freedom, two-sided
     (Kendall and Gibbons 1990, *Rank Correlation Methods*, from memory), and no less than 2 / n!,
-    which is that of ranks in one order exactly; then corrected for the
-    number of parameters by Holm's procedure (Holm 1979), so that of many parameters without any
-    influence one is called significant in 5 % of nights, not in most.
+    that of two rows in one order; then corrected for the number of parameters by Holm's procedure
+    (Holm 1979), so that of many parameters without any influence one is called significant in 5 %
+    of nights, not in most.
 
     Parameters
     ----------

@@ -8,11 +8,12 @@ import numpy as np
 from numpy.typing import ArrayLike
 
 from frontend_sim.errors import MeasureError
-from frontend_sim.measure.arrays import Real, positive, samples
+from frontend_sim.measure.arrays import Real, finite, positive, samples
 from frontend_sim.measure.instants import Instants
 from frontend_sim.measure.level import decibel
 from frontend_sim.measure.sine_fit.free_frequency import LEAST_POINTS, gauss_newton
 from frontend_sim.measure.spectrum.coherence import Coherence, coherence_of
+from frontend_sim.measure.spectrum.folding import folded
 from frontend_sim.measure.spectrum.spectrum import amplitude_spectrum
 from frontend_sim.measure.spectrum.window import window_named
 from frontend_sim.measure.tone_quality.lines import Mask, lines_of
@@ -55,7 +56,8 @@ def tone_quality(
     window : name of a window; left out, the sharpest that leaks little enough
     harmonics : order of the highest harmonic, 10 as in IEEE 1241
     full_scale : width of the range, for effective bits and levels [V]
-    frequency : first guess of the tone's frequency; left out, the strongest line [Hz]
+    frequency : first guess of the tone's frequency, which may lie above half the rate: the tone is
+        then that where it folds to; left out, the strongest line [Hz]
 
     Raises
     ------
@@ -67,7 +69,9 @@ def tone_quality(
     if not (isinstance(harmonics, int) and harmonics >= 1):
         raise MeasureError(f"the highest harmonic must be a number from 1 up, not {harmonics!r}")
     whole = None if full_scale is None else positive(full_scale, "the full scale", "V")
-    fit, model = gauss_newton(row, Instants.of(len(row), rate=rate), frequency)
+    instants = Instants.of(len(row), rate=rate)
+    guess = None if frequency is None else folded(finite(frequency, "the frequency"), rate)
+    fit, model = gauss_newton(row, instants, guess)
     coherence = coherence_of(fit.frequency, rate, len(row))
     _refuse_repeats(row, coherence.phases)
     reasons = []

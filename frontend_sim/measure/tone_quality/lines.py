@@ -68,8 +68,9 @@ def lines_of(spectrum: Spectrum, frequency: float, highest: int) -> Lines:
         If the tone cannot be told from the offset or from half the rate, or no noise is left.
     """
     half, last = spectrum.window.half_width, len(spectrum.frequency) - 1
-    tone = _bins(spectrum, frequency)
-    if tone[0] <= half or tone[1] > last - (1 if spectrum.count % 2 == 0 else 0):
+    tone, centre = _bins(spectrum, frequency), round(frequency / spectrum.resolution)
+    # Its mirror images lie around -centre and count - centre; none may reach into its own bins.
+    if centre <= 2 * half or 2 * (centre + half) >= spectrum.count:
         raise MeasureError(
             f"a tone of {frequency:.6g} Hz, {frequency / spectrum.resolution:.4g} bins, lies "
             f"within the main lobe of the {spectrum.window.name} window around zero or half the "

@@ -60,12 +60,12 @@ class ToneQuality:
 
     @property
     def thd(self) -> float:
-        """Root sum square of the harmonics over the tone, below zero [dB].
+        """Root sum square of the harmonics over the tone, below zero; NaN if none is told [dB].
 
         The noise in the harmonics' own bins counts as theirs, as in IEEE 1241.
         """
-        squares = math.fsum((each.amplitude or 0.0) ** 2 for each in self.harmonics)
-        return decibel(math.sqrt(squares) / self.amplitude)
+        told = [each.amplitude for each in self.harmonics if each.amplitude is not None]
+        return decibel(math.hypot(*told) / self.amplitude) if told else math.nan
 
     @property
     def sfdr(self) -> float:

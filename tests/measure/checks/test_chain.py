@@ -139,6 +139,15 @@ def test_alias_attenuation(keys: dict[str, Any]) -> None:
     assert lands == pytest.approx(abs(at - 20e3 * round(at / 20e3)), abs=1e-6)
 
 
+def test_alias_attenuation_counts_from_the_true_rate() -> None:
+    """A clock that is 10 % slow folds from 9 kHz on, not from 10 kHz."""
+    check = {"kind": "alias-attenuation", "at_least": "80 dB"}
+    (found,) = verdicts(check, chain=[butterworth(4)], adc={"rate_error": -0.1})
+    assert found.value == pytest.approx(below(4, 9e3), abs=1e-6)
+    with pytest.raises(ScenarioError, match="below half the conversion rate, 11 kHz"):
+        verdicts({**check, "frequency": "10.5 kHz"}, adc={"rate_error": 0.1})
+
+
 def test_alias_attenuation_looks_up_to_infinity() -> None:
     """A chain that lets the highest frequencies through again is worst there, and says so."""
     shelf = {"kind": "poles-zeros", "poles": [-1e3], "zeros": [-1e5], "gain": 0.01}

@@ -169,6 +169,20 @@ def test_a_cubic_of_known_harmonics_is_measured() -> None:
     assert "harmonic 2 is the strongest" in found.advice
 
 
+def test_harmonics_that_others_hide_are_no_proof() -> None:
+    """At a third of the rate all fold onto the tone or zero: nothing is told, and nothing holds.
+
+    At a quarter the second is left, at half the rate, and the check says which are not.
+    """
+    check = {"kind": "thd", "at_most": "-20 dB"}
+    noisy = {"adc": {"rate": "60 kHz", "input_noise": "2 mV"}, "simulation": {"duration": 0.05}}
+    for part, method in ((3, "cannot be told: harmonics 2, 3, "), (4, "without harmonics 3, 4, 5")):
+        tone = {"kind": "sine", "amplitude": 1.5, "offset": 1.65, "frequency": 60e3 / part}
+        (found,) = verdicts(check, stimulus=tone, chain=[], **noisy)
+        assert found.verdict == ("fails" if part == 3 else "holds")
+        assert method in found.method
+
+
 def test_without_a_tone_it_fails() -> None:
     """A step holds no tone: the check fails with the measure's own reason."""
     (found,) = verdicts({"kind": "sinad", "at_least": "10 dB"})
@@ -198,6 +212,20 @@ def test_mains_behind_a_low_pass() -> None:
     assert found.verdict == "fails"
     more = 20.0 * math.log10(expected / 5e-3)
     assert f"attenuate 50.2 Hz by {more:.1f} dB more" in found.advice
+
+
+@pytest.mark.parametrize("error", [-0.05, 0.05])
+def test_hum_is_found_whatever_the_clock(error: float) -> None:
+    """A clock 5 % off moves hum out of the 1 % that are searched; its true rate brings it back."""
+    check = {"kind": "mains-level", "at_most": "5 mV"}
+    (found,) = verdicts(
+        check,
+        stimulus={"kind": "sine", "amplitude": "20 mV", "frequency": 50.2, "offset": 1.0},
+        adc={"rate": 1e3, "bits": 16, "rate_error": error},
+        simulation={"duration": "2 s"},
+    )
+    assert found.value == pytest.approx(20e-3, rel=1e-3)
+    assert found.verdict == "fails"
 
 
 @pytest.mark.parametrize(

@@ -103,6 +103,15 @@ def test_inl_of_a_bow(line: str) -> None:
     assert half < 2.0 / 181.0
 
 
+@pytest.mark.parametrize(("amplitude", "beyond"), [("1.4 V", 0.0), ("0.625 V", 126.0)])
+def test_codes_that_were_not_reached_are_told(amplitude: str, beyond: float) -> None:
+    """A sine over half of 256 codes sees 129 or 130 of them; the others are counted beside."""
+    sine = {"kind": "sine", "amplitude": amplitude, "offset": "1.25 V", "frequency": "997.137 Hz"}
+    tables: dict[str, Any] = {"stimulus": sine, **WHOLE, "simulation": {"duration": "0.1 s"}}
+    found = beside("inl: codes beyond", {"kind": "inl", "at_most": "1 LSB"}, **tables)
+    assert found == pytest.approx(beyond, abs=1.0)
+
+
 def test_dnl_by_sine_and_by_ramp() -> None:
     """A bow of 2 LSB makes codes at the ends 8/256 LSB too wide or too narrow; both ways tell."""
     adc = {**WHOLE["adc"], "nonlinearity": {"shape": "bow", "peak": "2 LSB"}}

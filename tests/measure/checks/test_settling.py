@@ -7,7 +7,7 @@ from typing import Any
 
 import numpy as np
 import pytest
-from checked import FILTER, STEP, TAU, beside, made, verdicts
+from checked import FILTER, STEP, TABLES, TAU, beside, made, verdicts
 from hypothesis import given, settings
 from hypothesis import strategies as st
 from numpy.typing import NDArray
@@ -17,6 +17,7 @@ from frontend_sim.analog.chain import Chain, chain_of
 from frontend_sim.errors import ScenarioError
 from frontend_sim.measure.checks import evaluate_checks, refuse_impossible
 from frontend_sim.measure.checks.settled import PROVEN, SAMPLED
+from frontend_sim.scenario import Scenario
 from frontend_sim.simulation import Simulation, simulate
 
 Real = NDArray[np.float64]
@@ -48,6 +49,23 @@ def test_first_order_takes_ln_2_to_the_bits_plus_one(bits: int) -> None:
     assert ticks == math.ceil(expected / TICK)
     lost = beside("settling: conversions to discard", timer, **tables)
     assert lost == math.floor(expected * 20e3) + 1  # The event is at a conversion.
+
+
+@pytest.mark.parametrize("order", [1, 3, 5])
+@pytest.mark.parametrize("conversion", ["continuous", "restarted"])
+def test_a_sinc_filter_of_any_order_leaves_the_pin_alone(order: int, conversion: str) -> None:
+    """The pin settles as it does before a sampling converter: RC ln 2^13 after a full-scale step.
+
+    The first code of a filter of fifth order takes five periods of the rate.
+    """
+    adc = {
+        "kind": "oversampling", "bits": 12, "high": 1.0, "modulator_rate": "320 kHz",
+        "order": order, "decimation": 16, "conversion": conversion,
+    }  # fmt: skip
+    scenario = Scenario.model_validate({**TABLES, "adc": adc, "check": [check()]})
+    found = evaluate_checks(simulate(scenario))[0]
+    assert found.value == pytest.approx(TAU * 13.0 * math.log(2.0), rel=1e-9)
+    assert found.method == PROVEN
 
 
 @pytest.mark.parametrize(

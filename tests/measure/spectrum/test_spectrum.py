@@ -9,7 +9,13 @@ from hypothesis import strategies as st
 from sines import sine
 
 from frontend_sim.errors import MeasureError
-from frontend_sim.measure.spectrum import WINDOWS, amplitude_spectrum, coherent_tone, folded
+from frontend_sim.measure.spectrum import (
+    WINDOWS,
+    amplitude_spectrum,
+    coherence_of,
+    coherent_tone,
+    folded,
+)
 
 
 @pytest.mark.parametrize("name", WINDOWS)
@@ -77,6 +83,15 @@ def test_coherent_sampling():
     assert (tone.cycles, tone.count, tone.common_factor) == (2503, 8192, 1)
     assert tone.frequency == pytest.approx(25.0544434e6, abs=0.05)
     assert tone.coherent
+    assert coherence_of(tone.frequency, 82e6, 8192).coherent
+
+
+def test_a_tone_that_leaks_is_not_coherent():
+    """A hundred-thousandth of a bin off, -95 dB leak, however many cycles the record holds."""
+    beside = coherence_of(999_983.0 + 1e-5, 2.0**22, 2**22)
+    assert beside.common_factor == 1
+    assert 10.0 * np.log10(beside.leakage) == pytest.approx(-94.8, abs=0.1)
+    assert not beside.coherent
 
 
 @settings(max_examples=200, deadline=None)
@@ -93,8 +108,6 @@ def test_the_coherent_tone_is_the_nearest(count, share):
 
 def test_leakage_of_a_tone_beside_its_bin():
     """1 - sinc²(d) of the power leaves the bin: measured on a spectrum without a window."""
-    from frontend_sim.measure.spectrum import coherence_of
-
     for deviation in (1e-6, 1e-3, 0.2):
         spectrum = amplitude_spectrum(sine(1000 + deviation, 8192), 8192.0, "rectangular")
         left = 0.5 - spectrum.mean_square[1000]

@@ -163,6 +163,33 @@ def test_a_tone_between_bins_needs_a_quiet_window():
         tone_quality(clean + 1e-3 * noise, RATE, window="rectangular")
 
 
+@pytest.mark.parametrize("count", [4095, 4096])
+def test_a_tone_beside_half_the_rate_is_refused(count):
+    """Main lobe and mirror image overlap there, by an odd count of points as by an even one.
+
+    An amplitude of 1.05 of a tone of 1 would be the least that comes of it.
+    """
+    turns = 0.4996 * np.arange(count)
+    noisy = np.sin(2.0 * np.pi * turns + 0.3)
+    noisy += 1e-3 * np.random.default_rng(1).standard_normal(count)
+    with pytest.raises(MeasureError, match="no window tells the tone") as caught:
+        tone_quality(noisy, 1.0)
+    assert "blackman-harris: a tone of 0.4996 Hz" in str(caught.value)
+    with pytest.raises(MeasureError, match="main lobe of the blackman-harris window"):
+        tone_quality(noisy, 1.0, window="blackman-harris")
+
+
+@pytest.mark.parametrize("count", [4095, 4096])
+def test_a_tone_above_half_the_rate_is_measured_where_it_folds_to(count):
+    """The guess may be what the generator was set to: 1313.7 Hz at 1 kHz shows up at 313.7 Hz."""
+    tone = sine(1.3137 * count, count)
+    tone += 1e-3 * np.random.default_rng(2).standard_normal(count)
+    found = tone_quality(tone, 1e3, frequency=1313.7)
+    assert found.frequency == pytest.approx(313.7, abs=1e-3)
+    assert found.amplitude == pytest.approx(1.0, abs=1e-3)
+    assert found.snr == pytest.approx(20.0 * math.log10(1e3 / math.sqrt(2.0)), abs=0.3)
+
+
 def test_no_window_is_quiet_enough():
     """Without a coherent window the measure refuses, lists what leaks, and names the remedies."""
     with pytest.raises(MeasureError) as caught:
