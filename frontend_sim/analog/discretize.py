@@ -5,6 +5,7 @@ from __future__ import annotations
 import math
 from collections.abc import Callable
 from dataclasses import dataclass
+from functools import lru_cache
 from typing import Literal
 
 import numpy as np
@@ -14,6 +15,9 @@ from frontend_sim.analog.chain import Chain
 from frontend_sim.analog.exponential import augmented, expm1
 
 Method = Literal["zoh", "foh", "bilinear"]
+
+KEPT = 128
+"""Models that are kept: the pin, waveforms and checks of a run step by the same one."""
 
 
 @dataclass(frozen=True, eq=False)
@@ -35,6 +39,7 @@ class DiscreteModel:
     stop: Real
 
 
+@lru_cache(maxsize=KEPT)
 def zoh(chain: Chain, step: float, prewarp: float | None = None) -> DiscreteModel:
     """Return the step-invariant model: the input is held over each interval.
 
@@ -45,6 +50,7 @@ def zoh(chain: Chain, step: float, prewarp: float | None = None) -> DiscreteMode
     return DiscreteModel(e[:n, :n], e[:n, n], np.zeros(n))
 
 
+@lru_cache(maxsize=KEPT)
 def foh(chain: Chain, step: float, prewarp: float | None = None) -> DiscreteModel:
     """Return the ramp-invariant model: the input goes in a line over each interval.
 
@@ -56,6 +62,7 @@ def foh(chain: Chain, step: float, prewarp: float | None = None) -> DiscreteMode
     return DiscreteModel(e[:n, :n], e[:n, n] - e[:n, n + 1], e[:n, n + 1])
 
 
+@lru_cache(maxsize=KEPT)
 def bilinear(chain: Chain, step: float, prewarp: float | None = None) -> DiscreteModel:
     """Return the trapezoidal model, s = (1/k) (z - 1) / (z + 1), k = h/2.
 

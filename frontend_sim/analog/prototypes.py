@@ -5,6 +5,7 @@ from __future__ import annotations
 import cmath
 import math
 from collections.abc import Callable
+from functools import lru_cache
 from typing import Literal
 
 from frontend_sim.analog.block import Block
@@ -12,7 +13,10 @@ from frontend_sim.analog.factors import cascade
 
 Response = Literal["low-pass", "high-pass", "band-pass", "band-stop"]
 
-Prototype = tuple[list[complex], float]
+Poles = tuple[complex, ...]
+"""Poles of a filter [rad/s]."""
+
+Prototype = tuple[Poles, float]
 """Poles of an all-pole low pass with its corner at 1 rad/s, and its gain at zero frequency."""
 
 
@@ -21,7 +25,7 @@ def butterworth(order: int) -> Prototype:
 
     Source: S. Butterworth 1930, "On the theory of filter amplifiers"; the -3 dB corner is at 1.
     """
-    return [_on_unit_circle(2 * k + order + 1, order) for k in range(order)], 1.0
+    return tuple(_on_unit_circle(2 * k + order + 1, order) for k in range(order)), 1.0
 
 
 def _on_unit_circle(numerator: int, order: int) -> complex:
@@ -50,9 +54,10 @@ def chebyshev(order: int, ripple: float) -> Prototype:
         imaginary = 0.0 if 2 * k + 1 == order else math.cosh(mu) * math.cos(theta)
         poles.append(complex(-math.sinh(mu) * math.sin(theta), imaginary))
     gain = 1.0 if order % 2 else 10.0 ** (-ripple / 20.0)
-    return poles, gain
+    return tuple(poles), gain
 
 
+@lru_cache(maxsize=16)
 def bessel(order: int) -> Prototype:
     """Return the poles of the low pass with the flattest group delay, -3 dB corner at 1.
 
@@ -62,9 +67,11 @@ def bessel(order: int) -> Prototype:
     from scipy.signal import besselap
 
     _, poles, _ = besselap(order, norm="mag")
-    return [complex(pole.real, 0.0 if abs(pole.imag) < 1e-12 else pole.imag) for pole in poles], 1.0
+    found = (complex(pole.real, 0.0 if abs(pole.imag) < 1e-12 else pole.imag) for pole in poles)
+    return tuple(found), 1.0
 
 
+@lru_cache(maxsize=64)  # the check of a scenario and its run ask for the same
 def filter_blocks(
     prototype: Prototype, response: Response, lower: float, upper: float
 ) -> tuple[Block, ...]:
@@ -86,29 +93,27 @@ def filter_blocks(
     return _TRANSFORMS[response](poles, gain, centre, width)
 
 
-def _low_pass(poles: list[complex], gain: float, centre: float, _: float) -> tuple[Block, ...]:
+def _low_pass(poles: Poles, gain: float, centre: float, _: float) -> tuple[Block, ...]:
     moved = [centre * pole for pole in poles]
     return cascade([], moved, gain * math.prod(abs(pole) for pole in moved))
 
 
-def _high_pass(poles: list[complex], gain: float, centre: float, _: float) -> tuple[Block, ...]:
+def _high_pass(poles: Poles, gain: float, centre: float, _: float) -> tuple[Block, ...]:
     return cascade([0.0] * len(poles), [_real_if_real(centre / pole) for pole in poles], gain)
 
 
-def _band_pass(poles: list[complex], gain: float, centre: float, width: float) -> tuple[Block, ...]:
+def _band_pass(poles: Poles, gain: float, centre: float, width: float) -> tuple[Block, ...]:
     moved = [root for pole in poles for root in _band_roots(pole * width, centre)]
     factor = gain * math.prod(width * abs(pole) for pole in poles)
     return cascade([0.0] * len(poles), moved, factor)
 
 
-def _band_stop(poles: list[complex], gain: float, centre: float, width: float) -> tuple[Block, ...]:
+def _band_stop(poles: Poles, gain: float, centre: float, width: float) -> tuple[Block, ...]:
     moved = [root for pole in poles for root in _band_roots(width / pole, centre)]
     return cascade([1j * centre, -1j * centre] * len(poles), moved, gain)
 
 
-_TRANSFORMS: dict[
-    Response, Callable[[list[complex], float, float, float], tuple[Block, ...]]
-] = {
+_TRANSFORMS: dict[Response, Callable[[Poles, float, float, float], tuple[Block, ...]]] = {
     "low-pass": _low_pass,
     "high-pass": _high_pass,
     "band-pass": _band_pass,

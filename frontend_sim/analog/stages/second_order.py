@@ -43,6 +43,6 @@ class SecondOrder(AnyUnitStage):
         }[self.response]
         n2, n1, n0 = (self.gain * value for value in numerator)
         if self.quality_factor <= 0.5 and self.response == "low-pass":
-            larger = 0.5 * rate + math.sqrt(0.25 * rate * rate - w0 * w0 + 0.0)
+            larger = 0.5 * rate + math.sqrt(0.25 * rate * rate - w0 * w0)
             return cascade([], [-w0 * w0 / larger, -larger], n0)
         return (second_order(w0, rate, (n2, n1, n0)),)

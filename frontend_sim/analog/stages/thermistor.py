@@ -117,7 +117,9 @@ class Thermistor(TemperatureSensor):
         """Return the thermal noise of both resistors, which divide each other's."""
         at = np.array(self.operating_temperature)
         share = float(self._share(at))
-        own = thermal_density(float(self.resistance(at)), self.operating_temperature)
+        # Of a resistance without bound, infinite noise would meet a share of zero.
+        resistance = float(self.resistance(at)) if share < 1.0 else 0.0
+        own = thermal_density(resistance, self.operating_temperature)
         other = thermal_density(self.series_resistance, temperature)
         return (
             at_output("thermal noise of the thermistor", own, 1.0 - share),

@@ -26,6 +26,7 @@ class Array:
     read : returns the part of the array that an index selects
     unit : the unit that the file states, or ""
     refusal : why the format itself makes it no array of numbers, or ""
+    told : what the log of the run should say of the array, or ""
     """
 
     name: str
@@ -34,6 +35,7 @@ class Array:
     read: Callable[[Any], NDArray[Any]]
     unit: str = ""
     refusal: str = ""
+    told: str = ""
 
     @property
     def _fields(self) -> tuple[str, ...]:
@@ -68,10 +70,11 @@ class Array:
         return (self.name,) if others == 1 else ("",) * others
 
     def notes(self) -> tuple[str, ...]:
-        """Tell when time runs along the second axis."""
+        """Tell what the format has to tell, and when time runs along the second axis."""
+        told = (self.told,) if self.told else ()
         if self._along == 0 or self.shape[0] == 1:
-            return ()
-        return (f"array of shape {self.shape}: time runs along the longer, second axis",)
+            return told
+        return (*told, f"array of shape {self.shape}: time runs along the longer, second axis")
 
     def series(self, file: Path, column: int) -> Series:
         """Return one column."""

@@ -13,6 +13,9 @@ from frontend_sim.stimulus.recording.arrays import Array, source_of
 from frontend_sim.stimulus.recording.border import border
 from frontend_sim.stimulus.recording.series import Source, Wanted
 
+PACKING = ("scale_factor", "add_offset")
+"""Attributes of numbers that were packed into fewer bits; they are told of, not applied."""
+
 MOST = 10_000
 """Datasets that are looked at when none is named."""
 
@@ -56,8 +59,19 @@ def _arrays(file: Path, opened: Any) -> dict[str, Array]:
 
 def _array(file: Path, name: str, dataset: Any) -> Array:
     unit = dataset.attrs.get("units", "")
+    if isinstance(unit, np.ndarray) and unit.size == 1:  # some programs write every attribute so
+        unit = unit.item()
     unit = unit.decode("utf-8", "replace") if isinstance(unit, bytes) else str(unit)
-    return Array(name.strip("/"), dataset.shape, dataset.dtype, _reader(file, name), unit)
+    packed = [key for key in PACKING if key in dataset.attrs]
+    told = f"{name}: {' and '.join(packed)} of the file not applied; give them by scale and offset"
+    return Array(
+        name.strip("/"),
+        dataset.shape,
+        dataset.dtype,
+        _reader(file, name),
+        unit,
+        told=told if packed else "",
+    )
 
 
 def _reader(file: Path, name: str) -> Any:

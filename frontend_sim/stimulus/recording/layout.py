@@ -80,6 +80,7 @@ def find_layout(file: Path) -> Layout:
             f"{file}: has no row of numbers in its first {len(lines)} lines"
             + ("; is it more than a header?" if len(lines) < LINES else "")
         )
+    first = _with_missing_points(lines, kinds, first)
     if decimal == "." and delimiter != "," and _only_commas(text):
         decimal = ","
     columns = cells
@@ -151,6 +152,20 @@ def _first_row(kinds: list[list[Kind]]) -> tuple[int | None, int]:
         numeric = values[-1]
     clean = ~np.any(table[:, numeric], axis=1)
     return (alike[int(np.argmax(clean))] if clean.any() else None), cells
+
+
+def _with_missing_points(lines: list[str], kinds: list[list[Kind]], first: int) -> int:
+    """Return the first row, the rows right above that hold nothing but missing points counted in.
+
+    Each of them is a point in time where the file has a rate. Dashes and empty cells alone may be a
+    rule under the header, and beside dates a row without one is none of the table.
+    """
+    if not {"date", "clock"}.isdisjoint(kinds[first]):
+        return first
+    missing: list[Kind] = ["missing"] * len(kinds[first])
+    while first and kinds[first - 1] == missing and re.search(r"[^\W_]", lines[first - 1]):
+        first -= 1
+    return first
 
 
 def _left_out(kinds: list[list[Kind]], cells: int, header: int | None) -> tuple[str, ...]:

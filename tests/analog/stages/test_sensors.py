@@ -363,3 +363,14 @@ def test_what_makes_no_sensor_is_refused(values: dict[str, Any], message: str) -
     """Each contradiction is told in words of its own."""
     with pytest.raises(ScenarioError, match=message):
         stage(**values)
+
+
+def test_a_thermistor_without_bound_leaves_the_noise_of_the_other_resistor() -> None:
+    """Far in the cold its resistance leaves the range of numbers; sqrt(4 k T R_s) is then left."""
+    cold = stage(
+        kind="thermistor", nominal_resistance=1e4, beta=9e4, operating_temperature=60.0,
+        series_resistance=2e4, excitation_voltage=1,
+    )  # fmt: skip
+    model = chain_of([cold, stage(kind="buffer", gain_bandwidth=1e6)], 300.0).noise_model(1.0)
+    expected = np.sqrt(4.0 * BOLTZMANN * 300.0 * 2e4 / 2.0) * 2.0 * np.pi * 1e6
+    assert np.sqrt(np.sum(model.b**2)) == pytest.approx(expected, rel=1e-12)

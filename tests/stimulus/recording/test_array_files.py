@@ -103,6 +103,26 @@ def test_npz_of_one_array_and_its_time(tmp_path: Path) -> None:
     assert np.array_equal(points(recording(tmp_path / "a.npz", time="t")), X)
 
 
+@pytest.mark.parametrize("unit", [np.array(["mV"], "S2"), np.array(["mV"], object)])
+def test_an_hdf5_unit_may_be_an_array_of_one(tmp_path: Path, unit: Any) -> None:
+    """A unit written as an array of one word is the word."""
+    with h5py.File(tmp_path / "a.h5", "w") as out:
+        out["x"] = X * 1e3
+        out["x"].attrs["units"] = unit
+    assert np.array_equal(points(recording(tmp_path / "a.h5", rate=1)), X)
+
+
+def test_packed_hdf5_numbers_are_told_of(tmp_path: Path) -> None:
+    """Numbers with a scale of their own in the file are played as they are, and the log says so."""
+    with h5py.File(tmp_path / "a.h5", "w") as out:
+        out["plain"], out["packed"] = X, X
+        out["packed"].attrs["scale_factor"] = 0.5
+    packed, plain = (recording(tmp_path / "a.h5", dataset=d, rate=1) for d in ("packed", "plain"))
+    assert np.array_equal(points(packed), X)
+    assert any("scale_factor" in note for note in packed.notes())
+    assert not any("scale_factor" in note for note in plain.notes())
+
+
 def test_hdf5(tmp_path: Path) -> None:
     """Datasets by path, chunked and compressed, of one or two dimensions, with their units."""
     with h5py.File(tmp_path / "a.h5", "w") as out:

@@ -146,3 +146,17 @@ def test_holes_are_counted_the_same_in_any_blocks(numbers: list[float], block: i
     assert holes.first == tuple(np.flatnonzero(np.isnan(array))[:5])
     assert holes.longest == longest
     assert not longest or holes.longest_at == text.index("x" * longest)
+
+
+@pytest.mark.parametrize("header", ["", "x,y\n", "x,y\n-,-\n", "x,y\n,\n"])
+def test_missing_points_at_the_start_keep_their_time(tmp_path: Path, header: str) -> None:
+    """Rows of missing points alone are points of the table; dashes under the header are none."""
+    file = write(tmp_path / "log.csv", f"{header}NaN,NaN\nn/a,\n2,3\n4,5\n6,7\n")
+    stimulus = recording(file, rate=1, column="x" if header.count("\n") == 1 else 1, missing="hold")
+    assert np.array_equal(points(stimulus), [2.0, 2.0, 2.0, 4.0, 6.0])
+
+
+def test_a_row_without_a_date_is_no_row_of_dates(tmp_path: Path) -> None:
+    """Above the first date a row without one is left out, as before the table began."""
+    file = write(tmp_path / "log.csv", "NaN,NaN\n12:00:00,2\n12:00:01,3\n12:00:02,4\n")
+    assert np.array_equal(points(recording(file, time=1, column=2)), [2.0, 3.0, 4.0])
