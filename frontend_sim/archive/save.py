@@ -11,6 +11,7 @@ from typing import Any, Protocol
 from frontend_sim.archive.grid import grid_results
 from frontend_sim.archive.provenance import document, refuse_changed, source_files
 from frontend_sim.archive.reading_back import read_back
+from frontend_sim.archive.room import check_room
 from frontend_sim.archive.save_scan import FinishedScan, ScanSource, record_scan
 from frontend_sim.archive.target import new_file, record_target
 from frontend_sim.archive.writer import Writer
@@ -54,7 +55,7 @@ def record_run(
     """Run a simulation and store it as it goes on; memory is bounded by its block.
 
     The checks of the scenario are evaluated, and their verdicts are stored. They alone need more
-    memory: up to 25 bytes for each conversion, see ``measure.checks.Keeper``.
+    memory: up to 33 bytes for each conversion, see ``measure.checks.Keeper``.
 
     The record is written to a temporary name in the same directory, read back whole, and renamed:
     it exists complete or not at all.
@@ -77,7 +78,7 @@ def record_run(
     Raises
     ------
     OutputError
-        If the record cannot be written there.
+        If the record cannot be written there, or the disk is too small for it.
     InputError
         If the scenario cannot be run, no run of it could answer one of its checks, or a file of
         the stimulus changes meanwhile.
@@ -90,6 +91,8 @@ def record_run(
     prepared = simulation if isinstance(simulation, Simulation) else None
     target = record_target(path, overwrite, [*scenario.files(), *inputs])
     refuse_impossible(scenario, prepared=prepared)
+    if prepared is not None:
+        check_room(prepared, target)
     keeper, files = Keeper(scenario), source_files(scenario)
     resolved = document(scenario, files, target.parent)
     with new_file(target, path, overwrite) as temporary:

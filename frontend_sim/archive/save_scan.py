@@ -11,6 +11,7 @@ from typing import Protocol
 from frontend_sim.archive.grid import grid_results
 from frontend_sim.archive.provenance import document, refuse_changed, source_files
 from frontend_sim.archive.reading_back import read_back
+from frontend_sim.archive.room import check_room
 from frontend_sim.archive.target import new_file, record_target
 from frontend_sim.archive.writer import ScanWriter
 from frontend_sim.measure.checks import Keeper, evaluated
@@ -67,6 +68,8 @@ def record_scan(
     prepared = simulation if isinstance(simulation, ScanSimulation) else None
     target = record_target(path, overwrite, [*scenario.files(), *inputs])
     refuse_impossible_checks(scenario, prepared=prepared)
+    if prepared is not None:
+        check_room(prepared, target)
     report = scan_report(scenario, prepared)
     keepers = {name: Keeper(channel) for name, channel in simulation.channels.items()}
     files = source_files(scenario)

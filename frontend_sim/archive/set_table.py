@@ -55,13 +55,16 @@ class CheckColumn:
     margin: Real
     verdict: Text
 
+    @cached_property
+    def bounds(self) -> Text:
+        """On which side the limit of each run stands: of two limits each has its nearer one."""
+        beyond = self.value - self.limit
+        high, low = abs(self.margin + beyond), abs(self.margin - beyond)
+        return np.select([high < low, low < high], ["at most", "at least"], self.bound)
+
     def bound_in(self, run: int) -> str:
-        """Return on which side the limit of a run stands: of two limits each has its nearer one."""
-        beyond = self.value[run] - self.limit[run]
-        high, low = abs(self.margin[run] + beyond), abs(self.margin[run] - beyond)
-        if high < low:
-            return "at most"
-        return "at least" if low < high else self.bound
+        """Return on which side the limit of a run stands, see ``bounds``."""
+        return str(self.bounds[run])
 
 
 @dataclass(frozen=True, eq=False)

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import os
+import select
 import signal
 import sys
 import threading
@@ -68,6 +69,7 @@ def command() -> None:
 
 def main(arguments: Sequence[str] | None = None) -> int:
     """Run the command and return its exit status; a user never meets a traceback."""
+    _silence_plots()
     try:
         with _ended_like_ctrl_c():
             status = command.main(arguments, prog_name="frontend-sim", standalone_mode=False)
@@ -81,9 +83,12 @@ def main(arguments: Sequence[str] | None = None) -> int:
             _leave(INTERRUPTED)
         return INTERRUPTED
     except (BrokenPipeError, SystemExit):  # click turns the one into the other
-        # The reader of a pipe went away, as `head` does; nothing is wrong and nothing is left.
+        # Where the reader went away, as `head` does, nothing is wrong and nothing is left.
+        closed = _output_is_closed()
         _forget_output()
-        return HOLDS
+        if closed:
+            return HOLDS
+        return _tell("error: a process or a reader of messages went away; try again", WRONG_INPUT)
     except FrontendSimError as error:
         return _tell(f"error: {error}", WRONG_INPUT)
     except MemoryError:
@@ -98,8 +103,16 @@ def main(arguments: Sequence[str] | None = None) -> int:
 
 
 def _tell(text: str, status: int) -> int:
-    click.echo(text, err=True)
+    with suppress(OSError):  # where nobody reads messages either, the status is left
+        click.echo(text, err=True)
     return status
+
+
+def _silence_plots() -> None:
+    """Keep what Matplotlib logs of its own folders, where it may not write, off the terminal."""
+    import logging
+
+    logging.getLogger("matplotlib").setLevel(logging.ERROR)
 
 
 def _leave(status: int) -> NoReturn:
@@ -116,6 +129,18 @@ def _leave(status: int) -> NoReturn:
 def _flush() -> None:
     if sys.stdout is not None:
         sys.stdout.flush()
+
+
+def _output_is_closed() -> bool:
+    """Return whether standard output is a pipe that nobody reads any more."""
+    if not hasattr(select, "poll"):
+        return True  # the system cannot tell, and no other pipe is as likely
+    poll = select.poll()
+    try:
+        poll.register(sys.stdout.fileno(), select.POLLOUT)
+    except (AttributeError, OSError, ValueError):
+        return False  # there is no file below it
+    return any(event & (select.POLLERR | select.POLLHUP) for _, event in poll.poll(0))
 
 
 def _forget_output() -> None:

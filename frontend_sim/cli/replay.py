@@ -159,7 +159,8 @@ def _tell(done: Replayed, as_json: bool) -> None:
 
 
 def _tell_preview(found: Preview, as_json: bool) -> None:
-    from frontend_sim.replay.estimate import told_bytes, told_seconds
+    from frontend_sim.archive.room import told_bytes
+    from frontend_sim.replay.estimate import told_seconds
 
     if as_json:
         told = {

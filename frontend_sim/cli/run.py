@@ -32,6 +32,7 @@ def command(
     Exit status: 0 all checks hold, 1 a check fails, 2 the input is wrong.
     """
     from frontend_sim.archive import open_record, record_run
+    from frontend_sim.archive.room import check_room
     from frontend_sim.measure.checks.impossible import refuse_impossible_checks
     from frontend_sim.present import check_channels_drawn, check_plot_target
     from frontend_sim.scenario import ScanScenario, load_scenario
@@ -44,9 +45,11 @@ def command(
         check_plot_target(plot, overwrite)
         if isinstance(values, ScanScenario):
             check_channels_drawn(len(values.channel), plot)
+    simulation = ScanSimulation(values) if isinstance(values, ScanScenario) else Simulation(values)
+    print_notes(check_room(simulation, target))
     with progress_bar(scenario.name) as advance:
         path = record_run(
-            ScanSimulation(values) if isinstance(values, ScanScenario) else Simulation(values),
+            simulation,
             target,
             overwrite=overwrite,
             progress=advance,

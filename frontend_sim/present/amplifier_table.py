@@ -6,8 +6,9 @@ import math
 from collections.abc import Sequence
 from typing import TYPE_CHECKING
 
+from frontend_sim.measure.level import decibel
 from frontend_sim.measure.response.amplifiers import AmplifierResponse, StopBandRise
-from frontend_sim.measure.response.gain import Corner, decibel
+from frontend_sim.measure.response.gain import Corner
 from frontend_sim.measure.response.inspection import Inspection
 from frontend_sim.measure.response.large_signal import LargeSignal
 from frontend_sim.measure.response.pin_level import PinLevel

@@ -5,8 +5,8 @@ from __future__ import annotations
 import math
 from typing import TYPE_CHECKING
 
+from frontend_sim.measure.level import decibel
 from frontend_sim.measure.response.attenuation import Attenuation
-from frontend_sim.measure.response.gain import decibel
 from frontend_sim.measure.response.inspection import Inspection
 from frontend_sim.measure.response.model_distance import ModelDistance, ResponseError
 from frontend_sim.present.acquisition_rows import acquisition_rows

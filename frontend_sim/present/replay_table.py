@@ -6,6 +6,7 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
+from frontend_sim.present.numbers import share_of
 from frontend_sim.present.result_table import SIGNS, STYLES, quantity
 
 if TYPE_CHECKING:
@@ -33,15 +34,16 @@ def replay_tables(table: SetTable) -> tuple[RenderableType, ...]:
     verdicts = table.verdicts
     counts = {name: int(np.sum(verdicts == name)) for name in ("fails", "error", "holds", "none")}
     told = {
-        "fails": "a check fails in {} of {} runs",
-        "error": "no result from {} of {} runs",
-        "holds": "all checks hold in {} of {} runs",
-        "none": "nothing is checked in {} of {} runs",
+        "fails": "a check fails in",
+        "error": "a result is missing in",
+        "holds": "all checks hold in",
+        "none": "nothing is checked in",
     }
     for name, text in told.items():
         if counts[name]:
             style = STYLES.get("fails" if name == "error" else name, "")
-            shown.append(Text(text.format(f"{counts[name]:,}", f"{len(verdicts):,}"), style=style))
+            share = share_of(counts[name], len(verdicts), "run")
+            shown.append(Text(f"{text} {share}", style=style))
     wrong = np.flatnonzero(verdicts == "error")
     errors = table.texts("error")
     shown.extend(Text(f"{table.names[row]}: {errors[row]}") for row in wrong[:LISTED])

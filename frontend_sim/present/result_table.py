@@ -18,6 +18,9 @@ if TYPE_CHECKING:
 PREFIXED = ("s", "V", "Hz", "V/s", "ohm", "F", "rad/s")
 """Units that are written with a prefix."""
 
+WHOLE = ("conversions", "ticks", "counts", "codes")
+"""Units of what is counted."""
+
 SIGNS = {"at most": "≤ ", "at least": "≥ "}
 
 STYLES = {"fails": "bold red", "holds": "green"}
@@ -112,6 +115,6 @@ def quantity(value: float | None, unit: str) -> str:
         return ""
     if unit in PREFIXED:
         return engineering(value, unit, 4)
-    if unit in ("conversions", "ticks") and math.isfinite(value):
+    if unit in WHOLE and float(value).is_integer():
         return f"{value:.0f} {unit}"
     return plain(value) if unit in ("", "1") else f"{plain(value)} {unit}"

@@ -40,12 +40,13 @@ def plot_run(run: RunLike, path: str | os.PathLike[str], overwrite: bool = False
     Pin voltage and the codes read back, with the limits of the ADC's range and marks where it was
     exceeded; the pin between conversions where its waveform is kept, and where it is not, a few
     conversions are dots that no line joins; the difference of the two in LSB, beside that of what
-    the sampling capacitor held, where there is one; the waveforms, where some are kept; and for each settling check the distance from the end in LSB on a logarithmic
-    axis, with the band, the last exit and the time that is granted; where lines or bands fold, the
-    spectrum of the codes with each named by its source; for each total-error check its parts as
-    bars; and, of a record, the margins of all checks, also as bars. A long run is reduced to the
-    lowest and the highest value of each column of pixels, so no peak is lost. Of a record that keeps
-    a part of its run, lines break at each gap, and panels that need all of it are left out.
+    the sampling capacitor held, where there is one; the waveforms, where some are kept; and for
+    each settling check the distance from the end in LSB on a logarithmic axis, with the band, the
+    last exit and the time that is granted; where lines or bands fold, the spectrum of the codes
+    with each named by its source; for each total-error check its parts as bars; and, of a record,
+    the margins of all checks, also as bars. A long run is reduced to the lowest and the highest
+    value of each column of pixels, so no peak is lost. Of a record that keeps a part of its run,
+    lines break at each gap, and panels that need all of it are left out.
 
     Parameters
     ----------

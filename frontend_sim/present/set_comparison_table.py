@@ -16,7 +16,6 @@ from frontend_sim.present.comparison_table import (
     finite,
     verdict_line,
 )
-from frontend_sim.present.numbers import plain
 from frontend_sim.present.result_table import quantity
 
 if TYPE_CHECKING:
@@ -72,11 +71,7 @@ def _mean(row: ColumnDifference) -> str:
 
 
 def _told(value: float, unit: str) -> str:
-    if not math.isfinite(value):
-        return ""
-    # A mean over runs of what is counted is no whole number.
-    counted = unit in ("conversions", "ticks") and not value.is_integer()
-    return f"{plain(value)} {unit}" if counted else quantity(value, unit)
+    return quantity(value, unit) if math.isfinite(value) else ""
 
 
 def set_comparison_summary(comparison: SetComparison) -> dict[str, Any]:

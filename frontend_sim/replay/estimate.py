@@ -2,10 +2,10 @@
 
 from __future__ import annotations
 
-import shutil
 from dataclasses import dataclass
 from pathlib import Path
 
+from frontend_sim.archive.room import free_bytes, told_bytes
 from frontend_sim.errors import OutputError
 
 LINE = 1 << 10
@@ -36,14 +36,6 @@ class Need:
         return self.seconds * runs / workers
 
 
-def free_bytes(directory: Path) -> int:
-    """Return how many bytes the disk of a directory, which may not be there yet, has left."""
-    place = directory.absolute()
-    while not place.exists():
-        place = place.parent
-    return shutil.disk_usage(place).free
-
-
 def refuse_small_disk(directory: Path, need: Need, runs: int) -> None:
     """Raise OutputError if some more runs will not fit onto the disk."""
     wanted, free = need.disk(runs) + SPARE, free_bytes(directory)
@@ -53,15 +45,6 @@ def refuse_small_disk(directory: Path, need: Need, runs: int) -> None:
             f"the disk has {told_bytes(free)} left; free some space, or keep less: keep = "
             '"around-failures" or "nothing"'
         )
-
-
-def told_bytes(size: float) -> str:
-    """Return a size for people, ``1.2 GB``."""
-    for unit in ("B", "kB", "MB", "GB"):
-        if size < 1000.0:
-            return f"{size:.3g} {unit}"
-        size /= 1000.0
-    return f"{size:.3g} TB"
 
 
 def told_seconds(seconds: float) -> str:

@@ -13,6 +13,10 @@ import numpy as np
 from frontend_sim.measure.result import Result
 from frontend_sim.simulation import RunBlock
 
+NOT_COUNTED = ("start", "time", "voltage", "waveform_time", "waveform")
+"""Fields of a block that its digest need not see: the values of waveforms are counted by name, and
+the others follow from the scenario and the codes."""
+
 RunVerdict = Literal["holds", "fails", "none", "error"]
 
 
@@ -86,11 +90,13 @@ class Outcome:
 
 
 class Fingerprint:
-    """The digest of a run, taken block by block; blocks may be cut anywhere."""
+    """The digest of a run, taken block by block; blocks may be cut anywhere.
 
-    _FIELDS = tuple(
-        each.name for each in fields(RunBlock) if each.name not in ("start", "waveform")
-    )
+    What follows from the scenario alone, as instants do, or from it and the codes, as what is read
+    back from them, is not counted: the digest of the scenario stands beside this one.
+    """
+
+    _FIELDS = tuple(each.name for each in fields(RunBlock) if each.name not in NOT_COUNTED)
 
     def __init__(self) -> None:
         """Begin with nothing."""

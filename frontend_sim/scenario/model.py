@@ -115,7 +115,7 @@ class Scenario(ScenarioFile):
 
     @model_validator(mode="after")
     def _checks_fit(self) -> Self:
-        found = list(check_faults(self.check, self.points(), self.units(), self.adc.rate))
+        found = list(check_faults(self.check, self.points(), self.units(), self.adc.true_rate))
         for position, check in enumerate(self.check):
             if check.channel is not None:
                 text = "has a meaning in a scan of several [[channel]] only; take it out"

@@ -43,9 +43,11 @@ def _unknown_key(fault: Fault) -> str:
         text += f" here; it belongs {', '.join(places[:3])}{more}"
     if likely is not None:
         return f"{text}; did you mean {likely!r}?"
-    if places or fault.spot.table is None:
+    known = sorted(keys(fault.spot.table)) if fault.spot.table else []
+    if not known or (places and "kind" not in known):
         return text
-    return f"{text}; known are {', '.join(sorted(keys(fault.spot.table)))}"
+    here = "known here are" if places else "known are"
+    return f"{text}; {here} {', '.join(known)}"
 
 
 _OF_CHANNEL = {"stimulus": "[channel.stimulus]", "chain": "[[channel.chain]]"}

@@ -49,6 +49,7 @@ class CheckSummary:
         there is but one
     worst : number of the run with the smallest margin
     percentiles : of the values, at ``SHARES``; with intervals where runs are draws
+    side : of those limits: where the check has its limit, ``both`` where runs met two
     limits : that hold 95 % of all that could be drawn, with 95 % confidence; None where there are
         too few draws
     draws_needed : for such limits
@@ -63,6 +64,7 @@ class CheckSummary:
     group: str
     worst: int
     percentiles: tuple[Percentile, ...]
+    side: Side
     limits: ToleranceLimits | None
     draws_needed: int
     causes: tuple[RankCorrelation, ...]
@@ -105,6 +107,7 @@ def summarize_check(
     margins = np.where(there, column.margin, np.inf)
     margins[there & np.isnan(column.margin)] = np.nan
     mine = there & population.drawn if sampled else there
+    side = _side(column)
     return CheckSummary(
         column,
         int(np.count_nonzero(there)),
@@ -114,23 +117,26 @@ def summarize_check(
         worst_run(margins),
         # Percentiles of draws where there are some: a grid has no distribution.
         percentiles_of(column.value[drawn if sampled else there]),
-        _limits(column, column.value[drawn]),
-        draws_needed(COVERAGE, CONFIDENCE, _side(column)),
+        side,
+        _limits(column.value[drawn], side),
+        draws_needed(COVERAGE, CONFIDENCE, side),
         causes_of(column.value, parameters, mine, sampled),
         tuple(_corner_warnings(column, population, parameters, noisy)),
     )
 
 
 def _side(column: CheckColumn) -> Side:
-    return "high" if column.bound == "at most" else "low"
+    met = set(column.bounds[~np.isnan(column.margin)].tolist()) or {column.bound}
+    if len(met) > 1:
+        return "both"
+    return "high" if met == {"at most"} else "low"
 
 
-def _limits(column: CheckColumn, values: Real) -> ToleranceLimits | None:
-    """Return the limit to the side that the check cares for; what has no value is the worst."""
-    worst = np.inf if column.bound == "at most" else -np.inf
-    known = np.where(np.isnan(values), worst, values)
+def _limits(values: Real, side: Side) -> ToleranceLimits | None:
+    """Return the limits to the side that the check cares for; what has no value is the worst."""
+    known = np.where(np.isnan(values), -np.inf if side == "low" else np.inf, values)
     try:
-        return tolerance_limits(known, COVERAGE, CONFIDENCE, _side(column))
+        return tolerance_limits(known, COVERAGE, CONFIDENCE, side)
     except MeasureError:
         return None
 

@@ -127,6 +127,50 @@ def test_a_closed_pipe_is_no_error(command: str, folder: Path) -> None:
     assert "plot" not in command or (folder / "r.png").exists()
 
 
+def test_only_a_closed_standard_output_is_no_error(
+    folder: Path, monkeypatch: pytest.MonkeyPatch, capfd: pytest.CaptureFixture[str]
+) -> None:
+    """Another pipe that breaks, to a process for instance, is an error, and nothing is left."""
+    from frontend_sim.simulation import Simulation
+
+    def broken(self: object, *_: object) -> None:
+        raise BrokenPipeError(32, "Broken pipe")
+
+    monkeypatch.setattr(Simulation, "pin_steps", broken)
+    # click would put others in their place, and for good
+    monkeypatch.setattr("sys.stdout", sys.stdout)
+    monkeypatch.setattr("sys.stderr", sys.stderr)
+    assert main(["run", str(PUMP), "-o", "pump.h5"]) == 2
+    assert "went away" in capfd.readouterr().err
+    assert list(folder.iterdir()) == []
+
+
+def test_messages_that_nobody_reads_keep_the_status(folder: Path) -> None:
+    """A wrong scenario is status 2 also where standard error is closed at its other end."""
+    reader, writer = os.pipe()
+    os.close(reader)
+    (folder / "wrong.toml").write_text("format = 9\n")
+    command = [sys.executable, "-m", "frontend_sim", "run", "wrong.toml"]
+    done = subprocess.run(command, stderr=writer, stdout=subprocess.PIPE, check=False)
+    os.close(writer)
+    assert done.returncode == 2
+
+
+def test_a_home_that_cannot_be_written_is_no_matter(folder: Path) -> None:
+    """A plot without a place for the settings of Matplotlib says nothing of it."""
+    # No folder, for the superuser either.
+    homes = dict.fromkeys(("HOME", "XDG_CONFIG_HOME", "XDG_CACHE_HOME"), os.devnull)
+    rest = {name: value for name, value in os.environ.items() if name != "MPLCONFIGDIR"}
+    command = [sys.executable, "-m", "frontend_sim", "inspect", f"{SCENARIOS}/stages/gain.toml"]
+    done = subprocess.run(
+        [*command, "--plot", "gain.png"],
+        env={**rest, **homes},
+        capture_output=True, text=True, check=True,
+    )  # fmt: skip
+    assert done.stderr == ""
+    assert (folder / "gain.png").exists()
+
+
 @pytest.mark.skipif(not Path("/dev/full").exists(), reason="needs the device that is always full")
 def test_a_full_standard_output_is_told(folder: Path) -> None:
     """The record is kept, the message goes to the other channel, the status is 2."""

@@ -239,6 +239,7 @@ def test_report_writes_a_page(
     text = page.read_text("utf-8")
     assert f'<p class="verdict">{told}' in text
     assert ("What changed" in text) == ("--since" in arguments)
+    assert ("Nearest to its limit: " in text) == told.startswith("Holds")
     assert main(["report", *arguments]) == 2
     assert "exists" in capsys.readouterr().err
 

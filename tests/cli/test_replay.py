@@ -24,7 +24,7 @@ def test_all_checks_hold(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> 
     file = made_set(tmp_path, 'keep = "nothing"\n[[vary]]\nkey = "chain[2].gain"\nvalues = [2]\n')
     assert main(["replay", str(file), "-o", str(tmp_path / "night"), *HERE]) == 0
     told = capsys.readouterr()
-    assert "all checks hold in 1 of 1 runs" in told.out
+    assert "all checks hold in the only run" in told.out
     assert "gain=2" in told.out
     assert str(tmp_path / "night" / "set.h5") in told.out.replace("\n", "")
     assert told.err == ""
@@ -83,7 +83,7 @@ def test_a_run_gives_no_result(tmp_path: Path, capsys: pytest.CaptureFixture[str
     arguments = ["replay", str(tmp_path / "night"), "-o", str(tmp_path / "out"), *HERE]
     assert main([*arguments, "--keep", "nothing"]) == 3
     told = capsys.readouterr()
-    assert "no result from 1 of 2 runs" in told.out
+    assert "a result is missing in 1 of 2 runs" in told.out
     assert "20 kV" in told.out
     assert "incomplete" in told.err
 

@@ -214,6 +214,17 @@ def test_the_stimulus_is_told_in_the_unit_of_the_file(
     assert plain["referred"]["noise"] == pytest.approx(noise, rel=0.02)
 
 
+def test_curves_are_for_one_unit_of_the_file() -> None:
+    """0.2 V per bar: where the step ends, and the level at low frequencies; in Pa it was 2e-6."""
+    found = inspect_scenario(Scenario.model_validate(BRIDGE))
+    assert StepView.of(found).value[-1] == pytest.approx(0.2, rel=1e-4)
+    # A decade and more below the corner: 20 log 0.2 less nothing.
+    assert FrequencyView.of(found).magnitude[0] == pytest.approx(20.0 * math.log10(0.2), abs=0.01)
+    shown = texts(inspection_figure(found))
+    for part in ("end 0.2000", "unit step [V/bar]", "dB re 1 V/bar", "for a step of 10.0 bar"):
+        assert part in shown, part
+
+
 def test_a_record_tells_the_unit_of_its_file(tmp_path: Path) -> None:
     """Its values are in SI, and its file as written has the unit that a run is told in."""
     text = """

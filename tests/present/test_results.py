@@ -127,3 +127,13 @@ def test_a_run_without_settling_checks_has_no_panel() -> None:
     ramp = {"kind": "ramp", "slope": "1 V/s"}
     figure = run_figure(simulate(made(SETTLING, stimulus=ramp)))
     assert "cannot be told" in texts(figure)
+
+
+@pytest.mark.parametrize(
+    ("value", "unit", "text"),
+    [(447.0, "counts", "447 counts"), (0.0, "codes", "0 codes"), (1e6, "ticks", "1000000 ticks"),
+     (2.5, "conversions", "2.500 conversions"), (math.inf, "conversions", "infinite conversions")],
+)  # fmt: skip
+def test_what_is_counted_is_whole(value: float, unit: str, text: str) -> None:
+    """Whole numbers have no decimals; a mean of them has."""
+    assert quantity(value, unit) == text

@@ -11,7 +11,8 @@ from nights import BASE, made_set
 
 from frontend_sim.archive.set_table import SetTable, open_set
 from frontend_sim.measure.statistics import pass_rate
-from frontend_sim.present.night_table import night_data
+from frontend_sim.present.night_table import night_data, shown
+from frontend_sim.present.page import night_page, render
 from frontend_sim.replay import replay_set
 from frontend_sim.summary import NightSummary, Population, summarize
 
@@ -83,6 +84,30 @@ def test_limits_need_59_draws(table: SetTable, summary: NightSummary, tmp_path: 
     assert any("20 draws are too few" in text and "59 do" in text for text in few.warnings)
 
 
+@pytest.mark.parametrize(("draws", "enough"), [(92, False), (93, True)])
+def test_limits_to_both_sides_need_93_draws(draws: int, enough: bool, tmp_path: Path) -> None:
+    """Runs that lie nearer to either of two limits are told both, by Wilks: smallest and largest.
+
+    The level is 2 V (1 - exp(-0.1 / 0.047)) = 1.762 V, between two limits around 1.76 V.
+    """
+    limits = 'at_least = "1.66 V"\nat_most = "1.86 V"'
+    rules = f'seed = 5\nkeep = "nothing"\n[draws]\ncount = {draws}\n'
+    scenario = BASE.replace('at_least = "1.76 V"', limits)
+    replay_set(made_set(tmp_path, rules, scenario=scenario), tmp_path / "n", on="in-process")
+    found = summarize(open_set(tmp_path / "n"))
+    (check,) = found.checks
+    assert (check.side, check.draws_needed) == ("both", 93)
+    told = render(night_page(found))
+    if not enough:
+        assert check.limits is None
+        assert "needs 93 draws" in told
+        return
+    values = check.column.value
+    assert check.limits is not None
+    assert (check.limits.low, check.limits.high) == (values.min(), values.max())
+    assert f"{shown(values.min(), check)} to {shown(values.max(), check)}" in told
+
+
 def test_the_yield_of_several_groups_is_that_of_the_worst(tmp_path: Path) -> None:
     """What was chosen is no sample: 20 draws at each of two resistors are not 40 draws."""
     vary = '[[vary]]\nkey = "chain[input filter].resistance"\nvalues = ["10 kohm", "10.1 kohm"]\n'
@@ -110,10 +135,14 @@ def test_the_yield_of_several_groups_is_that_of_the_worst(tmp_path: Path) -> Non
 def test_what_was_chosen_has_no_confidence(tmp_path: Path) -> None:
     """The percentiles of a grid have no interval, and no draws are asked for."""
     rules = 'keep = "nothing"\n[[vary]]\nkey = "adc.bits"\nvalues = [10, 11, 12, 13, 14]\n'
-    check = night_data(summarize(night(tmp_path, "grid", rules)))["checks"][0]
+    found = summarize(night(tmp_path, "grid", rules))
+    check = night_data(found)["checks"][0]
     assert check["draws_needed"] is None
     assert {each["confidence"] for each in check["percentiles"]} == {None}
     assert {each["low"] for each in check["percentiles"]} == {None}
+    told = render(night_page(found))
+    assert "needs 59 draws" not in told
+    assert "95/95 limit" not in told
 
 
 def test_monotone_responses_give_no_warning(summary: NightSummary) -> None:

@@ -9,7 +9,7 @@ import numpy as np
 from frontend_sim.comparison import SetComparison
 from frontend_sim.measure.statistics import worst_order
 from frontend_sim.present.night_table import share, shown
-from frontend_sim.present.numbers import engineering, plain
+from frontend_sim.present.numbers import counted, engineering, plain, share_of
 from frontend_sim.present.page.content import (
     Cell,
     Page,
@@ -69,13 +69,13 @@ def parameter_text(value: float | str, unit: str) -> str:
 def _verdict(summary: NightSummary) -> tuple[Tone, str]:
     fails, errors, runs = summary.counts["fails"], len(summary.errors), summary.runs
     if fails:
-        return "fails", f"Fails in {fails} of {runs} runs"
+        return "fails", f"Fails in {share_of(fails, runs, 'run')}"
     if errors or not summary.table.complete:
         missing = summary.table.planned - runs
-        return "open", f"Incomplete: {errors} runs without a result, {missing} missing"
+        return "open", f"Incomplete: {counted(errors, 'run')} without a result, {missing} missing"
     if not summary.checks:
         return "open", "No check was made"
-    return "holds", f"Holds in all {runs} runs"
+    return "holds", f"Holds in {share_of(runs, runs, 'run')}"
 
 
 def _next_thing(summary: NightSummary) -> str:

@@ -27,19 +27,19 @@ def spread_sections(summary: NightSummary) -> Iterator[Section | None]:
         return
     drawn = bool(np.any(summary.population.drawn))
     which = "draws" if drawn else "runs"
-    head = ("check", "5 %", "median", "95 %", "95/95 limit")
+    head = ("check", "5 %", "median", "95 %", *(["95/95 limit"] if drawn else []))
     rows = tuple(
         (
             Cell(f"{check.name}{of_group(check)}"),
             *(number(_percentile(check, place, drawn)) for place in range(3)),
-            number(_limit(check)),
+            *([number(_limit(check))] if drawn else []),
         )
         for check in known
     )
     note = (
         "Below each percentile the interval that contains it with 95 % confidence. The 95/95 "
         "limit is the one that 95 % of all that could be drawn keep, with 95 % confidence and "
-        "whatever the distribution (Wilks 1941)."
+        "whatever the distribution (Wilks 1941); a check whose runs met both of its limits has two."
     )
     if any(check.group for check in known):
         note += (
@@ -106,8 +106,8 @@ def _percentile(check: CheckSummary, place: int, drawn: bool) -> str:
 def _limit(check: CheckSummary) -> str:
     if check.limits is None:
         return f"needs {check.draws_needed} draws"
-    high = check.column.bound == "at most"
-    return ("≤ " if high else "≥ ") + shown(check.limits.high if high else check.limits.low, check)
+    low, high = shown(check.limits.low, check), shown(check.limits.high, check)
+    return {"low": f"≥ {low}", "high": f"≤ {high}", "both": f"{low} to {high}"}[check.side]
 
 
 def _figure(summary: NightSummary, check: CheckSummary) -> PageFigure:

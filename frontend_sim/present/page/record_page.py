@@ -8,7 +8,7 @@ from typing import Any
 from frontend_sim.archive import Record, ScanRecord
 from frontend_sim.comparison import RecordComparison
 from frontend_sim.measure.result import Result
-from frontend_sim.present.numbers import engineering, fixed
+from frontend_sim.present.numbers import engineering, fixed, share_of
 from frontend_sim.present.page.content import Cell, Page, PageTable, Section, Tone, number
 from frontend_sim.present.page.difference import difference_section
 from frontend_sim.present.page.origin import caution_section, made, origin_section
@@ -40,7 +40,7 @@ def record_page(record: Record, since: RecordComparison | None = None) -> Page:
         record.title or record.path.name,
         tone,
         verdict,
-        _summary(checks, broken),
+        summary_of_checks(checks, broken),
         tuple(_facts(record, summary)),
         tuple(sections),
         made(),
@@ -52,8 +52,8 @@ def verdict_of_checks(checks: int, broken: int) -> tuple[Tone, str]:
     if checks == 0:
         return "open", "No check was made"
     if broken:
-        return "fails", f"Fails: {broken} of {checks} checks"
-    return "holds", "Holds: the check" if checks == 1 else f"Holds: all {checks} checks"
+        return "fails", f"Fails: {share_of(broken, checks, 'check')}"
+    return "holds", f"Holds: {share_of(checks, checks, 'check')}"
 
 
 def check_cells(result: Result) -> tuple[Cell, ...]:
@@ -108,7 +108,8 @@ def _signal_section(record: Record, summary: dict[str, Any]) -> Section:
     return Section("signal", "The signal", part_text(record), (), (figure,))
 
 
-def _summary(checks: Sequence[Result], broken: Sequence[Result]) -> str:
+def summary_of_checks(checks: Sequence[Result], broken: Sequence[Result]) -> str:
+    """Return the first failure and what to do about it, or what lies nearest to its limit."""
     if broken:
         first = broken[0]
         return f"{first.name}: {(first.advice or first.method).partition(chr(10))[0]}"

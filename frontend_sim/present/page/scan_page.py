@@ -14,6 +14,7 @@ from frontend_sim.present.page.record_page import (
     check_section,
     measure_table,
     record_origin,
+    summary_of_checks,
     verdict_of_checks,
 )
 from frontend_sim.present.page.render import embedded
@@ -41,16 +42,11 @@ def scan_page(record: ScanRecord, since: RecordComparison | None = None) -> Page
         sections.append(Section("measures", "Measures", (), (measure_table(measures),)))
     sections += [record_origin(record), caution_section()]
     counts = [channel.whole_count for channel in record.channels.values()]
-    first = broken[0] if broken else None
     return Page(
         record.title or record.path.name,
         tone,
         verdict,
-        f"{first.name}: {(first.advice or first.method).partition(chr(10))[0]}"
-        if first
-        else "Nothing fails."
-        if checks
-        else "Add [[check]] tables to the scenario to get one.",
+        summary_of_checks(checks, broken),
         (("channels", f"{len(counts)}"), ("conversions", f"{sum(counts)}")),
         tuple(sections),
         made(),

@@ -18,6 +18,7 @@ from frontend_sim.archive import open_record, record_run
 from frontend_sim.comparison import compare_records, compare_sets
 from frontend_sim.errors import OutputError
 from frontend_sim.present.page import Page, night_page, record_page, render, write_page
+from frontend_sim.present.page.record_page import verdict_of_checks
 from frontend_sim.simulation import Simulation
 from frontend_sim.summary import summarize
 
@@ -148,6 +149,16 @@ def test_what_a_user_wrote_is_escaped(tmp_path: Path) -> None:
     outline = Outline(text)
     assert outline.all("script") == []
     assert outline.text_of("h1") == [evil]
+
+
+@pytest.mark.parametrize(
+    ("checks", "broken", "told"),
+    [(1, 0, "Holds: the only check"), (2, 0, "Holds: all 2 checks"),
+     (1, 1, "Fails: the only check"), (3, 2, "Fails: 2 of 3 checks")],
+)  # fmt: skip
+def test_headlines_count_the_checks(checks: int, broken: int, told: str) -> None:
+    """A single check is not one of several."""
+    assert verdict_of_checks(checks, broken)[1] == told
 
 
 def test_a_record_without_checks_says_so(tmp_path: Path) -> None:

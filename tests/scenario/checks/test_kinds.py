@@ -127,6 +127,7 @@ WRONG = {
     "unknown key": (
         check(f'kind = "clipping"\nwithin = "1 LSB" {MARK}'),
         "unknown key here; it belongs in [[check]] of kind \"settling\"",
+        "known here are after, at_most, channel, kind, name",
     ),
     "no fraction": (check(f'kind = "clipping"\nat_most = "120 %" {MARK}'), "must be at most 1"),
     "single brackets": (
