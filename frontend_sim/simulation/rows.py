@@ -75,7 +75,7 @@ class RowPath:
         The outputs' delay is taken off them.
         """
         system, outputs, drive = exact.table.system, exact.outputs, exact.drive
-        n, m = len(exact.initial), len(drive.readout)
+        n = len(exact.initial)
         direct = np.outer(outputs.d, drive.readout)
         e = expm1(system * interval)
         spread = np.concatenate([outputs.c, direct], axis=1)[None]
