@@ -61,6 +61,30 @@ class Value(BaseModel):
         except ValidationError as error:
             raise cls._refusal(error, obj) from None
 
+    def __setattr__(self, name: str, value: Any) -> None:
+        """Refuse to change a value.
+
+        Raises
+        ------
+        ScenarioError
+            Always, but for what the value keeps for itself.
+        """
+        try:
+            super().__setattr__(name, value)
+        except ValidationError:
+            raise self._frozen(name) from None
+
+    def __delattr__(self, name: str) -> None:
+        """Refuse to change a value. Raises ScenarioError."""
+        try:
+            super().__delattr__(name)
+        except ValidationError:
+            raise self._frozen(name) from None
+
+    def _frozen(self, name: str) -> ScenarioError:
+        reason = "a value is frozen; make another one with what is to be different"
+        return ScenarioError((Problem(reason, name),), type(self).__name__)
+
     @classmethod
     def _refusal(cls, error: ValidationError, given: Any) -> ScenarioError:
         return ScenarioError(cls._problems(error, given), cls.__name__)

@@ -5,17 +5,22 @@ from __future__ import annotations
 import math
 from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass
+from typing import Self
 
 import numpy as np
 
 from frontend_sim.comparison.again import run_again
 from frontend_sim.comparison.changes import Change
 from frontend_sim.errors import InputError
+from frontend_sim.measure.result import Result
 from frontend_sim.scenario.scan_scenario import AnyScenario
 from frontend_sim.scenario.vary import with_values
 
 MOST = 64
 """So many parameters are run one at a time; more changes are no longer a change of a circuit."""
+
+ROUNDING = 1e-9
+"""Share of a measure, or of its limit, that the engine is right to: a smaller change is none."""
 
 
 @dataclass(frozen=True)
@@ -25,7 +30,7 @@ class Share:
     Parameters
     ----------
     key : the parameter
-    moved : measure -> how far this change alone moves it from the first run
+    moved : measure -> how far this change alone moves it from the first run, 0 below its rounding
     fault : why it cannot be changed alone, "" if it can
     """
 
@@ -44,15 +49,42 @@ class Attribution:
         of pin and codes
     total : measure -> second less first, all changes made, with the seed of the first
     shares : one for each changed parameter, in their order
+    rounding : measure -> what is no more than this is none
     """
 
     units: Mapping[str, str]
     total: Mapping[str, float]
     shares: tuple[Share, ...]
+    rounding: Mapping[str, float]
 
     def remainder(self, measure: str) -> float:
         """Return what the changes do together beyond the sum of what each does alone."""
-        return self.total[measure] - math.fsum(row.moved.get(measure, 0.0) for row in self.shares)
+        alone = math.fsum(row.moved.get(measure, 0.0) for row in self.shares)
+        return _beyond(self.total[measure] - alone, self.rounding[measure])
+
+
+@dataclass(frozen=True)
+class _Measured:
+    """A measure of one run.
+
+    Parameters
+    ----------
+    value : its margin, its value where there is no limit, NaN where it cannot be told
+    unit : of both
+    rounding : how far it is known
+    """
+
+    value: float
+    unit: str
+    rounding: float
+
+    @classmethod
+    def of(cls, row: Result) -> Self:
+        value = row.value if row.margin is None else row.margin
+        # A mean of zero is still one of codes.
+        sizes = [1.0 if row.unit == "LSB" else 0.0, abs(row.value or 0.0), abs(row.limit or 0.0)]
+        largest = max(size for size in sizes if math.isfinite(size))
+        return cls(math.nan if value is None else value, row.unit, ROUNDING * largest)
 
 
 def attribute(
@@ -84,12 +116,16 @@ def attribute(
         advance((2 + position) / (2 + len(changed)))
         shares.append(_share(first, change, before))
     advance(1.0)
-    both = {name: unit for name, (_, unit) in before.items() if name in after}
     total = _less(after, before)
-    return Attribution(both, {name: total[name] for name in both}, tuple(shares))
+    return Attribution(
+        {name: before[name].unit for name in total},
+        total,
+        tuple(shares),
+        {name: _rounding(after[name], before[name]) for name in total},
+    )
 
 
-def _share(first: AnyScenario, change: Change, before: Mapping[str, tuple[float, str]]) -> Share:
+def _share(first: AnyScenario, change: Change, before: Mapping[str, _Measured]) -> Share:
     try:
         alone = with_values(first, {change.key: change.value})
         return Share(change.key, _less(_measured(alone), before))
@@ -97,22 +133,26 @@ def _share(first: AnyScenario, change: Change, before: Mapping[str, tuple[float,
         return Share(change.key, {}, str(error))
 
 
-def _measured(scenario: AnyScenario) -> dict[str, tuple[float, str]]:
-    """Run a scenario; return measure -> margin, or value, and unit. Raises InputError."""
-    found = {}
-    for row in run_again(scenario):
-        value = row.value if row.margin is None else row.margin
-        found[row.name] = math.nan if value is None else value, row.unit
-    return found
+def _measured(scenario: AnyScenario) -> dict[str, _Measured]:
+    """Run a scenario and return its measures by name. Raises InputError."""
+    return {row.name: _Measured.of(row) for row in run_again(scenario)}
 
 
-def _less(
-    after: Mapping[str, tuple[float, str]], before: Mapping[str, tuple[float, str]]
-) -> dict[str, float]:
+def _less(after: Mapping[str, _Measured], before: Mapping[str, _Measured]) -> dict[str, float]:
     """Return how far each measure moved; NaN where a value is missing or stays infinite."""
     moved = {}
-    for name, (value, unit) in after.items():
-        if name in before and before[name][1] == unit:
+    for name, one in before.items():
+        if name in after and after[name].unit == one.unit:
             with np.errstate(invalid="ignore"):
-                moved[name] = float(np.subtract(value, before[name][0]))
+                change = float(np.subtract(after[name].value, one.value))
+            moved[name] = _beyond(change, _rounding(after[name], one))
     return moved
+
+
+def _rounding(one: _Measured, other: _Measured) -> float:
+    return max(one.rounding, other.rounding)
+
+
+def _beyond(change: float, rounding: float) -> float:
+    """Return a change, zero where it is no more than rounding."""
+    return 0.0 if abs(change) <= rounding else change

@@ -78,6 +78,7 @@ def column_difference(
     allowed: float,
     level: float,
     draws: Text | None = None,
+    rounding: float = 0.0,
 ) -> ColumnDifference:
     """Return how a check or measure differs between two nights.
 
@@ -89,6 +90,7 @@ def column_difference(
     level : rate of false alarms that is accepted [1]
     draws : what pairs of the same parts have in common, shape (N,): chance moves these together,
         so that they count as one; left out, each pair is on its own
+    rounding : what is no difference at all, in ``unit``, where it is more than a millionth
     """
     with np.errstate(invalid="ignore"):
         difference = np.where(first == second, 0.0, second - first)
@@ -102,8 +104,9 @@ def column_difference(
     # A run that has no value any more counts, whatever its verdict.
     lost = int(np.count_nonzero(np.isfinite(first) & ~np.isfinite(second)))
     finding, told = _judge(
-        shift, peak, NEGLIGIBLE * size, allowed, (better, worse, lost), exact, chance, level
-    )
+        shift, peak, max(NEGLIGIBLE * size, rounding), allowed, (better, worse, lost), exact,
+        chance, level,
+    )  # fmt: skip
     margin = math.nan
     if margins is not None:
         margin = _less(_least(margins[1]), _least(margins[0]))

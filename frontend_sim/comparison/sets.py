@@ -9,13 +9,14 @@ from pathlib import Path
 import numpy as np
 from numpy.typing import NDArray
 
-from frontend_sim.archive import open_single_record
+from frontend_sim.archive import open_record
 from frontend_sim.archive.set_table import SetTable
 from frontend_sim.comparison.attribution import Attribution
 from frontend_sim.comparison.base_scenario import scenario_of
 from frontend_sim.comparison.changes import Change, changes
 from frontend_sim.comparison.columns import ColumnDifference, column_difference, flips, runs
-from frontend_sim.comparison.records import FALSE_ALARMS, compare_records
+from frontend_sim.comparison.records import FALSE_ALARMS, ROUNDING
+from frontend_sim.comparison.scans import compare_runs
 from frontend_sim.comparison.series import DIFFERENT
 from frontend_sim.comparison.tolerance import Tolerances
 from frontend_sim.errors import InputError
@@ -41,7 +42,7 @@ class SetComparison:
     reseeded : how many matched runs have other seeds
     changed : keys of the scenarios, with the name of the scenario in front where there are several
     varied : keys whose values in the runs differ -> in how many
-    columns : checks and measures, and what the kept records add: pin, codes
+    columns : checks and measures, and what the kept records add: pin, codes, of each channel
     records : pairs of records that were read
     notes : what else a reader must know
     attribution : of the nominal scenarios, where it was asked for
@@ -173,7 +174,8 @@ class _Nights:
         later = {check.name: check for check in self.second.checks}
         names = [check.name for check in self.first.checks]
         measures = [name for name in self.first.measures if name in self.second.measures]
-        level = FALSE_ALARMS / max(1, 2 * (len(names) + len(measures) + 3))
+        signals = 2 * max(len(values.get("channel", "1")) for values in self.first.base_values)
+        level = FALSE_ALARMS / (2 * (len(names) + len(measures) + signals + 1))
         quiet = quiet_checks((*self.first.base_values, *self.second.base_values))
         verdicts = self.first.verdicts[self.one], self.second.verdicts[self.other]
         yield flips("all checks", verdicts, self.reseeded == 0, level, self.draws)
@@ -219,22 +221,23 @@ class _Nights:
         """Compare the kept records of both nights, as many as there is time for."""
         kept = [row for row, name in enumerate(self.names) if self._both_kept(name)]
         step = -(-len(kept) // MOST_RECORDS) if kept else 1
-        read = {row: self._signal(self.names[row]) for row in kept[::step]}
-        told = {row: signal for row, signal in read.items() if signal is not None}
-        self.records, picked = len(told), list(told)
-        if not told:
+        read = {row: self._signals_of(self.names[row]) for row in kept[::step]}
+        self.records = sum(map(bool, read.values()))
+        if not self.records:
             return
-        pin, codes, certain = (np.array(row) for row in zip(*told.values(), strict=True))
-        # Other seeds draw other parts, and with them another pin.
-        whole = self._exact(bool(np.all(certain)))
-        adc = self.first.base_values[0]["adc"]
+        adc = next(values["adc"] for values in self.first.base_values if "adc" in values)
+        codes = 2.0 ** int(adc["bits"])
         extent = float(adc["high"]) - float(adc["low"])
-        allowed = self.tolerances.of_signal("LSB", extent / 2.0 ** int(adc["bits"]), extent)
-        zero = np.zeros(len(pin))
-        for name, values, exact in (("pin", pin, whole), ("codes", codes, self.reseeded == 0)):
+        allowed = self.tolerances.of_signal("LSB", extent / codes, extent)
+        for name in dict.fromkeys(name for found in read.values() for name in found):
+            told = {row: found[name] for row, found in read.items() if name in found}
+            values, certain = (np.array(each) for each in zip(*told.values(), strict=True))
+            # Other seeds draw other parts, and with them another pin.
+            exact = self._exact(bool(np.all(certain)))
             yield column_difference(
-                name, "LSB", zero, values, None, None, exact, allowed, level, self.draws[picked]
-            )
+                name, "LSB", np.zeros(len(values)), values, None, None, exact, allowed, level,
+                self.draws[list(told)], ROUNDING * codes,
+            )  # fmt: skip
 
     def _both_kept(self, name: str) -> bool:
         if self.first.path.parent == self.second.path.parent:
@@ -242,19 +245,24 @@ class _Nights:
         paths = self.first.record_path(name), self.second.record_path(name)
         return all(path is not None and path.is_file() for path in paths)
 
-    def _signal(self, name: str) -> tuple[float, float, bool] | None:
-        """Return the mean difference of pin and codes [LSB], and whether the pin has no chance.
+    def _signals_of(self, name: str) -> dict[str, tuple[float, bool]]:
+        """Return pin and codes of each channel -> mean difference [LSB], and whether it is exact.
 
-        None where records keep parts of their runs that tell nothing of each other.
+        What is left out is known in parts of the runs that tell nothing of each other.
         """
         paths = self.first.record_path(name), self.second.record_path(name)
         assert paths[0] is not None  # only what both have is looked at
         assert paths[1] is not None
-        with open_single_record(paths[0]) as one, open_single_record(paths[1]) as other:
-            found = {row.name: row for row in compare_records(one, other).series}
-        if found["codes"].finding == "not judged":
-            return None
-        return found["pin"].mean, found["codes"].mean, found["pin"].shift is None
+        with open_record(paths[0]) as one, open_record(paths[1]) as other:
+            found = {row.name: row for row in compare_runs(one, other).series}
+        told = {}
+        for label, pin in found.items():
+            channel = label.removesuffix("pin")
+            codes = found.get(f"{channel}codes")
+            if channel != label and codes is not None and codes.finding != "not judged":
+                told[label] = pin.mean, pin.shift is None
+                told[codes.name] = codes.mean, self.reseeded == 0
+        return told
 
     def notes(self) -> Iterator[str]:
         for name in dict.fromkeys((*self.first.versions, *self.second.versions)):

@@ -158,6 +158,8 @@ def attribution_table(attribution: Attribution) -> Table:
 
 
 def _moved(value: float, unit: str) -> str:
+    if value == 0.0:
+        return "none"
     return quantity(value, unit) if value <= 0.0 else f"+{quantity(value, unit)}"
 
 

@@ -28,7 +28,7 @@ class Outcome:
     ----------
     number, name, recipe, seed : as in ``PlannedRun``
     digest : of its scenario
-    outcome : digest of its conversions, waveforms, results and notes
+    outcome : digest of its conversions, waveforms, results and notes, see ``Fingerprint``
     verdict : "error" where there is no result
     results : measures and checks
     notes : what was decided during the run

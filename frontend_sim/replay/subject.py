@@ -14,6 +14,7 @@ from frontend_sim.archive.grid import grid_results
 from frontend_sim.archive.writer import ScanWriter, Writer
 from frontend_sim.measure.checks import (
     Keeper,
+    extent_of,
     failures_in,
     refuse_impossible,
     subject_of_run,
@@ -113,7 +114,7 @@ class _Single:
 
     def failures(self, around: float | None) -> Stretches:
         width = AROUND / self.simulation.scenario.adc.rate if around is None else around
-        return Stretches.about(failures_in(self._subject), width)
+        return Stretches.about(failures_in(self._subject), width, extent_of(self._subject))
 
     def record(
         self,
@@ -173,7 +174,9 @@ class _Scan:
         subjects = self._subjects.values()
         slowest = min(subject.adc.rate for subject in subjects)
         spans = np.concatenate([failures_in(subject) for subject in subjects])
-        return Stretches.about(spans, AROUND / slowest if around is None else around)
+        begins, ends = zip(*map(extent_of, subjects), strict=True)
+        width = AROUND / slowest if around is None else around
+        return Stretches.about(spans, width, (min(begins), max(ends)))
 
     def results(self) -> tuple[Result, ...]:
         of_channels = [

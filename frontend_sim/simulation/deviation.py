@@ -38,7 +38,8 @@ class DeviationState:
     ----------
     grid, events : states of the probes;  count : jumps so far
     limiter : state of the limiter
-    u, v : input and linear answer at the point, after its jump if ``fresh``
+    u, v : input and linear answer at the point, after its jump
+    fresh : when they jump at the point [s]; None where they do not
     level : all jumps of the deviation so far, added up [V]
     signal : the deviation, as far back as it is needed
     time, first : how long each limit was touched, and when first, shape (L,) [s]
@@ -50,7 +51,7 @@ class DeviationState:
     limiter: Real
     u: float
     v: float
-    fresh: bool
+    fresh: float | None
     level: float
     signal: Signal
     time: Real
@@ -96,7 +97,7 @@ class Deviation:
         events = self.events.start() if self.events is not None else ()
         return DeviationState(
             self.grid.start(), events, 0, limiter, float(u[0]), float(v[0]),
-            True, 0.0, Signal(polygon, None), np.zeros(size), never,
+            0.0, 0.0, Signal(polygon, None), np.zeros(size), never,
         )  # fmt: skip
 
     def advance(
@@ -188,7 +189,7 @@ class Deviation:
             levels = level + np.cumsum(heights[at])
             held = np.append(level, levels)[np.searchsorted(starts[at], np.arange(len(d)), "right")]
             joined, level = pieces.on_grid(d - held), float(levels[-1])
-            lines = _grown(lines, pieces.begins(starts[at]), levels)
+            lines = _grown(lines, pieces.jumps[at], levels)
         if polygon is None and not np.any(joined):
             return level, Signal(None, _trimmed(lines, keep.time))
         if polygon is None:

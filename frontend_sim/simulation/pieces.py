@@ -19,14 +19,14 @@ class Stretch:
     ----------
     rate : of the grid [Hz];  first : number of the first point
     u, v : shape (K,), at least two points; at a jump the new value
-    fresh : whether the first point itself is a jump
+    fresh : when it jumps at the first point itself [s]; None where it does not
     """
 
     rate: float
     first: int
     u: Real
     v: Real
-    fresh: bool
+    fresh: float | None
 
 
 @dataclass(frozen=True, eq=False)
@@ -52,16 +52,18 @@ class Pieces:
     rate : of the grid [Hz];  first : number of its first point
     cut : when each piece begins [s], and which of them end at a point of the grid, shape (S,) both;
         None where every piece is a step of the grid
+    jumps : when it jumps, at the begin of those pieces that start with a jump, shape (J,) [s]
     last : u and v at the last point, after its jump if it has one
-    fresh : whether the last point is a jump
+    fresh : when it jumps at the last point [s]; None where it does not
     """
 
     segments: Segments
     rate: float
     first: int
     cut: tuple[Real, NDArray[np.bool_]] | None
+    jumps: Real
     last: tuple[float, float]
-    fresh: bool
+    fresh: float | None
 
     def begins(self, pieces: Index) -> Real:
         """Return when some pieces begin [s]."""
@@ -75,17 +77,19 @@ class Pieces:
 def pieces_of(stretch: Stretch, jumps: Jumps | None) -> Pieces:
     """Cut a stretch at the points of its grid and at jumps.
 
-    A jump within rounding of a point is at the point. The jumps lie behind the first point of the
-    stretch, and not behind its last one.
+    A jump within rounding of a point is at the point, and begins a piece there; ``Pieces.jumps``
+    keeps its own time, as what a conversion at the point sees hangs on that. The jumps lie behind
+    the first point of the stretch, and not behind its last one.
     """
     count = len(stretch.u)
     if jumps is None or len(jumps.times) == 0:
-        at = np.zeros(1 if stretch.fresh else 0, np.int64)
+        first = np.array([] if stretch.fresh is None else [stretch.fresh])
+        at = np.zeros(len(first), np.int64)
         length = np.full(count - 1, 1.0 / stretch.rate)
         u, v = stretch.u, stretch.v
         segments = Segments(length, u[:-1], u[1:], v[1:], float(v[0]), at)
         last = (float(u[-1]), float(v[-1]))
-        return Pieces(segments, stretch.rate, stretch.first, None, last, False)
+        return Pieces(segments, stretch.rate, stretch.first, None, first, last, None)
     return _cut(stretch, jumps)
 
 
@@ -109,7 +113,11 @@ def _cut(stretch: Stretch, jumps: Jumps) -> Pieces:
     for row in range(2):
         # Of two jumps at one point the first tells what was before, the last what comes after.
         before[row][edge[::-1]], after[row][edge] = jumps.before[row][::-1], jumps.after[row]
-    starts = np.union1d(edge[edge < len(edges) - 1], [0] if stretch.fresh else [])
+    jumped = np.full(len(edges), np.nan)
+    jumped[edge] = jumps.times
+    if stretch.fresh is not None:
+        jumped[0] = stretch.fresh
+    starts = np.flatnonzero(~np.isnan(jumped[:-1]))
     ends_on_grid = np.zeros(len(edges), np.bool_)
     ends_on_grid[point] = True
     segments = Segments(
@@ -118,11 +126,11 @@ def _cut(stretch: Stretch, jumps: Jumps) -> Pieces:
         before[0][1:],
         before[1][1:],
         float(after[1][0]),
-        starts.astype(np.int64),
+        starts,
     )
     begins = np.arange(stretch.first, stretch.first + count - 1) / stretch.rate
     times = np.insert(begins, cell, jumps.times[inside])
     last = (float(after[0][-1]), float(after[1][-1]))
     cut = (times, ends_on_grid[1:])
-    fresh = bool(edge[-1] == len(edges) - 1)
-    return Pieces(segments, stretch.rate, stretch.first, cut, last, fresh)
+    fresh = None if np.isnan(jumped[-1]) else float(jumped[-1])
+    return Pieces(segments, stretch.rate, stretch.first, cut, jumped[starts], last, fresh)

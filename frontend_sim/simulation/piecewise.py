@@ -78,7 +78,7 @@ class PiecewisePath:
         """Advance through instants, fill in their outputs, and return the number of nodes."""
         slack = self._slack(instants)
         events = drive.events(state.node, float(instants[-1] + slack[-1]))
-        instants = _snapped(instants, events, slack)
+        instants = snapped(instants, events, slack)
         nodes = np.union1d(instants, events)
         nodes = _refreshed(nodes[nodes > state.node], state.node, drive.fresh)
         g = drive.states(np.concatenate([[state.node], nodes]))
@@ -96,7 +96,7 @@ class PiecewisePath:
         """Return instants, those that differ from an event by rounding only moved onto it."""
         slack = self._slack(instants)
         begin, end = float(instants[0] - 2.0 * slack[0]), float(instants[-1] + slack[-1])
-        return _snapped(instants, drive.events(begin, end), slack)
+        return snapped(instants, drive.events(begin, end), slack)
 
     def _slack(self, instants: Real) -> Real:
         return ULPS * np.spacing(instants + self.outputs.delay)
@@ -111,7 +111,7 @@ class PiecewisePath:
             kernels.march(x, g, steps, table.unit, table.system, table.table, table.stop, states)
 
 
-def _snapped(instants: Real, events: Real, slack: Real) -> Real:
+def snapped(instants: Real, events: Real, slack: Real) -> Real:
     """Move an instant that differs from an event by rounding only onto the event.
 
     Instants behind a delay carry the rounding of the undelayed ones, which the slack counts in.

@@ -10,12 +10,17 @@ import numpy as np
 from frontend_sim.analog.cut import Place
 from frontend_sim.analog.limits import Segments
 from frontend_sim.simulation.kernels import Real
+from frontend_sim.simulation.piecewise import ULPS as SNAPPED
+from frontend_sim.simulation.piecewise import snapped
 from frontend_sim.simulation.pieces import Pieces
 from frontend_sim.simulation.polygon import Polygon
 from frontend_sim.stimulus.drive import Lines
 
 ULPS = 8.0
 """An instant within this many units in the last place of a point of the grid is at the point."""
+
+BESIDE, BESIDE_SHARE = 1e-9, 1e-13
+"""An instant this near to a jump is beside it [steps, and share of the position in steps]."""
 
 
 @dataclass(frozen=True, eq=False)
@@ -41,7 +46,9 @@ class Past:
         d = np.append(self.before, self.d[:-1])
         d[segments.jumps] = self.begun
         v = np.append(segments.linear_begin, segments.linear[:-1])
-        return np.stack([self.pieces.begins(np.arange(len(d))), segments.begin, v, d])
+        begins = self.pieces.begins(np.arange(len(d)))
+        begins[segments.jumps] = self.pieces.jumps
+        return np.stack([begins, segments.begin, v, d])
 
 
 @dataclass(frozen=True, eq=False)
@@ -76,11 +83,18 @@ class Signal:
         """Return what lines between the points of a grid miss at instants, shape (K,).
 
         The limiter goes on from the begin of the piece that an instant lies in, with its true input
-        and linear answer at the instant, u and v.
+        and linear answer at the instant, u and v. So it does at a point of the grid beside a jump:
+        rounding may have u and v on the one side of it, and the held part on the other.
         """
         missed = np.zeros(len(instants))
         position = instants * rate
-        off = np.flatnonzero(np.abs(position - np.rint(position)) > ULPS * np.spacing(position))
+        asked = np.abs(position - np.rint(position)) > ULPS * np.spacing(position)
+        if self.lines is not None:
+            # As the answer to the held part has them.
+            instants = snapped(instants, self.lines.breaks, SNAPPED * np.spacing(instants))
+            near = (BESIDE + BESIDE_SHARE * position) / rate
+            asked |= _to_nearest(instants, self.lines.breaks) <= near
+        off = np.flatnonzero(asked)
         if len(off) == 0 or not self.past:
             return missed
         instants, u, v = instants[off], u[off], v[off]
@@ -93,3 +107,10 @@ class Signal:
         _, d, _, _ = place.limiter.advance(place.limiter.start(float(u[0]), float(v[0])), span)
         missed[off] = d - self.values(instants)
         return missed
+
+
+def _to_nearest(instants: Real, events: Real) -> Real:
+    """Return how far the nearest event lies from each instant [s]."""
+    after = np.minimum(np.searchsorted(events, instants), len(events) - 1)
+    before = np.maximum(after - 1, 0)
+    return np.minimum(np.abs(events[after] - instants), np.abs(events[before] - instants))

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass, fields, replace
 from typing import Self
 
@@ -35,21 +36,25 @@ class Stretches:
     around: float
 
     @classmethod
-    def about(cls, spans: Real, around: float) -> Self:
+    def about(
+        cls, spans: Real, around: float, whole: tuple[float, float] = (0.0, math.inf)
+    ) -> Self:
         """Return the stretches that begin and end some time before and behind others.
 
         Parameters
         ----------
         spans : first and last instant of each, in any order, shape (N, 2) [s]
         around : what is added on both sides [s]
+        whole : first and last instant of the run, which no stretch goes beyond [s]
         """
         if len(spans) == 0:
             return cls(np.empty((0, 2)), around)
-        wide = spans[np.argsort(spans[:, 0], kind="stable")] + [-around, around]
+        inside = np.clip(spans, *whole)
+        wide = inside[np.argsort(inside[:, 0], kind="stable")] + [-around, around]
         reach = np.maximum.accumulate(wide[:, 1])
         first = np.flatnonzero(np.concatenate([[True], wide[1:, 0] > reach[:-1]]))
         last = np.append(first[1:], len(wide)) - 1
-        return cls(np.column_stack([np.maximum(wide[first, 0], 0.0), reach[last]]), around)
+        return cls(np.clip(np.column_stack([wide[first, 0], reach[last]]), *whole), around)
 
     def hold(self, time: Real) -> NDArray[np.bool_]:
         """Return which instants lie in one of the stretches, shape (K,)."""

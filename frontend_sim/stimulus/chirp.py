@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 from dataclasses import dataclass
+from functools import cached_property
 from typing import Literal
 
 import numpy as np
@@ -19,6 +20,7 @@ from frontend_sim.quantities import (
 )
 from frontend_sim.stimulus.base import Key, Stimulus
 from frontend_sim.stimulus.drive import Drive, PiecewiseDrive, Real
+from frontend_sim.stimulus.swept_phase import SweptPhase
 
 DEGREE = 12
 STRIDE = 0.5
@@ -70,16 +72,10 @@ class Sweep(PiecewiseDrive):
         """Return the offset."""
         return self.offset
 
-    def _growth(self) -> float:
-        return math.log(self.stop / self.start) / self.length
-
-    def _turns(self, since: Real) -> Real:
-        """Return the cycles made since the start of the sweep."""
-        if self.logarithmic and self.start != self.stop:
-            growth = self._growth()
-            return np.asarray(self.start * np.expm1(growth * since) / growth)
-        slope = (self.stop - self.start) / self.length
-        return np.asarray(since * (self.start + 0.5 * slope * since))
+    @cached_property
+    def _swept(self) -> SweptPhase:
+        logarithmic = self.logarithmic and self.start != self.stop
+        return SweptPhase(self.start, self.stop, self.length, logarithmic)
 
     def events(self, start: float, stop: float) -> Real:
         """Return both ends of the sweep and the joints of the pieces in (start, stop].
@@ -95,11 +91,11 @@ class Sweep(PiecewiseDrive):
 
     def _of_equal_phase(self, first: float, last: float) -> Real:
         """Return the joints after equal parts of all turns, from about first to last [s]."""
-        total, before, after = self._turns(np.array([self.length, first, last]))
+        total, before, after = self._swept.turns(np.array([self.length, first, last]))
         pieces = max(math.ceil(total * 2.0 * math.pi / STRIDE), 1)
         lowest = max(int(before / total * pieces) - 2, 0)
         highest = min(int(after / total * pieces) + 3, pieces)
-        return self._time_of(np.arange(lowest, highest) * (total / pieces))
+        return self._swept.time_of(np.arange(lowest, highest) * (total / pieces))
 
     def _of_equal_time(self, first: float, last: float) -> Real:
         """Return the joints after equal times, from about first to last [s].
@@ -107,8 +103,8 @@ class Sweep(PiecewiseDrive):
         Over a piece t the phase bends by pi |slope| t² in a linear sweep; in a logarithmic one of
         growth g by g t / 2 of the phase of the piece.
         """
-        if self.logarithmic and self.start != self.stop:
-            longest = 2.0 * BEND / STRIDE / abs(self._growth())
+        if self._swept.logarithmic:
+            longest = 2.0 * BEND / STRIDE / abs(self._swept.growth)
         elif self.start != self.stop:
             longest = math.sqrt(BEND * self.length / (math.pi * abs(self.stop - self.start)))
         else:
@@ -118,25 +114,15 @@ class Sweep(PiecewiseDrive):
         highest = min(int(last / self.length * pieces) + 2, pieces)
         return np.arange(lowest, highest, dtype=np.float64) * (self.length / pieces)
 
-    def _time_of(self, turns: Real) -> Real:
-        """Invert ``_turns``."""
-        if self.logarithmic and self.start != self.stop:
-            growth = self._growth()
-            return np.asarray(np.log1p(turns * growth / self.start) / growth)
-        slope = (self.stop - self.start) / self.length
-        root = np.sqrt(np.maximum(self.start**2 + 2.0 * slope * turns, 0.0))
-        return np.asarray(2.0 * turns / (self.start + root))
-
     def states(self, times: Real) -> Real:
         """Return the scaled derivatives of the sweep.
 
         With f = exp(j p), f' = j p' f and by Leibniz' rule
         f^(k+1) = j sum_i C(k, i) p^(i+1) f^(k-i).
         """
-        since = np.clip(times - self.at, 0.0, self.length)
-        turns = self._turns(since)
-        f = [np.exp(1j * (2.0 * np.pi * (turns - np.floor(turns)) + self.phase))]
-        rates = self._phase_derivatives(since)
+        within = np.clip(times, self.at, self.at + self.length)
+        f = [np.exp(1j * (2.0 * np.pi * self._swept.cycles(within, self.at) + self.phase))]
+        rates = self._phase_derivatives(within - self.at)
         for k in range(DEGREE):
             terms = [math.comb(k, i) * rates[i] * f[k - i] for i in range(min(k + 1, len(rates)))]
             f.append(1j * np.sum(terms, axis=0))
@@ -146,14 +132,12 @@ class Sweep(PiecewiseDrive):
 
     def _phase_derivatives(self, since: Real) -> list[Real]:
         """Return p', p'', ... over the powers of the fastest angular frequency."""
-        w = self._fastest
-        if self.logarithmic and self.start != self.stop:
-            growth = self._growth()
+        w, growth = self._fastest, self._swept.growth
+        if self._swept.logarithmic:
             first = 2.0 * np.pi * self.start * np.exp(growth * since) / w
             return [first * (growth / w) ** i for i in range(DEGREE)]
-        slope = (self.stop - self.start) / self.length
-        first = 2.0 * np.pi * (self.start + slope * since) / w
-        return [first, np.full(len(since), 2.0 * np.pi * slope / w**2)]
+        first = 2.0 * np.pi * (self.start + growth * since) / w
+        return [first, np.full(len(since), 2.0 * np.pi * growth / w**2)]
 
 
 class Chirp(Stimulus):

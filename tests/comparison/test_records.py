@@ -13,6 +13,7 @@ from frontend_sim.comparison import (
     RecordComparison,
     SeriesDifference,
     attribute,
+    changes,
     compare_records,
     over_seeds,
     parse_tolerances,
@@ -230,13 +231,30 @@ def test_attribution_tells_the_interaction() -> None:
     dc = {"kind": "step", "before": 0.4, "after": 0.4}
     first = made(chain=chain, stimulus=dc, check=[])
     second = with_values(first, {"chain[1].gain": 2.0, "chain[2].gain": 2.0})
-    from frontend_sim.comparison import changes
-
     split = attribute(first, second, changes(first.resolved(), second.resolved()))
     unit = 0.4 / LSB
     assert [row.moved[PIN] for row in split.shares] == pytest.approx([unit, unit], rel=1e-9)
     assert split.total[PIN] == pytest.approx(3.0 * unit, rel=1e-9)
     assert split.remainder(PIN) == pytest.approx(unit, rel=1e-9)
+
+
+@pytest.mark.parametrize("level", [0.4, 1.234, 0.0])
+def test_rounding_is_no_change(level: float) -> None:
+    """Another corner moves no level at rest, though its states round by 1e-13 LSB otherwise.
+
+    A gain beside it moves what it moves, and nothing is beyond the sum of both.
+    """
+    chain = [{"kind": "butterworth", "order": 4, "corner": "1 kHz"}, {"kind": "gain", "gain": 1.0}]
+    dc = {"kind": "step", "before": level, "after": level}
+    first = made(chain=chain, stimulus=dc, check=[{"kind": "headroom", "at_least": "10 mV"}])
+    second = with_values(first, {"chain[1].corner": 1300.0, "chain[2].gain": 1.1})
+    split = attribute(first, second, changes(first.resolved(), second.resolved()))
+    corner, gain = (row.moved for row in split.shares)
+    assert set(corner) == {PIN, CODES, "headroom"}
+    assert set(corner.values()) == {0.0}
+    for moved in (gain[PIN], split.total[PIN]):
+        assert moved == pytest.approx(0.1 * level / LSB, rel=1e-9)
+    assert [split.remainder(name) for name in (PIN, "headroom")] == [0.0, 0.0]
 
 
 def test_noisy_measures_are_judged_over_seeds(tmp_path: Path) -> None:

@@ -10,7 +10,7 @@ import pytest
 from scanned import SHARED, level, scan_of, sine
 
 from frontend_sim.archive import ScanRecord, open_record, record_run
-from frontend_sim.archive.set_table import open_set
+from frontend_sim.archive.set_table import SetTable, open_set
 from frontend_sim.comparison import (
     RecordComparison,
     attribute,
@@ -217,19 +217,36 @@ at_least = "1 V"
 """
 
 
+def night(directory: Path, name: str, gain: str, keep: str = "nothing", seed: int = 1) -> SetTable:
+    """Replay a few draws of a scan, and return their table."""
+    (directory / name).mkdir()
+    text = NIGHT.replace("gain = 1\n", f"gain = {gain}\n")
+    (directory / name / "scan.toml").write_text(text, encoding="utf-8")
+    rules = f'base = "scan.toml"\nseed = {seed}\nkeep = "{keep}"\n[draws]\ncount = 2\n'
+    (directory / name / "set.toml").write_text(rules, encoding="utf-8")
+    replay_set(directory / name / "set.toml", directory / f"{name} done", on="in-process")
+    return open_set(directory / f"{name} done")
+
+
 def test_nights_of_scans_are_attributed(tmp_path: Path) -> None:
     """The scan that both nights vary is run with each change alone, as a single chain is."""
-    tables = []
-    for name, gain in (("one", "1"), ("two", "1.01")):
-        (tmp_path / name).mkdir()
-        text = NIGHT.replace("gain = 1\n", f"gain = {gain}\n")
-        (tmp_path / name / "scan.toml").write_text(text, encoding="utf-8")
-        rules = 'base = "scan.toml"\nseed = 1\nkeep = "nothing"\n[draws]\ncount = 2\n'
-        (tmp_path / name / "set.toml").write_text(rules, encoding="utf-8")
-        replay_set(tmp_path / name / "set.toml", tmp_path / f"{name} done", on="in-process")
-        tables.append(open_set(tmp_path / f"{name} done"))
+    tables = night(tmp_path, "one", "1"), night(tmp_path, "two", "1.01")
     split = attribute_sets(*tables, compare_sets(*tables))
     (share,) = split.shares
     assert share.moved["oil: pin, mean"] == pytest.approx(0.01 / LSB, rel=1e-9)
     assert share.moved["oil: headroom"] == pytest.approx(-0.01, rel=1e-6)
     assert share.moved["water: pin, mean"] == 0.0
+
+
+def test_records_of_nights_of_scans_are_compared_channel_by_channel(tmp_path: Path) -> None:
+    """Pins and codes of each channel have a row; what changed in one does not show in the other."""
+    first = night(tmp_path, "first", "1", "all")
+    found = compare_sets(first, night(tmp_path, "second", "1.01", "all"))
+    rows = {row.name: row for row in found.columns}
+    assert found.records == 2
+    assert rows["oil: pin"].mean == pytest.approx(0.01 / LSB, rel=1e-9)
+    assert rows["oil: pin"].finding == rows["oil: codes"].finding == "differs"
+    assert rows["water: pin"].finding == rows["water: codes"].finding == "same"
+    reseeded = compare_sets(first, night(tmp_path, "third", "1", "all", seed=2))
+    assert not reseeded.differs, reseeded.alarms
+    assert {row.name for row in reseeded.columns} == set(rows)

@@ -116,6 +116,16 @@ def test_equal_seeds_are_compared_exactly(first: SetTable, tmp_path: Path) -> No
     assert not passed.differs
 
 
+def test_rounding_of_a_pin_is_no_difference(first: SetTable, tmp_path: Path) -> None:
+    """Pins of nights are the same to a billionth of the range, as those of two records are."""
+    for change, finding in (("1e-12", "same"), ("1e-8", "differs")):
+        offset = f"{0.1 + 1e3 * float(change) * 3.3:.13f} mV"
+        found = compare_sets(first, night(tmp_path, change, rules(keep="all"), offset=offset))
+        pin = column(found, "pin")
+        assert pin.finding == finding
+        assert pin.mean == pytest.approx(float(change) * 4096.0, rel=1e-2)
+
+
 def test_verdicts_that_flip_count(first: SetTable, tmp_path: Path) -> None:
     """A higher limit makes runs fail that held before; their number is that of the margins."""
     second = night(tmp_path, "second", rules(), corner="3.4 kHz")

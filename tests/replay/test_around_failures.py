@@ -132,6 +132,30 @@ def test_without_a_window_it_is_a_hundred_conversions(
     assert replay_set(file, tmp_path / "night", on="in-process", around=AROUND).kept == 3
 
 
+@pytest.mark.parametrize("moved", ['aperture_jitter = "2 us"', 'aperture_delay = "150 us"'])
+def test_conversions_beyond_the_ends_of_the_run_are_kept(tmp_path: Path, moved: str) -> None:
+    """Jitter and delay move the first and the last conversion over the ends; both fail here."""
+    always = CLIPS.replace('"1.6 V"', '"0.1 V"').replace('"1.65 V"', '"3.6 V"')
+    always = always.replace("[adc]", f"[adc]\n{moved}")
+    rules = 'keep = "around-failures"\naround = "0 s"\n[draws]\ncount = 4\n'
+    file = made_set(tmp_path, rules, scenario=always)
+    night, beyond = replay_set(file, tmp_path / "night", on="in-process"), False
+    for number in range(1, 5):
+        with record(night, f"draw {number:04d}") as part:
+            assert part.count == part.whole_count > 0
+            beyond |= bool(part.time[0] < 0.0 or part.time[-1] > 0.2)
+    assert beyond  # the test can see what it is about
+
+
+def test_a_stretch_ends_with_its_run(tmp_path: Path) -> None:
+    """What is kept around a failure near an end is no longer than the run."""
+    rules = 'keep = "around-failures"\naround = "1 h"\n[draws]\ncount = 1\n'
+    file = made_set(tmp_path, rules, scenario=CLIPS)
+    with record(replay_set(file, tmp_path / "night", on="in-process")) as part:
+        assert part.stretches is not None
+        assert part.stretches.spans.tolist() == [[0.0, 0.2]]
+
+
 def test_a_failure_without_a_place_keeps_the_verdict_alone(tmp_path: Path) -> None:
     """A budget of noise is none of this or that conversion; a run that holds keeps no record."""
     noise = 'kind = "noise"\nat_most = "{}"\nbasis = "budget"\n'

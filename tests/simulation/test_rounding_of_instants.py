@@ -6,7 +6,7 @@ from typing import Any
 
 import numpy as np
 import pytest
-from drives import InMemory, outputs
+from drives import InMemory, marched, outputs
 
 from frontend_sim.analog.chain import chain_of
 from frontend_sim.analog.stages import Gain, RcLowpass, TransportDelay
@@ -95,3 +95,55 @@ def test_a_long_stretch_of_points_is_read_in_parts() -> None:
     found = outputs(chain, [Counted(np.ones(10), 1e6)], np.array([10.0, 10.5]), interval=0.5)
     np.testing.assert_allclose(found, 1.0, rtol=1e-12)
     assert largest <= 2 * (1 << 22) + 2
+
+
+BIT = np.spacing(157e-6)
+
+
+@pytest.mark.parametrize("late", [-1e-16, -3e-18, -4 * BIT, BIT, 5 * BIT, 40 * BIT, 1e-17, 1e-16])
+@pytest.mark.parametrize("before", [(), ({"kind": "transport-delay", "delay": 7e-6},)])
+@pytest.mark.parametrize("grid_rate", [1e6, 4e6, 1.3e6])
+def test_a_conversion_just_before_an_edge_sees_the_clipped_value_before_it(
+    late: float, before: tuple[dict[str, Any], ...], grid_rate: float
+) -> None:
+    """An edge a ten-billionth of a step beside a conversion: never a mixture of both its sides.
+
+    Within 1e-9 of a step the edge counts as at the point of the grid, but the conversion there
+    still looks before it; the clip of 5 V to 1 V came on top of 0.2 V, and gave -3.8 V. Beside a
+    grid of 1.3 MHz an edge counts as at the conversion within four units in its last place.
+    """
+    run = simulate(
+        Scenario.model_validate(
+            {
+                "stimulus": {"kind": "step", "before": 0.2, "after": 5.0, "at": 150e-6 + late},
+                "chain": [*before, {"kind": "rail-limit", "low": -1.0, "high": 1.0}],
+                "adc": {"rate": 1e6, "bits": 12, "low": -5.0, "high": 5.0},
+                "simulation": {"duration": 200e-6, "grid_rate": grid_rate},
+            }
+        )
+    )
+    edge = 157 if before else 150
+    np.testing.assert_allclose(run.pin[:edge], 0.2, rtol=0, atol=1e-12)
+    np.testing.assert_allclose(run.pin[edge + 1 :], 1.0, rtol=0, atol=1e-12)
+    seen = late <= 4 * BIT  # as the linear part of the engine has it
+    assert run.pin[edge] == pytest.approx(1.0 if seen else 0.2, abs=1e-12)
+
+
+@pytest.mark.parametrize("share", [-1e-10, -1e-12, -1e-14, 1e-15, 1e-13, 1e-11])
+def test_held_points_beside_conversions_are_clipped_as_a_whole(share: float) -> None:
+    """A recording whose rate is off by a rounding and more: each pin is the clip of a point.
+
+    The mixture of a point's value with the next one's clip lay up to 6 V away.
+    """
+    from frontend_sim.analog.cut import CutChain
+    from frontend_sim.analog.stages import RailLimit
+    from frontend_sim.simulation.limited import Limited
+    from frontend_sim.simulation.linear import Axis
+
+    data = np.random.default_rng(5).uniform(-4.0, 4.0, 500)
+    drive, times = InMemory(data, 7e3 * (1.0 + share), "hold"), np.arange(400) / 7e3
+    cut, axis = CutChain.of([RailLimit(low=-1.0, high=1.0)]), Axis(1.0 / 7e3, 1.0 / 7e3)
+    model = Limited.of(cut, [drive], [len(cut.points) - 1], "settled", axis, 7e3, 0.06)
+    seen = outputs(chain_of([Gain(gain=1.0)]), [drive], times, interval=1.0 / 7e3)
+    found = marched(model, times, None)
+    np.testing.assert_allclose(found, np.clip(seen, -1.0, 1.0), rtol=0, atol=1e-12)

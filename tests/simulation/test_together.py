@@ -97,11 +97,22 @@ def test_what_cannot_go_side_by_side_goes_alone(base: Scenario, values: dict[str
         same(blocks(simulation), blocks(Simulation(scenario)))
 
 
-def test_only_those_with_the_same_instants_go_together(base: Scenario) -> None:
-    """A run of another rate among the others goes alone."""
+@pytest.mark.parametrize(
+    "values",
+    [
+        {"adc.rate": "5 kHz"},
+        {"adc.first": "100 us"},
+        {"adc.aperture_delay": "3 us"},
+        {"simulation.duration": "1 s"},
+    ],
+)
+def test_only_those_with_the_same_instants_go_together(
+    base: Scenario, values: dict[str, object]
+) -> None:
+    """A run of another clock or length among the others goes alone."""
     draws = [
-        with_values(base, {"adc.rate": rate, "chain[1].resistance": 1e4 + k})
-        for k, rate in enumerate(["10 kHz", "10 kHz", "5 kHz", "10 kHz"])
+        with_values(base, {**(values if k == 2 else {}), "chain[1].resistance": 1e4 + k})
+        for k in range(4)
     ]
     runs = [Simulation(each) for each in draws]
     assert together(runs) == 3

@@ -139,14 +139,15 @@ class Aliasing:
         names = self.folder.chain.points
         number = len(names) - 1 if point is None else names.index(point)
         response = Response(self.folder.chain, number, self.scenario.simulation.initial)
-        total, uncertainty, methods = np.zeros(len(instants)), 0.0, []
+        total, unsure, methods = np.zeros(len(instants)), np.zeros(len(instants)), []
         if len(instants):
             for part in self.parts:
-                values, unsure, how = above_in(response, part, instants, self.half, self.edges)
-                total, uncertainty = total + values, uncertainty + unsure
+                values, beside, how = above_in(response, part, instants, self.half, self.edges)
+                total, unsure = total + values, unsure + beside
                 methods.append(how)
-        volts = total if single or not len(time) else sieve.codes(total, len(time))
-        return AliasError(time, volts, adc.lsb, uncertainty, tuple(methods))
+        if not single and len(time):
+            total, unsure = (sieve.codes(row, len(time)) for row in (total, unsure))
+        return AliasError(time, total, adc.lsb, unsure, tuple(methods))
 
 
 def duration_of(scenario: Scenario) -> float:

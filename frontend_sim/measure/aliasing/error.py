@@ -40,15 +40,20 @@ class AliasError:
     time : shape (K,) [s]
     volts : the error, before rounding, shape (K,) [V]
     lsb : width of a code [V]
-    uncertainty : how far the split of the response is known, 0 where it is exact [V]
+    unsure : how far the split of the response is known, 0 where it is exact, shape (K,) [V]
     methods : how the part above half the rate was found, source by source
     """
 
     time: Real
     volts: Real
     lsb: float
-    uncertainty: float
+    unsure: Real
     methods: tuple[str, ...]
+
+    @property
+    def uncertainty(self) -> float:
+        """How far the least certain code is known [V]."""
+        return float(np.max(self.unsure, initial=0.0))
 
     @cached_property
     def rms(self) -> float:
@@ -123,7 +128,7 @@ class Response:
 
 def above_in(
     response: Response, part: Above, instants: Real, limit: float, edges: Edges
-) -> tuple[Real, float, str]:
+) -> tuple[Real, Real, str]:
     """Return what the part of a stimulus above a frequency does to a point of the chain.
 
     Parameters
@@ -135,7 +140,7 @@ def above_in(
 
     Returns
     -------
-    The waveform, shape (K,) [V], its uncertainty [V], and how it was found.
+    The waveform and its uncertainty, both of shape (K,) [V], and how it was found.
     """
     if part.whole:
         return _split_of_response(response, part, instants, limit, edges)
@@ -144,9 +149,10 @@ def above_in(
         high = [_points_above(drive, instants, limit, edges) for drive in part.points]
         drives += [drive for drive in high if drive is not None]
         how = f"ideal split of its points, {edges} ends; what remains goes through the chain"
+    sure = np.zeros(len(instants))
     if not drives:
-        return np.zeros(len(instants)), 0.0, f"{part.source}: nothing lies above"
-    return response.to(drives, instants), 0.0, f"{part.source}: {how}"
+        return sure, sure, f"{part.source}: nothing lies above"
+    return response.to(drives, instants), sure, f"{part.source}: {how}"
 
 
 def _points_above(drive: UniformDrive, instants: Real, limit: float, edges: Edges) -> Points | None:
@@ -165,7 +171,7 @@ def _points_above(drive: UniformDrive, instants: Real, limit: float, edges: Edge
 
 def _split_of_response(
     response: Response, part: Above, instants: Real, limit: float, edges: Edges
-) -> tuple[Real, float, str]:
+) -> tuple[Real, Real, str]:
     """Split the response itself, on a fine grid, where the stimulus has edges."""
     stop, rate = float(instants[-1]), 2.0 * limit
     cells = max(math.ceil(stop * rate), 1) + 1 + 2 * MARGIN
@@ -182,9 +188,8 @@ def _split_of_response(
         high = split_above(values[::step], fine * rate / step, limit, edges)
         found.append(_between(times[::step], values[::step] - high, instants))
     whole = response.to(part.whole, instants)
-    uncertainty = float(np.max(np.abs(found[0] - found[1]), initial=0.0))
     how = f"ideal split of its response at {fine} points for each code, {edges} ends"
-    return whole - found[0], uncertainty, f"{part.source}: {how}"
+    return whole - found[0], np.abs(found[0] - found[1]), f"{part.source}: {how}"
 
 
 def _between(times: Real, values: Real, instants: Real) -> Real:

@@ -101,4 +101,4 @@ def sampled_alias_error(
     width = positive(lsb, "the LSB", "V")
     high = split_above(row, own, 0.5 * slower, edges)
     how = f"ideal split of the samples, {edges} ends"
-    return AliasError(np.arange(len(row)) / own, high, width, 0.0, (how,))
+    return AliasError(np.arange(len(row)) / own, high, width, np.zeros(len(row)), (how,))

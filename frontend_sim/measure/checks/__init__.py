@@ -2,7 +2,7 @@
 
 from frontend_sim.measure.checks.before_run import checks_before_run
 from frontend_sim.measure.checks.evaluate import evaluate_checks, evaluated, subject_of_run
-from frontend_sim.measure.checks.failures import failures_in
+from frontend_sim.measure.checks.failures import extent_of, failures_in
 from frontend_sim.measure.checks.impossible import refuse_impossible
 from frontend_sim.measure.checks.keeper import Keeper
 from frontend_sim.measure.checks.table import EVALUATIONS, Evaluation
@@ -15,6 +15,7 @@ __all__ = [
     "checks_before_run",
     "evaluate_checks",
     "evaluated",
+    "extent_of",
     "failures_in",
     "refuse_impossible",
     "subject_of_run",

@@ -27,22 +27,32 @@ def alias_error(check: AliasErrorCheck, subject: Subject) -> Answer:
     volts = error.volts[first:]
     peak, rms = float(max(abs(volts.max()), abs(volts.min()))), float((volts**2).mean() ** 0.5)
     chosen = peak if check.quantity == "peak" else rms
+    # Of the root of a mean square the largest uncertainty is a bound too.
+    unsure = float(error.unsure[first:].max())
     value, unit = scaled(check.at_most, chosen, subject.adc.lsb, subject.whole)
+    uncertainty, _ = scaled(check.at_most, unsure, subject.adc.lsb, subject.whole)
     most = in_volts(check.at_most, subject.adc.lsb, subject.whole)
     beside = (
         Result("alias error, rms", rms / subject.adc.lsb, "LSB", method="; ".join(error.methods)),
         Result("alias error, peak", peak / subject.adc.lsb, "LSB", method="largest size"),
-        Result("uncertainty", error.uncertainty / subject.adc.lsb, "LSB", method="of the split"),
+        Result("uncertainty", unsure / subject.adc.lsb, "LSB", method="of the split"),
     )
+
+    def advice() -> str:
+        if chosen <= most:
+            return words.cannot_be_told(unsure)
+        return _advice(found, (value + uncertainty) / float(check.at_most))
+
     return Answer(
         value,
         unit,
         float(check.at_most),
         "at most",
-        "stimulus above half the rate, through the chain, by superposition",
-        lambda: _advice(found, value / float(check.at_most)),
+        f"stimulus above half the rate, through the chain, by superposition{words.known(unsure)}",
+        advice,
         beside,
-        peaks(check.quantity, subject.time[first:], volts, most),
+        peaks(check.quantity, subject.time[first:], volts, most - unsure),
+        uncertainty,
     )
 
 

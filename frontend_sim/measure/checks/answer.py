@@ -30,6 +30,7 @@ class Answer:
     beside : numbers that were found on the way, without verdict
     where : tells where in time the check fails, shape (N, 2) [s], see ``places``; called only then.
         None for a number that is made from all that the check reads of the run
+    uncertainty : how far the value is known; it counts against the check, in ``unit``
     """
 
     value: float
@@ -40,16 +41,19 @@ class Answer:
     advice: Callable[[], str] = str
     beside: tuple[Result, ...] = ()
     where: Callable[[], Real] | None = None
+    uncertainty: float = 0.0
 
     @property
     def margin(self) -> float:
-        """How far the value stays on the right side of its limit, below zero where it fails.
+        """How far the value surely stays on the right side of its limit, below zero where it fails.
 
         A value on its limit to rounding has no margin, and holds.
         """
-        if math.isclose(self.value, self.limit, rel_tol=ROUNDING, abs_tol=0.0):
+        sense = SENSES[self.bound]
+        reached = self.value + sense * self.uncertainty
+        if math.isclose(reached, self.limit, rel_tol=ROUNDING, abs_tol=0.0):
             return 0.0
-        return SENSES[self.bound] * (self.limit - self.value)
+        return sense * (self.limit - reached)
 
     @property
     def holds(self) -> bool:

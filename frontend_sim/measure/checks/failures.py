@@ -23,8 +23,17 @@ def failures_in(subject: Subject) -> Real:
     does one that cannot be told.
     """
     found = [_failure(check, subject) for check in subject.scenario.check]
-    spans: Real = np.minimum(np.concatenate([NOWHERE, *found]), subject.duration)
+    spans: Real = np.concatenate([NOWHERE, *found])
     return spans
+
+
+def extent_of(subject: Subject) -> tuple[float, float]:
+    """Return the first and the last instant of a run [s].
+
+    Jitter moves the first conversion before its beginning, a delay the last one behind its end.
+    """
+    time = subject.time
+    return float(np.min(time, initial=0.0)), float(np.max(time, initial=subject.duration))
 
 
 def _failure(check: AnyCheck, subject: Subject) -> Real:

@@ -7,6 +7,7 @@ import numpy as np
 from frontend_sim.errors import MeasureError
 from frontend_sim.measure.checks import words
 from frontend_sim.measure.checks.answer import Answer, scaled
+from frontend_sim.measure.checks.still import standing
 from frontend_sim.measure.checks.subject import Subject
 from frontend_sim.measure.level import decibel
 from frontend_sim.measure.mains.search import mains_levels
@@ -46,6 +47,7 @@ def mains_level(check: MainsLevelCheck, subject: Subject) -> Answer:
         )
 
     method = f"least squares under a Hann window; strongest at {where:.6g} Hz"
+    method += standing(subject, check.after)
     return Answer(value, unit, limit, "at most", method, advice, beside)
 
 

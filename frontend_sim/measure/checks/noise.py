@@ -9,6 +9,7 @@ import numpy as np
 from frontend_sim.errors import MeasureError
 from frontend_sim.measure.checks.answer import Answer, scaled
 from frontend_sim.measure.checks.places import nowhere
+from frontend_sim.measure.checks.still import standing
 from frontend_sim.measure.checks.subject import Subject
 from frontend_sim.measure.circuit_noise import circuit_noise
 from frontend_sim.measure.noise.summary import CREST, Noise, noise_of
@@ -36,7 +37,7 @@ def noise(check: NoiseCheck, subject: Subject) -> Answer:
     else:
         found = seen_noise(subject, check.after)
         volts = found.peak_to_peak if wide else found.rms
-        method = RUN_EXTENT if wide else RUN
+        method = (RUN_EXTENT if wide else RUN) + standing(subject, check.after)
     value, unit = scaled(check.at_most, volts, subject.adc.lsb, subject.whole)
     limit = float(check.at_most)
     rounded = check.basis == "run"
@@ -47,7 +48,7 @@ def noise(check: NoiseCheck, subject: Subject) -> Answer:
 
 
 def noise_free_bits(check: NoiseFreeBitsCheck, subject: Subject) -> Answer:
-    """Return log2( range / (6.6 rms) ), infinite without noise.
+    """Return log2( range / (6.6 rms) ), at most the bits that the codes have.
 
     Raises
     ------
@@ -58,16 +59,26 @@ def noise_free_bits(check: NoiseFreeBitsCheck, subject: Subject) -> Answer:
         rms, method = budget_of(subject).rms, BUDGET
     else:
         rms, method = seen_noise(subject, check.after).rms, RUN
-    value = math.log2(subject.whole / (CREST * rms)) if rms > 0.0 else math.inf
+    lsb, extent = subject.adc.lsb, CREST * rms
+    value = math.log2(subject.whole / max(extent, lsb))
+    if extent < lsb:
+        method += f"; no more than the {value:.4g} bits of the codes, which resolve no less noise"
     return Answer(
         value,
         "bit",
         check.at_least,
         "at least",
         f"log2(range / ({CREST:g} rms)); {method}",
-        lambda: advice(subject, 2.0 ** (check.at_least - value), check.basis == "run"),
+        lambda: _bits_advice(check, subject, value),
         where=None if check.basis == "run" else nowhere,
     )
+
+
+def _bits_advice(check: NoiseFreeBitsCheck, subject: Subject, value: float) -> str:
+    bits = math.log2(subject.whole / subject.adc.lsb)
+    if check.at_least > bits:
+        return f"take more bits, or averages that keep more: the codes have {bits:.4g}"
+    return advice(subject, 2.0 ** (check.at_least - value), check.basis == "run")
 
 
 def noise_possible(check: NoiseCheck | NoiseFreeBitsCheck, subject: Subject) -> None:

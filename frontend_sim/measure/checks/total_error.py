@@ -53,15 +53,22 @@ def total_error(check: TotalErrorCheck, subject: Subject) -> Answer:
     value, unit = scaled(check.at_most, chosen, subject.adc.lsb, subject.whole)
     limit = float(check.at_most)
     most = in_volts(check.at_most, subject.adc.lsb, subject.whole)
+    unsure = float(found.unsure.max())
+    uncertainty, _ = scaled(check.at_most, unsure, subject.adc.lsb, subject.whole)
     return Answer(
         value,
         unit,
         limit,
         "at most",
-        _method(found.ideal),
-        lambda: _advice(found, value / limit),
+        _method(found.ideal) + words.known(unsure),
+        lambda: (
+            _advice(found, (value + uncertainty) / limit)
+            if chosen > most
+            else words.cannot_be_told(unsure)
+        ),
         tuple(_beside(found)),
-        peaks(check.quantity, found.time, found.volts, most),
+        peaks(check.quantity, found.time, found.volts, most - unsure),
+        uncertainty,
     )
 
 

@@ -30,6 +30,19 @@ def voltage(value: float) -> str:
     return _text(value, VOLTAGE)
 
 
+def known(unsure: float) -> str:
+    """Return how far a voltage is known, for its method; nothing where it is exact."""
+    return f", known to {voltage(unsure)}" if unsure > 0.0 else ""
+
+
+def cannot_be_told(unsure: float) -> str:
+    """Return the advice where a value lies within its limit by less than it is known [V]."""
+    return (
+        f"whether it holds cannot be told: the value is known to {voltage(unsure)}, and lies "
+        "nearer to its limit; let after leave out the edges of the stimulus, or filter them more"
+    )
+
+
 def percent(factor: float) -> str:
     """Return how much more or less a factor is, ``12 %``; of large ones, ``a factor of 3.5``."""
     if not 0.0 < factor < 2.0:

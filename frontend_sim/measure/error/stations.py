@@ -74,6 +74,20 @@ class Stations:
         """What of the codes lies above half the rate."""
         return self.aliasing.error(self.run.time)
 
+    @cached_property
+    def beyond(self) -> AliasError:
+        """What of the quantity lies above half the rate, at the codes [unit]."""
+        return self.aliasing.error(self.run.time, "stimulus")
+
+    @cached_property
+    def gain(self) -> float:
+        """Volts for one unit of the quantity at zero frequency [V/unit].
+
+        What blocks dc has no gain of its own to compare; its pass band is the ideal's.
+        """
+        own = dc_gain(self.simulation.chain)
+        return own if 0.0 < abs(own) < math.inf else self.ideal.gain
+
     def codes(self, values: Real) -> Real:
         """Return what the converter's weights make of values at all looks, shape (K,) [V]."""
         if len(self.sieve.weights) == 1:
@@ -98,17 +112,13 @@ class Stations:
         yield "", ideal.gain * self.quantity(self._nominal()) + ideal.offset
         true = self.quantity(time)
         yield "timing", ideal.gain * true + ideal.offset
-        own = dc_gain(chain)
-        # What blocks dc has no gain of its own to compare; its pass band is the ideal's.
-        gain = own if 0.0 < abs(own) < math.inf else ideal.gain
-        yield "gain", gain * true + ideal.offset
+        yield "gain", self.gain * true + ideal.offset
         constant = constant_of(chain, stages_of(self.run.scenario))
-        line = gain * true + constant
+        line = self.gain * true + constant
         yield "offset", line
         if self.aliasing.possible:
             # Behind the sieve the newest look stands for the code; the rest is settling.
-            beyond = self.aliasing.error(time, "stimulus").volts
-            yield "beyond half the rate", line - gain * beyond
+            yield "beyond half the rate", line - self.gain * self.beyond.volts
         settings = self.run.scenario.simulation
         whole = Response(chain, len(chain.points) - 1, settings.initial)
         linear = whole.to(self.simulation.drives, self.looks) + constant

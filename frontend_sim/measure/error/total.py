@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import math
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from functools import cached_property
 from typing import TYPE_CHECKING
 
@@ -46,6 +46,7 @@ class TotalError:
     ideal : the line, or curve, that firmware reads by
     lsb : width of a code [V]
     parts : causes whose waveforms add up to the error
+    unsure : how far the error itself is known, 0 unless the ideal is band-limited, shape (K,) [V]
     uncertainty : how far the split into settling and aliasing is known, 0 where it is exact [V]
     """
 
@@ -54,6 +55,7 @@ class TotalError:
     ideal: Ideal
     lsb: float
     parts: tuple[Part, ...]
+    unsure: Real
     uncertainty: float = 0.0
 
     @cached_property
@@ -91,8 +93,12 @@ class TotalError:
         if first == len(self.time):
             raise MeasureError(f"no conversion follows the instant {instant:g} s")
         parts = tuple(Part(part.name, part.volts[first:]) for part in self.parts)
-        return TotalError(
-            self.time[first:], self.volts[first:], self.ideal, self.lsb, parts, self.uncertainty
+        return replace(
+            self,
+            time=self.time[first:],
+            volts=self.volts[first:],
+            parts=parts,
+            unsure=self.unsure[first:],
         )
 
 
@@ -159,15 +165,22 @@ def total_error(
         else:
             start = line = now
         last = now
-    if band_limited:
-        start = start + found.pop(BEYOND, np.zeros(len(start)))
+    unsure = np.zeros(len(start))
+    if band_limited and BEYOND in found:
+        start = start + found.pop(BEYOND)
+        unsure = abs(stations.gain) * stations.beyond.unsure
     if ideal.curve is not None:
         bent = stations.ideal_codes() - line
         start, found["nonlinearity"] = start + bent, found["nonlinearity"] - bent
     parts = tuple(Part(name, found[name]) for name in ORDER if name in found)
-    uncertainty = stations.folded.uncertainty
     return TotalError(
-        run.time, run.voltage - start, ideal, run.scenario.adc.lsb, parts, uncertainty
+        run.time,
+        run.voltage - start,
+        ideal,
+        run.scenario.adc.lsb,
+        parts,
+        unsure,
+        stations.folded.uncertainty,
     )
 
 

@@ -21,7 +21,7 @@ class CornerExcess:
     ----------
     low, high : smallest and largest value at the corners
     below, above : how far the extremes between them go beyond; zero where they do not
-    share : of the runs between that lie beyond [1]
+    share : of the runs between that have a value and lie beyond [1]
     where : number of the run that goes farthest, among those between
     """
 
@@ -79,7 +79,7 @@ def corner_excess(corners: Real, between: Real, tolerance: float = 0.0) -> Corne
         high,
         max(float(np.max(below)), 0.0),
         max(float(np.max(above)), 0.0),
-        float(np.mean(beyond)),
+        np.count_nonzero(beyond) / np.count_nonzero(~np.isnan(inner)),
         int(np.argmax(far)),
     )
 

@@ -12,7 +12,7 @@ from frontend_sim.scenario.checks.noise import BASIS, NoiseBasis
 
 
 class NoiseFreeBitsCheck(CodeCheck):
-    """Enough bits of the code stand still: log2( range / (6.6 rms noise) )."""
+    """Enough of the code's own bits stand still: log2( range / (6.6 rms noise) )."""
 
     kind: Literal["noise-free-bits"] = "noise-free-bits"
     at_least: Bits = Field(description="fewest noise-free bits")

@@ -92,6 +92,69 @@ def test_noise_free_bits() -> None:
     assert "converter" in found.advice
 
 
+REST = {"kind": "step", "before": 1.0, "after": 1.0}
+
+
+@pytest.mark.parametrize("basis", ["run", "budget"])
+@pytest.mark.parametrize("bits", [12, 16])
+def test_codes_have_no_more_quiet_bits_than_bits(basis: str, bits: int) -> None:
+    """Without noise all bits stand still: those of the converter, and not one more."""
+    check = {"kind": "noise-free-bits", "basis": basis, "at_least": bits}
+    tables: dict[str, Any] = {"stimulus": REST, "chain": [], "adc": {"bits": bits}}
+    (found,) = verdicts(check, **tables)
+    assert (found.value, found.verdict) == (pytest.approx(bits, rel=1e-12), "holds")
+    assert f"no more than the {bits} bits of the codes" in found.method
+    (more,) = verdicts({**check, "at_least": bits + 0.1}, **tables)
+    assert more.verdict == "fails"
+    assert more.advice.startswith(
+        f"take more bits, or averages that keep more: the codes have {bits}"
+    )
+
+
+@pytest.mark.parametrize("basis", ["run", "budget"])
+def test_averages_have_the_bits_that_they_keep(basis: str) -> None:
+    """Sixteen codes of 12 bits, added up and shifted by two, are of 14 bits."""
+    average = {"averaging": {"count": 16, "interval": "1 us", "shift": 2}}
+    check = {"kind": "noise-free-bits", "basis": basis, "at_least": 14}
+    (found,) = verdicts(check, stimulus=REST, chain=[], adc=average)
+    assert (found.value, found.verdict) == (pytest.approx(14.0, rel=1e-12), "holds")
+
+
+def test_rare_noise_is_no_more_bits_either() -> None:
+    """Where the pin moves within one code, its own movement is no measure of bits beyond 12."""
+    creep = {"kind": "sine", "amplitude": 1e-5, "frequency": 1013, "offset": 1.6501}
+    check = {"kind": "noise-free-bits", "basis": "run", "at_least": 12.5}
+    (found,) = verdicts(check, stimulus=creep, chain=[])
+    assert (found.value, found.verdict) == (pytest.approx(12.0, rel=1e-12), "fails")
+
+
+def test_standing_codes_say_that_they_stand() -> None:
+    """No noise and no hum in the codes is true of the codes, and told as what it is."""
+    noise = {"kind": "noise", "basis": "run", "at_most": "1 uV"}
+    extent = {**noise, "name": "extent", "quantity": "peak-to-peak"}
+    hum = {"kind": "mains-level", "at_most": "1 uV"}
+    tables: dict[str, Any] = {"chain": [], "simulation": {"duration": "100 ms"}}
+    for found in verdicts(noise, extent, hum, stimulus=REST, **tables):
+        assert (found.value, found.verdict) == (pytest.approx(0.0, abs=1e-12), "holds")
+        assert found.method.endswith(
+            "the codes stand still, and what moves none of them does not show"
+        )
+    sine = {"kind": "sine", "amplitude": 1e-3, "frequency": 50.0, "offset": 1.65}
+    for found in verdicts(noise, extent, hum, stimulus=sine, **tables):
+        assert "stand still" not in found.method
+
+
+@pytest.mark.parametrize("kind", ["snr", "sinad", "effective-bits", "sfdr"])
+def test_standing_codes_hold_no_tone_of_infinite_quality(kind: str) -> None:
+    """A tone that moves no code is none, and one of a few phases tells no noise: both fail."""
+    check = {"kind": kind, "at_least": 200 if kind != "effective-bits" else 20}
+    for amplitude, reason in ((1e-5, "all samples are equal"), (1.0, "phases of the tone only")):
+        sine = {"kind": "sine", "amplitude": amplitude, "frequency": 12.5e3, "offset": 1.6501}
+        (found,) = verdicts(check, stimulus=sine, **RECORD)
+        assert (found.verdict, found.value) == ("fails", None)
+        assert reason in found.method
+
+
 def test_noise_of_a_run_with_a_moving_signal() -> None:
     """Five LSB of noise and rounding, sqrt(25 + 1/12) LSB, on a sine; 20000 codes: 2 %."""
     check = {"kind": "noise", "basis": "run", "at_most": "6 LSB"}

@@ -12,6 +12,7 @@ from checked import FILTER, TAU, beside, made, verdicts
 
 from frontend_sim.errors import ScenarioError
 from frontend_sim.measure.checks import refuse_impossible
+from frontend_sim.measure.result import Result
 
 TWO = {
     "kind": "tones",
@@ -37,6 +38,63 @@ def test_alias_error_of_a_line() -> None:
                          stimulus=TWO)  # fmt: skip
     assert before.value == pytest.approx(0.05 / lsb, rel=0.01)
     assert "'tones, tone 2' at 47.3 kHz, which lands at 7.3 kHz" in before.advice
+
+
+@pytest.mark.parametrize("quantity", ["peak", "rms"])
+def test_an_alias_error_holds_only_as_far_as_it_is_known(quantity: str) -> None:
+    """A limit above the value and below value plus uncertainty fails, and says why; above, holds.
+
+    An edge has no split into lines, so what lies above half the rate is known to some LSB only.
+    """
+
+    def found(limit: float) -> Result:
+        check = {"kind": "alias-error", "point": "stimulus", "quantity": quantity}
+        (row,) = verdicts({**check, "at_most": f"{limit!r} LSB"}, chain=[])
+        return row
+
+    check = {"kind": "alias-error", "point": "stimulus", "at_most": "1 LSB"}
+    unsure = beside("alias-error: uncertainty", check, chain=[])
+    value = found(1.0).value
+    assert value is not None
+    assert 1.0 < unsure < value
+    near, far = found(value + 0.9 * unsure), found(value + 1.1 * unsure)
+    assert (near.verdict, far.verdict) == ("fails", "holds")
+    assert near.value == far.value == value
+    assert near.margin == pytest.approx(-0.1 * unsure, rel=1e-6)
+    assert near.advice.startswith("whether it holds cannot be told: the value is known to ")
+    assert found(0.9 * value).advice.startswith("lower the corner")
+
+
+def test_an_error_under_a_band_limit_holds_only_as_far_as_it_is_known() -> None:
+    """The limit of the quantity is known as far as that of the stimulus; without it all is."""
+
+    def found(limit: float, band_limited: bool = True) -> Result:
+        check = {"kind": "total-error", "band_limited": band_limited}
+        (row,) = verdicts({**check, "at_most": f"{limit!r} LSB"})
+        return row
+
+    stimulus = {"kind": "alias-error", "point": "stimulus", "at_most": "1 LSB"}
+    unsure = beside("alias-error: uncertainty", stimulus)
+    value, plain = found(1.0).value, found(1.0, band_limited=False).value
+    assert value is not None
+    assert plain is not None
+    near, far = found(value + 0.9 * unsure), found(value + 1.1 * unsure)
+    assert (near.verdict, far.verdict) == ("fails", "holds")
+    assert near.advice.startswith("whether it holds cannot be told")
+    assert ", known to " in near.method
+    assert found(plain + 0.1 * unsure, band_limited=False).verdict == "holds"
+
+
+def test_what_came_before_is_no_part_of_the_uncertainty() -> None:
+    """The edge at 1 ms is known worst; from 10 ms on a tenth of that is left at most.
+
+    So it is of averages, whose looks are known worst at one and the same edge.
+    """
+    check = {"kind": "alias-error", "at_most": "1 LSB"}
+    for adc in ({}, {"averaging": {"count": 4, "interval": "5 us"}}):
+        whole = beside("alias-error: uncertainty", check, adc=adc)
+        late = beside("alias-error: uncertainty", {**check, "after": "10 ms"}, adc=adc)
+        assert 0.0 < late < 0.1 * whole
 
 
 def test_a_slow_recording_is_no_proof(tmp_path: Path) -> None:

@@ -53,8 +53,9 @@ POWERS: dict[str, tuple[Scenario, str, float]] = {
                              -0.5),
     "noise by temperature": (made({"kind": "noise", "at_most": "1 LSB"}),
                              "environment.temperature", 0.5),
-    "noise-free bits by the range": (made({"kind": "noise-free-bits", "at_least": 8}), "adc.high",
-                                     1.0),
+    "noise-free bits by the range": (
+        made({"kind": "noise-free-bits", "at_least": 8}, adc={"bits": 24}), "adc.high", 1.0,
+    ),
     "level by resistance": (
         made({"kind": "level", "at": "1.1 ms", "at_least": "0.5 V"}), "chain[1].resistance",
         -(100e-6 / TAU) * math.exp(-100e-6 / TAU) / -math.expm1(-100e-6 / TAU),

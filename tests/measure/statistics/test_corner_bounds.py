@@ -55,6 +55,14 @@ def test_a_plain_number_keeps_its_digits() -> None:
     assert "up to 0.21 V above" in found.text("level", "V")
 
 
+def test_runs_without_a_value_are_no_part_of_the_share() -> None:
+    """Of two runs that have a value one lies beyond; nothing is known of the other two."""
+    found = corner_excess(np.array([0.0, 1.0]), np.array([np.nan, 0.5, np.nan, 1.5]))
+    assert found is not None
+    assert (found.share, found.where) == (0.5, 3)
+    assert "50 % of them beyond" in found.text("level", "V")
+
+
 def test_midpoints_name_the_parameter() -> None:
     """Ends and middle of one parameter at a time show along which the response turns."""
     lines = {"a": (0.0, 1.0, 0.0), "b": (0.0, 1.0, 2.0), "c": (1.0, 0.5, 1.2)}
