@@ -280,8 +280,8 @@ class _Nights:
             yield f"{self.reseeded} of {len(self.one)} runs have other seeds"
         if not self.records:
             yield (
-                "no run has a record in both nights, so pins and codes are not compared; keep "
-                'them with keep = "all"'
+                "no run has in both nights a record that tells something of the other, so pins and "
+                'codes are not compared; keep them with keep = "all"'
             )
         for table in (self.first, self.second):
             if not table.complete:

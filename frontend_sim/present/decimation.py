@@ -46,11 +46,12 @@ def broken(breaks: NDArray[np.int64], time: Real, *values: Real) -> tuple[Real, 
 
     Parameters
     ----------
-    breaks : numbers of the points that begin anew
+    breaks : numbers of the points that begin anew, not the first
     time, values : shapes (K,)
     """
     rows = (np.insert(row, breaks, np.nan) for row in values)
-    return np.insert(time, breaks, time[breaks]), *rows
+    # A step is held up to the next point: at the end of the gap it would lead over it.
+    return np.insert(time, breaks, time[breaks - 1]), *rows
 
 
 def shown_flags(flags: NDArray[np.bool_], columns: int = COLUMNS) -> NDArray[np.int64]:

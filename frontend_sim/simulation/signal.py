@@ -10,9 +10,9 @@ import numpy as np
 from frontend_sim.analog.cut import Place
 from frontend_sim.analog.limits import Segments
 from frontend_sim.simulation.kernels import Real
+from frontend_sim.simulation.pieces import Pieces
 from frontend_sim.simulation.piecewise import ULPS as SNAPPED
 from frontend_sim.simulation.piecewise import snapped
-from frontend_sim.simulation.pieces import Pieces
 from frontend_sim.simulation.polygon import Polygon
 from frontend_sim.stimulus.drive import Lines
 
@@ -113,4 +113,5 @@ def _to_nearest(instants: Real, events: Real) -> Real:
     """Return how far the nearest event lies from each instant [s]."""
     after = np.minimum(np.searchsorted(events, instants), len(events) - 1)
     before = np.maximum(after - 1, 0)
-    return np.minimum(np.abs(events[after] - instants), np.abs(events[before] - instants))
+    nearest: Real = np.minimum(np.abs(events[after] - instants), np.abs(events[before] - instants))
+    return nearest

@@ -132,12 +132,16 @@ def test_without_a_window_it_is_a_hundred_conversions(
     assert replay_set(file, tmp_path / "night", on="in-process", around=AROUND).kept == 3
 
 
-@pytest.mark.parametrize("moved", ['aperture_jitter = "2 us"', 'aperture_delay = "150 us"'])
-def test_conversions_beyond_the_ends_of_the_run_are_kept(tmp_path: Path, moved: str) -> None:
-    """Jitter and delay move the first and the last conversion over the ends; both fail here."""
+@pytest.mark.parametrize(
+    ("moved", "around"), [('aperture_jitter = "2 us"', "1 h"), ('aperture_delay = "150 us"', "0 s")]
+)
+def test_conversions_beyond_the_ends_of_the_run_are_kept(
+    tmp_path: Path, moved: str, around: str
+) -> None:
+    """Jitter moves the first conversion before the beginning, a delay the last one over the end."""
     always = CLIPS.replace('"1.6 V"', '"0.1 V"').replace('"1.65 V"', '"3.6 V"')
     always = always.replace("[adc]", f"[adc]\n{moved}")
-    rules = 'keep = "around-failures"\naround = "0 s"\n[draws]\ncount = 4\n'
+    rules = f'keep = "around-failures"\naround = "{around}"\n[draws]\ncount = 4\n'
     file = made_set(tmp_path, rules, scenario=always)
     night, beyond = replay_set(file, tmp_path / "night", on="in-process"), False
     for number in range(1, 5):
@@ -244,6 +248,9 @@ def test_no_line_leads_over_what_is_not_kept(nights: tuple[Replayed, Replayed]) 
     assert gaps == 3
     lines = [line for line in figure.axes[0].lines if line.get_label() == "codes read back"]
     assert [np.count_nonzero(np.isnan(line.get_ydata())) for line in lines] == [gaps]
+    at, codes = np.asarray(lines[0].get_xdata()), np.asarray(lines[0].get_ydata())
+    ends = np.flatnonzero(np.isnan(codes))  # a step is held up to the next point, of which
+    assert np.array_equal(at[ends], at[ends - 1])  # the one of a gap must not be behind it
     assert figure.get_suptitle().count(f"{count} of 2000 conversions, around failures") == 1
     assert ("kept around failures", f"{count}") in page.facts
     (signal,) = (section for section in page.sections if section.name == "signal")
