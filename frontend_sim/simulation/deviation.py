@@ -148,7 +148,10 @@ class Deviation:
         ends = np.array([max(done - 1, 0), until - 1]) / self.rate
         near = slack(ends, self.interval)
         start, stop = ends + near - self.delay
-        times = jump_times(self.drives, float(start), float(stop), self.interval) + self.delay
+        # What jumps later on comes as a bend to an input that only bends where a drive jumps.
+        times = self.delay + jump_times(
+            self.drives, float(start), float(stop), self.interval, bends=self.place.jumps
+        )
         if not self.place.jumps:
             # The input only bends there, which a piece may do at its ends.
             position = times * self.rate

@@ -1,10 +1,11 @@
-"""Where a stimulus jumps."""
+"""Where a stimulus jumps, and where it bends."""
 
 from __future__ import annotations
 
 from collections.abc import Sequence
 
 import numpy as np
+from numpy.typing import NDArray
 
 from frontend_sim.simulation.kernels import Real
 from frontend_sim.stimulus.drive import Drive, UniformDrive
@@ -25,12 +26,18 @@ def slack(times: Real, interval: float) -> Real:
     return ROUNDING * np.maximum(np.abs(times), interval)
 
 
-def jump_times(drives: Sequence[Drive], start: float, stop: float, interval: float) -> Real:
+def jump_times(
+    drives: Sequence[Drive], start: float, stop: float, interval: float, bends: bool = False
+) -> Real:
     """Return the times in (start, stop] at which a drive jumps, sorted and each once [s].
 
     t = 0 counts, since the signal before it is another; times nearer than rounding are one.
+
+    Parameters
+    ----------
+    bends : whether those count too at which the slope of a drive jumps, but for a recording
     """
-    found = [_jumps(drive, start, stop, interval) for drive in drives]
+    found = [_jumps(drive, start, stop, interval, bends) for drive in drives]
     if start < 0.0 <= stop:
         found.append(np.zeros(1))
     times = np.sort(np.concatenate(found)) if found else np.empty(0)
@@ -40,14 +47,26 @@ def jump_times(drives: Sequence[Drive], start: float, stop: float, interval: flo
     return times[apart]
 
 
-def _jumps(drive: Drive, start: float, stop: float, interval: float) -> Real:
+def _jumps(drive: Drive, start: float, stop: float, interval: float, bends: bool) -> Real:
     if isinstance(drive, UniformDrive):
         return _changes(drive, start, stop) if drive.between == "hold" else np.empty(0)
     times = drive.events(max(start, 0.0), stop) if stop > 0.0 else np.empty(0)
     if len(times) == 0:
         return times
-    before, after = drive.values(times - slack(times, interval)), drive.values(times)
-    return times[np.abs(after - before) > NO_JUMP * np.maximum(np.abs(after), np.abs(before))]
+    earlier = times - slack(times, interval)
+    found = _differ(drive.values(earlier), drive.values(times))
+    if bends:
+        slope = drive.readout @ drive.generator
+        before = np.where(earlier < 0.0, 0.0, drive.states(np.maximum(earlier, 0.0)) @ slope)
+        found |= _differ(before, drive.states(times) @ slope)
+    return times[found]
+
+
+def _differ(before: Real, after: Real) -> NDArray[np.bool_]:
+    differ: NDArray[np.bool_] = np.abs(after - before) > NO_JUMP * np.maximum(
+        np.abs(after), np.abs(before)
+    )
+    return differ
 
 
 def _changes(drive: UniformDrive, start: float, stop: float) -> Real:

@@ -9,7 +9,6 @@ import numpy as np
 import pytest
 
 from frontend_sim.analog.chain import chain_of
-from frontend_sim.analog.cut import CutChain
 from frontend_sim.analog.port import OutputImpedance, Port
 from frontend_sim.analog.stages.base import Stage
 from frontend_sim.analog.stages.buffer import Buffer
@@ -143,8 +142,7 @@ def _held(
 ) -> np.ndarray:
     """Run the recursion of the package over instants, in one piece or cut."""
     network = _network(keys, stage)
-    cut = CutChain.of([stage])
-    models = Models.of(chain_of([stage]), cut, (drive,), initial, 1e-3)
+    models = Models(chain_of([stage]), None, (drive,), initial, 1e-3)
     axis = Axis(1.0 / RATE, 2.0 / RATE)
     steps = HeldSteps(network, network.signals(models, axis, Stepping()), initial, 0.0, 0)
     parts = []

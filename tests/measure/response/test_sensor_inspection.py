@@ -46,11 +46,11 @@ def test_a_curve_is_taken_as_its_tangent() -> None:
     ("inspected", "parts"),
     [
         (PROBE, ["for a step of 1 K", "379.3 uV/K", "step of 6591 K"]),
-        (SHOCK, ["for a step of 1 m/s^2", "mV/(m/s^2)", "step of 250.0 m/s^2"]),
+        (SHOCK, ["for a step of 1 g", "492.8 mV/g", "step of 25.49 g"]),
     ],
 )
 def test_the_tables_name_the_unit(inspected: Scenario, parts: list[str]) -> None:
-    """Gains are volts per unit, and the step that fills the range is in the unit."""
+    """Gains are volts per unit of the file, and the step that fills the range is in it too."""
     from rich.console import Console
 
     stream = io.StringIO()
