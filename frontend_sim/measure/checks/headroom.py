@@ -12,6 +12,8 @@ from frontend_sim.scenario.checks.headroom import HeadroomCheck
 
 NEAR = 1e-3
 """A shift by less than this share of what the pin may go through is none."""
+ROUNDING = 1e-12
+"""A pin this share of the range's ends from where it may just be is there."""
 
 
 def headroom(check: HeadroomCheck, subject: Subject) -> Answer:
@@ -19,8 +21,10 @@ def headroom(check: HeadroomCheck, subject: Subject) -> Answer:
     first = subject.first_after(check.after)
     adc, pin = subject.adc, subject.pin[first:]
     room = min(adc.high - float(np.max(pin)), float(np.min(pin)) - adc.low)
-    value, unit = scaled(check.at_least, room, adc.lsb, subject.whole)
     needed = in_volts(check.at_least, adc.lsb, subject.whole)
+    if abs(room - needed) <= ROUNDING * max(abs(adc.low), abs(adc.high)):
+        room = needed
+    value, unit = scaled(check.at_least, room, adc.lsb, subject.whole)
 
     def where() -> Real:
         return beyond(subject.time[first:], needed - np.minimum(adc.high - pin, pin - adc.low))

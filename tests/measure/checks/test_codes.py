@@ -52,6 +52,16 @@ def test_headroom_in_every_unit(limit: str, value: float) -> None:
     assert found.verdict == "holds"
 
 
+@pytest.mark.parametrize(
+    ("beyond", "verdict"), [(4e-16, "holds"), (-4e-16, "holds"), (1e-9, "fails")]
+)
+def test_rounding_decides_no_headroom(beyond: float, verdict: str) -> None:
+    """A step to the very end of the range has no room and needs none, whatever rounding adds."""
+    step = {"kind": "step", "after": 3.3 + beyond, "at": "1 ms"}
+    (found,) = verdicts({"kind": "headroom", "at_least": "0 V"}, stimulus=step, chain=[])
+    assert found.verdict == verdict
+
+
 def test_less_gain_may_need_a_shift_too() -> None:
     """0 V to 3.2 V, 0.2 V to either end of 3.3 V: 2.9 V / 3.2 V of the gain, and up by 0.2 V."""
     step = {"kind": "step", "after": 3.2, "at": "1 ms"}
