@@ -54,5 +54,28 @@ def made_set(directory: Path, text: str, name: str = "set.toml", scenario: str =
     return file
 
 
+RECORDED = """
+format = 1
+title = "Invented: noise through a filter"
+
+[stimulus]
+kind = "recording"
+file = "recorded.csv"
+rate = "100 kHz"
+
+[[chain]]
+kind = "rc-lowpass"
+resistance = { value = "10 kohm", tolerance = "5 %" }
+capacitance = "4.7 nF"
+
+[adc]
+rate = "10 kHz"
+bits = 16
+low = "-5 V"
+high = "5 V"
+input_noise = "100 uV"
+"""
+"""A recording through a filter with a spread, for draws."""
+
 DRAWS = 'seed = 3\nkeep = "nothing"\n[draws]\ncount = {}\n'
 """A set of so many draws."""

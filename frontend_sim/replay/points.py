@@ -183,7 +183,7 @@ def matching(pattern: str, directory: Path) -> list[Path]:
     inside = str(given.relative_to(given.anchor)) if given.is_absolute() else pattern
     try:
         return sorted(file.absolute() for file in root.glob(inside) if file.is_file())
-    except (ValueError, NotImplementedError, IndexError) as error:
+    except (ValueError, NotImplementedError, IndexError) as error:  # as pathlib refuses, by case
         raise ScenarioError(f"{pattern!r} is no pattern of files: {error}") from None
 
 

@@ -15,7 +15,7 @@ from pathlib import Path
 
 import numpy as np
 import pytest
-from nights import DRAWS, made_set
+from nights import DRAWS, RECORDED, made_set
 
 from frontend_sim import Simulation
 from frontend_sim.archive import open_record
@@ -97,29 +97,6 @@ def test_a_killed_worker_is_replaced_and_loses_nothing(
     assert killed
     assert done.complete
     assert (done.ran, done.digest) == (RUNS, whole.digest)
-
-
-RECORDED = """
-format = 1
-title = "Invented: noise through a filter"
-
-[stimulus]
-kind = "recording"
-file = "recorded.csv"
-rate = "100 kHz"
-
-[[chain]]
-kind = "rc-lowpass"
-resistance = { value = "10 kohm", tolerance = "5 %" }
-capacitance = "4.7 nF"
-
-[adc]
-rate = "10 kHz"
-bits = 16
-low = "-5 V"
-high = "5 V"
-input_noise = "100 uV"
-"""
 
 
 def test_draws_over_a_recording_are_the_same_in_any_batch(

@@ -12,7 +12,7 @@ from typing import Any
 
 import numpy as np
 import pytest
-from nights import made_set
+from nights import RECORDED, made_set
 
 from frontend_sim.archive import open_record
 from frontend_sim.errors import ScenarioError
@@ -24,28 +24,6 @@ pytestmark = [
     pytest.mark.filterwarnings("default"),
     pytest.mark.skipif(not Path("/proc/self").is_dir(), reason="looks at processes in /proc"),
 ]
-
-RECORDED = """
-format = 1
-title = "Invented: noise through a filter"
-
-[stimulus]
-kind = "recording"
-file = "recorded.csv"
-rate = "100 kHz"
-
-[[chain]]
-kind = "rc-lowpass"
-resistance = { value = "10 kohm", tolerance = "5 %" }
-capacitance = "4.7 nF"
-
-[adc]
-rate = "10 kHz"
-bits = 16
-low = "-5 V"
-high = "5 V"
-input_noise = "100 uV"
-"""
 
 SET = 'seed = 3\nkeep = "all"\n[draws]\ncount = 6\n'
 

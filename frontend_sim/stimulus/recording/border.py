@@ -22,6 +22,6 @@ def border(file: Path, fault: str) -> Iterator[None]:
             yield
     except RecordingError:
         raise
-    except Exception as error:  # noqa: BLE001 - see above
+    except Exception as error:  # noqa: BLE001 - a dozen kinds, from any parser
         said = " ".join(str(error).split())
         raise RecordingError(f"{file}: {fault}: {said or type(error).__name__}") from None

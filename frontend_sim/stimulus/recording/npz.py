@@ -58,7 +58,7 @@ class _Member:
                 with archive.open(self._name) as stream:
                     whole = npy_format.read_array(stream, allow_pickle=False)
                 return Array("", whole.shape, whole.dtype, lambda index: whole[index])
-            unpacked = tempfile.TemporaryFile(prefix="frontend-sim-")  # noqa: SIM115 - see below
+            unpacked = tempfile.TemporaryFile(prefix="frontend-sim-")  # noqa: SIM115 - outlives this call
             # Without a name, it goes with this object or with the process, whatever ends that.
             weakref.finalize(self, unpacked.close)
             with archive.open(self._name) as stream:
