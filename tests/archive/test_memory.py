@@ -10,8 +10,9 @@ from pathlib import Path
 import pytest
 
 SCRIPT = """
-import resource, sys
+import sys
 from archived import Cut, made_run, scenario
+from resident import resident_peak
 from frontend_sim.archive import record_run
 
 class Long(Cut):
@@ -20,7 +21,7 @@ class Long(Cut):
             yield from super().blocks()
 
 record_run(Long(made_run(scenario(), 50_000, ("stimulus", "pin")), 50_000), sys.argv[1])
-print(resource.getrusage(resource.RUSAGE_SELF).ru_maxrss)
+print(resident_peak())
 """
 
 
@@ -34,7 +35,7 @@ def peak(path: Path, blocks: int) -> float:
         check=True,
         env={**os.environ, "PYTHONPATH": os.pathsep.join(places)},
     )
-    return float(done.stdout) / (1.0 if sys.platform != "darwin" else 1024.0) / 1024.0
+    return float(done.stdout) / 2**20
 
 
 @pytest.mark.skipif(os.name != "posix", reason="needs the system's account of memory")

@@ -24,7 +24,8 @@ import numpy as np
 if TYPE_CHECKING:
     from frontend_sim.scenario.model import Scenario
 
-sys.path.insert(0, str(Path(__file__).resolve().parents[1]))
+TESTS = str(Path(__file__).resolve().parents[1])
+sys.path.insert(0, TESTS)
 
 POINT_RATE, CONVERSION_RATE, CORNER = 1e6, 20e3, 8e3
 
@@ -225,7 +226,9 @@ def start_row(runs: int) -> Row:
 
 
 MEMORY = """
-import resource, sys
+import sys
+sys.path.insert(0, sys.argv[2])
+from resident import resident_peak
 from frontend_sim.scenario.model import Scenario
 from frontend_sim.simulation import Simulation
 scenario = Scenario.model_validate({
@@ -234,7 +237,7 @@ scenario = Scenario.model_validate({
     "adc": {"rate": 20e3, "bits": 16, "low": -8.0, "high": 8.0},
 })
 count = sum(len(block.codes) for block in Simulation(scenario).blocks())
-print(count, resource.getrusage(resource.RUSAGE_SELF).ru_maxrss)
+print(count, resident_peak())
 """
 
 
@@ -248,9 +251,9 @@ def memory_row(points: int) -> Row:
             part = data[start : start + (1 << 22)]
             part[:] = rng.standard_normal(len(part), dtype=np.float32)
         del data
-        command = [sys.executable, "-c", MEMORY, str(file)]
+        command = [sys.executable, "-c", MEMORY, str(file), TESTS]
         done = subprocess.run(command, check=True, capture_output=True, text=True)
-    gibibytes = int(done.stdout.split()[1]) / 2**20
+    gibibytes = int(done.stdout.split()[1]) / 2**30
     return Row(f"{points:g} points from a file, resident memory in GiB", gibibytes, 1.0, False)
 
 

@@ -55,6 +55,8 @@ MOST_SECONDS, MOST_OVERHEAD, MOST_GROWTH = 180.0, 10e-3, 1.25
 
 def night(count: int, directory: Path) -> None:
     """Run a night of so many draws, and print what it took; runs in a process of its own."""
+    from resident import resident_peak
+
     from frontend_sim.replay import replay_set
 
     (directory / "base.toml").write_text(SCENARIO)
@@ -68,7 +70,7 @@ def night(count: int, directory: Path) -> None:
     told = {
         "seconds": done.seconds,
         "processor": sum(each.ru_utime + each.ru_stime for each in used),
-        "memory": resource.getrusage(resource.RUSAGE_SELF).ru_maxrss,
+        "memory": resident_peak(),
     }
     begun = time.monotonic()
     page(directory)
