@@ -24,7 +24,8 @@ SURE = 0.5
 MOST_TRIAL = 20_000_000
 """Grid points in one trial; a longer run is tried over its first part."""
 MOST_WORK = 60_000_000
-"""Grid points of all trials for limiters together, each limiter counted: some ten seconds."""
+"""Grid points of all trials for limiters together, each limiter counted, and the events by what
+they cost: some ten seconds."""
 MOST_GRID = 1_000_000_000
 """Grid points in a whole run that "auto" may ask for."""
 
@@ -65,6 +66,7 @@ class Trials:
     points : the converter's pin, as points of the chain
     axis : of the conversions
     instants : the instants of conversions start to stop - 1
+    progress : called now and then while a trial goes on, with 0: nothing of the run is done yet
     """
 
     rate: float
@@ -75,6 +77,7 @@ class Trials:
     points: list[int]
     axis: Axis
     instants: Callable[[int, int], Real]
+    progress: Callable[[float], None] | None = None
 
     def pin(self, models: Models, stepping: Stepping, count: int) -> Real:
         """Return the pin at the first ``count`` conversions, shape (count,) [LSB]."""
@@ -82,6 +85,8 @@ class Trials:
         states, values = model.start(), []
         for start in range(0, count, WAVEFORM_TILE):
             stop = min(start + WAVEFORM_TILE, count)
+            if self.progress is not None:
+                self.progress(0.0)
             states, (pin,) = model.advance(states, start, self.instants(start, stop))
             values.append(pin)
         return np.concatenate(values) / self.lsb
@@ -164,10 +169,11 @@ def pick_limiter_grid(models: Models, trials: Trials) -> LimiterGrid:
     before: Real | None = None
     while models.duration * rate <= MOST_GRID:
         count = trials.fitting(rate)
-        work += count / trials.rate * rate * len(models.cut.places)
+        points = count / trials.rate * rate + start.events * count / trials.count
+        work += points * len(models.cut.places)
         if changes and work > MOST_WORK:
-            note = _stopped(trials, 0.5 * rate, estimate)
-            return LimiterGrid(0.5 * rate, estimate, None, (*start.notes, note))
+            note = () if estimate <= trials.accuracy else (_stopped(trials, 0.5 * rate, estimate),)
+            return LimiterGrid(0.5 * rate, estimate, None, start.notes + note)
         pin = trials.pin(models, Stepping(rate=rate), count)
         if before is not None:
             distance = Distance()

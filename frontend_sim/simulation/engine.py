@@ -53,6 +53,7 @@ class Simulation:
     ----------
     scenario : what to simulate
     block : instants computed at once; any multiple of ``WAVEFORM_TILE`` gives the same result
+    progress : called with 0 now and then while a grid is searched for
 
     Attributes
     ----------
@@ -71,7 +72,9 @@ class Simulation:
         If the circuit is unusable, the stimulus cannot be read, or the run would be empty.
     """
 
-    def __init__(self, scenario: Scenario, block: int = BLOCK) -> None:
+    def __init__(
+        self, scenario: Scenario, block: int = BLOCK, progress: Progress | None = None
+    ) -> None:
         """Compose the chain, open the stimulus, count the conversions, pick the grid."""
         if block <= 0 or block % WAVEFORM_TILE:
             raise ScenarioError(f"block must be a multiple of {WAVEFORM_TILE}, given {block}")
@@ -96,7 +99,7 @@ class Simulation:
         self._models = Models(self.chain, cut, drives, initial, self.duration)
         self._shared = SharedReference.of(scenario)
         self.sampler: SwitchedInput | None = switched_input(scenario)
-        self._plan = Plan.of(scenario, *self._trials())
+        self._plan = Plan.of(scenario, *self._trials(progress))
         if cut is None:
             self.notes += scenario_notes(scenario)
         self.notes += amplifier_notes(scenario, stages)
@@ -216,7 +219,9 @@ class Simulation:
         -------
         Shape (points, K).
         """
-        longest = max(float(instants[-1]), 1.0 / self.scenario.adc.rate) if len(instants) else 1.0
+        # The usual interval too: how many are computed at once hangs on it.
+        steps = np.diff(instants, prepend=0.0)
+        longest = float(np.max(steps, initial=1.0 / self.scenario.adc.rate))
         numbers = [self.chain.points.index(point) for point in points]
         model = self._models.model(numbers, Axis(longest, longest), self._plan.stepping)
         _, found = model.advance(model.start(), 0, instants)
@@ -230,7 +235,7 @@ class Simulation:
         origin = adc.first + adc.aperture_delay
         return Axis(digitizer.interval, digitizer.longest, uniform, origin)
 
-    def _trials(self) -> tuple[Models, Trials]:
+    def _trials(self, progress: Progress | None) -> tuple[Models, Trials]:
         """Return what trials of grids are made of: of the pin, or of what samples it."""
         models, points = self._models, self._pin
         if self.sampler is not None:
@@ -243,7 +248,8 @@ class Simulation:
             self.scenario.simulation.accuracy,
         )
         looks = clock.look_count(adc, self.count)
-        return models, Trials(*scale, looks, points, self.look_axis(), digitizer.instants)
+        axis, instants = self.look_axis(), digitizer.instants
+        return models, Trials(*scale, looks, points, axis, instants, progress)
 
     @property
     def _waveform_points(self) -> list[int]:

@@ -3,9 +3,9 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from itertools import pairwise
 
 import numpy as np
-from numpy.typing import NDArray
 
 from frontend_sim.simulation.kernels import Real
 from frontend_sim.stimulus.drive import Drive, UniformDrive
@@ -53,20 +53,23 @@ def _jumps(drive: Drive, start: float, stop: float, interval: float, bends: bool
     times = drive.events(max(start, 0.0), stop) if stop > 0.0 else np.empty(0)
     if len(times) == 0:
         return times
-    earlier = times - slack(times, interval)
-    found = _differ(drive.values(earlier), drive.values(times))
-    if bends:
-        slope = drive.readout @ drive.generator
-        before = np.where(earlier < 0.0, 0.0, drive.states(np.maximum(earlier, 0.0)) @ slope)
-        found |= _differ(before, drive.states(times) @ slope)
+    apart = slack(times, interval)
+    earlier = times - apart
+    before, after = drive.states(np.maximum(earlier, 0.0)), drive.states(times)
+    row, at_rest, sides = drive.readout, drive.initial, []
+    for _ in range(3 if bends else 2):
+        sides.append((np.where(earlier < 0.0, at_rest, before @ row), after @ row))
+        row, at_rest = row @ drive.generator, 0.0
+    found = np.zeros(len(times), np.bool_)
+    for value, slope in pairwise(sides):
+        # A smooth signal changes too from the one side to the other.
+        smooth = 2.0 * apart * _larger(*slope)
+        found |= np.abs(value[1] - value[0]) > NO_JUMP * _larger(*value) + smooth
     return times[found]
 
 
-def _differ(before: Real, after: Real) -> NDArray[np.bool_]:
-    differ: NDArray[np.bool_] = np.abs(after - before) > NO_JUMP * np.maximum(
-        np.abs(after), np.abs(before)
-    )
-    return differ
+def _larger(before: Real, after: Real) -> Real:
+    return np.maximum(np.abs(before), np.abs(after))
 
 
 def _changes(drive: UniformDrive, start: float, stop: float) -> Real:

@@ -65,14 +65,13 @@ class LimitedParts:
         points = place.probed()
         delay = float(self.cut.chain.delay[place.entry])
         grid = self.probe(points, Axis(1.0 / self.rate, 2.0 / self.rate, uniform=True), False)
+        rates = [drive.rate for drive in self.drives if isinstance(drive, UniformDrive)]
         events = None
         if self.grid is None:
-            longest = self.duration + delay
-            events = self.probe(points, Axis(longest, longest), True)
-        interval = max(
-            (1.0 / drive.rate for drive in self.drives if isinstance(drive, UniformDrive)),
-            default=0.0,
-        )
+            # As near to each other as points are: a held recording may jump at each of its own.
+            axis = Axis(1.0 / max([self.rate, *rates]), self.duration + delay)
+            events = self.probe(points, axis, True)
+        interval = 1.0 / min(rates) if rates else 0.0
         at_once = None if self.grid is None else self._at_once(place, grid)
         self.deviations.append(
             Deviation(place, self.rate, grid, events, self.drives, delay, interval, at_once)

@@ -76,39 +76,28 @@ class PiecewisePath:
         self, state: State, drive: PiecewiseDrive, instants: Real, y: Real
     ) -> tuple[State, int]:
         """Advance through instants, fill in their outputs, and return the number of nodes."""
-        slack = self._slack(instants)
+        slack = self.slack(instants)
         events = drive.events(state.node, float(instants[-1] + slack[-1]))
         instants = snapped(instants, events, slack)
         nodes = np.union1d(instants, events)
         nodes = _refreshed(nodes[nodes > state.node], state.node, drive.fresh)
         g = drive.states(np.concatenate([[state.node], nodes]))
-        x = state.x.copy()
-        states = np.empty((len(nodes) + 1, len(x)))
-        states[0] = x
-        self._march(x, g, np.diff(nodes, prepend=state.node), states[1:])
+        n = len(state.x)
+        z = self.table.march(state.x, g, np.diff(nodes, prepend=state.node))
         at = np.searchsorted(nodes, instants, side="right")
         values = np.empty_like(y)
-        kernels.readout(states[at], g[at] @ drive.readout, self.outputs.c, self.outputs.d, values)
+        kernels.readout(z[at, :n], g[at] @ drive.readout, self.outputs.c, self.outputs.d, values)
         y[:] = values
-        return State(x, float(nodes[-1]) if len(nodes) else state.node), len(nodes)
+        node = float(nodes[-1]) if len(nodes) else state.node
+        return State(z[-1, :n].copy(), node), len(nodes)
 
-    def at_events(self, instants: Real, drive: PiecewiseDrive) -> Real:
-        """Return instants, those that differ from an event by rounding only moved onto it."""
-        slack = self._slack(instants)
-        begin, end = float(instants[0] - 2.0 * slack[0]), float(instants[-1] + slack[-1])
-        return snapped(instants, drive.events(begin, end), slack)
-
-    def _slack(self, instants: Real) -> Real:
+    def slack(self, instants: Real) -> Real:
+        """Return within which time an event is at an instant [s]."""
         return ULPS * np.spacing(instants + self.outputs.delay)
 
     def rested(self, state: State, number: int, instants: Real) -> State:
         """Return the state after instants at which all was zero, see ``Path``."""
         return State(state.x, max(state.node, float(instants[-1])))
-
-    def _march(self, x: Real, g: Real, steps: Real, states: Real) -> None:
-        if len(x) and len(steps):
-            table = self.table
-            kernels.march(x, g, steps, table.unit, table.system, table.table, table.stop, states)
 
 
 def snapped(instants: Real, events: Real, slack: Real) -> Real:

@@ -10,20 +10,29 @@ import numpy as np
 
 from frontend_sim.simulation.jumps import NO_JUMP, jump_times
 from frontend_sim.simulation.models import Models
-from frontend_sim.stimulus.drive import Drive, UniformDrive
+from frontend_sim.stimulus.drive import Drive, LineDrive, UniformDrive
 
 PER_RADIAN = 0.5
 """Points of the first grid per radian of the fastest tone, and per time constant."""
 
 LOOKS = 64
-"""Parts of a run in which jumps are looked for, one after the other."""
+"""Parts of a run in which jumps and events are looked for, one after the other."""
+
+EVENT, HELD = 40.0, 8.0
+"""Points of the grid that cost as much as an event of a drive, and as a point that is held."""
 
 
 @dataclass(frozen=True)
 class FirstGrid:
-    """The rate that the search begins with [Hz], and what had to be decided."""
+    """The rate that the search begins with [Hz], and what had to be decided.
+
+    Parameters
+    ----------
+    events : what the events of the stimulus cost each time, in points of the grid
+    """
 
     rate: float
+    events: float
     notes: tuple[str, ...] = ()
 
 
@@ -55,7 +64,8 @@ def first_multiple(models: Models, conversion_rate: float, most: int) -> FirstGr
         wanted = max(wanted, affordable)
     if wanted > rate:
         rate *= 2.0 ** math.ceil(math.log2(wanted / rate) - 1e-9)
-    return FirstGrid(rate, notes)
+    events = sum(_events(drive, models.duration) for drive in models.drives)
+    return FirstGrid(rate, events, notes)
 
 
 def _base(drives: tuple[Drive, ...], conversion_rate: float) -> float:
@@ -69,10 +79,20 @@ def _base(drives: tuple[Drive, ...], conversion_rate: float) -> float:
 
 
 def _content(drive: Drive) -> float:
-    """Return the fastest rate in a drive's generator [rad/s]."""
-    if isinstance(drive, UniformDrive):
+    """Return a bound of the fastest rate in a drive's generator [rad/s].
+
+    That of a sweep is a chain of integrators, which has no eigenvalues to tell it.
+    """
+    if isinstance(drive, UniformDrive | LineDrive):
         return 0.0
-    return float(np.max(np.abs(np.linalg.eigvals(drive.generator)), initial=0.0))
+    return float(np.max(np.sum(np.abs(drive.generator), axis=1), initial=0.0))
+
+
+def _events(drive: Drive, duration: float) -> float:
+    if isinstance(drive, UniformDrive):
+        return HELD * duration * drive.rate if drive.between == "hold" else 0.0
+    edges = np.linspace(0.0, duration, LOOKS + 1).tolist()
+    return EVENT * sum(len(drive.events(start, stop)) for start, stop in pairwise(edges))
 
 
 def _fastest_pole(models: Models) -> float:

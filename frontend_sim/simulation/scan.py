@@ -54,6 +54,7 @@ class ScanSimulation:
     ----------
     scenario : what to simulate
     scans : whole scans computed at once; it bounds memory and never changes a code
+    progress : called with 0 now and then while grids are searched for
 
     Attributes
     ----------
@@ -67,7 +68,12 @@ class ScanSimulation:
         If a circuit is unusable, a stimulus cannot be read, or the run would be empty.
     """
 
-    def __init__(self, scenario: ScanScenario, scans: int | None = None) -> None:
+    def __init__(
+        self,
+        scenario: ScanScenario,
+        scans: int | None = None,
+        progress: Progress | None = None,
+    ) -> None:
         """Prepare every channel and the converter that they share."""
         self.scenario = scenario
         self.duration = scenario.run_length()
@@ -77,9 +83,10 @@ class ScanSimulation:
             channel.channel: channel for channel in scenario.channels(self.duration)
         }
         # They look at every conversion, also at those that are thrown away.
+        visits = [rhythm.visiting(adc, i, discarded=True) for i in range(len(self.channels))]
         self._simulations = [
-            Simulation(channel.model_copy(update={"adc": rhythm.visiting(adc, i, discarded=True)}))
-            for i, channel in enumerate(self.channels.values())
+            Simulation(channel.model_copy(update={"adc": each}), progress=progress)
+            for channel, each in zip(self.channels.values(), visits, strict=True)
         ]
         self._adc = rhythm.sequence(adc)
         self.count = self._adc.code_count(self.duration)
@@ -244,7 +251,7 @@ def simulate_scan(
     InputError
         If the scenario cannot be run, see ``ScanSimulation``.
     """
-    simulation = ScanSimulation(scenario)
+    simulation = ScanSimulation(scenario, progress=progress)
     found: dict[str, list[RunBlock]] = {name: [] for name in simulation.channels}
     for name, block in simulation.blocks(progress, discarded):
         found[name].append(block)

@@ -52,6 +52,6 @@ def simulate(
     """
     if isinstance(scenario, ScanScenario):
         return simulate_scan(scenario, progress, discarded)
-    simulation = Simulation(scenario, block)
+    simulation = Simulation(scenario, block, progress)
     blocks = list(simulation.blocks(progress))
     return Run.of(scenario, blocks, simulation.grid, simulation.notes)

@@ -7,8 +7,11 @@ from typing import Any
 import numpy as np
 import pytest
 
+from frontend_sim.analog.cut import CutChain
+from frontend_sim.analog.stages import RailLimit
 from frontend_sim.scenario.model import Scenario
 from frontend_sim.simulation import Run, accuracy, resolution, simulate
+from frontend_sim.simulation.models import Models
 
 STIMULI: dict[str, dict[str, Any]] = {
     "sine": {"kind": "sine", "amplitude": 1.2, "frequency": 997.0, "offset": 0.9},
@@ -128,6 +131,54 @@ def test_the_search_is_bounded_and_tells_where_it_stopped(monkeypatch: pytest.Mo
     assert "stopped at 80000 points per second, after grids of 1500 points together" in note
     assert f"the estimate of {run.grid.estimate:.3g} LSB is still above" in note
     assert "give simulation.grid_rate to look closer" in note
+
+
+def test_the_search_counts_events(monkeypatch: pytest.MonkeyPatch) -> None:
+    """A thousand edges cost more than the points of the first grids: no third one is tried.
+
+    The first two agree, so that there is nothing to warn of.
+    """
+    monkeypatch.setattr(accuracy, "MOST_WORK", 100_000)
+    edges = {"kind": "pulse", "low": -1.0, "high": 2.0, "width": 8e-6, "period": 20e-6}
+    plain = {
+        "chain": [{"kind": "rail-limit", "high": 0.7}],
+        "adc": {"rate": 1e4, "bits": 12, "low": -5.0, "high": 5.0},
+        "simulation": {"duration": 0.01},
+    }
+    few = {**edges, "period": 1e-3}
+    runs = [simulate(Scenario.model_validate({**plain, "stimulus": s})) for s in (few, edges)]
+    assert [run.grid.grid_rate for run in runs if run.grid is not None] == [4e4, 2e4]
+    assert not any("search" in note for run in runs for note in run.notes)
+
+
+def test_the_search_tells_that_it_goes_on() -> None:
+    """Nothing of a run is done while its grid is searched for, and this is told at every trial."""
+    told: list[float] = []
+    run = simulate(_scenario("sine", "amplifier between filters"), progress=told.append)
+    assert run.grid is not None
+    begun = told.index(next(share for share in told if share > 0.0))
+    assert begun >= np.log2(run.grid.grid_rate / 20e3)
+    assert told[-1] == 1.0
+
+
+def test_the_first_grid_for_a_sweep_is_that_for_its_highest_tone() -> None:
+    """A sweep is a chain of integrators, and yet as fast as the sine of its end."""
+    chirp = {"kind": "chirp", "start_frequency": 10.0, "stop_frequency": 1e5, "length": 0.01}
+    sine = {"kind": "sine", "frequency": 1e5}
+    rates = []
+    for stimulus in (chirp, sine):
+        drives = Scenario.model_validate(
+            {
+                "stimulus": {"amplitude": 1.0, **stimulus},
+                "chain": CHAINS["rails, twice"],
+                "adc": {"rate": 20e3, "bits": 12, "low": -3.3, "high": 3.3},
+                "simulation": {"duration": 0.01},
+            }
+        ).stimulus.drives((1,))
+        cut = CutChain.of([RailLimit(high=1.0)])
+        models = Models(cut.chain, cut, drives, "settled", 0.01)
+        rates.append(resolution.first_multiple(models, 20e3, accuracy.MOST_TRIAL).rate)
+    assert rates[0] == rates[1] >= 0.5 * 2.0 * np.pi * 1e5
 
 
 @pytest.mark.parametrize("order", [1.0, 1.5, 2.0, 3.0])

@@ -10,9 +10,10 @@ from hypothesis import example, given, settings
 from hypothesis import strategies as st
 
 from frontend_sim.analog.chain import Chain, chain_of
-from frontend_sim.analog.stages import Butterworth, Gain
+from frontend_sim.analog.stages import Butterworth, Gain, TransportDelay
 from frontend_sim.simulation.linear import Axis, Linear
-from frontend_sim.stimulus import Pulse
+from frontend_sim.stimulus import Chirp, Pulse
+from frontend_sim.stimulus.base import Stimulus
 
 RATE, COUNT, ROW = 20e3, 1000, 32
 BEGIN = 5 * ROW / RATE
@@ -58,3 +59,30 @@ def test_an_edge_a_rounding_off_a_row_takes_effect_there(off: int) -> None:
     pulse = {"at": BEGIN + off * np.spacing(BEGIN), "width": 1.1e-3}
     found = parts(model(chain_of([Gain(gain=2.0)]), pulse), [])
     np.testing.assert_array_equal(found[5 * ROW - 1 : 5 * ROW + 1], [0.0, 2.0])
+
+
+STIMULI: dict[str, Stimulus] = {
+    "edges": Pulse(high=1.0, at=1e-3, width=4.1e-4, period=1.37e-3),
+    "many edges between two instants": Pulse(high=1.0, width=3e-6, period=1.1e-5),
+    "slopes": Pulse(high=1.0, at=1e-3, width=4e-4, period=1.3e-3, rise=7e-5, fall=1e-5),
+    "sweep": Chirp(amplitude=1.0, start_frequency=10.0, stop_frequency=4e3, length=0.045),
+}
+
+
+@pytest.mark.parametrize("name", STIMULI)
+@pytest.mark.parametrize("origin", [0.0, 1.7e-5])
+def test_rows_agree_with_single_instants(name: str, origin: float) -> None:
+    """Instants that are known to be a row, and the same ones taken as any other instants.
+
+    One goes by powers of one step and by what is left of rows, the other from node to node. The
+    phase of a sweep is known to 1e-13 of a cycle.
+    """
+    drives = STIMULI[name].drives((1,))
+    chain = chain_of([Butterworth(order=5, corner=3e3), TransportDelay(delay=3.3e-5)])
+    instants, found = origin + np.arange(COUNT) / RATE, []
+    for uniform in (True, False):
+        axis = Axis(1.0 / RATE, 2.0 / RATE, uniform, origin)
+        made = Linear.of(chain, drives, [len(chain.points) - 1], "settled", axis)
+        found.append(made.advance(made.start(), 0, instants)[1][0])
+    assert np.ptp(found[0]) > 0.1
+    np.testing.assert_allclose(found[0], found[1], rtol=0, atol=1e-12)

@@ -35,6 +35,17 @@ def test_an_instant_is_held_if_it_is_near_to_what_was_asked_for(
     ]
 
 
+@given(st.integers(1, 10**7), st.integers(1, 10**5), st.floats(1e-3, 1e9), st.floats(0.0, 100.0))
+def test_instants_on_the_ends_are_held_however_they_round(
+    number: int, around: int, rate: float, first: float
+) -> None:
+    """A window of whole intervals has as many on both sides, and no further one."""
+    where = np.array([-around - 1, -around, 0, around, around + 1])
+    time = first / rate + (number + around + where) / rate
+    found = Stretches.about(np.array([[time[2], time[2]]]), around / rate)
+    assert found.hold(time).tolist() == [False, True, True, True, False]
+
+
 def test_a_part_of_a_block_has_what_lies_in_the_stretches() -> None:
     """Conversions and waveform by their own instants; what a block does not have stays empty."""
     time, fine = np.arange(10.0), np.arange(0.0, 10.0, 0.25)

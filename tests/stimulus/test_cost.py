@@ -7,7 +7,7 @@ from typing import Any
 import pytest
 
 from frontend_sim.scenario.model import Scenario
-from frontend_sim.simulation import kernels, simulate
+from frontend_sim.simulation import interval_kernels, simulate
 
 STIMULI: list[dict[str, Any]] = [
     {"kind": "step", "after": 1.0, "at": 1.234e-3},
@@ -25,13 +25,13 @@ STIMULI: list[dict[str, Any]] = [
 def nodes(monkeypatch: pytest.MonkeyPatch) -> list[int]:
     """Collect how many intervals the compiled march goes through."""
     counted: list[int] = []
-    march = kernels.march
+    march = interval_kernels.march
 
     def counting(x: Any, start: Any, steps: Any, *rest: Any) -> None:
         counted.append(len(steps))
         march(x, start, steps, *rest)
 
-    monkeypatch.setattr(kernels, "march", counting)
+    monkeypatch.setattr(interval_kernels, "march", counting)
     return counted
 
 

@@ -24,6 +24,9 @@ EDGE = 1e-9
 NEAR = 1e-11
 """An output this near to where it is driven, or to a rail, is there [V, and share of itself]."""
 
+TOWARDS = 0.2
+"""How far what ``between`` looks at is moved, see there."""
+
 GONE = 1e-20
 """A deviation of all states below this is none [V]."""
 
@@ -41,23 +44,29 @@ RESOLVED = 1e-18
 
 
 @compiled(inline="always")
-def valid(
+def margin(
     mode: int, static: bool, w: float, gap: float, slope: float,
     up: float, down: float, low: float, high: float,
-) -> bool:  # fmt: skip
-    """Tell whether a mode still holds, at w with a gap to where it is driven, and a slope asked."""
-    near = NEAR * (1.0 + abs(w))
+) -> float:  # fmt: skip
+    """Return how far a mode is from its end, at w with a gap to where it is driven, and a slope.
+
+    The mode holds where this is not negative [V, or V/s].
+    """
+    half = 0.5 * NEAR * (1.0 + abs(w))
     if mode == FREE:
-        return w <= high + 0.5 * near and w >= low - 0.5 * near and -down <= slope <= up
+        level = min(high + half - w, w - low + half)
+        return min(level, min(slope + down, up - slope))
     if static:
-        if mode in (UP, HIGH):
-            return gap >= -0.5 * near and (mode == HIGH or w <= high)
-        return gap <= 0.5 * near and (mode == LOW or w >= low)
+        left = half + (gap if mode in (UP, HIGH) else -gap)
+    elif mode == UP:
+        left = slope - up * (1.0 - EDGE)
+    elif mode == DOWN:
+        left = -down * (1.0 - EDGE) - slope
+    else:
+        left = slope if mode == HIGH else -slope
     if mode == UP:
-        return slope >= up * (1.0 - EDGE) and w <= high
-    if mode == DOWN:
-        return slope <= -down * (1.0 - EDGE) and w >= low
-    return slope >= 0.0 if mode == HIGH else slope <= 0.0
+        return min(left, high - w)
+    return min(left, w - low) if mode == DOWN else left
 
 
 @compiled(inline="always")
@@ -92,28 +101,29 @@ def mode_at(
 
 
 @compiled()
-def join(table: Any, count: int, whole: Any) -> None:
-    """whole = the step over ``count`` smallest steps, less the identity."""
-    whole[:] = 0.0
-    level = 0
-    while count > 0:
-        if count & 1:
-            e = table[level]
-            whole[:] += e + e @ whole
-        count >>= 1
-        level += 1
+def joined(steps: Any, count: int) -> Any:
+    """Return the steps over ``count`` smallest ones, free and held, as tables of one level."""
+    whole = np.zeros((2, 1, *steps.shape[2:]))
+    for way in range(2):
+        level, left = 0, count
+        while left > 0:
+            if left & 1:
+                e = steps[way, level]
+                whole[way, 0] += e + e @ whole[way, 0]
+            left >>= 1
+            level += 1
+    return whole
 
 
 @compiled()
 def doubled(dims: Any, table: Any, count: int, z: Any, work: Any) -> None:
-    """Advance z = [x, u, du/dt, ...] in place by ``count`` smallest steps."""
-    n = len(dims)
-    size, level = table.shape[1], 0
+    """Advance z = [x, u, du/dt, slope] in place by ``count`` smallest steps."""
+    n, level = len(dims), 0
     while count > 0:
         if count & 1:
             for r in range(n + 1):
                 total = 0.0
-                for k in range(size):
+                for k in range(n + 3):
                     total += table[level, r, k] * z[k]
                 work[r] = total
             for r in range(n + 1):
@@ -132,11 +142,127 @@ def most_count(lasting: Any, longest: Any, age: float) -> int:
     return most
 
 
+@compiled(inline="always")
+def window(
+    mode: int, static: bool, up: float, down: float, low: float, high: float
+) -> tuple[float, float, float, float, float, float]:  # fmt: skip
+    """Return between which slopes, levels of w and gaps a mode goes on for certain."""
+    ends = (low if low > -math.inf else 0.0, high if high < math.inf else 0.0)
+    near = 2.0 * NEAR * (1.0 + max(abs(ends[0]), abs(ends[1])))
+    any_low, any_high = -math.inf, math.inf
+    if mode == FREE:
+        return -down * (1.0 - EDGE), up * (1.0 - EDGE), low + near, high - near, any_low, any_high
+    lowest = low + near if mode == DOWN else any_low
+    highest = high - near if mode == UP else any_high
+    upwards = mode in (UP, HIGH)
+    if static and upwards:
+        return any_low, any_high, lowest, highest, near, any_high
+    if static:
+        return any_low, any_high, lowest, highest, any_low, -near
+    if upwards:
+        return up if mode == UP else 0.0, any_high, lowest, highest, any_low, any_high
+    return any_low, -down if mode == DOWN else 0.0, lowest, highest, any_low, any_high
+
+
+@compiled(fastmath={"contract"})
+def glide(
+    dims: Any, mode: int, still: bool, last: float, plain: Any, beyond: Any, x: Any,
+    length: Any, end: Any, linear: Any, standing: float, usual: float, whole: Any, held: Any,
+    asked: Any, target: Any, static: bool, output: Any,
+    up: float, down: float, low: float, high: float, deviation: Any,
+) -> tuple[int, bool]:  # fmt: skip
+    """Take pieces of the usual length while a mode goes on for certain.
+
+    Advances plain, beyond and x in place, and returns the number of pieces taken, and whether
+    nothing lies beyond the linear model behind them.
+    """
+    n = len(dims)
+    now, then, here, after, rest = plain, np.empty(n), x, np.empty(n), np.zeros(n)
+    speed = up if mode == UP else -down if mode == DOWN else 0.0
+    least, most, lowest, highest, narrowest, widest = window(mode, static, up, down, low, high)
+    slope = asked[n] * last
+    for k in range(n):
+        slope += asked[k] * x[k]
+    share, free, taken = 1.0 / usual, mode == FREE, 0
+    for s in range(len(length)):
+        if length[s] != usual:
+            break
+        ahead = end[s]
+        rise = (ahead - last) * share
+        for r in range(n):
+            total = now[r] + whole[r, n] * last + whole[r, n + 1] * rise
+            for k in range(n):
+                total += whole[r, k] * now[k]
+            then[r] = total
+        if not free:
+            for r in range(n):
+                total = here[r] + held[r, n] * last + held[r, n + 1] * rise
+                total += held[r, n + 2] * speed
+                for k in range(n):
+                    total += held[r, k] * here[k]
+                after[r] = total
+        elif still:
+            for r in range(n):
+                after[r] = then[r]
+        else:
+            for r in range(n):
+                total = beyond[r]
+                for k in range(n):
+                    total += whole[r, k] * beyond[k]
+                rest[r] = total
+                after[r] = then[r] + total
+        following, gap = asked[n] * ahead, 0.0
+        for k in range(n):
+            following += asked[k] * after[k]
+        if static:
+            plain_goal, goal = target[n] * ahead, target[n] * ahead
+            for k in range(n):
+                plain_goal += target[k] * then[k]
+                goal += target[k] * after[k]
+            then[n - 1] = plain_goal
+            if free:
+                after[n - 1] = goal
+                rest[n - 1] = goal - plain_goal
+            else:
+                gap = goal - after[n - 1]
+        bend = asked[n + 1] * rise
+        if not (
+            least < slope + bend < most
+            and least < following + bend < most
+            and lowest < after[n - 1] < highest
+            and narrowest < gap < widest
+        ):
+            break
+        d = 0.0
+        if not free:
+            d = output[n] * ahead + standing - linear[s]
+            for r in range(n):
+                d += output[r] * after[r]
+        elif not still:
+            still = True
+            for r in range(n):
+                d += output[r] * rest[r]
+                still = still and abs(rest[r]) < GONE
+                beyond[r] = rest[r]
+            if still:
+                d = 0.0
+        deviation[s] = d
+        now, then, here, after = then, now, after, here
+        last, slope, taken = ahead, following, s + 1
+    for r in range(n):
+        plain[r], x[r] = now[r], here[r]
+        if not free:
+            beyond[r] = x[r] - plain[r]
+        elif still:
+            beyond[r] = 0.0
+    return taken, still
+
+
 @compiled(fastmath={"contract"})
 def loop(
     dims: Any, state: Any, length: Any, begin: Any, end: Any, linear: Any, standing: float,
-    jumps: Any, unit: float, first: int, fine: int, free: Any, held: Any,
-    free_rate: Any, held_rate: Any, lasting: Any, longest: Any,
+    jumps: Any, unit: float, first: int, fine: int, steps: Any, rates: Any,
+    lasting: Any, longest: Any,
     asked: Any, target: Any, static: bool, output: Any,
     up: float, down: float, low: float, high: float,
     deviation: Any, begun: Any, time: Any, piece: Any, since: Any,
@@ -154,26 +280,20 @@ def loop(
     plain, following = state[3 : 3 + n].copy(), np.empty(n)
     beyond, moved, age = state[3 + n : -1].copy(), np.zeros(n), state[-1:]
     x, after = plain + beyond, np.empty(n)
-    whole, whole_held = np.zeros((n + 2, n + 2)), np.zeros((n + 3, n + 3))
     still = not np.any(beyond)
     z, work = np.zeros(n + 3), np.empty(n + 3)
     usual = np.max(length)
-    count = round(usual / unit)
-    join(free, count, whole)
-    join(held, count, whole_held)
-    known, share, jump = -1.0, 0.0, 0
-    slope, gap = 0.0, 0.0
-    for s in range(len(length)):
+    usual_count = round(usual / unit)
+    whole = joined(steps, usual_count)
+    jump, s = 0, 0
+    while s < len(length):
         dt, u, ahead = length[s], begin[s], end[s]
-        if dt != known:
-            known, share, count = dt, 1.0 / dt if dt > 0.0 else 0.0, round(dt / unit)
-        rise = (ahead - u) * share
+        rise = (ahead - u) / dt if dt > 0.0 else 0.0
         jumped = jump < len(jumps) and jumps[jump] == s
-        w = x[n - 1]
-        if static or jumped or u != last or s == 0:
-            slope, gap = asked[n] * u + asked[n + 1] * rise, 0.0
-            for k in range(n):
-                slope += asked[k] * x[k]
+        w, gap = x[n - 1], 0.0
+        slope = asked[n] * u + asked[n + 1] * rise
+        for k in range(n):
+            slope += asked[k] * x[k]
         if static:
             goal, plain_goal = target[n] * u, target[n] * u
             for k in range(n):
@@ -189,52 +309,29 @@ def loop(
                 d += output[n - 1] * ((w - x[n - 1]) - target[n] * (u - last))
                 begun[jump] = d
             jump += 1
+            age[0] = 0.0
         x[n - 1] = w
         if static and not still:
             beyond[n - 1] = w - plain[n - 1]
         speed = up if mode == UP else -down if mode == DOWN else 0.0
-        if dt != usual:
-            # Beside a jump: not worth a matrix of its own.
-            z[:n], z[n], z[n + 1] = plain, u, rise
-            doubled(dims, free, count, z, work)
-            following[:] = z[:n]
-            if mode == FREE:
-                z[:n], z[n], z[n + 1] = beyond, 0.0, 0.0
-                doubled(dims, free, count, z, work)
-                for r in range(n):
-                    moved[r] = z[r]
-                    after[r] = following[r] + moved[r]
-            else:
-                z[:n], z[n], z[n + 1], z[n + 2] = x, u, rise, speed
-                doubled(dims, held, count, z, work)
-                for r in range(n):
-                    after[r] = z[r]
-                    moved[r] = after[r] - following[r]
-        elif mode == FREE:
+        count = round(dt / unit)
+        # Beside a jump: not worth a matrix of its own.
+        table, many = (whole, 1) if dt == usual else (steps, count)
+        z[:n], z[n], z[n + 1], z[n + 2] = plain, u, rise, 0.0
+        doubled(dims, table[0], many, z, work)
+        following[:] = z[:n]
+        if mode == FREE:
+            z[:n], z[n], z[n + 1] = beyond, 0.0, 0.0
+            doubled(dims, table[0], many, z, work)
             for r in range(n):
-                total = plain[r] + whole[r, n] * u + whole[r, n + 1] * rise
-                for k in range(n):
-                    total += whole[r, k] * plain[k]
-                following[r] = total
-                if not still:
-                    total = beyond[r]
-                    for k in range(n):
-                        total += whole[r, k] * beyond[k]
-                    moved[r] = total
-                    total += following[r]
-                after[r] = total
+                moved[r] = z[r]
+                after[r] = following[r] + moved[r]
         else:
+            z[:n], z[n], z[n + 1], z[n + 2] = x, u, rise, speed
+            doubled(dims, table[1], many, z, work)
             for r in range(n):
-                total = plain[r] + whole[r, n] * u + whole[r, n + 1] * rise
-                for k in range(n):
-                    total += whole[r, k] * plain[k]
-                following[r] = total
-                total = x[r] + whole_held[r, n] * u + whole_held[r, n + 1] * rise
-                total += whole_held[r, n + 2] * speed
-                for k in range(n):
-                    total += whole_held[r, k] * x[k]
-                moved[r] = total - following[r]
-                after[r] = total
+                after[r] = z[r]
+                moved[r] = after[r] - following[r]
         slope = asked[n] * ahead + asked[n + 1] * rise
         for k in range(n):
             slope += asked[k] * after[k]
@@ -243,9 +340,7 @@ def loop(
             gap = target[n] * ahead - w
             for k in range(n):
                 gap += target[k] * after[k]
-        holds = valid(mode, static, w, gap, slope, up, down, low, high)
-        if jumped:
-            age[0] = 0.0
+        holds = margin(mode, static, w, gap, slope, up, down, low, high) >= 0.0
         most = most_count(lasting, longest, age[0])
         if jumped or not holds or most < count:
             for r in range(n):
@@ -253,7 +348,7 @@ def loop(
             passed = through(
                 dims, mode, after, u, rise, count, unit,
                 1 << first if jumped or not holds else most, first, fine,
-                free, held, free_rate, held_rate, lasting, longest, age, asked, target, static,
+                steps, rates, lasting, longest, age, asked, target, static,
                 up, down, low, high, s, time, piece, since,
             )  # fmt: skip
             if passed == UNTOUCHED:
@@ -261,19 +356,16 @@ def loop(
                     after[r] = following[r] + moved[r]
             else:
                 mode, still = passed, False
-                slope = asked[n] * ahead
                 for r in range(n):
                     moved[r] = after[r] - following[r]
-                    slope += asked[r] * after[r]
         else:
             age[0] += dt
             if mode >= 0:
                 time[mode] += dt
                 if piece[mode] < 0:
                     piece[mode], since[mode] = s, 0.0
-        last = ahead
+        d = 0.0
         if mode == FREE:
-            d = 0.0
             if not still:
                 still = True
                 for r in range(n):
@@ -281,8 +373,7 @@ def loop(
                     still = still and abs(moved[r]) < GONE
                 if still:
                     d = 0.0
-                    for r in range(n):
-                        moved[r] = 0.0
+                    moved[:] = 0.0
         else:
             still = False
             d = output[n] * ahead + standing - linear[s]
@@ -291,6 +382,22 @@ def loop(
         for r in range(n):
             plain[r], beyond[r], x[r] = following[r], moved[r], after[r]
         deviation[s] = d
+        last = ahead
+        s += 1
+        if most_count(lasting, longest, age[0]) >= usual_count:
+            stop = jumps[jump] if jump < len(jumps) else len(length)
+            taken, still = glide(
+                dims, mode, still, last, plain, beyond, x,
+                length[s:stop], end[s:stop], linear[s:stop], standing, usual,
+                whole[0, 0], whole[1, 0], asked, target, static, output,
+                up, down, low, high, deviation[s:stop],
+            )  # fmt: skip
+            if taken > 0:
+                s += taken
+                d, last = deviation[s - 1], end[s - 1]
+                age[0] += taken * usual
+                if mode >= 0:
+                    time[mode] += taken * usual
     state[0], state[1], state[2] = d, mode, last
     state[3 : 3 + n] = plain
     state[3 + n : -1] = beyond
@@ -305,51 +412,68 @@ def level_within(count: int) -> int:
     return level
 
 
-@compiled(inline="always")
+@compiled()
 def expand(
-    dims: Any, z: Any, over: float, rate: Any, size: int, asked: Any, target: Any, static: bool,
+    dims: Any, z: Any, over: float, rate: Any, asked: Any, target: Any, static: bool,
     terms: Any, told: Any,
 ) -> int:  # fmt: skip
     """Expand what follows z = [x, u, du/dt, slope] in powers of a share of the time ``over`` [s].
 
-    terms[i, :n] are the coefficients of x, told[i] those of w, of the slope that is asked, and of
-    the gap to where w is driven. Returns the number of terms.
+    terms[i] are the coefficients of x, told[i] those of w, of the slope that is asked, and of the
+    gap to where w is driven. Returns the number of terms.
     """
     n = len(dims)
-    largest, many = 0.0, 0
+    for r in range(n):
+        terms[0, r] = z[r]
+    u, bend, forced, largest, many = z[n], z[n + 1], z[n + 2], 0.0, TERMS
     for i in range(TERMS):
-        here = 0.0
-        for r in range(n + 3):
-            if i == 0:
-                terms[0, r] = z[r]
-            elif r < size:
-                total = 0.0
-                for k in range(size):
-                    total += rate[r, k] * terms[i - 1, k]
-                terms[i, r] = total * over / i
-            else:
-                terms[i, r] = 0.0
+        slope, goal, here = asked[n] * u + asked[n + 1] * bend, target[n] * u, abs(u)
+        for r in range(n):
+            slope += asked[r] * terms[i, r]
+            goal += target[r] * terms[i, r]
             here = max(here, abs(terms[i, r]))
-        slope, goal = asked[n] * terms[i, n], target[n] * terms[i, n]
-        if i == 0:
-            slope += asked[n + 1] * z[n + 1]
-        for k in range(n):
-            slope += asked[k] * terms[i, k]
-            goal += target[k] * terms[i, k]
         told[i, 0], told[i, 1] = terms[i, n - 1], slope
         told[i, 2] = goal - terms[i, n - 1] if static else 0.0
-        many = i + 1
         largest = max(largest, here)
-        if i > 1 and here <= RESOLVED * largest:
+        if i + 1 == TERMS or (i > 1 and here <= RESOLVED * largest):
+            many = i + 1
             break
+        share = over / (i + 1)
+        for r in range(n):
+            total = rate[r, n] * u + rate[r, n + 1] * bend + rate[r, n + 2] * forced
+            for k in range(n):
+                total += rate[r, k] * terms[i, k]
+            terms[i + 1, r] = total * share
+        u, bend, forced = z[n + 1] * over if i == 0 else 0.0, 0.0, 0.0
     return many
+
+
+@compiled(inline="always")
+def between(holds: int, ends: int, left: float, right: float, share: float, most: int) -> int:
+    """Return where between two steps, of margins left >= 0 > right, to look for the end of a mode.
+
+    Regula falsi, moved towards the middle by TOWARDS of the width times its share of the first one,
+    and no farther from it than lets halving end one look later; ``most`` steps may be left after
+    this one. Source: Oliveira and Takahashi 2020, *An Enhancement of the Bisection Method Average
+    Performance Preserving Minmax Optimality*, ACM Trans. Math. Softw. 47 (1); from memory.
+    """
+    width = float(ends - holds)
+    middle, reach = 0.5 * width, max(most - 0.5 * width, 0.0)
+    found = width * left / (left - right)
+    towards = TOWARDS * width * (width * share)
+    if abs(found - middle) <= towards:
+        found = middle
+    else:
+        found += towards if found < middle else -towards
+    found = min(max(found, middle - reach), middle + reach)
+    return holds + min(max(int(found), 1), ends - holds - 1)
 
 
 @compiled()
 def through(
     dims: Any, mode: int, x: Any, u: float, rise: float, count: int, unit: float,
     begin: int, first: int, fine: int,
-    free: Any, held: Any, free_rate: Any, held_rate: Any, lasting: Any, longest: Any, age: Any,
+    steps: Any, rates: Any, lasting: Any, longest: Any, age: Any,
     asked: Any, target: Any, static: bool,
     up: float, down: float, low: float, high: float,
     s: int, time: Any, piece: Any, since: Any,
@@ -364,59 +488,64 @@ def through(
     """
     n = len(dims)
     done, events, taken, halving = 0, 0, 0, False
-    level = min(level_within(begin), len(free) - 1)
-    z, out = np.zeros(n + 3), np.zeros(n + 3)
-    terms, told = np.empty((TERMS, n + 3)), np.empty((TERMS, 3))
-    z[:n] = x
+    highest = steps.shape[1] - 1
+    level = min(level_within(begin), highest)
+    z, out = np.zeros(n + 3), np.zeros(n)
+    terms, told = np.empty((TERMS, n)), np.empty((TERMS, 3))
+    z[:n], z[n + 1] = x, rise
     untouched = mode == FREE
     while done < count:
         while level > fine and 1 << level > count - done:
             level, taken = level - 1, 0
         step = min(1 << level, count - done)
-        z[n], z[n + 1] = u + rise * (done * unit), rise
-        z[n + 2] = up if mode == UP else -down if mode == DOWN else 0.0
-        table, rate = (free, free_rate) if mode == FREE else (held, held_rate)
-        size, many = len(rate), 0
+        z[n], z[n + 2] = u + rise * (done * unit), 0.0
+        way, many = 0, 0
+        if mode != FREE:
+            way, z[n + 2] = 1, up if mode == UP else -down if mode == DOWN else 0.0
         if step == 1 << level:
             for r in range(n):
                 total = z[r]
-                for k in range(size):
-                    total += table[level, r, k] * z[k]
+                for k in range(n + 3):
+                    total += steps[way, level, r, k] * z[k]
                 out[r] = total
         else:
-            many = expand(dims, z, step * unit, rate, size, asked, target, static, terms, told)
+            many = expand(dims, z, step * unit, rates[way], asked, target, static, terms, told)
             for r in range(n):
                 total = 0.0
                 for i in range(many - 1, -1, -1):
                     total += terms[i, r]
                 out[r] = total
         there = u + rise * ((done + step) * unit)
-        slope, goal = asked[n] * there + asked[n + 1] * rise, target[n] * there
+        slope, gap = asked[n] * there + asked[n + 1] * rise, 0.0
         for k in range(n):
             slope += asked[k] * out[k]
-            goal += target[k] * out[k]
-        gap = goal - out[n - 1] if static else 0.0
-        ends = events < MOST_EVENTS and not valid(
-            mode, static, out[n - 1], gap, slope, up, down, low, high
-        )
+        if static:
+            gap = target[n] * there - out[n - 1]
+            for k in range(n):
+                gap += target[k] * out[k]
+        right = margin(mode, static, out[n - 1], gap, slope, up, down, low, high)
+        ends = right < 0.0 and events < MOST_EVENTS
         if ends and level > fine:
             level, halving = level - 1, True
             continue
         if ends:
             if many == 0:
-                many = expand(dims, z, step * unit, rate, size, asked, target, static, terms, told)
-            holds, share = 0, 1.0 / step
+                many = expand(dims, z, step * unit, rates[way], asked, target, static, terms, told)
+            holds, share, most = 0, 1.0 / step, step
+            left = margin(mode, static, told[0, 0], told[0, 2], told[0, 1], up, down, low, high)
             while step - holds > 1:
-                middle = (holds + step) >> 1
+                middle = between(holds, step, max(left, 0.0), right, share, most)
                 w, slope_there, gap_there = 0.0, 0.0, 0.0
                 for i in range(many - 1, -1, -1):
                     w = w * (middle * share) + told[i, 0]
                     slope_there = slope_there * (middle * share) + told[i, 1]
                     gap_there = gap_there * (middle * share) + told[i, 2]
-                if valid(mode, static, w, gap_there, slope_there, up, down, low, high):
-                    holds = middle
+                most = (most + 1) >> 1
+                here = margin(mode, static, w, gap_there, slope_there, up, down, low, high)
+                if here >= 0.0:
+                    holds, left = middle, here
                 else:
-                    step, slope, gap = middle, slope_there, gap_there
+                    step, right, slope, gap = middle, here, slope_there, gap_there
             for r in range(n):
                 total = 0.0
                 for i in range(many - 1, -1, -1):
@@ -439,8 +568,8 @@ def through(
             level, taken = max(level - 1, fine), 0
         else:
             taken += 1
-            most = most_count(lasting, longest, age[0])
-            if taken >= EACH and level + 1 < len(free) and 2 << level <= most:
+            longer = level < highest and taken >= EACH
+            if longer and 2 << level <= most_count(lasting, longest, age[0]):
                 level, taken = level + 1, 0
     for r in range(n):
         x[r] = z[r]

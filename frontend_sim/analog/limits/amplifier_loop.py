@@ -117,8 +117,8 @@ class AmplifierLoop(Limiter):
         target = np.zeros(n + 1) if self.target is None else self.target
         loop(
             (0.0,) * n, after, span.length, span.begin, span.end, span.linear, self.standing,
-            span.jumps, steps.unit, steps.first, steps.fine, steps.free, steps.held,
-            steps.free_rate, steps.held_rate, steps.lasting, steps.longest,
+            span.jumps, steps.unit, steps.first, steps.fine, steps.steps, steps.rates,
+            steps.lasting, steps.longest,
             self.free[-1], target, static, self.output,
             self.up, self.down, self.low, self.high,
             deviation, begun, touched.time, touched.piece, touched.since,
@@ -131,7 +131,5 @@ class AmplifierLoop(Limiter):
         """Return the steps for pieces of up to ``longest`` [s]."""
         top = math.ceil(math.log2(max(longest, 1e-300)))
         if top not in self._known:
-            n = len(self.held)
-            held = np.column_stack([self.held[:, : n + 1], np.zeros(n), self.held[:, -1]])
-            self._known[top] = LoopSteps.of(self.free, held, top)
+            self._known[top] = LoopSteps.of(self.free, self.held, top)
         return self._known[top]

@@ -37,8 +37,8 @@ class LoopSteps:
     ----------
     unit : the smallest step, a power of two [s]
     first, fine : levels i of the first step after an event, and of a Taylor series
-    free, held : exp(M unit 2^i) - I of [x, u, du/dt] and of [x, u, du/dt, slope], shape (levels,
-        N, N);  free_rate, held_rate : M of both, shape (N, N) [1/s]
+    steps : exp(M unit 2^i) - I of [x, u, du/dt, slope], free and held, shape (2, levels, N, N)
+    rates : dx/dt from the same, free and held, shape (2, n, N) [1/s]
     lasting : how long each pole is followed after an event, shape (poles,) [s]
     longest : the longest step that follows it, in units, shape (poles,)
     """
@@ -46,10 +46,8 @@ class LoopSteps:
     unit: float
     first: int
     fine: int
-    free: Real
-    held: Real
-    free_rate: Real
-    held_rate: Real
+    steps: Real
+    rates: Real
     lasting: Real
     longest: NDArray[np.int64]
 
@@ -59,8 +57,7 @@ class LoopSteps:
 
         Parameters
         ----------
-        free, held : dx/dt from x, u and du/dt, and from x, u, du/dt and slope, shapes (n, n + 2)
-            and (n, n + 3) [1/s]
+        free, held : dx/dt from x, u and du/dt, and from x, u and slope, shape (n, n + 2) [1/s]
         """
         unit = 2.0 ** (top - LEVELS)
         n = len(free)
@@ -72,12 +69,10 @@ class LoopSteps:
         rings = np.abs(poles) > -2.0 * poles.real
         lasting = np.where(rings, LASTING, BRIEF) / -poles.real
         longest = np.clip(FOLLOWED / (np.abs(poles) * unit), 2.0**first, 2.0**62)
-        free_rate, held_rate = _closed(free), _closed(held)
-        steps = (_doublings(free_rate * unit), _doublings(held_rate * unit))
-        rates = (free_rate, held_rate)
-        return cls(
-            unit, first, _level(FINE, norm), *steps, *rates, lasting, longest.astype(np.int64)
-        )
+        rates = np.zeros((2, n, n + 3))
+        rates[0, :, : n + 2], rates[1][:, [*range(n + 1), n + 2]] = free, held
+        steps = np.array([_doublings(_closed(way) * unit) for way in rates])
+        return cls(unit, first, _level(FINE, norm), steps, rates, lasting, longest.astype(np.int64))
 
 
 def poles_of(free: Real, held: Real) -> NDArray[np.complex128]:

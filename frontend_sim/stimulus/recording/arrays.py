@@ -11,6 +11,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from frontend_sim.errors import RecordingError, nearest
+from frontend_sim.quantities.counting import counted
 from frontend_sim.stimulus.recording.columns import label, listing, pick, pick_signal
 from frontend_sim.stimulus.recording.series import Real, Series, Source, Wanted, stored_half_step
 
@@ -118,8 +119,8 @@ def source_of(file: Path, arrays: Mapping[str, Array], wanted: Wanted) -> Source
     seconds = None if time is None else time_array.series(file, time)
     if seconds is not None and seconds.count != signal.count:
         raise RecordingError(
-            f"{file}: {signal.label} has {signal.count} points, but {seconds.label}, the time, "
-            f"has {seconds.count}"
+            f"{file}: {signal.label} has {counted(signal.count, 'point')}, but {seconds.label}, "
+            f"the time, has {seconds.count}"
         )
     others = [name for name in arrays if name and name != signal_array.name]
     known = listing(names) + (f"; other arrays are {', '.join(others[:12])}" if others else "")

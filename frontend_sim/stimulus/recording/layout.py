@@ -11,6 +11,7 @@ from pathlib import Path
 import numpy as np
 
 from frontend_sim.errors import RecordingError
+from frontend_sim.quantities.counting import counted
 from frontend_sim.stimulus.recording.cells import Kind, kind, split
 from frontend_sim.stimulus.recording.header import find_header
 
@@ -77,7 +78,7 @@ def find_layout(file: Path) -> Layout:
     first, cells = _first_row(kinds)
     if first is None:
         raise RecordingError(
-            f"{file}: has no row of numbers in its first {len(lines)} lines"
+            f"{file}: has no row of numbers in its first {counted(len(lines), 'line')}"
             + ("; is it more than a header?" if len(lines) < LINES else "")
         )
     first = _with_missing_points(lines, kinds, first)

@@ -9,8 +9,9 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from frontend_sim.errors import RecordingError
+from frontend_sim.errors import QuantityError, RecordingError
 from frontend_sim.quantities import SIGNALS
+from frontend_sim.quantities.counting import counted
 from frontend_sim.stimulus.drive import Drive
 from frontend_sim.stimulus.recording.gaps import FAR, find_gaps
 from frontend_sim.stimulus.recording.grid import Grid
@@ -54,7 +55,10 @@ def prepared(recording: Recording) -> Prepared:
 
     Raises RecordingError if the file does not hold what is asked for.
     """
-    return _prepared(recording, recording.signal, signature(recording.file))
+    try:
+        return _prepared(recording, recording.signal, signature(recording.file))
+    except QuantityError as error:
+        raise RecordingError(f"{recording.file}: {error}") from None
 
 
 @lru_cache(maxsize=16)
@@ -63,9 +67,10 @@ def _prepared(
 ) -> Prepared:
     wanted = Wanted(recording.picked, recording.time, recording.dataset)
     source = open_source(recording.file, wanted)
-    factor = signal_factor(source.signal, recording.unit, signal_unit)
+    factor = signal_factor(source.signal, recording.unit, signal_unit, recording.scale)
     conversion = Conversion(recording.scale * factor.value, recording.offset + factor.zero)
-    notes = [f"{source.signal.label}, {_points(source.signal.count)}", *source.notes, *factor.notes]
+    count = counted(source.signal.count, "point")
+    notes = [f"{source.signal.label}, {count}", *source.notes, *factor.notes]
     signal, axis = timing(recording, source, notes)
     if isinstance(axis, Grid):
         drives, length = _on_grid(recording, signal, axis, conversion, notes)
@@ -111,8 +116,8 @@ def _stamped(
     _check_gap(recording, gaps.largest, where)
     if gaps.far:
         notes.append(
-            f"{gaps.far} gaps are longer than {FAR:g} usual intervals of {gaps.usual:.3g} s; the "
-            f"longest, {gaps.largest:.6g} s, ends at {where}"
+            f"{counted(gaps.far, 'gap is', 'gaps are')} longer than {FAR:g} usual intervals of "
+            f"{gaps.usual:.3g} s; the longest, {gaps.largest:.6g} s, ends at {where}"
         )
     rows = (part.first, part.last)
     holes = find_holes(signal, *rows)
@@ -156,19 +161,15 @@ def _without_holes(
         )
     if recording.missing == "error":
         raise RecordingError(
-            f"{recording.file}: {signal.label}: {holes.count} of "
-            f"{_points(last - first)} {'has' if holes.count == 1 else 'have'} no "
+            f"{recording.file}: {signal.label}: {holes.count} of {counted(last - first, 'point')} "
+            f"{'has' if holes.count == 1 else 'have'} no "
             f'value ({where}); set missing = "line", "hold" or "zero" to bridge them'
         )
     done = {"line": "joined by a line", "hold": "held", "zero": "set to zero"}[recording.missing]
     were = "was" if holes.count == 1 else "were"
-    notes.append(f"{_points(holes.count)} without a value ({where}) {were} {done}")
+    notes.append(f"{counted(holes.count, 'point')} without a value ({where}) {were} {done}")
     blocks = ((times(at, at + len(seen)), seen) for at, seen in signal.blocks(first, last))
     return store(bridged(blocks, recording.missing)).read
-
-
-def _points(count: int) -> str:
-    return "1 point" if count == 1 else f"{count} points"
 
 
 def _check_gap(recording: Recording, gap: float, where: str) -> None:

@@ -93,8 +93,8 @@ class Recording(Stimulus):
     )
     unit: SignalUnit | None = Field(
         default=None,
-        description="unit of the numbers; left out, as the file says if that is a unit of the "
-        "signal, else the signal's own in SI",
+        description="unit of the numbers; left out, as the file says, or the signal's own in SI "
+        "where it says nothing that is known",
         examples=["mV"],
     )
     scale: Ratio = Field(default=1.0, description="factor of the numbers, before the offset")

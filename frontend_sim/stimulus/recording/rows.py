@@ -11,6 +11,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from frontend_sim.errors import RecordingError
+from frontend_sim.quantities.counting import counted
 from frontend_sim.stimulus.recording.cells import (
     dates_at_once,
     kind,
@@ -155,8 +156,8 @@ class Rows:
             row = split(text, self.layout.delimiter)
             if len(row) < self.layout.columns or any(row[self.layout.columns :]):
                 raise RecordingError(
-                    f"{self.file}, line {line}: has {len(row)} cells, but the rows before have "
-                    f"{self.layout.columns}: {_shown(bare)}; mend or remove the line"
+                    f"{self.file}, line {line}: has {counted(len(row), 'cell')}, but the rows "
+                    f"before have {self.layout.columns}: {_shown(bare)}; mend or remove the line"
                 )
             at.append(line)
             values.append(self._number(row, self.signal, line))

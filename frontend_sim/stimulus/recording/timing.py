@@ -6,6 +6,7 @@ from typing import TYPE_CHECKING
 
 from frontend_sim.errors import RecordingError
 from frontend_sim.quantities import TIME
+from frontend_sim.quantities.counting import counted
 from frontend_sim.stimulus.recording.duplicates import merged
 from frontend_sim.stimulus.recording.grid import Grid, find_grid, mean_grid
 from frontend_sim.stimulus.recording.series import Series, Source
@@ -97,7 +98,7 @@ def _without_duplicates(
     policy = recording.duplicates
     lines = ", ".join(stamps.series.where(at) for at in order.first_duplicates)
     lines += ", ..." if order.duplicates > len(order.first_duplicates) else ""
-    who = "1 point repeats" if order.duplicates == 1 else f"{order.duplicates} points repeat"
+    who = counted(order.duplicates, "point repeats", "points repeat")
     if policy == "error":
         raise RecordingError(
             f"{recording.file}: {who} the time of the point before "

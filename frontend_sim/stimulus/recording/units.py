@@ -2,10 +2,12 @@
 
 from __future__ import annotations
 
+from contextlib import suppress
 from dataclasses import dataclass
 
 from frontend_sim.errors import QuantityError
 from frontend_sim.quantities import SIGNALS, TIME, Dimension, parse, signal_dimension
+from frontend_sim.quantities.units import noun_of
 from frontend_sim.stimulus.recording.series import Series
 
 
@@ -55,7 +57,10 @@ def signal_factor_of(unit: str, signal: str) -> tuple[float, float]:
 
 
 def time_factor(series: Series, unit: str | None) -> Factor:
-    """Return seconds in one unit of the time column."""
+    """Return seconds in one unit of the time column.
+
+    Raises QuantityError if the file gives the unit of another quantity, and nobody said otherwise.
+    """
     if unit is not None:
         return Factor(factor_of(unit, TIME))
     if not series.unit or series.absolute:
@@ -63,17 +68,25 @@ def time_factor(series: Series, unit: str | None) -> Factor:
     try:
         value = factor_of(series.unit, TIME)
     except QuantityError:
+        if _is_quantity(series.unit):
+            raise QuantityError(
+                f'{_no_unit(series, TIME)}; give time_unit, "s" if its numbers are in s all the '
+                "same"
+            ) from None
         return Factor(1.0, notes=(f"{_no_unit(series, TIME)}; its numbers are taken in s",))
     return Factor(value, notes=_told(series, value))
 
 
-def signal_factor(series: Series, unit: str | None, signal: str) -> Factor:
+def signal_factor(series: Series, unit: str | None, signal: str, scale: float = 1.0) -> Factor:
     """Return how numbers of the signal become SI.
 
     Parameters
     ----------
     unit : that was asked for, or None
     signal : SI unit of the signal
+    scale : that was asked for; other than 1, it says what the file's own numbers are worth
+
+    Raises QuantityError if the file gives the unit of another quantity, and nobody said what of it.
     """
     if unit is not None:
         return Factor(*signal_factor_of(unit, signal))
@@ -82,9 +95,26 @@ def signal_factor(series: Series, unit: str | None, signal: str) -> Factor:
     try:
         value, zero = signal_factor_of(series.unit, signal)
     except QuantityError:
+        if scale == 1.0 and _is_quantity(series.unit):
+            one = signal or "%"
+            raise QuantityError(
+                f'{_no_unit(series, SIGNALS[signal])}; give unit, "{one}" if its numbers are in '
+                f"{one} all the same, or scale, which says what 1 {series.unit} is"
+            ) from None
         taken = f"its numbers are taken in {signal or 'shares of 1'} after scale"
         return Factor(1.0, notes=(f"{_no_unit(series, SIGNALS[signal])}; {taken}",))
     return Factor(value, zero, _told(series, value if zero == 0.0 else 0.0))
+
+
+def _is_quantity(unit: str) -> bool:
+    """Return whether a unit is known, so that numbers in it are no bare counts."""
+    if noun_of(unit):
+        return True
+    for signal in SIGNALS:
+        with suppress(QuantityError):
+            signal_factor_of(unit, signal)
+            return True
+    return False
 
 
 def _no_unit(series: Series, dimension: Dimension) -> str:

@@ -16,6 +16,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from frontend_sim.errors import RecordingError
+from frontend_sim.quantities.counting import counted
 from frontend_sim.stimulus.recording.series import Real, Series, Source, Wanted
 
 PCM, FLOAT, EXTENSIBLE = 1, 3, 0xFFFE
@@ -131,8 +132,8 @@ def _with_data(file: Path, layout: _Format, offset: int, length: int, size: int)
     there = max(size - offset, 0)
     if length > there:
         raise RecordingError(
-            f"{file}: is truncated: the header promises {length // align} frames, "
-            f"{there // align} are there; record it again, or mend the header to use these"
+            f"{file}: is truncated: the header promises {counted(length // align, 'frame')}, "
+            f"there: {there // align:,}; record it again, or mend the header to use these"
         )
     if length < align:
         raise RecordingError(f"{file}: holds no frame")

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import tempfile
 from pathlib import Path
+from typing import Any
 
 import numpy as np
 import pytest
@@ -96,6 +97,20 @@ def test_unit_of_the_file_is_used_and_told(tmp_path: Path) -> None:
     notes = "\n".join(stimulus.notes())
     assert "'x': read in mV" in notes
     assert "'t': read in ms" in notes
+
+
+@pytest.mark.parametrize("keys", [{"unit": "V"}, {"scale": 0.5, "offset": 1.0}])
+def test_a_unit_of_another_quantity_needs_a_word(tmp_path: Path, keys: dict[str, Any]) -> None:
+    """What the file's bars are in volts is said by unit or by scale; unknown units are counts."""
+    file = write(tmp_path / "log.csv", "t,x\ns,bar\n0,2\n1,4\n")
+    wanted = [2.0, 4.0] if "unit" in keys else [2.0, 3.0]
+    assert np.array_equal(points(recording(file, time="t", **keys)), wanted)
+    file = write(tmp_path / "log.csv", "t [ticks],x [adu]\n0,2\n1,4\n")
+    stimulus = recording(file, time="t")
+    assert np.array_equal(points(stimulus), [2.0, 4.0])
+    notes = "\n".join(stimulus.notes())
+    assert "unit 'adu', which is no voltage; its numbers are taken in V after scale" in notes
+    assert "unit 'ticks', which is no time; its numbers are taken in s" in notes
 
 
 def test_unit_asked_for_wins_over_the_file(tmp_path: Path) -> None:

@@ -142,7 +142,7 @@ def test_gaps_are_told_or_refused(tmp_path: Path) -> None:
     stamps = [str(i) for i in (0, 1, 2, 3, 9, 10, 11, 12)]
     file = _file(tmp_path, stamps)
     stimulus = recording(file, time="t")
-    assert any("1 gaps are longer" in note and "line 6" in note for note in stimulus.notes())
+    assert any("1 gap is longer" in note and "line 6" in note for note in stimulus.notes())
     assert values(stimulus, np.array([6.0]))[0] == 3.5
     assert recording(file, time="t", longest_gap="6 s").known_length() == 12.0
     with pytest.raises(RecordingError, match=r"gap of 6 s at line 6 is longer"):

@@ -76,7 +76,7 @@ def test_given_rate_wins_and_is_told(tmp_path: Path) -> None:
 def test_truncated_data_tell_how_many_frames_there_are(tmp_path: Path) -> None:
     """A recording that broke off is an error with both numbers of frames."""
     (tmp_path / "a.wav").write_bytes(wav(bytes(400), promised=1000, channels=2))
-    with pytest.raises(RecordingError, match=r"truncated: .* 250 frames, 100 are there"):
+    with pytest.raises(RecordingError, match=r"truncated: .* 250 frames, there: 100"):
         recording(tmp_path / "a.wav", channel=1).notes()
 
 
