@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+import json
+from collections.abc import Callable, Mapping
+from contextlib import suppress
 from typing import Any, ClassVar, Self, TypeVar, get_args
 
 from pydantic import BaseModel, ConfigDict, JsonValue, ValidationError
@@ -56,10 +58,27 @@ class Value(BaseModel):
         ScenarioError
             As the constructor does.
         """
+        return cls._made(super().model_validate, obj, options)
+
+    @classmethod
+    def model_validate_json(cls, json_data: str | bytes | bytearray, **options: Any) -> Self:
+        """Make a value from JSON. Raises ScenarioError as the constructor does."""
+        return cls._made(super().model_validate_json, json_data, options)
+
+    @classmethod
+    def model_validate_strings(cls, obj: Any, **options: Any) -> Self:
+        """Make a value from plain data that is all text. Raises as the constructor does."""
+        return cls._made(super().model_validate_strings, obj, options)
+
+    @classmethod
+    def _made(cls, make: Callable[..., Self], given: Any, options: dict[str, Any]) -> Self:
         try:
-            return super().model_validate(obj, **options)
+            return make(given, **options)
         except ValidationError as error:
-            raise cls._refusal(error, obj) from None
+            if isinstance(given, (str, bytes, bytearray)):
+                with suppress(ValueError):
+                    given = json.loads(given)
+            raise cls._refusal(error, given) from None
 
     def __setattr__(self, name: str, value: Any) -> None:
         """Refuse to change a value.
@@ -125,6 +144,8 @@ def _told(detail: Mapping[str, Any], kind: type[Value]) -> str:
     context, message = detail.get("ctx", {}), str(detail["msg"])
     if "reason" in context:  # our own error, whose message is complete
         return str(context["reason"])
+    if detail["type"] == "json_invalid":
+        return f"this is no JSON: {context['error']}"
     if "error" in context:
         return str(context["error"])
     path, fields = detail["loc"], kind.model_fields

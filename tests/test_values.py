@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import json
 from typing import Annotated, Literal
 
 import pytest
@@ -65,6 +66,27 @@ def test_a_wrong_parameter_is_told_in_our_own_words() -> None:
         "resistance",
         "capacitance",
     ]
+
+
+def test_a_value_read_from_json_is_told_in_the_same_words() -> None:
+    """From JSON and from texts alone, faults are those of the constructor; so is broken JSON."""
+    tables = {"stimulus": {"kind": "step"}, "adc": {"rate": "1 V", "high": "1 V"}}
+    words = set()
+    for make, given in (
+        (Scenario.model_validate, tables),
+        (Scenario.model_validate_strings, tables),
+        (Scenario.model_validate_json, json.dumps(tables)),
+        (Scenario.model_validate_json, json.dumps(tables).encode()),
+    ):
+        with pytest.raises(ScenarioError, match=r"adc\.rate: given \"1 V\"") as caught:
+            make(given)  # type: ignore[arg-type]  # each takes its own
+        words.add(str(caught.value))
+    assert len(words) == 1
+    with pytest.raises(ScenarioError, match=r"Point: this is no JSON: .* line 1 column 11"):
+        Point.model_validate_json('{"level": }')
+    assert Point.model_validate_json('{"level": "1 mV", "path": [1]}') == Point(
+        level=1e-3, path=(1.0,)
+    )
 
 
 def test_values_inside_of_others_are_told_with_their_path() -> None:

@@ -14,6 +14,7 @@ from numbers import Real
 
 from frontend_sim.errors import QuantityError
 from frontend_sim.quantities import rkm
+from frontend_sim.quantities.counting import counted
 from frontend_sim.quantities.dimension import RATIO, Dimension
 from frontend_sim.quantities.part import Part
 from frontend_sim.quantities.unit_factor import factor
@@ -43,7 +44,7 @@ def shown(value: object) -> str:
     if isinstance(value, (list, tuple)):
         if len(value) <= 4 and not any(isinstance(item, (list, tuple, dict)) for item in value):
             return f"[{', '.join(shown(item) for item in value)}]"
-        return f"an array of {len(value)} items"
+        return f"an array of {counted(len(value), 'item')}"
     if isinstance(value, dict):
         return "a table"
     if isinstance(value, int) and abs(value) >= 10**20:

@@ -11,6 +11,7 @@ from frontend_sim.analog.network import SIGNAL, Circuit, Held, Injected, Resisto
 from frontend_sim.analog.stages.amplifier_stage import AmplifierStage
 from frontend_sim.analog.stages.base import Stage
 from frontend_sim.analog.stages.operational_amplifier import is_input_current
+from frontend_sim.errors import ModelError
 from frontend_sim.quantities import CURRENT, RESISTANCE, VOLTAGE, as_text
 from frontend_sim.scenario.amplifier_notes import KEY
 
@@ -46,7 +47,12 @@ def loading_notes(stages: Sequence[Stage]) -> Iterator[str]:
 
 def _changes(stage: AmplifierStage, resistance: float, passes: bool) -> Iterator[str]:
     """Tell what a resistance in series with the source changes at rest."""
-    alone, behind = stage.solution().levels, solve(_behind(stage.circuit(), resistance)).levels
+    alone = stage.solution().levels
+    try:
+        behind = solve(_behind(stage.circuit(), resistance)).levels
+    except ModelError as error:  # positive feedback that it was enough to keep at bay
+        yield str(error)
+        return
     gain, other = alone[SIGNAL], behind[SIGNAL]
     if passes and gain and other and abs(other - gain) > NOTICEABLE * abs(gain):
         yield f"its gain at rest is {other:.5g} instead of {gain:.5g}"

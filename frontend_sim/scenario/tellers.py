@@ -7,6 +7,7 @@ from difflib import get_close_matches
 from typing import Any
 
 from frontend_sim.quantities import shown
+from frontend_sim.quantities.counting import counted
 from frontend_sim.scenario.closest import closest
 from frontend_sim.scenario.expectation import example, expected, outline
 from frontend_sim.scenario.fault import MISSING, Fault
@@ -121,7 +122,7 @@ def _wrong_count(fault: Fault) -> str:
     if isinstance(fault.path[-1], int):
         return f"given {shown(fault.given)}; expected {_expected_of(fault)}"
     limit = f"at least {least}" if least is not None else f"at most {most}"
-    return f"given {len(fault.given)} items; expected {limit}"
+    return f"given {counted(len(fault.given), 'item')}; expected {limit}"
 
 
 def _too_long_text(fault: Fault) -> str:

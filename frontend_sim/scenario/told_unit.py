@@ -13,10 +13,11 @@ from frontend_sim.scenario.signal import level_as_written
 
 def told_unit(scenario: Scenario) -> SignalUnit:
     """Return the unit that the file has for the stimulus."""
-    written = level_as_written(scenario.stimulus, scenario.chain)
-    if not written and scenario.source:  # of a record, whose values are in SI
+    written = scenario.stimulus.written_level()
+    if not written and scenario.source:  # of a record, whose values are in SI, a full scale too
         with suppress(InputError):
             whole = parse_scenario(scenario.source)
             if isinstance(whole, Scenario):
                 written = level_as_written(whole.stimulus, whole.chain)
+    written = written or level_as_written(scenario.stimulus, scenario.chain)
     return SignalUnit.of(scenario.stimulus_unit, written)

@@ -4,12 +4,14 @@ from __future__ import annotations
 
 import math
 
+import mpmath as mp
 import numpy as np
 import pytest
+from nodal import GROUND, Net, open_loop, transfers
 from scipy import integrate
 
 from frontend_sim.analog.block import first_order
-from frontend_sim.analog.chain import compose
+from frontend_sim.analog.chain import chain_of, compose
 from frontend_sim.analog.noise import (
     BOLTZMANN,
     NoiseInput,
@@ -19,7 +21,7 @@ from frontend_sim.analog.noise import (
     thermal_density,
 )
 from frontend_sim.analog.section import Section
-from frontend_sim.analog.stages import Butterworth, RcHighpass, RcLowpass
+from frontend_sim.analog.stages import Butterworth, InvertingAmplifier, RcHighpass, RcLowpass
 from frontend_sim.converter.adc import Adc
 from frontend_sim.errors import ModelError
 from frontend_sim.measure.noise_budget import noise_budget, noise_density
@@ -90,6 +92,49 @@ def test_a_clock_off_its_rate_folds_at_its_own_half(error: float) -> None:
     corner = 1.0 / (2.0 * math.pi * 1e-6)
     above = 1.0 - 2.0 / math.pi * math.atan(10e3 * (1.0 + error) / corner)
     assert (budget.folded / budget.rms) ** 2 == pytest.approx(above, rel=1e-9)
+
+
+def _inverting(net: Net) -> str:
+    """Return the output of 1 kohm and 47 kohm beside 330 pF around 1 MHz, with 3.3 kohm at plus."""
+    net.hold("in")
+    net.resistor("input_resistance", "in", "minus", 1e3)
+    net.resistor("feedback_resistance", "minus", "out", 47e3)
+    net.capacitor("minus", "out", 330e-12)
+    net.resistor("compensation_resistance", "plus", GROUND, 3.3e3)
+    net.inject("plus", "noninverting")
+    net.inject("minus", "inverting")
+    gain = open_loop(net, {"gain_bandwidth": 1e6})
+    net.amplifier("voltage", {"plus": mp.mpf(1), "minus": mp.mpf(-1)}, "out", gain, None)
+    return "out"
+
+
+def test_each_row_is_the_integral_of_the_nodes_density() -> None:
+    """Sources of an inverting amplifier, all of each and what folds, against |H|² S of nodal
+    equations written down by hand, integrated over fifteen decades; to 1e-7."""
+    stage = InvertingAmplifier(
+        input_resistance=1e3, feedback_resistance=47e3, compensation_resistance=3.3e3,
+        feedback_capacitance=330e-12, gain_bandwidth=1e6, voltage_noise=8e-9, current_noise=5e-12,
+    )  # fmt: skip
+    budget = noise_budget(chain_of([stage], T), ADC, 1.0)
+    half = math.log(10e3)
+    edges = np.concatenate([np.linspace(-4.6, half, 24), np.linspace(half, 32.0, 36)[1:]])
+    nodes, weights = np.polynomial.legendre.leggauss(6)
+    centre, width = 0.5 * (edges[1:] + edges[:-1]), 0.5 * np.diff(edges)
+    frequency = np.exp(centre[:, None] + width[:, None] * nodes)
+    share = (width[:, None] * weights) * frequency
+    densities = {"voltage": 8e-9, "noninverting": 5e-12, "inverting": 5e-12}
+    ohms = {"input_resistance": 1e3, "feedback_resistance": 47e3, "compensation_resistance": 3.3e3}
+    densities |= {name: thermal_density(value, T) for name, value in ohms.items()}
+    rows = {row.source: row for row in budget.rows}
+    assert len(rows) == len(densities)
+    for name, gain in transfers(_inverting, frequency.ravel()).items():
+        if name == "u":
+            continue
+        power = np.abs(gain.reshape(frequency.shape)) ** 2 * densities[name] ** 2 * share
+        (row,) = [rows[told] for told in rows if f" {name} " in f" {told} "]
+        assert row.rms**2 == pytest.approx(float(np.sum(power)), rel=1e-7)
+        above = float(np.sum(power[centre > half]))
+        assert row.folded**2 == pytest.approx(above, rel=1e-7)
 
 
 def test_sources_add_in_power() -> None:

@@ -127,6 +127,14 @@ SENSORS = [
         "1 A", "100 ohm", "10 uV",
     ),
     ({"kind": "clamp", "high": "3 V", "resistance": "1 kohm"}, "1 V", "1 kohm", "100 uV"),
+    # An inductance at the output, whose impedance has no bound, is none at rest.
+    (
+        {"kind": "ladder", "element": [
+            {"place": "series", "resistance": "1 kohm"},
+            {"place": "shunt", "capacitance": "1 nF"},
+            {"place": "series", "inductance": "10 uH", "series_resistance": "2 ohm"}]},
+        "1 V", "1.002 kohm", "100 uV",
+    ),
 ]  # fmt: skip
 
 
@@ -172,6 +180,13 @@ DIFFERENCE = {"kind": "difference-amplifier", "input_resistance": "10 kohm",
             {"kind": "sallen-key", **FILTER, "feedback_resistance": "1 kohm",
              "ground_resistance": "2 kohm"},
             ("bias current of 100 nA adds 1.5 mV", "to its resistance_1"),
+        ),
+        # Stable below K = 1 + (R1 + R2)/R1: 12 by itself, 2.9 with 11 kohm for R1.
+        (
+            {"kind": "sallen-key", "resistance_1": "1 kohm", "resistance_2": "10 kohm",
+             "capacitance_1": "10 nF", "capacitance_2": "10 nF",
+             "feedback_resistance": "30 kohm", "ground_resistance": "10 kohm"},
+            ("with it the circuit is unstable", "would oscillate", "put a buffer"),
         ),
     ],
 )  # fmt: skip

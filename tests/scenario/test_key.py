@@ -5,7 +5,7 @@ from __future__ import annotations
 from pathlib import Path
 
 import pytest
-from hypothesis import given
+from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from frontend_sim.errors import ScenarioError
@@ -148,6 +148,7 @@ def test_a_number_is_asked_of_a_key_without_one() -> None:
 
 
 @given(st.text(max_size=30))
+@settings(deadline=None)  # the first example loads libraries
 def test_any_text_is_a_key_or_refused(text: str) -> None:
     """No text makes the reader of keys fail in another way than by our own error."""
     try:
@@ -157,6 +158,7 @@ def test_any_text_is_a_key_or_refused(text: str) -> None:
 
 
 @given(st.floats(min_value=1.0, max_value=1e6))
+@settings(deadline=None)
 def test_a_number_comes_back_as_itself(ohms: float) -> None:
     """Any resistance put in is what is read back, to the last bit."""
     varied = with_values(scenario(), {"chain[1].resistance": Part(ohms)})

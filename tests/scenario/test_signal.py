@@ -7,7 +7,7 @@ from typing import Any
 
 import pytest
 
-from frontend_sim.errors import ModelError, ScenarioError
+from frontend_sim.errors import ModelError, RecordingError, ScenarioError
 from frontend_sim.scenario import Scenario, check_scenario, parse_scenario, scenario_text
 from frontend_sim.scenario.signal import UnitError, signal_units
 from frontend_sim.simulation import simulate
@@ -191,7 +191,8 @@ def test_a_recording_learns_the_unit_of_a_changed_chain(tmp_path: Path) -> None:
     text = '[stimulus]\nkind = "recording"\ntime = "t"\nfile = "a.csv"\n'
     volts = parse_scenario(text + AMPLIFIER + END, tmp_path)
     kelvins = volts.model_copy(update={"chain": scenario(STEP, RTD).chain})
-    assert any("which is no voltage" in note for note in volts.stimulus.notes())
+    with pytest.raises(RecordingError, match="unit 'degC', which is no voltage"):
+        volts.stimulus.notes()
     assert any("read in degC" in note for note in kelvins.stimulus.notes())
     assert volts.stimulus_unit == "V"
     assert kelvins.stimulus_unit == "K"

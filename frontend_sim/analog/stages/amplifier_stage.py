@@ -2,17 +2,27 @@
 
 from __future__ import annotations
 
+import math
 from abc import abstractmethod
 from collections.abc import Iterator
 from typing import ClassVar
 
 from frontend_sim.analog.limits import AmplifierLoop, Limiter
-from frontend_sim.analog.network import Amplifier, Circuit, Injected, Solution, opened, solve
+from frontend_sim.analog.network import (
+    SIGNAL,
+    Amplifier,
+    Circuit,
+    Injected,
+    Solution,
+    opened,
+    solve,
+)
 from frontend_sim.analog.noise import NoiseInput
 from frontend_sim.analog.stages.loop_bandwidth import loop_bandwidth
 from frontend_sim.analog.stages.network_stage import NetworkStage
 from frontend_sim.analog.stages.operational_amplifier import (
     AMPLIFIER,
+    OUTPUT,
     OperationalAmplifier,
     is_input_current,
 )
@@ -77,6 +87,22 @@ class AmplifierStage(OperationalAmplifier, NetworkStage):
         drive = output if around.output is None else self._standing(around.drive, temperature)
         within = (limits.up, limits.down, limits.low, limits.high)
         return AmplifierLoop.of(around, self.open_loop(), within, (drive, output))
+
+    def rails(self) -> tuple[float, float]:
+        """Return the levels of the output at rest at which what the amplifier drives is at a rail.
+
+        Behind ``output_resistance`` a load leaves the output a share of it [V].
+        """
+        ends, parts = super().rails(), self.circuit().parts
+        drive = next(p.output for p in parts if isinstance(p, Amplifier) and p.name == AMPLIFIER)
+        if drive == OUTPUT or not any(map(math.isfinite, ends)):
+            return ends
+        gains = [solve(Circuit(parts, node)).levels[SIGNAL] or 0.0 for node in (drive, OUTPUT)]
+        if 0.0 in gains:
+            return ends
+        inner, outer = (self._standing(n, REFERENCE_TEMPERATURE) for n in (drive, OUTPUT))
+        low, high = sorted(outer + (end - inner) * (gains[1] / gains[0]) for end in ends)
+        return low, high
 
     def _standing(self, node: str, temperature: float) -> float:
         """Return where the constant inputs of the circuit let a node stand [V]."""

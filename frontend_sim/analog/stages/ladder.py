@@ -111,7 +111,9 @@ class Ladder(NetworkStage):
     def resistance_at_rest(self) -> float | None:
         """Return what a constant current into the output would raise it by, per ampere [ohm]."""
         circuit = self.circuit()
-        probed = Circuit((*circuit.parts, Injected(circuit.output, PROBE)), circuit.output)
+        # A capacitor changes nothing at rest, and bounds the answer where an inductance ends.
+        ends = Injected(circuit.output, PROBE), Capacitor(circuit.output, GROUND, 1e-9)
+        probed = Circuit((*circuit.parts, *ends), circuit.output)
         return solve(probed).levels[PROBE]
 
     def buffered(self) -> tuple[Block, ...]:

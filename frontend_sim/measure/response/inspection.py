@@ -115,7 +115,7 @@ def inspect_scenario(scenario: Scenario) -> Inspection:
     """
     chain, adc = circuit_of(scenario), scenario.adc
     response = StepResponse.of(chain)
-    frequency = FrequencyDomain.of(response, adc.rate)
+    frequency = FrequencyDomain.of(response, adc.true_rate)
     time = TimeDomain.of(response, frequency.largest.value, adc)
     grid_models, models = _models(scenario, response, time, frequency)
     noise, about_noise = _noise(scenario, chain)
@@ -132,7 +132,7 @@ def inspect_scenario(scenario: Scenario) -> Inspection:
         frequency,
         poles_of(chain),
         models,
-        loading_of(stages, adc.rate),
+        loading_of(stages, adc.true_rate),
         amplifiers_of(stages),
         level,
         Referred.of(told_unit(scenario), adc, time, frequency.largest.value, level, noise),

@@ -21,6 +21,10 @@ from frontend_sim.stimulus.step import Step
 POINTS = 2000
 """Instants at which the response to a large step is looked at, twice: all of it, then its end."""
 
+FINER = 32
+"""Points of the limiters' grid for each of these instants. Left to itself, the grid of a run would
+follow every fast pole before a limiter, for as long as a slow filter behind it takes to settle."""
+
 DOUBLINGS = 4
 """How often the time to look is doubled until a step has settled."""
 
@@ -118,7 +122,8 @@ def _full_powers(
             continue
         behind = _largest_gain(chain, number)
         amplitude = half / behind if behind > 0.0 else half
-        amplitude = min(amplitude, 0.5 * (limits.high - limits.low))
+        low, high = stage.rails()
+        amplitude = min(amplitude, 0.5 * (high - low))
         bandwidth = rate / (2.0 * math.pi * amplitude)
         found.append(FullPower(stage.label(number), rate, amplitude, bandwidth))
     return tuple(found)
@@ -163,7 +168,7 @@ def _stepped(scenario: Scenario, before: float, after: float, span: float) -> Sc
     adc = scenario.adc
     bits = max(4, min(32, round(math.log2((adc.high - adc.low) / adc.lsb))))
     plain = Adc(rate=POINTS / span, bits=bits, low=adc.low, high=adc.high)
-    settings = SimulationSettings(duration=span, noise=False)
+    settings = SimulationSettings(duration=span, grid_rate=FINER * POINTS / span, noise=False)
     step = Step.model_construct(kind="step", before=before, after=after, at=0.0)
     updates = {"stimulus": step, "adc": plain, "simulation": settings, "check": ()}
     return scenario.model_copy(update=updates)

@@ -32,7 +32,8 @@ class PinLevel:
         move it to either side [V]
     at_low, at_high : stimulus, at rest, for which the pin reaches ``low`` and ``high`` of the
         converter; None where none does, or a constant does not reach the pin [SI unit]
-    low_held, high_held : name of the stage whose rail or clamp keeps the pin from there, else ""
+    low_held, high_held : name of the stage whose rail or clamp keeps the pin from there, the first
+        one that a stimulus meets on its way from ``zero``, else ""
     """
 
     zero: float
@@ -59,7 +60,7 @@ class PinLevel:
         offset = way.pin(zero)
         lsb = None if offset is None else offset / adc.lsb
         low, high = way.stimulus(adc.low), way.stimulus(adc.high)
-        held = ("" if end is None else way.held(end) for end in (low, high))
+        held = ("" if end is None else way.held(zero, end) for end in (low, high))
         return cls(zero, offset, lsb, way.spread(temperature), low, high, *held)
 
 
@@ -93,14 +94,23 @@ class _Way:
                 level = gain * level + offset
             yield level
 
-    def held(self, stimulus: float) -> str:
-        """Return the first stage whose rail or clamp lies before what a stimulus asks, else ""."""
-        for number, level in enumerate(self.levels(stimulus), start=1):
-            low, high = self.stages[number - 1].rails()
-            near = NEAR * abs(level)
-            if not low - near <= level <= high + near:
-                return self.stages[number - 1].label(number)
-        return ""
+    def held(self, start: float, end: float) -> str:
+        """Return the stage whose rail or clamp a stimulus first meets as it goes from one level
+        at rest to another, "" if it meets none.
+        """
+        first, name = math.inf, ""
+        ends = zip(self.levels(start), self.levels(end), strict=True)
+        for number, (before, level) in enumerate(ends, start=1):
+            stage, near = self.stages[number - 1], NEAR * abs(level)
+            low, high = stage.rails()
+            if low - near <= level <= high + near:
+                continue
+            # Stages behind a sensor's curve follow it by a gain, so shares of their ways compare.
+            rail, way = low if level < low else high, level - before
+            share = (rail - before) / way if way and math.isfinite(way) else -math.inf
+            if share < first:
+                first, name = share, stage.label(number)
+        return name
 
     def stimulus(self, level: float) -> float | None:
         """Return the stimulus at rest that takes the pin to a level [V]; None if none does."""

@@ -8,16 +8,17 @@ from typing import Any
 import mpmath as mp
 import numpy as np
 import pytest
-from hypothesis import given, settings
+from hypothesis import given, reject, settings
 from hypothesis import strategies as st
 from nodal import GROUND, Net, open_loop, transfers
-from noisy import NOISE, by_nodes, by_sources
+from noisy import NOISE, by_nodes, by_sources, spread
 from numpy.typing import NDArray
 from scipy import signal
 
 from frontend_sim.analog.chain import chain_of
 from frontend_sim.analog.stages import STAGES, Butterworth
 from frontend_sim.analog.stages.active_filter import ActiveFilter
+from frontend_sim.errors import ScenarioError
 
 Values = dict[str, Any]
 Real = NDArray[np.float64]
@@ -187,6 +188,28 @@ def test_noise_at_the_output_is_that_of_the_nodes(build: Any, values: Values) ->
     true = by_nodes(lambda net: build(net, values), frequencies, 300.0)
     found = by_sources(stage, frequencies, 300.0)
     np.testing.assert_allclose(found, true, rtol=1e-9)
+
+
+@given(
+    row=st.sampled_from(ROWS),
+    exponents=st.lists(st.floats(-1.0, 1.0), min_size=16, max_size=16),
+)
+@settings(max_examples=20, deadline=None)
+def test_any_values_are_those_of_the_nodes(row: Any, exponents: list[float]) -> None:
+    """Every part and datum ten times more or less: response to 1e-9 of the value, noise to 1e-9 of
+    its largest density, where the circuit is one that works."""
+    build, values = row
+    values = spread(values, exponents)
+    try:
+        stage = _stage({**values, **NOISE})
+    except ScenarioError:
+        reject()
+    frequencies = stage.nominal_corner * DECADES[::5]
+    true = transfers(lambda net: build(net, values), frequencies)["u"]
+    np.testing.assert_allclose(chain_of([stage]).response(frequencies), true, rtol=1e-9)
+    noise = by_nodes(lambda net: build(net, values), frequencies, 300.0)
+    found = by_sources(stage, frequencies, 300.0)
+    np.testing.assert_allclose(found, noise, rtol=1e-9, atol=1e-9 * np.max(noise))
 
 
 @pytest.mark.parametrize("values", [SK, HIGH], ids=["low-pass", "high-pass"])

@@ -8,12 +8,15 @@ from typing import Any
 import mpmath as mp
 import numpy as np
 import pytest
+from hypothesis import given, reject, settings
+from hypothesis import strategies as st
 from nodal import GROUND, Net, at_rest, open_loop, transfers
-from noisy import NOISE, by_nodes, by_sources
+from noisy import NOISE, by_nodes, by_sources, spread
 
 from frontend_sim.analog.chain import chain_of
 from frontend_sim.analog.stages import STAGES
 from frontend_sim.analog.stages.amplifier_stage import AmplifierStage
+from frontend_sim.errors import ScenarioError
 
 FREQUENCIES = np.logspace(-1, 7.5, 35)
 """Eight and a half decades around everything below [Hz]."""
@@ -180,6 +183,28 @@ def test_noise_at_the_output_is_that_of_the_nodes(kind: str, build: Any, values:
     true = by_nodes(lambda net: build(net, values), FREQUENCIES, TEMPERATURE)
     found = by_sources(stage, FREQUENCIES, TEMPERATURE)
     np.testing.assert_allclose(found, true, rtol=1e-9)
+
+
+@given(
+    row=st.sampled_from(ROWS),
+    exponents=st.lists(st.floats(-2.0, 2.0), min_size=16, max_size=16),
+)
+@settings(max_examples=25, deadline=None)
+def test_any_values_are_those_of_the_nodes(row: Any, exponents: list[float]) -> None:
+    """Every part and datum a hundred times more or less: response to 1e-9 of the value, noise to
+    1e-9 of its largest density, where the circuit is one that works."""
+    kind, build, values = row
+    values = spread(values, exponents)
+    try:
+        stage = _stage(kind, {**values, **NOISE})
+    except ScenarioError:
+        reject()
+    frequencies = FREQUENCIES[::5]
+    true = transfers(lambda net: build(net, values), frequencies)["u"]
+    np.testing.assert_allclose(chain_of([stage]).response(frequencies), true, rtol=1e-9)
+    noise = by_nodes(lambda net: build(net, values), frequencies, TEMPERATURE)
+    found = by_sources(stage, frequencies, TEMPERATURE)
+    np.testing.assert_allclose(found, noise, rtol=1e-9, atol=1e-9 * np.max(noise))
 
 
 CONSTANTS = {"offset_voltage": 2e-3, "offset_drift": 1e-5, "bias_current": 3e-8}

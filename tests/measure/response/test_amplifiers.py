@@ -174,6 +174,75 @@ def test_a_limit_that_comes_before_the_end_of_the_range_is_named(limit, name):
     assert told == (f"2.000 V, but a limit of {name} comes first" if name else "2.000 V")
 
 
+RAIL = {"kind": "rail-limit", "name": "rail", "low": "-1 V", "high": "1 V"}
+CLAMP = {"kind": "clamp", "name": "clamp", "low": "-3 V", "high": "0.5 V"}
+
+
+@pytest.mark.parametrize(
+    ("chain", "names"),
+    [
+        ((RAIL, CLAMP), ("rail", "clamp")),
+        ((CLAMP, RAIL), ("rail", "clamp")),
+        ((RAIL, {"kind": "gain", "gain": 0.4}, CLAMP), ("rail", "rail")),
+        ((RAIL, {"kind": "gain", "gain": -3}, CLAMP), ("rail", "clamp")),
+        # Raised to 0.6 V at rest, the clamp conducts before any stimulus.
+        (({"kind": "inverting-amplifier", "gain": -1, "reference_voltage": "0.3 V"}, RAIL, CLAMP),
+         ("rail", "clamp")),
+    ],
+)  # fmt: skip
+def test_of_several_limits_the_one_that_is_met_first_is_named(chain, names):
+    """The stimulus goes from 0 to where the pin would be at an end of -4 V to 4 V, which all limits
+    keep it from: by hand, the one that asks for the smallest stimulus."""
+    found = inspected(*chain, adc={"rate": "20 kHz", "bits": 12, "low": "-4 V", "high": "4 V"})
+    assert (found.level.low_held, found.level.high_held) == names
+
+
+@pytest.mark.parametrize(("place", "gain"), [("to-ground", 1.0), ("to-excitation", 0.2)])
+def test_a_sensor_meets_the_limits_in_the_same_order(place, gain):
+    """Of a thermistor's 3.7 V at 0 degC, beyond both limits, or 0.26 V, before both."""
+    sensor = THERMISTOR | {"place": place}
+    stimulus = {"kind": "step", "before": "20 degC", "after": "30 degC"}
+    found = inspected(sensor, {"kind": "gain", "gain": gain}, RAIL | {"high": "0.8 V"}, CLAMP,
+                      adc={"rate": "20 kHz", "bits": 12, "high": 4.0 * gain + 0.1},
+                      stimulus=stimulus)  # fmt: skip
+    assert found.level.high_held == "clamp"
+
+
+LOADED = {
+    "open_loop_gain": "120 dB", "output_resistance": "100 ohm", "load_resistance": "300 ohm",
+    "output_low": "-2 V", "output_high": "4 V",
+}  # fmt: skip
+
+
+@pytest.mark.parametrize(
+    ("amplifier", "highest"),
+    [
+        # The divider of 400 ohm takes its share too: 4 V · 171.43 / 271.43.
+        ({"kind": "noninverting-amplifier", "feedback_resistance": "200 ohm",
+          "ground_resistance": "200 ohm"}, 4.0 * 171.428571 / 271.428571),
+        ({"kind": "buffer"}, 3.0),
+        # (4 V - y) / 100 ohm = y / 300 ohm + (y - 1 V) / 200 ohm, the minus input at 1 V.
+        ({"kind": "inverting-amplifier", "feedback_resistance": "200 ohm",
+          "input_resistance": "400 ohm", "reference_voltage": "1 V"},
+         (4.0 / 100 + 1.0 / 200) / (1 / 100 + 1 / 300 + 1 / 200)),
+    ],
+)  # fmt: skip
+def test_a_load_brings_the_rail_nearer(amplifier, highest):
+    """4 V behind 100 ohm: less is left of it at the output. A run to just below it stays with the
+    linear chain, one to just above does not, and is named."""
+    from frontend_sim.simulation import simulate
+
+    stage = amplifier | LOADED
+    for share, name in ((0.999, ""), (1.001, f"1 {amplifier['kind']}")):
+        adc = {"rate": "20 kHz", "bits": 12, "high": share * highest}
+        found = inspected(stage, adc=adc).level
+        assert found.high_held == name
+        run = simulate(scenario(stage, adc=adc, stimulus={"kind": "step", "before": found.at_high,
+                                                          "after": found.at_high}))  # fmt: skip
+        reached = bool(abs(run.pin[-1] - share * highest) < 1e-9)
+        assert reached == (name == "")
+
+
 THERMISTOR = {
     "kind": "thermistor", "nominal_resistance": "10 kohm", "beta": "3435 K",
     "series_resistance": "10 kohm", "excitation_voltage": "5 V",
@@ -210,6 +279,29 @@ def test_a_step_over_the_range_takes_the_closed_form():
     assert found.fall == pytest.approx(expected, rel=2e-4)
     (power,) = found.stages
     assert power.bandwidth == pytest.approx(1e6 / (2.0 * math.pi * 2.0), rel=1e-12)
+
+
+def test_a_fast_pole_before_a_slow_filter_costs_no_fine_grid(monkeypatch):
+    """100 MHz, slewing at 1 V/s into an RC of 0.1 s: (H/S) + R C ln(S R C / e), on a bounded grid.
+
+    Left to itself, a grid that follows the pole had 3e7 points over these six seconds, many times.
+    """
+    from frontend_sim import simulation
+
+    points = []
+
+    class Counted(simulation.Simulation):
+        def __init__(self, scenario):
+            points.append(scenario.simulation.grid_rate * scenario.simulation.duration)
+            super().__init__(scenario)
+
+    monkeypatch.setattr(simulation, "Simulation", Counted)
+    slow = {"kind": "rc-lowpass", "resistance": "100 kohm", "capacitance": "1 uF"}
+    found = inspected(SLEW | {"slew_rate": 1.0, "bandwidth": "100 MHz"}, slow).large_signal
+    expected = 0.998 * 4.0 + 0.1 * math.log(0.1 / (0.5 * 4.0 / 4096))
+    assert found.rise == pytest.approx(expected, rel=2e-5)
+    assert found.fall == pytest.approx(expected, rel=2e-5)
+    assert max(points) <= 1e5
 
 
 def test_full_power_counts_what_stands_behind_and_the_rails():

@@ -49,6 +49,17 @@ def test_half_an_lsb_of_a_full_scale_step(bits):
     assert found.time.full_scale_step == pytest.approx(1.65, rel=1e-15)
 
 
+def test_a_clock_that_is_off_attenuates_at_its_own_rate():
+    """20 kHz and 2 % more: |H| of one pole at 10.2 kHz and 20.4 kHz, where codes fold."""
+    nominal = scenario(LOW)
+    off = nominal.model_copy(update={"adc": nominal.adc.model_copy(update={"rate_error": 0.02})})
+    half, whole = inspect_scenario(off).frequency.attenuations
+    assert (half.frequency, whole.frequency) == (pytest.approx(10.2e3), pytest.approx(20.4e3))
+    for found in (half, whole):
+        x = 2.0 * math.pi * found.frequency * 10e3 * 4.7e-9
+        assert found.below_dc == pytest.approx(10.0 * math.log10(1.0 + x * x), rel=1e-12)
+
+
 def test_two_sections_with_gain_two():
     """From 0 to 4 times the step, critically damped, as the issue's example wants it."""
     found = inspected(LOW, DOUBLE, LOW, DOUBLE)
