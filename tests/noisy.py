@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from typing import Any
 
 import mpmath as mp
@@ -24,6 +25,15 @@ NOISE = {
 
 QUIET = ("u", "reference", "common")
 """Inputs of circuits that make no noise."""
+
+
+def spread(values: dict[str, Any], exponents: Sequence[float]) -> dict[str, Any]:
+    """Return the keys of a stage with every number times its own power of ten."""
+    numbers = [key for key, value in values.items() if isinstance(value, float)]
+    return {
+        **values,
+        **{key: values[key] * 10.0**e for key, e in zip(numbers, exponents, strict=False)},
+    }
 
 
 def by_nodes(build: Build, frequencies: Real, temperature: float) -> Real:

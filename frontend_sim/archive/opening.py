@@ -11,6 +11,7 @@ from frontend_sim.archive.reading import reading
 from frontend_sim.archive.record import Record
 from frontend_sim.archive.scan_record import ScanRecord
 from frontend_sim.errors import RecordError, shortened
+from frontend_sim.quantities.counting import counted
 
 if TYPE_CHECKING:
     import h5py
@@ -58,8 +59,8 @@ def open_single_record(path: str | os.PathLike[str]) -> Record:
         return record
     record.close()
     raise RecordError(
-        f"{path} is the record of a scan of {len(record.channels)} channels, and this takes the "
-        "record of one channel; in Python, open_record(...).channels[name] is one"
+        f"{path} is the record of a scan of {counted(len(record.channels), 'channel')}, and this "
+        "takes the record of one channel; in Python, open_record(...).channels[name] is one"
     )
 
 

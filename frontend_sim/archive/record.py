@@ -17,6 +17,7 @@ from frontend_sim.archive.rebuild import first_there, rebuild
 from frontend_sim.archive.stored import Stored
 from frontend_sim.archive.waveform import Waveforms
 from frontend_sim.errors import RecordError
+from frontend_sim.quantities.counting import counted
 from frontend_sim.scenario.model import Scenario
 from frontend_sim.simulation.run import GridReport, Run, RunBlock
 from frontend_sim.simulation.stretches import Stretches
@@ -211,8 +212,9 @@ class Record(Stored):
         """
         if self._kept is not None:
             raise RecordError(
-                f"{self.path} keeps {self.count} of {self.whole_count} conversions, which make no "
-                "run; read its arrays, or run its scenario again for all of them: rerun(record)"
+                f"{self.path} keeps {self.count:,} of {counted(self.whole_count, 'conversion')}, "
+                "which make no run; read its arrays, or run its scenario again for all of them: "
+                "rerun(record)"
             )
         block = self.conversions()
         fields = {column.field: getattr(block, column.field) for column in layout.CONVERSIONS}

@@ -14,6 +14,7 @@ from frontend_sim.archive import layout
 from frontend_sim.converter.adc import Adc
 from frontend_sim.errors import OutputError
 from frontend_sim.measure.checks import Keeper
+from frontend_sim.quantities.counting import counted
 from frontend_sim.scenario.model import Scenario
 from frontend_sim.scenario.signal import PIN
 from frontend_sim.simulation import ScanSimulation, Simulation
@@ -79,7 +80,7 @@ def check_room(simulation: Simulation | ScanSimulation, path: Path) -> tuple[str
     room, free, memory = Room.of(simulation), free_bytes(path.parent), memory_bytes()
     if room.least > free:
         raise OutputError(
-            f"{path}: the record of {room.conversions:,} conversions needs at least "
+            f"{path}: the record of {counted(room.conversions, 'conversion')} needs at least "
             f"{told_bytes(room.least)}, but the disk has {told_bytes(free)} left; shorten "
             "simulation.duration, keep fewer waveforms, free some space, or choose another place"
         )
@@ -92,11 +93,29 @@ def check_room(simulation: Simulation | ScanSimulation, path: Path) -> tuple[str
         )
     if memory is not None and room.memory > memory:
         notes.append(
-            f"the checks keep {told_bytes(room.memory)} of {room.conversions:,} conversions in "
-            f"memory, and this machine has {told_bytes(memory)}; shorten simulation.duration, or "
-            "leave out the checks that read codes"
+            f"the checks keep {told_bytes(room.memory)} of "
+            f"{counted(room.conversions, 'conversion')} in memory, and this machine has "
+            f"{told_bytes(memory)}; shorten simulation.duration, or leave out the checks that read "
+            "codes"
         )
     return tuple(notes)
+
+
+def refuse_beyond_memory(room: Room) -> None:
+    """Refuse a run that is kept until its verdict, and is larger than the machine's memory.
+
+    Raises
+    ------
+    OutputError
+        If it is; the message begins with what it takes.
+    """
+    wanted, memory = room.most + room.memory, memory_bytes()
+    if memory is not None and wanted > memory:
+        raise OutputError(
+            f"until its verdict the run takes {told_bytes(wanted)} of memory, and this machine has "
+            f"{told_bytes(memory)}; shorten simulation.duration, keep fewer waveforms, or set "
+            'keep = "nothing", which keeps what the checks read alone'
+        )
 
 
 def free_bytes(directory: Path) -> int:

@@ -4,11 +4,11 @@ from __future__ import annotations
 
 import json
 import math
-from collections.abc import Callable, Iterable, Iterator, Mapping
+from collections.abc import Iterable, Iterator, Mapping
 from dataclasses import dataclass, field
 from datetime import datetime
 from pathlib import Path
-from typing import TYPE_CHECKING, Any
+from typing import TYPE_CHECKING, Any, Self
 
 import numpy as np
 
@@ -64,8 +64,7 @@ class SetRow:
 class SetHead:
     """What is told of a set as a whole; names as in ``SetTable``.
 
-    ``units`` tells the unit of each parameter, ``bases`` name, text and resolved values of the
-    scenarios that are varied.
+    ``bases`` tells name, text and resolved values of the scenarios that are varied.
     """
 
     title: str
@@ -77,35 +76,30 @@ class SetHead:
     planned: int
     text: str
     versions: Mapping[str, str]
-    units: Mapping[str, str]
     bases: tuple[tuple[str, str, Mapping[str, Any]], ...]
 
 
-def write_set(
-    path: Path, head: SetHead, rows: Callable[[], Iterable[SetRow]], link: bool = True
-) -> None:
+def write_set(path: Path, head: SetHead, shape: Shape, rows: Iterable[SetRow]) -> None:
     """Write the file of a set, and read it back before it takes its name.
 
     Parameters
     ----------
     path : where it goes; what is there is replaced
-    rows : gives all rows, in the order of the set; it is called twice, and no more than
-        ``STRETCH`` rows are held at once
-    link : whether the records of the runs are linked under ``/record``
+    shape : of the table, from the same rows
+    rows : in the order of the set; no more than ``STRETCH`` of them are held at once
 
     Raises
     ------
     OutputError
         If the file cannot be written; what was there is then unchanged.
     """
-    shape = _Shape.of(rows(), head.units)
     with new_file(path, path, overwrite=True) as temporary:
         with writing(path), temporary.open("x+b", buffering=0) as stream:
             sink = Sink(stream)
             with uninterrupted(), _opened(sink) as file:
                 _put_head(file, head)
                 _put_columns(file, shape.columns)
-                _put_rows(file, shape, rows(), link)
+                _put_rows(file, shape, rows)
                 file.attrs[INVENTORY] = inventory(file)
             sink.check()
         try:
@@ -163,8 +157,11 @@ def _put_columns(file: h5py.File, columns: tuple[Column, ...]) -> None:
 
 
 @dataclass
-class _Shape:
-    """The columns of a table, and how wide their texts are, found by going through all rows."""
+class Shape:
+    """The columns of a table, and how wide their texts are, found by going through all rows.
+
+    ``units`` tells the unit of each parameter.
+    """
 
     units: Mapping[str, str]
     count: int = 0
@@ -174,7 +171,7 @@ class _Shape:
     judged: set[str] = field(default_factory=set)
 
     @classmethod
-    def of(cls, rows: Iterable[SetRow], units: Mapping[str, str]) -> _Shape:
+    def of(cls, rows: Iterable[SetRow], units: Mapping[str, str]) -> Self:
         """Go through all rows once."""
         shape = cls(units)
         for row in rows:
@@ -240,7 +237,7 @@ def _free(name: str, taken: set[str]) -> str:
     return free
 
 
-def _put_rows(file: h5py.File, shape: _Shape, rows: Iterable[SetRow], link: bool) -> None:
+def _put_rows(file: h5py.File, shape: Shape, rows: Iterable[SetRow]) -> None:
     """Write the table in stretches of rows, and a link to each record that is kept."""
     columns = shape.columns
     parts = [columns[at : at + WIDEST] for at in range(0, len(columns), WIDEST)]
@@ -254,12 +251,12 @@ def _put_rows(file: h5py.File, shape: _Shape, rows: Iterable[SetRow], link: bool
             values = [row[at : at + len(part)] for row in cells]
             dataset[done : done + len(stretch)] = np.array(values, dataset.dtype)
         done += len(stretch)
-        for row in stretch if link else ():
+        for row in stretch:
             _put_link(links, row)
 
 
 def _open_runs(
-    file: h5py.File, number: int, columns: tuple[Column, ...], shape: _Shape
+    file: h5py.File, number: int, columns: tuple[Column, ...], shape: Shape
 ) -> h5py.Dataset:
     name = RUNS if number == 0 else f"{RUNS} {number + 1}"
     dtype = np.dtype([(column.name, shape.kind(column)) for column in columns])

@@ -50,12 +50,14 @@ class Attribution:
     total : measure -> second less first, all changes made, with the seed of the first
     shares : one for each changed parameter, in their order
     rounding : measure -> what is no more than this is none
+    margins : the measures that are margins of checks
     """
 
     units: Mapping[str, str]
     total: Mapping[str, float]
     shares: tuple[Share, ...]
     rounding: Mapping[str, float]
+    margins: frozenset[str] = frozenset()
 
     def remainder(self, measure: str) -> float:
         """Return what the changes do together beyond the sum of what each does alone."""
@@ -72,11 +74,13 @@ class _Measured:
     value : its margin, its value where there is no limit, NaN where it cannot be told
     unit : of both
     rounding : how far it is known
+    margin : whether it is one
     """
 
     value: float
     unit: str
     rounding: float
+    margin: bool
 
     @classmethod
     def of(cls, row: Result) -> Self:
@@ -84,7 +88,8 @@ class _Measured:
         # A mean of zero is still one of codes.
         sizes = [1.0 if row.unit == "LSB" else 0.0, abs(row.value or 0.0), abs(row.limit or 0.0)]
         largest = max(size for size in sizes if math.isfinite(size))
-        return cls(math.nan if value is None else value, row.unit, ROUNDING * largest)
+        told = math.nan if value is None else value
+        return cls(told, row.unit, ROUNDING * largest, row.margin is not None)
 
 
 def attribute(
@@ -122,6 +127,7 @@ def attribute(
         total,
         tuple(shares),
         {name: _rounding(after[name], before[name]) for name in total},
+        frozenset(name for name in total if before[name].margin),
     )
 
 

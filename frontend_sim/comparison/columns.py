@@ -11,6 +11,7 @@ from numpy.typing import NDArray
 
 from frontend_sim.comparison.series import Finding, judged
 from frontend_sim.measure.statistics import Shift, flip_probability, independent_shift
+from frontend_sim.quantities.counting import counted
 
 Real = NDArray[np.float64]
 Text = NDArray[np.str_]
@@ -27,7 +28,7 @@ class ColumnDifference:
     ----------
     name, unit : of the check or measure
     runs : pairs that have a value in both
-    mean, peak : of the differences, in ``unit``
+    mean, peak : of the differences, in ``unit``; zero where they are rounding
     where : number of the pair with the largest, None without one
     margin : change of the smallest margin of the night; NaN for a measure
     better, worse : runs that hold now and failed before, and the other way round
@@ -38,6 +39,7 @@ class ColumnDifference:
     finding : what it comes to
     told : the same in words
     difference : of every pair, shape (N,)
+    of_check : whether it has limits
     """
 
     name: str
@@ -56,6 +58,7 @@ class ColumnDifference:
     finding: Finding
     told: str
     difference: Real
+    of_check: bool = False
 
     @classmethod
     def lost(cls, name: str, unit: str, finding: Finding) -> Self:
@@ -103,17 +106,23 @@ def column_difference(
     size = float(np.max(np.abs(np.stack([first[known], second[known]])), initial=0.0))
     # A run that has no value any more counts, whatever its verdict.
     lost = int(np.count_nonzero(np.isfinite(first) & ~np.isfinite(second)))
+    smallest = max(NEGLIGIBLE * size, rounding)
     finding, told = _judge(
-        shift, peak, max(NEGLIGIBLE * size, rounding), allowed, (better, worse, lost), exact,
-        chance, level,
-    )  # fmt: skip
+        shift, peak, smallest, allowed, (better, worse, lost), exact, chance, level
+    )
     margin = math.nan
     if margins is not None:
         margin = _less(_least(margins[1]), _least(margins[0]))
+        if finding == "same" and abs(margin) <= smallest:
+            margin = 0.0
     mean = shift.mean if len(values) else math.nan
+    if finding == "same" and len(values):
+        mean = peak = 0.0
+        difference = np.where(np.isfinite(difference), 0.0, difference)
     return ColumnDifference(
         name, unit, len(values), mean, peak, peak_at, margin, better, worse, exact,
         None if exact else shift, chance, allowed, finding, told, difference,
+        margins is not None,
     )  # fmt: skip
 
 
@@ -126,7 +135,7 @@ def flips(
     nan = math.nan
     if broke:
         finding: Finding = "differs"
-        told = f"no result any more from {runs(broke)}"
+        told = f"no result any more from {counted(broke, 'run')}"
     else:
         finding, told = _judge_flips(better, worse, exact, chance, level)
     return ColumnDifference(
@@ -151,7 +160,7 @@ def _judge(
         return finding, told
     if exact:
         if lost:
-            return "differs", f"no value any more in {runs(lost)}"
+            return "differs", f"no value any more in {counted(lost, 'run')}"
         if abs(peak) <= rounding:
             return "same", "same"
         if abs(peak) <= allowed:
@@ -171,20 +180,15 @@ def _judge_flips(
 ) -> tuple[Finding, str]:
     told = []
     if worse:
-        told.append(f"now fails in {runs(worse)}")
+        told.append(f"now fails in {counted(worse, 'run')}")
     if better:
-        told.append(f"now holds in {runs(better)}")
+        told.append(f"now holds in {counted(better, 'run')}")
     text = ", ".join(told)
     if not told:
         return "same", ""
     if exact:
         return ("differs" if worse else "within tolerance"), text
     return ("differs" if chance < level and worse > better else "within noise"), text
-
-
-def runs(count: int) -> str:
-    """Return a number of runs in words."""
-    return "1 run" if count == 1 else f"{count} runs"
 
 
 def _draw_means(values: Real, draws: Text | None, known: NDArray[np.int64]) -> Real:

@@ -27,6 +27,7 @@ from frontend_sim.comparison.series import (
 from frontend_sim.comparison.tolerance import Tolerances
 from frontend_sim.errors import InputError
 from frontend_sim.measure.checks.quiet import quiet_checks
+from frontend_sim.quantities.counting import counted
 from frontend_sim.scenario.model import Scenario
 
 Real = NDArray[np.float64]
@@ -268,8 +269,9 @@ def part_notes(first: Record, second: Record) -> Iterator[str]:
     for record in (first, second):
         if record.stretches is not None:
             yield (
-                f"{record.path} keeps {record.count} of {record.whole_count} conversions, around "
-                "what failed; signals are compared where both records have them"
+                f"{record.path} keeps {record.count:,} of "
+                f"{counted(record.whole_count, 'conversion')}, around what failed; signals are "
+                "compared where both records have them"
             )
 
 

@@ -14,6 +14,7 @@ from frontend_sim.comparison.series import judged
 from frontend_sim.errors import InputError
 from frontend_sim.measure.statistics import independent_shift
 from frontend_sim.measure.statistics.mean_shift import FEWEST
+from frontend_sim.quantities.counting import counted
 from frontend_sim.randomness import stream
 from frontend_sim.scenario.scan_scenario import AnyScenario
 
@@ -42,7 +43,8 @@ def over_seeds(
         If there are too few seeds, or a scenario cannot be run.
     """
     if seeds < FEWEST:
-        raise InputError(f"{seeds} seeds are too few to tell noise from a change; take {FEWEST}")
+        told = counted(seeds, "seed is", "seeds are")
+        raise InputError(f"{told} too few to tell noise from a change; take {FEWEST}")
     open_ones = [row.name for row in results if row.finding == "not judged"]
     if not open_ones:
         return tuple(results)

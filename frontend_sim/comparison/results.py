@@ -23,7 +23,7 @@ class ResultDifference:
     ----------
     name, unit : of the result
     first, second : None where a run does not have it
-    change : second less first, in ``unit``; NaN where one has no value
+    change : second less first, in ``unit``, zero of what is the same; NaN where one has no value
     noisy : whether the seed moves it, and seeds differ
     tolerance : that was given, in ``unit``
     finding : what it comes to
@@ -58,7 +58,9 @@ class ResultDifference:
         one, other = self.first, self.second
         if one is None or other is None or one.margin is None or other.margin is None:
             return None
-        return _less(other.margin, one.margin)
+        change = _less(other.margin, one.margin)
+        sizes = [abs(_number(part)) for side in (one, other) for part in (side.value, side.limit)]
+        return 0.0 if abs(change) <= NEGLIGIBLE * max(sizes) else change
 
 
 def result_differences(
@@ -104,6 +106,8 @@ def _difference(
     change = _less(after, before)
     allowed = tolerances.of_result(name, known.unit, before)
     finding = _finding(one, other, change, allowed, noisy)
+    if finding == "same" and not math.isnan(change):
+        change = 0.0  # rounding is none
     return ResultDifference(name, known.unit, one, other, change, noisy, allowed, finding)
 
 

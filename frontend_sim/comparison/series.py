@@ -37,7 +37,8 @@ class SeriesDifference:
     name : ``pin``, ``codes``, ``noise``, or the point of a waveform
     unit : of the numbers below, LSB of the first run for voltages
     count : number of points compared
-    mean, rms, peak : of the difference; of noise, the first's rms, the second's, and the change
+    mean, rms, peak : of the difference, zero where it is rounding; of noise, the first's rms, the
+        second's, and the change
     where : instant of the peak [s], None without one
     shift : of the mean, with its error; None where seeds play no part
     visible : smallest change that would be told from noise; 0 where seeds play no part
@@ -75,6 +76,7 @@ def exact_difference(
     mean, rms, peak, where = extent(time, difference)
     if peak <= rounding:
         finding: Finding = "same"
+        mean = rms = peak = 0.0
     else:
         finding = "within tolerance" if peak <= tolerance else "differs"
     return SeriesDifference(

@@ -14,13 +14,14 @@ from frontend_sim.archive.set_table import SetTable
 from frontend_sim.comparison.attribution import Attribution
 from frontend_sim.comparison.base_scenario import scenario_of
 from frontend_sim.comparison.changes import Change, changes
-from frontend_sim.comparison.columns import ColumnDifference, column_difference, flips, runs
+from frontend_sim.comparison.columns import ColumnDifference, column_difference, flips
 from frontend_sim.comparison.records import FALSE_ALARMS, ROUNDING
 from frontend_sim.comparison.scans import compare_runs
 from frontend_sim.comparison.series import DIFFERENT
 from frontend_sim.comparison.tolerance import Tolerances
 from frontend_sim.errors import InputError
 from frontend_sim.measure.checks.quiet import quiet_checks
+from frontend_sim.quantities.counting import counted, share_of
 
 Real = NDArray[np.float64]
 Index = NDArray[np.int64]
@@ -67,7 +68,7 @@ class SetComparison:
         """What differs by more than noise and tolerance, in short."""
         told = [f"{row.name}: {row.told}" for row in self.columns if row.finding in DIFFERENT]
         if self.removed:
-            told.append(f"gone: {runs(len(self.removed))}")
+            told.append(f"gone: {counted(len(self.removed), 'run')}")
         return tuple(told)
 
     @property
@@ -273,11 +274,15 @@ class _Nights:
             told = self.first.texts("digest")[self.one] != self.second.texts("digest")[self.other]
             if np.any(told):
                 yield (
-                    f"in {runs(int(np.count_nonzero(told)))} the scenario is another though no "
-                    "value differs: a recording or a table that it reads has another content"
+                    f"in {counted(int(np.count_nonzero(told)), 'run')} the scenario is another "
+                    "though no value differs: a recording or a table that it reads has another "
+                    "content"
                 )
         if self.reseeded:
-            yield f"{self.reseeded} of {len(self.one)} runs have other seeds"
+            yield f"other seeds in {share_of(self.reseeded, len(self.one), 'run')}"
+        if 0 < self.records < len(self.one):
+            share = share_of(self.records, len(self.one), "run")
+            yield f"pins and codes are those of {share}, of which records of both nights were read"
         if not self.records:
             yield (
                 "no run has in both nights a record that tells something of the other, so pins and "

@@ -15,6 +15,7 @@ from frontend_sim.converter.capacitor_array import bit_weights, found_levels, tr
 from frontend_sim.converter.code_table import read_code_table
 from frontend_sim.errors import ScenarioError
 from frontend_sim.quantities import FRACTION, LSB, Bounds, Reads
+from frontend_sim.quantities.counting import counted
 from frontend_sim.values import Value
 
 Real = NDArray[np.float64]
@@ -143,8 +144,8 @@ def table_deviations(file: Path, holds: Literal["inl", "dnl"], bits: int) -> Rea
     shorter = count - 1 if holds == "inl" else count - 2
     if len(numbers) not in (count, shorter):
         raise ScenarioError(
-            f"{file}: has {len(numbers)} numbers; a table of {holds.upper()} for {bits} bits has "
-            f"{count}, one for every code, or {shorter}, "
+            f"{file}: has {counted(len(numbers), 'number')}; a table of {holds.upper()} for {bits} "
+            f"bits has {count}, one for every code, or {shorter}, "
             + ("one for every change of code" if holds == "inl" else "without the two end codes")
         )
     if holds == "inl":

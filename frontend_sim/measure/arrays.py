@@ -8,6 +8,7 @@ import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
 from frontend_sim.errors import MeasureError
+from frontend_sim.quantities.counting import counted
 
 Real = NDArray[np.float64]
 Codes = NDArray[np.int64]
@@ -85,7 +86,8 @@ def increasing(times: ArrayLike, count: int) -> Real:
     """
     row = samples(times, 0, "row of instants")
     if len(row) != count:
-        raise MeasureError(f"{count} samples need as many instants, but {len(row)} were given")
+        needs = counted(count, "sample needs", "samples need")
+        raise MeasureError(f"{needs} as many instants; given are {len(row)}")
     back = np.flatnonzero(np.diff(row) <= 0.0)
     if len(back):
         first = int(back[0])
@@ -151,5 +153,6 @@ def _one_row(values: ArrayLike, what: str) -> NDArray[Any]:
 def _long_enough(row: NDArray[Any], least: int, what: str) -> None:
     if len(row) < least:
         raise MeasureError(
-            f"the {what} has {len(row)} samples, this measure needs at least {least}; record longer"
+            f"the {what} has {counted(len(row), 'sample')}, this measure needs at least {least}; "
+            "record longer"
         )

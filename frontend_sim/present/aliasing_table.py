@@ -11,6 +11,7 @@ from frontend_sim.measure.aliasing import Alias, AliasError, Aliasing, aliasing_
 from frontend_sim.measure.aliasing.recorded import MOST_POINTS
 from frontend_sim.present.numbers import difference, engineering, fixed, plain
 from frontend_sim.quantities import SignalUnit
+from frontend_sim.quantities.counting import counted
 from frontend_sim.scenario.model import Scenario
 from frontend_sim.scenario.told_unit import told_unit
 from frontend_sim.simulation.finished import Finished
@@ -49,7 +50,8 @@ def aliasing_table(aliasing: Aliasing, error: AliasError | None = None) -> Table
         table.add_row(Text(alias.source), *_cells(alias, unit))
     told = []
     if len(rows) > MOST_ROWS:
-        told.append(f"{len(rows) - MOST_ROWS} weaker ones are not shown")
+        weaker = counted(len(rows) - MOST_ROWS, "weaker one is", "weaker ones are")
+        told.append(f"{weaker} not shown")
     if error is not None:
         told.append(_foot(error))
     if told:

@@ -15,7 +15,7 @@ from frontend_sim.comparison import (
 )
 from frontend_sim.comparison.series import DIFFERENT
 from frontend_sim.present.numbers import engineering, plain
-from frontend_sim.present.result_table import quantity
+from frontend_sim.present.result_table import checked, quantity
 
 if TYPE_CHECKING:
     from rich.console import RenderableType
@@ -116,17 +116,29 @@ def _result_table(rows: Sequence[ResultDifference]) -> Table:
     return table
 
 
+def result_text(row: ResultDifference, value: float, unit: str = "") -> str:
+    """Return a number of a result with its unit; a share in percent where it is a check.
+
+    Parameters
+    ----------
+    unit : in place of that of the row
+    """
+    sides = (side.verdict for side in (row.first, row.second) if side is not None)
+    tell = quantity if all(verdict == "none" for verdict in sides) else checked
+    return tell(value, unit or row.unit)
+
+
 def _result_cells(row: ResultDifference) -> list[str]:
     def told(value: float | None) -> str:
-        return "none" if value is None or math.isnan(value) else quantity(value, row.unit)
+        return "none" if value is None or math.isnan(value) else result_text(row, value)
 
     first, second = ("-" if side is None else told(side.value) for side in (row.first, row.second))
     margin = "" if row.second is None or row.second.margin is None else told(row.second.margin)
     verdicts = [side.verdict for side in (row.first, row.second) if side is not None]
     verdict = " to ".join(dict.fromkeys(verdicts)).replace("none", "")
-    change = "" if math.isnan(row.change) else quantity(row.change, row.unit)
+    change = "" if math.isnan(row.change) else result_text(row, row.change)
     if row.shift is not None and math.isfinite(row.shift.error):
-        change = f"{quantity(row.shift.mean, row.unit)} ± {plain(row.shift.error, 2)}"
+        change = f"{told(row.shift.mean)} ± {told(row.shift.error)}"
     return [first, second, change, margin, verdict, row.finding]
 
 
@@ -146,10 +158,13 @@ def attribution_table(attribution: Attribution) -> Table:
         moved = sorted((pair for pair in known if pair[1]), key=lambda pair: -abs(pair[1]))
         if not moved and total == 0.0:
             continue
+        margin = measure in attribution.margins
+        name = f"{measure}: margin" if margin else measure
+        remainder = attribution.remainder(measure)
         for key, value in moved:
-            table.add_row(Text(measure), Text(key), _moved(value, unit))
-        table.add_row(Text(measure), "beyond the sum", _moved(attribution.remainder(measure), unit))
-        table.add_row(Text(measure), "all together", _moved(total, unit), style="bold")
+            table.add_row(Text(name), Text(key), _moved(value, unit, margin))
+        table.add_row(Text(name), "beyond the sum", _moved(remainder, unit, margin))
+        table.add_row(Text(name), "all together", _moved(total, unit, margin), style="bold")
         table.add_section()
     for row in attribution.shares:
         if row.fault:
@@ -157,10 +172,11 @@ def attribution_table(attribution: Attribution) -> Table:
     return table
 
 
-def _moved(value: float, unit: str) -> str:
+def _moved(value: float, unit: str, of_check: bool) -> str:
     if value == 0.0:
         return "none"
-    return quantity(value, unit) if value <= 0.0 else f"+{quantity(value, unit)}"
+    told = checked(value, unit) if of_check else quantity(value, unit)
+    return f"+{told}" if value > 0.0 else told
 
 
 def comparison_summary(comparison: RecordComparison) -> dict[str, Any]:
@@ -241,6 +257,7 @@ def attribution_data(attribution: Attribution | None) -> dict[str, Any] | None:
         return None
     return {
         "units": dict(attribution.units),
+        "margins": sorted(attribution.margins),
         "total": {name: finite(value) for name, value in attribution.total.items()},
         "parameters": [
             {

@@ -29,6 +29,12 @@ def draw_grid(*panels: Axes, axis: Literal["both", "x", "y"] = "both") -> None:
         panel.set_axisbelow(True)
 
 
+def write_out(*panels: Axes) -> None:
+    """Write the numbers of axes out: a value common to all of them, set aside, is overlooked."""
+    for panel in panels:
+        panel.ticklabel_format(useOffset=False)
+
+
 def axis_scale(unit: str, values: NDArray[np.float64]) -> tuple[float, str]:
     """Return the factor and the unit with which numbers of a check stand on an axis.
 

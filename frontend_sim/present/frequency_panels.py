@@ -115,7 +115,7 @@ def _limits(view: FrequencyView) -> tuple[float, float]:
     if len(finite) == 0:
         return -20.0, 20.0
     highest, lowest = float(np.max(finite)), float(np.min(finite))
-    rate = view.inspection.adc.rate
+    rate = view.inspection.adc.true_rate
     marked = np.interp([0.5 * rate, rate], view.frequency, view.magnitude)
     if math.isinf(view.inspection.frequency.largest.value):
         # Nothing is to be seen in how near a point of the grid lies to a pole on the axis.
@@ -130,7 +130,7 @@ def _limits(view: FrequencyView) -> tuple[float, float]:
 
 
 def _draw_rates(axes: Axes, view: FrequencyView, labels: bool) -> None:
-    rate = view.inspection.adc.rate
+    rate = view.inspection.adc.true_rate
     axes.axvspan(0.5 * rate, view.frequency[-1], color="0.93", zorder=0)
     for frequency in (0.5 * rate, rate):
         axes.axvline(frequency, color=LIMIT, linestyle="--", linewidth=1.0, zorder=2)

@@ -108,7 +108,7 @@ def phase_of(roots: Roots, frequency: Real) -> Real:
 
 def _range(inspection: Inspection) -> tuple[float, float]:
     """Return the frequencies shown: a decade and more around corners and the conversion rate."""
-    rate = inspection.adc.rate
+    rate = inspection.adc.true_rate
     marks = [0.5 * rate, rate, *(corner.frequency for corner in inspection.frequency.corners)]
     if (sinc := LookWeights.of(inspection.adc).sinc) is not None:
         marks.append(0.2 * sinc.modulator_rate)  # where the filter passes again

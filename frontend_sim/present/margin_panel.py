@@ -9,7 +9,7 @@ from typing import TYPE_CHECKING
 from frontend_sim.measure.result import Result
 from frontend_sim.present.colours import GREEN, LIMIT, MARK
 from frontend_sim.present.drawing import literal
-from frontend_sim.present.result_table import SIGNS, checked_text
+from frontend_sim.present.result_table import SIGNS, checked
 
 if TYPE_CHECKING:
     from matplotlib.axes import Axes
@@ -25,9 +25,14 @@ LINE = 0.34
 
 
 def verdicts_of(results: Sequence[Result]) -> list[Result]:
-    """Return the checks of a run by their margin, the worst first, at most ``MOST_BARS``."""
+    """Return the checks of a run by their margin, the worst first."""
     checks = [row for row in results if row.verdict != "none"]
-    return sorted(checks, key=relative_margin)[:MOST_BARS]
+    return sorted(checks, key=relative_margin)
+
+
+def bars_of(rows: Sequence[Result]) -> int:
+    """Return for how many bars the panel of some checks has room."""
+    return min(len(rows), MOST_BARS)
 
 
 def relative_margin(row: Result) -> float:
@@ -41,7 +46,14 @@ def relative_margin(row: Result) -> float:
 
 
 def draw_margins(axes: Axes, rows: Sequence[Result]) -> None:
-    """Draw a bar for each check, to the right where it holds, with value and limit beside it."""
+    """Draw a bar for each check, to the right where it holds, with value and limit beside it.
+
+    Parameters
+    ----------
+    rows : all checks, the worst first, of which ``MOST_BARS`` are drawn
+    """
+    broken, whole = sum(row.verdict == "fails" for row in rows), len(rows)
+    rows = rows[: bars_of(rows)]
     shares = [100.0 * relative_margin(row) for row in rows]
     places = list(range(len(rows)))
     colours = [GREEN if row.verdict == "holds" else LIMIT for row in rows]
@@ -57,8 +69,9 @@ def draw_margins(axes: Axes, rows: Sequence[Result]) -> None:
             2.0 if right else -2.0, place, _told(row), va="center",
             ha="left" if right else "right", fontsize="small", zorder=5,
         )  # fmt: skip
-    broken = sum(row.verdict == "fails" for row in rows)
-    told = f"{broken} of {len(rows)} fail" if broken else "all hold"
+    told = f"{broken} of {whole} fail" if broken else "all hold"
+    if whole > len(rows):
+        told += f", the {len(rows)} with the least margin are shown"
     axes.set_title(f"Checks: {told}", loc="left", fontsize="medium",
                    color=LIMIT if broken else MARK)  # fmt: skip
 
@@ -66,5 +79,5 @@ def draw_margins(axes: Axes, rows: Sequence[Result]) -> None:
 def _told(row: Result) -> str:
     if row.value is None:
         return "cannot be told"
-    value, limit = (checked_text(vars(row), name) for name in ("value", "limit"))
-    return f"{value} (limit {SIGNS.get(row.bound, '')}{limit})"
+    limit = f"{SIGNS.get(row.bound, '')}{checked(row.limit, row.unit)}"
+    return f"{checked(row.value, row.unit)} (limit {limit})"

@@ -7,11 +7,8 @@ from collections.abc import Sequence
 from textwrap import fill
 from typing import TYPE_CHECKING
 
-import numpy as np
-
-from frontend_sim.present.colours import BLUE, ORANGE
 from frontend_sim.present.drawing import axis_scale, draw_grid, literal, new_figure
-from frontend_sim.present.night_figure import bin_edges
+from frontend_sim.present.night_figure import draw_bars
 from frontend_sim.summary import MeasureSummary, NightSummary
 
 if TYPE_CHECKING:
@@ -48,17 +45,10 @@ def measure_figure(summary: NightSummary, measures: Sequence[MeasureSummary]) ->
 def _draw(panel: Axes, summary: NightSummary, measure: MeasureSummary) -> None:
     from matplotlib.ticker import MaxNLocator
 
-    drawn, known = summary.population.drawn, np.isfinite(measure.values)
     factor, unit = (1.0, "1") if measure.unit in ("", "1") else axis_scale(
         measure.unit, measure.values
     )  # fmt: skip
-    sets = [(known & drawn, "draws", BLUE), (known & ~drawn, "other runs", ORANGE)]
-    rows = [(factor * measure.values[which], name, colour) for which, name, colour in sets
-            if which.any()]  # fmt: skip
-    if rows:
-        values, names, colours = zip(*rows, strict=True)
-        edges = bin_edges(np.concatenate(values))
-        panel.hist(values, bins=edges, stacked=True, color=colours, label=names)
+    draw_bars(panel, factor * measure.values, summary.population.drawn)
     panel.set_title(literal(fill(measure.name, 38)), fontsize="small", loc="left")
     panel.set_xlabel(f"[{unit}]", fontsize="small")
     panel.tick_params(labelsize="small")

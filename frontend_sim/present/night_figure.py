@@ -9,9 +9,10 @@ import numpy as np
 from numpy.typing import NDArray
 
 from frontend_sim.present.colours import BLUE, LIMIT, MARK, ORANGE
-from frontend_sim.present.drawing import axis_scale, draw_grid, literal, new_figure
+from frontend_sim.present.drawing import axis_scale, draw_grid, literal, new_figure, write_out
 from frontend_sim.present.numbers import prefix_of
 from frontend_sim.present.result_table import PREFIXED
+from frontend_sim.quantities.counting import counted
 from frontend_sim.summary import CheckSummary, NightSummary
 from frontend_sim.summary.night_summary import numeric_parameters
 
@@ -39,6 +40,7 @@ def night_figure(summary: NightSummary, check: CheckSummary) -> Figure:
     if cause is not None:
         _draw_cause(panels[1], summary, check, numbers[cause], cause, factor, label)
     draw_grid(*panels)
+    write_out(*panels)
     return figure
 
 
@@ -55,15 +57,8 @@ def _draw_histogram(
 
     value, drawn = check.column.value, summary.population.drawn
     known = np.isfinite(value)
-    sets = [(known & drawn, "draws", BLUE), (known & ~drawn, "other runs", ORANGE)]
-    rows = [(factor * value[which], name, colour) for which, name, colour in sets if which.any()]
-    if rows:
-        edges = bin_edges(np.concatenate([row for row, _, _ in rows]))
-        axes.hist(
-            [row for row, _, _ in rows], bins=edges, stacked=True,
-            color=[colour for _, _, colour in rows], label=[name for _, name, _ in rows],
-        )  # fmt: skip
     limits, runs = np.unique(check.column.limit, return_index=True)
+    draw_bars(axes, factor * value, drawn, factor * limits)
     told = [check.column.bound_in(run) for run in runs[:8].tolist()]
     for place, (limit, bound) in enumerate(zip(limits.tolist(), told, strict=False)):
         if np.isfinite(limit):
@@ -71,24 +66,52 @@ def _draw_histogram(
                          label=None if bound in told[:place] else f"limit, {bound}")  # fmt: skip
     lost = int(np.count_nonzero(~known & (check.column.verdict != "")))
     if lost:
-        axes.set_title(f"{lost} runs without a finite value are not shown", fontsize="small")
+        axes.set_title(
+            f"without a finite value, and not shown: {counted(lost, 'run')}", fontsize="small"
+        )
     axes.set_xlabel(label)
     axes.set_ylabel("runs")
     axes.yaxis.set_major_locator(MaxNLocator(integer=True))
     axes.legend(fontsize="small", framealpha=0.9)
 
 
-def bin_edges(values: Real) -> list[float]:
+def draw_bars(
+    axes: Axes, values: Real, drawn: NDArray[np.bool_], limits: Real | None = None
+) -> None:
+    """Draw a histogram of values, draws below other runs.
+
+    Parameters
+    ----------
+    values : in the unit of the axis, shape (R,); what is not finite is not drawn
+    drawn : whether a run is a draw, shape (R,)
+    limits : that are drawn beside it, shape (L,)
+    """
+    known = np.isfinite(values)
+    sets = [
+        (known & drawn, "draws", BLUE),
+        (known & ~drawn, "other runs" if drawn.any() else "runs", ORANGE),
+    ]
+    rows = [(values[which], name, colour) for which, name, colour in sets if which.any()]
+    if rows:
+        shown, names, colours = zip(*rows, strict=True)
+        edges = bin_edges(np.concatenate(shown), limits)
+        axes.hist(shown, bins=edges, stacked=True, color=colours, label=names)
+
+
+def bin_edges(values: Real, limits: Real | None = None) -> list[float]:
     """Return the edges of the bars of a histogram; values that are all alike are one bar.
 
     Parameters
     ----------
     values : finite, at least one
+    limits : that the one bar keeps well away from, shape (L,)
     """
     low, high = float(np.min(values)), float(np.max(values))
     size = max(abs(low), abs(high))
     if high - low <= ALIKE * size or size == 0.0:
-        half = 0.05 * size or 1.0
+        far = np.abs(np.empty(0) if limits is None else limits - low)
+        near = far[np.isfinite(far) & (far > ALIKE * size)]
+        half = 0.02 * float(np.min(near)) if len(near) else 0.05 * size or 1.0
         return [low - half, high + half]
     count = max(8, min(60, round(2.0 * math.sqrt(len(values)))))
     return [float(edge) for edge in np.linspace(low, high, count + 1)]

@@ -8,7 +8,7 @@ from typing import TYPE_CHECKING, Any, Literal
 
 from frontend_sim.measure.statistics import PassRate, Percentile, RankCorrelation
 from frontend_sim.present.numbers import fixed
-from frontend_sim.present.result_table import STYLES, quantity
+from frontend_sim.present.result_table import STYLES, checked
 from frontend_sim.summary import CheckSummary, MeasureSummary, NightSummary
 
 FEWEST = 3
@@ -50,18 +50,15 @@ def night_tables(summary: NightSummary) -> tuple[RenderableType, ...]:
 
 def share(rate: PassRate) -> str:
     """Return a yield with its interval, in percent."""
-    digits = 1 if rate.total < 1000 else 2
+    # One run of all is seen: 1 of 1000 is 0.1 %.
+    digits = max(1, len(str(rate.total - 1)) - 2)
     percent = [fixed(100.0 * end, digits) for end in (rate.rate, rate.low, rate.high)]
     return f"{percent[0]} % ({percent[1]} to {percent[2]} %)"
 
 
 def shown(value: float, check: CheckSummary) -> str:
-    """Return a value of a check with its unit; plain numbers of checks are shares, as percent."""
-    if math.isnan(value):
-        return "none"
-    if check.unit in ("", "1"):
-        return quantity(100.0 * value, "%")
-    return quantity(value, check.unit)
+    """Return a value of a check with its unit, see ``checked``."""
+    return checked(value, check.unit)
 
 
 def night_data(summary: NightSummary) -> dict[str, Any]:

@@ -8,6 +8,7 @@ from frontend_sim.measure.noise_budget import NoiseBudget
 from frontend_sim.present.colours import MARK
 from frontend_sim.present.named_bars import draw_named_bars, short
 from frontend_sim.present.numbers import engineering, plain
+from frontend_sim.quantities.counting import counted
 
 if TYPE_CHECKING:
     from matplotlib.axes import Axes
@@ -22,7 +23,7 @@ def draw_noise(axes: Axes, budget: NoiseBudget) -> None:
     others = budget.rows[MOST_BARS:]
     if others:
         sums = [sum(getattr(row, name) ** 2 for row in others) ** 0.5 for name in ("rms", "folded")]
-        bars.append((f"{len(others)} others", sums[0], sums[1]))
+        bars.append((counted(len(others), "other"), sums[0], sums[1]))
     bars.append(("together", budget.rms, budget.folded))
     scale = _scale(budget)
     told = [f"{short(name)}: {engineering(rms, 'V')}, {plain(scale * rms, 3)} LSB"

@@ -93,18 +93,6 @@ def fixed(value: float, decimals: int, unit: str = "") -> str:
     return f"{text} {unit}".rstrip()
 
 
-def counted(count: int, noun: str, several: str = "") -> str:
-    """Return a number of things, ``"1 check"``, ``"3 checks"``; ``several`` of an odd plural."""
-    return f"{count} {noun}" if count == 1 else f"{count} {several or f'{noun}s'}"
-
-
-def share_of(count: int, total: int, noun: str) -> str:
-    """Return how many of some things, ``"3 of 9 runs"``, ``"all 9 runs"``, ``"the only run"``."""
-    if count == total:
-        return f"the only {noun}" if total == 1 else f"all {total:,} {noun}s"
-    return f"{count:,} of {total:,} {noun}s"
-
-
 def prefix_of(largest: float) -> tuple[float, str]:
     """Return (factor, letter) for an axis whose largest value is given: 0.02 s -> (1e3, "m")."""
     if not math.isfinite(largest) or largest == 0.0:

@@ -3,7 +3,8 @@
 from __future__ import annotations
 
 from frontend_sim.archive import Record
-from frontend_sim.present.numbers import counted, engineering
+from frontend_sim.present.numbers import engineering
+from frontend_sim.quantities.counting import counted
 from frontend_sim.simulation.finished import RunLike
 
 
@@ -11,7 +12,7 @@ def kept_conversions(run: RunLike) -> str:
     """Return how many conversions a run has, and where a record keeps some of them, of how many."""
     if not isinstance(run, Record) or run.stretches is None:
         return counted(len(run.time), "conversion")
-    return f"{run.count} of {counted(run.whole_count, 'conversion')}, around failures,"
+    return f"{run.count:,} of {counted(run.whole_count, 'conversion')}, around failures,"
 
 
 def part_text(record: Record) -> tuple[str, ...]:
@@ -26,7 +27,7 @@ def part_text(record: Record) -> tuple[str, ...]:
         where = counted(len(stretches.spans), "stretch", "stretches")
         around = engineering(stretches.around, "s")
         what = (
-            f"The record keeps {kept} of {whole}, in {where}: {around} before and behind where "
+            f"The record keeps {kept:,} of {whole}, in {where}: {around} before and behind where "
             "checks fail."
         )
     return (

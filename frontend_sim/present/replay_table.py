@@ -6,8 +6,8 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from frontend_sim.present.numbers import share_of
-from frontend_sim.present.result_table import SIGNS, STYLES, quantity
+from frontend_sim.present.result_table import SIGNS, STYLES, checked
+from frontend_sim.quantities.counting import share_of
 
 if TYPE_CHECKING:
     from rich.console import RenderableType
@@ -77,8 +77,8 @@ def _add(rows: Table, check: CheckColumn, table: SetTable) -> None:
     rows.add_row(
         Text(check.name),
         Text(f"{fails:,} of {len(judged):,}", style=STYLES["fails" if fails else "holds"]),
-        quantity(float(check.value[worst]), unit),
-        SIGNS.get(check.bound_in(worst), "") + quantity(float(check.limit[worst]), unit),
-        quantity(float(check.margin[worst]), unit),
+        checked(float(check.value[worst]), unit),
+        SIGNS.get(check.bound_in(worst), "") + checked(float(check.limit[worst]), unit),
+        checked(float(check.margin[worst]), unit),
         Text(table.names[worst]),
     )

@@ -6,7 +6,8 @@ import math
 from collections.abc import Sequence
 from typing import TYPE_CHECKING, Any
 
-from frontend_sim.present.numbers import counted, engineering, plain
+from frontend_sim.present.numbers import engineering, plain
+from frontend_sim.quantities.counting import share_of
 
 if TYPE_CHECKING:
     from rich.console import RenderableType
@@ -18,8 +19,8 @@ if TYPE_CHECKING:
 PREFIXED = ("s", "V", "Hz", "V/s", "ohm", "F", "rad/s")
 """Units that are written with a prefix."""
 
-WHOLE = ("conversions", "ticks", "counts", "codes")
-"""Units of what is counted."""
+WHOLE = {"conversions": "conversion", "ticks": "tick", "counts": "count", "codes": "code"}
+"""Units of what is counted, and of one of them."""
 
 SIGNS = {"at most": "≤ ", "at least": "≥ "}
 
@@ -77,7 +78,9 @@ def _check_table(rows: Sequence[dict[str, Any]]) -> Table:
     for name in ("check", "value", "limit", "margin", "verdict"):
         table.add_column(name, justify="left" if name in ("check", "verdict") else "right")
     for row in rows:
-        value, limit, margin = (checked_text(row, name) for name in ("value", "limit", "margin"))
+        value, limit, margin = (
+            checked(row[name], row["unit"]) for name in ("value", "limit", "margin")
+        )
         sign = SIGNS.get(row["bound"], "") if limit else ""
         cells = (Text(row["name"]), value or "none", sign + limit, margin, row["verdict"])
         table.add_row(*cells, style=STYLES[row["verdict"]])
@@ -94,19 +97,21 @@ def _verdict(rows: Sequence[dict[str, Any]]) -> Text:
     from rich.text import Text
 
     broken = sum(row["verdict"] == "fails" for row in rows)
-    if broken:
-        of = counted(len(rows), "check")
-        return Text(f"verdict: fails, {broken} of {of}", style=STYLES["fails"])
-    which = "1 check" if len(rows) == 1 else f"all of {len(rows)} checks"
-    return Text(f"verdict: holds, {which}", style=STYLES["holds"])
+    verdict = "fails" if broken else "holds"
+    share = share_of(broken or len(rows), len(rows), "check")
+    return Text(f"verdict: {verdict}, {share}", style=STYLES[verdict])
 
 
-def checked_text(row: dict[str, Any], name: str) -> str:
-    """Return a number of a check; plain numbers of checks are shares, and read as percent."""
-    value, unit = row[name], row["unit"]
-    if value is not None and unit in ("", "1"):
-        return quantity(100.0 * value, "%")
-    return quantity(value, unit)
+def checked(value: float | None, unit: str) -> str:
+    """Return a number of a check with its unit; plain numbers of checks are shares, as percent.
+
+    What is not a number is ``"none"``; "" where none is.
+    """
+    if value is None:
+        return ""
+    if math.isnan(value):
+        return "none"
+    return quantity(100.0 * value, "%") if unit in ("", "1") else quantity(value, unit)
 
 
 def quantity(value: float | None, unit: str) -> str:
@@ -116,5 +121,5 @@ def quantity(value: float | None, unit: str) -> str:
     if unit in PREFIXED:
         return engineering(value, unit, 4)
     if unit in WHOLE and float(value).is_integer():
-        return f"{value:.0f} {unit}"
+        return f"{value:.0f} {WHOLE[unit] if abs(value) == 1.0 else unit}"
     return plain(value) if unit in ("", "1") else f"{plain(value)} {unit}"

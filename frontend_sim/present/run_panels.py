@@ -12,7 +12,7 @@ from numpy.typing import NDArray
 from frontend_sim.converter import AnyAdc
 from frontend_sim.present.colours import BLUE, LIMIT, MARK, ORANGE, SERIES
 from frontend_sim.present.decimation import broken, shown_flags, shown_points
-from frontend_sim.present.drawing import legend_text
+from frontend_sim.present.drawing import legend_text, write_out
 from frontend_sim.present.numbers import engineering, prefix_of, takes_prefix
 from frontend_sim.quantities import SIGNALS, SignalUnit
 from frontend_sim.simulation.finished import RunLike
@@ -106,6 +106,7 @@ def draw_codes(axes: Axes, conversions: Conversions) -> None:
             label="beyond the range", zorder=4,
         )  # fmt: skip
     axes.set_ylabel(f"voltage [{letter}V]")
+    write_out(axes)
     _add_code_axis(axes, adc, factor)
     _add_legend(axes)
 
@@ -147,6 +148,7 @@ def _add_code_axis(axes: Axes, adc: AnyAdc, factor: float) -> None:
         return factor * (adc.low + (np.asarray(code) - adc.lowest_code) * adc.lsb)
 
     right = axes.secondary_yaxis("right", functions=(to_code, to_voltage))
+    right.ticklabel_format(useOffset=False)
     right.set_ylabel("code [counts]")
 
 

@@ -15,7 +15,7 @@ from frontend_sim.present.decimation import broken
 from frontend_sim.present.drawing import draw_grid, literal, new_figure
 from frontend_sim.present.error_panel import ErrorView, draw_error, error_views
 from frontend_sim.present.figure_file import save_figure
-from frontend_sim.present.margin_panel import LINE, draw_margins, verdicts_of
+from frontend_sim.present.margin_panel import LINE, bars_of, draw_margins, verdicts_of
 from frontend_sim.present.numbers import engineering, prefix_of
 from frontend_sim.present.part import kept_conversions
 from frontend_sim.present.run_panels import Conversions, draw_codes, draw_difference, draw_waveforms
@@ -77,7 +77,7 @@ def run_figure(run: RunLike) -> Figure:
     own = [2.4 for _ in views]
     own += [] if spectrum is None else [2.8]
     own += [0.6 + 0.45 * len(view.bars) for view in errors]
-    own += [0.7 + LINE * len(verdicts)] if verdicts else []
+    own += [0.7 + LINE * bars_of(verdicts)] if verdicts else []
     figure = new_figure(10.0, 1.9 + 1.1 * (sum(heights) + sum(own)))
     axes = _rows(figure, heights, own)
     last = max((float(times[-1]) for times in (time, waveform_time) if len(times)), default=0.0)

@@ -142,7 +142,7 @@ def run_table(run: RunLike) -> Table:
 
 def _rows(summary: dict[str, Any], unit: SignalUnit) -> list[tuple[str, str]]:
     count, lsb = summary["conversions"], summary["lsb"]
-    rows = [("conversions", f"{count} at {engineering(summary['rate'], 'Hz')}")]
+    rows = [("conversions", f"{count:,} at {engineering(summary['rate'], 'Hz')}")]
     if count == 0:
         return rows
     first, last = engineering(summary["first"], "s", 4), engineering(summary["last"], "s", 4)
@@ -157,7 +157,7 @@ def _rows(summary: dict[str, Any], unit: SignalUnit) -> list[tuple[str, str]]:
         ("pin: mean", engineering(pin["mean"], "V", 5)),
         ("pin: highest", engineering(pin["highest"], "V", 5)),
         ("codes", f"{codes['lowest']} to {codes['highest']}"),
-        ("beyond the range", f"{beyond} ({plain(100.0 * beyond / count, 3)} %)"),
+        ("beyond the range", f"{beyond:,} ({plain(100.0 * beyond / count, 3)} %)"),
     ]
     if summary["difference_rms"] is not None:
         rows.append(("codes less pin, rms", f"{fixed(summary['difference_rms'], 3)} LSB"))

@@ -17,6 +17,7 @@ from frontend_sim.present.numbers import engineering
 from frontend_sim.present.scan_plot import check_channels_drawn
 from frontend_sim.present.step_panels import draw_distance, draw_step
 from frontend_sim.present.step_view import StepView
+from frontend_sim.quantities.counting import counted
 
 if TYPE_CHECKING:
     from matplotlib.axes import Axes
@@ -46,9 +47,9 @@ def scan_inspection_figure(inspection: ScanInspection) -> Figure:
     report = inspection.report
     title = literal(fill(inspection.title or "Scan without a title", 120))
     facts = (
-        f"{len(channels)} channels, {report.sampling}, one scan in "
-        f"{engineering(report.period, 's', 4)}; each channel from its stimulus to the "
-        "converter's pin"
+        f"{counted(len(channels), 'channel')}, {report.sampling}, one scan in "
+        f"{engineering(report.period, 's', 4)}; each channel from its stimulus to the converter's "
+        "pin"
     )
     figure.suptitle(f"{title}\n{facts}")
     return figure

@@ -13,6 +13,7 @@ from frontend_sim.present.figure_file import save_figure
 from frontend_sim.present.numbers import engineering, prefix_of
 from frontend_sim.present.run_panels import Conversions, draw_codes
 from frontend_sim.present.scan_like import ScanLike
+from frontend_sim.quantities.counting import counted
 
 if TYPE_CHECKING:
     from matplotlib.figure import Figure
@@ -59,7 +60,7 @@ def scan_figure(scan: ScanLike) -> Figure:
     scenario = scan.scenario
     adc, rhythm = scenario.adc, scenario.rhythm
     facts = (
-        f"{len(channels)} channels, {scenario.scan.sampling}, one scan in "
+        f"{counted(len(channels), 'channel')}, {scenario.scan.sampling}, one scan in "
         f"{engineering(rhythm.period, 's', 4)}; {adc.bits} bits, {engineering(adc.low, 'V')} to "
         f"{engineering(adc.high, 'V')}"
     )

@@ -144,11 +144,11 @@ def _channel_table(scan: ScanLike) -> Table:
         pin, codes, rms = told["pin"], told["codes"], told["difference_rms"]
         table.add_row(
             Text(name),
-            str(told["conversions"]),
+            f"{told['conversions']:,}",
             engineering(pin["lowest"], "V", 5),
             engineering(pin["highest"], "V", 5),
             f"{codes['lowest']} to {codes['highest']}",
-            str(told["overrange"]),
+            f"{told['overrange']:,}",
             "" if rms is None else f"{fixed(rms, 3)} LSB",
         )
     return table

@@ -7,8 +7,10 @@ from pathlib import Path
 from textwrap import shorten
 from typing import TYPE_CHECKING
 
+import numpy as np
+
 from frontend_sim.present.colours import BLUE, MARK, ORANGE
-from frontend_sim.present.drawing import draw_grid, literal, new_figure
+from frontend_sim.present.drawing import axis_scale, draw_grid, literal, new_figure
 from frontend_sim.present.figure_file import save_figure
 from frontend_sim.present.sensitivity_table import nothing, strongest
 
@@ -53,13 +55,13 @@ def _draw(axes: Axes, found: CheckSensitivity, rows: list[Sensitivity]) -> None:
         axes.text(0.5, 0.5, f"{name}: {nothing(found)}", ha="center", va="center")
         return
     normalized = all(row.normalized is not None for row in rows)
-    values = [row.normalized if normalized else row.per_percent for row in rows]
+    values = np.array([(row.normalized if normalized else row.per_percent) or 0.0 for row in rows])
+    factor, unit = (1.0, "") if normalized else axis_scale(found.result.unit, values)
     colours = [BLUE if (row.per_percent or 0.0) > 0.0 else ORANGE for row in rows]
     labels = [literal(row.parameter.key) for row in rows]
-    axes.barh(labels, [value or 0.0 for value in values], color=colours)
+    axes.barh(labels, factor * values, color=colours)
     axes.invert_yaxis()
     axes.axvline(0.0, color=MARK, linewidth=0.8)
-    unit = found.result.unit
     axes.set_xlabel(
         "normalized derivative, (dv/v) / (dp/p)"
         if normalized

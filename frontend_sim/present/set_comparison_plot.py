@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from textwrap import fill
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -12,6 +12,7 @@ from frontend_sim.archive.set_table import SetTable
 from frontend_sim.comparison import ColumnDifference, SetComparison
 from frontend_sim.present.colours import BLUE, LIMIT, MARK, ORANGE
 from frontend_sim.present.drawing import axis_scale, draw_grid, literal, new_figure
+from frontend_sim.quantities.counting import counted
 
 Real = NDArray[np.float64]
 
@@ -36,10 +37,11 @@ def set_comparison_figure(comparison: SetComparison, first: SetTable, second: Se
         scale, unit = axis_scale(
             row.unit, np.concatenate([earlier[row.name].value, later[row.name].value])
         )
-        for check, colour, name in (
-            (earlier[row.name], BLUE, "first"), (later[row.name], ORANGE, "second"),
+        for check, colour, width, name in (
+            (earlier[row.name], BLUE, 2.4, "first"), (later[row.name], ORANGE, 1.2, "second"),
         ):  # fmt: skip
-            _draw_shares(left, scale * check.value[np.isfinite(check.value)], colour, name)
+            values = scale * check.value[check.verdict != ""]
+            draw_shares(left, values, color=colour, linewidth=width, label=name)
         limits = np.unique(later[row.name].limit)
         for limit in limits[np.isfinite(limits)][:8].tolist():
             left.axvline(scale * limit, color=LIMIT, linestyle="--", linewidth=1.2)
@@ -54,15 +56,18 @@ def set_comparison_figure(comparison: SetComparison, first: SetTable, second: Se
         panels[0][0].text(0.0, 0.5, "both nights have no check in common", wrap=True)
     told = "differs" if comparison.differs else "no difference beyond noise and tolerance"
     title = literal(fill(comparison.title or "Two nights", 90))
-    figure.suptitle(f"{title}\n{comparison.matched} runs in both, limits dashed: {told}")
+    figure.suptitle(f"{title}\n{counted(comparison.matched, 'run')} in both, limits dashed: {told}")
     return figure
 
 
-def _draw_shares(axes: Axes, values: Real, colour: str, name: str) -> None:
-    if len(values):
-        ordered = np.sort(values)
-        axes.step(ordered, np.arange(1, len(ordered) + 1) / len(ordered), where="post",
-                  color=colour, label=name)  # fmt: skip
+def draw_shares(axes: Axes, values: Real, **style: Any) -> None:
+    """Draw the share of runs below a value; one without a value is not below any."""
+    ordered = np.sort(np.where(np.isnan(values), np.inf, values))
+    finite = np.isfinite(ordered)
+    if finite.any():
+        shares = np.arange(1, len(ordered) + 1) / len(ordered)
+        axes.step(ordered[finite], shares[finite], where="post", **style)
+    axes.set_ylim(0.0, 1.04)
     draw_grid(axes)
 
 

@@ -16,7 +16,8 @@ from frontend_sim.present.comparison_table import (
     finite,
     verdict_line,
 )
-from frontend_sim.present.result_table import quantity
+from frontend_sim.present.result_table import checked, quantity
+from frontend_sim.quantities.counting import counted
 
 if TYPE_CHECKING:
     from rich.console import RenderableType
@@ -29,7 +30,9 @@ def set_comparison_tables(comparison: SetComparison) -> tuple[RenderableType, ..
     """Return the tables of a comparison for the terminal, the verdict last."""
     from rich.text import Text
 
-    title = f"{comparison.first} and {comparison.second}: {comparison.matched} runs in both"
+    title = (
+        f"{comparison.first} and {comparison.second}: {counted(comparison.matched, 'run')} in both"
+    )
     shown: list[RenderableType] = [Text(title, style="bold"), changed_table(comparison.changed)]
     for names, word in ((comparison.added, "added"), (comparison.removed, "removed")):
         if names:
@@ -37,7 +40,9 @@ def set_comparison_tables(comparison: SetComparison) -> tuple[RenderableType, ..
             more = f" and {rest} more" if rest > 0 else ""
             shown.append(Text(f"{word}: {', '.join(names[:MOST_NAMES])}{more}"))
     if comparison.varied:
-        told = ", ".join(f"{key} in {count} runs" for key, count in comparison.varied.items())
+        told = ", ".join(
+            f"{key} in {counted(count, 'run')}" for key, count in comparison.varied.items()
+        )
         shown.append(Text(f"varied keys with other values: {told}"))
     shown.append(_column_table(comparison))
     if comparison.attribution is not None:
@@ -54,7 +59,7 @@ def _column_table(comparison: SetComparison) -> Table:
     for name in ("name", "mean", "largest", "worst margin", "now fail", "now hold", "finding"):
         table.add_column(name, justify="left" if name in ("name", "finding") else "right")
     for row in comparison.columns:
-        cells = (_mean(row), _told(row.peak, row.unit), _told(row.margin, row.unit))
+        cells = (mean_text(row), column_text(row, row.peak), column_text(row, row.margin))
         finding = row.told if row.finding == "differs" else row.finding
         table.add_row(
             Text(row.name), *cells, str(row.worse), str(row.better), finding,
@@ -63,15 +68,19 @@ def _column_table(comparison: SetComparison) -> Table:
     return table
 
 
-def _mean(row: ColumnDifference) -> str:
-    mean = _told(row.mean, row.unit)
+def mean_text(row: ColumnDifference) -> str:
+    """Return the mean of the differences, below it its standard error where there is one."""
+    mean = column_text(row, row.mean)
     if row.shift is None or not math.isfinite(row.shift.error):
         return mean
-    return f"{mean} ± {_told(row.shift.error, row.unit)}"
+    return f"{mean}\n± {column_text(row, row.shift.error)}"
 
 
-def _told(value: float, unit: str) -> str:
-    return quantity(value, unit) if math.isfinite(value) else ""
+def column_text(row: ColumnDifference, value: float) -> str:
+    """Return a number of a check or measure with its unit; "" where there is none."""
+    if not math.isfinite(value):
+        return ""
+    return checked(value, row.unit) if row.of_check else quantity(value, row.unit)
 
 
 def set_comparison_summary(comparison: SetComparison) -> dict[str, Any]:

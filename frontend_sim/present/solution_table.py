@@ -6,6 +6,7 @@ from typing import TYPE_CHECKING
 
 from frontend_sim.present.numbers import engineering, plain
 from frontend_sim.present.result_table import PREFIXED, SIGNS, STYLES
+from frontend_sim.quantities.counting import counted
 
 if TYPE_CHECKING:
     from rich.console import RenderableType
@@ -100,7 +101,7 @@ def map_tables(found: PassMap) -> tuple[RenderableType, ...]:
     from rich.text import Text
 
     first, second = found.first, found.second
-    table = _table(f"Which {first.key} passes, of {len(found.columns)} values")
+    table = _table(f"Which {first.key} passes, of {counted(len(found.columns), 'value')}")
     table.add_column(Text(second.key), justify="right", overflow="fold")
     table.add_column("passes")
     table.add_column("stopped by")
@@ -116,7 +117,7 @@ def map_tables(found: PassMap) -> tuple[RenderableType, ...]:
         stoppers = Text(", ".join(found.stoppers(place)))
         table.add_row(second.text(value), told + more, stoppers, style=style)
     whole = len(found.columns) * len(found.rows)
-    told = f"{found.passing} of {found.tried} pairs pass"
+    told = f"{found.passing:,} of {counted(found.tried, 'pair')} pass"
     if not found.complete:
         told += f"; interrupted, {whole} were to be tried"
     if found.corners:

@@ -15,6 +15,9 @@ from frontend_sim.simulation.run import RunBlock
 Real = NDArray[np.float64]
 Index = NDArray[np.int64]
 
+ROUNDING = 4.0 * np.finfo(np.float64).eps
+"""Share of an instant within which an end is on it: one, another and what lies between round."""
+
 _PER_CONVERSION = tuple(
     field.name
     for field in fields(RunBlock)
@@ -50,7 +53,9 @@ class Stretches:
         if len(spans) == 0:
             return cls(np.empty((0, 2)), around)
         inside = np.clip(spans, *whole)
-        wide = inside[np.argsort(inside[:, 0], kind="stable")] + [-around, around]
+        # Conversions that lie on an end belong to the stretch, however their instants round.
+        width = around + ROUNDING * (float(np.max(np.abs(inside))) + around)
+        wide = inside[np.argsort(inside[:, 0], kind="stable")] + [-width, width]
         reach = np.maximum.accumulate(wide[:, 1])
         first = np.flatnonzero(np.concatenate([[True], wide[1:, 0] > reach[:-1]]))
         last = np.append(first[1:], len(wide)) - 1

@@ -137,6 +137,8 @@ class Solution:
                 f"{near}{some}; what passes is {between}{more}"
             )
         verdict = "pass" if self.shape == "all pass" else "fail"
+        if many == 1:
+            return f"the only value that was tried {verdict}{'es' if verdict == 'pass' else 's'}"
         return f"{looked} that were tried {verdict}"
 
     def as_dict(self) -> dict[str, Any]:

@@ -48,7 +48,8 @@ class CheckSummary:
     group : of draws that yield, percentiles and limits are those of, the worst of several; "" where
         there is but one
     worst : number of the run with the smallest margin
-    percentiles : of the values, at ``SHARES``; with intervals where runs are draws
+    percentiles : of the values, at ``SHARES``; with intervals where runs are draws. What has no
+        value counts as the worst, for the limits too
     side : of those limits: where the check has its limit, ``both`` where runs met two
     limits : that hold 95 % of all that could be drawn, with 95 % confidence; None where there are
         too few draws
@@ -108,6 +109,8 @@ def summarize_check(
     margins[there & np.isnan(column.margin)] = np.nan
     mine = there & population.drawn if sampled else there
     side = _side(column)
+    # What has no value fails, as the worst of all would.
+    known = np.where(np.isnan(column.value), -np.inf if side == "low" else np.inf, column.value)
     return CheckSummary(
         column,
         int(np.count_nonzero(there)),
@@ -116,9 +119,9 @@ def summarize_check(
         group,
         worst_run(margins),
         # Percentiles of draws where there are some: a grid has no distribution.
-        percentiles_of(column.value[drawn if sampled else there]),
+        percentiles_of(known[drawn if sampled else there]),
         side,
-        _limits(column.value[drawn], side),
+        _limits(known[drawn], side),
         draws_needed(COVERAGE, CONFIDENCE, side),
         causes_of(column.value, parameters, mine, sampled),
         tuple(_corner_warnings(column, population, parameters, noisy)),
@@ -133,10 +136,9 @@ def _side(column: CheckColumn) -> Side:
 
 
 def _limits(values: Real, side: Side) -> ToleranceLimits | None:
-    """Return the limits to the side that the check cares for; what has no value is the worst."""
-    known = np.where(np.isnan(values), -np.inf if side == "low" else np.inf, values)
+    """Return the limits to the side that the check cares for, None where draws are too few."""
     try:
-        return tolerance_limits(known, COVERAGE, CONFIDENCE, side)
+        return tolerance_limits(values, COVERAGE, CONFIDENCE, side)
     except MeasureError:
         return None
 

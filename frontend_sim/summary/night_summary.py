@@ -12,6 +12,7 @@ from numpy.typing import NDArray
 from frontend_sim.archive.set_table import SetTable
 from frontend_sim.measure.checks.quiet import quiet_checks
 from frontend_sim.measure.statistics import PassRate, pass_rate
+from frontend_sim.quantities.counting import counted, share_of
 from frontend_sim.summary.check_summary import CheckSummary, summarize_check
 from frontend_sim.summary.measure_summary import MeasureSummary, measure_summaries
 from frontend_sim.summary.population import Population
@@ -115,9 +116,13 @@ def numeric_parameters(table: SetTable) -> dict[str, Real]:
 def _warnings(table: SetTable, checks: list[CheckSummary], errors: int) -> Iterator[str]:
     missing = table.planned - len(table.names)
     if missing:
-        yield f"of {table.planned} runs {missing} are missing; the next replay goes on with them"
+        share = share_of(missing, table.planned, "run")
+        yield f"missing: {share}; the next replay goes on from there"
+    elif not table.complete and not errors:
+        yield "stopped before it knew whether this is all; the next replay goes on from there"
     if errors:
-        yield f"of {table.planned} runs {errors} gave no result, which counts as not holding"
+        share = share_of(errors, table.planned, "run")
+        yield f"no result from {share}, which counts as not holding"
     few: dict[tuple[int, int], list[str]] = {}
     for check in checks:
         yield from check.warnings
@@ -125,6 +130,6 @@ def _warnings(table: SetTable, checks: list[CheckSummary], errors: int) -> Itera
             few.setdefault((check.rate.total, check.draws_needed), []).append(check.name)
     for (drawn, needed), names in few.items():
         yield (
-            f"{', '.join(names)}: {drawn} draws are too few for a limit that holds 95 % with 95 % "
-            f"confidence; {needed} do"
+            f"{', '.join(names)}: {counted(drawn, 'draw is', 'draws are')} too few for a limit "
+            f"that holds 95 % with 95 % confidence; {needed} do"
         )

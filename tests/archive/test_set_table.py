@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Iterator
+from collections.abc import Callable, Iterator
 from datetime import UTC, datetime
 from pathlib import Path
 
@@ -13,7 +13,7 @@ import pytest
 
 from frontend_sim.archive import Result
 from frontend_sim.archive.set_table import is_set, open_set
-from frontend_sim.archive.set_writer import WIDEST, SetHead, SetRow, write_set
+from frontend_sim.archive.set_writer import WIDEST, SetHead, SetRow, Shape, write_set
 from frontend_sim.errors import RecordError
 
 CREATED = datetime(2026, 1, 2, 3, 4, 5, tzinfo=UTC)
@@ -31,10 +31,14 @@ def head(**changes: object) -> SetHead:
         "planned": 3,
         "text": "base = 'x.toml'",
         "versions": {"frontend-sim": "1"},
-        "units": {"chain[1].resistance": "ohm"},
         "bases": (("x", "text", {"a": 1}),),
     }
     return SetHead(**{**values, **changes})  # type: ignore[arg-type]  # the fields as above
+
+
+def written(path: Path, head: SetHead, rows: Callable[[], Iterator[SetRow]]) -> None:
+    """Write rows as a set."""
+    write_set(path, head, Shape.of(rows(), {"chain[1].resistance": "ohm"}), rows())
 
 
 def rows() -> Iterator[SetRow]:
@@ -51,7 +55,7 @@ def rows() -> Iterator[SetRow]:
 
 def test_a_set_is_read_as_it_was_written(tmp_path: Path) -> None:
     """Columns, numbers, texts and head come back; what a run does not have is NaN or empty."""
-    write_set(tmp_path / "set.h5", head(), rows)
+    written(tmp_path / "set.h5", head(), rows)
     table = open_set(tmp_path)
     assert (table.title, table.seed, table.created) == ("Invented: ü", 2**62, CREATED)
     assert table.complete
@@ -79,7 +83,7 @@ def test_a_set_is_read_as_it_was_written(tmp_path: Path) -> None:
 
 def test_a_general_reader_gets_the_table_in_one_call(tmp_path: Path) -> None:
     """The runs are one compound dataset with named columns."""
-    write_set(tmp_path / "set.h5", head(), rows)
+    written(tmp_path / "set.h5", head(), rows)
     with h5py.File(tmp_path / "set.h5") as file:
         runs = file["runs"][:]
     assert runs.dtype.names[:3] == ("name", "base", "verdict")
@@ -93,7 +97,7 @@ def test_names_of_checks_never_hide_other_columns(tmp_path: Path) -> None:
         results = (Result("verdict", 1.0, "V", 2.0, 1.0, "holds", "", "at most"),)
         yield SetRow({"name": "a", "verdict": "holds"}, {}, results)
 
-    write_set(tmp_path / "set.h5", head(), named)
+    written(tmp_path / "set.h5", head(), named)
     table = open_set(tmp_path)
     assert table.verdicts.tolist() == ["holds"]
     assert table.checks[0].value.tolist() == [1.0]
@@ -109,7 +113,7 @@ def test_a_wide_set_has_several_tables_that_read_as_one(tmp_path: Path) -> None:
             values: dict[str, float | str] = {key: float(run + k) for k, key in enumerate(keys)}
             yield SetRow({"name": f"run {run}"}, values)
 
-    write_set(tmp_path / "set.h5", head(), wide)
+    written(tmp_path / "set.h5", head(), wide)
     table = open_set(tmp_path)
     assert len(table.parameters) == len(keys)
     assert np.asarray(table.parameters[keys[-1]]).tolist() == [899.0, 900.0]
@@ -117,7 +121,7 @@ def test_a_wide_set_has_several_tables_that_read_as_one(tmp_path: Path) -> None:
 
 def test_a_set_without_runs_can_be_read(tmp_path: Path) -> None:
     """A night that was stopped before its first run leaves a table that is empty."""
-    write_set(tmp_path / "set.h5", head(complete=False), lambda: iter(()))
+    written(tmp_path / "set.h5", head(complete=False), lambda: iter(()))
     table = open_set(tmp_path)
     assert (len(table.runs), table.complete, table.checks) == (0, False, ())
 
@@ -130,7 +134,7 @@ def test_damage_and_foreign_files_are_told(tmp_path: Path) -> None:
     path.write_bytes(b"text")
     with pytest.raises(RecordError, match="not an HDF5 file"):
         open_set(path)
-    write_set(path, head(), rows)
+    written(path, head(), rows)
     with h5py.File(path, "r+") as file:
         file.attrs["title"] = "another"
     with pytest.raises(RecordError, match="differ from what was written"):

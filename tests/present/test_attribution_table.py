@@ -30,3 +30,20 @@ def test_what_moves_nothing_is_not_told_as_a_number() -> None:
     assert "e-" not in text
     assert "chain[2].corner" not in text
     assert "headroom" not in text
+
+
+def test_margins_are_told_as_such() -> None:
+    """What moves by -3.5 us is the margin of a wait that grows; that of a share is in percent."""
+    split = Attribution(
+        units={"settling": "s", "overshoot": "1"},
+        total={"settling": -3.5e-6, "overshoot": 0.02},
+        shares=(Share("chain[1].capacitance", {"settling": -3.5e-6, "overshoot": 0.02}),),
+        rounding={"settling": 1e-12, "overshoot": 1e-12},
+        margins=frozenset({"settling", "overshoot"}),
+    )
+    console = Console(width=100)
+    with console.capture() as caught:
+        console.print(attribution_table(split))
+    text = " ".join(caught.get().split())
+    assert "settling: margin │ chain[1].capacitance │ -3.500 us" in text
+    assert "overshoot: margin │ chain[1].capacitance │ +2.000 %" in text

@@ -225,18 +225,29 @@ def test_curves_are_for_one_unit_of_the_file() -> None:
         assert part in shown, part
 
 
-def test_a_record_tells_the_unit_of_its_file(tmp_path: Path) -> None:
+SENSORS = {
+    "g": """kind = "accelerometer"
+sensitivity = "100 mV/g"
+natural_frequency = "2 kHz"
+quality_factor = 1""",
+    # Its full scale keeps a unit in the record, Pa.
+    "bar": '''kind = "resistive-bridge"
+sensitivity = "2 mV/V"
+full_scale = "10 bar"
+excitation = "5 V"''',
+}
+
+
+@pytest.mark.parametrize("unit", SENSORS)
+def test_a_record_tells_the_unit_of_its_file(tmp_path: Path, unit: str) -> None:
     """Its values are in SI, and its file as written has the unit that a run is told in."""
-    text = """
+    text = f"""
 format = 1
 [stimulus]
 kind = "step"
-after = "2 g"
+after = "2 {unit}"
 [[chain]]
-kind = "accelerometer"
-sensitivity = "100 mV/g"
-natural_frequency = "2 kHz"
-quality_factor = 1
+{SENSORS[unit]}
 [adc]
 rate = "1 kHz"
 bits = 12
@@ -247,9 +258,9 @@ duration = "10 ms"
     record_run(Simulation(parse_scenario(text)), tmp_path / "run.h5")
     console = Console(file=io.StringIO(), width=100)
     with open_record(tmp_path / "run.h5") as record:
-        assert told_unit(record.scenario).name == "g"
+        assert told_unit(record.scenario).name == unit
         console.print(*run_tables(record))
-    assert "2.0000 g" in console.file.getvalue()
+    assert f"2.0000 {unit}" in console.file.getvalue()
 
 
 def test_the_high_pass_says_what_its_times_refer_to() -> None:

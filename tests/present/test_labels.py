@@ -7,10 +7,11 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from frontend_sim.present.numbers import counted
+from frontend_sim.present.drawing import new_figure
 from frontend_sim.present.result_table import result_tables
-from frontend_sim.present.run_panels import Conversions, draw_difference
+from frontend_sim.present.run_panels import Conversions, draw_codes, draw_difference
 from frontend_sim.present.step_panels import LABEL_HEIGHT, spread_out
+from frontend_sim.quantities.counting import counted
 from frontend_sim.scenario.model import Scenario
 
 
@@ -48,6 +49,29 @@ def test_no_line_leads_over_conversions_that_are_left_out():
     assert np.flatnonzero(np.isnan(line.get_ydata())) == [300]
 
 
+def test_numbers_of_axes_are_written_out():
+    """A signal of 0.1 mV about 0.8 V has 0.8 V on its axis, and 20970 on that of the codes."""
+    from matplotlib.backends.backend_agg import FigureCanvasAgg
+
+    adc = Scenario.model_validate(
+        {
+            "stimulus": {"kind": "step", "after": 1.0},
+            "adc": {"rate": "1 kHz", "bits": 16, "high": "2.5 V"},
+            "simulation": {"duration": "1 s"},
+        }
+    ).adc
+    time = np.arange(500.0)
+    pin = 0.8 + 5e-5 * np.sin(0.1 * time)
+    figure = new_figure(6.0, 4.0)
+    axes = figure.subplots()
+    draw_codes(axes, Conversions(adc, time, pin, pin, np.zeros(500, np.bool_)))
+    FigureCanvasAgg(figure).draw()
+    for panel, far in ((axes, 0.7), (axes.child_axes[0], 20_000.0)):
+        assert panel.yaxis.get_offset_text().get_text() == ""
+        ticks = [text.get_text() for text in panel.yaxis.get_ticklabels()]
+        assert all(float(tick) > far for tick in ticks if tick)
+
+
 def test_one_check_is_no_checks():
     """Singular and plural, in verdicts too."""
     assert (counted(1, "check"), counted(2, "check")) == ("1 check", "2 checks")
@@ -55,5 +79,5 @@ def test_one_check_is_no_checks():
         "name": "headroom", "value": 1.0, "unit": "V", "limit": 0.5, "margin": 0.5,
         "verdict": "holds", "method": "", "bound": "at least", "advice": "",
     }  # fmt: skip
-    assert str(result_tables([row])[-1]) == "verdict: holds, 1 check"
-    assert str(result_tables([row | {"verdict": "fails"}])[-1]) == "verdict: fails, 1 of 1 check"
+    assert str(result_tables([row])[-1]) == "verdict: holds, the only check"
+    assert str(result_tables([row | {"verdict": "fails"}])[-1]) == "verdict: fails, the only check"

@@ -18,7 +18,6 @@ from frontend_sim.present.numbers import (
     plain,
     prefix_of,
     quantity,
-    share_of,
 )
 from frontend_sim.quantities import FREQUENCY, SignalUnit, parse
 
@@ -154,13 +153,3 @@ def test_levels_of_temperature_are_in_degrees() -> None:
     assert [per_unit(unit) for unit in ("V", "K", "m/s^2", "g", "")] == [
         "V/V", "V/K", "V/(m/s^2)", "V/g", "V",
     ]  # fmt: skip
-
-
-@pytest.mark.parametrize(
-    ("count", "total", "text"),
-    [(3, 1200, "3 of 1,200 runs"), (0, 1, "0 of 1 runs"), (12, 12, "all 12 runs"),
-     (1, 1, "the only run")],
-)  # fmt: skip
-def test_a_part_of_several_things(count: int, total: int, text: str) -> None:
-    """All of them, or the only one, are named so."""
-    assert share_of(count, total, "run") == text

@@ -50,7 +50,7 @@ def test_each_failing_check_has_its_sentence() -> None:
     assert "tone fails: cannot be told: no tone" in text
     assert "wait fails" not in text
     assert text.rstrip().endswith("verdict: fails, 2 of 3 checks")
-    assert printed(HOLDS).rstrip().endswith("verdict: holds, 1 check")
+    assert printed(HOLDS).rstrip().endswith("verdict: holds, the only check")
 
 
 def test_names_stand_for_themselves() -> None:
@@ -132,7 +132,8 @@ def test_a_run_without_settling_checks_has_no_panel() -> None:
 @pytest.mark.parametrize(
     ("value", "unit", "text"),
     [(447.0, "counts", "447 counts"), (0.0, "codes", "0 codes"), (1e6, "ticks", "1000000 ticks"),
-     (2.5, "conversions", "2.500 conversions"), (math.inf, "conversions", "infinite conversions")],
+     (2.5, "conversions", "2.500 conversions"), (-1.0, "conversions", "-1 conversion"),
+     (1.0, "codes", "1 code"), (math.inf, "conversions", "infinite conversions")],
 )  # fmt: skip
 def test_what_is_counted_is_whole(value: float, unit: str, text: str) -> None:
     """Whole numbers have no decimals; a mean of them has."""

@@ -17,9 +17,10 @@ from frontend_sim.measure.checks import checks_before_run, evaluate_checks
 from frontend_sim.measure.result import Result
 from frontend_sim.present import run_figure, run_summary, run_tables
 from frontend_sim.present.aliasing_table import aliasing_summary, aliasing_table
+from frontend_sim.present.drawing import new_figure
 from frontend_sim.present.error_panel import error_views
 from frontend_sim.present.inspection_plot import inspection_figure
-from frontend_sim.present.margin_panel import relative_margin, verdicts_of
+from frontend_sim.present.margin_panel import draw_margins, relative_margin, verdicts_of
 from frontend_sim.present.spectrum_panel import spectrum_view
 
 ROOT = Path(__file__).resolve().parents[2] / "scenarios"
@@ -138,6 +139,19 @@ def test_the_worst_margin_comes_first() -> None:
         "broken", "untold", "on it", "fine", "no limit",
     ]  # fmt: skip
     assert [relative_margin(row) for row in rows] == [0.5, -1.0, -1.0, -1.0, 0.0, 1.0]
+
+
+def test_the_panel_of_many_checks_counts_all_of_them() -> None:
+    """Of 40 checks 30 are drawn; how many fail is told of all, and that not all are shown."""
+    fails = [Result(f"broken {n}", 2.0, "V", 1.0, -1.0, "fails") for n in range(35)]
+    rows = verdicts_of(
+        [*(Result(f"fine {n}", 1.0, "V", 2.0, 1.0, "holds") for n in range(5)), *fails]
+    )
+    axes = new_figure(6.0, 9.0).subplots()
+    draw_margins(axes, rows)
+    assert len(axes.patches) == 30
+    told = "Checks: 35 of 40 fail, the 30 with the least margin are shown"
+    assert axes.get_title(loc="left") == told
 
 
 def test_the_plot_of_an_inspection_has_the_noise_budget() -> None:

@@ -9,12 +9,13 @@ import pytest
 from compared import night
 from nights import BASE, made_set
 
-from frontend_sim.archive.set_table import SetTable, open_set
+from frontend_sim.archive.set_table import CheckColumn, SetTable, open_set
 from frontend_sim.measure.statistics import pass_rate
 from frontend_sim.present.night_table import night_data, shown
 from frontend_sim.present.page import night_page, render
 from frontend_sim.replay import replay_set
 from frontend_sim.summary import NightSummary, Population, summarize
+from frontend_sim.summary.check_summary import summarize_check
 
 DRAWS = 'seed = 5\nkeep = "nothing"\n[corners]\n[draws]\ncount = 60\n'
 
@@ -208,7 +209,15 @@ def test_a_run_without_a_result_makes_a_night_incomplete(tmp_path: Path) -> None
     assert found.status == 3
     assert [name for name, _ in found.errors] == ["wrong"]
     assert found.rate is None
-    assert any("of 2 runs 1 gave no result" in text for text in found.warnings)
+    assert any("no result from 1 of 2 runs" in text for text in found.warnings)
+    assert night_page(found).verdict == "Incomplete: 1 run without a result, 0 missing"
+    (folder / "right.toml").write_text(TURNING.replace("10 dB", "900 dB"), encoding="utf-8")
+    replay_set(folder, tmp_path / "night", on="in-process")
+    failed = night_page(summarize(open_set(tmp_path / "night")))
+    assert failed.verdict == "Fails in 1 of 2 runs; incomplete"
+    # Without a set file scenarios have their own seeds.
+    assert "that of its scenario" in render(failed)
+    assert "seed of the set" not in render(failed)
 
 
 def test_rounding_has_no_cause(tmp_path: Path) -> None:
@@ -220,3 +229,22 @@ def test_rounding_has_no_cause(tmp_path: Path) -> None:
     found = {check.name: check for check in summarize(open_set(tmp_path / "night")).checks}
     assert found["level 1"].cause is not None  # early, it follows the filter
     assert found["level 2"].causes == ()
+
+
+def test_a_run_without_a_value_counts_as_the_worst() -> None:
+    """Of 60 draws 30 cannot be told and fail: the median is beyond all, and so is the limit."""
+    value = np.where(np.arange(60) % 2, np.nan, 1.0)
+    verdict = np.where(np.isnan(value), "fails", "holds")
+    margin = np.where(np.isnan(value), np.nan, 0.5)
+    for bound, worst in (("at most", np.inf), ("at least", -np.inf)):
+        limit = value + (0.5 if bound == "at most" else -0.5)
+        column = CheckColumn("level", "V", bound, value, limit, margin, verdict)
+        population = Population.of([f"draw {number:04d}" for number in range(1, 61)])
+        found = summarize_check(column, population, {}, False)
+        assert found is not None
+        assert found.limits is not None
+        ends = [each.value for each in found.percentiles]
+        if bound == "at most":
+            assert (ends[0], ends[2], found.limits.high) == (1.0, worst, worst)
+        else:
+            assert (ends[0], ends[2], found.limits.low) == (worst, 1.0, worst)

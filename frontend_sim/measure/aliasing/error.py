@@ -15,6 +15,7 @@ from frontend_sim.measure.aliasing.sieve import MOST_LOOKS
 from frontend_sim.measure.aliasing.source import Above
 from frontend_sim.measure.aliasing.split import Edges, Points, split_above
 from frontend_sim.measure.arrays import Real
+from frontend_sim.quantities.counting import counted
 from frontend_sim.simulation.linear import Axis, Initial, Linear
 from frontend_sim.stimulus.drive import Drive, UniformDrive
 
@@ -206,6 +207,7 @@ def _between(times: Real, values: Real, instants: Real) -> Real:
 def _refuse_many(count: int) -> None:
     if count > MOST_LOOKS:
         raise MeasureError(
-            f"the split in parts below and above half the rate takes {count} points at once, more "
-            f"than {MOST_LOOKS}; shorten simulation.duration, or cut the recording with end"
+            f"the split in parts below and above half the rate takes {counted(count, 'point')} at "
+            f"once, more than {MOST_LOOKS}; shorten simulation.duration, or cut the recording with "
+            "end"
         )

@@ -7,6 +7,7 @@ from typing import Any
 import numpy as np
 
 from frontend_sim.errors import MeasureError
+from frontend_sim.measure.arrays import Real
 from frontend_sim.measure.checks.answer import Answer
 from frontend_sim.measure.checks.subject import Subject
 from frontend_sim.measure.linearity import Linearity, ramp_linearity, sine_linearity
@@ -34,19 +35,15 @@ def inl(check: InlCheck, subject: Subject) -> Answer:
     found = linearity_in(check, subject)
     end_point = check.line == "end-point"
     row = found.inl_end_point if end_point else found.inl_best_fit
-    worst = int(np.argmax(np.abs(row)))
-    where = int(found.codes[0]) - 1 + worst
-    by = method_of(check, subject)
-    return _answer(check, by, found, abs(float(row[worst])), found.inl_confidence[worst], where)
+    by, first = method_of(check, subject), int(found.codes[0]) - 1
+    return _answer(check, by, found, np.abs(row), found.inl_confidence, first)
 
 
 def dnl(check: DnlCheck, subject: Subject) -> Answer:
     """Return the largest distance of a code's width from one LSB. Raises as ``inl``."""
     found = linearity_in(check, subject)
-    worst = int(np.argmax(np.abs(found.dnl)))
-    where = int(found.codes[worst])
-    by = method_of(check, subject)
-    return _answer(check, by, found, abs(found.worst_dnl), found.dnl_confidence[worst], where)
+    by, first = method_of(check, subject), int(found.codes[0])
+    return _answer(check, by, found, np.abs(found.dnl), found.dnl_confidence, first)
 
 
 def linearity_possible(check: LinearityCheck, subject: Subject) -> None:
@@ -71,30 +68,55 @@ def linearity_in(check: LinearityCheck, subject: Subject) -> Linearity:
     by = method_of(check, subject)
     key = ("linearity", by, check.after)
     if key not in subject.kept:
-        codes = subject.codes[subject.first_after(check.after) :]
         adc: Any = subject.adc
-        count = sine_linearity if by == "sine" else ramp_linearity
-        subject.kept[key] = count(codes, adc)
+        first, held = subject.first_after(check.after), subject.held
+        codes, analog = subject.codes[first:], held if len(held) else subject.pin
+        subject.kept[key] = (
+            sine_linearity(codes, adc, values=analog[first:])
+            if by == "sine"
+            else ramp_linearity(codes, adc)
+        )
     found: Linearity = subject.kept[key]
     return found
 
 
 def _answer(
-    check: InlCheck | DnlCheck, by: str, found: Linearity, value: float, half: float, where: int
+    check: InlCheck | DnlCheck, by: str, found: Linearity, sizes: Real, halves: Real, first: int
 ) -> Answer:
+    """Return the largest size against its limit.
+
+    What the samples leave open counts against the check, of every code: one that is not the
+    furthest off may be the one that is known the least.
+
+    Parameters
+    ----------
+    sizes, halves : of each code, and half of its interval, shape (K,) [LSB];  first : its number
+    """
+    worst = int(np.argmax(sizes))
+    value, half, where = float(sizes[worst]), float(halves[worst]), first + worst
+    unsure = float(np.max(sizes + halves)) - value
     interval = f"half the {100 * found.confidence:g} % interval"
     beside = (
-        Result("confidence", float(half), "LSB", method=interval),
+        Result("confidence", half, "LSB", method=interval),
         Result("at code", float(where), "counts", method="where it is largest"),
         Result("missing codes", float(len(found.missing)), "codes", method="never seen between"),
         Result("codes beyond", float(found.below + found.above), "codes", method="never reached"),
     )  # fmt: skip
 
     def advice() -> str:
+        if value <= check.at_most:
+            apart = ", of a frequency that no small ratio ties to it" if by == "sine" else ""
+            return (
+                f"whether it holds cannot be told: {found.count} samples let it be known to "
+                f"{unsure:.2g} LSB, and it lies nearer to its limit; take more samples: a longer "
+                f"run, or a higher adc.rate{apart}"
+            )
         return (
             f"take a more linear converter, or correct the codes by a table: code {where} is the "
             f"furthest off, known to ± {half:.2g} LSB"
         )
 
     method = f"counting the codes of a {by}; {SOURCES[by]}"
-    return Answer(value, "LSB", check.at_most, "at most", method, advice, beside)
+    return Answer(
+        value, "LSB", check.at_most, "at most", method, advice, beside, uncertainty=unsure
+    )

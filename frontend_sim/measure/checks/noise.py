@@ -14,6 +14,7 @@ from frontend_sim.measure.checks.subject import Subject
 from frontend_sim.measure.circuit_noise import circuit_noise
 from frontend_sim.measure.noise.summary import CREST, Noise, noise_of
 from frontend_sim.measure.noise_budget import NoiseBudget
+from frontend_sim.quantities.counting import counted
 from frontend_sim.scenario.checks.noise import NoiseCheck
 from frontend_sim.scenario.checks.noise_free_bits import NoiseFreeBitsCheck
 
@@ -123,8 +124,8 @@ def seen_noise(subject: Subject, after: float) -> Noise:
     clipped = int(np.count_nonzero(subject.overrange[first:]))
     if clipped:
         raise MeasureError(
-            f"{clipped} codes are clipped, which cuts their noise off; bring the signal into the "
-            "range, or let after name a later instant"
+            f"{counted(clipped, 'code is', 'codes are')} clipped, which cuts their noise off; "
+            "bring the signal into the range, or let after name a later instant"
         )
     analog = subject.held if len(subject.held) else subject.pin
     return noise_of(subject.voltage[first:] - analog[first:], subject.whole)

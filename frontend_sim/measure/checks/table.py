@@ -55,6 +55,7 @@ class Evaluation:
 
 _TONE = ("time", "voltage")
 _NOISE = ("time", "pin", "held", "voltage", "overrange")
+_LEVELS = ("time", "pin", "held", "codes")
 
 EVALUATIONS: dict[str, Evaluation] = {
     "settling": Evaluation(settling, ("time", "pin"), settling_possible),
@@ -75,8 +76,8 @@ EVALUATIONS: dict[str, Evaluation] = {
     "effective-bits": Evaluation(effective_bits, _TONE),
     "thd": Evaluation(thd, _TONE),
     "sfdr": Evaluation(sfdr, _TONE),
-    "inl": Evaluation(inl, ("time", "codes"), linearity_possible),
-    "dnl": Evaluation(dnl, ("time", "codes"), linearity_possible),
+    "inl": Evaluation(inl, _LEVELS, linearity_possible),
+    "dnl": Evaluation(dnl, _LEVELS, linearity_possible),
     "total-error": Evaluation(total_error, ("time", "pin", "held", "voltage"), total_possible),
     "alias-error": Evaluation(alias_error, ("time",), alias_possible),
     "corner": Evaluation(corner, (), corner),

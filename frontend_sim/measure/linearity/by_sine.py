@@ -2,14 +2,18 @@
 
 from __future__ import annotations
 
+import math
+from dataclasses import dataclass
+
 import numpy as np
 from numpy.typing import ArrayLike
 
 from frontend_sim.converter.adc import Adc
 from frontend_sim.errors import MeasureError
-from frontend_sim.measure.arrays import finite, positive
-from frontend_sim.measure.linearity.confidence import deviate, width_confidence
-from frontend_sim.measure.linearity.histogram import code_density
+from frontend_sim.measure.arrays import Real, codes_of, finite, positive, samples
+from frontend_sim.measure.linearity.confidence import Counts, deviate, width_confidence
+from frontend_sim.measure.linearity.histogram import CodeDensity, code_density
+from frontend_sim.measure.linearity.in_order import misplaced
 from frontend_sim.measure.linearity.linearity import Levels, Linearity, linearity_of
 from frontend_sim.measure.linearity.transitions import ideal_levels
 
@@ -21,6 +25,7 @@ def sine_linearity(
     amplitude: float | None = None,
     offset: float | None = None,
     confidence: float = 0.99,
+    values: ArrayLike | None = None,
 ) -> Linearity:
     """Measure INL and DNL from the codes of a sine at random or evenly spread phases,
 
@@ -37,6 +42,8 @@ def sine_linearity(
     amplitude, offset : of the sine at the input, for gain and offset errors [V]; left out, only
         INL and DNL are told, which do not depend on them
     confidence : share of intervals that hold the true value
+    values : what was converted, shape (N,) [V]; where it is known, so are the phases, and evenly
+        spread ones tell far more than random ones do
 
     Raises
     ------
@@ -52,16 +59,62 @@ def sine_linearity(
     level = centre - scale * np.cos(np.pi * share)
     # d level = scale pi sin(pi share) d share, and the share is binomial.
     slope = scale * np.pi * np.sin(np.pi * share)
-    spread = np.sqrt(share * (1.0 - share) / density.total)
-    levels = Levels(level, deviate(confidence) * slope * spread, amplitude is not None)
+    unsure = deviate(confidence) * np.sqrt(share * (1.0 - share) / density.total)
+    phases = None
+    if values is not None:
+        phases = _phases_of(codes_of(codes), samples(values), density, deviate(confidence))
+        unsure = phases.best(unsure, phases.unsure)
+    levels = Levels(level, slope * unsure, amplitude is not None)
     # A code of one LSB gets the share of the time that the sine spends in it.
     edges = level[0] + np.linspace(0.0, 1.0, len(level)) * (level[-1] - level[0])
     turn = np.arccos(np.clip((centre - edges) / scale, -1.0, 1.0))
     expected = np.diff(turn) / np.pi
-    return linearity_of(
-        density,
-        levels,
-        width_confidence(density.counts[1:-1], expected, density.total, confidence),
-        ideal_levels(adc, density),
-        confidence,
-    )
+    widths = width_confidence(density.counts[1:-1], expected, density.total, confidence)
+    if phases is not None:
+        widths = phases.best(widths, (phases.unsure[:-1] + phases.unsure[1:]) / expected)
+    return linearity_of(density, levels, widths, ideal_levels(adc, density), confidence)
+
+
+RANDOM = 1.63
+"""D sqrt(N) that random phases exceed in one record of a hundred. Source: Smirnov 1948, "Table for
+estimating the goodness of fit of empirical distributions" (from memory)."""
+
+
+@dataclass(frozen=True, eq=False)
+class _Phases:
+    """How evenly the phases of a record lie.
+
+    Parameters
+    ----------
+    unsure : how far the share of samples below each level may be off, shape (K - 1,) [1]
+    uneven : whether they are less even than random ones, as those of a frequency that a small
+        ratio ties to the rate, or of a few cycles
+    """
+
+    unsure: Real
+    uneven: bool
+
+    def best(self, by_chance: Real, known: Real) -> Real:
+        """Return half an interval: the one of random phases holds if these are no less even."""
+        return known if self.uneven else np.minimum(by_chance, known)
+
+
+def _phases_of(codes: Counts, values: Real, density: CodeDensity, deviations: float) -> _Phases:
+    """Return what the values that were converted tell of the phases.
+
+    The phase of a sample, folded into half a cycle, is arccos((centre - value) / amplitude) / pi.
+    Below a level lie all samples whose phase is below its own, so that the share is off by no more
+    than the largest distance of the phases' distribution from an even one, D of Kolmogorov (1933).
+    Noise puts some on the wrong side of a level: m of them, in the order of what was converted, as
+    of a ramp; see ``in_order``.
+    """
+    low, high = float(np.min(values)), float(np.max(values))
+    cosine = (low + high - 2.0 * values) / (high - low) if high > low else np.zeros(len(values))
+    phase = np.sort(np.arccos(np.clip(cosine, -1.0, 1.0)) / np.pi)
+    even = np.arange(len(phase) + 1) / len(phase)
+    far = max(float(np.max(even[1:] - phase)), float(np.max(phase - even[:-1])))
+    order = np.argsort(values, kind="stable")
+    wrong = misplaced(codes[order] - density.lowest, density.counts)
+    noisy = np.maximum(wrong, np.mean(wrong))
+    unsure = np.asarray(far + deviations * np.sqrt(2.0 * noisy) / len(values))
+    return _Phases(unsure, far * math.sqrt(len(values)) > RANDOM)

@@ -11,6 +11,7 @@ from frontend_sim.converter.adc import Adc
 from frontend_sim.errors import MeasureError
 from frontend_sim.measure.arrays import codes_of
 from frontend_sim.measure.linearity.confidence import Counts, sane_bits
+from frontend_sim.quantities.counting import counted
 
 LEAST_CODES = 3
 """Codes that must lie between the lowest and the highest one seen."""
@@ -82,8 +83,8 @@ def code_density(codes: ArrayLike, adc: Adc) -> CodeDensity:
     hits = int(np.sum(counts[1:-1]))
     if hits < LEAST_HITS * inner:
         raise MeasureError(
-            f"{hits} samples over the {inner} codes between {lowest} and {highest} are too few to "
-            f"judge a code; take at least {LEAST_HITS * inner} there, see sine_samples_needed for "
-            "a stated confidence"
+            f"{counted(hits, 'sample')} over the {inner} codes between {lowest} and {highest} do "
+            f"not suffice to judge a code; take at least {LEAST_HITS * inner} there, see "
+            "sine_samples_needed for a stated confidence"
         )
     return CodeDensity(lowest, counts, lowest - adc.lowest_code, adc.highest_code - highest)

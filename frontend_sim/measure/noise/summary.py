@@ -12,6 +12,7 @@ from frontend_sim.converter.adc import Adc
 from frontend_sim.errors import MeasureError
 from frontend_sim.measure.arrays import codes_of, positive, samples
 from frontend_sim.measure.noise.interval import Interval, rms_interval
+from frontend_sim.quantities.counting import counted
 
 CREST = 6.6
 """Peak-to-peak value of normal noise over its rms that 99.9 % of the samples keep."""
@@ -102,10 +103,12 @@ def code_noise(codes: ArrayLike, adc: Adc, confidence: float = 0.95) -> Noise:
     """
     row = codes_of(codes, 2)
     for end, name in ((adc.lowest_code, "lowest"), (adc.highest_code, "highest")):
-        if np.any(row == end):
+        cut = int(np.count_nonzero(row == end))
+        if cut:
+            of = f"of {counted(len(row), 'code')}"
             raise MeasureError(
-                f"{np.count_nonzero(row == end)} of {len(row)} codes are the {name} one, {end}: "
-                "the noise is cut off there; move the level into the range"
+                f"{counted(cut, f'{of} is', f'{of} are')} the {name} one, {end}: the noise is cut "
+                "off there; move the level into the range"
             )
     return noise_of(row, adc.full_scale_codes, confidence)
 

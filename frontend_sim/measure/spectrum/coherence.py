@@ -7,6 +7,7 @@ from dataclasses import dataclass
 
 from frontend_sim.errors import MeasureError
 from frontend_sim.measure.arrays import positive
+from frontend_sim.quantities.counting import counted
 
 ON_BIN = 1e-9
 """Distance from a whole number of cycles that leaks nothing to speak of, -175 dB [bins]."""
@@ -104,4 +105,5 @@ def coherent_tone(near: float, rate: float, count: int) -> Coherence:
         for cycles in sorted(pair, key=lambda cycles: abs(cycles - target)):
             if 0 < cycles < 0.5 * count and math.gcd(cycles, count) == 1:
                 return Coherence(cycles / count * rate, cycles, count, 0.0)
-    raise MeasureError(f"a record of {count} points has no coherent tone; take at least 3 points")
+    points = counted(count, "point")
+    raise MeasureError(f"a record of {points} has no coherent tone; take at least 3 points")

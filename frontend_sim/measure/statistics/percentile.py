@@ -76,6 +76,6 @@ def _estimate(ordered: Real, share: float) -> float:
     first = int(position)
     start, end = ordered[first], ordered[min(first + 1, len(ordered) - 1)]
     rest = position - first
-    if rest == 0.0 or start == end:
+    if rest == 0.0 or start == end or np.isneginf(start):
         return float(start)
     return float(start + rest * (end - start))

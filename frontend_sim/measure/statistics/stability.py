@@ -11,6 +11,7 @@ from numpy.typing import NDArray
 
 from frontend_sim.errors import MeasureError
 from frontend_sim.measure.statistics.pass_rate import PassRate, refuse_no_share
+from frontend_sim.quantities.counting import counted
 
 Real = NDArray[np.float64]
 
@@ -142,9 +143,9 @@ def _rows(blocks: Sequence[Real], coverage: float) -> Real:
     size = lengths.pop()
     if size * (1.0 - coverage) < 2.0:
         raise MeasureError(
-            f"blocks of {size} draws cannot tell the ends of an interval of {100 * coverage:g} %; "
-            f"take {math.ceil(2.0 / (1.0 - coverage))} draws or more, the guide takes "
-            f"{block_size(coverage)}"
+            f"blocks of {counted(size, 'draw')} cannot tell the ends of an interval of "
+            f"{100 * coverage:g} %; take {math.ceil(2.0 / (1.0 - coverage))} draws or more, the "
+            f"guide takes {block_size(coverage)}"
         )
     rows = np.stack([np.asarray(block, dtype=np.float64) for block in blocks])
     if not np.all(np.isfinite(rows)):

@@ -10,6 +10,7 @@ from numpy.typing import NDArray
 
 from frontend_sim.errors import MeasureError
 from frontend_sim.measure.statistics.pass_rate import refuse_no_share
+from frontend_sim.quantities.counting import counted
 
 Real = NDArray[np.float64]
 
@@ -102,8 +103,9 @@ def tolerance_limits(
     count, least = len(ordered), _least_blocks(side)
     if confidence_of(count, coverage, least) < confidence:
         raise MeasureError(
-            f"{count} draws give no limit that holds {100 * coverage:g} % with "
-            f"{100 * confidence:g} % confidence; {draws_needed(coverage, confidence, side)} do"
+            f"{counted(count, 'draw gives', 'draws give')} no limit that holds {100 * coverage:g} "
+            f"% with {100 * confidence:g} % confidence; {draws_needed(coverage, confidence, side)} "
+            "do"
         )
     blocks = _most_blocks(count, coverage, confidence, least)
     if side == "both":
@@ -126,8 +128,8 @@ def sorted_values(values: Real) -> Real:
         raise MeasureError("there is no value; a statistic needs at least one run that has it")
     if np.isnan(ordered[-1]):
         raise MeasureError(
-            f"{int(np.count_nonzero(np.isnan(ordered)))} of {len(ordered)} values are not there; "
-            "leave out their runs, and say so"
+            f"missing: {int(np.count_nonzero(np.isnan(ordered)))} of "
+            f"{counted(len(ordered), 'value')}; leave out their runs, and say so"
         )
     return ordered
 

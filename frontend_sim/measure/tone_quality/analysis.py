@@ -18,6 +18,7 @@ from frontend_sim.measure.spectrum.spectrum import amplitude_spectrum
 from frontend_sim.measure.spectrum.window import window_named
 from frontend_sim.measure.tone_quality.lines import Mask, lines_of
 from frontend_sim.measure.tone_quality.quality import ToneQuality, quality_of
+from frontend_sim.quantities.counting import counted
 
 MOST_LEAKAGE = 0.02
 """Largest share of the power of noise and distortion that may be leakage of the tone, 0.09 dB."""
@@ -99,9 +100,10 @@ def tone_quality(
 def _no_window(coherence: Coherence, reasons: list[str]) -> MeasureError:
     listed = "\n".join(f"  {reason}" for reason in reasons)
     return MeasureError(
-        f"no window tells the tone, {coherence.frequency:.9g} Hz or {coherence.cycles} cycles "
-        f"{coherence.deviation:+.3g} in the record, from its own leakage\n{listed}\nmake the "
-        "record coherent (a whole number of cycles, see coherent_tone), longer, or use fit_sine"
+        f"no window tells the tone, {coherence.frequency:.9g} Hz or "
+        f"{counted(coherence.cycles, 'cycle')} {coherence.deviation:+.3g} in the record, from its "
+        f"own leakage\n{listed}\nmake the record coherent (a whole number of cycles, see "
+        "coherent_tone), longer, or use fit_sine"
     )
 
 
@@ -118,7 +120,8 @@ def _refuse_repeats(values: Real, phases: int) -> None:
         return
     if np.array_equal(values[phases:], values[:-phases]):
         raise MeasureError(
-            f"the record repeats the same {phases} samples over and over, so it shows "
-            f"{phases} phases of the tone only, at least {LEAST_PHASES} are needed; take a "
-            "number of cycles without common factor with the number of points, see coherent_tone"
+            f"the record repeats the same {counted(phases, 'sample')} over and over, so it shows "
+            f"{counted(phases, 'phase')} of the tone only, at least {LEAST_PHASES} are needed; "
+            "take a number of cycles without common factor with the number of points, see "
+            "coherent_tone"
         )

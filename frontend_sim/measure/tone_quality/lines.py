@@ -10,6 +10,7 @@ from numpy.typing import NDArray
 from frontend_sim.errors import MeasureError
 from frontend_sim.measure.spectrum.folding import folded
 from frontend_sim.measure.spectrum.spectrum import Spectrum
+from frontend_sim.quantities.counting import counted
 
 LEAST_NOISE = 0.25
 """Share of the bins that must be left for the noise."""
@@ -92,9 +93,9 @@ def lines_of(spectrum: Spectrum, frequency: float, highest: int) -> Lines:
             taken[first : end + 1] = True
     if np.count_nonzero(~taken) < LEAST_NOISE * len(taken):
         raise MeasureError(
-            f"a record of {spectrum.count} points leaves {np.count_nonzero(~taken)} bins for the "
-            f"noise beside the tone and {highest - 1} harmonics; record longer, or ask for fewer "
-            "harmonics"
+            f"a record of {counted(spectrum.count, 'point')} leaves "
+            f"{counted(int(np.count_nonzero(~taken)), 'bin')} for the noise beside the tone and "
+            f"{counted(highest - 1, 'harmonic')}; record longer, or ask for fewer harmonics"
         )
     return Lines(tone, tuple(harmonics), kept_out, ~taken)
 

@@ -9,6 +9,7 @@ from numpy.typing import ArrayLike
 
 from frontend_sim.errors import MeasureError
 from frontend_sim.measure.arrays import finite, increasing, samples
+from frontend_sim.quantities.counting import counted
 
 
 @dataclass(frozen=True)
@@ -56,8 +57,8 @@ def droop_of(
     first, last = np.searchsorted(instants, [finite(start, "the start"), finite(stop, "the stop")])
     if last - first < 2:
         raise MeasureError(
-            f"{max(int(last - first), 0)} samples lie on the top of the pulse, from {start:g} s to "
-            f"{stop:g} s; a droop needs at least 2"
+            f"{counted(max(int(last - first), 0), 'sample lies', 'samples lie')} on the top of the "
+            f"pulse, from {start:g} s to {stop:g} s; a droop needs at least 2"
         )
     top, since = row[first:last], instants[first:last] - instants[first]
     height = float(top[0]) - finite(baseline, "the baseline")

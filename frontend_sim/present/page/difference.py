@@ -7,9 +7,10 @@ from collections.abc import Sequence
 
 from frontend_sim.comparison import Change, RecordComparison, ResultDifference, SeriesDifference
 from frontend_sim.comparison.series import DIFFERENT, Finding
+from frontend_sim.measure.result import Result
+from frontend_sim.present.comparison_table import result_text
 from frontend_sim.present.numbers import engineering, plain
 from frontend_sim.present.page.content import Cell, PageTable, Section, Tone, number
-from frontend_sim.present.result_table import quantity
 
 
 def difference_section(comparison: RecordComparison) -> Section:
@@ -76,16 +77,17 @@ def _result_table(rows: Sequence[ResultDifference]) -> PageTable:
 
 
 def _result_row(row: ResultDifference) -> tuple[Cell, ...]:
-    sides = [
-        "not there" if side is None else quantity(side.value, side.unit) or "none"
-        for side in (row.first, row.second)
-    ]
-    change = "" if math.isnan(row.change) else quantity(row.change, row.unit)
+    def told(side: Result | None) -> str:
+        if side is None:
+            return "not there"
+        return "none" if side.value is None else result_text(row, side.value, side.unit)
+
+    change = "" if math.isnan(row.change) else result_text(row, row.change)
     verdict = row.flip or (row.second.verdict if row.second is not None else "")
     return (
         Cell(row.name),
-        number(sides[0]),
-        number(sides[1]),
+        number(told(row.first)),
+        number(told(row.second)),
         number(change),
         Cell(verdict if verdict != "none" else ""),
         Cell(row.finding, tone_of(row.finding)),

@@ -9,7 +9,7 @@ import numpy as np
 from frontend_sim.comparison import SetComparison
 from frontend_sim.measure.statistics import worst_order
 from frontend_sim.present.night_table import share, shown
-from frontend_sim.present.numbers import counted, engineering, plain, share_of
+from frontend_sim.present.numbers import engineering, plain
 from frontend_sim.present.page.content import (
     Cell,
     Page,
@@ -22,6 +22,7 @@ from frontend_sim.present.page.night_spread import measure_section, of_group, sp
 from frontend_sim.present.page.origin import caution_section, made, origin_section
 from frontend_sim.present.page.set_difference import set_difference_section
 from frontend_sim.present.result_table import PREFIXED, SIGNS
+from frontend_sim.quantities.counting import counted, share_of
 from frontend_sim.summary import CheckSummary, NightSummary
 
 MOST_ROWS = 20
@@ -68,11 +69,15 @@ def parameter_text(value: float | str, unit: str) -> str:
 
 def _verdict(summary: NightSummary) -> tuple[Tone, str]:
     fails, errors, runs = summary.counts["fails"], len(summary.errors), summary.runs
+    complete = summary.table.complete and not errors
     if fails:
-        return "fails", f"Fails in {share_of(fails, runs, 'run')}"
-    if errors or not summary.table.complete:
+        told = f"Fails in {share_of(fails, runs, 'run')}"
+        return "fails", told if complete else f"{told}; incomplete"
+    if not complete:
         missing = summary.table.planned - runs
-        return "open", f"Incomplete: {counted(errors, 'run')} without a result, {missing} missing"
+        if not errors and not missing:
+            return "open", "Incomplete: it was stopped before it knew whether this is all"
+        return "open", f"Incomplete: {counted(errors, 'run')} without a result, {missing:,} missing"
     if not summary.checks:
         return "open", "No check was made"
     return "holds", f"Holds in {share_of(runs, runs, 'run')}"
@@ -82,9 +87,8 @@ def _next_thing(summary: NightSummary) -> str:
     broken = [check for check in summary.checks if check.fails]
     if broken:
         first = broken[0]
-        advice = str(summary.table.texts("advice")[first.worst])
-        name = summary.table.names[first.worst]
-        return f"{first.name} is worst in {name}: {advice}" if advice else f"Worst run: {name}."
+        name, advice = summary.table.names[first.worst], _advice(summary, first, first.worst)
+        return f"{first.name} is worst in {name}" + (f": {advice}" if advice else ".")
     if summary.warnings:
         return summary.warnings[0][:1].upper() + summary.warnings[0][1:] + "."
     if not summary.checks:
@@ -93,10 +97,10 @@ def _next_thing(summary: NightSummary) -> str:
 
 
 def _facts(summary: NightSummary) -> Iterator[tuple[str, str]]:
-    yield "runs", f"{summary.runs} of {summary.table.planned}"
+    yield "runs", f"{summary.runs:,} of {summary.table.planned:,}"
     if summary.rate is not None:
         which = f" of {summary.group}, the worst group" if summary.group else ""
-        yield f"yield of {summary.rate.total} draws{which}, 95 %", share(summary.rate)
+        yield f"yield of {counted(summary.rate.total, 'draw')}{which}, 95 %", share(summary.rate)
     corners = int(np.count_nonzero(summary.population.corner))
     if corners:
         yield "corners", f"{corners}"
@@ -111,15 +115,17 @@ def _duration(seconds: float) -> str:
 
 
 def _verdict_section(summary: NightSummary) -> Section:
-    head = ("check", "verdict", "fails in", "worst margin", "yield of draws, 95 % interval")
-    rows = tuple(_check_row(check) for check in summary.checks)
+    drawn = any(check.rate is not None for check in summary.checks)
+    head: tuple[str, ...] = ("check", "verdict", "fails in", "worst margin")
+    head += ("yield of draws, 95 % interval",) if drawn else ()
+    rows = tuple(_check_row(check)[: len(head)] for check in summary.checks)
     tables = [PageTable("Checks, failures first", head, rows)] if rows else []
     failing = _failing_table(summary)
     if failing is not None:
         tables.append(failing)
     if summary.errors:
         listed = tuple((Cell(a), Cell(b, "fails")) for a, b in summary.errors[:MOST_ROWS])
-        note = _rest(len(summary.errors))
+        note = _rest(len(summary.errors) - len(listed))
         tables.append(PageTable("Runs without a result", ("run", "why"), listed, note))
     text = tuple(f"{warning[:1].upper()}{warning[1:]}." for warning in summary.warnings)
     if not summary.checks:
@@ -134,23 +140,23 @@ def _check_row(check: CheckSummary) -> tuple[Cell, ...]:
     return (
         Cell(check.name),
         Cell(tone, tone),
-        number(f"{check.fails} of {check.runs}"),
+        number(f"{check.fails:,} of {check.runs:,}"),
         number(shown(margin, check)),
         number("" if check.rate is None else f"{share(check.rate)}{of_group(check)}"),
     )
 
 
 def _failing_table(summary: NightSummary) -> PageTable | None:
-    failing = np.flatnonzero(summary.table.verdicts == "fails")
-    if len(failing) == 0:
+    failing = [check for check in summary.checks if check.fails]
+    if not failing:
         return None
-    advice, records = summary.table.texts("advice"), summary.table.texts("record")
+    records = summary.table.texts("record")
+    # Margins of several checks cannot be held against each other: each has its share of the rows.
+    each = max(MOST_ROWS // len(failing), 1)
     found = []
-    for check in summary.checks:
+    for check in failing[:MOST_ROWS]:
         broken = np.flatnonzero(check.column.verdict == "fails")
-        if len(broken) == 0:
-            continue
-        worst = broken[worst_order(check.column.margin[broken])][:MOST_ROWS].tolist()
+        worst = broken[worst_order(check.column.margin[broken])][:each].tolist()
         found += [(check, run) for run in worst]
     rows = tuple(
         (
@@ -158,18 +164,25 @@ def _failing_table(summary: NightSummary) -> PageTable | None:
             Cell(check.name),
             number(shown(float(check.column.margin[run]), check), "fails"),
             number(shown(float(check.column.value[run]), check)),
-            Cell(str(advice[run])),
+            Cell(_advice(summary, check, run)),
             Cell(str(records[run]) or "not kept"),
         )
-        for check, run in found[:MOST_ROWS]
+        for check, run in found
     )
     head = ("run", "check", "margin", "value", "what to change first", "record")
-    return PageTable("Runs that fail, the worst first", head, rows, _rest(len(found)))
+    note = _rest(sum(check.fails for check in failing) - len(found))
+    return PageTable("Runs that fail, the worst of each check first", head, rows, note)
 
 
-def _rest(count: int) -> str:
-    rest = count - MOST_ROWS
-    return f"{rest} more stand in the table of the set." if rest > 0 else ""
+def _advice(summary: NightSummary, check: CheckSummary, run: int) -> str:
+    """Return what to change first in a run, which is told of the first check that fails there."""
+    advice = str(summary.table.texts("advice")[run])
+    first = next(each.name for each in summary.table.checks if each.verdict[run] == "fails")
+    return advice if not advice or first == check.name else f"{first}: {advice}"
+
+
+def _rest(rest: int) -> str:
+    return counted(rest, "more stands", "more stand") + " in the table of the set." if rest else ""
 
 
 def _worst_section(summary: NightSummary) -> Section:
@@ -177,7 +190,7 @@ def _worst_section(summary: NightSummary) -> Section:
     rows = tuple(_worst_row(summary, check) for check in summary.checks)
     text = (
         "The run with the smallest margin of each check; no run of this night is worse. What "
-        "was not drawn may be."
+        "was not run may be."
     )
     return Section(
         "worst", "Worst cases", (text,), (PageTable("Worst run of each check", head, rows),)
@@ -203,15 +216,25 @@ def _worst_row(summary: NightSummary, check: CheckSummary) -> tuple[Cell, ...]:
 
 def _origin(summary: NightSummary) -> Section:
     table = summary.table
-    facts = (
+    facts = [
         ("set", str(table.path)),
         ("begun", table.created.isoformat(sep=" ", timespec="seconds")),
-        ("seed of the set", str(table.seed)),
-        ("seed of a run", "from the seed of the set and the name of the run"),
+        *_seeds(summary),
         ("digest of all scenarios and results (SHA-256)", table.digest),
-        ("runs", f"{summary.runs} of {table.planned}"),
-        ("interval of a yield", "mid-p, 95 %: half of the probability of what was seen counts"),
-    )
+        ("runs", f"{summary.runs:,} of {table.planned:,}"),
+    ]
+    if summary.rate is not None:
+        told = "contains the true one in 95 % of nights at least (Blaker 2000)"
+        facts.append(("interval of a yield", told))
     bases = zip(table.base_names, table.base_texts, strict=True)
     listings = [("The set", table.text), *((f"Scenario {name}", text) for name, text in bases)]
     return origin_section(facts, table.versions, (), (), listings)
+
+
+def _seeds(summary: NightSummary) -> Iterator[tuple[str, str]]:
+    """Tell where seeds come from; scenarios that are replayed without a set file have their own."""
+    if not summary.table.text:
+        yield "seed of a run", "that of its scenario"
+        return
+    yield "seed of the set", str(summary.table.seed)
+    yield "seed of a run", "from the seed of the set and the name of the run"

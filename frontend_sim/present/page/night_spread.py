@@ -10,10 +10,10 @@ import numpy as np
 from frontend_sim.present.measure_figure import MOST_PANELS, measure_figure
 from frontend_sim.present.night_figure import night_figure
 from frontend_sim.present.night_table import shown
-from frontend_sim.present.numbers import counted
 from frontend_sim.present.page.content import Cell, PageFigure, PageTable, Section, number
 from frontend_sim.present.page.render import embedded
 from frontend_sim.present.result_table import quantity
+from frontend_sim.quantities.counting import counted
 from frontend_sim.summary import CheckSummary, MeasureSummary, NightSummary
 
 MOST_CAUSES = 6
@@ -39,8 +39,11 @@ def spread_sections(summary: NightSummary) -> Iterator[Section | None]:
     note = (
         "Below each percentile the interval that contains it with 95 % confidence. The 95/95 "
         "limit is the one that 95 % of all that could be drawn keep, with 95 % confidence and "
-        "whatever the distribution (Wilks 1941); a check whose runs met both of its limits has two."
+        "whatever the distribution (Wilks 1941); a check whose runs met both of its limits has "
+        "two. An end that the draws do not bound is open."
     )
+    if any(np.any(np.isnan(check.column.value[check.column.verdict != ""])) for check in known):
+        note += " A run without a value counts as beyond the limit."
     if any(check.group for check in known):
         note += (
             " Draw n has the same parts whatever is varied besides, so that only the draws of one "
@@ -63,7 +66,11 @@ def measure_section(summary: NightSummary) -> Section | None:
         return None
     which = "draws" if np.any(summary.population.drawn) else "runs"
     rest, still = len(moving) - MOST_MEASURES, len(summary.measures) - len(moving)
-    told = [f"{rest} more stand in the table of the set."] if rest > 0 else []
+    told = (
+        [counted(rest, "more stands", "more stand") + " in the table of the set."]
+        if rest > 0
+        else []
+    )
     told += [f"{counted(still, 'measure')} left out: the same in all runs."] if still else []
     head = ("measure", "lowest", "5 %", "median", "95 %", "highest", "follows")
     rows = tuple(_measure_row(summary, each) for each in moving[:MOST_MEASURES])
@@ -84,7 +91,7 @@ def _measure_row(summary: NightSummary, measure: MeasureSummary) -> tuple[Cell, 
         return f"{told(float(measure.values[run]))}\n{summary.table.names[run]}"
 
     cause = measure.cause
-    follows = "" if cause is None else f"{cause.parameter} ({cause.coefficient:+.2f})"
+    follows = "" if cause is None else f"{cause.parameter}\n({cause.coefficient:+.2f})"
     return (
         Cell(f"{measure.name}{of_group(measure)}"),
         number(extreme(measure.lowest)),
@@ -105,7 +112,7 @@ def _percentile(check: CheckSummary, place: int, drawn: bool) -> str:
 
 def _limit(check: CheckSummary) -> str:
     if check.limits is None:
-        return f"needs {check.draws_needed} draws"
+        return f"needs {counted(check.draws_needed, 'draw')}"
     low, high = shown(check.limits.low, check), shown(check.limits.high, check)
     return {"low": f"≥ {low}", "high": f"≤ {high}", "both": f"{low} to {high}"}[check.side]
 

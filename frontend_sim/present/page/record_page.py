@@ -8,15 +8,16 @@ from typing import Any
 from frontend_sim.archive import Record, ScanRecord
 from frontend_sim.comparison import RecordComparison
 from frontend_sim.measure.result import Result
-from frontend_sim.present.numbers import engineering, fixed, share_of
+from frontend_sim.present.numbers import engineering, fixed
 from frontend_sim.present.page.content import Cell, Page, PageTable, Section, Tone, number
 from frontend_sim.present.page.difference import difference_section
 from frontend_sim.present.page.origin import caution_section, made, origin_section
 from frontend_sim.present.page.render import embedded
 from frontend_sim.present.part import part_text
-from frontend_sim.present.result_table import SIGNS, quantity
+from frontend_sim.present.result_table import SIGNS, checked, quantity
 from frontend_sim.present.run_plot import run_figure
 from frontend_sim.present.run_table import run_summary
+from frontend_sim.quantities.counting import counted, share_of
 
 
 def record_page(record: Record, since: RecordComparison | None = None) -> Page:
@@ -58,21 +59,21 @@ def verdict_of_checks(checks: int, broken: int) -> tuple[Tone, str]:
 
 def check_cells(result: Result) -> tuple[Cell, ...]:
     """Return a check as cells: name, verdict, value, limit, margin, what to do."""
-    unit, scale = result.unit, 1.0
-    if unit in ("", "1"):  # plain numbers of checks are shares, and read as percent
-        unit, scale = "%", 100.0
-
-    def told(value: float | None) -> str:
-        return "" if value is None else quantity(scale * value, unit)
-
     tone: Tone = "fails" if result.verdict == "fails" else "holds"
-    limit = f"{SIGNS.get(result.bound, '')}{told(result.limit)}" if result.limit is not None else ""
+    limit = (
+        f"{SIGNS.get(result.bound, '')}{checked(result.limit, result.unit)}"
+        if result.limit is not None
+        else ""
+    )
     return (
         Cell(result.name),
         Cell(result.verdict, tone),
-        number(told(result.value) or "none"),
+        number(checked(result.value, result.unit) or "none"),
         number(limit),
-        number(told(result.margin), tone if tone == "fails" and result.margin is not None else ""),
+        number(
+            checked(result.margin, result.unit),
+            tone if tone == "fails" and result.margin is not None else "",
+        ),
         Cell((result.advice or result.method) if tone == "fails" else ""),
     )
 
@@ -100,9 +101,9 @@ def check_section(checks: Sequence[Result]) -> Section:
 def _signal_section(record: Record, summary: dict[str, Any]) -> Section:
     count, beyond = summary["conversions"], summary["overrange"]
     description = (
-        f"Pin voltage and codes of {count} conversions over time with the limits of the range, "
-        f"{beyond} of them beyond it; below, codes less pin in LSB, and the waveforms that were "
-        "kept."
+        f"Pin voltage and codes of {counted(count, 'conversion')} over time with the limits of the "
+        f"range, {beyond} of them beyond it; below, codes less pin in LSB, and the waveforms that "
+        "were kept."
     )
     figure = embedded(run_figure(record), description, "What the pin did, and what the codes say.")
     return Section("signal", "The signal", part_text(record), (), (figure,))
@@ -121,14 +122,14 @@ def summary_of_checks(checks: Sequence[Result], broken: Sequence[Result]) -> str
 
 
 def _facts(record: Record, summary: dict[str, Any]) -> Iterator[tuple[str, str]]:
-    yield "conversions", f"{record.whole_count}"
+    yield "conversions", f"{record.whole_count:,}"
     of_kept = "" if record.stretches is None else ", of those kept"
     if of_kept:
-        yield "kept around failures", f"{record.count}"
+        yield "kept around failures", f"{record.count:,}"
     yield "rate", engineering(summary["rate"], "Hz")
     low, high = engineering(summary["low"], "V"), engineering(summary["high"], "V")
     yield "converter", f"{summary['bits']} bits, {low} to {high}"
-    yield f"beyond the range{of_kept}", f"{summary['overrange']}"
+    yield f"beyond the range{of_kept}", f"{summary['overrange']:,}"
     if summary["difference_rms"] is not None:
         yield f"codes less pin, rms{of_kept}", f"{fixed(summary['difference_rms'], 3)} LSB"
 

@@ -20,6 +20,7 @@ from frontend_sim.present.page.record_page import (
 from frontend_sim.present.page.render import embedded
 from frontend_sim.present.part import part_text
 from frontend_sim.present.scan_plot import scan_figure
+from frontend_sim.quantities.counting import counted
 
 
 def scan_page(record: ScanRecord, since: RecordComparison | None = None) -> Page:
@@ -30,7 +31,7 @@ def scan_page(record: ScanRecord, since: RecordComparison | None = None) -> Page
     broken = [result for result in checks if result.verdict == "fails"]
     tone, verdict = verdict_of_checks(len(checks), len(broken))
     description = (
-        f"Codes and pins of {len(record.channels)} channels over time: "
+        f"Codes and pins of {counted(len(record.channels), 'channel')} over time: "
         f"{', '.join(record.channels)}."
     )
     figure = embedded(scan_figure(record), description, "What each channel saw.")
@@ -47,7 +48,7 @@ def scan_page(record: ScanRecord, since: RecordComparison | None = None) -> Page
         tone,
         verdict,
         summary_of_checks(checks, broken),
-        (("channels", f"{len(counts)}"), ("conversions", f"{sum(counts)}")),
+        (("channels", f"{len(counts)}"), ("conversions", f"{sum(counts):,}")),
         tuple(sections),
         made(),
     )

@@ -2,26 +2,30 @@
 
 from __future__ import annotations
 
-import math
-
 from frontend_sim.comparison import ColumnDifference, SetComparison
 from frontend_sim.present.page.content import Cell, PageTable, Section, number
 from frontend_sim.present.page.difference import change_table, tone_of
-from frontend_sim.present.result_table import quantity
+from frontend_sim.present.set_comparison_table import column_text, mean_text
+from frontend_sim.quantities.counting import counted
 
 MOST_NAMES = 10
 
 
 def set_difference_section(comparison: SetComparison) -> Section:
     """Return what changed between two nights."""
-    text = [f"Compared with {comparison.first}: {comparison.matched} runs have the same name."]
+    text = [
+        f"Compared with {comparison.first}: {counted(comparison.matched, 'run has', 'runs have')} "
+        "the same name."
+    ]
     for names, word in ((comparison.added, "New"), (comparison.removed, "Gone")):
         if names:
             rest = len(names) - MOST_NAMES
             more = f" and {rest} more" if rest > 0 else ""
             text.append(f"{word}: {', '.join(names[:MOST_NAMES])}{more}.")
     if comparison.varied:
-        told = ", ".join(f"{key} in {count} runs" for key, count in comparison.varied.items())
+        told = ", ".join(
+            f"{key} in {counted(count, 'run')}" for key, count in comparison.varied.items()
+        )
         text.append(f"Varied keys with other values: {told}.")
     if not comparison.changed:
         text.append("No value of the scenarios changed.")
@@ -47,19 +51,12 @@ def column_table(comparison: SetComparison) -> PageTable:
 
 
 def _row(row: ColumnDifference) -> tuple[Cell, ...]:
-    mean = _told(row.mean, row.unit)
-    if row.shift is not None and math.isfinite(row.shift.error):
-        mean += f" ± {_told(row.shift.error, row.unit)}"
     return (
         Cell(row.name),
-        number(mean),
-        number(_told(row.peak, row.unit)),
-        number(_told(row.margin, row.unit)),
+        number(mean_text(row)),
+        number(column_text(row, row.peak)),
+        number(column_text(row, row.margin)),
         number(str(row.worse)),
         number(str(row.better)),
         Cell(row.told if row.finding == "differs" else row.finding, tone_of(row.finding)),
     )
-
-
-def _told(value: float, unit: str) -> str:
-    return quantity(value, unit) if math.isfinite(value) else ""

@@ -182,6 +182,33 @@ def test_dnl_by_sine_and_by_ramp() -> None:
         assert found.value == pytest.approx(8.0 / 256.0, abs=0.03)
 
 
+@pytest.mark.parametrize("kind", ["inl", "dnl"])
+def test_what_the_samples_leave_open_counts_against_the_check(kind: str) -> None:
+    """A limit fails, cannot be told, or holds, by where it lies to the value and its interval.
+
+    A sine whose samples are few enough for their chance to be seen: the interval of a code is
+    that of Doernberg, Lee and Hodges, sqrt(z² pi 2^(bits - 1) / N) with z = 2.576 for the rarest.
+    """
+    sine = {"kind": "sine", "amplitude": "1.4 V", "offset": "1.25 V", "frequency": "997.137 Hz"}
+    tables: dict[str, Any] = {"stimulus": sine, **WHOLE, "simulation": {"duration": "0.5 s"}}
+
+    def answer(limit: float) -> Result:
+        return verdicts({"kind": kind, "at_most": f"{limit:.9f} LSB"}, **tables)[0]
+
+    found = answer(9.0)
+    assert found.value is not None
+    assert found.margin is not None
+    unsure = 9.0 - found.value - found.margin
+    rarest = math.sqrt(2.576**2 * math.pi * 2.0**7 / 50_000)
+    assert 0.0 < unsure < 1.1 * rarest  # the phases are no less even than random ones
+    holds, open_, fails = (answer(found.value + share * unsure) for share in (1.001, 0.5, -0.001))
+    assert [row.verdict for row in (holds, open_, fails)] == ["holds", "fails", "fails"]
+    assert "cannot be told" in open_.advice
+    assert "take more samples" in open_.advice
+    assert "correct the codes by a table" in fails.advice
+    assert open_.margin == pytest.approx(-0.5 * unsure, rel=1e-6)
+
+
 def test_how_codes_are_counted_must_be_known() -> None:
     """A step says nothing; two tones do not either, until the check does."""
     with pytest.raises(ScenarioError, match="does not say how its codes are counted"):

@@ -129,13 +129,13 @@ ADC = converter(8)
 @pytest.mark.parametrize(
     ("call", "message"),
     [
-        (lambda: noise_of([1.0]), "has 1 samples, this measure needs at least 2"),
+        (lambda: noise_of([1.0]), "has 1 sample, this measure needs at least 2"),
         (lambda: noise_of([1.0, math.inf]), "sample 1 of the record is inf"),
         (lambda: noise_of([1.0, 2.0], full_scale=0.0), "full scale must be a number above zero"),
         (lambda: noise_of([1.0, 2.0], confidence=95), "confidence must lie between 0 and 1"),
         (lambda: rms_interval(1.0, 1), "at least 2 samples, not 1"),
         (lambda: code_noise([0.5, 1.0], ADC), "codes are whole numbers"),
-        (lambda: code_noise([0, 1, 2], ADC), "1 of 3 codes are the lowest one, 0: the noise is"),
+        (lambda: code_noise([0, 1, 2], ADC), "1 of 3 codes is the lowest one, 0: the noise is"),
         (lambda: code_noise([254, 255], ADC), "the highest one, 255"),
         (lambda: code_histogram([]), "0 samples"),
         (lambda: code_histogram([0, 2**25]), "too far apart for a list"),

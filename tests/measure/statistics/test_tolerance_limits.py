@@ -80,7 +80,7 @@ def test_samples_that_are_too_small_are_refused_with_the_number() -> None:
     """The message says how many draws would do."""
     with pytest.raises(MeasureError, match=r"92 draws .* 93 do"):
         tolerance_limits(np.zeros(92))
-    with pytest.raises(MeasureError, match=r"1 of 3 values are not there"):
+    with pytest.raises(MeasureError, match=r"missing: 1 of 3 values; leave out"):
         tolerance_limits(np.array([1.0, np.nan, 2.0]))
     with pytest.raises(MeasureError, match="at least one run"):
         percentile(np.empty(0), 0.5)

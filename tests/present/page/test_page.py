@@ -13,14 +13,19 @@ from xml.etree import ElementTree
 
 import pytest
 from compared import LSB, made, night, varied
+from nights import BASE, made_set
+from rich.console import Console
 
 from frontend_sim.archive import open_record, record_run
 from frontend_sim.comparison import compare_records, compare_sets
 from frontend_sim.errors import OutputError
+from frontend_sim.present.night_table import night_tables
 from frontend_sim.present.page import Page, night_page, record_page, render, write_page
 from frontend_sim.present.page.record_page import verdict_of_checks
+from frontend_sim.present.replay_table import replay_tables
+from frontend_sim.replay import replay_set
 from frontend_sim.simulation import Simulation
-from frontend_sim.summary import summarize
+from frontend_sim.summary import NightSummary, summarize
 
 VOID = {"meta", "img", "br", "link", "input", "hr"}
 """Elements without an end."""
@@ -138,6 +143,72 @@ def test_a_night_tells_its_numbers(pages: dict[str, Page]) -> None:
     assert "digest of all scenarios and results (SHA-256)" in told
     assert "numpy" in told
     assert "licensed engineer" in told
+
+
+LEVELS = """
+[[check]]
+kind = "level"
+name = "early"
+at = "0.1 ms"
+at_least = "1.9 V"
+
+[[check]]
+kind = "level"
+name = "late"
+at = "0.2 ms"
+at_least = "1.99 V"
+
+[[check]]
+kind = "overshoot"
+at_most = "2 %"
+"""
+"""Two checks that fail in every run, and a share that holds."""
+
+
+@pytest.fixture(scope="module")
+def failing(tmp_path_factory: pytest.TempPathFactory) -> NightSummary:
+    """A night of 30 draws and 5 corners in which two checks always fail."""
+    folder = tmp_path_factory.mktemp("failing")
+    rules = 'keep = "nothing"\n[corners]\n[draws]\ncount = 30\n'
+    file = made_set(folder, rules, scenario=BASE.partition("[[check]]")[0] + LEVELS)
+    return summarize(replay_set(file, folder / "night", on="in-process").table())
+
+
+def test_failing_runs_that_are_not_listed_are_counted(failing: NightSummary) -> None:
+    """Each failing check has its share of 20 rows, the worst runs first; 50 of 70 are left."""
+    page = night_page(failing)
+    table = next(each for each in page.sections[0].tables if each.caption.startswith("Runs that"))
+    assert [row[1].text for row in table.rows] == ["early"] * 10 + ["late"] * 10
+    assert table.note == "50 more stand in the table of the set."
+    worst = {check.name: failing.table.names[check.worst] for check in failing.checks}
+    assert [table.rows[place][0].text for place in (0, 10)] == [worst["early"], worst["late"]]
+
+
+def test_advice_is_that_of_its_check(failing: NightSummary) -> None:
+    """A run tells what to change first for its first check that fails; others name that check."""
+    page = night_page(failing)
+    table = next(each for each in page.sections[0].tables if each.caption.startswith("Runs that"))
+    told = {row[1].text: row[4].text for row in table.rows}
+    assert told["early"].startswith("raise the level by")
+    assert told["late"].startswith("early: raise the level by")
+
+
+def test_shares_read_as_percent_at_the_terminal_too(failing: NightSummary) -> None:
+    """The limit of the overshoot is 2 %, on the page and in both tables of the terminal."""
+    tables = (*replay_tables(failing.table), *night_tables(failing))
+    console = Console(width=160)
+    with console.capture() as caught:
+        console.print(*tables)
+    assert "≤ 2.000 %" in caught.get()
+    assert "0.02" not in caught.get()
+    assert "≤ 2.000 %" in render(night_page(failing))
+
+
+def test_a_night_without_draws_has_no_yield(tmp_path: Path) -> None:
+    """There is no empty column for what was not drawn."""
+    page = night_page(summarize(night(tmp_path, "corners", 'keep = "nothing"\n[corners]\n')))
+    assert page.sections[0].tables[0].head == ("check", "verdict", "fails in", "worst margin")
+    assert "yield" not in render(page)
 
 
 def test_what_a_user_wrote_is_escaped(tmp_path: Path) -> None:
