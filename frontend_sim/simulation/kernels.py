@@ -71,24 +71,6 @@ def advance(
 
 
 @compiled()
-def march(
-    x: Any, start: Any, dt: Any, unit: float, system: Any, table: Any, stop: Any, states: Any
-) -> None:
-    """Go from node to node: states[k] after dt[k] from start[k], the generator's state there.
-
-    x (n,) is advanced in place; start (K, m); states (K, n).
-    """
-    n, m = len(x), start.shape[1]
-    z, work = np.empty(n + m), np.empty(n + m)
-    for k in range(len(dt)):
-        z[:n] = x
-        z[n:] = start[k]
-        advance(z, work, n, dt[k], unit, system, table, stop)
-        x[:] = z[:n]
-        states[k] = x
-
-
-@compiled()
 def readout(states: Any, u: Any, c: Any, d: Any, outputs: Any) -> None:
     """outputs[i, k] = c[i] · states[k] + d[i] u[k]."""
     for i in range(len(d)):

@@ -1,4 +1,7 @@
-"""The compiled steps of ``AmplifierLoop``."""
+"""The compiled steps of ``AmplifierLoop``.
+
+They stand in one file, as what numba keeps on disk is known by the file of the calling loop alone.
+"""
 
 from __future__ import annotations
 
@@ -25,7 +28,7 @@ NEAR = 1e-11
 """An output this near to where it is driven, or to a rail, is there [V, and share of itself]."""
 
 TOWARDS = 0.2
-"""How far what ``between`` looks at is moved, see there."""
+"""Share of the width by which ``between`` moves its look, at the first one."""
 
 GONE = 1e-20
 """A deviation of all states below this is none [V]."""
@@ -269,11 +272,13 @@ def loop(
 ) -> None:  # fmt: skip
     """Advance state = [d, mode, u, x_lin, x - x_lin, age]; deviation[s] = y - linear[s].
 
-    ``age`` is the time since the last jump or event. A piece is one step if its mode still holds at
-    the end, and if nothing that the step would not follow rings on; else it is walked through.
+    ``age`` is the time since the last jump or event. Pieces go by ``glide`` where they can. Any
+    other is one step if its mode still holds at the end, and if nothing that the step would not
+    follow rings on; else it is walked ``through``. Which of the three it is hangs on the state and
+    the piece alone, so no cut of time shows.
 
     ``dims`` is a tuple as long as x, so that the loops over x are compiled for its length. They are
-    written out rather than called: a call with arrays costs more than the whole piece.
+    written out rather than called: a call with arrays costs more than a whole piece.
     """
     n = len(dims)
     d, mode, last = state[0], int(state[1]), state[2]
@@ -287,6 +292,24 @@ def loop(
     whole = joined(steps, usual_count)
     jump, s = 0, 0
     while s < len(length):
+        stop = jumps[jump] if jump < len(jumps) else len(length)
+        if s < stop and most_count(lasting, longest, age[0]) >= usual_count:
+            taken, still = glide(
+                dims, mode, still, last, plain, beyond, x,
+                length[s:stop], end[s:stop], linear[s:stop], standing, usual,
+                whole[0, 0], whole[1, 0], asked, target, static, output,
+                up, down, low, high, deviation[s:stop],
+            )  # fmt: skip
+            if taken > 0:
+                if mode >= 0:
+                    time[mode] += taken * usual
+                    if piece[mode] < 0:
+                        piece[mode], since[mode] = s, 0.0
+                s += taken
+                d, last = deviation[s - 1], end[s - 1]
+                age[0] += taken * usual
+            if s == len(length):
+                break
         dt, u, ahead = length[s], begin[s], end[s]
         rise = (ahead - u) / dt if dt > 0.0 else 0.0
         jumped = jump < len(jumps) and jumps[jump] == s
@@ -384,20 +407,6 @@ def loop(
         deviation[s] = d
         last = ahead
         s += 1
-        if most_count(lasting, longest, age[0]) >= usual_count:
-            stop = jumps[jump] if jump < len(jumps) else len(length)
-            taken, still = glide(
-                dims, mode, still, last, plain, beyond, x,
-                length[s:stop], end[s:stop], linear[s:stop], standing, usual,
-                whole[0, 0], whole[1, 0], asked, target, static, output,
-                up, down, low, high, deviation[s:stop],
-            )  # fmt: skip
-            if taken > 0:
-                s += taken
-                d, last = deviation[s - 1], end[s - 1]
-                age[0] += taken * usual
-                if mode >= 0:
-                    time[mode] += taken * usual
     state[0], state[1], state[2] = d, mode, last
     state[3 : 3 + n] = plain
     state[3 + n : -1] = beyond
