@@ -156,7 +156,11 @@ def _ended_like_ctrl_c() -> Iterator[None]:
         yield
         return
     numbers = [getattr(signal, name) for name in ("SIGTERM", "SIGHUP") if hasattr(signal, name)]
-    before = {number: signal.signal(number, signal.default_int_handler) for number in numbers}
+    before = {
+        number: signal.signal(number, signal.default_int_handler)
+        for number in numbers
+        if signal.getsignal(number) is not signal.SIG_IGN  # as nohup has it for a whole night
+    }
     try:
         yield
     finally:

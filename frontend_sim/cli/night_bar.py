@@ -4,12 +4,13 @@ from __future__ import annotations
 
 import time
 from collections.abc import Callable, Iterator
-from contextlib import contextmanager
+from contextlib import contextmanager, suppress
 from typing import TYPE_CHECKING
 
 import click
 
 from frontend_sim.cli.console import PATIENCE
+from frontend_sim.quantities.counting import counted
 
 if TYPE_CHECKING:
     from frontend_sim.replay import Progress
@@ -36,14 +37,25 @@ def night_bar(title: str) -> Iterator[Callable[[Progress], None]]:
     )
     task = bar.add_task(title, total=None, told="")
     begun = shown = time.monotonic()
-    started = False
+    started, noted = False, ""
+
+    def tell(text: str) -> None:
+        line = f"{title}: {text}"
+        if console.is_terminal:
+            console.print(line, markup=False, highlight=False, soft_wrap=True)
+            return
+        with suppress(OSError):  # the night goes on where nobody reads of it, or its log is full
+            click.echo(line, err=True)
 
     def report(progress: Progress) -> None:
-        nonlocal shown, started
+        nonlocal shown, started, noted
         now = time.monotonic()
+        if progress.note != noted:
+            noted, shown = progress.note, now
+            tell(noted or told(progress))
         if not console.is_terminal:
             if now - shown > INTERVAL:
-                click.echo(f"{title}: {told(progress)}", err=True)
+                tell(f"{told(progress)}; {noted}" if noted else told(progress))
                 shown = now
             return
         if not started and now - begun > PATIENCE and progress.done < progress.total:
@@ -62,7 +74,7 @@ def told(progress: Progress) -> str:
     """Return the progress of a night in one line."""
     from frontend_sim.replay.estimate import told_seconds
 
-    parts = [f"{progress.done:,} of {progress.total:,} runs", f"{progress.rate:.3g}/s"]
+    parts = [f"{progress.done:,} of {counted(progress.total, 'run')}", f"{progress.rate:.3g}/s"]
     if progress.left is not None and progress.done < progress.total:
         parts.append(f"{told_seconds(progress.left)} left")
     if progress.kept:

@@ -10,6 +10,7 @@ import click
 from frontend_sim.cli.console import print_json, print_notes, print_tables
 from frontend_sim.cli.options import json_option, output_option
 from frontend_sim.cli.status import FAILS, HOLDS, INCOMPLETE, INTERRUPTED
+from frontend_sim.quantities.counting import counted, share_of
 
 if TYPE_CHECKING:
     from frontend_sim.replay import Preview, Replayed
@@ -68,7 +69,7 @@ def command(
     stopped, by whatever.
 
     Exit status: 0 all checks hold, 1 a check fails, 2 the input is wrong, 3 the set is incomplete:
-    a run gave no result, or the disk is full; 130 interrupted.
+    a run gave no result, the disk is full, or there are no workers any more; 130 interrupted.
     """
     from frontend_sim.cli.night_bar import night_bar
     from frontend_sim.replay import preview_set, replay_set
@@ -145,15 +146,16 @@ def _tell(done: Replayed, as_json: bool) -> None:
         print_tables((*replay_tables(summary.table), *night_tables(summary)))
         click.echo(f"table: {done.directory / 'set.h5'}")
     if done.stopped:
+        left = "not known yet how many are" if done.left is None else f"{done.left:,}"
         click.echo(
-            f"stopped after {done.ran:,} runs, {missing:,} are left: {done.stopped}; the same call "
-            "goes on from here",
+            f"stopped after {counted(done.ran, 'run')}, {left} left: {done.stopped}; the same "
+            "call goes on from here",
             err=True,
         )
     elif counts.get("error"):
         click.echo(
-            f"{counts['error']:,} of {done.tally.planned:,} runs gave no result, so the set is "
-            "incomplete",
+            f"{share_of(counts['error'], done.tally.planned, 'run')} gave no result, so the set "
+            "is incomplete",
             err=True,
         )
 
@@ -178,7 +180,9 @@ def _tell_preview(found: Preview, as_json: bool) -> None:
     if len(found.names) > SHOWN:
         click.echo(f"... and {len(found.names) - SHOWN:,} more; --json lists all of them")
     click.echo(
-        f"{len(found.names):,} of {found.planned:,} runs would be done, {found.kept:,} are done "
-        f"already; about {told_seconds(found.seconds)}, {told_bytes(found.size)} in "
+        f"{share_of(len(found.names), found.planned, 'run')} would be done, already done: "
+        f"{found.kept:,}; about {told_seconds(found.seconds)}, {told_bytes(found.size)} in "
         f"{found.directory}"
     )
+    if found.at_most:
+        click.echo("draws end when they are tight, so that fewer may be enough")

@@ -45,7 +45,11 @@ def command(
         check_plot_target(plot, overwrite)
         if isinstance(values, ScanScenario):
             check_channels_drawn(len(values.channel), plot)
-    simulation = ScanSimulation(values) if isinstance(values, ScanScenario) else Simulation(values)
+    with progress_bar(scenario.name) as advance:
+        if isinstance(values, ScanScenario):
+            simulation: Simulation | ScanSimulation = ScanSimulation(values, progress=advance)
+        else:
+            simulation = Simulation(values, progress=advance)
     print_notes(check_room(simulation, target))
     with progress_bar(scenario.name) as advance:
         path = record_run(

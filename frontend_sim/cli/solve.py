@@ -10,6 +10,7 @@ import click
 from frontend_sim.cli.console import print_json, print_tables, progress_bar
 from frontend_sim.cli.options import PATH, json_option, output_option, overwrite_option, plot_option
 from frontend_sim.cli.status import FAILS, HOLDS, INTERRUPTED
+from frontend_sim.quantities.counting import counted
 
 if TYPE_CHECKING:
     from frontend_sim.scenario.scan_scenario import AnyScenario
@@ -137,7 +138,7 @@ def _solved(values: AnyScenario, key: Varied, file: Path, options: dict[str, Any
         values, key, options["goal"],
         checks=options["checks"], corners=options["corners"], points=_points(options, POINTS),
     )  # fmt: skip
-    click.echo(f"at most {solver.most_runs} runs, where there is one boundary", err=True)
+    click.echo(f"at most {counted(solver.most_runs, 'run')}, where there is one boundary", err=True)
     with progress_bar(file.name) as advance:
         try:
             found = solver.run(advance)
@@ -177,7 +178,7 @@ def _mapped(values: AnyScenario, keys: list[Varied], name: str, options: dict[st
         values, keys[0], keys[1],
         checks=options["checks"], corners=options["corners"], points=_points(options, POINTS),
     )  # fmt: skip
-    click.echo(f"at most {mapper.most_runs} runs", err=True)
+    click.echo(f"at most {counted(mapper.most_runs, 'run')}", err=True)
     with progress_bar(name) as advance:
         try:
             found = mapper.run(advance)

@@ -11,14 +11,13 @@ from pathlib import Path
 
 from frontend_sim.archive.set_table import SetTable, open_set
 from frontend_sim.errors import OutputError
-from frontend_sim.replay.adaptive import stretches, tight, until_of
+from frontend_sim.replay.adaptive import Tightness, blocks, until_of
 from frontend_sim.replay.executors import Executor, executor
 from frontend_sim.replay.night import Night, Report
 from frontend_sim.replay.reading import read_set
-from frontend_sim.replay.runs import PreparedSet
 from frontend_sim.replay.set_model import Keep
 from frontend_sim.replay.store import Store
-from frontend_sim.replay.table import Tally, done_runs, tally, write_table
+from frontend_sim.replay.table import Count, Tally, done_runs, write_table
 from frontend_sim.replay.work import CannotGoOn
 
 AnyPath = str | os.PathLike[str]
@@ -34,9 +33,10 @@ class Replayed:
     tally : what became of the runs of the set
     ran, kept : runs that this call did, and that it found done
     seconds : that it took
+    left : runs that it has not come to; None where it was stopped before it knew
     stopped : why it ended before its end, "" where it did not
     interrupted : whether the user stopped it
-    tabled : whether the table of the set could be written
+    tabled : whether the table of the set was written
     """
 
     directory: Path
@@ -44,6 +44,7 @@ class Replayed:
     ran: int
     kept: int
     seconds: float
+    left: int | None = 0
     stopped: str = ""
     interrupted: bool = False
     tabled: bool = True
@@ -65,9 +66,13 @@ class Replayed:
 
 def default_directory(source: AnyPath | Sequence[AnyPath]) -> Path:
     """Return where a set is replayed into if nothing is said: its name and ``_runs``, here."""
-    given = source if isinstance(source, str | os.PathLike) else source[0]
-    name = Path(given).resolve().stem.replace("*", "").replace("?", "") or "set"
-    return Path(f"{name}_runs")
+    place = Path(source if isinstance(source, str | os.PathLike) else source[0]).resolve()
+    # A pattern is called by its own letters, "night/*.toml" by those of its folder.
+    names = (
+        "".join(sign for sign in name if sign not in "*?[]!")
+        for name in (place.stem, place.parent.name)
+    )
+    return Path(f"{next(filter(None, names), 'set')}_runs")
 
 
 def replay_set(
@@ -106,42 +111,38 @@ def replay_set(
         If nothing can be written to the directory. A disk that is full later, or a cluster that
         goes away, does not raise: ``stopped`` tells it.
 
-    After Ctrl-C it returns as well, ``interrupted``: the table has what was done.
+    After Ctrl-C it returns as well, ``interrupted``: the table has what was done. A second one, or
+    one while the table is written, raises KeyboardInterrupt; the next call writes it.
     """
     begun = time.monotonic()
     prepared = read_set(source, keep, around)
     place = Path(directory) if directory is not None else default_directory(source)
     with _ended(executor(on, workers, scheduler)) as hands, Store(place) as store:
-        stopped, interrupted, ran, kept = "", False, 0, 0
-        until = until_of(prepared)
+        night, until = Night(store, hands, report), until_of(prepared)
+        tightness = None if until is None else Tightness(until)
+        asked, stopped, interrupted = None, "", False
         try:
-            for stretch in stretches(prepared):
-                prepared = stretch  # the table is that of what was asked for so far
-                night = Night(stretch, store, hands, report)
-                kept = max(kept, night.kept - ran)
-                try:
-                    night.run()
-                finally:
-                    ran += night.done
-                if until is not None and tight(done_runs(stretch, store), until):
+            for whole, new in blocks(prepared):
+                night.look(new)
+                asked = whole
+                night.run()
+                if tightness is not None and tightness.reached_with(done_runs(new, store)):
                     break
         except (OutputError, CannotGoOn) as error:
             stopped = str(error)
         except KeyboardInterrupt:
             stopped, interrupted = "it was interrupted", True
         hands.close(now=bool(stopped))
-        found, fault = _table(prepared, store)
-        stopped, seconds = stopped or fault, time.monotonic() - begun
-        done = (place, found, ran, kept, seconds)
-        return Replayed(*done, stopped, interrupted, tabled=not fault)
-
-
-def _table(prepared: PreparedSet, store: Store) -> tuple[Tally, str]:
-    """Write the table; a disk that is full leaves what was there, and is told."""
-    try:
-        return write_table(prepared, store), ""
-    except OutputError as error:
-        return tally(prepared, store), str(error)
+        if asked is None:  # the table that is there may still be right
+            found, fault = Count().tally(prepared.count), ""
+        else:
+            found, fault = write_table(asked, store, ended=not stopped)
+        known = asked is not None and not (stopped and until)
+        return Replayed(
+            place, found, night.done, night.kept, time.monotonic() - begun,
+            night.left if known else None, stopped or fault, interrupted,
+            tabled=asked is not None and not fault,
+        )  # fmt: skip
 
 
 @contextmanager

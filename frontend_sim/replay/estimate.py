@@ -7,6 +7,7 @@ from pathlib import Path
 
 from frontend_sim.archive.room import free_bytes, told_bytes
 from frontend_sim.errors import OutputError
+from frontend_sim.quantities.counting import counted
 
 LINE = 1 << 10
 """Bytes of a run in the table of the set, about."""
@@ -41,8 +42,10 @@ def refuse_small_disk(directory: Path, need: Need, runs: int) -> None:
     wanted, free = need.disk(runs) + SPARE, free_bytes(directory)
     if wanted > free:
         raise OutputError(
-            f"{directory}: the {runs:,} runs that are left need about {told_bytes(wanted)}, but "
-            f"the disk has {told_bytes(free)} left; free some space, or keep less: keep = "
+            f"{directory}: the "
+            f"{counted(runs, 'run that is left needs', 'runs that are left need')} about "
+            f"{told_bytes(wanted)}, but the disk has {told_bytes(free)} left; free some space, or "
+            "keep less: keep = "
             '"around-failures" or "nothing"'
         )
 

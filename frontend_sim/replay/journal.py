@@ -5,11 +5,11 @@ from __future__ import annotations
 import hashlib
 import json
 import os
-from collections.abc import Iterator
+from collections.abc import Iterable, Iterator
 from pathlib import Path
 from typing import IO, Any
 
-from frontend_sim.archive.target import writing
+from frontend_sim.archive.target import new_file, writing
 
 CHECKSUM = 16
 """Hexadecimal digits of the SHA-256 at the start of each line."""
@@ -26,8 +26,12 @@ class Journal:
     def __init__(self, path: Path) -> None:
         """Open the journal, or make it."""
         self.path = path
-        with writing(path):
-            self._stream: IO[bytes] = path.open("a+b", buffering=0)
+        self._open()
+
+    def _open(self) -> None:
+        with writing(self.path):
+            self._stream: IO[bytes] = self.path.open("a+b", buffering=0)
+            self._reader: IO[bytes] = self.path.open("rb")
             self._end = self._stream.seek(0, os.SEEK_END)
             if self._end and not self._ends_with_a_line():
                 self._put(b"\n")  # what was torn off becomes a line of its own, which is wrong
@@ -69,9 +73,24 @@ class Journal:
 
     def at(self, offset: int) -> dict[str, Any] | None:
         """Return the entry that stands somewhere, None if it is damaged."""
-        with self.path.open("rb") as stream:
-            stream.seek(offset)
-            return _entry(stream.readline())
+        self._reader.seek(offset)
+        return _entry(self._reader.readline())
+
+    def reduce(self, offsets: Iterable[int]) -> None:
+        """Keep the entries that stand somewhere, in this order, and no others.
+
+        Raises OutputError if that cannot be written; the journal is then as it was.
+        """
+        try:
+            with new_file(self.path, self.path, overwrite=True) as temporary, writing(self.path):
+                with temporary.open("xb") as stream:
+                    for offset in offsets:
+                        self._reader.seek(offset)
+                        stream.write(self._reader.readline())
+                self.close()  # some systems replace no open file
+        finally:
+            self.close()
+            self._open()
 
     def sync(self) -> None:
         """Bring everything to the disk."""
@@ -81,6 +100,7 @@ class Journal:
     def close(self) -> None:
         """Close the file."""
         self._stream.close()
+        self._reader.close()
 
 
 def _checksum(text: bytes) -> bytes:

@@ -5,7 +5,8 @@ from __future__ import annotations
 import hashlib
 import json
 from collections.abc import Iterable, Iterator, Sequence
-from dataclasses import astuple, dataclass, fields
+from dataclasses import dataclass, fields
+from operator import attrgetter
 from typing import Any, Literal, Self
 
 import numpy as np
@@ -16,6 +17,9 @@ from frontend_sim.simulation import RunBlock
 NOT_COUNTED = ("start", "time", "voltage", "waveform_time", "waveform")
 """Fields of a block that its digest need not see: the values of waveforms are counted by name, and
 the others follow from the scenario and the codes."""
+
+row_of = attrgetter(*(field.name for field in fields(Result)))
+"""Return the values of a result."""
 
 RunVerdict = Literal["holds", "fails", "none", "error"]
 
@@ -77,7 +81,7 @@ class Outcome:
             for field in fields(self)
             if field.name not in skipped
         }
-        return {**told, "results": [astuple(result) for result in self.results]}
+        return {**told, "results": list(map(row_of, self.results))}
 
     @classmethod
     def of_entry(cls, entry: dict[str, Any], number: int) -> Self:
@@ -122,7 +126,7 @@ class Fingerprint:
         """Return the SHA-256 of everything that was counted in, results and notes."""
         told = [
             {name: value.hexdigest() for name, value in self._sums.items()},
-            [astuple(result) for result in results],
+            list(map(row_of, results)),
             list(notes),
         ]
         text = json.dumps(told, sort_keys=True, separators=(",", ":"))

@@ -13,6 +13,7 @@ import numpy as np
 
 from frontend_sim.errors import ScenarioError
 from frontend_sim.quantities import as_text
+from frontend_sim.quantities.counting import counted
 from frontend_sim.replay.set_model import MOST_RUNS, Vary
 from frontend_sim.scenario import AnyScenario
 from frontend_sim.scenario.key import find, read_number
@@ -79,9 +80,9 @@ def refuse_many(count: int, factors: str, source: str = "") -> None:
     """
     if count > MOST_RUNS:
         raise ScenarioError(
-            f"the set has {count:,} runs ({factors}), the limit is {MOST_RUNS:,}; vary fewer keys, "
-            "give them fewer values, change keys together, name fewer parts in corners, or take "
-            "random draws",
+            f"the set has {counted(count, 'run')} ({factors}), the limit is {MOST_RUNS:,}; vary "
+            "fewer keys, give them fewer values, change keys together, name fewer parts in "
+            "corners, or take random draws",
             source,
         )
 

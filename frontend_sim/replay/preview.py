@@ -8,15 +8,16 @@ from collections.abc import Sequence
 from dataclasses import dataclass
 from pathlib import Path
 
+from frontend_sim.replay.adaptive import until_of
 from frontend_sim.replay.call import default_directory
 from frontend_sim.replay.estimate import Need
 from frontend_sim.replay.executors import cores
-from frontend_sim.replay.night import batch_of, pending
+from frontend_sim.replay.night import batch_of, job_of
 from frontend_sim.replay.reading import read_set
 from frontend_sim.replay.runs import PlannedRun, PreparedSet
 from frontend_sim.replay.set_model import Keep
 from frontend_sim.replay.store import JOURNAL, Store
-from frontend_sim.replay.work import Batch, Job, cached_sha256, run_batch
+from frontend_sim.replay.work import Batch, run_batch
 
 PROBES = 3
 """Runs that are tried: of those to be done, the first, the last, and one between."""
@@ -35,6 +36,7 @@ class Preview:
     directory : where it would go
     planned : runs of the set;  kept : of these, done already
     names : runs that would be done, in their order
+    at_most : whether fewer may be enough, as draws go on until they are tight
     seconds : how long that takes, measured on some of them [s]
     size : bytes on disk that it takes
     """
@@ -45,6 +47,7 @@ class Preview:
     names: tuple[str, ...]
     seconds: float
     size: int
+    at_most: bool = False
 
 
 def preview_set(
@@ -61,18 +64,29 @@ def preview_set(
     """
     prepared = read_set(source, keep, around)
     place = Path(directory) if directory is not None else default_directory(source)
-    done = bytearray(prepared.count)
-    if (place / JOURNAL).is_file():
-        with Store(place) as store:
-            done, _ = pending(prepared, store)
-    left = [run for run in prepared.runs(cached_sha256) if not done[run.number]]
-    chosen = sorted({0, len(left) // 2, len(left) - 1}) if left else []
-    probes = [left[place] for place in chosen if not left[place].error]
-    need = _measured(prepared, probes, place)
+    left = _left(prepared, place)
     count = len(left)
+    chosen = {left[at] for at in (0, count // 2, count - 1)} if left else set()
+    numbers, names, probes = set(left), [], []
+    for run in prepared.runs():
+        if run.number in numbers:
+            names.append(run.name)
+        if run.number in chosen and not run.error:
+            probes.append(run)
+    need = _measured(prepared, probes, place)
     seconds = need.time(count, min(workers or cores(), max(count, 1))) + (START if count else 0.0)
-    names = tuple(run.name for run in left)
-    return Preview(place, prepared.count, prepared.count - count, names, seconds, need.disk(count))
+    return Preview(
+        place, prepared.count, prepared.count - count, tuple(names), seconds, need.disk(count),
+        until_of(prepared) is not None,
+    )  # fmt: skip
+
+
+def _left(prepared: PreparedSet, place: Path) -> list[int]:
+    """Return the numbers of the runs that are left to do."""
+    if not (place / JOURNAL).is_file():
+        return list(range(prepared.count))
+    with Store(place) as store:
+        return [run.number for run in prepared.runs() if not store.is_done(run)]
 
 
 def _measured(prepared: PreparedSet, probes: list[PlannedRun], place: Path) -> Need:
@@ -90,6 +104,5 @@ def _measured(prepared: PreparedSet, probes: list[PlannedRun], place: Path) -> N
 
 
 def _batch(prepared: PreparedSet, run: PlannedRun, place: Path) -> Batch:
-    job = Job(run.number, run.name, dict(run.values), run.seed, run.recipe)
     base = pickle.dumps(prepared.bases[run.base].scenario)
-    return batch_of(prepared, run.base, base, place, (job,))
+    return batch_of(prepared, run.base, base, place, (job_of(run),))

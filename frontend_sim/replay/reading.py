@@ -14,6 +14,7 @@ from pydantic import ValidationError
 from frontend_sim.archive.provenance import versions
 from frontend_sim.errors import InputError, Problem, ScenarioError, nearest
 from frontend_sim.quantities import shown
+from frontend_sim.quantities.counting import counted
 from frontend_sim.replay.points import axes_of, matching, refuse_many, unlike_names
 from frontend_sim.replay.runs import Base, PreparedSet
 from frontend_sim.replay.set_model import AROUND_FAILURES, Keep, RunSet
@@ -101,7 +102,8 @@ def _bases(files: Sequence[Path], one: bool = False) -> tuple[Base, ...]:
                 raise
             found.append(Base(called, file, None, str(error)))
     if all(base.scenario is None for base in found):
-        raise ScenarioError(f"none of {len(found)} scenarios can be run\n{found[0].error}")
+        given = counted(len(found), "scenario")
+        raise ScenarioError(f"of {given} none can be run\n{found[0].error}")
     return tuple(found)
 
 

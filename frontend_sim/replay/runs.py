@@ -4,24 +4,25 @@ from __future__ import annotations
 
 import hashlib
 import json
-from collections.abc import Callable, Iterator, Mapping
+from collections.abc import Iterator, Mapping
 from dataclasses import dataclass, field
 from functools import cached_property
 from itertools import chain
 from pathlib import Path
 from typing import Any
 
-from frontend_sim.errors import InputError, ScenarioError
+from frontend_sim.errors import InputError
 from frontend_sim.quantities import Part
+from frontend_sim.replay.contents import Contents
 from frontend_sim.replay.names import seed_of
 from frontend_sim.replay.points import Axis, combinations, count_of
 from frontend_sim.replay.set_model import Keep
-from frontend_sim.replay.spread import Circuit, Spread
+from frontend_sim.replay.spread import Spread
 from frontend_sim.scenario import AnyScenario
 from frontend_sim.scenario.key import dimension_at
 from frontend_sim.scenario.vary import with_values
 
-Sha256 = Callable[[Path], str]
+_text_of = json.JSONEncoder(sort_keys=True, separators=(",", ":")).encode
 
 
 @dataclass(frozen=True, eq=False)
@@ -100,6 +101,7 @@ class PreparedSet:
     bases : the scenarios that are varied
     file_keys : keys whose values are files
     versions : of everything that the numbers depend on
+    contents : of the recordings, as this set found them
     """
 
     source: str
@@ -112,6 +114,7 @@ class PreparedSet:
     file_keys: frozenset[str] = frozenset()
     versions: Mapping[str, str] = field(default_factory=dict)
     around: float | None = None
+    contents: Contents = field(default_factory=Contents)
 
     @cached_property
     def count(self) -> int:
@@ -131,21 +134,16 @@ class PreparedSet:
                 units[key] = dimension.unit if dimension is not None else "1"
         return units
 
-    def runs(self, sha256: Sha256) -> Iterator[PlannedRun]:
-        """Return all runs, always in the same order; they are made one by one.
-
-        Parameters
-        ----------
-        sha256 : of the content of a file
-        """
+    def runs(self) -> Iterator[PlannedRun]:
+        """Return all runs, always in the same order; they are made one by one."""
         number = 0
         for place, base in enumerate(self.bases):
-            digest = self._digest(base, sha256)
+            digest = self._digest(base)
             for label, values, error in _circuits(base, self.directory):
                 given = (base.name, label) if label else (base.name,)
                 name = ",".join(part for part in given if part) or base.path.stem
                 seed = self._seed(base, name)
-                recipe = self._recipe(digest, values, seed, sha256)
+                recipe = self._recipe(digest, values, seed)
                 yield PlannedRun(number, name, place, values, seed, recipe, error or base.error)
                 number += 1
 
@@ -154,25 +152,21 @@ class PreparedSet:
             return seed_of(self.seed, name)
         return 0 if base.scenario is None else base.scenario.seed
 
-    def _digest(self, base: Base, sha256: Sha256) -> str:
+    def _digest(self, base: Base) -> str:
         if base.scenario is None:
             return hashlib.sha256(base.error.encode()).hexdigest()
-        return base.scenario.digest(sha256)
+        return base.scenario.digest(self.contents)
 
-    def _recipe(self, base: str, values: Mapping[str, Any], seed: int, sha256: Sha256) -> str:
-        plain = {key: self._plain(key, value, sha256) for key, value in values.items()}
+    def _recipe(self, base: str, values: Mapping[str, Any], seed: int) -> str:
+        plain = {key: self._plain(key, value) for key, value in values.items()}
         keep = self.keep if self.around is None else [self.keep, self.around]
         told = [base, plain, seed, keep, dict(self.versions)]
-        text = json.dumps(told, sort_keys=True, separators=(",", ":"))
-        return hashlib.sha256(text.encode()).hexdigest()
+        return hashlib.sha256(_text_of(told).encode()).hexdigest()
 
-    def _plain(self, key: str, value: Any, sha256: Sha256) -> Any:
+    def _plain(self, key: str, value: Any) -> Any:
         """Return a value as data for JSON; a file counts by its content, not by its name."""
         if key in self.file_keys:
-            try:
-                return sha256(Path(value))
-            except OSError:  # the run tells
-                return f"missing {value}"
+            return self.contents(Path(value))
         return value.plain() if isinstance(value, Part) else value
 
 
@@ -191,12 +185,5 @@ def _circuits(base: Base, directory: Path) -> Iterator[tuple[str, dict[str, Any]
         except InputError as error:
             fault = str(error)
         for spread in base.spreads:
-            for circuit, parts in _around(spread, scenario):
+            for circuit, parts in spread.circuits(scenario):
                 yield f"{label},{circuit}" if label else circuit, {**values, **parts}, fault
-
-
-def _around(spread: Spread, scenario: AnyScenario) -> Iterator[Circuit]:
-    try:
-        yield from spread.circuits(scenario)
-    except ScenarioError as error:  # a table of measured values went away meanwhile
-        raise ScenarioError(f"the set cannot be drawn any more: {error}") from error

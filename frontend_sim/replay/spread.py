@@ -2,8 +2,8 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator, Sequence
-from dataclasses import dataclass
+from collections.abc import Iterator, Mapping, Sequence
+from dataclasses import dataclass, replace
 from functools import lru_cache
 from itertools import product
 from pathlib import Path
@@ -95,21 +95,28 @@ def _at_end(part: Part, side: int) -> Part:
     return Part((part.lowest, part.highest)[side], part.tolerance, part.drift)
 
 
-@dataclass(frozen=True)
+@dataclass(frozen=True, eq=False)
 class DrawSpread:
     """Random circuits; draw n is the same whatever the number of draws and their order.
 
     A part takes nominal · (1 + tolerance · z), with z from -1 to 1. Uniform: all z alike. Normal:
     of standard deviation s, cut off at -1 and 1, by the inverse of its distribution,
     z = s Phi^-1(Phi(-1/s) + u (Phi(1/s) - Phi(-1/s))) with u uniform. Source: JCGM 101:2008,
-    6.4.2 and 6.4.7, Annex C; from memory.
+    6.4.2 and 6.4.7, Annex C; from memory. A part with measured values takes one of these.
+
+    Parameters
+    ----------
+    parts, rules : keys of the parts, and how each is drawn
+    measured : key -> measured values, as they were when the set was read
+    first : number of the first draw; those before it are left out
     """
 
     seed: int
     draws: Draws
     parts: tuple[str, ...]
     rules: tuple[DrawnPart, ...]
-    directory: Path
+    measured: Mapping[str, Real]
+    first: int = 0
 
     @classmethod
     def of(cls, draws: Draws, scenario: AnyScenario, seed: int, directory: Path) -> DrawSpread:
@@ -135,11 +142,12 @@ class DrawSpread:
             )
         parts = tuple(key_text(scenario, path) for path in paths)
         chosen = tuple(rules.get(path, DrawnPart(key=key)) for path, key in paths.items())
-        spread = cls(seed, draws, parts, chosen, directory)
+        tables: dict[str, Real] = {}
         for key, rule in zip(parts, chosen, strict=True):
             if rule.file is not None:
-                spread._refuse_foreign(key, rule, scenario)
-        return spread
+                tables[key] = measured_values(directory / rule.file, rule.column)
+                _refuse_foreign(key, rule.file, tables[key], scenario)
+        return cls(seed, draws, parts, chosen, tables)
 
     @property
     def keys(self) -> tuple[str, ...]:
@@ -149,12 +157,17 @@ class DrawSpread:
     @property
     def count(self) -> int:
         """How many circuits it makes."""
-        return self.draws.count
+        return self.draws.count - self.first
+
+    def limited(self, count: int) -> DrawSpread:
+        """Return the same with no more than so many draws."""
+        fewer = min(count, self.draws.count)
+        return replace(self, draws=self.draws.model_copy(update={"count": fewer}))
 
     def circuits(self, scenario: AnyScenario) -> Iterator[Circuit]:
         """Return all draws, see ``Spread``."""
-        for start in range(0, self.count, STRETCH):
-            stop = min(start + STRETCH, self.count)
+        for start in range(self.first, self.draws.count, STRETCH):
+            stop = min(start + STRETCH, self.draws.count)
             columns = {
                 key: self._column(key, rule, scenario, start, stop)
                 for key, rule in zip(self.parts, self.rules, strict=True)
@@ -174,8 +187,8 @@ class DrawSpread:
         name = ("group", rule.group) if rule.group is not None else ("part", key)
         u = uniform(stream(self.seed, "draw", *name), start, stop)
         part = part_at(scenario, key)
-        if rule.file is not None:
-            measured = measured_values(self.directory / rule.file, rule.column)
+        if key in self.measured:
+            measured = self.measured[key]
             row = np.minimum((u * len(measured)).astype(np.int64), len(measured) - 1)
             values = measured[row]
         else:
@@ -184,16 +197,18 @@ class DrawSpread:
             values = np.clip(values, part.lowest, part.highest)
         return [Part(value, part.tolerance, part.drift) for value in values.tolist()]
 
-    def _refuse_foreign(self, key: str, rule: DrawnPart, scenario: AnyScenario) -> None:
-        nominal = float(part_at(scenario, key))
-        measured = measured_values(self.directory / str(rule.file), rule.column)
-        far = np.flatnonzero(np.abs(np.log(np.abs(measured / nominal) + 1e-300)) > np.log(10.0))
-        if nominal != 0.0 and len(far):
-            raise ScenarioError(
-                f"draws.part: value {far[0] + 1} of {rule.file}, {measured[far[0]]:g}, is more "
-                f"than a factor of ten away from the nominal value of {key}, {nominal:g}; measured "
-                "values stand in SI units, check the column"
-            )
+
+def _refuse_foreign(key: str, file: str, measured: Real, scenario: AnyScenario) -> None:
+    nominal = float(part_at(scenario, key))
+    if nominal == 0.0:
+        return
+    far = np.flatnonzero(np.abs(np.log(np.abs(measured / nominal) + 1e-300)) > np.log(10.0))
+    if len(far):
+        raise ScenarioError(
+            f"draws.part: value {far[0] + 1} of {file}, {measured[far[0]]:g}, is more than a "
+            f"factor of ten away from the nominal value of {key}, {nominal:g}; measured values "
+            "stand in SI units, check the column"
+        )
 
 
 def deviations(u: Real, distribution: Distribution, deviation: float) -> Real:

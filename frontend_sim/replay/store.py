@@ -23,15 +23,18 @@ JOURNAL, RECORDS, LOCK = "night.journal", "records", "night.lock"
 FORMAT = "frontend_sim night"
 FORMAT_VERSION = 1
 PARTIAL = ".partial"
+MOST_STALE = 1000
+"""Entries of what runs were before, which a journal may have beyond two for each run."""
 
 
-@dataclass(frozen=True)
+@dataclass(frozen=True, slots=True)
 class _Known:
-    """Where the last entry of a run stands, and what it was made from."""
+    """Where the last entry of a run stands, what it was made from, and the file of its record."""
 
     offset: int
     recipe: bytes
     settled: bool
+    record: str
 
 
 class Store(Closing):
@@ -52,73 +55,98 @@ class Store(Closing):
         self.directory = directory
         _refuse_foreign(directory)
         with writing(directory):
-            (directory / RECORDS).mkdir(parents=True, exist_ok=True)
+            directory.mkdir(parents=True, exist_ok=True)
         self._lock = _Lock(directory / LOCK)
         try:
             self.journal = Journal(directory / JOURNAL)
+            with writing(directory):
+                (directory / RECORDS).mkdir(exist_ok=True)
             self._known: dict[str, _Known] = {}
             self.created = self._read()
             self._clear()
+            self._forget_old_entries()
         except BaseException:
             self._lock.release()
             raise
 
     def _read(self) -> datetime:
         created = None
+        self._known.clear()
+        self._head = self._stale = 0
         for offset, entry in self.journal.entries():
             if "format" in entry:
                 _refuse_newer(self.directory, entry)
-                created = created or datetime.fromisoformat(entry["created"])
+                if created is None:
+                    created, self._head = datetime.fromisoformat(entry["created"]), offset
             elif {"name", "recipe", "verdict"} <= entry.keys():
+                self._stale += entry["name"] in self._known
                 self._know(entry, offset)
         if created is not None:
             return created
         now = datetime.now(UTC).replace(microsecond=0)
         head = {"format": FORMAT, "format_version": FORMAT_VERSION, "created": now.isoformat()}
-        self.journal.append(head)
+        self._head = self.journal.append(head)
         return now
 
     def _know(self, entry: dict[str, Any], offset: int) -> None:
         settled = entry["verdict"] != "error" or bool(entry.get("lasting"))
-        self._known[entry["name"]] = _Known(offset, bytes.fromhex(entry["recipe"]), settled)
+        record = (entry.get("record") or {}).get("file", "")
+        recipe = bytes.fromhex(entry["recipe"])
+        self._known[entry["name"]] = _Known(offset, recipe, settled, record)
 
     def _clear(self) -> None:
         """Remove what a killed call had not finished writing."""
-        for file in (self.directory / RECORDS).glob(f"*{PARTIAL}"):
-            with suppress(OSError):
-                file.unlink()
+        for folder in (self.directory, self.directory / RECORDS):
+            for file in folder.glob(f".*{PARTIAL}"):
+                with suppress(OSError):
+                    file.unlink()
+
+    def _forget_old_entries(self) -> None:
+        """Reduce a journal that has many entries of each run, as years of nights leave it."""
+        if self._stale < MOST_STALE + 2 * len(self._known):
+            return
+        with suppress(OutputError):  # it is only long
+            offsets = sorted(known.offset for known in self._known.values())
+            self.journal.reduce([self._head, *offsets])
+        self._read()
 
     def outcome(self, run: PlannedRun) -> Outcome | None:
         """Return what a run gave, from the journal; its record is not looked at."""
-        known = self._known.get(run.name)
-        if known is None or known.recipe != bytes.fromhex(run.recipe):
-            return None
-        entry = self.journal.at(known.offset)
+        known = self._of(run)
+        entry = None if known is None else self.journal.at(known.offset)
         return None if entry is None else Outcome.of_entry(entry, run.number)
 
     def record_name(self, run: PlannedRun) -> str:
         """Return the name of a run's record as seen from the directory, "" where none is kept."""
-        stored = self._stored(run.name)
-        return f"{RECORDS}/{stored['file']}" if stored else ""
+        known = self._of(run)
+        return f"{RECORDS}/{known.record}" if known is not None and known.record else ""
 
     def is_done(self, run: PlannedRun) -> bool:
-        """Return whether a run is done: by its recipe, and by the checksum of what is stored."""
+        """Return whether a run is done: by its recipe, and by the checksum of what is stored.
+
+        A run whose record is damaged is forgotten: until it is done again it counts nowhere.
+        """
+        known = self._of(run)
+        if known is None or not known.settled:
+            return False
+        whole = not known.record or self._is_whole(known)
+        if not whole:
+            del self._known[run.name]
+        return whole
+
+    def _of(self, run: PlannedRun) -> _Known | None:
+        """Return what is known of a run; None where what is stored was made from something else."""
         known = self._known.get(run.name)
-        if known is None or not known.settled or known.recipe != bytes.fromhex(run.recipe):
-            return False
+        return known if known is not None and known.recipe == bytes.fromhex(run.recipe) else None
+
+    def _is_whole(self, known: _Known) -> bool:
         entry = self.journal.at(known.offset)
-        if entry is None:
-            return False
-        stored = entry.get("record")
-        if not stored:
-            return True
-        file = self.directory / RECORDS / stored["file"]
         try:
-            with file.open("rb") as stream:
+            with (self.directory / RECORDS / known.record).open("rb") as stream:
                 checksum = hashlib.file_digest(stream, "sha256").hexdigest()
         except OSError:
             return False
-        return checksum == str(stored["sha256"])
+        return entry is not None and checksum == str(entry["record"]["sha256"])
 
     def put(self, outcome: Outcome) -> int:
         """Store what a run gave, and return the bytes that it takes.
@@ -136,20 +164,13 @@ class Store(Closing):
             size = len(outcome.record)
             checksum = hashlib.sha256(outcome.record).hexdigest()
             entry["record"] = {"file": name, "sha256": checksum, "size": size}
-        before = self._stored(outcome.name)
-        offset = self.journal.append(entry)
-        self._know(entry, offset)
-        if before and outcome.record is None:
+        before = self._known.get(outcome.name)
+        if before and before.record and outcome.record is None:
             # The record of what the run was before it changed; the journal said that it is ours.
             with suppress(OSError):
-                (self.directory / RECORDS / before["file"]).unlink(missing_ok=True)
+                (self.directory / RECORDS / before.record).unlink(missing_ok=True)
+        self._know(entry, self.journal.append(entry))
         return size
-
-    def _stored(self, name: str) -> dict[str, Any]:
-        """Return what the journal tells of the record of a run; nothing where none is kept."""
-        known = self._known.get(name)
-        entry = None if known is None else self.journal.at(known.offset)
-        return (entry or {}).get("record") or {}
 
     def _put_record(self, name: str, content: bytes) -> None:
         target = self.directory / RECORDS / name
@@ -182,7 +203,8 @@ def _refuse_foreign(directory: Path) -> None:
     if directory.exists() and not directory.is_dir():
         raise OutputError(f"{directory} is a file; give the name of a directory")
     with writing(directory):
-        there = directory.is_dir() and any(directory.iterdir())
+        # A call that was killed at its very beginning leaves its lock alone.
+        there = directory.is_dir() and any(each.name != LOCK for each in directory.iterdir())
     if there and not (directory / JOURNAL).is_file():
         raise OutputError(
             f"{directory} holds something else than a night of this program; give another directory"

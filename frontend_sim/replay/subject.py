@@ -11,6 +11,7 @@ from typing import Any, Protocol
 import numpy as np
 
 from frontend_sim.archive.grid import grid_results
+from frontend_sim.archive.room import Room
 from frontend_sim.archive.writer import ScanWriter, Writer
 from frontend_sim.measure.checks import (
     Keeper,
@@ -38,6 +39,9 @@ AROUND = 100
 
 class Subject(Protocol):
     """A scenario made ready to run once."""
+
+    def room(self) -> Room:
+        """Return what the run takes."""
 
     def parts(self) -> Iterator[Part]:
         """Run, and return the results part by part."""
@@ -93,6 +97,9 @@ class _Single:
         self._keeper = Keeper(scenario)
         self._results: tuple[Result, ...] | None = None
 
+    def room(self) -> Room:
+        return Room.of(self.simulation)
+
     def parts(self) -> Iterator[Part]:
         for block in self.simulation.blocks():
             self._keeper.add(block)
@@ -113,7 +120,7 @@ class _Single:
         return self.simulation.notes
 
     def failures(self, around: float | None) -> Stretches:
-        width = AROUND / self.simulation.scenario.adc.rate if around is None else around
+        width = AROUND / self.simulation.scenario.adc.true_rate if around is None else around
         return Stretches.about(failures_in(self._subject), width, extent_of(self._subject))
 
     def record(
@@ -149,6 +156,9 @@ class _Scan:
         self._keepers = {name: Keeper(channel) for name, channel in channels.items()}
         self._told: dict[str, list[Result]] | None = None
 
+    def room(self) -> Room:
+        return Room.of(self._simulation)
+
     def parts(self) -> Iterator[Part]:
         for name, block in self._simulation.blocks():
             self._keepers[name].add(block)
@@ -172,7 +182,7 @@ class _Scan:
     def failures(self, around: float | None) -> Stretches:
         # Of all channels the same stretches: what one shows may come from another.
         subjects = self._subjects.values()
-        slowest = min(subject.adc.rate for subject in subjects)
+        slowest = min(subject.adc.true_rate for subject in subjects)
         spans = np.concatenate([failures_in(subject) for subject in subjects])
         begins, ends = zip(*map(extent_of, subjects), strict=True)
         width = AROUND / slowest if around is None else around

@@ -5,22 +5,30 @@ from __future__ import annotations
 import pickle
 import platform
 import time
+from collections import deque
 from collections.abc import Callable, Iterable, Mapping
+from contextlib import suppress
 from dataclasses import dataclass, field
 from functools import lru_cache, partial
 from pathlib import Path
 from typing import Any, TypeVar
 
-from frontend_sim.archive.provenance import document, refuse_changed, source_files, versions
+from frontend_sim.archive.provenance import document, source_files, versions
+from frontend_sim.archive.room import refuse_beyond_memory
 from frontend_sim.errors import FrontendSimError, OutputError, RecordingError
 from frontend_sim.measure.result import verdict_of
+from frontend_sim.replay.contents import cached_sha256
 from frontend_sim.replay.outcome import Fingerprint, Outcome
 from frontend_sim.replay.set_model import AROUND_FAILURES, Keep
 from frontend_sim.replay.subject import Part, Subject, subject_of, together
 from frontend_sim.scenario import AnyScenario, ScanScenario, Scenario, check_scenario
-from frontend_sim.scenario.digest import sha256_of
 from frontend_sim.scenario.vary import with_values
 from frontend_sim.simulation.stretches import Stretches
+
+MOST_BYTES = 16 << 20
+"""Bytes of records that a batch returns, about."""
+LONGEST = 5.0
+"""How long a batch may take before it returns what it has [s]; a kill costs that much of it."""
 
 
 class CannotGoOn(Exception):  # noqa: N818 - it is what happened; the night ends by it, and tells it
@@ -28,7 +36,7 @@ class CannotGoOn(Exception):  # noqa: N818 - it is what happened; the night ends
 
 
 class WrongFileError(RecordingError):
-    """A worker has not the recording that the set was read with."""
+    """A worker has not, or not any more, the recording that the set was read with."""
 
 
 @dataclass(frozen=True)
@@ -69,9 +77,10 @@ class Batch:
 
 
 def run_batch(batch: Batch) -> list[Outcome]:
-    """Run all runs of a batch; one that fails gives an outcome that says why.
+    """Run the runs of a batch; one that fails gives an outcome that says why.
 
-    Runs that differ in the parts of a linear chain take one pass over their recording.
+    Runs that differ in the parts of a linear chain take one pass over their recording. A batch
+    that turns out long or large ends early: the outcomes are those of its first runs then.
 
     Raises
     ------
@@ -79,21 +88,25 @@ def run_batch(batch: Batch) -> list[Outcome]:
         If this worker has other versions than the coordinator, which may give other numbers.
     """
     _refuse_other_versions(batch.versions)
-    ready: list[_Ready | Outcome | None] = []
-    for job in batch.jobs:
-        begun = time.perf_counter()
-        ready.append(_guarded(job, begun, partial(_prepared, job, batch, begun)))
     begun = time.perf_counter()
-    together([each.subject for each in ready if isinstance(each, _Ready)])
-    share = (time.perf_counter() - begun) / len(batch.jobs)
-    done = []
-    for place, job in enumerate(batch.jobs):
-        prepared, ready[place] = ready[place], None  # a run is forgotten when it is done
+    ready = deque(_guarded(job, partial(_prepared, job, batch)) for job in batch.jobs)
+    passing = time.perf_counter()
+    with suppress(Exception):  # what is wrong each run meets by itself, and tells
+        together([each.subject for each in ready if isinstance(each, _Ready)])
+    through = time.perf_counter()
+    share = (through - passing) / max(len(batch.jobs), 1)
+    # What was prepared for all of them is worth as much time as it took.
+    longest = max(LONGEST, through - begun)
+    done: list[Outcome] = []
+    size = 0
+    for job in batch.jobs:
+        prepared = ready.popleft()  # a run is forgotten when it is done
         if isinstance(prepared, _Ready):
-            begun = time.perf_counter()
-            prepared = _guarded(job, begun, partial(_run, job, batch, prepared, share))
-        if prepared is not None:
-            done.append(prepared)
+            prepared = _guarded(job, partial(_run, job, batch, prepared, share))
+        done.append(prepared)
+        size += len(prepared.record or b"")
+        if size > MOST_BYTES or time.perf_counter() - through > longest:
+            break
     return done
 
 
@@ -102,17 +115,6 @@ def _scenario(pickled: bytes) -> AnyScenario:
     scenario = pickle.loads(pickled)
     assert isinstance(scenario, Scenario | ScanScenario)
     return scenario
-
-
-def cached_sha256(file: Path) -> str:
-    """Return the SHA-256 of a file, read again only where the file was written to since."""
-    about = file.stat()
-    return _sha256(file, about.st_size, about.st_mtime_ns, about.st_ino)
-
-
-@lru_cache(maxsize=4096)
-def _sha256(file: Path, size: int, modified: int, inode: int) -> str:
-    return sha256_of(file)
 
 
 @dataclass(frozen=True, eq=False)
@@ -132,14 +134,13 @@ class _Ready:
 Answer = TypeVar("Answer")
 
 
-def _guarded(job: Job, begun: float, work: Callable[[], Answer]) -> Answer | Outcome:
+def _guarded(job: Job, work: Callable[[], Answer]) -> Answer | Outcome:
     """Do a part of a run; where it fails, return the outcome that says why."""
-    lasting, told = True, ""
+    begun = time.perf_counter()
     try:
         return work()
     except FrontendSimError as error:
-        # A worker that has another file, or no room, may have it the next time.
-        lasting, told = not isinstance(error, WrongFileError | OutputError), str(error)
+        lasting, told = not _accident(error), str(error)
     except MemoryError:
         lasting, told = False, "the run does not fit into memory; shorten it, or keep fewer points"
     except Exception as error:  # noqa: BLE001 - one run that fails never stops the night
@@ -148,7 +149,17 @@ def _guarded(job: Job, begun: float, work: Callable[[], Answer]) -> Answer | Out
     return Outcome.failed(job.number, job.name, job.recipe, job.seed, told, lasting, seconds)
 
 
-def _prepared(job: Job, batch: Batch, begun: float) -> _Ready:
+def _accident(error: BaseException | None) -> bool:
+    """Return whether a run may succeed the next time: for want of a file, of room, of a disk."""
+    while error is not None:
+        if isinstance(error, WrongFileError | OutputError | OSError):
+            return True
+        error = error.__context__
+    return False
+
+
+def _prepared(job: Job, batch: Batch) -> _Ready:
+    begun = time.perf_counter()
     base = _scenario(batch.base)
     changes = dict(job.values)
     if job.seed != base.seed:
@@ -169,11 +180,14 @@ def _run(job: Job, batch: Batch, ready: _Ready, share: float) -> Outcome:
         record = _record(job, batch, ready, parts)
     else:
         wanted = batch.keep != "nothing"
+        if wanted:
+            refuse_beyond_memory(subject.room())
         kept = list(parts) if wanted else _pass(parts)
         if wanted and verdict_of(subject.results()) == "fails":
             part = subject.failures(batch.around) if batch.keep == AROUND_FAILURES else None
             record = _record(job, batch, ready, kept, part)
     results, notes = subject.results(), subject.notes()
+    _refuse_other_files(scenario, batch.files)  # nor may it have changed on the way
     return Outcome(
         number=job.number,
         name=job.name,
@@ -230,6 +244,4 @@ def _record(
     """Return the record of a run, made in memory: a worker that is killed leaves nothing behind."""
     files = source_files(ready.scenario, cached_sha256)
     resolved = document(ready.scenario, files, Path(batch.records), cached_sha256)
-    record = ready.subject.record(job.name, resolved, parts, part)
-    refuse_changed(files)
-    return record
+    return ready.subject.record(job.name, resolved, parts, part)

@@ -62,7 +62,7 @@ def test_all_checks_hold(folder: Path, capsys: pytest.CaptureFixture[str]) -> No
     assert main(["run", written(folder, "12 ms")]) == 0
     out = capsys.readouterr().out
     for text in (
-        "Checks", "367.4 us", "≤ 12.00 ms", "11.63 ms", "holds", "verdict: holds, all of 2 checks",
+        "Checks", "367.4 us", "≤ 12.00 ms", "11.63 ms", "holds", "verdict: holds, all 2 checks",
         "settling: conversions to discard", "8 conversions", "368 ticks",
     ):  # fmt: skip
         assert text in out

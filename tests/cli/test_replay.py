@@ -2,11 +2,16 @@
 
 from __future__ import annotations
 
+import errno
 import json
+import os
 import signal
 import subprocess
 import sys
 import time
+from collections.abc import Callable, Iterator
+from contextlib import contextmanager
+from dataclasses import replace
 from pathlib import Path
 
 import pytest
@@ -15,6 +20,8 @@ from nights import BASE, DRAWS, base, made_set
 from frontend_sim.archive import Record, open_record
 from frontend_sim.archive.set_table import open_set
 from frontend_sim.cli import main
+from frontend_sim.cli import night_bar as bar
+from frontend_sim.replay import Progress
 
 HERE = ["--on", "in-process"]
 
@@ -98,7 +105,7 @@ def test_a_dry_run_lists_what_would_be_done(
     told = capsys.readouterr().out
     assert told.splitlines()[0] == "draw 0001"
     assert "... and 10 more" in told
-    assert "30 of 30 runs would be done" in told
+    assert "all 30 runs would be done" in told
     assert not (tmp_path / "night").exists()
     main([*arguments, *HERE])
     made_set(tmp_path, DRAWS.format(31))
@@ -108,6 +115,9 @@ def test_a_dry_run_lists_what_would_be_done(
     assert found["runs"] == ["draw 0031"]
     assert found["kept"] == 30
     assert found["bytes"] > 0
+    made_set(tmp_path, DRAWS.format(400) + '[draws.until]\nyield = "5 %"\n')
+    assert main([*arguments, "--dry-run"]) == 0
+    assert "fewer may be enough" in capsys.readouterr().out
 
 
 def test_several_scenarios_are_a_set(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
@@ -155,6 +165,74 @@ def test_a_night_that_is_stopped_says_how_to_go_on(tmp_path: Path, number: signa
     assert "the same call goes on from here" in told
     assert "Traceback" not in told
     assert 0 < len(open_set(tmp_path / "night").runs) < 5000
+
+
+def test_a_stop_among_damaged_records_says_how_many_are_left(
+    tmp_path: Path, capsys: pytest.CaptureFixture[str], monkeypatch: pytest.MonkeyPatch
+) -> None:
+    """They are not done before they are made again, whatever the journal has of them."""
+    file = made_set(tmp_path, DRAWS.format(3))
+    arguments = ["replay", str(file), "-o", str(tmp_path / "night"), "--keep", "all", *HERE]
+    main(arguments)
+    for record in (tmp_path / "night" / "records").iterdir():
+        record.unlink()
+    capsys.readouterr()
+
+    @contextmanager
+    def impatient(title: str) -> Iterator[Callable[[Progress], None]]:
+        def report(progress: Progress) -> None:
+            raise KeyboardInterrupt
+
+        yield report
+
+    monkeypatch.setattr(bar, "night_bar", impatient)
+    assert main(arguments) == 130
+    told = capsys.readouterr().err
+    assert "stopped after 1 run, 2 left: it was interrupted; the same call goes on" in told
+
+
+@pytest.mark.skipif(not hasattr(signal, "SIGHUP"), reason="sends a signal")
+def test_nohup_keeps_its_word(tmp_path: Path) -> None:
+    """A night that shall not end with its terminal goes on when that is closed."""
+    file = made_set(tmp_path, DRAWS.format(2))
+    script = (
+        "import os, signal, sys\n"
+        "signal.signal(signal.SIGHUP, signal.SIG_IGN)\n"
+        "from frontend_sim.cli import main\n"
+        "from frontend_sim.cli import night_bar\n"
+        "night_bar.told = lambda progress: os.kill(os.getpid(), signal.SIGHUP)\n"
+        "night_bar.INTERVAL = -1.0\n"
+        "sys.exit(main(sys.argv[1:]))\n"
+    )
+    arguments = ["replay", str(file), "-o", str(tmp_path / "night"), *HERE]
+    command = [sys.executable, "-c", script, *arguments]
+    done = subprocess.run(command, capture_output=True, text=True, check=False)
+    assert done.returncode in (0, 1), done.stderr
+    assert len(open_set(tmp_path / "night").runs) == 2
+
+
+def test_what_a_night_waits_for_is_told_at_once(capsys: pytest.CaptureFixture[str]) -> None:
+    """And when it goes on; a log that is full, or that nobody reads, ends nothing."""
+    going = Progress(1, 9, 0, 1, 0, 2.0, 4.0)
+    with bar.night_bar("pump.toml") as report:
+        report(going)
+        assert capsys.readouterr().err == ""
+        for _ in range(3):
+            report(replace(going, note="there is no worker since 02:13"))
+        assert capsys.readouterr().err == "pump.toml: there is no worker since 02:13\n"
+        report(going)
+        assert capsys.readouterr().err == "pump.toml: 1 of 9 runs, 2/s, 4 s left, 1 fail\n"
+
+
+def test_a_log_that_cannot_be_written_ends_no_night(monkeypatch: pytest.MonkeyPatch) -> None:
+    """A disk may be full, or the reader of a pipe may have gone home."""
+
+    def full(*_: object, **__: object) -> None:
+        raise OSError(errno.ENOSPC, os.strerror(errno.ENOSPC))
+
+    monkeypatch.setattr(bar.click, "echo", full)
+    with bar.night_bar("pump.toml") as report:
+        report(Progress(1, 9, 0, 1, 0, 2.0, 4.0, "there is no worker"))
 
 
 def test_a_scan_is_varied_like_any_scenario(

@@ -12,7 +12,7 @@ import pytest
 from nights import made_set
 from scanned import level, scan_of, sine
 
-from frontend_sim.archive import Record, ScanRecord, open_record, rerun, save_record
+from frontend_sim.archive import Record, ScanRecord, open_record, rerun, room, save_record
 from frontend_sim.comparison import RecordComparison, compare_records, compare_runs
 from frontend_sim.errors import MeasureError, RecordError, ScenarioError
 from frontend_sim.measure.checks import evaluate_checks
@@ -101,12 +101,56 @@ def test_the_part_is_that_of_the_whole(nights: tuple[Replayed, Replayed]) -> Non
         assert np.array_equal(rerun(part).codes, whole.codes)
 
 
+@pytest.mark.parametrize(
+    ("clock", "around", "count"),
+    [("", "3.7 ms", 37), ("", "", 100), ("rate_error = -0.001", "", 100)],
+)
+def test_a_window_of_whole_conversions_has_both_ends(
+    tmp_path: Path, clock: str, around: str, count: int
+) -> None:
+    """Before and behind a failure lie as many conversions as were asked for, by their numbers.
+
+    Left out, it is 100 of the converter's true intervals, be its clock right or slow.
+    """
+    window = f'around = "{around}"' if around else ""
+    scenario = CLIPS.replace("bits = 12", f"bits = 12\n{clock}")
+    rules = f'keep = "around-failures"\n{window}\n[draws]\ncount = 1\n'
+    file = made_set(tmp_path, rules, scenario=scenario)
+    with record(replay_set(file, tmp_path / "night", on="in-process")) as part:
+        pin = rerun(part).pin
+        fails = np.flatnonzero((pin > 3.3 - 10e-3) | (pin < 10e-3))
+        far = np.min(np.abs(np.arange(len(pin))[:, np.newaxis] - fails), axis=1)
+        assert part.numbers.tolist() == np.flatnonzero(far <= count).tolist()
+
+
+@pytest.mark.parametrize("keep", ["around-failures", "failures", "nothing"])
+def test_a_run_beyond_the_memory_is_refused(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch, keep: Any
+) -> None:
+    """2000 conversions of at least 33 bytes do not fit into 50 kB, and where none is kept they may.
+
+    Room for the memory of the machine is no lasting fault: the next call tries again.
+    """
+    monkeypatch.setattr(room, "memory_bytes", lambda: 50_000)
+    file = made_set(tmp_path, "[draws]\ncount = 1\n", scenario=CLIPS)
+    night = replay_set(file, tmp_path / "night", on="in-process", keep=keep)
+    if keep == "nothing":
+        assert night.table().verdicts.tolist() == ["fails"]
+        return
+    (told,) = night.table().texts("error").tolist()
+    assert "until its verdict the run takes" in told
+    assert "this machine has 50 kB" in told
+    monkeypatch.undo()
+    again = replay_set(file, tmp_path / "night", on="in-process", keep=keep)
+    assert (again.ran, again.table().verdicts.tolist()) == (1, ["fails"])
+
+
 def test_what_needs_the_whole_run_refuses_a_part(
     nights: tuple[Replayed, Replayed], tmp_path: Path
 ) -> None:
     """Nobody takes a part for a run: it is no run, has no verdict of its own, and no sums."""
     with record(nights[0]) as part:
-        with pytest.raises(RecordError, match=r"keeps \d+ of 2000 conversions, .* rerun"):
+        with pytest.raises(RecordError, match=r"keeps \d+ of 2,000 conversions, .* rerun"):
             part.run()
         for ask in (evaluate_checks, total_error):
             with pytest.raises(MeasureError, match=r"needs a whole run, .* rerun\(record\)"):
@@ -172,7 +216,7 @@ def test_a_failure_without_a_place_keeps_the_verdict_alone(tmp_path: Path) -> No
         assert len(run_figure(empty).axes) > 2
         told = record_page(empty)
     (signal,) = (section for section in told.sections if section.name == "signal")
-    assert "keeps none of 2000 conversions" in signal.text[0]
+    assert "keeps none of 2,000 conversions" in signal.text[0]
     holds = fails.replace("0.1 mV", "1 V")
     night = replay_set(made_set(tmp_path, SET, scenario=holds), tmp_path / "b", on="in-process")
     assert night.table().record_path("draw 0001") is None
@@ -194,7 +238,7 @@ def test_a_part_is_compared_where_both_have_conversions(
         pin = next(row for row in found.series if row.name == "pin")
         assert 0 < pin.count < 2000
         assert f"{pin.count} that both keep" in pin.told
-        assert any("of 2000 conversions, around what failed" in note for note in found.notes)
+        assert any("of 2,000 conversions, around what failed" in note for note in found.notes)
 
 
 def test_a_change_is_found_in_a_part(nights: tuple[Replayed, Replayed], tmp_path: Path) -> None:
@@ -251,10 +295,10 @@ def test_no_line_leads_over_what_is_not_kept(nights: tuple[Replayed, Replayed]) 
     at, codes = np.asarray(lines[0].get_xdata()), np.asarray(lines[0].get_ydata())
     ends = np.flatnonzero(np.isnan(codes))  # a step is held up to the next point, of which
     assert np.array_equal(at[ends], at[ends - 1])  # the one of a gap must not be behind it
-    assert figure.get_suptitle().count(f"{count} of 2000 conversions, around failures") == 1
+    assert figure.get_suptitle().count(f"{count} of 2,000 conversions, around failures") == 1
     assert ("kept around failures", f"{count}") in page.facts
     (signal,) = (section for section in page.sections if section.name == "signal")
-    assert f"keeps {count} of 2000 conversions, in 4 stretches: 2.03 ms before" in signal.text[0]
+    assert f"keeps {count} of 2,000 conversions, in 4 stretches: 2.03 ms before" in signal.text[0]
 
 
 def test_all_channels_of_a_scan_keep_the_same_stretches(tmp_path: Path) -> None:
@@ -304,7 +348,7 @@ def test_old_words_have_the_recipes_that_they_had(tmp_path: Path) -> None:
     """A new key makes no old night run again: what is kept counts as it did."""
     file = made_set(tmp_path, SET, scenario=CLIPS)
     whole, part = read_set(file, "all"), read_set(file, "around-failures", 1e-3)
-    (run, *_), (other, *_) = (list(each.runs(lambda path: "")) for each in (whole, part))
+    (run, *_), (other, *_) = (list(each.runs()) for each in (whole, part))
     assert whole.around is None
     assert run.recipe != other.recipe
     base = whole.bases[0].scenario

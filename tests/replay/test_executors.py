@@ -144,6 +144,9 @@ class Deadly:
             future.set_result(run_batch(batch))
         return future
 
+    def waits_for(self) -> str:
+        return ""
+
     def close(self, now: bool) -> None:
         pass
 
@@ -156,7 +159,8 @@ def test_a_run_that_kills_its_worker_is_listed_and_the_others_are_done(
     hands = Deadly({"draw 0005"}, accidents=2)
     prepared = read_set(file)
     with Store(tmp_path / "night") as store:
-        done = Night(prepared, store, hands, None)
+        done = Night(store, hands, None)
+        done.look(prepared)
         done.run()
     assert done.counts.total() == RUNS
     assert done.counts["error"] == 1

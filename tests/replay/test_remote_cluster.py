@@ -2,14 +2,20 @@
 
 from __future__ import annotations
 
+import json
 import os
+import re
+import signal
 import subprocess
 import sys
+import time
 from collections.abc import Iterator
-from dataclasses import dataclass, replace
+from contextlib import suppress
+from dataclasses import dataclass, field, replace
 from pathlib import Path
 from typing import Any
 
+import nights
 import numpy as np
 import pytest
 from nights import RECORDED, made_set
@@ -28,45 +34,96 @@ pytestmark = [
 SET = 'seed = 3\nkeep = "all"\n[draws]\ncount = 6\n'
 
 
+NURSERY = """
+import json, os, signal, sys
+from pathlib import Path
+from distributed.cli import dask_scheduler, dask_worker
+import frontend_sim
+import nights
+frontend_sim.simulate(frontend_sim.parse_scenario(nights.BASE))
+signal.signal(signal.SIGCHLD, signal.SIG_IGN)
+for line in sys.stdin:
+    module, folder, *arguments = json.loads(line)
+    child = os.fork()
+    if child == 0:
+        signal.signal(signal.SIGCHLD, signal.SIG_DFL)
+        os.chdir(folder)
+        os.environ["TMPDIR"] = folder
+        os.dup2(os.open(f"{folder}.log", os.O_WRONLY | os.O_CREAT), 2)
+        {"scheduler": dask_scheduler, "worker": dask_worker}[module].main(arguments)
+    print(child, flush=True)
+"""
+"""Forks parts of a cluster from a process that has its libraries loaded already."""
+
+
 @dataclass
 class Cluster:
     """A scheduler and two workers, which see nothing of each other but sockets."""
 
-    address: str
-    scheduler: subprocess.Popen[str]
-    workers: list[subprocess.Popen[str]]
-    folders: list[Path]
+    nursery: subprocess.Popen[str]
+    above: Path
+    folders: list[Path] = field(default_factory=list)
+    workers: list[int] = field(default_factory=list)
+    scheduler: int = 0
+    address: str = ""
 
+    def begin(self) -> None:
+        """Start all of it on TCP."""
+        where = ("--host", "127.0.0.1", "--port", "0", "--no-dashboard")
+        self.scheduler = self._started("scheduler", "scheduler", *where)
+        log = self.above / "scheduler.log"
+        while "Scheduler at:" not in log.read_text():
+            time.sleep(0.02)
+        self.address = next(
+            line.split()[-1] for line in log.read_text().splitlines() if "Scheduler at:" in line
+        )
+        self.add_worker("first")
+        self.add_worker("second")
 
-def started(module: str, *arguments: str, folder: Path) -> subprocess.Popen[str]:
-    """Start a part of the cluster in a folder of its own, temporary files included."""
-    folder.mkdir()
-    paths = os.pathsep.join(filter(None, (str(Path.cwd()), os.environ.get("PYTHONPATH"))))
-    return subprocess.Popen(
-        [sys.executable, "-m", f"distributed.cli.{module}", *arguments],
-        cwd=folder,
-        env={**os.environ, "TMPDIR": str(folder), "PYTHONPATH": paths},
-        stderr=subprocess.PIPE,
-        text=True,
-    )
+    def add_worker(self, name: str) -> None:
+        """Start a worker in a folder of its own, temporary files included."""
+        alone = ("--nthreads", "1", "--no-nanny", "--no-dashboard", "--local-directory", "space")
+        self.workers.append(self._started("worker", name, self.address, *alone))
+        self.folders.append(self.above / name)
+
+    def kill_workers(self) -> None:
+        """End all workers that are left."""
+        while self.workers:
+            with suppress(ProcessLookupError):  # some end with their scheduler
+                os.kill(self.workers.pop(), signal.SIGKILL)
+
+    def _started(self, module: str, name: str, *arguments: str) -> int:
+        folder = self.above / name
+        folder.mkdir()
+        Path(f"{folder}.log").touch()
+        assert self.nursery.stdin is not None
+        assert self.nursery.stdout is not None
+        print(json.dumps([module, str(folder), *arguments]), file=self.nursery.stdin, flush=True)
+        return int(self.nursery.stdout.readline())
 
 
 @pytest.fixture(scope="module")
 def remote(tmp_path_factory: pytest.TempPathFactory) -> Iterator[Cluster]:
-    """Start a cluster on TCP; the last tests of this file break it, part by part."""
+    """Start a cluster; the last tests of this file break it, part by part."""
     pytest.importorskip("distributed")
     above = tmp_path_factory.mktemp("cluster")
-    where = ("--host", "127.0.0.1", "--port", "0", "--no-dashboard")
-    scheduler = started("dask_scheduler", *where, folder=above / "scheduler")
-    assert scheduler.stderr is not None
-    address = next(line.split()[-1] for line in scheduler.stderr if "Scheduler at:" in line)
-    alone = ("--nthreads", "1", "--no-nanny", "--no-dashboard", "--local-directory", "space")
-    folders = [above / "first", above / "second"]
-    workers = [started("dask_worker", address, *alone, folder=each) for each in folders]
-    yield Cluster(address, scheduler, workers, folders)
-    for process in (*workers, scheduler):
-        process.kill()
-        process.communicate()
+    places = (str(Path.cwd()), str(Path(nights.__file__).parent), os.environ.get("PYTHONPATH"))
+    with subprocess.Popen(
+        [sys.executable, "-c", NURSERY],
+        env={**os.environ, "PYTHONPATH": os.pathsep.join(filter(None, places))},
+        stdin=subprocess.PIPE,
+        stdout=subprocess.PIPE,
+        text=True,
+    ) as nursery:
+        made = Cluster(nursery, above)
+        try:
+            made.begin()
+            yield made
+        finally:
+            made.kill_workers()
+            with suppress(ProcessLookupError):
+                os.kill(made.scheduler, signal.SIGKILL)
+            nursery.kill()
 
 
 @pytest.fixture(scope="module")
@@ -142,13 +199,69 @@ def test_a_killed_worker_is_survived(
     file, whole = reference
 
     def kill(progress: Progress) -> None:
-        if progress.done:
-            remote.workers[0].kill()
+        if progress.done and len(remote.workers) == 2:
+            os.kill(remote.workers.pop(), signal.SIGKILL)
 
     done = replayed(file, tmp_path / "night", remote, kill)
-    assert remote.workers[0].wait() != 0
+    assert len(remote.workers) == 1
     assert done.complete
     assert done.digest == whole.digest
+
+
+def test_a_night_without_workers_waits_for_one_and_says_so(
+    reference: tuple[Path, Replayed],
+    remote: Cluster,
+    tmp_path: Path,
+    monkeypatch: pytest.MonkeyPatch,
+) -> None:
+    """All of them go away: it is told since when, and what to do; with another one it goes on."""
+    file, whole = reference
+    monkeypatch.setattr(cluster, "LOOK", 0.1)
+    monkeypatch.setattr(night, "MOST_JOBS", 1)
+    notes: list[str] = []
+
+    def lose(progress: Progress) -> None:
+        if progress.done:
+            if not notes:
+                remote.kill_workers()
+            notes.append(progress.note)
+        if progress.note and not remote.workers:
+            remote.add_worker("third")
+
+    done = replayed(file, tmp_path / "night", remote, lose)
+    assert done.complete
+    assert done.digest == whole.digest
+    where = re.escape(remote.address)
+    (told,) = set(notes) - {""}
+    assert re.fullmatch(
+        rf"the scheduler at {where} has no worker since \d\d:\d\d, and the night waits for one; "
+        rf"start some: dask worker {where}",
+        told,
+    )
+    assert notes[-1] == ""
+
+
+def test_a_night_does_not_wait_for_ever(
+    reference: tuple[Path, Replayed],
+    remote: Cluster,
+    tmp_path: Path,
+    monkeypatch: pytest.MonkeyPatch,
+) -> None:
+    """A scheduler of nights meets an end, with what was done in the table."""
+    file, _ = reference
+    monkeypatch.setattr(cluster, "LOOK", 0.1)
+    monkeypatch.setattr(cluster, "LONGEST", 0.2)
+    monkeypatch.setattr(night, "MOST_JOBS", 1)
+
+    def lose(progress: Progress) -> None:
+        if progress.done:
+            remote.kill_workers()
+
+    done = replayed(file, tmp_path / "night", remote, lose)
+    remote.add_worker("fourth")
+    assert "has no worker since" in done.stopped
+    assert done.left == done.tally.planned - done.ran > 0
+    assert len(done.table().runs) == done.ran >= 1
 
 
 def test_a_scheduler_that_goes_away_ends_the_night_and_the_next_goes_on(
@@ -164,7 +277,8 @@ def test_a_scheduler_that_goes_away_ends_the_night_and_the_next_goes_on(
 
     def kill(progress: Progress) -> None:
         if progress.done:
-            remote.scheduler.kill()
+            with suppress(ProcessLookupError):
+                os.kill(remote.scheduler, signal.SIGKILL)
 
     done = replayed(file, tmp_path / "night", remote, kill)
     assert (

@@ -11,12 +11,11 @@ from nights import BASE, base, made_set
 from frontend_sim.errors import InputError, ScenarioError
 from frontend_sim.quantities import Part
 from frontend_sim.replay import PlannedRun, read_set
-from frontend_sim.replay.work import cached_sha256
 
 
 def runs(directory: Path, text: str) -> list[PlannedRun]:
     """Return the runs of a set file."""
-    return list(read_set(made_set(directory, text)).runs(cached_sha256))
+    return list(read_set(made_set(directory, text)).runs())
 
 
 def test_a_full_grid_has_every_combination_under_a_readable_name(tmp_path: Path) -> None:
@@ -165,11 +164,11 @@ def test_recordings_are_found_by_a_pattern(tmp_path: Path) -> None:
     for name in ("a", "b"):
         (tmp_path / f"{name}.csv").write_text("v\n" + "1.0\n" * 100 + f"{len(name)}.5\n")
     text = '[[vary]]\nkey = "stimulus.file"\nglob = "*.csv"\n'
-    found = list(read_set(made_set(tmp_path, text, scenario=recorded)).runs(cached_sha256))
+    found = list(read_set(made_set(tmp_path, text, scenario=recorded)).runs())
     assert [run.name for run in found] == ["file=a", "file=b"]
     before = found[1].recipe
     (tmp_path / "b.csv").write_text("v\n" + "1.0\n" * 100 + "0.25\n")
-    found = list(read_set(tmp_path / "set.toml").runs(cached_sha256))
+    found = list(read_set(tmp_path / "set.toml").runs())
     assert found[1].recipe != before
 
 
@@ -178,7 +177,7 @@ def test_a_directory_is_a_set_whose_scenarios_keep_their_seeds(tmp_path: Path) -
     base(tmp_path, BASE.replace("format = 1", "format = 1\nseed = 11"), "a.toml")
     base(tmp_path, BASE.replace("10 kohm", "10 kHz"), "b.toml")
     prepared = read_set(tmp_path)
-    found = list(prepared.runs(cached_sha256))
+    found = list(prepared.runs())
     assert [(run.name, run.seed) for run in found] == [("a", 11), ("b", 0)]
     assert found[0].error == ""
     assert "resistance" in found[1].error
@@ -191,7 +190,7 @@ def test_a_set_may_stand_on_another(tmp_path: Path) -> None:
     file = made_set(
         tmp_path, 'base = "inner.toml"\n[[vary]]\nkey = "adc.rate"\nvalues = ["1 kHz"]\n'
     )
-    found = list(read_set(file).runs(cached_sha256))
+    found = list(read_set(file).runs())
     assert [run.name for run in found] == ["bits=10,rate=1kHz", "bits=12,rate=1kHz"]
 
 

@@ -29,7 +29,16 @@ class Executor(Protocol):
         """How many workers died when a batch is given up."""
 
     def submit(self, batch: Batch) -> Future[list[Outcome]]:
-        """Hand in a batch; the future raises ``WorkerDied`` where its worker did."""
+        """Hand in a batch; the future raises ``WorkerDied`` where its worker did.
+
+        Raises CannotGoOn where nobody can take it any more.
+        """
+
+    def waits_for(self) -> str:
+        """Return what is missing so that nothing is done, and what to do; "" where all is well.
+
+        Raises CannotGoOn where that lasts too long.
+        """
 
     def close(self, now: bool) -> None:
         """End all workers; ``now`` without waiting for what they are doing."""

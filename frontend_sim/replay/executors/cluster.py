@@ -7,7 +7,7 @@ import socket
 import time
 from collections.abc import Iterator
 from concurrent.futures import Future
-from contextlib import ExitStack, contextmanager
+from contextlib import ExitStack, contextmanager, suppress
 from importlib import import_module
 from typing import Any
 
@@ -22,6 +22,12 @@ PATIENCE = 30
 
 TICK = 0.2
 """How often it is asked [s]."""
+
+LOOK = 5.0
+"""How often a cluster is asked for its workers [s]."""
+
+LONGEST = 3600.0
+"""How long a night waits for a worker where there is none [s]."""
 
 
 class DaskCluster:
@@ -42,9 +48,33 @@ class DaskCluster:
             quiet.enter_context(_silenced())
             self._client, self._cluster = _connected(dask, workers, scheduler)
             self._quiet = quiet.pop_all()
-        threads: dict[str, int] = self._client.nthreads()
-        self.workers = max(1, sum(threads.values()))
+        self._start = f"start some: dask worker {scheduler or 'ADDRESS'}"
         self._open: set[Any] = set()
+        self._threads, self._looked = 0, -LOOK
+        self._absent: tuple[float, str] | None = None
+        self.waits_for()
+
+    @property
+    def workers(self) -> int:
+        """How many batches are worked on at a time, by the workers that there are."""
+        return max(1, self._threads)
+
+    def waits_for(self) -> str:
+        """Return since when there is no worker, see ``Executor``."""
+        now = time.monotonic()
+        if now - self._looked >= LOOK and self._client.status == "running":
+            self._looked = now
+            with suppress(Exception):  # a scheduler that went away shows in the batches
+                self._threads = sum(self._client.nthreads().values())
+                absent = self._absent or (now, time.strftime("%H:%M"))
+                self._absent = None if self._threads else absent
+        if self._absent is None:
+            return ""
+        begun, clock = self._absent
+        told = f"{self._where} has no worker since {clock}"
+        if now - begun > LONGEST:
+            raise CannotGoOn(f"{told}; {self._start}")
+        return f"{told}, and the night waits for one; {self._start}"
 
     def submit(self, batch: Batch) -> Future[list[Outcome]]:
         """Hand in a batch, see ``Executor``."""
@@ -65,7 +95,7 @@ class DaskCluster:
             outer.set_result(finished.result())
         except killed as error:
             outer.set_exception(WorkerDied(str(error)))
-        except CannotGoOn as error:
+        except (CannotGoOn, MemoryError) as error:
             outer.set_exception(error)
         except BaseException as error:  # noqa: BLE001 - runs catch their own; it is the cluster's
             if not outer.done():
@@ -117,9 +147,19 @@ def _dask() -> Any:
 def _connected(dask: Any, workers: int | None, scheduler: str | None) -> tuple[Any, Any]:
     """Return a client, and the cluster that was started for it, if one was."""
     if scheduler is None:
-        cluster = dask.LocalCluster(
-            n_workers=workers or cores(), threads_per_worker=1, dashboard_address=None
-        )
+        try:
+            cluster = dask.LocalCluster(
+                n_workers=workers or cores(),
+                threads_per_worker=1,
+                dashboard_address=None,
+                silence_logs=logging.CRITICAL,  # of the workers, whose coordinator may be killed
+            )
+        except (OSError, RuntimeError) as error:
+            told = " ".join(f"{error}".split())
+            raise ScenarioError(
+                f"a Dask cluster cannot be started here: {told}; take fewer workers, or the "
+                "executor processes"
+            ) from error
         return dask.Client(cluster), cluster
     try:
         _await_listener(scheduler)

@@ -15,7 +15,7 @@ from multiprocessing.connection import Connection
 from frontend_sim.errors import ScenarioError
 from frontend_sim.replay.executors.base import WorkerDied
 from frontend_sim.replay.outcome import Outcome
-from frontend_sim.replay.work import Batch, run_batch
+from frontend_sim.replay.work import Batch, CannotGoOn, run_batch
 
 
 def cores() -> int:
@@ -38,27 +38,35 @@ class Processes:
         """Prepare the pool; workers start when there is something to do."""
         self.workers = workers or cores()
         self._context = multiprocessing.get_context("spawn")
-        self._pool, self._alive = self._started()
+        try:
+            self._pool, self._alive = self._started()
+        except OSError as error:
+            raise ScenarioError(_unstartable(error)) from error
 
     def _started(self) -> tuple[ProcessPoolExecutor, Connection]:
-        with _startable():
-            reader, writer = self._context.Pipe(duplex=False)
-            pool = ProcessPoolExecutor(self.workers, self._context, _begin, (reader,))
-        return pool, writer
+        reader, writer = self._context.Pipe(duplex=False)
+        return ProcessPoolExecutor(self.workers, self._context, _begin, (reader,)), writer
 
     def submit(self, batch: Batch) -> Future[list[Outcome]]:
         """Hand in a batch, see ``Executor``; a pool that broke is replaced by a new one."""
         try:
-            future = self._handed_in(batch)
-        except BrokenProcessPool:
-            self.close(now=True)
-            self._pool, self._alive = self._started()
-            future = self._handed_in(batch)
+            try:
+                future = self._handed_in(batch)
+            except BrokenProcessPool:
+                self.close(now=True)
+                self._pool, self._alive = self._started()
+                future = self._handed_in(batch)
+        except (OSError, RuntimeError) as error:  # as processes and threads refuse to start
+            raise CannotGoOn(_unstartable(error)) from error
         return _told(future)
 
     def _handed_in(self, batch: Batch) -> Future[list[Outcome]]:
-        with _startable(), _deaf():  # the pool starts a worker here as long as it has too few
+        with _deaf():  # the pool starts a worker here as long as it has too few
             return self._pool.submit(run_batch, batch)
+
+    def waits_for(self) -> str:
+        """Return that all is well: a worker that is missing is replaced at once."""
+        return ""
 
     def close(self, now: bool) -> None:
         """End all workers, see ``Executor``."""
@@ -69,16 +77,10 @@ class Processes:
             self._alive.close()
 
 
-@contextmanager
-def _startable() -> Iterator[None]:
-    """Tell what keeps workers from starting, for instance too many open files."""
-    try:
-        yield
-    except OSError as error:
-        raise ScenarioError(
-            f"workers cannot be started: {error.strerror or error}; take fewer of them, or "
-            "the executor in-process"
-        ) from error
+def _unstartable(error: Exception) -> str:
+    """Return what keeps workers from starting, for instance too many open files."""
+    reason = getattr(error, "strerror", None) or error
+    return f"workers cannot be started: {reason}; take fewer of them, or the executor in-process"
 
 
 @contextmanager
