@@ -10,9 +10,9 @@ from typing import Any
 import numpy as np
 
 from frontend_sim.compiled import compiled
-from frontend_sim.simulation.kernels import BASE, BITS
 
-DIGIT = BASE - 1
+BITS = 6
+BASE = 1 << BITS
 
 
 @compiled()
@@ -46,7 +46,7 @@ def advance(
     rest = dt - count * unit
     level = 0
     while count > 0:
-        digit = count & DIGIT
+        digit = count & (BASE - 1)
         if digit:
             product(table[level, digit], z, n, work)
             for r in range(len(z)):
@@ -58,6 +58,26 @@ def advance(
         product(system, work, n, more)
         for r in range(len(z)):
             z[r] += rest * (work[r] + 0.5 * rest * more[r])
+
+
+@compiled()
+def since_point(
+    states: Any, value: Any, rise: Any, since: Any, unit: float, system: Any, table: Any
+) -> None:
+    """Advance states[k] in place by since[k] from a point of a uniform drive.
+
+    value[k] and rise[k] are the generator's states; without a second one the value is held.
+    """
+    n, size = states.shape[1], len(system)
+    z, work, more = np.empty(size), np.empty(size), np.empty(size)
+    for k in range(len(since)):
+        if since[k] > 0.0:
+            z[:n] = states[k]
+            z[n] = value[k]
+            if size > n + 1:
+                z[n + 1] = rise[k]
+            advance(z, work, more, n, since[k], unit, system, table)
+            states[k] = z[:n]
 
 
 @compiled()

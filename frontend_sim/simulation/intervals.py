@@ -4,14 +4,14 @@ from __future__ import annotations
 
 import math
 from dataclasses import dataclass
-from functools import cached_property
 from typing import Self
 
 import numpy as np
 
 from frontend_sim.analog.exponential import expm1, joined
 from frontend_sim.simulation import interval_kernels
-from frontend_sim.simulation.kernels import BASE, BITS, Index, Real, reach
+from frontend_sim.simulation.interval_kernels import BASE, BITS
+from frontend_sim.simulation.kernels import Index, Real
 
 FINEST = 2.0**-17
 """Norm of the system times the unit of time: what the second-order Taylor polynomial leaves out
@@ -30,18 +30,18 @@ class IntervalTable:
     ----------
     system : M, shape (N, N) [1/s]
     unit : a power of two [s]
-    table : shape (levels, 64, N, N)
-    stop : columns of the chain's states that each of their rows needs, shape (n,)
+    columns : its transpose, as the loops have it
+    table : shape (levels, 64, N, N), each matrix by columns too
     """
 
     system: Real
     unit: float
+    columns: Real
     table: Real
-    stop: Index
 
     @classmethod
-    def of(cls, system: Real, states: int, longest: float) -> Self:
-        """Tabulate a system up to ``longest`` [s]; the first ``states`` of it are the chain's."""
+    def of(cls, system: Real, longest: float) -> Self:
+        """Tabulate a system up to ``longest`` [s]."""
         norm = float(np.max(np.sum(np.abs(system), axis=1), initial=0.0))
         unit = 2.0 ** math.floor(math.log2(FINEST / norm)) if norm > 0.0 else 1.0
         # Below a rounding of the longest interval no finer unit is ever needed.
@@ -54,12 +54,8 @@ class IntervalTable:
             top, half = 1 << bit, table[:, 1 << bit - 1]
             table[:, top] = joined(half, half)
             table[:, top + 1 : 2 * top] = joined(table[:, top, None], table[:, 1:top])
-        return cls(np.ascontiguousarray(system), unit, table, reach(table[:, :, :states, :states]))
-
-    @cached_property
-    def _columns(self) -> tuple[Real, Real]:
-        """The system and the table by columns, which march faster."""
-        return np.ascontiguousarray(self.system.T), np.ascontiguousarray(self.table.swapaxes(2, 3))
+        columns = np.ascontiguousarray(system.T), np.ascontiguousarray(table.swapaxes(2, 3))
+        return cls(system, unit, *columns)
 
     def march(
         self,
@@ -84,5 +80,5 @@ class IntervalTable:
         z[0, :n], z[:, n:] = x, g
         if counts is None or steps is None:
             counts, steps = np.zeros(len(g) - 1, np.int64), np.empty((0, len(self.system), n))
-        interval_kernels.march(z, n, counts, intervals, steps, self.unit, *self._columns)
+        interval_kernels.march(z, n, counts, intervals, steps, self.unit, self.columns, self.table)
         return z

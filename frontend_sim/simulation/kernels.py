@@ -12,9 +12,6 @@ from frontend_sim.compiled import compiled
 Real = NDArray[np.float64]
 Index = NDArray[np.int64]
 
-BITS = 6
-BASE = 1 << BITS
-
 
 def reach(matrix: Real) -> Index:
     """Return for each row of (..., n, n) matrices how many columns it needs, shape (n,).
@@ -27,49 +24,6 @@ def reach(matrix: Real) -> Index:
     return reached
 
 
-@compiled(inline="always")
-def row_times(matrix: Any, z: Any, r: int, n: int, stop: Any) -> float:
-    """Return row r of a matrix times z = [x; g], over the columns that the row needs."""
-    total = 0.0
-    if r < n:
-        for c in range(stop[r]):
-            total += matrix[r, c] * z[c]
-    for c in range(n, len(z)):
-        total += matrix[r, c] * z[c]
-    return total
-
-
-@compiled()
-def advance(
-    z: Any, work: Any, n: int, dt: float, unit: float, system: Any, table: Any, stop: Any
-) -> None:
-    """Advance z = [x; g] by dt: the digits of dt/unit through the table, the rest by Taylor.
-
-    table[level, digit] = exp(system · digit · BASE^level · unit) - I; unit is a power of two, so
-    digits and rest are exact. The order of the Taylor polynomial is two, enough for a rest below
-    2^-17 over the norm of the system. stop (n,) are the columns of x that each row needs.
-    """
-    size = len(z)
-    count = np.int64(dt / unit)
-    rest = dt - count * unit
-    level = 0
-    while count > 0:
-        digit = count & (BASE - 1)
-        if digit:
-            e = table[level, digit]
-            for r in range(size):
-                work[r] = row_times(e, z, r, n, stop)
-            for r in range(size):
-                z[r] += work[r]
-        count >>= BITS
-        level += 1
-    if rest > 0.0:
-        for r in range(size):
-            work[r] = row_times(system, z, r, n, stop)
-        for r in range(size):
-            z[r] += rest * (work[r] + 0.5 * rest * row_times(system, work, r, n, stop))
-
-
 @compiled()
 def readout(states: Any, u: Any, c: Any, d: Any, outputs: Any) -> None:
     """outputs[i, k] = c[i] · states[k] + d[i] u[k]."""
@@ -79,27 +33,6 @@ def readout(states: Any, u: Any, c: Any, d: Any, outputs: Any) -> None:
             for s in range(states.shape[1]):
                 total += c[i, s] * states[k, s]
             outputs[i, k] = total
-
-
-@compiled()
-def since_point(
-    states: Any, value: Any, rise: Any, since: Any, unit: float, system: Any, table: Any, stop: Any
-) -> None:
-    """Advance states[k] in place by since[k] from a point of a uniform drive.
-
-    value[k] and rise[k] are the generator's states; without a second one the value is held.
-    """
-    n = states.shape[1]
-    size = len(system)
-    z, work = np.empty(size), np.empty(size)
-    for k in range(len(since)):
-        if since[k] > 0.0:
-            z[:n] = states[k]
-            z[n] = value[k]
-            if size > n + 1:
-                z[n + 1] = rise[k]
-            advance(z, work, n, since[k], unit, system, table, stop)
-            states[k] = z[:n]
 
 
 @compiled(fastmath={"reassoc", "contract", "nsz"})

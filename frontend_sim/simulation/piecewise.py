@@ -48,7 +48,7 @@ class PiecewisePath:
         """Prepare the path; ``longest`` is the longest interval between instants [s]."""
         system = augmented(chain.a, chain.b, drive.generator, drive.readout)
         x = chain.settled(drive.initial) if initial == "settled" else np.zeros(chain.order)
-        return cls(drive, outputs, IntervalTable.of(system, chain.order, longest), x)
+        return cls(drive, outputs, IntervalTable.of(system, longest), x)
 
     def start(self) -> State:
         """Return the state at t = 0."""

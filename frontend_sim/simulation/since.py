@@ -12,7 +12,7 @@ from frontend_sim.analog.block import Real
 from frontend_sim.analog.chain import Chain
 from frontend_sim.analog.discretize import half_step
 from frontend_sim.analog.exponential import augmented, expm1
-from frontend_sim.simulation import kernels, since_kernels
+from frontend_sim.simulation import interval_kernels, since_kernels
 from frontend_sim.simulation.intervals import IntervalTable
 from frontend_sim.stimulus.drive import Between
 
@@ -47,24 +47,22 @@ class Exponential:
             generator = np.array([[0.0, 1.0 / self.step], [0.0, 0.0]])
             readout = np.array([1.0, 0.0])
         system = augmented(self.chain.a, self.chain.b, generator, readout)
-        return IntervalTable.of(system, self.chain.order, self.step)
+        return IntervalTable.of(system, self.step)
 
     @cached_property
     def _usual_step(self) -> Real:
-        return expm1(self._table.system * self.usual)
+        return np.ascontiguousarray(expm1(self._table.system * self.usual).T)
 
     def advance(self, states: Real, value: Real, rise: Real, since: Real) -> None:
         """Advance by the tabulated exponential, see ``SincePoint``."""
         if states.shape[1] and np.any(since):
             table = self._table
+            steps = table.unit, table.columns, table.table
             if self.usual > 0.0:
-                steps = (table.unit, table.system, table.table, table.stop)
                 usual, step = self.usual, self._usual_step
                 since_kernels.since_usual(states, value, rise, since, usual, step, *steps)
                 return
-            kernels.since_point(
-                states, value, rise, since, table.unit, table.system, table.table, table.stop
-            )
+            interval_kernels.since_point(states, value, rise, since, *steps)
 
 
 @dataclass(frozen=True, eq=False)

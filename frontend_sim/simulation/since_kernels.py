@@ -7,7 +7,7 @@ from typing import Any
 import numpy as np
 
 from frontend_sim.compiled import compiled
-from frontend_sim.simulation.kernels import advance, row_times
+from frontend_sim.simulation.interval_kernels import advance, product
 
 NEAR = 64.0
 """Units around a known interval that a Taylor polynomial bridges: 2^-11 over the system's norm."""
@@ -26,12 +26,11 @@ def since_usual(
     unit: float,
     system: Any,
     table: Any,
-    stop: Any,
 ) -> None:
-    """Do what ``kernels.since_point`` does, where most instants lie ``usual`` behind a point.
+    """Do what ``since_point`` does, where most instants lie ``usual`` behind a point.
 
-    step is that interval's exponential less the identity. What an instant differs from it, at most
-    NEAR units to either side, goes by a Taylor polynomial.
+    step is that interval's exponential less the identity, by columns. What an instant differs from
+    it, at most NEAR units to either side, goes by a Taylor polynomial.
     """
     n = states.shape[1]
     size = len(system)
@@ -44,18 +43,16 @@ def since_usual(
                 z[n + 1] = rise[k]
             rest = since[k] - usual
             if abs(rest) > NEAR * unit:
-                advance(z, work, n, since[k], unit, system, table, stop)
+                advance(z, work, more, n, since[k], unit, system, table)
             else:
-                for r in range(size):
-                    work[r] = row_times(step, z, r, n, stop)
+                product(step, z, n, work)
                 for r in range(size):
                     z[r] += work[r]
                 if rest != 0.0:
                     work[:] = z
                     for term in range(1, 3 if abs(rest) <= unit else TERMS + 1):
+                        product(system, work, n, more)
                         for r in range(size):
-                            more[r] = rest / term * row_times(system, work, r, n, stop)
-                        for r in range(size):
-                            work[r] = more[r]
-                            z[r] += more[r]
+                            work[r] = rest / term * more[r]
+                            z[r] += work[r]
             states[k] = z[:n]

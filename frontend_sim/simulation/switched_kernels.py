@@ -5,7 +5,7 @@ from __future__ import annotations
 from typing import Any
 
 from frontend_sim.compiled import compiled
-from frontend_sim.simulation.kernels import advance
+from frontend_sim.simulation.interval_kernels import add_columns, advance
 from frontend_sim.simulation.since_kernels import NEAR, TERMS
 
 
@@ -19,29 +19,22 @@ def nearby(
     unit: float,
     step: Any,
     system: Any,
-    stop: Any,
 ) -> None:
     """Advance x by a known step, less the identity, and by a short rest, which may be negative.
 
+    Step and system stand by columns.
     The rest is at most NEAR units of time, see ``since_kernels``.
     """
-    for r in range(n):
-        total = x[r]
-        for c in range(stop[r]):
-            total += step[r, c] * x[c]
-        work[r] = total
-    for r in range(n):
-        x[r] = work[r]
+    work[:n] = x[:n]
+    add_columns(step, x, 0, n, n, work)
+    x[:n] = work[:n]
     if rest != 0.0:
         for term in range(1, 3 if abs(rest) <= unit else TERMS + 1):
+            more[:n] = 0.0
+            add_columns(system, work, 0, n, n, more)
             for r in range(n):
-                total = 0.0
-                for c in range(stop[r]):
-                    total += system[r, c] * work[c]
-                more[r] = rest / term * total
-            for r in range(n):
-                work[r] = more[r]
-                x[r] += more[r]
+                work[r] = rest / term * more[r]
+                x[r] += work[r]
 
 
 @compiled()
@@ -62,7 +55,6 @@ def acquire(
     system: Any,
     unit: Any,
     table: Any,
-    stop: Any,
     usual: Any,
     steps: Any,
     starts: Any,
@@ -75,8 +67,8 @@ def acquire(
     q (N, n) and last (N,), when each channel was left, are advanced in place. order (N,) are the
     states of each port, c and b (N, n) its output and share, closed (N, n + 1, n + 1) the step of
     a closed switch less the identity, of which psi takes the first entries and s the last one;
-    system, unit, table and stop step the open ports, see ``kernels.advance``; usual (N, G) are
-    intervals whose steps (N, G, n, n), less the identity, are known. ended and begun
+    system, unit and table step the open ports, see ``interval_kernels.advance``; usual (N, G) are
+    intervals whose steps (N, G, n, n), less the identity and by columns, are known. ended and begun
     (K, n + 1) and pin (K,) are z and p0 of the signal. held[k] becomes s at the instant, moved[k]
     the volts that s went since the closing. starts = (memory, constant, share).
     """
@@ -102,18 +94,17 @@ def acquire(
                     unit[channel],
                     steps[channel, near],
                     system[channel],
-                    stop[channel],
                 )
             else:
-                advance(  # takes every entry of its scratch beyond n for one more state
+                advance(  # takes every entry beyond n for one more state
                     q[channel, :n],
                     after[:n],
+                    z[:n],
                     n,
                     gap,
                     unit[channel],
                     system[channel, :n, :n],
                     table[channel, :, :, :n, :n],
-                    stop[channel],
                 )
         voltage = pin[k]
         for i in range(n):

@@ -15,10 +15,10 @@ import numpy as np
 from frontend_sim.analog.exponential import expm1
 from frontend_sim.simulation import switched_kernels
 from frontend_sim.simulation.intervals import IntervalTable
-from frontend_sim.simulation.kernels import Index, Real, reach
+from frontend_sim.simulation.kernels import Index, Real
 from frontend_sim.simulation.switched_network import SwitchedNetwork
 
-_Tables = tuple[Index, Real, Real, Real, Real, Real, Real, Index, Real, Real]
+_Tables = tuple[Index, Real, Real, Real, Real, Real, Real, Real, Real]
 
 
 @dataclass(frozen=True, eq=False)
@@ -138,7 +138,7 @@ class SwitchedMemory:
 
     @cached_property
     def _tables(self) -> _Tables:
-        """Return order, c, b, closed, system, unit, table, stop, usual and steps of all channels.
+        """Return order, c, b, closed, system, unit, table, usual and steps of all channels.
 
         They are as the loop has them. Two channels alike share no memory, but a scan has few.
         """
@@ -146,11 +146,8 @@ class SwitchedMemory:
         order = np.array([network.port.order for network in self.networks], np.int64)
         c, b = np.zeros((count, n)), np.zeros((count, n))
         closed, system = np.zeros((count, n + 1, n + 1)), np.zeros((count, n, n))
-        unit, stop = np.ones(count), np.zeros((count, n), np.int64)
-        tables = [
-            IntervalTable.of(network.port.a, network.port.order, self.longest)
-            for network in self.networks
-        ]
+        unit = np.ones(count)
+        tables = [IntervalTable.of(network.port.a, self.longest) for network in self.networks]
         gaps = [interval - self.acquisition for interval in self.usual]
         usual = np.tile(np.array(gaps, np.float64), (count, 1))
         steps = np.zeros((count, len(gaps), n, n))
@@ -161,9 +158,8 @@ class SwitchedMemory:
             c[i, :m], b[i, :m] = network.port.c, network.share
             place = [*range(m), n]
             closed[np.ix_([i], place, place)] = expm1(network.closed * self.acquisition)
-            system[i, :m, :m], unit[i] = own.system, own.unit
+            system[i, :m, :m], unit[i] = own.columns, own.unit
             table[i, : len(own.table), :, :m, :m] = own.table
-            stop[i, :m] = reach(own.table)
             for g, gap in enumerate(usual[i]):
-                steps[i, g, :m, :m] = expm1(network.port.a * gap)
-        return order, c, b, closed, system, unit, table, stop, usual, steps
+                steps[i, g, :m, :m] = expm1(network.port.a * gap).T
+        return order, c, b, closed, system, unit, table, usual, steps
