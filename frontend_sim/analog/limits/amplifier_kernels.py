@@ -183,11 +183,16 @@ def glide(
     now, then, here, after, rest = plain, np.empty(n), x, np.empty(n), np.zeros(n)
     speed = up if mode == UP else -down if mode == DOWN else 0.0
     least, most, lowest, highest, narrowest, widest = window(mode, static, up, down, low, high)
-    slope = asked[n] * last
+    share, free, taken = 1.0 / usual, mode == FREE, 0
+    slope, gap = asked[n] * last, 0.0
     for k in range(n):
         slope += asked[k] * x[k]
-    share, free, taken = 1.0 / usual, mode == FREE, 0
-    for s in range(len(length)):
+    if static and not free:
+        gap = target[n] * last - x[n - 1]
+        for k in range(n):
+            gap += target[k] * x[k]
+    begins = lowest < x[n - 1] < highest and narrowest < gap < widest
+    for s in range(len(length) if begins else 0):
         if length[s] != usual:
             break
         ahead = end[s]
@@ -270,7 +275,7 @@ def loop(
     up: float, down: float, low: float, high: float,
     deviation: Any, begun: Any, time: Any, piece: Any, since: Any,
 ) -> None:  # fmt: skip
-    """Advance state = [d, mode, u, x_lin, x - x_lin, age]; deviation[s] = y - linear[s].
+    """Advance state = [d, mode, u, x_lin, x - x_lin, x, age]; deviation[s] = y - linear[s].
 
     ``age`` is the time since the last jump or event. Pieces go by ``glide`` where they can. Any
     other is one step if its mode still holds at the end, and if nothing that the step would not
@@ -283,8 +288,8 @@ def loop(
     n = len(dims)
     d, mode, last = state[0], int(state[1]), state[2]
     plain, following = state[3 : 3 + n].copy(), np.empty(n)
-    beyond, moved, age = state[3 + n : -1].copy(), np.zeros(n), state[-1:]
-    x, after = plain + beyond, np.empty(n)
+    beyond, moved = state[3 + n : 3 + 2 * n].copy(), np.zeros(n)
+    x, after, age = state[3 + 2 * n : -1].copy(), np.empty(n), state[-1:]
     still = not np.any(beyond)
     z, work = np.zeros(n + 3), np.empty(n + 3)
     usual = np.max(length)
@@ -409,7 +414,7 @@ def loop(
         s += 1
     state[0], state[1], state[2] = d, mode, last
     state[3 : 3 + n] = plain
-    state[3 + n : -1] = beyond
+    state[3 + n : 3 + 2 * n], state[3 + 2 * n : -1] = beyond, x
 
 
 @compiled(inline="always")

@@ -92,7 +92,7 @@ class AmplifierLoop(Limiter):
         return tuple(np.abs(poles_of(self.free, self.held)).tolist())
 
     def start(self, u: float, v: float) -> Real:
-        """Return deviation, mode, input, x of the linear model, what x lies beyond it, and age."""
+        """Return deviation, mode, input, x of the linear model, what lies beyond it, x, and age."""
         n = len(self.held)
         plain, beyond = np.zeros(n), np.zeros(n)
         states = slice(0, n) if self.target is None else slice(0, n - 1)
@@ -104,7 +104,7 @@ class AmplifierLoop(Limiter):
             a, b = self.held[:-1, : n - 1], self.held[:-1, n - 1]
             beyond[:-1] = -np.linalg.solve(a, b * beyond[-1])
         d = float(self.output[:n] @ beyond)
-        return np.concatenate([[d, -1.0, u], plain, beyond, [math.inf]])
+        return np.concatenate([[d, -1.0, u], plain, beyond, plain + beyond, [math.inf]])
 
     def advance(self, state: Real, span: Segments) -> tuple[Real, Real, Real, Touched]:
         """Advance event by event; without a pole in the amplifier the deviation jumps as u does."""
