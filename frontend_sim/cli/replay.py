@@ -172,6 +172,7 @@ def _tell_preview(found: Preview, as_json: bool) -> None:
             "runs": list(found.names),
             "seconds": found.seconds,
             "bytes": found.size,
+            "bytes_free": found.free,
         }
         print_json(told)
         return
@@ -184,5 +185,10 @@ def _tell_preview(found: Preview, as_json: bool) -> None:
         f"{found.kept:,}; about {told_seconds(found.seconds)}, {told_bytes(found.size)} in "
         f"{found.directory}"
     )
+    if found.size > found.free:
+        click.echo(
+            f"the disk has {told_bytes(found.free)} left, which is not enough: free some space, or "
+            'keep less: keep = "around-failures" or "nothing"'
+        )
     if found.at_most:
         click.echo("draws end when they are tight, so that fewer may be enough")

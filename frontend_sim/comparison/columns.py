@@ -60,6 +60,15 @@ class ColumnDifference:
     difference: Real
     of_check: bool = False
 
+    @property
+    def words(self) -> str:
+        """The finding as a reader wants it: what differs, or that the limit moved."""
+        if self.finding == "differs":
+            return self.told
+        # The values are the same, so that only their limits can have moved the margin.
+        moved = self.finding == "same" and bool(self.margin) and math.isfinite(self.margin)
+        return "same, limit moved" if moved else self.finding
+
     @classmethod
     def lost(cls, name: str, unit: str, finding: Finding) -> Self:
         """Return a check that one night has alone."""

@@ -41,6 +41,13 @@ class ResultDifference:
     shift: Shift | None = None
 
     @property
+    def words(self) -> str:
+        """The finding as a reader wants it: of the same value, whether its limit moved."""
+        return (
+            "same, limit moved" if self.finding == "same" and self.margin_change else self.finding
+        )
+
+    @property
     def flip(self) -> str:
         """``"now fails"``, ``"now holds"``, or "" where the verdict is the same."""
         if self.first is None or self.second is None or self.first.verdict == self.second.verdict:

@@ -27,6 +27,9 @@ if TYPE_CHECKING:
 
 Real = NDArray[np.float64]
 
+CONSTANT = 1e-6
+"""Share of a difference by which it may move and be drawn against zero, not against rounding."""
+
 
 def comparison_figure(
     comparison: RecordComparison, first: Record | ScanRecord, second: Record | ScanRecord
@@ -164,6 +167,8 @@ def _draw_difference(
     panel.plot(time[kept], difference[kept], color=MARK, linewidth=0.8)
     mean = float(np.nanmean(difference))
     panel.axhline(mean, color=ORANGE, linewidth=1.0, label=f"mean {plain(mean, 3)} LSB")
+    if float(np.nanmax(difference) - np.nanmin(difference)) <= CONSTANT * abs(mean):
+        panel.axhline(0.0, color="black", linewidth=0.6)
     panel.set_ylabel(f"{noun}, second −\nfirst [LSB]")
     panel.legend(
         loc="lower right", bbox_to_anchor=(1.0, 1.0), fontsize="small", frameon=False,

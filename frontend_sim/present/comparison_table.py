@@ -139,7 +139,7 @@ def _result_cells(row: ResultDifference) -> list[str]:
     change = "" if math.isnan(row.change) else result_text(row, row.change)
     if row.shift is not None and math.isfinite(row.shift.error):
         change = f"{told(row.shift.mean)} ± {told(row.shift.error)}"
-    return [first, second, change, margin, verdict, row.finding]
+    return [first, second, change, margin, verdict, row.words]
 
 
 def attribution_table(attribution: Attribution) -> Table:

@@ -25,6 +25,12 @@ Real = NDArray[np.float64]
 ALIKE = 1e-9
 """Relative difference of values that are drawn as one."""
 
+THINNEST = 0.005
+"""Share of the width of a panel below which a bar is not seen."""
+
+ALONE = 0.5
+"""Room to either side of a bar that stands alone, in its width."""
+
 MOST_DOTS = 4000
 """So many runs are drawn as dots, evenly picked, the worst among them."""
 
@@ -96,25 +102,32 @@ def draw_bars(
         shown, names, colours = zip(*rows, strict=True)
         edges = bin_edges(np.concatenate(shown), limits)
         axes.hist(shown, bins=edges, stacked=True, color=colours, label=names)
+        low, high = edges[0], edges[-1]
+        if len(edges) == 2 and (limits is None or not np.any((limits < low) | (limits > high))):
+            axes.margins(x=ALONE)
 
 
 def bin_edges(values: Real, limits: Real | None = None) -> list[float]:
-    """Return the edges of the bars of a histogram; values that are all alike are one bar.
+    """Return the edges of the bars of a histogram; values too near to be told apart are one bar.
 
     Parameters
     ----------
     values : finite, at least one
-    limits : that the one bar keeps well away from, shape (L,)
+    limits : that are drawn beside it, which bars must be seen next to, and the one bar keeps well
+        away from, shape (L,)
     """
     low, high = float(np.min(values)), float(np.max(values))
+    beside = np.empty(0) if limits is None else limits[np.isfinite(limits)]
     size = max(abs(low), abs(high))
-    if high - low <= ALIKE * size or size == 0.0:
-        far = np.abs(np.empty(0) if limits is None else limits - low)
-        near = far[np.isfinite(far) & (far > ALIKE * size)]
+    thinnest = max(ALIKE * size, THINNEST * float(np.ptp(np.concatenate([beside, [low, high]]))))
+    if high - low <= thinnest or thinnest == 0.0:
+        far = np.maximum(low - beside, beside - high)
+        near = far[far > ALIKE * size]
         half = 0.02 * float(np.min(near)) if len(near) else 0.05 * size or 1.0
         return [low - half, high + half]
     count = max(8, min(60, round(2.0 * math.sqrt(len(values)))))
-    return [float(edge) for edge in np.linspace(low, high, count + 1)]
+    edges = np.linspace(low, high, min(count, int((high - low) / thinnest)) + 1)
+    return [float(edge) for edge in edges]
 
 
 def _draw_cause(
@@ -131,6 +144,8 @@ def _draw_cause(
     step = max(1, math.ceil(len(known) / MOST_DOTS))
     picked = known[::step]
     unit = summary.unit_of(key)
+    if unit == "K":
+        parameter, unit = parameter - 273.15, "degC"
     far = float(np.max(np.abs(parameter[known]), initial=0.0))
     scale, letter = prefix_of(far) if unit in PREFIXED else (1.0, "")
     holds = check.column.verdict[picked] != "fails"

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, Literal
 
 import numpy as np
 
@@ -32,6 +32,7 @@ def replay_tables(table: SetTable) -> tuple[RenderableType, ...]:
     if table.checks:
         shown.append(_worst(table))
     verdicts = table.verdicts
+    runs = len(verdicts) if table.complete else max(table.planned, len(verdicts))
     counts = {name: int(np.sum(verdicts == name)) for name in ("fails", "error", "holds", "none")}
     told = {
         "fails": "a check fails in",
@@ -42,7 +43,7 @@ def replay_tables(table: SetTable) -> tuple[RenderableType, ...]:
     for name, text in told.items():
         if counts[name]:
             style = STYLES.get("fails" if name == "error" else name, "")
-            share = share_of(counts[name], len(verdicts), "run")
+            share = share_of(counts[name], runs, "run")
             shown.append(Text(f"{text} {share}", style=style))
     wrong = np.flatnonzero(verdicts == "error")
     errors = table.texts("error")
@@ -57,7 +58,8 @@ def _worst(table: SetTable) -> Table:
 
     rows = Table(title="Worst run of each check", title_justify="left")
     for name in ("check", "fails in", "value", "limit", "margin", "run"):
-        rows.add_column(name, justify="left" if name in ("check", "run") else "right")
+        side: Literal["left", "right"] = "left" if name in ("check", "run") else "right"
+        rows.add_column(name, justify=side, overflow="fold")
     for check in table.checks:
         _add(rows, check, table)
     return rows

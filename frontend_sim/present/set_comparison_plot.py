@@ -49,7 +49,7 @@ def set_comparison_figure(comparison: SetComparison, first: SetTable, second: Se
         left.set_xlabel(f"{name} [{unit}]")
         left.set_ylabel("share of runs below")
         left.legend(fontsize="small", framealpha=0.9)
-        _draw_differences(right, row)
+        _draw_differences(right, row, scale, unit)
     if not rows:
         panels[0][0].set_axis_off()
         panels[0][1].set_axis_off()
@@ -71,8 +71,10 @@ def draw_shares(axes: Axes, values: Real, **style: Any) -> None:
     draw_grid(axes)
 
 
-def _draw_differences(axes: Axes, row: ColumnDifference) -> None:
-    scale, unit = axis_scale(row.unit, row.difference)
+def _draw_differences(axes: Axes, row: ColumnDifference, scale: float, unit: str) -> None:
+    """Draw the difference of each run, in the unit of the values where all of them are zero."""
+    if np.any(row.difference):
+        scale, unit = axis_scale(row.unit, row.difference)
     difference = scale * row.difference
     axes.plot(difference, color=MARK, marker=".", markersize=3.0, linestyle="none")
     axes.axhline(0.0, color="black", linewidth=0.6)
@@ -80,5 +82,5 @@ def _draw_differences(axes: Axes, row: ColumnDifference) -> None:
         axes.axhline(scale * limit, color=LIMIT, linestyle="--", linewidth=1.0)
     axes.set_xlabel("run, in the order of the first night")
     axes.set_ylabel(f"second − first [{unit}]")
-    axes.set_title(row.finding if row.finding != "differs" else row.told, fontsize="medium")
+    axes.set_title(row.words, fontsize="medium")
     draw_grid(axes)

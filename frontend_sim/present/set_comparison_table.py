@@ -60,9 +60,8 @@ def _column_table(comparison: SetComparison) -> Table:
         table.add_column(name, justify="left" if name in ("name", "finding") else "right")
     for row in comparison.columns:
         cells = (mean_text(row), column_text(row, row.peak), column_text(row, row.margin))
-        finding = row.told if row.finding == "differs" else row.finding
         table.add_row(
-            Text(row.name), *cells, str(row.worse), str(row.better), finding,
+            Text(row.name), *cells, str(row.worse), str(row.better), row.words,
             style=STYLES.get(row.finding, ""),
         )  # fmt: skip
     return table

@@ -8,6 +8,7 @@ from collections.abc import Sequence
 from dataclasses import dataclass
 from pathlib import Path
 
+from frontend_sim.archive.room import free_bytes
 from frontend_sim.replay.adaptive import until_of
 from frontend_sim.replay.call import default_directory
 from frontend_sim.replay.estimate import Need
@@ -48,6 +49,11 @@ class Preview:
     seconds: float
     size: int
     at_most: bool = False
+
+    @property
+    def free(self) -> int:
+        """Bytes that the disk has left there."""
+        return free_bytes(self.directory)
 
 
 def preview_set(

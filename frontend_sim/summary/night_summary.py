@@ -83,10 +83,6 @@ def summarize(table: SetTable) -> NightSummary:
     verdicts = table.verdicts
     counts = Counter(verdicts.tolist())
     held = verdicts == "holds"
-    group, drawn = population.sample(verdicts != "none", held, np.zeros(len(verdicts)))
-    rate = None
-    if np.any(drawn):
-        rate = pass_rate(int(np.count_nonzero(held[drawn])), int(np.count_nonzero(drawn)))
     numbers = numeric_parameters(table)
     quiet = quiet_checks(table.base_values)
     found = (
@@ -94,6 +90,12 @@ def summarize(table: SetTable) -> NightSummary:
         for column in table.checks
     )
     checks = sorted((each for each in found if each is not None), key=lambda each: -each.fails)
+    # Between groups that hold as often decides the check that fails the most.
+    margin = checks[0].column.margin if checks else np.zeros(len(verdicts))
+    group, drawn = population.sample(verdicts != "none", held, margin)
+    rate = None
+    if np.any(drawn):
+        rate = pass_rate(int(np.count_nonzero(held[drawn])), int(np.count_nonzero(drawn)))
     failed = np.flatnonzero(verdicts == "error")
     told = table.texts("error")
     errors = tuple((table.names[run], str(told[run])) for run in failed.tolist())

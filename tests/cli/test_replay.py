@@ -21,7 +21,7 @@ from frontend_sim.archive import Record, open_record
 from frontend_sim.archive.set_table import open_set
 from frontend_sim.cli import main
 from frontend_sim.cli import night_bar as bar
-from frontend_sim.replay import Progress
+from frontend_sim.replay import Progress, preview
 
 HERE = ["--on", "in-process"]
 
@@ -118,6 +118,22 @@ def test_a_dry_run_lists_what_would_be_done(
     made_set(tmp_path, DRAWS.format(400) + '[draws.until]\nyield = "5 %"\n')
     assert main([*arguments, "--dry-run"]) == 0
     assert "fewer may be enough" in capsys.readouterr().out
+
+
+def test_a_dry_run_tells_of_a_disk_that_is_too_small(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str]
+) -> None:
+    """Before the night, not after its first run."""
+    file = made_set(tmp_path, DRAWS.format(30))
+    arguments = ["replay", str(file), "-o", str(tmp_path / "night"), "--dry-run"]
+    monkeypatch.setattr(preview, "free_bytes", lambda directory: 1_000)
+    assert main(arguments) == 0
+    assert "the disk has 1 kB left, which is not enough" in capsys.readouterr().out
+    assert main([*arguments, "--json"]) == 0
+    assert json.loads(capsys.readouterr().out)["bytes_free"] == 1_000
+    monkeypatch.undo()
+    assert main(arguments) == 0
+    assert "not enough" not in capsys.readouterr().out
 
 
 def test_several_scenarios_are_a_set(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:

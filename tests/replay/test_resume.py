@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import io
 import os
 import subprocess
 import sys
@@ -10,10 +11,12 @@ from pathlib import Path
 import h5py
 import pytest
 from nights import BASE, DRAWS, base, made_set
+from rich.console import Console
 
 from frontend_sim.archive import open_record
 from frontend_sim.archive.set_table import open_set
 from frontend_sim.errors import OutputError
+from frontend_sim.present.replay_table import replay_tables
 from frontend_sim.replay import Replayed, estimate, replay_set, work
 from frontend_sim.replay.estimate import Need, refuse_small_disk
 
@@ -171,6 +174,9 @@ def test_a_disk_that_is_too_small_is_refused_before_the_night(
     done = here(made_set(tmp_path, DRAWS.format(4)), tmp_path / "night")
     assert done.ran == 1
     assert "free some space" in done.stopped
+    stream = io.StringIO()
+    Console(file=stream).print(*replay_tables(done.table()))
+    assert "all checks hold in 1 of 4 runs" in stream.getvalue()
     monkeypatch.undo()
     assert here(tmp_path / "set.toml", tmp_path / "night").complete
 

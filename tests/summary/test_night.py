@@ -129,8 +129,21 @@ def test_the_yield_of_several_groups_is_that_of_the_worst(tmp_path: Path) -> Non
         "corner, noise: 20 draws are too few for a limit that holds 95 % with 95 % confidence; "
         "59 do",
     )
+    assert "may lie too low" in render(night_page(found))
     told = night_data(found)
     assert (told["yield_group"], told["checks"][0]["group"]) == (worst, worst)
+
+
+def test_groups_that_hold_as_often_are_told_by_their_margins(tmp_path: Path) -> None:
+    """Where every draw of two resistors holds, the yield is told of the group of least margin."""
+    scenario = BASE.replace("1.76 V", "1.5 V")
+    vary = '[[vary]]\nkey = "chain[input filter].resistance"\nvalues = ["10 kohm", "9.9 kohm"]\n'
+    for values in (vary, vary.replace('"10 kohm", "9.9 kohm"', '"9.9 kohm", "10 kohm"')):
+        rules = f'keep = "nothing"\n{values}[draws]\ncount = 5\n'
+        replay_set(made_set(tmp_path, rules, scenario=scenario), tmp_path / "n", on="in-process")
+        found = summarize(open_set(tmp_path / "n"))
+        assert found.counts["fails"] == 0
+        assert found.group == found.checks[0].group == "resistance=10kohm"
 
 
 def test_what_was_chosen_has_no_confidence(tmp_path: Path) -> None:

@@ -11,6 +11,8 @@ from frontend_sim.measure.arrays import Real
 from frontend_sim.measure.checks.answer import Answer
 from frontend_sim.measure.checks.subject import Subject
 from frontend_sim.measure.linearity import Linearity, ramp_linearity, sine_linearity
+from frontend_sim.measure.linearity.by_sine import RANDOM
+from frontend_sim.measure.linearity.confidence import deviate
 from frontend_sim.measure.result import Result
 from frontend_sim.scenario.checks.dnl import DnlCheck
 from frontend_sim.scenario.checks.inl import InlCheck, LinearityCheck
@@ -36,14 +38,18 @@ def inl(check: InlCheck, subject: Subject) -> Answer:
     end_point = check.line == "end-point"
     row = found.inl_end_point if end_point else found.inl_best_fit
     by, first = method_of(check, subject), int(found.codes[0]) - 1
-    return _answer(check, by, found, np.abs(row), found.inl_confidence, first)
+    # All levels at once are known to 1.63 / sqrt(N), each to z sqrt(1/4 / N) at the most.
+    together = RANDOM / (0.5 * deviate(found.confidence))
+    return _answer(check, by, found, np.abs(row), found.inl_confidence, first, together)
 
 
 def dnl(check: DnlCheck, subject: Subject) -> Answer:
     """Return the largest distance of a code's width from one LSB. Raises as ``inl``."""
     found = linearity_in(check, subject)
     by, first = method_of(check, subject), int(found.codes[0])
-    return _answer(check, by, found, np.abs(found.dnl), found.dnl_confidence, first)
+    alone = 1.0 - (1.0 - found.confidence) / len(found.dnl)
+    together = deviate(alone) / deviate(found.confidence)
+    return _answer(check, by, found, np.abs(found.dnl), found.dnl_confidence, first, together)
 
 
 def linearity_possible(check: LinearityCheck, subject: Subject) -> None:
@@ -81,20 +87,30 @@ def linearity_in(check: LinearityCheck, subject: Subject) -> Linearity:
 
 
 def _answer(
-    check: InlCheck | DnlCheck, by: str, found: Linearity, sizes: Real, halves: Real, first: int
+    check: InlCheck | DnlCheck,
+    by: str,
+    found: Linearity,
+    sizes: Real,
+    halves: Real,
+    first: int,
+    together: float,
 ) -> Answer:
     """Return the largest size against its limit.
 
     What the samples leave open counts against the check, of every code: one that is not the
-    furthest off may be the one that is known the least.
+    furthest off may be the one that is known the least. The converter is blamed only where a code
+    lies beyond the limit by half an interval that holds all codes at once: of 256 the furthest is
+    beyond its own of 99 % by chance more often than not.
 
     Parameters
     ----------
     sizes, halves : of each code, and half of its interval, shape (K,) [LSB];  first : its number
+    together : how many times as wide the intervals are that hold all codes at once
     """
     worst = int(np.argmax(sizes))
     value, half, where = float(sizes[worst]), float(halves[worst]), first + worst
     unsure = float(np.max(sizes + halves)) - value
+    surely = float(np.max(sizes - together * halves))
     interval = f"half the {100 * found.confidence:g} % interval"
     beside = (
         Result("confidence", half, "LSB", method=interval),
@@ -104,11 +120,12 @@ def _answer(
     )  # fmt: skip
 
     def advice() -> str:
-        if value <= check.at_most:
+        if surely <= check.at_most:
             apart = ", of a frequency that no small ratio ties to it" if by == "sine" else ""
+            known = unsure if value <= check.at_most else value - surely
             return (
                 f"whether it holds cannot be told: {found.count} samples let it be known to "
-                f"{unsure:.2g} LSB, and it lies nearer to its limit; take more samples: a longer "
+                f"{known:.2g} LSB, and it lies nearer to its limit; take more samples: a longer "
                 f"run, or a higher adc.rate{apart}"
             )
         return (

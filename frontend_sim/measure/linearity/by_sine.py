@@ -60,24 +60,27 @@ def sine_linearity(
     # d level = scale pi sin(pi share) d share, and the share is binomial.
     slope = scale * np.pi * np.sin(np.pi * share)
     unsure = deviate(confidence) * np.sqrt(share * (1.0 - share) / density.total)
-    phases = None
-    if values is not None:
-        phases = _phases_of(codes_of(codes), samples(values), density, deviate(confidence))
-        unsure = phases.best(unsure, phases.unsure)
-    levels = Levels(level, slope * unsure, amplitude is not None)
     # A code of one LSB gets the share of the time that the sine spends in it.
     edges = level[0] + np.linspace(0.0, 1.0, len(level)) * (level[-1] - level[0])
-    turn = np.arccos(np.clip((centre - edges) / scale, -1.0, 1.0))
-    expected = np.diff(turn) / np.pi
+    turn = np.arccos(np.clip((centre - edges) / scale, -1.0, 1.0)) / np.pi
+    expected = np.diff(turn)
     widths = width_confidence(density.counts[1:-1], expected, density.total, confidence)
-    if phases is not None:
-        widths = phases.best(widths, (phases.unsure[:-1] + phases.unsure[1:]) / expected)
+    if values is not None:
+        of = codes_of(codes), samples(values)
+        phases = _phases_of(*of, density, turn, deviate(confidence))
+        unsure = _narrower(unsure, phases.unsure, phases.uneven)
+        either = (phases.unsure[:-1] + phases.unsure[1:]) / expected
+        widths = _narrower(widths, either, phases.bunched)
+    levels = Levels(level, slope * unsure, amplitude is not None)
     return linearity_of(density, levels, widths, ideal_levels(adc, density), confidence)
 
 
 RANDOM = 1.63
 """D sqrt(N) that random phases exceed in one record of a hundred. Source: Smirnov 1948, "Table for
 estimating the goodness of fit of empirical distributions" (from memory)."""
+
+RARE = 0.01
+"""Share of records of random phases that are taken for bunched."""
 
 
 @dataclass(frozen=True, eq=False)
@@ -87,34 +90,49 @@ class _Phases:
     Parameters
     ----------
     unsure : how far the share of samples below each level may be off, shape (K - 1,) [1]
-    uneven : whether they are less even than random ones, as those of a frequency that a small
-        ratio ties to the rate, or of a few cycles
+    uneven : whether they are less even than random ones, as those of a few cycles
+    bunched : whether they are so within the widths of codes, as those of a frequency that a small
+        ratio ties to the rate, which come back before they have been everywhere
     """
 
     unsure: Real
     uneven: bool
-
-    def best(self, by_chance: Real, known: Real) -> Real:
-        """Return half an interval: the one of random phases holds if these are no less even."""
-        return known if self.uneven else np.minimum(by_chance, known)
+    bunched: bool
 
 
-def _phases_of(codes: Counts, values: Real, density: CodeDensity, deviations: float) -> _Phases:
+def _narrower(by_chance: Real, known: Real, worse: bool) -> Real:
+    """Return half an interval: the one of random phases holds if these are no worse."""
+    return known if worse else np.minimum(by_chance, known)
+
+
+def _phases_of(
+    codes: Counts, values: Real, density: CodeDensity, turn: Real, deviations: float
+) -> _Phases:
     """Return what the values that were converted tell of the phases.
 
     The phase of a sample, folded into half a cycle, is arccos((centre - value) / amplitude) / pi.
     Below a level lie all samples whose phase is below its own, so that the share is off by no more
     than the largest distance of the phases' distribution from an even one, D of Kolmogorov (1933).
-    Noise puts some on the wrong side of a level: m of them, in the order of what was converted, as
-    of a ramp; see ``in_order``.
+    That sees what adds up over many codes; what each code gets is seen by the chi-square of the
+    samples in codes of one LSB. Noise puts some on the wrong side of a level: m of them, in the
+    order of what was converted, as of a ramp; see ``in_order``.
+
+    Parameters
+    ----------
+    turn : phases at which codes of one LSB would change, shape (K - 1,) [half cycles]
     """
+    from scipy.special import chdtri
+
     low, high = float(np.min(values)), float(np.max(values))
     cosine = (low + high - 2.0 * values) / (high - low) if high > low else np.zeros(len(values))
     phase = np.sort(np.arccos(np.clip(cosine, -1.0, 1.0)) / np.pi)
     even = np.arange(len(phase) + 1) / len(phase)
     far = max(float(np.max(even[1:] - phase)), float(np.max(phase - even[:-1])))
+    expected = len(phase) * np.diff(turn)
+    apart = np.diff(np.searchsorted(phase, turn)) - expected
+    bunched = float(np.sum(apart**2 / expected)) > chdtri(len(expected), RARE)
     order = np.argsort(values, kind="stable")
     wrong = misplaced(codes[order] - density.lowest, density.counts)
     noisy = np.maximum(wrong, np.mean(wrong))
     unsure = np.asarray(far + deviations * np.sqrt(2.0 * noisy) / len(values))
-    return _Phases(unsure, far * math.sqrt(len(values)) > RANDOM)
+    return _Phases(unsure, far * math.sqrt(len(values)) > RANDOM, bool(bunched))

@@ -90,5 +90,5 @@ def _result_row(row: ResultDifference) -> tuple[Cell, ...]:
         number(told(row.second)),
         number(change),
         Cell(verdict if verdict != "none" else ""),
-        Cell(row.finding, tone_of(row.finding)),
+        Cell(row.words, tone_of(row.finding)),
     )

@@ -225,6 +225,8 @@ def _origin(summary: NightSummary) -> Section:
     ]
     if summary.rate is not None:
         told = "contains the true one in 95 % of nights at least (Blaker 2000)"
+        if summary.group:
+            told += "; that of the worst of several groups, picked by chance too, may lie too low"
         facts.append(("interval of a yield", told))
     bases = zip(table.base_names, table.base_texts, strict=True)
     listings = [("The set", table.text), *((f"Scenario {name}", text) for name, text in bases)]

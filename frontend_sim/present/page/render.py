@@ -5,6 +5,7 @@ from __future__ import annotations
 import base64
 import io
 import os
+import re
 from importlib.resources import files
 from pathlib import Path
 from typing import TYPE_CHECKING
@@ -14,6 +15,7 @@ from frontend_sim.errors import OutputError
 from frontend_sim.present.page.content import Page, PageFigure
 
 if TYPE_CHECKING:
+    from markupsafe import Markup
     from matplotlib.figure import Figure
 
 SUFFIXES = (".html", ".htm")
@@ -25,7 +27,15 @@ def render(page: Page) -> str:
 
     source = files("frontend_sim.present.page").joinpath("page.html").read_text("utf-8")
     environment = Environment(autoescape=True, undefined=StrictUndefined)
+    environment.filters["breaking"] = _breaking
     return environment.from_string(source).render(page=page)
+
+
+def _breaking(text: str) -> Markup:
+    """Return text that may go on in a new line behind the commas of the name of a run."""
+    from markupsafe import Markup, escape
+
+    return Markup("<wbr>").join(escape(part) for part in re.split(r"(?<=,)(?=[^\W\d])", text))
 
 
 def write_page(page: Page, path: str | os.PathLike[str], overwrite: bool = False) -> Path:

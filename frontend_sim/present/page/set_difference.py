@@ -58,5 +58,5 @@ def _row(row: ColumnDifference) -> tuple[Cell, ...]:
         number(column_text(row, row.margin)),
         number(str(row.worse)),
         number(str(row.better)),
-        Cell(row.told if row.finding == "differs" else row.finding, tone_of(row.finding)),
+        Cell(row.words, tone_of(row.finding)),
     )

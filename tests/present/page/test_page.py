@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import base64
+import io
 import re
 import shutil
 from collections.abc import Iterator
@@ -27,7 +28,7 @@ from frontend_sim.replay import replay_set
 from frontend_sim.simulation import Simulation
 from frontend_sim.summary import NightSummary, summarize
 
-VOID = {"meta", "img", "br", "link", "input", "hr"}
+VOID = {"meta", "img", "br", "wbr", "link", "input", "hr"}
 """Elements without an end."""
 
 BROWSERS = ("chromium", "chromium-browser", "google-chrome")
@@ -202,6 +203,30 @@ def test_shares_read_as_percent_at_the_terminal_too(failing: NightSummary) -> No
     assert "≤ 2.000 %" in caught.get()
     assert "0.02" not in caught.get()
     assert "≤ 2.000 %" in render(night_page(failing))
+
+
+def test_the_names_of_groups_are_read_in_full(tmp_path: Path, browser: Any) -> None:
+    """Long names of runs stay within their place on the page, and are whole at the terminal."""
+    vary = (
+        '[[vary]]\nkey = "chain[input filter].resistance"\nvalues = ["10 kohm", "12 kohm"]\n'
+        '[[vary]]\nkey = "environment.temperature"\nvalues = ["-40 degC", "85 degC"]\n'
+    )
+    rules = f'keep = "nothing"\n{vary}[draws]\ncount = 5\n'
+    table = replay_set(made_set(tmp_path, rules), tmp_path / "night", on="in-process").table()
+    stream = io.StringIO()
+    Console(file=stream, width=80).print(*replay_tables(table))
+    assert "…" not in stream.getvalue()
+    page = render(night_page(summarize(table)))
+    assert "resistance=12kohm,<wbr>temperature=85degC,<wbr>draw 000" in page
+    path = tmp_path / "page.html"
+    path.write_text(page, "utf-8")
+    sheet = browser.new_page(viewport={"width": 1000, "height": 800})
+    sheet.goto(path.as_uri())
+    found = sheet.evaluate(
+        "[...document.querySelectorAll('dt')].map(e => e.scrollWidth - e.clientWidth)"
+    )
+    sheet.close()
+    assert max(found) <= 0
 
 
 def test_a_night_without_draws_has_no_yield(tmp_path: Path) -> None:
