@@ -152,9 +152,9 @@ class LimiterGrid:
 def pick_limiter_grid(models: Models, trials: Trials) -> LimiterGrid:
     """Return the coarsest grid for the limiters that is accurate enough.
 
-    Three grids at least are tried. The rate is doubled until the estimate of ``bound`` stays below
-    the accuracy, or until the grids tried have MOST_WORK points together: then the last of them is
-    taken, and a note says so.
+    Three grids are tried, and more until the estimate of ``bound`` is below the accuracy, but no
+    third one and none behind it once the grids have MOST_WORK points together: then the last one
+    that was tried is taken, and a note says so if its estimate is above.
 
     Raises
     ------
@@ -196,15 +196,20 @@ def bound(changes: Sequence[float]) -> float:
 
     Errors fall by half at least with half the step, so that the last change bounds the error of the
     last grid. Where events happen to meet the grid two grids may agree by chance, so a change
-    counts as a quarter of the one before at least. Where the last three changes each fell by about
-    a quarter the order is the second, and the error a third of the last change: SURE of it is
-    taken then.
+    counts as a quarter of the one before at least. Where the last change is more than half of the
+    one before, errors do not fall as fast yet, and it counts that many times more. Where the last
+    three changes each fell to about a quarter the order is the second, and the error a third of the
+    last change: SURE of it is taken then.
 
     Parameters
     ----------
     changes : largest differences from each grid to the next one, of half its step, any unit
     """
-    change = changes[-1] if len(changes) == 1 else max(changes[-1], 0.25 * changes[-2])
+    change = changes[-1]
+    if len(changes) > 1 and change > 0.5 * changes[-2] > 0.0:
+        change *= 2.0 * change / changes[-2]
+    elif len(changes) > 1:
+        change = max(change, 0.25 * changes[-2])
     falls = [after / before if before else 1.0 for before, after in pairwise(changes[-3:])]
     second = len(falls) == 2 and all(0.2 < fall < 0.3 for fall in falls)
     return MARGIN * change * (SURE if second else 1.0)

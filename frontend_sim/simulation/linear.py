@@ -14,7 +14,7 @@ from frontend_sim.analog.discretize import METHODS, Method
 from frontend_sim.simulation.grid import GridDrive
 from frontend_sim.simulation.kernels import Real
 from frontend_sim.simulation.path import Outputs, Path, State
-from frontend_sim.simulation.piecewise import PiecewisePath
+from frontend_sim.simulation.piecewise import ULPS, PiecewisePath
 from frontend_sim.simulation.resampled import Resampled
 from frontend_sim.simulation.rows import RowPath, row_length
 from frontend_sim.simulation.since import Exponential, SincePoint, Trapezoid
@@ -151,6 +151,9 @@ def _advanced(
 ) -> tuple[tuple[State, ...], Real]:
     """Advance the paths of one group, and add their outputs up."""
     earlier = instants - group.delay if group.delay else instants
+    if group.delay:
+        # What begins at t = 0 is there for an instant that is at it but for rounding.
+        earlier[np.abs(earlier) <= ULPS * np.spacing(group.delay)] = 0.0
     begun = int(np.searchsorted(earlier, 0.0))
     before = np.repeat(group.before[:, None], begun, axis=1)
     if begun == len(earlier):

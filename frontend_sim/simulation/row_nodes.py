@@ -54,13 +54,13 @@ class RowNodes:
         Parameters
         ----------
         begins : numbers of the instants at which rows begin, and of the end of the last
-        events : behind the first of them and before the last, sorted [s]
+        events : behind the first of them and not behind the last, but for slack, sorted [s]
         nearest : number of the instant nearest to each event
         times : when instants of some numbers are [s]
         slack : within which an event is at its nearest instant [s]
         """
         near = times(nearest)
-        on = np.abs(events - near) <= slack
+        on = (events >= near - slack) & (events <= near + slack)
         before = (nearest - (near > events))[~on]
         numbers = np.unique(np.concatenate([begins, nearest[on], before, before + 1]))
         at = times(numbers)

@@ -22,9 +22,11 @@ ROW = 32
 MOST_TURNS = 1000.0
 """Most radians that a generator goes without being set anew: its rounding adds up over them."""
 
-
 MOST_ALONE = 6000.0
 """The same over a single interval, where nothing adds up: about ``FRESH`` cycles of a sine."""
+
+ROUNDED = 16.0
+"""An instant so many units in the last place before t = 0 may be one at t = 0."""
 
 
 def row_length(fastest: float, interval: float) -> int:
@@ -83,7 +85,8 @@ class RowPath:
         spread = np.concatenate([now[None], now + now @ steps[:-1]])
         rate, delay = 1.0 / interval, outputs.delay - origin
         lead = max(math.floor(delay * rate) - 1, 0)
-        while lead / rate - delay < 0.0:
+        # What is asked for first was rounded in another way, and must not lie before row 0.
+        while lead / rate - delay < -ROUNDED * np.spacing(outputs.delay):
             lead += 1
         spread = np.ascontiguousarray(spread.transpose(1, 2, 0))
         return cls(
@@ -97,7 +100,7 @@ class RowPath:
 
     def _instants(self, numbers: Index) -> Real:
         """Return when instants of some numbers are, counted from the first one not below 0 [s]."""
-        return np.asarray((self.lead + numbers) / self.rate - self.delay)
+        return np.maximum((self.lead + numbers) / self.rate - self.delay, 0.0)
 
     def advance(
         self, state: State, number: int, instants: Real, drive: PiecewiseDrive | None = None
@@ -114,17 +117,18 @@ class RowPath:
         first, last, kept = number // size, -(-stop // size), stop // size
         begins = np.arange(first, last + 1) * size
         times = self._instants(begins)
-        events = drive.events(float(times[0]), float(times[-1]))
-        events = events[events < times[-1]]
+        # An event that is at an instant but for rounding counts in both rows that meet there.
+        late = times + self.exact.slack(times)
+        events = drive.events(float(times[0]), float(late[-1]))
+        begun, ended = (np.searchsorted(events, t, side="right") for t in (times, late))
         y = np.empty((len(self.spread), (last - first) * size))
-        passed = np.searchsorted(events, times, side="right")
         x, whole, at = state.x, state.x, 0
         while at < last - first:
-            most = int(np.searchsorted(passed, passed[at] + MOST_NODES, side="right")) - 1
+            most = int(np.searchsorted(ended, begun[at] + MOST_NODES, side="right")) - 1
             until = max(most, at + 1)
             inside = slice(at, until + 1)
             part = y[:, at * size : until * size]
-            states = self._rows(x, begins[inside], events[passed[at] : passed[until]], drive, part)
+            states = self._rows(x, begins[inside], events[begun[at] : ended[until]], drive, part)
             if first + at <= kept <= first + until:
                 whole = states[kept - first - at]
             x, at = states[-1], until

@@ -195,6 +195,31 @@ def test_the_bound_of_smooth_convergence(order: float, start: float) -> None:
     assert accuracy.bound([*changes, 0.0]) > 0.3 * changes[-1]
 
 
+def test_grids_that_do_not_come_nearer_yet_are_not_trusted() -> None:
+    """A surge shorter than a step of the first grids: the second change is larger than the first.
+
+    What is picked is as near to a far finer grid as its estimate says.
+    """
+    scenario: dict[str, Any] = {
+        "stimulus": {
+            "kind": "double-exponential", "peak": 1.1, "at": 6.9e-6,
+            "rise_constant": 6.9e-7, "decay_constant": 1.38e-5,
+        },
+        "chain": [
+            {"kind": "rc-lowpass", "resistance": 1e3, "capacitance": 4.84e-9},
+            {"kind": "noninverting-amplifier", "gain": 4.085, "gain_bandwidth": 4.3e6,
+             "second_pole": 3.48e6, "slew_rate": 28982.0, "output_high": 1.0},
+        ],
+        "adc": {"rate": 2.9e5, "bits": 14, "low": -50.0, "high": 50.0},
+        "simulation": {"duration": 20 / 2.9e5},
+    }  # fmt: skip
+    run = simulate(Scenario.model_validate(scenario))
+    assert run.grid is not None
+    assert run.grid.estimate is not None
+    scenario["simulation"]["grid_rate"] = 16.0 * run.grid.grid_rate
+    assert _error(run, simulate(Scenario.model_validate(scenario))) <= run.grid.estimate <= 0.05
+
+
 def test_a_jump_costs_no_accuracy_where_the_closed_form_is_exact() -> None:
     """A step into rails and a high pass is exact on the first grids that are tried."""
     run = simulate(_scenario("step", "rails, twice"))

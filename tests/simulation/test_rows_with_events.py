@@ -8,13 +8,15 @@ import numpy as np
 import pytest
 from hypothesis import example, given, settings
 from hypothesis import strategies as st
+from numpy.typing import NDArray
 
 from frontend_sim.analog.chain import Chain, chain_of
-from frontend_sim.analog.stages import Butterworth, Gain, TransportDelay
+from frontend_sim.analog.stages import Butterworth, Gain, RcLowpass, Stage, TransportDelay
 from frontend_sim.simulation.linear import Axis, Linear
-from frontend_sim.stimulus import Chirp, Pulse
+from frontend_sim.stimulus import Chirp, Pulse, Ramp, Step
 from frontend_sim.stimulus.base import Stimulus
 
+Real = NDArray[np.float64]
 RATE, COUNT, ROW = 20e3, 1000, 32
 BEGIN = 5 * ROW / RATE
 """An instant at which a row begins."""
@@ -59,6 +61,46 @@ def test_an_edge_a_rounding_off_a_row_takes_effect_there(off: int) -> None:
     pulse = {"at": BEGIN + off * np.spacing(BEGIN), "width": 1.1e-3}
     found = parts(model(chain_of([Gain(gain=2.0)]), pulse), [])
     np.testing.assert_array_equal(found[5 * ROW - 1 : 5 * ROW + 1], [0.0, 2.0])
+
+
+@pytest.mark.parametrize("off", [-2, -1, 0, 1, 2])
+def test_no_cut_shows_between_an_edge_and_one_that_is_at_an_instant(off: int) -> None:
+    """The way from the first edge to the row's end is as long, whether the second one is known."""
+    at = BEGIN - 0.3 / RATE
+    pulse = {"at": at, "width": BEGIN + off * np.spacing(BEGIN) - at}
+    made = model(chain_of([Butterworth(order=3, corner=9e3)]), pulse)
+    assert np.array_equal(parts(made, [5 * ROW]), parts(made, []))
+
+
+@pytest.mark.parametrize("uniform", [True, False])
+@pytest.mark.parametrize(
+    ("origin", "delay"), [(2e-4, 5e-4), (3e-4, 5e-4), (1e-4, 4e-3), (1e-4, 4e-4), (2e-4, 8e-4)]
+)
+def test_an_instant_at_zero_but_for_rounding_is_at_zero(
+    origin: float, delay: float, uniform: bool
+) -> None:
+    """Behind a delay the signal begins at the instant that lies there, and goes on from there.
+
+    2e-4 + 3 / 10e3 is less than 5e-4, or more, as it is rounded. The ramp is that of a capacitor,
+    v = t - T (1 - exp(-t / T)) behind a step in its slope.
+    """
+    rate, constant = 1e4, 1.3e-3
+    axis = Axis(1.0 / rate, 2.0 / rate, uniform, origin)
+    instants = origin + np.arange(200) / rate
+    begun = round((delay - origin) * rate)
+    time = np.arange(200 - begun) / rate
+    filtered = time + constant * np.expm1(-time / constant)
+    low_pass = RcLowpass(resistance=1.3e3, capacitance=1e-6)
+    cases: list[tuple[Stimulus, Stage, Real]] = [
+        (Step(after=1.0), Gain(gain=1.0), np.ones(len(time))),
+        (Ramp(slope=1.0), low_pass, filtered),
+    ]
+    for stimulus, stage, expected in cases:
+        chain = chain_of([stage, TransportDelay(delay=delay)])
+        made = Linear.of(chain, stimulus.drives((1,)), [2], "settled", axis)
+        _, (found,) = made.advance(made.start(), 0, instants)
+        np.testing.assert_allclose(found[begun:], expected, rtol=0, atol=1e-12)
+        np.testing.assert_array_equal(found[:begun], 0.0)
 
 
 STIMULI: dict[str, Stimulus] = {
