@@ -214,7 +214,11 @@ NOISE = np.random.default_rng(8).standard_normal(1000)
         (NOISE, {"rate": 1.0}, "no sine stands out"),
         (sine(10, 100), {}, "either the rate of the samples or their instants"),
         (sine(10, 100), {"rate": 1.0, "times": np.arange(100)}, "either the rate"),
-        (sine(10, 100), {"times": np.arange(99)}, "100 samples need as many instants, but 99"),
+        (
+            sine(10, 100),
+            {"times": np.arange(99)},
+            "100 samples need as many instants; given are 99",
+        ),
         (sine(10, 100), {"times": np.arange(100)[::-1]}, "instants must increase"),
         (sine(10, 100), {"times": np.arange(100.0) ** 2}, "lie on no grid"),
         (sine(10, 100), {"rate": 100.0, "frequency": -1.0}, "must be a number above zero"),

@@ -182,7 +182,7 @@ def test_droop_of_a_high_pass():
         (lambda: sampled_settling(TIMES, FIRST_ORDER, 1.0, 0.0), "half the width of the band"),
         (lambda: sampled_settling(TIMES, FIRST_ORDER, math.nan, 1.0), "the final level must be"),
         (lambda: sampled_settling(TIMES, FIRST_ORDER, 1.0, 0.1, start=1.0), "no sample follows"),
-        (lambda: sampled_settling(TIMES[:5], FIRST_ORDER, 1.0, 0.1), "2000 samples need as many"),
+        (lambda: sampled_settling(TIMES[:5], FIRST_ORDER, 1.0, 0.1), "2,000 samples need as many"),
         (lambda: excursions_of([0.0, 1.0], [1.0, 1.0]), "starts and ends at 1; .* give initial"),
         (lambda: rise_time(TIMES, FIRST_ORDER, final=2.0), "never reaches 90%"),
         (lambda: rise_time(TIMES, 0.5 + FIRST_ORDER, initial=0.0), "starts beyond 10%"),
