@@ -61,26 +61,6 @@ def advance(
 
 
 @compiled()
-def since_point(
-    states: Any, value: Any, rise: Any, since: Any, unit: float, system: Any, table: Any
-) -> None:
-    """Advance states[k] in place by since[k] from a point of a uniform drive.
-
-    value[k] and rise[k] are the generator's states; without a second one the value is held.
-    """
-    n, size = states.shape[1], len(system)
-    z, work, more = np.empty(size), np.empty(size), np.empty(size)
-    for k in range(len(since)):
-        if since[k] > 0.0:
-            z[:n] = states[k]
-            z[n] = value[k]
-            if size > n + 1:
-                z[n + 1] = rise[k]
-            advance(z, work, more, n, since[k], unit, system, table)
-            states[k] = z[:n]
-
-
-@compiled()
 def march(
     z: Any, n: int, count: Any, dt: Any, steps: Any, unit: float, system: Any, table: Any
 ) -> None:

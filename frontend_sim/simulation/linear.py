@@ -221,9 +221,12 @@ def _uniform(
 
 
 def _usual(axis: Axis, drive: UniformDrive, delay: float) -> float:
-    """Return how far behind a point of the drive all instants of an axis lie, if they do [s]."""
+    """Return how far behind a point of the drive all instants of an axis lie, if they do [s].
+
+    Infinite where they do not, and where they lie on points.
+    """
     stride = axis.interval * drive.rate
     if not axis.uniform or abs(stride - round(stride)) > 1e-9:
-        return 0.0
+        return math.inf
     position = (axis.origin - delay - drive.origin) * drive.rate
-    return max((position - math.floor(position)) / drive.rate, 0.0)
+    return (position - math.floor(position)) / drive.rate or math.inf

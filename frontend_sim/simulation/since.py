@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass
 from functools import cached_property
 from typing import Protocol
@@ -12,7 +13,7 @@ from frontend_sim.analog.block import Real
 from frontend_sim.analog.chain import Chain
 from frontend_sim.analog.discretize import half_step
 from frontend_sim.analog.exponential import augmented, expm1
-from frontend_sim.simulation import interval_kernels, since_kernels
+from frontend_sim.simulation import since_kernels
 from frontend_sim.simulation.intervals import IntervalTable
 from frontend_sim.stimulus.drive import Between
 
@@ -30,13 +31,14 @@ class Exponential:
 
     Parameters
     ----------
-    usual : how far behind a point most instants lie; 0 where nothing is known, for speed alone [s]
+    usual : how far behind a point most instants lie; infinite where nothing is known, for speed
+        alone [s]
     """
 
     chain: Chain
     between: Between
     step: float
-    usual: float = 0.0
+    usual: float = math.inf
 
     @cached_property
     def _table(self) -> IntervalTable:
@@ -51,18 +53,16 @@ class Exponential:
 
     @cached_property
     def _usual_step(self) -> Real:
+        if math.isinf(self.usual):
+            return np.zeros_like(self._table.system)
         return np.ascontiguousarray(expm1(self._table.system * self.usual).T)
 
     def advance(self, states: Real, value: Real, rise: Real, since: Real) -> None:
         """Advance by the tabulated exponential, see ``SincePoint``."""
         if states.shape[1] and np.any(since):
-            table = self._table
+            table, usual, step = self._table, self.usual, self._usual_step
             steps = table.unit, table.columns, table.table
-            if self.usual > 0.0:
-                usual, step = self.usual, self._usual_step
-                since_kernels.since_usual(states, value, rise, since, usual, step, *steps)
-                return
-            interval_kernels.since_point(states, value, rise, since, *steps)
+            since_kernels.since_point(states, value, rise, since, usual, step, *steps)
 
 
 @dataclass(frozen=True, eq=False)

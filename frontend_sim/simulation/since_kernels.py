@@ -16,7 +16,7 @@ TERMS = 4
 
 
 @compiled()
-def since_usual(
+def since_point(
     states: Any,
     value: Any,
     rise: Any,
@@ -27,10 +27,12 @@ def since_usual(
     system: Any,
     table: Any,
 ) -> None:
-    """Do what ``since_point`` does, where most instants lie ``usual`` behind a point.
+    """Advance states[k] in place by since[k] from a point of a uniform drive.
 
-    step is that interval's exponential less the identity, by columns. What an instant differs from
-    it, at most NEAR units to either side, goes by a Taylor polynomial.
+    value[k] and rise[k] are the generator's states; without a second one the value is held. Most
+    instants lie ``usual`` behind a point, infinite if nothing is known: step is that interval's
+    exponential less the identity, by columns. What an instant differs from it, at most NEAR units
+    to either side, goes by a Taylor polynomial.
     """
     n = states.shape[1]
     size = len(system)
